@@ -1,0 +1,174 @@
+// The syntax tree: a .tier file as it is written, names not yet looked up.
+//
+// Every construct of grammar/notation.md is either a member of `Top` or, where a later release
+// brings it, an `Unsupported` node that keeps its place, so that nothing is ever passed over.
+// Tested by tests/unit/grammar/.
+#pragma once
+
+#include <optional>
+#include <string>
+#include <variant>
+#include <vector>
+
+#include "base/diagnostics.h"
+
+namespace tiersmith::syntax {
+
+struct Name {
+  std::string text;  // quotes removed
+  Span span;
+};
+
+// /.../ or ⟨...⟩, the raw text between the signs; `span` covers the raw text only.
+struct FormText {
+  std::string raw;
+  bool spelled = false;  // ⟨...⟩
+  Span span;
+};
+
+// ---- bundles, sets, patterns ----------------------------------------------------------------
+struct Feat {
+  enum class Kind { kPlus, kMinus, kBears, kNo, kValue };  // +f, -f, f, no f, Node:value(s)
+  Kind kind = Kind::kBears;
+  Name name;
+  std::vector<Name> values;  // kValue: one, or several for Tone:(H L)
+  Span span;
+};
+struct Bundle {
+  std::vector<Feat> feats;  // in the order written: [-cont +cont] is a contour
+  Span span;
+};
+
+struct Set {
+  enum class Kind { kBundle, kLiteral, kClass, kEmpty, kOr, kAnd, kButNot, kNot };
+  Kind kind = Kind::kBundle;
+  Bundle bundle;          // kBundle; [] has no feats
+  FormText literal;       // kLiteral; may hold several symbols only as a whole pattern item
+  Name name;              // kClass
+  std::vector<Set> args;  // kOr, kAnd, kButNot: 2 or more, left to right; kNot: 1
+  Span span;
+};
+
+struct Pattern;
+struct Item {
+  enum class Kind { kSet, kName, kBoundary, kGap, kGroup };
+  enum class Boundary { kMorpheme, kClitic, kWord, kPhrase };
+  Kind kind = Kind::kSet;
+  std::optional<Name> label;      // X: before a set
+  Set set;                        // kSet
+  Name name;                      // kName: a class, a named pattern, or (in unless) a label
+  Boundary boundary = Boundary::kMorpheme;
+  std::optional<Name> tier;       // kGap: ...Place
+  std::vector<Pattern> alternatives;  // kGroup: ( ) has one, { | } several
+  int min = 1;                    // kSet, kName, kGroup: the quantity; ( ) alone is 0..1
+  int max = 1;                    // -1: no bound
+  Span span;
+};
+struct Pattern {
+  std::vector<Item> items;
+  Span span;
+};
+
+// ---- rules --------------------------------------------------------------------------------------
+struct Path {  // X.Place
+  Name label;
+  Name node;
+  Span span;
+};
+struct Change {
+  enum class Kind { kSpread, kDelink, kSet, kFill, kDelete, kInsert };
+  Kind kind = Kind::kSpread;
+  std::vector<Path> paths;  // kSpread, kDelink
+  Name label;               // the label after `to`; of set, fill, delete; the host of insert
+  Bundle bundle;            // kSet, kFill
+  Name inserted;            // kInsert: its label
+  Set content;              // kInsert: a literal or a bundle
+  bool before = true;       // kInsert
+  Span span;
+};
+struct Rule {
+  Name name;
+  Pattern where;
+  std::vector<Pattern> unless;
+  std::vector<Change> changes;
+  enum class Mode { kAtOnce, kRightward, kLeftward } mode = Mode::kAtOnce;
+  Span span;
+};
+
+// ---- declarations -------------------------------------------------------------------------------
+struct Daughter {
+  enum class Kind { kBinary, kPlain, kMany, kStanding };  // ±f, f or Name, Name: a b, •Name
+  Kind kind = Kind::kPlain;
+  Name name;
+  std::vector<Name> values;   // kMany
+  int max = 1;                // ×n
+  std::optional<Set> room;    // in [..] after ×n
+  bool floating = false;
+  bool abstract_ = false;
+  Span span;
+};
+struct TreeLine {  // a > b > daughters: the last of `mothers` bears the daughters
+  std::vector<Name> mothers;
+  std::vector<Daughter> daughters;
+  Span span;
+};
+struct Tree { std::vector<TreeLine> lines; Span span; };
+
+struct SegmentEntry {
+  Name symbol;
+  std::optional<Name> like;      // x = y
+  std::optional<Bundle> bundle;
+  Span span;
+};
+// What `without` and `omit` list: ±f, +f, -f, f.
+struct ValueRef {
+  enum class Kind { kBoth, kPlus, kMinus, kBare } kind = Kind::kBoth;
+  Name name;
+};
+struct ValuesIn {
+  std::vector<ValueRef> values;
+  std::optional<Set> in;         // none: everywhere
+  Span span;
+};
+struct Segments {
+  enum class Kind { kSegments, kArchisegments, kAllophones } kind = Kind::kSegments;
+  std::optional<Name> from;      // segments from "ipa"
+  std::optional<Bundle> added;   // segments from "ipa" [Coronal] { ... }
+  std::vector<SegmentEntry> entries;
+  std::vector<ValuesIn> without;
+  Span span;
+};
+struct Diacritic {
+  Name symbol;                   // with ◌
+  Bundle bundle;
+  std::optional<Set> on;
+  bool surface = false;
+  Span span;
+};
+struct Diacritics { std::vector<Diacritic> entries; Span span; };
+struct Omit { std::vector<ValuesIn> entries; Span span; };
+struct Class { Name name; Set set; Span span; };
+struct NamedPattern { Name name; Pattern pattern; Span span; };
+struct Language { Name name; Span span; };
+
+struct Datum {
+  FormText underlying;
+  std::vector<FormText> surfaces;
+  std::optional<Name> gloss;
+  Span span;
+};
+struct Data { std::vector<Datum> rows; Span span; };
+struct DataFrom { Name path; Span span; };
+
+// A construct of the notation that this release does not run.
+struct Unsupported { std::string construct; Span span; };
+
+using Top = std::variant<Language, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Rule, Data,
+                         DataFrom, Unsupported>;
+struct File {
+  std::vector<Top> tops;
+  // Constructs found inside rules and blocks that this release does not run.
+  std::vector<Unsupported> unsupported;
+};
+
+}  // namespace tiersmith::syntax

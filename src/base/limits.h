@@ -1,0 +1,15 @@
+// Budgets of the compiler and of recovery. Exceeding one is a diagnostic that names the rule.
+#pragma once
+
+#include <cstddef>
+
+namespace tiersmith {
+
+struct Limits {
+  std::size_t states = 20'000;        // of one cascade segment
+  std::size_t arcs = 1'000'000;       // of one cascade segment
+  std::size_t side_states = 4'096;    // of the left or right automaton of one rule
+  std::size_t candidates = 1'000;     // recovered forms listed at most
+};
+
+}  // namespace tiersmith

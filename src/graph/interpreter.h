@@ -1,0 +1,47 @@
+// The graph interpreter: applies rules to autosegmental graphs directly, by drawing and cutting
+// association lines. Slow and obvious; it is the judge of the compiler (design, section 3) and
+// it explains derivations. It knows nothing of letters, automata or OpenFst.
+#pragma once
+
+#include <map>
+#include <string>
+#include <vector>
+
+#include "model/grammar.h"
+
+namespace tiersmith {
+
+// What happened at one step, in words: "n: Place delinked", "k's Place spread to n",
+// "blocked at a: no room for Place".
+struct StepNotes {
+  std::vector<std::string> changes;
+  std::vector<std::string> blocked;
+};
+
+struct Application {
+  Form form;                          // the result (the input if there is a problem)
+  int changed = 0;                    // matches that changed something
+  std::map<std::string, int> blocked; // matches that failed, by reason: "capacity", "crossing"
+  std::string ambiguous;              // not empty: two matches ask for different things; says what
+  std::string reaches;                // not empty: an iterative change reached another root
+  StepNotes notes;                    // filled when asked for
+};
+
+// Applies one rule once (one sweep if it iterates). Pure.
+Application ApplyRule(const Grammar& grammar, const Rule& rule, const Form& form, bool notes = false);
+
+struct Step {
+  int rule = 0;   // index into Grammar::rules
+  Form after;
+  bool applied = false;
+  StepNotes notes;
+};
+struct Derivation {
+  Form underlying;
+  std::vector<Step> steps;
+  Form surface;          // empty slots erased
+  std::string problem;   // not empty: ambiguous or reaching another root, names the rule; surface is then not valid
+};
+Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes = false);
+
+}  // namespace tiersmith

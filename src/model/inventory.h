@@ -1,0 +1,73 @@
+// Symbols and the trees they stand for; Completion: which symbol spells a tree.
+#pragma once
+
+#include <map>
+#include <optional>
+#include <string>
+#include <string_view>
+#include <unordered_map>
+#include <vector>
+
+#include "base/diagnostics.h"
+#include "model/feature_tree.h"
+#include "model/tree.h"
+
+namespace tiersmith {
+
+struct Symbol {
+  enum class Kind { kSegment, kArchisegment, kAllophone, kComposite };  // kComposite: base with diacritics
+  std::string text;             // NFC
+  Kind kind = Kind::kSegment;
+  FeatureTree full;             // as declared
+  FeatureTree underlying;       // full, less what `omit` takes: what the symbol means in a form
+  bool in_underlying = true;    // may stand in underlying forms
+  int diacritics = 0;           // how many beyond the base
+  std::vector<FeatureTree> slot_borne;  // instances on the slot (tones), written by diacritics
+  Span span;
+};
+
+// What one `/../` in a pattern accepts: spelled so by Completion, or equal to the symbol as declared.
+struct Literal {
+  int symbol = -1;
+};
+
+class Inventory {
+ public:
+  // Listed symbols first (segments, archisegments, allophones in order of declaration), then composites.
+  std::vector<Symbol> symbols;
+  std::vector<Literal> literals;
+
+  // What a tree is spelled by. Exactly one symbol: `symbol`; otherwise -1 with the candidates (none: no symbol;
+  // several: undecided).
+  struct Spelling {
+    int symbol = -1;
+    std::vector<int> candidates;
+  };
+  // Completion (notation §3). Memoised; not thread-safe.
+  const Spelling& Spell(const FeatureTree& root) const;
+  bool LiteralMatches(int literal, const FeatureTree& root) const;
+
+  // Nearest listed symbols to a tree and their differences, for messages and traces: "i{+back}".
+  std::string Describe(const FeatureTree& root, const Tree& tree) const;
+  std::optional<int> Find(std::string_view text) const;
+
+  // The symbols that may stand in underlying forms, each once, with at most `diacritics` diacritics on one base.
+  std::vector<int> UnderlyingSymbols(int diacritics = 2) const;
+
+  // Filled by the checker (model/check_inventory.cc); see there.
+  std::unordered_map<std::string, int> by_text;
+  struct OmitEntry {
+    NodeId node = 0;
+    Value value = 0;
+    std::vector<bool> takes;  // per symbol: does `omit` list this value for it
+  };
+  std::vector<OmitEntry> omitted;
+
+ private:
+  struct TreeHash {
+    std::size_t operator()(const FeatureTree& t) const { return Hash(t); }
+  };
+  mutable std::unordered_map<FeatureTree, Spelling, TreeHash> spellings_;
+};
+
+}  // namespace tiersmith

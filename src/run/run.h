@@ -1,0 +1,48 @@
+// Running a compiled grammar: forward to derive, inverted to recover.
+#pragma once
+
+#include <memory>
+#include <optional>
+#include <string>
+#include <string_view>
+#include <vector>
+
+#include "compile/cascade.h"
+#include "model/text.h"
+
+namespace tiersmith {
+
+class Runner {
+ public:
+  Runner(const Grammar& grammar, const Cascade& cascade);
+  ~Runner();
+
+  // Underlying text -> surface text. Errors: an unknown character, a symbol that may not stand there, a form
+  // whose result no symbol spells. Not thread-safe.
+  bool Derive(std::string_view underlying, std::string* surface, TextError* error);
+
+  // The machine's answer on a form, for agreement tests: none if the form is outside the machine's domain.
+  std::optional<Form> Apply(const Form& underlying);
+
+  struct Candidate {
+    std::string form;      // "in-posible"
+    int restorations = 0;  // slots and boundaries restored
+    double weight = 0;     // negative natural log of the probability; 0 where all rules are obligatory
+  };
+  struct Candidates {
+    std::vector<Candidate> best;  // fewest restorations first
+    bool infinite = false;
+    std::string infinite_why;     // "any number of h (rule 'h deletion')"
+    bool more = false;            // the list was cut at the number asked for
+  };
+  // Surface text -> candidate underlying forms.
+  bool Recover(std::string_view surface, std::size_t best, Candidates* candidates, TextError* error);
+  // Is this underlying form among the candidates of this surface form? By composition, not by listing.
+  bool IsCandidate(std::string_view underlying, std::string_view surface, bool* answer, TextError* error);
+
+ private:
+  struct Impl;
+  std::unique_ptr<Impl> impl_;
+};
+
+}  // namespace tiersmith
