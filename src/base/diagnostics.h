@@ -9,6 +9,9 @@
 
 namespace tiersmith {
 
+// The file of a span that points nowhere.
+inline constexpr std::uint32_t kNoFile = 0xFFFFFFFF;
+
 // Byte range [begin, end) of a source file held by a SourceMap.
 struct Span {
   std::uint32_t file = 0;
@@ -55,6 +58,13 @@ enum class Kind {
   // limits
   kLimit,
 };
+
+// "unknown-feature".
+const char* KindName(Kind kind);
+// Every kind, in order of declaration.
+const std::vector<Kind>& AllKinds();
+// "error", "warning", "note".
+const char* SeverityName(Severity severity);
 
 struct Diagnostic {
   Kind kind = Kind::kSyntax;
