@@ -1,0 +1,23 @@
+// Notes for traces: what a match did, and why one was blocked, in words with symbols.
+// Tested by tests/unit/graph/notes_test.cc.
+#pragma once
+
+#include <string>
+
+#include "graph/interpreter.h"
+#include "graph/matching.h"
+#include "graph/requests.h"
+
+namespace tiersmith::graph {
+
+// "n", or "a (slot 2)" where the form has several.
+std::string NameOfSlot(const View& view, int slot);
+
+// Adds what this match alone changes: "t's Place spread to n", "n: Place cut", "s deleted".
+void NoteChanges(const View& view, const Rule& rule, const LabelSlots& match, StepNotes* notes);
+
+// Adds why this match failed: "blocked at a: no room for Place".
+void NoteBlocked(const View& view, const Rule& rule, const LabelSlots& match, const std::string& reason,
+                 StepNotes* notes);
+
+}  // namespace tiersmith::graph
