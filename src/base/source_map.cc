@@ -55,8 +55,8 @@ bool LooksLikeUtf16(std::string_view text) {
 
 }  // namespace
 
-std::uint32_t SourceMap::Add(std::string path, std::string text) {
-  files_.push_back({std::move(path), std::move(text)});
+std::uint32_t SourceMap::Add(std::string path, std::string text, int first_line) {
+  files_.push_back({std::move(path), std::move(text), first_line});
   return static_cast<std::uint32_t>(files_.size() - 1);
 }
 
@@ -104,7 +104,7 @@ SourceMap::Place SourceMap::Find(Span span) const {
   const std::string_view line = text.substr(line_begin, line_end - line_begin);
   const std::string_view left = line.substr(0, std::min(begin - line_begin, line.size()));
   const std::size_t end = std::clamp<std::size_t>(span.end, begin, std::max(begin, line_end));
-  place.line = 1 + static_cast<int>(std::count(text.begin(), text.begin() + static_cast<std::ptrdiff_t>(line_begin), '\n'));
+  place.line = files_[span.file].first_line + static_cast<int>(std::count(text.begin(), text.begin() + static_cast<std::ptrdiff_t>(line_begin), '\n'));
   place.column = 1 + static_cast<int>(CountCodePoints(left));
   place.line_text = std::string(line);
   place.caret_column = DisplayWidth(left);

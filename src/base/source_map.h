@@ -21,8 +21,8 @@ class SourceMap {
     int caret_width = 1;   // display cells under the caret, at least 1
   };
 
-  // Adds a text under a path as the user wrote it. Ids count from 0.
-  std::uint32_t Add(std::string path, std::string text);
+  // Adds a text under a path as the user wrote it; its first line is counted as `first_line`. Ids count from 0.
+  std::uint32_t Add(std::string path, std::string text, int first_line = 1);
   // Reads a file ("-": standard input); a byte order mark is dropped. On failure adds kMissingFile at `from`, or
   // kNotUtf8 at the first bad byte, and returns false.
   bool Load(const std::string& path, Span from, Diagnostics& diagnostics, std::uint32_t* id);
@@ -37,6 +37,7 @@ class SourceMap {
   struct File {
     std::string path;
     std::string text;
+    int first_line = 1;
   };
   std::vector<File> files_;
 };

@@ -1,0 +1,136 @@
+// tiersmith recover: surface forms to the underlying forms they may stand for, fewest restorations first.
+// [imposible] gives in-posible among others. Candidates come from segments; there is no lexicon yet, so the column for
+// the gloss is empty. Tested by tests/cli/recover.sh.
+#include <fmt/format.h>
+
+#include <iostream>
+#include <nlohmann/json.hpp>
+
+#include "cli/command.h"
+#include "run/run.h"
+
+namespace tiersmith::cli {
+namespace {
+
+using nlohmann::ordered_json;
+
+struct RecoverOptions : CommonOptions {
+  std::vector<std::string> forms;
+  std::size_t best = 10;
+  bool keep_going = false;
+};
+
+std::string Weight(double weight) { return fmt::format("{:.4g}", weight); }
+
+// "infinitely many: ...; the 10 with the fewest restorations are shown", or "" if the list is whole.
+std::string Bound(const Runner::Candidates& candidates) {
+  const std::string shown = fmt::format("the {} with the fewest restorations are shown", candidates.best.size());
+  if (candidates.infinite) return "infinitely many: " + candidates.infinite_why + "; " + shown;
+  return candidates.more ? "there are more; " + shown + " (--best N)" : "";
+}
+
+std::string AsText(const std::string& form, const Runner::Candidates& candidates, bool named) {
+  std::vector<std::vector<std::string>> rows;
+  for (const Runner::Candidate& candidate : candidates.best) {
+    rows.push_back({candidate.form, std::to_string(candidate.restorations), Weight(candidate.weight), ""});
+  }
+  std::string out = named ? "[" + form + "]\n" : "";
+  out += rows.empty() ? "∅\n" : Table(rows, {false, true, true, false});
+  const std::string bound = Bound(candidates);
+  if (!bound.empty()) out += "-- " + bound + "\n";
+  return out;
+}
+
+std::string AsTsv(const std::string& form, const Runner::Candidates& candidates) {
+  std::string out;
+  if (candidates.best.empty()) out += Field(form) + "\t∅\t\t\t\n";
+  for (const Runner::Candidate& candidate : candidates.best) {
+    out += fmt::format("{}\t{}\t{}\t{}\t\n", Field(form), candidate.form, candidate.restorations, Weight(candidate.weight));
+  }
+  return out;
+}
+
+ordered_json AsJson(const std::string& form, const Runner::Candidates& candidates) {
+  ordered_json json = {{"surface", form},
+                       {"infinite", candidates.infinite},
+                       {"infinite_why", candidates.infinite_why},
+                       {"more", candidates.more},
+                       {"candidates", ordered_json::array()}};
+  for (const Runner::Candidate& candidate : candidates.best) {
+    json["candidates"].push_back({{"form", candidate.form},
+                                  {"restorations", candidate.restorations},
+                                  {"weight", candidate.weight},
+                                  {"gloss", nullptr}});
+  }
+  return json;
+}
+
+int RunRecover(const RecoverOptions& options) {
+  if (BothFromStdin(options, options.forms)) return kUsage;
+  if (options.best == 0 || options.best > Limits{}.candidates) {
+    PrintError(fmt::format("--best {}: give a number from 1 to {}", options.best, Limits{}.candidates));
+    return kUsage;
+  }
+  const Loaded loaded = LoadAndCompile(options);
+  if (loaded.code != kFine) return loaded.code;
+  Runner runner(*loaded.grammar, *loaded.cascade);
+  Output output(options.output);
+  if (!output.good()) return kFiles;
+  FormSource source(options.forms);
+  const bool named = source.from_stdin() || options.forms.size() > 1;
+  if (options.json()) output.Write("[");
+  if (options.format == "tsv") output.Write("surface\tform\trestorations\tweight\tgloss\n");
+  std::string form;
+  int number = 0;
+  bool first = true, none = false;
+  for (;;) {
+    if (source.WouldWait()) output.Flush();
+    if (!source.Next(&form, &number)) break;
+    Runner::Candidates candidates;
+    TextError error;
+    if (!runner.Recover(form, options.best, &candidates, &error)) {
+      PrintTextError(source, form, number, error, options.json());
+      if (!options.keep_going) {
+        if (options.json() && options.output.empty()) output.Write(first ? "]\n" : "\n]\n");
+        return kUsage;
+      }
+      candidates = {};
+    }
+    none = none || candidates.best.empty();
+    if (options.json()) {
+      output.Write(first ? "\n" : ",\n");
+      output.Write(AsJson(form, candidates).dump(2, ' ', false, ordered_json::error_handler_t::replace));
+    } else if (options.format == "tsv") {
+      output.Write(AsTsv(form, candidates));
+      const std::string bound = Bound(candidates);
+      if (!bound.empty()) std::cerr << form << ": " << bound << '\n';
+    } else {
+      if (!first) output.Write("\n");
+      output.Write(AsText(form, candidates, named));
+    }
+    first = false;
+  }
+  if (source.failed()) {
+    PrintError("reading standard input failed");
+    return kFiles;
+  }
+  if (options.json()) output.Write(first ? "]\n" : "\n]\n");
+  const int code = output.Finish();
+  return code != kFine ? code : none ? kDisagree : kFine;
+}
+
+}  // namespace
+
+void AddRecover(CLI::App& app, int& code) {
+  auto options = std::make_shared<RecoverOptions>();
+  CLI::App* verb = app.add_subcommand("recover", "surface forms to candidate underlying forms");
+  AddCommonOptions(*verb, *options);
+  verb->add_option("FORMS", options->forms, "surface forms; none, or -: one a line on standard input");
+  verb->add_option("--best", options->best, "how many candidates (10)")->type_name("N");
+  verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
+  verb->footer("\nColumns: form, restorations (slots and boundaries put back), weight, gloss (empty: no lexicon yet).\n"
+               "\nExample:\n  tiersmith recover velmari.tier --best 5 iŋkat");
+  verb->callback([options, &code] { code = RunRecover(*options); });
+}
+
+}  // namespace tiersmith::cli
