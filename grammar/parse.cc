@@ -1,0 +1,1241 @@
+// The notation in Spirit X3, over code points. `where N:[+nasal] C:[+cons]  spread C.Place to N` becomes a
+// syntax::Rule; names are not looked up here, that is the checker's work.
+//
+// The outline (outline.h) has cut the file into entries; each is parsed alone by one of the grammars below.
+// Alternatives are told apart by their first token, and after it everything is an expectation: a failure is
+// caught in Reader::Run and becomes one diagnostic at the token where parsing stopped. Constructs of later
+// releases are recognised and reported where they stand; parsing goes on behind them.
+// Not here: what sections of later releases say inside their blocks. Tested by tests/unit/grammar/.
+#define BOOST_SPIRIT_X3_UNICODE
+
+#include "grammar/parse.h"
+
+#include <boost/regex/pending/unicode_iterator.hpp>
+#include <boost/spirit/home/x3.hpp>
+
+#include <algorithm>
+#include <stdexcept>
+#include <string>
+#include <utility>
+#include <vector>
+
+#include "grammar/outline.h"
+#include "grammar/words.h"
+
+namespace tiersmith {
+namespace {
+
+namespace x3 = boost::spirit::x3;
+using Iterator = boost::u8_to_u32_iterator<const char*>;
+
+// What the parse of one entry shares: where its bytes lie, and the later constructs met on the way.
+struct Scene {
+  const char* origin = nullptr;
+  std::uint32_t file = 0;
+  std::vector<syntax::Unsupported> later;
+
+  Span Between(Iterator begin, Iterator end) const {
+    return {file, static_cast<std::uint32_t>(begin.base() - origin), static_cast<std::uint32_t>(end.base() - origin)};
+  }
+  void Later(std::string construct, Span span) {
+    for (const auto& known : later)
+      if (known.span.begin == span.begin) return;  // read a second time by another alternative
+    later.push_back({std::move(construct), span});
+  }
+};
+struct SceneTag;
+
+template <class Context>
+Scene& SceneOf(const Context& context) {
+  return x3::get<SceneTag>(context);
+}
+
+// A mistake that is seen as one, with words of its own; thrown by actions and caught in Reader::Run.
+struct Refusal {
+  Span span;
+  std::string message;
+  std::string remedy;
+};
+
+// ---- tokens ---------------------------------------------------------------------------------------
+// Small parsers of their own rather than compositions: they keep the messages short and the compile time low.
+
+bool SkipBlank(Iterator& first, const Iterator& last) {
+  if (first == last) return false;
+  const char32_t c = *first;
+  if (c <= U' ' || c == U'\u00A0') {
+    ++first;
+    return true;
+  }
+  if (c != U'-') return false;
+  Iterator next = first;
+  if (++next == last || *next != U'-') return false;
+  while (first != last && *first != U'\n') ++first;
+  return true;
+}
+
+bool MatchText(Iterator& first, const Iterator& last, const char32_t* text) {
+  Iterator i = first;
+  for (; *text != 0; ++text, ++i)
+    if (i == last || *i != *text) return false;
+  first = i;
+  return true;
+}
+
+// The characters from first to last, as bytes.
+std::string Bytes(Iterator first, Iterator last) { return std::string(first.base(), last.base()); }
+
+// "..." on one line.
+bool MatchString(Iterator& first, const Iterator& last, std::string& text) {
+  if (first == last || *first != U'"') return false;
+  Iterator i = first;
+  const Iterator begin = ++i;
+  while (i != last && *i != U'"' && *i != U'\n') ++i;
+  if (i == last || *i != U'"') return false;
+  text = Bytes(begin, i);
+  first = ++i;
+  return true;
+}
+
+// Letters and digits up to the first other character; a tail such as _0 is left to the quantity.
+std::string PeekBare(Iterator first, const Iterator& last) {
+  if (first == last || !notation::IsNameStart(*first)) return {};
+  const Iterator begin = first;
+  while (first != last && notation::IsNameCharacter(*first)) ++first;
+  std::string bare = Bytes(begin, first);
+  bare.resize(bare.size() - notation::QuantityTail(bare));
+  return bare;
+}
+
+template <class T>
+struct Token : x3::parser<T> {
+  static bool const has_attribute = true;
+};
+
+struct SkipParser : x3::parser<SkipParser> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context&, RContext&, Attribute&) const {
+    return SkipBlank(first, last);
+  }
+};
+
+// A word of the notation, not followed by a character that would make it a longer name.
+struct Word : x3::parser<Word> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  const char32_t* text;
+  explicit constexpr Word(const char32_t* t) : text(t) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    if (!MatchText(i, last, text) || (i != last && notation::IsNameCharacter(*i))) return false;
+    first = i;
+    return true;
+  }
+};
+
+struct Sign : x3::parser<Sign> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  const char32_t* text;
+  explicit constexpr Sign(const char32_t* t) : text(t) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    x3::skip_over(first, last, context);
+    return MatchText(first, last, text);
+  }
+};
+
+// Never matches: stands last among alternatives and says what all of them together are.
+struct Wanted : x3::parser<Wanted> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  const char* what;
+  explicit constexpr Wanted(const char* w) : what(w) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator&, const Context&, RContext&, Attribute&) const {
+    boost::throw_exception(x3::expectation_failure<Iterator>(first, what));
+  }
+};
+
+// The end of the entry; `what` lists all that could have stood there.
+struct End : x3::parser<End> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  const char* what;
+  explicit constexpr End(const char* w) : what(w) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    x3::skip_over(first, last, context);
+    return first == last;
+  }
+};
+
+// A bare or quoted name. Words beginning "@" in `what` mean that a name could stand at the place of the error.
+struct NameToken : Token<NameToken> {
+  using attribute_type = syntax::Name;
+  const char* what;
+  bool in_bundle;
+  explicit constexpr NameToken(const char* w, bool bundle = false) : what(w), in_bundle(bundle) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    syntax::Name name;
+    if (!MatchString(i, last, name.text)) {
+      name.text = PeekBare(i, last);
+      if (name.text.empty() || notation::IsReserved(name.text)) return false;
+      if (in_bundle && notation::IsBundleWord(name.text)) return false;
+      while (i.base() != first.base() + name.text.size()) ++i;
+    }
+    name.span = SceneOf(context).Between(first, i);
+    first = i;
+    x3::traits::move_to(std::move(name), attribute);
+    return true;
+  }
+};
+
+struct StringToken : Token<StringToken> {
+  using attribute_type = syntax::Name;
+  const char* what;
+  explicit constexpr StringToken(const char* w) : what(w) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    syntax::Name name;
+    if (!MatchString(i, last, name.text)) return false;
+    name.span = SceneOf(context).Between(first, i);
+    first = i;
+    x3::traits::move_to(std::move(name), attribute);
+    return true;
+  }
+};
+
+// A symbol of segments and diacritics: anything up to white space or one of { } [ ] = ; "
+struct SymbolToken : Token<SymbolToken> {
+  using attribute_type = syntax::Name;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    syntax::Name name;
+    if (!MatchString(i, last, name.text)) {
+      while (i != last && !Ends(i, last)) ++i;
+      name.text = Bytes(first, i);
+      if (name.text.empty() || name.text == "without") return false;
+    }
+    name.span = SceneOf(context).Between(first, i);
+    first = i;
+    x3::traits::move_to(std::move(name), attribute);
+    return true;
+  }
+  static bool Ends(Iterator i, const Iterator& last) {
+    const char32_t c = *i;
+    return c == U'{' || c == U'}' || c == U'[' || c == U']' || c == U'=' || c == U';' || c == U'"' || SkipBlank(i, last);
+  }
+};
+
+// Raw text between two signs on one line: /k/, ⟨k⟩, [k].
+struct RawToken : Token<RawToken> {
+  using attribute_type = syntax::FormText;
+  char32_t open;
+  char32_t close;
+  const char* what;
+  constexpr RawToken(char32_t o, char32_t c, const char* w) : open(o), close(c), what(w) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    if (first == last || *first != open) return false;
+    Iterator i = first;
+    const Iterator begin = ++i;
+    while (i != last && *i != close && *i != U'\n') ++i;
+    if (i == last || *i != close) return false;
+    syntax::FormText form{Bytes(begin, i), open != U'/' && open != U'[', SceneOf(context).Between(begin, i)};
+    first = ++i;
+    x3::traits::move_to(std::move(form), attribute);
+    return true;
+  }
+};
+
+// 'the dog''s': two apostrophes are one, and the closing one has no letter behind it.
+struct GlossToken : Token<GlossToken> {
+  using attribute_type = syntax::Name;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    if (first == last || *first != U'\'') return false;
+    Iterator i = first;
+    syntax::Name gloss;
+    for (++i; i != last && *i != U'\n'; ++i) {
+      Iterator next = i;
+      ++next;
+      if (*i == U'\'') {
+        if (next == last || (*next != U'\'' && !notation::IsNameStart(*next))) {
+          gloss.span = SceneOf(context).Between(first, next);
+          first = next;
+          x3::traits::move_to(std::move(gloss), attribute);
+          return true;
+        }
+        if (*next == U'\'') i = next;
+      }
+      Iterator after = i;
+      gloss.text += Bytes(i, ++after);
+    }
+    return false;
+  }
+};
+
+struct BoundaryToken : Token<BoundaryToken> {
+  using attribute_type = syntax::Item::Boundary;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    using Boundary = syntax::Item::Boundary;
+    static constexpr std::pair<const char32_t*, Boundary> kSigns[] = {
+        {U"-", Boundary::kMorpheme}, {U"\u2212", Boundary::kMorpheme}, {U"\u2013", Boundary::kMorpheme},
+        {U"=", Boundary::kClitic},   {U"#", Boundary::kWord},          {U"\u2016", Boundary::kPhrase},
+        {U"||", Boundary::kPhrase}};
+    x3::skip_over(first, last, context);
+    for (const auto& [sign, boundary] : kSigns) {
+      if (!MatchText(first, last, sign)) continue;
+      x3::traits::move_to(Boundary(boundary), attribute);
+      return true;
+    }
+    return false;
+  }
+};
+
+struct Quantity {
+  int min = 1;
+  int max = 1;
+};
+
+// ₀ ₁ ₀² _0 _1^2, glued to what it counts.
+struct QuantityToken : Token<QuantityToken> {
+  using attribute_type = Quantity;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator i = first;
+    Quantity quantity;
+    const bool ascii = i != last && *i == U'_';
+    if (ascii ? !Number(++i, last, U'0', quantity.min) : !Number(i, last, U'\u2080', quantity.min)) return false;
+    quantity.max = -1;
+    if (ascii) {
+      Iterator caret = i;
+      if (MatchText(caret, last, U"^") && Number(caret, last, U'0', quantity.max)) i = caret;
+    } else {
+      Superscript(i, last, quantity.max);
+    }
+    const Span span = SceneOf(context).Between(first, i);
+    if (quantity.max == 0 || (quantity.max > 0 && quantity.max < quantity.min))
+      throw Refusal{span, "this quantity allows nothing", "write the smaller number below and the larger above: X₀², X_0^2"};
+    if (quantity.min > kMost || quantity.max > kMost)
+      throw Refusal{span, "a quantity goes up to 99", "leave the upper number away: X₀ is any number of X"};
+    first = i;
+    x3::traits::move_to(Quantity(quantity), attribute);
+    return true;
+  }
+
+ private:
+  static constexpr int kMost = 99;
+  static bool Number(Iterator& i, const Iterator& last, char32_t zero, int& number) {
+    const Iterator begin = i;
+    int value = 0;
+    for (; i != last && *i >= zero && *i < zero + 10; ++i) value = std::min(value * 10 + static_cast<int>(*i - zero), 1000);
+    if (i == begin) return false;
+    number = value;
+    return true;
+  }
+  // ¹ ² ³ stand apart from the other superscripts in Unicode.
+  static void Superscript(Iterator& i, const Iterator& last, int& number) {
+    int value = 0;
+    const Iterator begin = i;
+    for (; i != last; ++i) {
+      const char32_t c = *i;
+      const int digit = c == U'\u00B9' ? 1 : c == U'\u00B2' ? 2 : c == U'\u00B3' ? 3 : c == U'\u2070' || (c >= U'\u2074' && c <= U'\u2079') ? static_cast<int>(c - U'\u2070') : -1;
+      if (digit < 0) break;
+      value = std::min(value * 10 + digit, 1000);
+    }
+    if (i != begin) number = value;
+  }
+};
+
+struct NumberToken : Token<NumberToken> {
+  using attribute_type = int;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    int value = 0;
+    for (; i != last && *i >= U'0' && *i <= U'9'; ++i) value = std::min(value * 10 + static_cast<int>(*i - U'0'), 10000);
+    if (i == first) return false;
+    first = i;
+    x3::traits::move_to(int(value), attribute);
+    return true;
+  }
+};
+
+// ×2, x2: how many of a node one mother may hold.
+struct TimesToken : Token<TimesToken> {
+  using attribute_type = int;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    const bool sign = MatchText(i, last, U"×");
+    if (!sign && !MatchText(i, last, U"x")) return false;
+    if (sign)
+      while (SkipBlank(i, last)) {
+      }
+    int value = 0;
+    const Iterator digits = i;
+    for (; i != last && *i >= U'0' && *i <= U'9'; ++i) value = std::min(value * 10 + static_cast<int>(*i - U'0'), 1000);
+    if (i == digits || (i != last && notation::IsNameCharacter(*i))) return false;
+    if (value < 1 || value > 9)
+      throw Refusal{SceneOf(context).Between(first, i), "a mother may hold 1 to 9 of a node", "write ×2 for a contour of two"};
+    first = i;
+    x3::traits::move_to(int(value), attribute);
+    return true;
+  }
+};
+
+// A variable of agreement before its feature: αback, alpha back.
+struct VariableToken : x3::parser<VariableToken> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    x3::skip_over(first, last, context);
+    if (first == last || !notation::IsGreekVariable(*first)) return false;
+    ++first;
+    return true;
+  }
+};
+
+// Looks ahead: does a name begin here, glued.
+struct NameAhead : x3::parser<NameAhead> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& first, const Iterator& last, const Context&, RContext&, Attribute&) const {
+    return first != last && notation::IsNameStart(*first);
+  }
+};
+
+}  // namespace
+}  // namespace tiersmith
+
+namespace boost::spirit::x3 {
+// How a token is called in "expected ...".
+template <>
+struct get_info<tiersmith::Word> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::Word& word) const { return "'" + to_utf8(std::u32string(word.text)) + "'"; }
+  static std::string to_utf8(const std::u32string& text) {
+    using Encoder = boost::u32_to_u8_iterator<std::u32string::const_iterator>;
+    return std::string(Encoder(text.begin()), Encoder(text.end()));
+  }
+};
+template <>
+struct get_info<tiersmith::Sign> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::Sign& sign) const {
+    return "'" + get_info<tiersmith::Word>::to_utf8(std::u32string(sign.text)) + "'";
+  }
+};
+template <>
+struct get_info<tiersmith::NameToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::NameToken& token) const { return token.what; }
+};
+template <>
+struct get_info<tiersmith::StringToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::StringToken& token) const { return token.what; }
+};
+template <>
+struct get_info<tiersmith::RawToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::RawToken& token) const { return token.what; }
+};
+template <>
+struct get_info<tiersmith::SymbolToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::SymbolToken&) const { return "a symbol"; }
+};
+template <>
+struct get_info<tiersmith::NumberToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::NumberToken&) const { return "a number"; }
+};
+template <>
+struct get_info<tiersmith::End> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::End& end) const { return end.what; }
+};
+}  // namespace boost::spirit::x3
+
+namespace tiersmith {
+namespace {
+
+// ---- actions --------------------------------------------------------------------------------------
+
+// Stores the attribute in a member of what the rule builds.
+template <class M>
+auto To(M member) {
+  return [member](auto& context) { x3::_val(context).*member = std::move(x3::_attr(context)); };
+}
+template <class M>
+auto Push(M member) {
+  return [member](auto& context) { (x3::_val(context).*member).push_back(std::move(x3::_attr(context))); };
+}
+template <class M, class V>
+auto Let(M member, V value) {
+  return [member, value](auto& context) { x3::_val(context).*member = value; };
+}
+// Notes a construct of a later release; used on x3::raw[..].
+auto NotYet(const char* construct) {
+  return [construct](auto& context) {
+    Scene& scene = SceneOf(context);
+    scene.Later(construct, scene.Between(x3::_attr(context).begin(), x3::_attr(context).end()));
+  };
+}
+// The same for a construct that is known by its first word.
+const auto kNotYetWord = [](auto& context) {
+  Scene& scene = SceneOf(context);
+  const Iterator begin = x3::_attr(context).begin(), end = x3::_attr(context).end();
+  Iterator word = begin;
+  while (word != end && notation::IsNameCharacter(*word)) ++word;
+  scene.Later(Bytes(begin, word == begin ? end : word), scene.Between(begin, end));
+};
+const auto kWhole = [](auto& context) { x3::_val(context) = std::move(x3::_attr(context)); };
+
+const auto kSpan = [](auto& context) {
+  x3::_val(context).span = SceneOf(context).Between(x3::_attr(context).begin(), x3::_attr(context).end());
+};
+// The definition of a rule whose value has a span.
+template <class Parser>
+auto Spanned(const Parser& parser) {
+  return x3::raw[parser][kSpan];
+}
+
+const SkipParser kSkip{};
+
+// ---- bundles and sets -----------------------------------------------------------------------------
+// Set operators are read from left to right: `A or B and C` is (A or B) and C.
+
+struct SetTail {
+  syntax::Set::Kind kind = syntax::Set::Kind::kOr;
+  syntax::Set arg;
+};
+
+Span Join(Span a, Span b) { return {a.file, a.begin, b.end}; }
+
+syntax::Set Fold(syntax::Set set, std::vector<SetTail> tails) {
+  bool open = false;  // the set was made here, not in braces: `A or B or C` is one set of three
+  for (SetTail& tail : tails) {
+    if (!open || set.kind != tail.kind) {
+      syntax::Set outer;
+      outer.kind = tail.kind;
+      outer.span = set.span;
+      outer.args.push_back(std::move(set));
+      set = std::move(outer);
+      open = true;
+    }
+    set.span = Join(set.span, tail.arg.span);
+    set.args.push_back(std::move(tail.arg));
+  }
+  return set;
+}
+
+using Tails = std::vector<SetTail>;
+
+struct FeatRule;
+struct BundleRule;
+struct SetRule;
+struct AtomRule;
+const x3::rule<FeatRule, syntax::Feat> feat("@a feature");
+const x3::rule<struct LaterFeatRule> later_feat("@a feature");
+const x3::rule<BundleRule, syntax::Bundle> bundle("a bundle such as [+nasal]");
+const x3::rule<SetRule, syntax::Set> set("@a set: a bundle, a literal or a class");
+const x3::rule<AtomRule, syntax::Set> atom("@a set: a bundle, a literal or a class");
+const x3::rule<struct TailRule, SetTail> set_tail("or, and, but not");
+
+const Word kOr(U"or"), kAnd(U"and"), kBut(U"but"), kNot(U"not");
+const NameToken name("@a name"), label("@a label"), node("@the name of a node"), feature("@a feature");
+const NameToken bundle_name("@a feature", true);
+const RawToken literal(U'/', U'/', "a literal such as /k/"), spelled(U'⟨', U'⟩', "a form"), spelled_ascii(U'<', U'>', "a form"),
+    surface(U'[', U']', "a surface form in [ ]"), form(U'/', U'/', "a form such as /kat/");
+const QuantityToken quantity{};
+const SymbolToken symbol{};
+const NumberToken number{};
+
+template <class Parser>
+auto Glued(const Parser& parser) {
+  return x3::no_skip[parser];
+}
+const auto direction = Word(U"rightward") | Word(U"leftward") | Wanted("rightward or leftward");
+const auto minus_sign = Sign(U"-") | Sign(U"\u2212") | Sign(U"\u2013");
+const auto plus_minus = Sign(U"±") | Sign(U"+/-");
+const auto agreement = (VariableToken{} >> Glued(name)) | (Word(U"alpha") > name);
+const auto value = name | (Sign(U"(") > +name > Sign(U")"));
+
+const auto prosodic_word = Word(U"onset") | Word(U"peak") | Word(U"coda") | Word(U"appendix") | Word(U"stray") | Word(U"open") |
+                           Word(U"closed") | Word(U"light") | Word(U"heavy") | Word(U"main");
+const auto prosodic_word_2 = Word(U"stressed") | Word(U"unstressed") | Word(U"head") | Word(U"footed") | Word(U"unfooted");
+const auto a_domain = Word(U"morpheme") | Word(U"stem") | Word(U"host") | Word(U"word") | Word(U"phrase") | Word(U"syllable") |
+                      Word(U"foot") | Wanted("a domain: syllable, foot, morpheme, stem, host, word or phrase");
+
+const auto later_feat_def =
+    x3::raw[-(Sign(U"+") | minus_sign) >> agreement][NotYet("agreement by α β γ δ")] |
+    x3::raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))][kNotYetWord] |
+    (x3::raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) |
+    x3::raw[Word(U"floating")][NotYet("a floating item")] | x3::raw[Word(U"linked")][kNotYetWord] |
+    (x3::raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
+    x3::raw[Word(U"long") | Word(U"short")][kNotYetWord] |
+    x3::raw[Word(U"half") > (Word(U"first") | Word(U"second") | Wanted("first or second"))][kNotYetWord] |
+    x3::raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
+    x3::raw[prosodic_word | prosodic_word_2][kNotYetWord];
+
+auto Named(syntax::Feat::Kind kind) {
+  return [kind](auto& context) {
+    x3::_val(context).kind = kind;
+    x3::_val(context).name = std::move(x3::_attr(context));
+  };
+}
+const auto a_value = name[Push(&syntax::Feat::values)] |
+                     (Sign(U"(") > +name[Push(&syntax::Feat::values)] > Sign(U")")) |
+                     Wanted("@a value, or several in ( )");
+const auto feat_def = Spanned((Sign(U"+") > feature[Named(syntax::Feat::Kind::kPlus)]) |
+                      (minus_sign > feature[Named(syntax::Feat::Kind::kMinus)]) |
+                      (Word(U"no") > feature[Named(syntax::Feat::Kind::kNo)] >>
+                       -(x3::raw[Sign(U":") > value][NotYet("'no' with a value")])) |
+                      (bundle_name[Named(syntax::Feat::Kind::kBears)] >>
+                       -(Sign(U":")[Let(&syntax::Feat::kind, syntax::Feat::Kind::kValue)] > a_value)));
+
+const auto bundle_def = Spanned(Sign(U"[") > *(-Sign(U",") >> (later_feat | feat[Push(&syntax::Bundle::feats)])) >
+                        (Sign(U"]") | Wanted("@a feature or ']'")));
+
+const auto kKeepSet = [](auto& context) { x3::_val(context) = std::move(x3::_attr(context)); };
+auto MakeSet(syntax::Set::Kind kind) { return Let(&syntax::Set::kind, kind); }
+// The first of alternatives in braces, or all of them as one set.
+const auto kAlternative = [](auto& context) {
+  syntax::Set& all = x3::_val(context);
+  all.args.push_back(std::move(x3::_attr(context)));
+};
+const auto kCloseAlternatives = [](auto& context) {
+  syntax::Set& all = x3::_val(context);
+  if (all.args.size() == 1) {
+    syntax::Set only = std::move(all.args.front());
+    all = std::move(only);
+  } else {
+    all.kind = syntax::Set::Kind::kOr;
+  }
+};
+// `not not not A`: counted rather than nested, so that a long row of them cannot exhaust the stack.
+const auto kNegate = [](auto& context) {
+  syntax::Set outer;
+  outer.kind = syntax::Set::Kind::kNot;
+  outer.args.push_back(std::move(x3::_attr(context)));
+  x3::_val(context) = std::move(outer);
+};
+// Neither a path (`X.N`) nor a label (`X:`).
+const auto name_alone = name >> !Glued(Sign(U".") >> NameAhead{}) >> !Glued(Sign(U":"));
+
+const auto atom_def = Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one 'not'")) > atom[kNegate]) |
+                      Word(U"empty")[MakeSet(syntax::Set::Kind::kEmpty)] |
+                      bundle[([](auto& context) {
+                        x3::_val(context).kind = syntax::Set::Kind::kBundle;
+                        x3::_val(context).bundle = std::move(x3::_attr(context));
+                      })] |
+                      literal[([](auto& context) {
+                        x3::_val(context).kind = syntax::Set::Kind::kLiteral;
+                        x3::_val(context).literal = std::move(x3::_attr(context));
+                      })] |
+                      x3::raw[spelled][NotYet("⟨ ⟩ in a pattern")] |
+                      (Sign(U"{") > set[kAlternative] > *(!Sign(U"||") >> Sign(U"|") > set[kAlternative]) >
+                       (Sign(U"}")[kCloseAlternatives] | Wanted("'|' or '}'"))) |
+                      name_alone[([](auto& context) {
+                        x3::_val(context).kind = syntax::Set::Kind::kClass;
+                        x3::_val(context).name = std::move(x3::_attr(context));
+                      })]);
+
+const auto kTailArg = [](auto& context) { x3::_val(context).arg = std::move(x3::_attr(context)); };
+const auto set_tail_def = (kOr[Let(&SetTail::kind, syntax::Set::Kind::kOr)] > atom[kTailArg]) |
+                          (kAnd[Let(&SetTail::kind, syntax::Set::Kind::kAnd)] > atom[kTailArg]) |
+                          (kBut > kNot[Let(&SetTail::kind, syntax::Set::Kind::kButNot)] > atom[kTailArg]);
+
+// Tails are folded as they come; `args` of an operator made here grow while the operator stays the same.
+struct OpenSet {
+  syntax::Set set;
+  Tails tails;
+};
+const x3::rule<struct OpenSetRule, OpenSet> open_set("@a set: a bundle, a literal or a class");
+const auto open_set_def = atom[To(&OpenSet::set)] >> *set_tail[Push(&OpenSet::tails)];
+const auto kFoldSet = [](auto& context) {
+  OpenSet& open = x3::_attr(context);
+  x3::_val(context) = Fold(std::move(open.set), std::move(open.tails));
+};
+const auto set_def = open_set[kFoldSet];
+
+BOOST_SPIRIT_DEFINE(feat, later_feat, bundle, set, atom, set_tail, open_set)
+
+// ---- patterns -------------------------------------------------------------------------------------
+
+struct ItemRule;
+struct PatternRule;
+const x3::rule<ItemRule, syntax::Item> item("@an item");
+const x3::rule<struct LaterItemRule> later_item("an item");
+const x3::rule<PatternRule, syntax::Pattern> pattern("@a pattern");
+const x3::rule<struct LabelledRule, syntax::Item> labelled("a labelled item");
+const x3::rule<struct BracedRule, syntax::Item> braced("a group in { }");
+const x3::rule<struct OptionalRule, syntax::Item> bracketed("a group in ( )");
+const x3::rule<struct GapRule, syntax::Item> gap("a gap");
+
+// One unlabelled slot item, so that `{A | B}` is a set and not a group.
+bool IsSingle(const syntax::Pattern& alternative) {
+  if (alternative.items.size() != 1) return false;
+  const syntax::Item& only = alternative.items.front();
+  const bool slot = only.kind == syntax::Item::Kind::kSet || only.kind == syntax::Item::Kind::kName;
+  return slot && !only.label && only.min == 1 && only.max == 1;
+}
+
+syntax::Set AsSet(syntax::Item single) {
+  if (single.kind == syntax::Item::Kind::kSet) return std::move(single.set);
+  syntax::Set named;
+  named.kind = syntax::Set::Kind::kClass;
+  named.name = std::move(single.name);
+  named.span = single.span;
+  return named;
+}
+
+// Turns a group all of whose alternatives are single into an item with a set.
+void JoinSingles(syntax::Item& group) {
+  if (!std::all_of(group.alternatives.begin(), group.alternatives.end(), IsSingle)) return;
+  syntax::Set all;
+  all.kind = syntax::Set::Kind::kOr;
+  for (syntax::Pattern& alternative : group.alternatives) all.args.push_back(AsSet(std::move(alternative.items.front())));
+  group.alternatives.clear();
+  group.kind = syntax::Item::Kind::kSet;
+  group.set = all.args.size() == 1 ? syntax::Set(std::move(all.args.front())) : std::move(all);
+}
+
+const auto kQuantify = [](auto& context) {
+  x3::_val(context).min = x3::_attr(context).min;
+  x3::_val(context).max = x3::_attr(context).max;
+};
+const auto kItemSet = [](auto& context) {
+  x3::_val(context).kind = syntax::Item::Kind::kSet;
+  x3::_val(context).set = std::move(x3::_attr(context));
+};
+const auto kPlainItem = [](auto& context) {
+  syntax::Item& it = x3::_val(context);
+  OpenSet& open = x3::_attr(context);
+  const bool bare = open.tails.empty() && open.set.kind == syntax::Set::Kind::kClass;
+  if (bare) {
+    it.kind = syntax::Item::Kind::kName;
+    it.name = std::move(open.set.name);
+  } else {
+    it.kind = syntax::Item::Kind::kSet;
+    it.set = Fold(std::move(open.set), std::move(open.tails));
+  }
+};
+const auto kJoin = [](auto& context) {
+  syntax::Item& it = x3::_val(context);
+  it.kind = syntax::Item::Kind::kGroup;
+  JoinSingles(it);
+  it.set.span = it.span;
+};
+const auto kIsSet = [](auto& context) { x3::_pass(context) = x3::_val(context).kind == syntax::Item::Kind::kSet; };
+const auto kMoreSet = [](auto& context) {
+  Tails tails;
+  tails.push_back(std::move(x3::_attr(context)));
+  syntax::Item& it = x3::_val(context);
+  it.set = Fold(std::move(it.set), std::move(tails));
+};
+const auto kLabelCount = [](auto& context) {
+  const Scene& scene = SceneOf(context);
+  throw Refusal{scene.Between(x3::_attr(context).begin(), x3::_attr(context).end()), "a labelled item takes no quantity",
+                "take the label or the quantity away: a label stands for one slot"};
+};
+
+const auto gap_sign = Sign(U"...") | Sign(U"…");
+const auto gap_def = gap_sign[Let(&syntax::Item::kind, syntax::Item::Kind::kGap)] >> -Glued(name[To(&syntax::Item::tier)]);
+
+const auto labelled_def =
+    &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >> Glued(Sign(U":")) >>
+    (x3::raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] | Wanted("@a set: a bundle, a literal or a class")) >>
+    -x3::raw[Glued(quantity)][kLabelCount];
+
+const auto bracketed_def = Sign(U"(")[([](auto& context) {
+                             x3::_val(context).kind = syntax::Item::Kind::kGroup;
+                             x3::_val(context).min = 0;
+                           })] > pattern[Push(&syntax::Item::alternatives)] >
+                           (Sign(U")") | Wanted("@an item or ')'")) >> -Glued(quantity[kQuantify]);
+
+const x3::rule<struct BraceBodyRule, syntax::Item> brace_body("a group in { }");
+const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alternatives)] >
+                            *(!Sign(U"||") >> Sign(U"|") > pattern[Push(&syntax::Item::alternatives)]) >
+                            (Sign(U"}") | Wanted("@an item, '|' or '}'")));
+const auto braced_def = brace_body[kWhole] >> x3::eps[kJoin] >>
+                        *(x3::eps[kIsSet] >> set_tail[kMoreSet]) >> -Glued(quantity[kQuantify]);
+
+const auto later_item_def = ((!gap_sign) >> x3::raw[Sign(U".")][NotYet("'.' in a pattern")]) | x3::raw[Sign(U"&")][NotYet("'&'")];
+
+const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
+                        x3::_val(context).kind = syntax::Item::Kind::kBoundary;
+                        x3::_val(context).boundary = x3::_attr(context);
+                      })] |
+                      gap[kWhole] | bracketed[kWhole] | braced[kWhole] | labelled[kWhole] |
+                      (open_set[kPlainItem] >> -Glued(quantity[kQuantify])));
+
+const auto pattern_def = Spanned(+(item[Push(&syntax::Pattern::items)] | later_item));
+
+BOOST_SPIRIT_DEFINE(item, later_item, pattern, labelled, braced, brace_body, bracketed, gap)
+
+// ---- rules ----------------------------------------------------------------------------------------
+
+struct PathRule;
+struct ChangeRule;
+const x3::rule<PathRule, syntax::Path> path("@a path such as X.Place");
+const x3::rule<struct LaterTestRule> later_test("a test");
+const x3::rule<ChangeRule, syntax::Change> change("a change");
+const x3::rule<struct LaterChangeRule> later_change("a change");
+const x3::rule<struct LaterModifierRule> later_modifier("a modifier");
+const x3::rule<struct ModeRule, syntax::Rule::Mode> mode("iterate");
+const x3::rule<struct ClauseRule, syntax::Rule> clause("'where'");
+const x3::rule<struct BodyRule, syntax::Rule> body("a rule");
+const x3::rule<struct ChangeSpreadRule, syntax::Change> spread("spread");
+const x3::rule<struct ChangeDelinkRule, syntax::Change> delink("delink");
+const x3::rule<struct ChangeSetRule, syntax::Change> set_fill("set or fill");
+const x3::rule<struct ChangeDeleteRule, syntax::Change> delete_("delete");
+const x3::rule<struct ChangeInsertRule, syntax::Change> insert("insert");
+
+const Sign kDot(U".");
+const auto path_ahead = &(name >> Glued(kDot >> !kDot));
+const auto member = (Sign(U"+") | minus_sign) >> name;
+const auto path_def = Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
+    (x3::raw[Glued(member)][NotYet("one member of a contour")] | Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
+    -x3::raw[+Glued(kDot >> name)][NotYet("a path through more than one node")] >>
+    -x3::raw[Glued(Sign(U":") >> value)][NotYet("one member of a contour")] >>
+    -x3::raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
+
+const auto test_sign = Sign(U"=") | Sign(U"≠") | Sign(U"!=") | (Word(U"is") >> -Word(U"not")) | Wanted("=, ≠, is or is not");
+const auto later_test_def = path > test_sign > path;
+
+const auto kPaths = path[Push(&syntax::Change::paths)] > *(Sign(U",") > path[Push(&syntax::Change::paths)]);
+const auto spread_def =
+    Word(U"spread")[Let(&syntax::Change::kind, syntax::Change::Kind::kSpread)] >
+    ((path_ahead >> kPaths > Word(U"to") > label[To(&syntax::Change::label)]) |
+     (label >> x3::raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) | Wanted("@a path such as X.Place"));
+const auto delink_def = Word(U"delink")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelink)] >
+                        ((path_ahead >> kPaths) |
+                         (label >> x3::raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
+                         Wanted("@a path such as X.Place"));
+const auto as_other = x3::raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
+const auto set_fill_def =
+    (Word(U"set")[Let(&syntax::Change::kind, syntax::Change::Kind::kSet)] |
+     Word(U"fill")[Let(&syntax::Change::kind, syntax::Change::Kind::kFill)]) >
+    ((path_ahead >> path > as_other) |
+     (label[To(&syntax::Change::label)] >
+      (bundle[To(&syntax::Change::bundle)] | x3::raw[literal][NotYet("'set' to a literal")] | as_other |
+       Wanted("a bundle such as [+nasal]"))) |
+     Wanted("@a label"));
+const auto delete__def = Word(U"delete")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelete)] >
+                        ((path_ahead >> x3::raw[path][NotYet("'delete' of a node")]) |
+                         (label[To(&syntax::Change::label)] >> -x3::raw[Word(U"wholly")][kNotYetWord]) |
+                         Wanted("@a label"));
+const auto kContentSet = [](auto& context) {
+  x3::_val(context).content.kind = syntax::Set::Kind::kBundle;
+  x3::_val(context).content.bundle = std::move(x3::_attr(context));
+  x3::_val(context).content.span = x3::_val(context).content.bundle.span;
+};
+const auto kContentLiteral = [](auto& context) {
+  x3::_val(context).content.kind = syntax::Set::Kind::kLiteral;
+  x3::_val(context).content.literal = std::move(x3::_attr(context));
+  x3::_val(context).content.span = x3::_val(context).content.literal.span;
+};
+const auto floating_value = Sign(U"{") > -(Sign(U"+") | minus_sign) > name > -(Sign(U":") > name) > Sign(U"}");
+const auto insert_def =
+    Word(U"insert")[Let(&syntax::Change::kind, syntax::Change::Kind::kInsert)] >
+    ((&(name >> Glued(Sign(U":"))) >> label[To(&syntax::Change::inserted)] >> Glued(Sign(U":")) >>
+      (literal[kContentLiteral] | bundle[kContentSet] | x3::raw[floating_value][NotYet("'insert' of a floating instance")] |
+       Wanted("a literal or a bundle"))) |
+     x3::raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
+    (Word(U"before") | Word(U"after")[Let(&syntax::Change::before, false)] | Wanted("before or after")) >
+    label[To(&syntax::Change::label)];
+const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
+
+const auto path_or_label = path | label | Wanted("@a label or a path");
+const auto later_change_def = (x3::raw[Word(U"lengthen")][kNotYetWord] > label) |
+                              (x3::raw[Word(U"shorten")][kNotYetWord] > label) |
+                              (x3::raw[Word(U"merge")][kNotYetWord] > path_or_label > path_or_label) |
+                              (x3::raw[Word(U"swap")][kNotYetWord] > label > label) |
+                              (x3::raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
+                              (x3::raw[Word(U"copy")][kNotYetWord] > pattern >
+                               (Word(U"before") | Word(U"after") | Wanted("before or after")) > label);
+
+const auto mode_def = Word(U"iterate") >
+                      (Word(U"rightward")[([](auto& context) { x3::_val(context) = syntax::Rule::Mode::kRightward; })] |
+                       Word(U"leftward")[([](auto& context) { x3::_val(context) = syntax::Rule::Mode::kLeftward; })] |
+                       Wanted("rightward or leftward"));
+const auto tier_or_level = name | Word(U"syllable") | Word(U"foot") | Word(U"mora") | Wanted("@a node, syllable or foot");
+const auto later_modifier_def =
+    (x3::raw[Word(U"on") > tier_or_level][kNotYetWord] >> -(Word(U"over") > set)) |
+    (Word(U"within") > (Word(U"word") | x3::raw[a_domain][NotYet("'within' of a domain other than the word")])) |
+    x3::raw[Word(U"repeat") > number][kNotYetWord] | x3::raw[Word(U"preserving")][kNotYetWord] |
+    x3::raw[Word(U"cutting")][kNotYetWord] | x3::raw[Word(U"derived")][kNotYetWord] |
+    x3::raw[Word(U"sharing") > (Word(U"blocked") | Word(U"free") | Wanted("blocked or free"))][kNotYetWord] |
+    x3::raw[Word(U"prefer") > (Word(U"left") | Word(U"right") | Wanted("left or right"))][kNotYetWord] |
+    x3::raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))][kNotYetWord] |
+    x3::raw[(Word(U"only") | Word(U"except")) > ((Word(U"word") > name) | (name >> -(Word(U"in") > name)) | Wanted("@a tag"))]
+           [kNotYetWord];
+
+const auto kSetMode = [](auto& context) {
+  syntax::Rule& rule = x3::_val(context);
+  const Scene& scene = SceneOf(context);
+  if (rule.mode != syntax::Rule::Mode::kAtOnce)
+    throw Refusal{scene.Between(x3::_where(context).begin(), x3::_where(context).begin()), "'iterate' stands twice in this rule",
+                  "keep one of them"};
+  rule.mode = x3::_attr(context);
+};
+const auto kTakeClause = [](auto& context) {
+  syntax::Rule& rule = x3::_val(context);
+  const syntax::Rule::Mode before = rule.mode;
+  rule = std::move(x3::_attr(context));
+  if (before != syntax::Rule::Mode::kAtOnce) rule.mode = before;
+};
+const auto clause_def =
+    Word(U"where") > pattern[To(&syntax::Rule::where)] >
+    *(change[Push(&syntax::Rule::changes)] | later_change |
+      (x3::raw[Word(U"if")][kNotYetWord] > later_test) |
+      (Word(U"unless") > ((path_ahead >> x3::raw[later_test][NotYet("'unless' with a test")]) | pattern[Push(&syntax::Rule::unless)])) |
+      mode[kSetMode] | later_modifier);
+const auto body_def = *(mode[kSetMode] | later_modifier) >> (clause[kTakeClause] | Wanted("'where'")) >
+                      *(x3::raw[Word(U"otherwise")][kNotYetWord] > clause) >
+                      End("@an item, a condition, a change or a modifier");
+
+BOOST_SPIRIT_DEFINE(path, later_test, change, later_change, later_modifier, mode, clause, body, spread, delink, set_fill, delete_, insert)
+
+// ---- declarations ---------------------------------------------------------------------------------
+
+struct DaughterRule;
+struct TreeLineRule;
+struct SegmentRule;
+struct ValuesRule;
+struct DiacriticRule;
+struct DatumRule;
+const x3::rule<DaughterRule, syntax::Daughter> daughter("@a feature or node");
+const x3::rule<TreeLineRule, syntax::TreeLine> tree_line("@a mother");
+const x3::rule<struct TreeEntryRule, syntax::Tree> tree_entry("a line of the tree");
+const x3::rule<struct ValueRefRule, syntax::ValueRef> value_ref("@a feature");
+const x3::rule<SegmentRule, syntax::SegmentEntry> segment("a symbol");
+const x3::rule<struct WithoutRule, syntax::ValuesIn> without("without");
+const x3::rule<ValuesRule, syntax::ValuesIn> omit_value("@a feature");
+const x3::rule<DiacriticRule, syntax::Diacritic> diacritic("a diacritic");
+const x3::rule<DatumRule, syntax::Datum> datum("a row of data");
+const x3::rule<struct SegmentsHeadRule, syntax::Segments> segments_head("segments");
+const x3::rule<struct SegmentsEntryRule, syntax::Segments> segments_entry("a symbol");
+const x3::rule<struct DiacriticsEntryRule, syntax::Diacritics> diacritics_entry("a diacritic");
+const x3::rule<struct OmitEntryRule, syntax::Omit> omit_entry("@a feature");
+const x3::rule<struct DataEntryRule, syntax::Data> data_entry("a row of data");
+const x3::rule<struct ClassRule, syntax::Class> class_("a class");
+const x3::rule<struct NamedPatternRule, syntax::NamedPattern> named_pattern("a pattern");
+const x3::rule<struct LanguageRule, syntax::Language> language("a language");
+const x3::rule<struct RuleHeadRule, syntax::Rule> rule_head("the name of the rule");
+const x3::rule<struct DataHeadRule, syntax::DataFrom> data_head("data");
+const x3::rule<struct TreeHeadRule> tree_head("tree");
+const x3::rule<struct EmptyHeadRule> empty_head("'{'");
+
+const auto kNameDaughter = To(&syntax::Daughter::name);
+const auto attribute = TimesToken{}[To(&syntax::Daughter::max)] >> -(Word(U"in") > set[To(&syntax::Daughter::room)]) |
+                       Word(U"floating")[Let(&syntax::Daughter::floating, true)] |
+                       Word(U"abstract")[Let(&syntax::Daughter::abstract_, true)];
+const auto many_value = !TimesToken{} >> name[Push(&syntax::Daughter::values)];
+const auto daughter_def = Spanned(((plus_minus[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kBinary)] > feature[kNameDaughter]) |
+     ((Sign(U"•") | Sign(U"*"))[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kStanding)] > node[kNameDaughter]) |
+     (!TimesToken{} >> name[kNameDaughter] >>
+      -(Sign(U":")[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kMany)] > +many_value))) >>
+    *attribute);
+const auto mother = name[Push(&syntax::TreeLine::mothers)] >> Sign(U">");
+const auto kLastDaughter = [](auto& context) {
+  auto& line = x3::_val(context);
+  if (!line.daughters.empty() && line.daughters.back().kind == syntax::Daughter::Kind::kMany)
+    throw Refusal{x3::_attr(context).span, "nothing may follow a node with values on its line",
+                  "put what follows on a line of its own: Mother > " + x3::_attr(context).name.text};
+  line.daughters.push_back(std::move(x3::_attr(context)));
+};
+const auto tree_line_def = Spanned(name[Push(&syntax::TreeLine::mothers)] > Sign(U">") > *(&(name >> Sign(U">")) >> mother) >
+                           +daughter[kLastDaughter] > End("@a daughter, ×2, in, floating, abstract or the end of the line"));
+const auto tree_entry_def = (Word(U"one") >> x3::raw[Word(U"tier") > name][NotYet("'one tier'")] > End("the end of the line")) |
+                            tree_line[Push(&syntax::Tree::lines)] | Wanted("@a mother, as in: root > ±son");
+const auto tree_head_def = -x3::raw[Word(U"from") > StringToken("the name of a tree in double quotes")][NotYet("'tree from'")] >
+                           End("'{'");
+
+auto Reference(syntax::ValueRef::Kind kind) { return Let(&syntax::ValueRef::kind, kind); }
+const auto kNameRef = To(&syntax::ValueRef::name);
+const auto value_ref_def = (plus_minus[Reference(syntax::ValueRef::Kind::kBoth)] > feature[kNameRef]) |
+                           (Sign(U"+")[Reference(syntax::ValueRef::Kind::kPlus)] > feature[kNameRef]) |
+                           (minus_sign[Reference(syntax::ValueRef::Kind::kMinus)] > feature[kNameRef]) |
+                           name[([](auto& context) {
+                             x3::_val(context).kind = syntax::ValueRef::Kind::kBare;
+                             x3::_val(context).name = std::move(x3::_attr(context));
+                           })];
+const auto in_set = Word(U"in") > set[To(&syntax::ValuesIn::in)];
+const auto without_def = Word(U"without") > +value_ref[Push(&syntax::ValuesIn::values)] > -(Word(U"everywhere") | in_set);
+const auto omit_value_def = Spanned(+value_ref[Push(&syntax::ValuesIn::values)] >
+                            (Word(U"everywhere") | in_set | Wanted("@a feature, 'everywhere' or 'in'")));
+const auto segment_def = Spanned(symbol[To(&syntax::SegmentEntry::symbol)] >> -(Sign(U"=") > symbol[To(&syntax::SegmentEntry::like)]) >>
+                         -bundle[To(&syntax::SegmentEntry::bundle)]);
+const auto segments_entry_def = *(without[Push(&syntax::Segments::without)] | segment[Push(&syntax::Segments::entries)]) >
+                                End("a symbol, '=', a bundle or 'without'");
+const auto segments_head_def =
+    -(Word(U"from") > StringToken("the name of an inventory in double quotes")[To(&syntax::Segments::from)]) >
+    -bundle[To(&syntax::Segments::added)] > End("'from', a bundle or '{'");
+const auto diacritic_def = Spanned(symbol[To(&syntax::Diacritic::symbol)] >>
+                           ((bundle[To(&syntax::Diacritic::bundle)] >>
+                             *((Word(U"on") > set[To(&syntax::Diacritic::on)]) | Word(U"surface")[Let(&syntax::Diacritic::surface, true)])) |
+                            (x3::raw[Sign(U"{") > name > -(Sign(U":") > name) > Sign(U"}")][NotYet("a sign for a floating instance")] >>
+                             -((Word(U"before") | Word(U"after")) > (Word(U"syllable") | set | Wanted("@a set")))) |
+                            Wanted("a bundle such as [+nasal]")));
+const auto kPushDiacritic = [](auto& context) {
+  if (!x3::_attr(context).bundle.feats.empty()) x3::_val(context).entries.push_back(std::move(x3::_attr(context)));
+};
+const auto diacritics_entry_def = *diacritic[kPushDiacritic] > End("'on', 'surface' or a diacritic with ◌");
+const auto omit_entry_def = *omit_value[Push(&syntax::Omit::entries)] > End("@a feature, 'everywhere' or 'in'");
+
+const auto later_forms = spelled | spelled_ascii;
+const auto datum_def = Spanned((form[To(&syntax::Datum::underlying)] | x3::raw[later_forms][NotYet("a spelled form in ⟨ ⟩")]) >
+    ((surface[Push(&syntax::Datum::surfaces)] > *(x3::raw[Sign(U"~")][NotYet("'~' between variants")] > surface[Push(&syntax::Datum::surfaces)]) >
+      -(x3::raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface)) |
+     (x3::raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface) | Wanted("a surface form in [ ]")) >
+    -GlossToken{}[To(&syntax::Datum::gloss)]);
+const auto data_entry_def = (+datum[Push(&syntax::Data::rows)] | Wanted("a form such as /kat/")) > End("a form, ~, * or a gloss in ' '");
+const auto data_head_def = -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) >>
+                           -x3::raw[Word(U"comparing") > Word(U"length")][kNotYetWord] > End("'from' or '{'");
+
+const auto class__def = name[To(&syntax::Class::name)] > Sign(U"=") > set[To(&syntax::Class::set)] >
+                       End("or, and, but not, or the end of the class");
+const auto named_pattern_def = name[To(&syntax::NamedPattern::name)] > Sign(U"=") > pattern[To(&syntax::NamedPattern::pattern)] >
+                               End("@an item or the end of the pattern");
+const auto language_def = StringToken("the language's name in double quotes")[To(&syntax::Language::name)] > End("nothing more");
+const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&syntax::Rule::name)] > End("'{'");
+const auto empty_head_def = x3::eps > End("'{'");
+
+BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, segment, without, omit_value, diacritic, datum, segments_head,
+                    segments_entry, diacritics_entry, omit_entry, data_entry, data_head, class_, named_pattern, language, rule_head,
+                    empty_head)
+
+// ---- reading --------------------------------------------------------------------------------------
+
+class Reader {
+ public:
+  Reader(std::string_view text, std::uint32_t file, Diagnostics& diagnostics)
+      : text_(text), file_(file), diagnostics_(diagnostics) {}
+
+  syntax::File Read() {
+    for (const outline::Section& section : outline::Cut(text_, file_, diagnostics_)) ReadSection(section);
+    return std::move(result_);
+  }
+
+ private:
+  // Parses one slice. True if it parsed whole and held nothing of a later release.
+  template <class Rule, class Built>
+  bool Run(const outline::Entry& entry, const Rule& rule, Built& built, const char* remedy) {
+    if (entry.broken) return false;
+    Scene scene;
+    scene.origin = text_.data();
+    scene.file = file_;
+    const char* begin = text_.data() + entry.span.begin;
+    const char* end = text_.data() + entry.span.end;
+    bool parsed = false;
+    try {
+      Iterator first(begin, begin, end);
+      const Iterator last(end, begin, end);
+      parsed = x3::phrase_parse(first, last, x3::with<SceneTag>(scene)[rule], kSkip, built);
+      if (!parsed) Expected(scene, first, last, x3::what(rule), remedy);
+    } catch (const x3::expectation_failure<Iterator>& failure) {
+      Expected(scene, failure.where(), Iterator(end, begin, end), failure.which(), remedy);
+      parsed = false;
+    } catch (const Refusal& refusal) {
+      diagnostics_.Error(Kind::kSyntax, refusal.span, refusal.message, refusal.remedy);
+      parsed = false;
+    } catch (const std::out_of_range&) {  // the iterator met bytes that are no code point
+      diagnostics_.Error(Kind::kNotUtf8, entry.span, "these bytes are not UTF-8", "save the file as UTF-8");
+      parsed = false;
+    }
+    for (const auto& later : scene.later) Later(later.construct, later.span);
+    return parsed && scene.later.empty();
+  }
+
+  void Expected(const Scene& scene, Iterator where, const Iterator& last, std::string wanted, const char* remedy) {
+    while (SkipBlank(where, last)) {
+    }
+    const bool name_fits = !wanted.empty() && wanted[0] == '@';
+    if (name_fits) wanted.erase(0, 1);
+    const std::string bare = PeekBare(where, last);
+    Iterator end = where;
+    if (bare.empty()) {
+      if (end != last) ++end;
+    } else {
+      while (end.base() != where.base() + bare.size()) ++end;
+    }
+    const Span span = scene.Between(where, end);
+    if (name_fits && notation::IsReserved(bare)) {
+      diagnostics_.Error(Kind::kReservedWord, span, "'" + bare + "' is a word of the notation and cannot be a name here",
+                         "put it in double quotes: \"" + bare + "\"");
+      return;
+    }
+    const std::string found = where == last ? "the end" : "'" + Bytes(where, end) + "'";
+    diagnostics_.Error(Kind::kSyntax, span, "expected " + wanted + ", found " + found, remedy);
+  }
+
+  void Later(const std::string& construct, Span span) {
+    const bool word = construct.find_first_of(" '") == std::string::npos;
+    const std::string quoted = word ? "'" + construct + "'" : construct;
+    diagnostics_.Error(Kind::kNotSupportedYet, span, quoted + " is not supported yet",
+                       "leave it out: grammar/notation.md lists what works in this release");
+    result_.unsupported.push_back({construct, span});
+  }
+
+  bool NeedsBlock(const outline::Section& section, const char* remedy) {
+    if (section.has_block) return true;
+    const Span end{file_, section.whole.end, section.whole.end};
+    if (!section.head.broken) diagnostics_.Error(Kind::kSyntax, end, "expected '{' after '" + section.word + "'", remedy);
+    return false;
+  }
+
+  template <class Built, class Rule>
+  void ReadEntries(const outline::Section& section, const Rule& rule, Built& built, const char* remedy) {
+    for (const outline::Entry& entry : section.entries) Run(entry, rule, built, remedy);
+  }
+
+  void ReadSection(const outline::Section& section) {
+    switch (section.kind) {
+      case outline::SectionKind::kLanguage: return ReadLine(section, language, syntax::Language(), "write: language \"Velmari\"");
+      case outline::SectionKind::kTree: return ReadTree(section);
+      case outline::SectionKind::kSegments: return ReadSegments(section, syntax::Segments::Kind::kSegments);
+      case outline::SectionKind::kArchisegments: return ReadSegments(section, syntax::Segments::Kind::kArchisegments);
+      case outline::SectionKind::kAllophones: return ReadSegments(section, syntax::Segments::Kind::kAllophones);
+      case outline::SectionKind::kDiacritics:
+        return ReadBlock(section, diacritics_entry, syntax::Diacritics(), "an entry reads: ◌̃ [+nasal] on [+syll]");
+      case outline::SectionKind::kOmit: return ReadBlock(section, omit_entry, syntax::Omit(), "an entry reads: -voice in [-son]");
+      case outline::SectionKind::kClass: return ReadLine(section, class_, syntax::Class(), "write: class V = [+syll]");
+      case outline::SectionKind::kPattern:
+        return ReadLine(section, named_pattern, syntax::NamedPattern(), "write: pattern Coda = [-syll] #");
+      case outline::SectionKind::kRule: return ReadRule(section);
+      case outline::SectionKind::kData: return ReadData(section);
+      case outline::SectionKind::kLater:
+        Later(section.word, section.keyword);
+        result_.unsupported.back().span = section.keyword;
+        result_.tops.push_back(syntax::Unsupported{section.word, section.whole});
+        return;
+    }
+  }
+
+  template <class Rule, class Built>
+  void ReadLine(const outline::Section& section, const Rule& rule, Built built, const char* remedy) {
+    // A declaration that holds something of a later release is kept, so that uses of its name are not errors too.
+    const std::size_t before = result_.unsupported.size();
+    const bool whole = Run(section.head, rule, built, remedy);
+    if (!whole && result_.unsupported.size() == before) return;
+    built.span = section.whole;
+    result_.tops.push_back(std::move(built));
+  }
+
+  template <class Rule, class Built>
+  void ReadBlock(const outline::Section& section, const Rule& rule, Built built, const char* remedy) {
+    x3::unused_type nothing;
+    Run(section.head, empty_head, nothing, "the block begins right after the word");
+    if (!NeedsBlock(section, remedy)) return;
+    ReadEntries(section, rule, built, remedy);
+    built.span = section.whole;
+    result_.tops.push_back(std::move(built));
+  }
+
+  void ReadTree(const outline::Section& section) {
+    x3::unused_type nothing;
+    const char* remedy = "a line reads: root > Place > •Labial •Coronal";
+    const bool plain = Run(section.head, tree_head, nothing, remedy);
+    if (!section.has_block && !plain) return;
+    if (!NeedsBlock(section, remedy)) return;
+    syntax::Tree tree;
+    ReadEntries(section, tree_entry, tree, remedy);
+    tree.span = section.whole;
+    result_.tops.push_back(std::move(tree));
+  }
+
+  void ReadSegments(const outline::Section& section, syntax::Segments::Kind kind) {
+    const char* remedy = "an entry reads: t̪ = t [+distributed]";
+    syntax::Segments segments;
+    Run(section.head, segments_head, segments, "write: segments from \"ipa\" { p t k }");
+    if (!NeedsBlock(section, remedy)) return;
+    segments.kind = kind;
+    ReadEntries(section, segments_entry, segments, remedy);
+    segments.span = section.whole;
+    result_.tops.push_back(std::move(segments));
+  }
+
+  void ReadRule(const outline::Section& section) {
+    const char* remedy = "write: rule \"voicing\" { where X:[+voice] Y:[-son]  spread X.voice to Y }";
+    syntax::Rule head, rule;
+    const bool named = Run(section.head, rule_head, head, remedy);
+    if (!section.has_block) {
+      if (named) NeedsBlock(section, remedy);
+      return;
+    }
+    if (!section.closed && !section.body.broken) return;  // its end is not known: reported by the outline
+    if (!Run(section.body, body, rule, remedy) || !named) {
+      result_.tops.push_back(syntax::Unsupported{"rule \"" + head.name.text + "\"", section.whole});
+      return;
+    }
+    if (rule.changes.empty()) {
+      diagnostics_.Error(Kind::kSyntax, section.keyword, "rule \"" + head.name.text + "\" changes nothing",
+                         "add a change: spread, delink, set, fill, insert or delete");
+      return;
+    }
+    rule.name = std::move(head.name);
+    rule.span = section.whole;
+    result_.tops.push_back(std::move(rule));
+  }
+
+  void ReadData(const outline::Section& section) {
+    const char* remedy = "a row reads: /tilun-pa/ [tilumpa] 'on the rope'";
+    syntax::DataFrom from;
+    if (!Run(section.head, data_head, from, "write: data from \"forms.tsv\", or data { /a/ [b] }") && !section.has_block) return;
+    if (!from.path.text.empty()) {
+      if (section.has_block) Later("columns named in braces", section.body.span);
+      from.span = section.whole;
+      result_.tops.push_back(std::move(from));
+      return;
+    }
+    if (!NeedsBlock(section, remedy)) return;
+    syntax::Data data;
+    ReadEntries(section, data_entry, data, remedy);
+    data.span = section.whole;
+    result_.tops.push_back(std::move(data));
+  }
+
+  std::string_view text_;
+  std::uint32_t file_;
+  Diagnostics& diagnostics_;
+  syntax::File result_;
+};
+
+}  // namespace
+
+syntax::File Parse(const SourceMap& sources, std::uint32_t file, Diagnostics& diagnostics) {
+  Diagnostics found;
+  syntax::File result = Reader(sources.text(file), file, found).Read();
+  // The outline speaks before the entries do: bring the messages into the order of the file.
+  std::vector<Diagnostic> sorted = found.all();
+  std::stable_sort(sorted.begin(), sorted.end(),
+                   [](const Diagnostic& a, const Diagnostic& b) { return a.span.begin < b.span.begin; });
+  for (Diagnostic& diagnostic : sorted) diagnostics.Add(std::move(diagnostic));
+  return result;
+}
+
+}  // namespace tiersmith
