@@ -1,0 +1,13 @@
+# compile: statistics; the machine file comes later.
+source "$(dirname "$0")/common.inc"
+
+run compile "$velmari" --stats
+is_code 0; has_out 'segment  rules  states'
+run compile "$velmari" --stats --format json
+is_code 0; has_out '"states": '
+run compile "$velmari" -o "$t/x.machine"
+is_code 2; has_err 'comes with a later release'
+[[ ! -e "$t/x.machine" ]] || fail "no file expected"
+run compile "$velmari"
+is_code 0; has_out '5 rules'
+done_testing
