@@ -282,11 +282,12 @@ class Cutter {
 
   void CutHead(const Token& keyword, const SectionWord& word, Section& section) {
     int depth = 0;
+    bool after_comparing = false;  // `data comparing length`: here `length` begins nothing
     for (;;) {
       const Token token = Next();
       const bool opens = token.kind == Token::Kind::kOpen && word.block && depth == 0;
       const bool outside = token.first_on_line && token.column <= keyword.column && !opens;
-      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr &&
+      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr && !after_comparing &&
                          (token.first_on_line || (word.joined && depth <= 0));
       if (token.kind == Token::Kind::kEnd || outside || other) {
         Back(token);
@@ -306,6 +307,7 @@ class Cutter {
         }
         --depth;
       }
+      after_comparing = Text(token) == "comparing";
       Deep(depth, token, section.head);
       Extend(section.head, token);
     }
@@ -382,7 +384,7 @@ class Cutter {
 
   void ReportUnclosed(const Token& brace, const Section& section) {
     diagnostics_.Error(Kind::kUnclosedBlock, SpanOf(brace), "the block of this '" + section.word + "' is not closed",
-                       "add '}' where it ends; a section word at the start of a line closed it here");
+                       "add '}' where it ends");
   }
 
   std::string_view text_;

@@ -33,6 +33,7 @@ struct Scene {
   const char* origin = nullptr;
   std::uint32_t file = 0;
   std::vector<syntax::Unsupported> later;
+  int later_changes = 0;  // in the clause being read
 
   Span Between(Iterator begin, Iterator end) const {
     return {file, static_cast<std::uint32_t>(begin.base() - origin), static_cast<std::uint32_t>(end.base() - origin)};
@@ -116,8 +117,8 @@ struct SkipParser : x3::parser<SkipParser> {
   using attribute_type = x3::unused_type;
   static bool const has_attribute = false;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context&, RContext&, Attribute&) const {
-    return SkipBlank(first, last);
+  bool parse(Iterator& place, const Iterator& last, const Context&, RContext&, Attribute&) const {
+    return SkipBlank(place, last);
   }
 };
 
@@ -128,11 +129,12 @@ struct Word : x3::parser<Word> {
   const char32_t* text;
   explicit constexpr Word(const char32_t* t) : text(t) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     if (!MatchText(i, last, text) || (i != last && notation::IsNameCharacter(*i))) return false;
-    first = i;
+    place = i;
     return true;
   }
 };
@@ -143,9 +145,12 @@ struct Sign : x3::parser<Sign> {
   const char32_t* text;
   explicit constexpr Sign(const char32_t* t) : text(t) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
-    return MatchText(first, last, text);
+    if (!MatchText(first, last, text)) return false;
+    place = first;
+    return true;
   }
 };
 
@@ -156,8 +161,8 @@ struct Wanted : x3::parser<Wanted> {
   const char* what;
   explicit constexpr Wanted(const char* w) : what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator&, const Context&, RContext&, Attribute&) const {
-    boost::throw_exception(x3::expectation_failure<Iterator>(first, what));
+  bool parse(Iterator& place, const Iterator&, const Context&, RContext&, Attribute&) const {
+    boost::throw_exception(x3::expectation_failure<Iterator>(place, what));
   }
 };
 
@@ -168,7 +173,8 @@ struct End : x3::parser<End> {
   const char* what;
   explicit constexpr End(const char* w) : what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     return first == last;
   }
@@ -181,7 +187,8 @@ struct NameToken : Token<NameToken> {
   bool in_bundle;
   explicit constexpr NameToken(const char* w, bool bundle = false) : what(w), in_bundle(bundle) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     syntax::Name name;
@@ -192,7 +199,7 @@ struct NameToken : Token<NameToken> {
       while (i.base() != first.base() + name.text.size()) ++i;
     }
     name.span = SceneOf(context).Between(first, i);
-    first = i;
+    place = i;
     x3::traits::move_to(std::move(name), attribute);
     return true;
   }
@@ -203,13 +210,14 @@ struct StringToken : Token<StringToken> {
   const char* what;
   explicit constexpr StringToken(const char* w) : what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     syntax::Name name;
     if (!MatchString(i, last, name.text)) return false;
     name.span = SceneOf(context).Between(first, i);
-    first = i;
+    place = i;
     x3::traits::move_to(std::move(name), attribute);
     return true;
   }
@@ -219,17 +227,18 @@ struct StringToken : Token<StringToken> {
 struct SymbolToken : Token<SymbolToken> {
   using attribute_type = syntax::Name;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     syntax::Name name;
     if (!MatchString(i, last, name.text)) {
       while (i != last && !Ends(i, last)) ++i;
       name.text = Bytes(first, i);
-      if (name.text.empty() || name.text == "without") return false;
+      if (name.text.empty() || name.text == "surface" || notation::IsReserved(name.text)) return false;
     }
     name.span = SceneOf(context).Between(first, i);
-    first = i;
+    place = i;
     x3::traits::move_to(std::move(name), attribute);
     return true;
   }
@@ -247,7 +256,8 @@ struct RawToken : Token<RawToken> {
   const char* what;
   constexpr RawToken(char32_t o, char32_t c, const char* w) : open(o), close(c), what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || *first != open) return false;
     Iterator i = first;
@@ -255,7 +265,7 @@ struct RawToken : Token<RawToken> {
     while (i != last && *i != close && *i != U'\n') ++i;
     if (i == last || *i != close) return false;
     syntax::FormText form{Bytes(begin, i), open != U'/' && open != U'[', SceneOf(context).Between(begin, i)};
-    first = ++i;
+    place = ++i;
     x3::traits::move_to(std::move(form), attribute);
     return true;
   }
@@ -265,7 +275,8 @@ struct RawToken : Token<RawToken> {
 struct GlossToken : Token<GlossToken> {
   using attribute_type = syntax::Name;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || *first != U'\'') return false;
     Iterator i = first;
@@ -276,7 +287,7 @@ struct GlossToken : Token<GlossToken> {
       if (*i == U'\'') {
         if (next == last || (*next != U'\'' && !notation::IsNameStart(*next))) {
           gloss.span = SceneOf(context).Between(first, next);
-          first = next;
+          place = next;
           x3::traits::move_to(std::move(gloss), attribute);
           return true;
         }
@@ -292,15 +303,17 @@ struct GlossToken : Token<GlossToken> {
 struct BoundaryToken : Token<BoundaryToken> {
   using attribute_type = syntax::Item::Boundary;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     using Boundary = syntax::Item::Boundary;
     static constexpr std::pair<const char32_t*, Boundary> kSigns[] = {
         {U"-", Boundary::kMorpheme}, {U"\u2212", Boundary::kMorpheme}, {U"\u2013", Boundary::kMorpheme},
         {U"=", Boundary::kClitic},   {U"#", Boundary::kWord},          {U"\u2016", Boundary::kPhrase},
         {U"||", Boundary::kPhrase}};
+    Iterator first = place;
     x3::skip_over(first, last, context);
     for (const auto& [sign, boundary] : kSigns) {
       if (!MatchText(first, last, sign)) continue;
+      place = first;
       x3::traits::move_to(Boundary(boundary), attribute);
       return true;
     }
@@ -317,8 +330,8 @@ struct Quantity {
 struct QuantityToken : Token<QuantityToken> {
   using attribute_type = Quantity;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
-    Iterator i = first;
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator i = place;
     Quantity quantity;
     const bool ascii = i != last && *i == U'_';
     if (ascii ? !Number(++i, last, U'0', quantity.min) : !Number(i, last, U'\u2080', quantity.min)) return false;
@@ -329,12 +342,12 @@ struct QuantityToken : Token<QuantityToken> {
     } else {
       Superscript(i, last, quantity.max);
     }
-    const Span span = SceneOf(context).Between(first, i);
+    const Span span = SceneOf(context).Between(place, i);
     if (quantity.max == 0 || (quantity.max > 0 && quantity.max < quantity.min))
       throw Refusal{span, "this quantity allows nothing", "write the smaller number below and the larger above: X₀², X_0^2"};
     if (quantity.min > kMost || quantity.max > kMost)
       throw Refusal{span, "a quantity goes up to 99", "leave the upper number away: X₀ is any number of X"};
-    first = i;
+    place = i;
     x3::traits::move_to(Quantity(quantity), attribute);
     return true;
   }
@@ -366,13 +379,14 @@ struct QuantityToken : Token<QuantityToken> {
 struct NumberToken : Token<NumberToken> {
   using attribute_type = int;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     int value = 0;
     for (; i != last && *i >= U'0' && *i <= U'9'; ++i) value = std::min(value * 10 + static_cast<int>(*i - U'0'), 10000);
     if (i == first) return false;
-    first = i;
+    place = i;
     x3::traits::move_to(int(value), attribute);
     return true;
   }
@@ -382,7 +396,8 @@ struct NumberToken : Token<NumberToken> {
 struct TimesToken : Token<TimesToken> {
   using attribute_type = int;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
     const bool sign = MatchText(i, last, U"×");
@@ -396,7 +411,7 @@ struct TimesToken : Token<TimesToken> {
     if (i == digits || (i != last && notation::IsNameCharacter(*i))) return false;
     if (value < 1 || value > 9)
       throw Refusal{SceneOf(context).Between(first, i), "a mother may hold 1 to 9 of a node", "write ×2 for a contour of two"};
-    first = i;
+    place = i;
     x3::traits::move_to(int(value), attribute);
     return true;
   }
@@ -407,10 +422,11 @@ struct VariableToken : x3::parser<VariableToken> {
   using attribute_type = x3::unused_type;
   static bool const has_attribute = false;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+    Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || !notation::IsGreekVariable(*first)) return false;
-    ++first;
+    place = ++first;
     return true;
   }
 };
@@ -420,10 +436,41 @@ struct NameAhead : x3::parser<NameAhead> {
   using attribute_type = x3::unused_type;
   static bool const has_attribute = false;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& first, const Iterator& last, const Context&, RContext&, Attribute&) const {
-    return first != last && notation::IsNameStart(*first);
+  bool parse(Iterator& place, const Iterator& last, const Context&, RContext&, Attribute&) const {
+    return place != last && notation::IsNameStart(*place);
   }
 };
+
+// The stretch a parser matches, without the blanks before it (and, unlike x3::raw, none skipped when it fails: the
+// spans of what stands before must not reach over them).
+template <class Subject>
+struct RawDirective : x3::unary_parser<Subject, RawDirective<Subject>> {
+  using attribute_type = x3::raw_attribute_type;
+  static bool const has_attribute = true;
+  static bool const handles_container = false;
+  explicit constexpr RawDirective(const Subject& inner) : x3::unary_parser<Subject, RawDirective<Subject>>(inner) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext& rcontext, Attribute& attribute) const {
+    Iterator first = place;
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    if (!this->subject.parse(i, last, context, rcontext, x3::unused)) return false;
+    x3::traits::move_to(first, i, attribute);
+    place = i;
+    return true;
+  }
+  template <class Context, class RContext>
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext& rcontext, x3::unused_type) const {
+    return this->subject.parse(place, last, context, rcontext, x3::unused);
+  }
+};
+struct RawMaker {
+  template <class Subject>
+  constexpr auto operator[](const Subject& inner) const {
+    return RawDirective<typename x3::extension::as_parser<Subject>::value_type>(x3::as_parser(inner));
+  }
+};
+constexpr RawMaker raw{};
 
 }  // namespace
 }  // namespace tiersmith
@@ -471,6 +518,26 @@ struct get_info<tiersmith::NumberToken> {
   using result_type = std::string;
   std::string operator()(const tiersmith::NumberToken&) const { return "a number"; }
 };
+template <class Subject, class Action>
+struct get_info<action<Subject, Action>> {
+  using result_type = std::string;
+  std::string operator()(const action<Subject, Action>& parser) const { return what(parser.subject); }
+};
+template <class Subject>
+struct get_info<plus<Subject>> {
+  using result_type = std::string;
+  std::string operator()(const plus<Subject>& parser) const { return what(parser.subject); }
+};
+template <class Subject>
+struct get_info<tiersmith::RawDirective<Subject>> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::RawDirective<Subject>& parser) const { return what(parser.subject); }
+};
+template <class Subject>
+struct get_info<no_skip_directive<Subject>> {
+  using result_type = std::string;
+  std::string operator()(const no_skip_directive<Subject>& parser) const { return what(parser.subject); }
+};
 template <>
 struct get_info<tiersmith::End> {
   using result_type = std::string;
@@ -496,7 +563,7 @@ template <class M, class V>
 auto Let(M member, V value) {
   return [member, value](auto& context) { x3::_val(context).*member = value; };
 }
-// Notes a construct of a later release; used on x3::raw[..].
+// Notes a construct of a later release; used on raw[..].
 auto NotYet(const char* construct) {
   return [construct](auto& context) {
     Scene& scene = SceneOf(context);
@@ -519,7 +586,7 @@ const auto kSpan = [](auto& context) {
 // The definition of a rule whose value has a span.
 template <class Parser>
 auto Spanned(const Parser& parser) {
-  return x3::raw[parser][kSpan];
+  return raw[parser][kSpan];
 }
 
 const SkipParser kSkip{};
@@ -590,15 +657,15 @@ const auto a_domain = Word(U"morpheme") | Word(U"stem") | Word(U"host") | Word(U
                       Word(U"foot") | Wanted("a domain: syllable, foot, morpheme, stem, host, word or phrase");
 
 const auto later_feat_def =
-    x3::raw[-(Sign(U"+") | minus_sign) >> agreement][NotYet("agreement by α β γ δ")] |
-    x3::raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))][kNotYetWord] |
-    (x3::raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) |
-    x3::raw[Word(U"floating")][NotYet("a floating item")] | x3::raw[Word(U"linked")][kNotYetWord] |
-    (x3::raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
-    x3::raw[Word(U"long") | Word(U"short")][kNotYetWord] |
-    x3::raw[Word(U"half") > (Word(U"first") | Word(U"second") | Wanted("first or second"))][kNotYetWord] |
-    x3::raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
-    x3::raw[prosodic_word | prosodic_word_2][kNotYetWord];
+    raw[-(Sign(U"+") | minus_sign) >> agreement][NotYet("agreement by α β γ δ")] |
+    raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))][kNotYetWord] |
+    (raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) |
+    raw[Word(U"floating")][NotYet("a floating item")] | raw[Word(U"linked")][kNotYetWord] |
+    (raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
+    raw[Word(U"long") | Word(U"short")][kNotYetWord] |
+    raw[Word(U"half") > (Word(U"first") | Word(U"second") | Wanted("first or second"))][kNotYetWord] |
+    raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
+    raw[prosodic_word | prosodic_word_2][kNotYetWord];
 
 auto Named(syntax::Feat::Kind kind) {
   return [kind](auto& context) {
@@ -612,7 +679,7 @@ const auto a_value = name[Push(&syntax::Feat::values)] |
 const auto feat_def = Spanned((Sign(U"+") > feature[Named(syntax::Feat::Kind::kPlus)]) |
                       (minus_sign > feature[Named(syntax::Feat::Kind::kMinus)]) |
                       (Word(U"no") > feature[Named(syntax::Feat::Kind::kNo)] >>
-                       -(x3::raw[Sign(U":") > value][NotYet("'no' with a value")])) |
+                       -(raw[Sign(U":") > value][NotYet("'no' with a value")])) |
                       (bundle_name[Named(syntax::Feat::Kind::kBears)] >>
                        -(Sign(U":")[Let(&syntax::Feat::kind, syntax::Feat::Kind::kValue)] > a_value)));
 
@@ -655,7 +722,7 @@ const auto atom_def = Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one
                         x3::_val(context).kind = syntax::Set::Kind::kLiteral;
                         x3::_val(context).literal = std::move(x3::_attr(context));
                       })] |
-                      x3::raw[spelled][NotYet("⟨ ⟩ in a pattern")] |
+                      raw[spelled][NotYet("⟨ ⟩ in a pattern")] |
                       (Sign(U"{") > set[kAlternative] > *(!Sign(U"||") >> Sign(U"|") > set[kAlternative]) >
                        (Sign(U"}")[kCloseAlternatives] | Wanted("'|' or '}'"))) |
                       name_alone[([](auto& context) {
@@ -699,6 +766,8 @@ const x3::rule<struct GapRule, syntax::Item> gap("a gap");
 bool IsSingle(const syntax::Pattern& alternative) {
   if (alternative.items.size() != 1) return false;
   const syntax::Item& only = alternative.items.front();
+  // Items of later releases have left no trace but the length of the pattern.
+  if (only.span.begin != alternative.span.begin || only.span.end != alternative.span.end) return false;
   const bool slot = only.kind == syntax::Item::Kind::kSet || only.kind == syntax::Item::Kind::kName;
   return slot && !only.label && only.min == 1 && only.max == 1;
 }
@@ -767,8 +836,8 @@ const auto gap_def = gap_sign[Let(&syntax::Item::kind, syntax::Item::Kind::kGap)
 
 const auto labelled_def =
     &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >> Glued(Sign(U":")) >>
-    (x3::raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] | Wanted("@a set: a bundle, a literal or a class")) >>
-    -x3::raw[Glued(quantity)][kLabelCount];
+    (raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] | Wanted("@a set: a bundle, a literal or a class")) >>
+    -raw[Glued(quantity)][kLabelCount];
 
 const auto bracketed_def = Sign(U"(")[([](auto& context) {
                              x3::_val(context).kind = syntax::Item::Kind::kGroup;
@@ -783,7 +852,7 @@ const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alt
 const auto braced_def = brace_body[kWhole] >> x3::eps[kJoin] >>
                         *(x3::eps[kIsSet] >> set_tail[kMoreSet]) >> -Glued(quantity[kQuantify]);
 
-const auto later_item_def = ((!gap_sign) >> x3::raw[Sign(U".")][NotYet("'.' in a pattern")]) | x3::raw[Sign(U"&")][NotYet("'&'")];
+const auto later_item_def = ((!gap_sign) >> raw[Sign(U".")][NotYet("'.' in a pattern")]) | raw[Sign(U"&")][NotYet("'&'")];
 
 const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
                         x3::_val(context).kind = syntax::Item::Kind::kBoundary;
@@ -805,7 +874,11 @@ const x3::rule<struct LaterTestRule> later_test("a test");
 const x3::rule<ChangeRule, syntax::Change> change("a change");
 const x3::rule<struct LaterChangeRule> later_change("a change");
 const x3::rule<struct LaterModifierRule> later_modifier("a modifier");
-const x3::rule<struct ModeRule, syntax::Rule::Mode> mode("iterate");
+struct ModeAt {
+  syntax::Rule::Mode mode = syntax::Rule::Mode::kAtOnce;
+  Span span;
+};
+const x3::rule<struct ModeRule, ModeAt> mode("iterate");
 const x3::rule<struct ClauseRule, syntax::Rule> clause("'where'");
 const x3::rule<struct BodyRule, syntax::Rule> body("a rule");
 const x3::rule<struct ChangeSpreadRule, syntax::Change> spread("spread");
@@ -818,10 +891,10 @@ const Sign kDot(U".");
 const auto path_ahead = &(name >> Glued(kDot >> !kDot));
 const auto member = (Sign(U"+") | minus_sign) >> name;
 const auto path_def = Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
-    (x3::raw[Glued(member)][NotYet("one member of a contour")] | Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
-    -x3::raw[+Glued(kDot >> name)][NotYet("a path through more than one node")] >>
-    -x3::raw[Glued(Sign(U":") >> value)][NotYet("one member of a contour")] >>
-    -x3::raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
+    (raw[Glued(member)][NotYet("one member of a contour")] | Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
+    -raw[+Glued(kDot >> name)][NotYet("a path through more than one node")] >>
+    -raw[Glued(Sign(U":")) > value][NotYet("one member of a contour")] >>
+    -raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
 
 const auto test_sign = Sign(U"=") | Sign(U"≠") | Sign(U"!=") | (Word(U"is") >> -Word(U"not")) | Wanted("=, ≠, is or is not");
 const auto later_test_def = path > test_sign > path;
@@ -830,23 +903,23 @@ const auto kPaths = path[Push(&syntax::Change::paths)] > *(Sign(U",") > path[Pus
 const auto spread_def =
     Word(U"spread")[Let(&syntax::Change::kind, syntax::Change::Kind::kSpread)] >
     ((path_ahead >> kPaths > Word(U"to") > label[To(&syntax::Change::label)]) |
-     (label >> x3::raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) | Wanted("@a path such as X.Place"));
+     (label >> raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) | Wanted("@a path such as X.Place"));
 const auto delink_def = Word(U"delink")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelink)] >
                         ((path_ahead >> kPaths) |
-                         (label >> x3::raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
+                         (label >> raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
                          Wanted("@a path such as X.Place"));
-const auto as_other = x3::raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
+const auto as_other = raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
 const auto set_fill_def =
     (Word(U"set")[Let(&syntax::Change::kind, syntax::Change::Kind::kSet)] |
      Word(U"fill")[Let(&syntax::Change::kind, syntax::Change::Kind::kFill)]) >
     ((path_ahead >> path > as_other) |
      (label[To(&syntax::Change::label)] >
-      (bundle[To(&syntax::Change::bundle)] | x3::raw[literal][NotYet("'set' to a literal")] | as_other |
+      (bundle[To(&syntax::Change::bundle)] | raw[literal][NotYet("'set' to a literal")] | as_other |
        Wanted("a bundle such as [+nasal]"))) |
      Wanted("@a label"));
 const auto delete__def = Word(U"delete")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelete)] >
-                        ((path_ahead >> x3::raw[path][NotYet("'delete' of a node")]) |
-                         (label[To(&syntax::Change::label)] >> -x3::raw[Word(U"wholly")][kNotYetWord]) |
+                        ((path_ahead >> raw[path][NotYet("'delete' of a node")]) |
+                         (label[To(&syntax::Change::label)] >> -raw[Word(U"wholly")][kNotYetWord]) |
                          Wanted("@a label"));
 const auto kContentSet = [](auto& context) {
   x3::_val(context).content.kind = syntax::Set::Kind::kBundle;
@@ -862,45 +935,42 @@ const auto floating_value = Sign(U"{") > -(Sign(U"+") | minus_sign) > name > -(S
 const auto insert_def =
     Word(U"insert")[Let(&syntax::Change::kind, syntax::Change::Kind::kInsert)] >
     ((&(name >> Glued(Sign(U":"))) >> label[To(&syntax::Change::inserted)] >> Glued(Sign(U":")) >>
-      (literal[kContentLiteral] | bundle[kContentSet] | x3::raw[floating_value][NotYet("'insert' of a floating instance")] |
+      (literal[kContentLiteral] | bundle[kContentSet] | raw[floating_value][NotYet("'insert' of a floating instance")] |
        Wanted("a literal or a bundle"))) |
-     x3::raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
+     raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
     (Word(U"before") | Word(U"after")[Let(&syntax::Change::before, false)] | Wanted("before or after")) >
     label[To(&syntax::Change::label)];
 const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
 
 const auto path_or_label = path | label | Wanted("@a label or a path");
-const auto later_change_def = (x3::raw[Word(U"lengthen")][kNotYetWord] > label) |
-                              (x3::raw[Word(U"shorten")][kNotYetWord] > label) |
-                              (x3::raw[Word(U"merge")][kNotYetWord] > path_or_label > path_or_label) |
-                              (x3::raw[Word(U"swap")][kNotYetWord] > label > label) |
-                              (x3::raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
-                              (x3::raw[Word(U"copy")][kNotYetWord] > pattern >
+const auto later_change_def = (raw[Word(U"lengthen")][kNotYetWord] > label) |
+                              (raw[Word(U"shorten")][kNotYetWord] > label) |
+                              (raw[Word(U"merge")][kNotYetWord] > path_or_label > path_or_label) |
+                              (raw[Word(U"swap")][kNotYetWord] > label > label) |
+                              (raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
+                              (raw[Word(U"copy")][kNotYetWord] > pattern >
                                (Word(U"before") | Word(U"after") | Wanted("before or after")) > label);
 
-const auto mode_def = Word(U"iterate") >
-                      (Word(U"rightward")[([](auto& context) { x3::_val(context) = syntax::Rule::Mode::kRightward; })] |
-                       Word(U"leftward")[([](auto& context) { x3::_val(context) = syntax::Rule::Mode::kLeftward; })] |
-                       Wanted("rightward or leftward"));
+const auto mode_def = Spanned(Word(U"iterate") > (Word(U"rightward")[Let(&ModeAt::mode, syntax::Rule::Mode::kRightward)] |
+                                                  Word(U"leftward")[Let(&ModeAt::mode, syntax::Rule::Mode::kLeftward)] |
+                                                  Wanted("rightward or leftward")));
 const auto tier_or_level = name | Word(U"syllable") | Word(U"foot") | Word(U"mora") | Wanted("@a node, syllable or foot");
 const auto later_modifier_def =
-    (x3::raw[Word(U"on") > tier_or_level][kNotYetWord] >> -(Word(U"over") > set)) |
-    (Word(U"within") > (Word(U"word") | x3::raw[a_domain][NotYet("'within' of a domain other than the word")])) |
-    x3::raw[Word(U"repeat") > number][kNotYetWord] | x3::raw[Word(U"preserving")][kNotYetWord] |
-    x3::raw[Word(U"cutting")][kNotYetWord] | x3::raw[Word(U"derived")][kNotYetWord] |
-    x3::raw[Word(U"sharing") > (Word(U"blocked") | Word(U"free") | Wanted("blocked or free"))][kNotYetWord] |
-    x3::raw[Word(U"prefer") > (Word(U"left") | Word(U"right") | Wanted("left or right"))][kNotYetWord] |
-    x3::raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))][kNotYetWord] |
-    x3::raw[(Word(U"only") | Word(U"except")) > ((Word(U"word") > name) | (name >> -(Word(U"in") > name)) | Wanted("@a tag"))]
+    (raw[Word(U"on") > tier_or_level][kNotYetWord] >> -(Word(U"over") > set)) |
+    (Word(U"within") > (Word(U"word") | raw[a_domain][NotYet("'within' of a domain other than the word")])) |
+    raw[Word(U"repeat") > number][kNotYetWord] | raw[Word(U"preserving")][kNotYetWord] |
+    raw[Word(U"cutting")][kNotYetWord] | raw[Word(U"derived")][kNotYetWord] |
+    raw[Word(U"sharing") > (Word(U"blocked") | Word(U"free") | Wanted("blocked or free"))][kNotYetWord] |
+    raw[Word(U"prefer") > (Word(U"left") | Word(U"right") | Wanted("left or right"))][kNotYetWord] |
+    raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))][kNotYetWord] |
+    raw[(Word(U"only") | Word(U"except")) > ((Word(U"word") > name) | (name >> -(Word(U"in") > name)) | Wanted("@a tag"))]
            [kNotYetWord];
 
 const auto kSetMode = [](auto& context) {
   syntax::Rule& rule = x3::_val(context);
-  const Scene& scene = SceneOf(context);
   if (rule.mode != syntax::Rule::Mode::kAtOnce)
-    throw Refusal{scene.Between(x3::_where(context).begin(), x3::_where(context).begin()), "'iterate' stands twice in this rule",
-                  "keep one of them"};
-  rule.mode = x3::_attr(context);
+    throw Refusal{x3::_attr(context).span, "'iterate' stands twice in this rule", "keep one of them"};
+  rule.mode = x3::_attr(context).mode;
 };
 const auto kTakeClause = [](auto& context) {
   syntax::Rule& rule = x3::_val(context);
@@ -908,14 +978,21 @@ const auto kTakeClause = [](auto& context) {
   rule = std::move(x3::_attr(context));
   if (before != syntax::Rule::Mode::kAtOnce) rule.mode = before;
 };
+const auto kCountChange = [](auto& context) { ++SceneOf(context).later_changes; };
+const auto kHasChange = [](auto& context) {
+  int& later_changes = SceneOf(context).later_changes;
+  x3::_pass(context) = !x3::_val(context).changes.empty() || later_changes > 0;
+  later_changes = 0;
+};
 const auto clause_def =
     Word(U"where") > pattern[To(&syntax::Rule::where)] >
-    *(change[Push(&syntax::Rule::changes)] | later_change |
-      (x3::raw[Word(U"if")][kNotYetWord] > later_test) |
-      (Word(U"unless") > ((path_ahead >> x3::raw[later_test][NotYet("'unless' with a test")]) | pattern[Push(&syntax::Rule::unless)])) |
-      mode[kSetMode] | later_modifier);
+    *(change[Push(&syntax::Rule::changes)] | later_change[kCountChange] |
+      (raw[Word(U"if")][kNotYetWord] > later_test) |
+      (Word(U"unless") > ((path_ahead >> raw[later_test][NotYet("'unless' with a test")]) | pattern[Push(&syntax::Rule::unless)])) |
+      mode[kSetMode] | later_modifier) >
+    (x3::eps[kHasChange] | Wanted("@an item or a change: spread, delink, set, fill, insert or delete"));
 const auto body_def = *(mode[kSetMode] | later_modifier) >> (clause[kTakeClause] | Wanted("'where'")) >
-                      *(x3::raw[Word(U"otherwise")][kNotYetWord] > clause) >
+                      *(raw[Word(U"otherwise")][kNotYetWord] > clause) >
                       End("@an item, a condition, a change or a modifier");
 
 BOOST_SPIRIT_DEFINE(path, later_test, change, later_change, later_modifier, mode, clause, body, spread, delink, set_fill, delete_, insert)
@@ -942,10 +1019,10 @@ const x3::rule<struct SegmentsEntryRule, syntax::Segments> segments_entry("a sym
 const x3::rule<struct DiacriticsEntryRule, syntax::Diacritics> diacritics_entry("a diacritic");
 const x3::rule<struct OmitEntryRule, syntax::Omit> omit_entry("@a feature");
 const x3::rule<struct DataEntryRule, syntax::Data> data_entry("a row of data");
-const x3::rule<struct ClassRule, syntax::Class> class_("a class");
-const x3::rule<struct NamedPatternRule, syntax::NamedPattern> named_pattern("a pattern");
-const x3::rule<struct LanguageRule, syntax::Language> language("a language");
-const x3::rule<struct RuleHeadRule, syntax::Rule> rule_head("the name of the rule");
+const x3::rule<struct ClassRule, syntax::Class> class_("@a name");
+const x3::rule<struct NamedPatternRule, syntax::NamedPattern> named_pattern("@a name");
+const x3::rule<struct LanguageRule, syntax::Language> language("the language's name in double quotes");
+const x3::rule<struct RuleHeadRule, syntax::Rule> rule_head("the rule's name in double quotes");
 const x3::rule<struct DataHeadRule, syntax::DataFrom> data_head("data");
 const x3::rule<struct TreeHeadRule> tree_head("tree");
 const x3::rule<struct EmptyHeadRule> empty_head("'{'");
@@ -970,9 +1047,9 @@ const auto kLastDaughter = [](auto& context) {
 };
 const auto tree_line_def = Spanned(name[Push(&syntax::TreeLine::mothers)] > Sign(U">") > *(&(name >> Sign(U">")) >> mother) >
                            +daughter[kLastDaughter] > End("@a daughter, ×2, in, floating, abstract or the end of the line"));
-const auto tree_entry_def = (Word(U"one") >> x3::raw[Word(U"tier") > name][NotYet("'one tier'")] > End("the end of the line")) |
+const auto tree_entry_def = (Word(U"one") >> raw[Word(U"tier") > name][NotYet("'one tier'")] > End("the end of the line")) |
                             tree_line[Push(&syntax::Tree::lines)] | Wanted("@a mother, as in: root > ±son");
-const auto tree_head_def = -x3::raw[Word(U"from") > StringToken("the name of a tree in double quotes")][NotYet("'tree from'")] >
+const auto tree_head_def = -raw[Word(U"from") > StringToken("the name of a tree in double quotes")][NotYet("'tree from'")] >
                            End("'{'");
 
 auto Reference(syntax::ValueRef::Kind kind) { return Let(&syntax::ValueRef::kind, kind); }
@@ -980,7 +1057,7 @@ const auto kNameRef = To(&syntax::ValueRef::name);
 const auto value_ref_def = (plus_minus[Reference(syntax::ValueRef::Kind::kBoth)] > feature[kNameRef]) |
                            (Sign(U"+")[Reference(syntax::ValueRef::Kind::kPlus)] > feature[kNameRef]) |
                            (minus_sign[Reference(syntax::ValueRef::Kind::kMinus)] > feature[kNameRef]) |
-                           name[([](auto& context) {
+                           (name >> !(Sign(U"=") | Sign(U"[")))[([](auto& context) {
                              x3::_val(context).kind = syntax::ValueRef::Kind::kBare;
                              x3::_val(context).name = std::move(x3::_attr(context));
                            })];
@@ -998,24 +1075,29 @@ const auto segments_head_def =
 const auto diacritic_def = Spanned(symbol[To(&syntax::Diacritic::symbol)] >>
                            ((bundle[To(&syntax::Diacritic::bundle)] >>
                              *((Word(U"on") > set[To(&syntax::Diacritic::on)]) | Word(U"surface")[Let(&syntax::Diacritic::surface, true)])) |
-                            (x3::raw[Sign(U"{") > name > -(Sign(U":") > name) > Sign(U"}")][NotYet("a sign for a floating instance")] >>
+                            (raw[Sign(U"{") > name > -(Sign(U":") > name) > Sign(U"}")][NotYet("a sign for a floating instance")] >>
                              -((Word(U"before") | Word(U"after")) > (Word(U"syllable") | set | Wanted("@a set")))) |
                             Wanted("a bundle such as [+nasal]")));
 const auto kPushDiacritic = [](auto& context) {
-  if (!x3::_attr(context).bundle.feats.empty()) x3::_val(context).entries.push_back(std::move(x3::_attr(context)));
+  if (x3::_attr(context).bundle.span.end > 0) x3::_val(context).entries.push_back(std::move(x3::_attr(context)));
 };
 const auto diacritics_entry_def = *diacritic[kPushDiacritic] > End("'on', 'surface' or a diacritic with ◌");
 const auto omit_entry_def = *omit_value[Push(&syntax::Omit::entries)] > End("@a feature, 'everywhere' or 'in'");
 
 const auto later_forms = spelled | spelled_ascii;
-const auto datum_def = Spanned((form[To(&syntax::Datum::underlying)] | x3::raw[later_forms][NotYet("a spelled form in ⟨ ⟩")]) >
-    ((surface[Push(&syntax::Datum::surfaces)] > *(x3::raw[Sign(U"~")][NotYet("'~' between variants")] > surface[Push(&syntax::Datum::surfaces)]) >
-      -(x3::raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface)) |
-     (x3::raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface) | Wanted("a surface form in [ ]")) >
+const auto datum_def = Spanned((form[To(&syntax::Datum::underlying)] | raw[later_forms][NotYet("a spelled form in ⟨ ⟩")]) >
+    ((surface[Push(&syntax::Datum::surfaces)] > *(raw[Sign(U"~")][NotYet("'~' between variants")] > surface[Push(&syntax::Datum::surfaces)]) >
+      -(raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface)) |
+     (raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface) | Wanted("a surface form in [ ]")) >
     -GlossToken{}[To(&syntax::Datum::gloss)]);
-const auto data_entry_def = (+datum[Push(&syntax::Data::rows)] | Wanted("a form such as /kat/")) > End("a form, ~, * or a gloss in ' '");
-const auto data_head_def = -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) >>
-                           -x3::raw[Word(U"comparing") > Word(U"length")][kNotYetWord] > End("'from' or '{'");
+// Rows that a later construct left without one of their two sides have been reported.
+const auto kPushDatum = [](auto& context) {
+  syntax::Datum& row = x3::_attr(context);
+  if (row.underlying.span.end > 0 && !row.surfaces.empty()) x3::_val(context).rows.push_back(std::move(row));
+};
+const auto data_entry_def = (+datum[kPushDatum] | Wanted("a form such as /kat/")) > End("a form, ~, * or a gloss in ' '");
+const auto data_head_def = -((Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) |
+                             raw[Word(U"comparing") > Word(U"length")][kNotYetWord]) > End("'from' or '{'");
 
 const auto class__def = name[To(&syntax::Class::name)] > Sign(U"=") > set[To(&syntax::Class::set)] >
                        End("or, and, but not, or the end of the class");
@@ -1089,6 +1171,10 @@ class Reader {
                          "put it in double quotes: \"" + bare + "\"");
       return;
     }
+    if (!bare.empty() && MatchText(end, last, U".") && end != last && notation::IsNameStart(*end))
+      remedy = "a path such as X.Place follows spread or delink: is the word before it one of these?";
+    end = Iterator(where);
+    while (end.base() != text_.data() + span.end) ++end;
     const std::string found = where == last ? "the end" : "'" + Bytes(where, end) + "'";
     diagnostics_.Error(Kind::kSyntax, span, "expected " + wanted + ", found " + found, remedy);
   }
@@ -1182,6 +1268,7 @@ class Reader {
   void ReadRule(const outline::Section& section) {
     const char* remedy = "write: rule \"voicing\" { where X:[+voice] Y:[-son]  spread X.voice to Y }";
     syntax::Rule head, rule;
+    const std::size_t before = result_.unsupported.size();
     const bool named = Run(section.head, rule_head, head, remedy);
     if (!section.has_block) {
       if (named) NeedsBlock(section, remedy);
@@ -1189,12 +1276,8 @@ class Reader {
     }
     if (!section.closed && !section.body.broken) return;  // its end is not known: reported by the outline
     if (!Run(section.body, body, rule, remedy) || !named) {
-      result_.tops.push_back(syntax::Unsupported{"rule \"" + head.name.text + "\"", section.whole});
-      return;
-    }
-    if (rule.changes.empty()) {
-      diagnostics_.Error(Kind::kSyntax, section.keyword, "rule \"" + head.name.text + "\" changes nothing",
-                         "add a change: spread, delink, set, fill, insert or delete");
+      if (result_.unsupported.size() > before)
+        result_.tops.push_back(syntax::Unsupported{"rule \"" + head.name.text + "\"", section.whole});
       return;
     }
     rule.name = std::move(head.name);
