@@ -35,69 +35,82 @@ const char* NameOf(Failure failure) {
 // Two ways with the same slots for the labels are one match.
 struct Match {
   LabelSlots labels;
+  bool judged = false;  // the rest is known; judging costs, and a sweep asks for few
   Failure failure = Failure::kNone;
   bool changes = false;  // alone, does it change anything
-  bool nearest = false;  // some way of it has no nearer slot in any gap
 };
 
 class Matches {
  public:
   Matches(const View& view, const Rule& rule) : view_(view), rule_(rule) {
     const std::vector<Way> ways = FindWays(view, rule);
-    if (ways.empty()) return;
     boost::container::small_vector<int, 16> match_of;
     for (const Way& way : ways) match_of.push_back(Find(way.labels));
+    // A match stands if some way of it has no nearer slot in any of its gaps.
+    boost::container::small_vector<char, 16> nearest(matches_.size(), 0);
     for (std::size_t i = 0; i < ways.size(); ++i) {
-      if (!HasNearer(ways, match_of, ways[i])) matches_[match_of[i]].nearest = true;
+      if (!nearest[match_of[i]]) nearest[match_of[i]] = !HasNearer(ways, match_of, ways[i]);
     }
-    matches_.erase(
-        std::remove_if(matches_.begin(), matches_.end(), [](const Match& match) { return !match.nearest; }),
-        matches_.end());
+    std::size_t kept = 0;
+    for (std::size_t i = 0; i < matches_.size(); ++i) {
+      if (!nearest[i]) continue;
+      if (kept != i) matches_[kept] = matches_[i];
+      ++kept;
+    }
+    matches_.resize(kept);
   }
 
-  const std::vector<Match>& all() const { return matches_; }
+  std::size_t size() const { return matches_.size(); }
+  const LabelSlots& labels(std::size_t i) const { return matches_[i].labels; }
+  const Match& Judged(std::size_t i) {
+    Match& match = matches_[i];
+    if (!match.judged) Judge(&match);
+    return match;
+  }
 
  private:
   int Find(const LabelSlots& labels) {
     for (std::size_t i = 0; i < matches_.size(); ++i) {
       if (matches_[i].labels == labels) return static_cast<int>(i);
     }
-    matches_.push_back(Judged(labels));
+    matches_.emplace_back();
+    matches_.back().labels = labels;
     return static_cast<int>(matches_.size()) - 1;
   }
 
-  Match Judged(const LabelSlots& labels) const {
-    Match match;
-    match.labels = labels;
-    if (WithoutRoom(view_, rule_, labels) != nullptr) {
-      match.failure = Failure::kCapacity;
-      return match;
+  void Judge(Match* match) const {
+    match->judged = true;
+    if (WithoutRoom(view_, rule_, match->labels) != nullptr) {
+      match->failure = Failure::kCapacity;
+      return;
     }
     Requests alone(view_, rule_);
-    alone.Add(labels);
-    match.changes = alone.Changes();
-    if (match.changes && alone.CrossesAlone()) match.failure = Failure::kCrossing;
-    return match;
+    alone.Add(match->labels);
+    match->changes = alone.Changes();
+    if (match->changes && alone.CrossesAlone()) match->failure = Failure::kCrossing;
   }
 
   // In some gap with a changed end: would the rule apply at a slot nearer to the other end?
   bool HasNearer(const std::vector<Way>& ways, const boost::container::small_vector<int, 16>& match_of,
-                 const Way& way) const {
+                 const Way& way) {
     for (const Way::Gap& gap : way.gaps) {
-      if (gap.item->tier) continue;
-      if (!gap.left_changes && !gap.right_changes) continue;
+      if (gap.item->tier || (!gap.left_changes && !gap.right_changes)) continue;
       for (std::size_t i = 0; i < ways.size(); ++i) {
-        if (matches_[match_of[i]].failure != Failure::kNone) continue;
-        for (const Way::Gap& other : ways[i].gaps) {
-          if (other.item != gap.item) continue;
-          const bool inside_left = other.left > gap.left && other.left < gap.right;
-          const bool inside_right = other.right > gap.left && other.right < gap.right;
-          if (gap.left_changes && other.right == gap.right && inside_left) return true;
-          if (gap.right_changes && other.left == gap.left && inside_right) return true;
+        const auto nearer = [&](const Way::Gap& other) { return IsNearer(other, gap); };
+        if (std::any_of(ways[i].gaps.begin(), ways[i].gaps.end(), nearer) &&
+            Judged(match_of[i]).failure == Failure::kNone) {
+          return true;
         }
       }
     }
     return false;
+  }
+
+  static bool IsNearer(const Way::Gap& other, const Way::Gap& gap) {
+    if (other.item != gap.item) return false;
+    const auto inside = [&](int slot) { return slot > gap.left && slot < gap.right; };
+    return (gap.left_changes && other.right == gap.right && inside(other.left)) ||
+           (gap.right_changes && other.left == gap.left && inside(other.right));
   }
 
   const View& view_;
@@ -112,7 +125,7 @@ class Run {
 
   Application AtOnce() {
     const View view(grammar_, graph_);
-    const Matches matches(view, rule_);
+    Matches matches(view, rule_);
     Apply(view, matches, nullptr);
     return Finished();
   }
@@ -124,7 +137,7 @@ class Run {
         view_ = std::make_unique<View>(grammar_, graph_);
         matches_ = std::make_unique<Matches>(*view_, rule_);
       }
-      if (matches_->all().empty()) break;  // and so it will stay
+      if (matches_->size() == 0) break;  // and so it will stay
       if (Apply(*view_, *matches_, &visit)) {
         matches_.reset();
         view_.reset();
@@ -157,18 +170,19 @@ class Run {
     return visits;
   }
 
-  bool IsAt(const View& view, const Match& match, const Visit& visit) const {
-    const int slot = match.labels[rule_.changes.front().target];
+  bool IsAt(const View& view, const LabelSlots& labels, const Visit& visit) const {
+    const int slot = labels[rule_.changes.front().target];
     if (slot < 0) return false;
     return visit.root == kNone ? view.slot(slot) == visit.slot : view.root(slot) == visit.root;
   }
 
   // Carries out the matches together (those at the visit, if there is one). True if the form changed.
-  bool Apply(const View& view, const Matches& matches, const Visit* visit) {
+  bool Apply(const View& view, Matches& matches, const Visit* visit) {
     Requests requests(view, rule_);
     bool some = false;
-    for (const Match& match : matches.all()) {
-      if (visit != nullptr && !IsAt(view, match, *visit)) continue;
+    for (std::size_t i = 0; i < matches.size(); ++i) {
+      if (visit != nullptr && !IsAt(view, matches.labels(i), *visit)) continue;
+      const Match& match = matches.Judged(i);
       if (match.failure != Failure::kNone) {
         ++result_.blocked[NameOf(match.failure)];
         if (notes_) NoteBlocked(view, rule_, match.labels, NameOf(match.failure), &result_.notes);
