@@ -73,6 +73,7 @@ struct DataRow {
   std::string gloss;
   std::string source;
   Span span;  // of the underlying form, in the grammar or the TSV
+  std::vector<Span> surface_spans;  // beside surfaces
 };
 
 struct Grammar {

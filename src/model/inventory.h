@@ -22,7 +22,18 @@ struct Symbol {
   FeatureTree underlying;       // full, less what `omit` takes: what the symbol means in a form
   bool in_underlying = true;    // may stand in underlying forms
   int diacritics = 0;           // how many beyond the base
+  bool completes = true;        // may be chosen by Completion: not archisegments, nor what is made from them
+  int base = -1;                // kComposite: the listed symbol under the diacritics
+  std::vector<int> marks;       // kComposite: indices into Inventory::marks, ascending
   std::vector<FeatureTree> slot_borne;  // instances on the slot (tones), written by diacritics
+  Span span;
+};
+
+// A declared diacritic.
+struct Mark {
+  std::string text;     // NFC, without ◌
+  bool before = false;  // written before its base: ⁿ◌
+  bool surface = false;
   Span span;
 };
 
@@ -36,6 +47,7 @@ class Inventory {
   // Listed symbols first (segments, archisegments, allophones in order of declaration), then composites.
   std::vector<Symbol> symbols;
   std::vector<Literal> literals;
+  std::vector<Mark> marks;      // in order of declaration
 
   // What a tree is spelled by. Exactly one symbol: `symbol`; otherwise -1 with the candidates (none: no symbol;
   // several: undecided).
@@ -62,12 +74,16 @@ class Inventory {
     std::vector<bool> takes;  // per symbol: does `omit` list this value for it
   };
   std::vector<OmitEntry> omitted;
+  std::vector<bool> standing;  // per node of the tree: a class node that is not pruned when bare
 
  private:
   struct TreeHash {
     std::size_t operator()(const FeatureTree& t) const { return Hash(t); }
   };
+  Spelling Complete(const FeatureTree& root) const;
   mutable std::unordered_map<FeatureTree, Spelling, TreeHash> spellings_;
+  mutable std::vector<std::vector<int>> tiers_;  // symbols that complete, by number of diacritics; filled by Spell
+  mutable std::size_t tiered_ = 0;
 };
 
 }  // namespace tiersmith

@@ -31,7 +31,7 @@ struct Token {
   }
 };
 
-// Reads forms over one inventory. Building it costs time; keep it.
+// Reads forms over one inventory. Building it costs time; keep it. Not thread-safe.
 class Reader {
  public:
   explicit Reader(const Grammar& grammar);

@@ -1,0 +1,434 @@
+// Reading and writing forms. See text.h.
+//
+// Example: "ba:t-a" over p t b a is b, a, length, t, boundary, a; its form has one root on the second and third slot.
+// Does not handle: floats, tags, marks of prosody and tone, spelling rules (an error says so).
+// Tested by tests/unit/model/text_test.cc.
+#include "model/text.h"
+
+#include <algorithm>
+#include <set>
+#include <sstream>
+#include <unordered_map>
+
+#include "base/utf8.h"
+#include "model/character_names.h"
+#include "model/library.h"
+#include "model/normal_text.h"
+#include "model/symbol_trie.h"
+
+namespace tiersmith {
+namespace {
+
+Boundary BoundaryOf(char32_t code) {
+  switch (code) {
+    case U'-':
+      return Boundary::kMorpheme;
+    case U'=':
+      return Boundary::kClitic;
+    case U'#':
+    case U' ':
+      return Boundary::kWord;
+    case U'\u2016':
+      return Boundary::kPhrase;
+    default:
+      return Boundary::kNone;
+  }
+}
+
+std::set<std::string> WordsOf(const std::string& text) {
+  std::istringstream stream(text);
+  std::set<std::string> words;
+  for (std::string word; stream >> word;) words.insert(word);
+  return words;
+}
+
+}  // namespace
+
+struct Reader::Impl {
+  const Grammar* grammar = nullptr;
+  SymbolTrie trie;
+  mutable NormalText text;                             // kept between calls: no allocation on the good path
+  std::vector<std::pair<std::u32string, int>> marks;   // declared diacritics that follow their base
+  std::vector<Form> underlying, surface;               // the pool of one slot, per symbol
+
+  const Inventory& inventory() const { return grammar->inventory; }
+  const Symbol& symbol(int id) const { return grammar->inventory.symbols[static_cast<std::size_t>(id)]; }
+
+  bool Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const;
+  bool Allowed(int symbol, Side side) const;
+  int WithMarksAfterLength(int symbol, std::size_t* position) const;
+  const std::pair<std::u32string, int>* MarkAt(std::size_t position) const;
+
+  bool Fail(std::size_t unit, Kind kind, std::string message, std::string remedy, TextError* error) const;
+  bool FailSymbol(int id, std::size_t unit, std::size_t end, Side side, TextError* error) const;
+  bool FailUnknown(std::size_t unit, TextError* error) const;
+  std::string Nearest(std::size_t unit) const;
+};
+
+Reader::Reader(const Grammar& grammar) : impl_(new Impl) {
+  impl_->grammar = &grammar;
+  const Inventory& inventory = grammar.inventory;
+  for (std::size_t i = 0; i < inventory.symbols.size(); ++i) {
+    const Symbol& symbol = inventory.symbols[i];
+    impl_->trie.Add(symbol.text, static_cast<int>(i));
+    for (const bool is_underlying : {true, false}) {
+      Form form;
+      AddContent(form, is_underlying ? symbol.underlying : symbol.full);
+      (is_underlying ? impl_->underlying : impl_->surface).push_back(std::move(form));
+    }
+  }
+  for (std::size_t i = 0; i < inventory.marks.size(); ++i) {
+    if (!inventory.marks[i].before) impl_->marks.emplace_back(Normalise(inventory.marks[i].text), static_cast<int>(i));
+  }
+}
+
+Reader::~Reader() { delete impl_; }
+
+bool Reader::Read(std::string_view text, Side side, std::vector<Token>* tokens, TextError* error) const {
+  return impl_->Read(text, side, tokens, error);
+}
+
+bool Reader::Impl::Allowed(int id, Side side) const {
+  const Symbol& s = symbol(id);
+  return side == Side::kUnderlying ? s.in_underlying : s.completes;
+}
+
+bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const {
+  tokens->clear();
+  text.Assign(typed);
+  const NormalText::Unit* units = text.units.data();
+  const std::size_t size = text.units.size();
+  std::size_t i = 0;
+  while (i < size) {
+    const SymbolTrie::Match match = trie.Longest(units, i, size);
+    if (match.symbol >= 0) {
+      if (!Allowed(match.symbol, side)) return FailSymbol(match.symbol, i, match.end, side, error);
+      tokens->push_back({Token::Kind::kSymbol, match.symbol, Boundary::kNone});
+      i = match.end;
+      continue;
+    }
+    const char32_t code = units[i].code;
+    if (code == kLengthSign) {
+      if (tokens->empty() || tokens->back().kind == Token::Kind::kBoundary) {
+        return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long", error);
+      }
+      ++i;
+      // Marks may stand behind the length sign: aː̃ is ãː.
+      std::size_t owner = tokens->size();
+      while ((*tokens)[owner - 1].kind == Token::Kind::kLength) --owner;
+      const int marked = WithMarksAfterLength((*tokens)[owner - 1].symbol, &i);
+      if (!Allowed(marked, side)) return FailSymbol(marked, i - 1, i, side, error);
+      (*tokens)[owner - 1].symbol = marked;
+      tokens->push_back({Token::Kind::kLength, -1, Boundary::kNone});
+      continue;
+    }
+    Boundary boundary = BoundaryOf(code);
+    std::size_t end = i + 1;
+    if (code == U'|' && end < size && units[end].code == U'|') {
+      boundary = Boundary::kPhrase;
+      ++end;
+    }
+    if (boundary == Boundary::kNone) return FailUnknown(i, error);
+    while (code == U' ' && end < size && units[end].code == U' ') ++end;
+    tokens->push_back({Token::Kind::kBoundary, -1, boundary});
+    i = end;
+  }
+  return true;
+}
+
+const std::pair<std::u32string, int>* Reader::Impl::MarkAt(std::size_t position) const {
+  for (const auto& mark : marks) {
+    if (mark.first.size() > text.units.size() - position) continue;
+    bool same = true;
+    for (std::size_t k = 0; k < mark.first.size(); ++k) same = same && text.units[position + k].code == mark.first[k];
+    if (same) return &mark;
+  }
+  return nullptr;
+}
+
+int Reader::Impl::WithMarksAfterLength(int id, std::size_t* position) const {
+  if (marks.empty()) return id;
+  std::string written = symbol(id).text;
+  std::size_t end = *position;
+  while (end < text.units.size()) {
+    const auto* mark = MarkAt(end);
+    if (mark == nullptr) break;
+    written += ToUtf8(mark->first);
+    end += mark->first.size();
+  }
+  if (end == *position) return id;
+  NormalText cluster;
+  cluster.Assign(written);
+  const SymbolTrie::Match match = trie.Longest(cluster.units.data(), 0, cluster.units.size());
+  if (match.symbol < 0 || match.end != cluster.units.size()) return id;  // the mark is then reported where it stands
+  *position = end;
+  return match.symbol;
+}
+
+// ---- errors -----------------------------------------------------------------------------------------
+
+bool Reader::Impl::Fail(std::size_t unit, Kind kind, std::string message, std::string remedy, TextError* error) const {
+  error->kind = kind;
+  error->offset = text.units[unit].begin;
+  error->length = text.units[unit].end - text.units[unit].begin;
+  error->message = std::move(message);
+  error->remedy = std::move(remedy);
+  return false;
+}
+
+bool Reader::Impl::FailSymbol(int id, std::size_t unit, std::size_t end, Side side, TextError* error) const {
+  const Symbol& s = symbol(id);
+  const std::string text_of = s.text;
+  if (side == Side::kUnderlying) {
+    Fail(unit, Kind::kBadForm, "'" + text_of + "' does not stand in underlying forms: it is surface only",
+         "write the segment it is made from, or list " + text_of + " in `segments`", error);
+  } else {
+    Fail(unit, Kind::kBadForm, "'" + text_of + "' does not stand in surface forms: it is an archisegment",
+         "write the segment it comes out as", error);
+  }
+  error->length = text.units[end - 1].end - error->offset;
+  return false;
+}
+
+bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
+  const char32_t code = text.units[unit].code;
+  switch (code) {
+    case U'.':
+    case U'\u02C8':
+    case U'\u02CC':
+      return Fail(unit, Kind::kNotSupportedYet, "marks of stress and syllables (ˈ ˌ .) are not read by this release",
+                  "leave them out", error);
+    case U'{':
+      return Fail(unit, Kind::kNotSupportedYet, "floating instances {..} are not read by this release",
+                  "leave the float out", error);
+    case U'@':
+    case U'\u221A':
+      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release", "leave the tag out", error);
+    default:
+      break;
+  }
+  // A declared diacritic that this base may not bear is no unknown character, though the pair is no symbol.
+  if (const auto* mark = MarkAt(unit); mark != nullptr && unit > 0) {
+    std::size_t base = unit;
+    while (base > 0 && (IsLeaning(text.units[base].code) || text.units[base].code == kLengthSign)) --base;
+    std::u32string written;
+    int count = 0;
+    for (std::size_t i = base; i < text.units.size() && (i == base || MarkAt(i) != nullptr); ++i) {
+      written += text.units[i].code;
+      count += i > base ? 1 : 0;
+    }
+    const std::string shown = SymbolKey(ToUtf8(written));
+    if (count > 2) {
+      return Fail(unit, Kind::kBadForm, "'" + shown + "' carries more than two diacritics",
+                  "list " + shown + " in `segments`, or use it in the grammar's data or rules", error);
+    }
+    return Fail(unit, Kind::kBadForm, "'" + shown + "' is no symbol: ◌" + ToUtf8(mark->first) + " may not stand on that base",
+                "change the diacritic's `on`, or list " + shown + " in `segments`", error);
+  }
+  const std::string shown = IsMark(code) ? "◌" + ToUtf8(std::u32string(1, code)) : ToUtf8(std::u32string(1, code));
+  const std::string nearest = Nearest(unit);
+  std::string remedy = nearest.empty() ? "" : "did you mean '" + nearest + "'? ";
+  remedy += IsLeaning(code) ? "declare it in `diacritics`, or list the symbol it is part of in `segments`"
+                            : "or list it in `segments` or `allophones`";
+  if (nearest.empty() && !IsLeaning(code)) remedy = "list it in `segments` or `allophones`";
+  return Fail(unit, Kind::kUnknownCharacter,
+              "'" + shown + "' (" + CodePointName(code) + ", " + CharacterName(code) + ") is in no symbol of the grammar", remedy,
+              error);
+}
+
+// The listed symbol that looks most like the character: the same letter in another case or with other marks, else the
+// one whose Unicode name shares most words with it.
+std::string Reader::Impl::Nearest(std::size_t unit) const {
+  const char32_t code = text.units[unit].code;
+  if (IsMark(code)) {
+    // Base and mark: perhaps a symbol with another mark on the same base.
+    for (const Symbol& s : inventory().symbols) {
+      const std::u32string normal = Normalise(s.text);
+      if (unit > 0 && normal.size() > 1 && normal[0] == text.units[unit - 1].code && IsMark(normal[1])) return s.text;
+    }
+    return "";
+  }
+  const std::set<std::string> wanted = WordsOf(CharacterName(code));
+  std::string best;
+  double best_score = 0.55;  // LATIN SMALL LETTER alone is no likeness
+  for (const Symbol& s : inventory().symbols) {
+    if (s.kind == Symbol::Kind::kComposite) continue;
+    const std::u32string normal = Normalise(s.text);
+    const std::set<std::string> words = WordsOf(CharacterName(normal[0]));
+    std::size_t common = 0;
+    for (const std::string& word : words) common += wanted.count(word);
+    const double all = static_cast<double>(words.size() + wanted.size()) - static_cast<double>(common);
+    const double score = static_cast<double>(common) / all - (normal.size() > 1 ? 0.01 : 0);
+    if (score > best_score) {
+      best_score = score;
+      best = s.text;
+    }
+  }
+  return best;
+}
+
+// ---- tokens to forms --------------------------------------------------------------------------------
+
+Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
+  const std::vector<Form>& pools = side == Side::kUnderlying ? impl_->underlying : impl_->surface;
+  std::size_t size = tokens.size();
+  for (const Token& token : tokens) {
+    if (token.kind == Token::Kind::kSymbol) size += pools[static_cast<std::size_t>(token.symbol)].instances.size();
+  }
+  Form form;
+  form.instances.reserve(size);
+  form.items.reserve(tokens.size());
+  InstanceId root = 0;
+  for (const Token& token : tokens) {
+    if (token.kind == Token::Kind::kBoundary) {
+      form.items.push_back({FormItem::Kind::kBoundary, token.boundary, 0});
+      continue;
+    }
+    const InstanceId slot = static_cast<InstanceId>(form.instances.size());
+    form.instances.push_back({kSlotNode, 0, {}});
+    form.items.push_back({FormItem::Kind::kSlot, Boundary::kNone, slot});
+    if (token.kind == Token::Kind::kSymbol) {
+      root = static_cast<InstanceId>(form.instances.size());
+      for (const Instance& instance : pools[static_cast<std::size_t>(token.symbol)].instances) {
+        form.instances.push_back(instance);
+        for (InstanceId& daughter : form.instances.back().daughters) daughter += root;
+      }
+    }
+    form.instances[slot].daughters.assign(1, root);
+  }
+  return form;
+}
+
+// ---- forms to text ----------------------------------------------------------------------------------
+namespace {
+
+// Writes symbols, ː for further slots of a root that stand directly after it. `boundaries`: those with a sign of their
+// own in `sign`. Returns false at the first root `spell` gives nothing for.
+template <typename Spell, typename Sign>
+bool Write(const Form& form, Spell spell, Sign sign, std::string* text) {
+  std::int64_t before = -1;
+  for (const FormItem& item : form.items) {
+    switch (item.kind) {
+      case FormItem::Kind::kFloat:
+        break;
+      case FormItem::Kind::kBoundary: {
+        const char* written = sign(item.boundary);
+        if (*written != '\0') before = -1;
+        *text += written;
+        break;
+      }
+      case FormItem::Kind::kSlot: {
+        const std::int64_t root = RootOf(form, item);
+        if (root < 0) break;
+        if (root == before) {
+          *text += "ː";
+        } else if (!spell(static_cast<InstanceId>(root))) {
+          return false;
+        }
+        before = root;
+        break;
+      }
+    }
+  }
+  return true;
+}
+
+const char* SurfaceSign(Boundary boundary) {
+  switch (boundary) {
+    case Boundary::kNone:
+    case Boundary::kMorpheme:
+    case Boundary::kClitic:
+      return "";
+    case Boundary::kWord:
+      return " ";
+    case Boundary::kPhrase:
+      return "‖";
+  }
+  return "";
+}
+
+const char* TypedSign(Boundary boundary) {
+  switch (boundary) {
+    case Boundary::kNone:
+      return "";
+    case Boundary::kMorpheme:
+      return "-";
+    case Boundary::kClitic:
+      return "=";
+    case Boundary::kWord:
+      return "#";
+    case Boundary::kPhrase:
+      return "‖";
+  }
+  return "";
+}
+
+}  // namespace
+
+bool WriteForm(const Grammar& grammar, const Form& form, std::string* text, FeatureTree* no_symbol) {
+  text->clear();
+  const auto spell = [&](InstanceId root) {
+    FeatureTree content = ContentOf(form, root);
+    const int symbol = grammar.inventory.Spell(content).symbol;
+    if (symbol < 0) {
+      if (no_symbol != nullptr) *no_symbol = std::move(content);
+      return false;
+    }
+    *text += grammar.inventory.symbols[static_cast<std::size_t>(symbol)].text;
+    return true;
+  };
+  return Write(form, spell, SurfaceSign, text);
+}
+
+std::string DescribeForm(const Grammar& grammar, const Form& form) {
+  std::string text;
+  const auto describe = [&](InstanceId root) {
+    text += grammar.inventory.Describe(ContentOf(form, root), grammar.tree);
+    return true;
+  };
+  Write(form, describe, TypedSign, &text);
+  return text;
+}
+
+// ---- comparison -------------------------------------------------------------------------------------
+
+std::string ComparisonKey(std::string_view surface) {
+  NormalText text;
+  text.Assign(surface);
+  std::u32string result, cluster;
+  const auto flush = [&] {
+    // Diacritics are a set.
+    std::size_t tail = cluster.size();
+    while (tail > 1 && IsLeaning(cluster[tail - 1]) && cluster[tail - 1] != kTie) --tail;
+    std::sort(cluster.begin() + static_cast<std::ptrdiff_t>(tail), cluster.end());
+    result += cluster;
+  };
+  int length = 0;
+  const auto close = [&] {
+    if (cluster.empty()) return;
+    flush();
+    for (; length > 0; --length) result += std::u32string(cluster);
+    cluster.clear();
+  };
+  const auto is_prefix = [](char32_t code) { return code == 0x207F || code == 0x1D50 || code == 0x1D51; };  // ⁿ ᵐ ᵑ
+  for (std::size_t i = 0; i < text.units.size(); ++i) {
+    const char32_t code = text.units[i].code;
+    if (BoundaryOf(code) != Boundary::kNone || code == U'|') {
+      close();
+    } else if (code == kLengthSign) {
+      ++length;
+    } else if (is_prefix(code) && i + 1 < text.units.size() && !IsLeaning(text.units[i + 1].code)) {
+      close();
+      cluster = code;
+    } else if (!cluster.empty() && (IsLeaning(code) || cluster.back() == kTie || (cluster.size() == 1 && is_prefix(cluster[0])))) {
+      cluster += code;
+    } else {
+      close();
+      cluster = code;
+    }
+  }
+  close();
+  return ToUtf8(result);
+}
+
+}  // namespace tiersmith
