@@ -149,6 +149,14 @@ void AddSymbols(Grammar* grammar) {
   AddSymbol(grammar, "u", vowel + "+voice Labial round Dorsal +high +back");
   AddSymbol(grammar, "a", vowel + "+voice Dorsal -high +back");
   AddSymbol(grammar, "E", vowel + "+voice");
+  AddSymbol(grammar, "T", stop + cor);
+  AddSymbol(grammar, "I", vowel + "+voice Dorsal +high");
+  AddSymbol(grammar, "A", vowel + "+voice Dorsal -high");
+  for (Symbol& symbol : grammar->inventory.symbols) {
+    const bool lacks = symbol.text == "N" || symbol.text == "T" || symbol.text == "I" || symbol.text == "A";
+    if (lacks) symbol.kind = Symbol::Kind::kArchisegment;
+    symbol.completes = !lacks;
+  }
 }
 
 // ---- forms --------------------------------------------------------------------------------------
@@ -252,12 +260,17 @@ SlotTest TestOf(const Grammar& grammar, const std::string& text) {
   return BundleOf(grammar, text.substr(1, text.size() - 2));
 }
 
+void NoteStanding(Grammar* grammar) {
+  for (const TreeNode& node : grammar->tree.nodes) grammar->inventory.standing.push_back(node.standing);
+}
+
 }  // namespace
 
 Grammar SmallGrammar() {
   Grammar grammar;
   AddTree(&grammar.tree);
   AddSymbols(&grammar);
+  NoteStanding(&grammar);
   return grammar;
 }
 
@@ -277,6 +290,7 @@ Grammar WideGrammar() {
   grammar.tree.nodes[lip].standing = true;
   AddNode(&grammar.tree, "lip2", Type::kBare, lip);
   AddSymbols(&grammar);
+  NoteStanding(&grammar);
   return grammar;
 }
 

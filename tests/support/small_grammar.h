@@ -18,8 +18,8 @@
 namespace tiersmith::testing {
 
 // root > ±cons ±son ±syll ±nasal ±cont ×2 in [-son], Laryngeal > ±voice,
-// Place > •Labial > round, •Coronal > ±ant, •Dorsal > ±high ±back; p t k b d g m n ŋ s z c(-cont +cont) N(no Place)
-// i u a E(a vowel without Place). Nothing is omitted.
+// Place > •Labial > round, •Coronal > ±ant, •Dorsal > ±high ±back; p t k b d g m n ŋ s z c(-cont +cont)
+// i u a E(a vowel without Place), archisegments N(no Place) T(t, no voice) I A(i, a, no back). Nothing is omitted.
 Grammar SmallGrammar();
 // The same and more: slot > Tone: H L M ×3 floating, and a class node that may be a contour and may float,
 // root > Cplace ×2 floating > ±grave, •Lip > lip2. For forms, not for rules.
