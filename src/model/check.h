@@ -23,6 +23,8 @@ namespace tiersmith {
 std::string NearestName(std::string_view name, const std::vector<std::string>& candidates);
 // "did you mean 'back'? " or "".
 std::string DidYouMean(std::string_view name, const std::vector<std::string>& candidates);
+// A remedy: the hint first if there is one ("did you mean 'back'? or declare it").
+std::string Or(const std::string& hint, const std::string& otherwise);
 
 class Checker {
  public:

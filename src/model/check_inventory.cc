@@ -7,6 +7,7 @@
 #include <algorithm>
 #include <unordered_map>
 
+#include "base/utf8.h"
 #include "model/check.h"
 #include "model/content.h"
 #include "model/normal_text.h"
@@ -99,7 +100,7 @@ void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segmen
   entry.entry = &written;
   entry.block = &block;
   const Symbol::Kind kind = KindOf(block);
-  const auto found = inventory.by_text.find(text);
+  const auto found = inventory.by_text.find(SymbolSetKey(text));
   if (found == inventory.by_text.end()) {
     const int id = static_cast<int>(inventory.symbols.size());
     Symbol symbol;
@@ -109,7 +110,7 @@ void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segmen
     symbol.completes = kind != Symbol::Kind::kArchisegment;
     symbol.span = written.symbol.span;
     inventory.symbols.push_back(symbol);
-    inventory.by_text[text] = id;
+    inventory.by_text[SymbolSetKey(text)] = id;
     entries_.push_back(entry);
     return;
   }
@@ -151,7 +152,7 @@ const FeatureTree* Checker::FromLibrary(const syntax::Name& symbol, const syntax
     const std::vector<std::string> listed = SymbolNames();
     known.insert(known.end(), listed.begin(), listed.end());
     Error(Kind::kUnknownSymbol, symbol.span, "the library \"" + (block.from ? block.from->text : "ipa") + "\" has no '" + symbol.text + "'",
-          DidYouMean(symbol.text, known) + "or say what it is: `" + symbol.text + " = y [..]`, where y is a symbol that is known");
+          Or(DidYouMean(symbol.text, known), "say what it is: `" + symbol.text + " = y [..]`, where y is a symbol that is known"));
     return nullptr;
   }
   from_library_ = true;
@@ -210,8 +211,8 @@ bool Checker::Build(std::size_t id) {
   FeatureTree content{kRootNode, 0, {}};
   bool good = true;
   const std::string text = grammar_.inventory.symbols[id].text;
-  if (written.like && SymbolKey(written.like->text) != text) {
-    const auto listed = grammar_.inventory.by_text.find(SymbolKey(written.like->text));
+  if (written.like && SymbolSetKey(written.like->text) != SymbolSetKey(text)) {
+    const auto listed = grammar_.inventory.by_text.find(SymbolSetKey(written.like->text));
     if (listed != grammar_.inventory.by_text.end()) {
       good = Build(static_cast<std::size_t>(listed->second));
       if (good) content = entries_[static_cast<std::size_t>(listed->second)].raw;
@@ -412,13 +413,18 @@ void Checker::AddComposite(int base, std::vector<int> marks) {
   Symbol symbol;
   std::string text = under.text;
   symbol.in_underlying = under.in_underlying;
-  for (const int mark : marks) {
-    const Mark& sign = inventory.marks[static_cast<std::size_t>(mark)];
-    text = sign.before ? sign.text + text : text + sign.text;
-    if (sign.surface) symbol.in_underlying = false;
+  // Combining marks go before modifier letters, or they would sit on those.
+  for (const bool combining : {true, false}) {
+    for (const int mark : marks) {
+      const Mark& sign = inventory.marks[static_cast<std::size_t>(mark)];
+      std::size_t position = 0;
+      if (IsMark(NextCodePoint(sign.text, &position)) != combining) continue;
+      text = sign.before ? sign.text + text : text + sign.text;
+      if (sign.surface) symbol.in_underlying = false;
+    }
   }
   symbol.text = SymbolKey(text);
-  if (inventory.by_text.count(symbol.text) != 0) return;  // listed
+  if (inventory.by_text.count(SymbolSetKey(symbol.text)) != 0) return;  // listed
   symbol.kind = Symbol::Kind::kComposite;
   symbol.full = std::move(full);
   symbol.diacritics = static_cast<int>(marks.size());
@@ -426,7 +432,7 @@ void Checker::AddComposite(int base, std::vector<int> marks) {
   symbol.base = base;
   symbol.span = under.span;
   symbol.marks = std::move(marks);
-  inventory.by_text[symbol.text] = static_cast<int>(inventory.symbols.size());
+  inventory.by_text[SymbolSetKey(symbol.text)] = static_cast<int>(inventory.symbols.size());
   inventory.symbols.push_back(std::move(symbol));
 }
 
@@ -580,7 +586,7 @@ void Checker::CheckFallTogether() {
 }
 
 void Checker::CheckUnspecified() {
-  if (!from_library_) return;
+  if (!from_library_ || diagnostics_.HasErrors()) return;  // a tree with errors is not the one that was meant
   const Tree& tree = grammar_.tree;
   for (std::size_t i = kRootNode + 1; i < tree.nodes.size(); ++i) {
     const NodeId node = static_cast<NodeId>(i);
@@ -590,9 +596,7 @@ void Checker::CheckUnspecified() {
     const bool known = std::any_of(libraries_.begin(), libraries_.end(), [&](const auto& l) { return l.second.KnowsFeature(kind.name); });
     if (known) continue;
     diagnostics_.Warning(Kind::kUnspecifiedFeature, kind.span, "the library does not know '" + kind.name + "', and no line of `segments` gives it: no segment bears it",
-                         DidYouMean(kind.name, {"cons", "son", "syll", "nasal", "lateral", "strident", "cont", "tense", "trill", "tap", "click", "voice", "sg", "cg",
-                                                "Labial", "Coronal", "Dorsal", "Radical", "round", "labiodental", "anterior", "distributed", "high", "low", "back", "atr", "rtr"}) +
-                             "give it to the segments that bear it: `x = x [" + tree.ValueName(node, 1) + "]`");
+                         Or(DidYouMean(kind.name, libraries_.begin()->second.Features()), "give it to the segments that bear it: `x = x [" + tree.ValueName(node, 1) + "]`"));
   }
 }
 

@@ -333,7 +333,7 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
     std::string remedy = DidYouMean(name, known);
     if (grammar_.tree.Find(name)) remedy = "a feature stands in brackets: [" + name + "]; ";
     if (grammar_.inventory.Find(name)) remedy = "a symbol stands between slashes: /" + name + "/; ";
-    Error(Kind::kUnknownClass, item.name.span, "there is no class or pattern '" + name + "'", remedy + "or declare it: `class " + name + " = [..]`");
+    Error(Kind::kUnknownClass, item.name.span, "there is no class or pattern '" + name + "'", Or(remedy, "declare it: `class " + name + " = [..]`"));
     return false;
   }
   std::optional<SlotTest> test = ResolveClass(item.name);
@@ -452,7 +452,7 @@ std::optional<int> Checker::LabelOf(const syntax::Name& name, const RuleContext&
   } else if (mentions != context.mentions.end()) {
     remedy = "the class stands inside a repeated group or an alternative, where it could be several slots or none; ";
   }
-  Error(Kind::kUnknownLabel, name.span, "no item of the rule is labelled '" + name.text + "'", remedy + "or label one: " + name.text + ":[..]");
+  Error(Kind::kUnknownLabel, name.span, "no item of the rule is labelled '" + name.text + "'", Or(remedy, "label one: " + name.text + ":[..]"));
   return std::nullopt;
 }
 

@@ -259,7 +259,7 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
       Error(Kind::kBadRule, span, "a boundary does not stand inside a literal", "write it as an item of its own: /a/ - /b/");
     } else {
       Error(Kind::kUnknownSymbol, span, "'" + shown + "' is no symbol of the grammar",
-            DidYouMean(literal.raw, SymbolNames()) + "or list it in `segments`");
+            Or(DidYouMean(literal.raw, SymbolNames()), "list it in `segments`"));
     }
     return std::nullopt;
   }
@@ -281,7 +281,7 @@ std::optional<SlotTest> Checker::ResolveClass(const syntax::Name& name) {
     if (grammar_.tree.Find(name.text)) remedy = "a feature stands in brackets: [" + name.text + "]; ";
     if (grammar_.inventory.Find(name.text)) remedy = "a symbol stands between slashes: /" + name.text + "/; ";
     Error(Kind::kUnknownClass, name.span, "there is no class '" + name.text + "'",
-          remedy + "or declare it: `class " + name.text + " = [..]`");
+          Or(remedy, "declare it: `class " + name.text + " = [..]`"));
     return std::nullopt;
   }
   if (std::find(resolving_.begin(), resolving_.end(), name.text) != resolving_.end()) {

@@ -30,12 +30,12 @@ std::optional<NodeId> Checker::NodeOf(const syntax::Name& name, Kind kind) {
   std::string remedy = DidYouMean(name.text, NodeNames());
   for (const TreeNode& node : grammar_.tree.nodes) {
     for (const std::string& value : node.values) {
-      if (value == name.text) remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + ", ";
+      if (value == name.text) remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + "; ";
     }
   }
   if (classes_.count(name.text) != 0) remedy = "it is a class, which stands without brackets; ";
   Error(kind, name.span, "the tree has no " + std::string(kind == Kind::kUnknownFeature ? "feature" : "node") + " '" + name.text + "'",
-        remedy + "or declare it in `tree`");
+        Or(remedy, "declare it in `tree`"));
   return std::nullopt;
 }
 
@@ -104,7 +104,7 @@ void Checker::CheckTree() {
       if (name != top.text) others.push_back(name);
     }
     Error(Kind::kUnknownNode, top.span, "'" + top.text + "' hangs from no node of the tree",
-          DidYouMean(top.text, others) + "or hang it: `root > " + top.text + "`");
+          Or(DidYouMean(top.text, others), "hang it: `root > " + top.text + "`"));
     declared[top.text].mother = "root";  // so that what hangs from it is known further on
     declared["root"].daughters.push_back(top.text);
   }

@@ -9,6 +9,7 @@
 #include <algorithm>
 
 #include "model/content.h"
+#include "model/library.h"
 
 namespace tiersmith {
 namespace {
@@ -122,7 +123,8 @@ std::string Inventory::Describe(const FeatureTree& root, const Tree& tree) const
 }
 
 std::optional<int> Inventory::Find(std::string_view text) const {
-  const auto found = by_text.find(std::string(text));
+  auto found = by_text.find(std::string(text));
+  if (found == by_text.end()) found = by_text.find(SymbolSetKey(text));
   if (found == by_text.end()) return std::nullopt;
   return found->second;
 }

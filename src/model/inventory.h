@@ -67,7 +67,7 @@ class Inventory {
   std::vector<int> UnderlyingSymbols(int diacritics = 2) const;
 
   // Filled by the checker (model/check_inventory.cc); see there.
-  std::unordered_map<std::string, int> by_text;
+  std::unordered_map<std::string, int> by_text;  // by SymbolSetKey (model/library.h); ask through Find
   struct OmitEntry {
     NodeId node = 0;
     Value value = 0;

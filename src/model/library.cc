@@ -67,6 +67,14 @@ bool LoadTable(const std::string& path, Span from, Diagnostics& diagnostics, std
 
 std::string SymbolKey(std::string_view text) { return ToNfc(ToUtf8(Normalise(text))); }
 
+std::string SymbolSetKey(std::string_view text) {
+  std::u32string normal = Normalise(text);
+  std::size_t tail = normal.size();
+  while (tail > 1 && IsLeaning(normal[tail - 1]) && normal[tail - 1] != kTie) --tail;
+  std::sort(normal.begin() + static_cast<std::ptrdiff_t>(tail), normal.end());
+  return ToNfc(ToUtf8(normal));
+}
+
 std::string FindLibrary() {
   namespace fs = std::filesystem;
   std::error_code error;
@@ -150,6 +158,12 @@ std::vector<std::string> Library::Symbols() const {
   std::vector<std::string> symbols;
   for (const auto& [symbol, segment] : segments_) symbols.push_back(symbol);
   return symbols;
+}
+
+std::vector<std::string> Library::Features() const {
+  std::vector<std::string> features;
+  for (const auto& [name, bare] : bare_) features.push_back(name);
+  return features;
 }
 
 FeatureTree Library::ContentOf(const Segment& segment, const Tree& tree, std::vector<std::string>* cut) const {

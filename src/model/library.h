@@ -35,6 +35,7 @@ class Library {
   const Segment* Find(std::string_view symbol);
   bool KnowsFeature(std::string_view name) const { return bare_.count(std::string(name)) != 0; }
   std::vector<std::string> Symbols() const;
+  std::vector<std::string> Features() const;
 
   // The content of a segment in this tree (notation, "What "ipa" says"). Contours the tree has no room for keep their
   // first value; their names are added to `cut`.
@@ -55,5 +56,7 @@ class Library {
 
 // The one way a symbol is written in tables: normalised, equated signs made one, NFC.
 std::string SymbolKey(std::string_view text);
+// The same whatever order its last diacritics are written in: the key of Inventory::by_text.
+std::string SymbolSetKey(std::string_view text);
 
 }  // namespace tiersmith

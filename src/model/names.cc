@@ -61,4 +61,6 @@ std::string DidYouMean(std::string_view name, const std::vector<std::string>& ca
   return nearest.empty() ? "" : "did you mean '" + nearest + "'? ";
 }
 
+std::string Or(const std::string& hint, const std::string& otherwise) { return hint.empty() ? otherwise : hint + "or " + otherwise; }
+
 }  // namespace tiersmith
