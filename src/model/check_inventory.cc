@@ -371,12 +371,13 @@ void Checker::CheckDiacritics() {
   }
 }
 
-// By default a diacritic may stand on any base that has the room for what it gives and bears the articulator it hangs from,
-// or is given it by the same bundle.
+// By default a diacritic may stand on any base that has the room for what it gives. A feature that is there or not brings
+// its articulator along, as secondary articulations do (◌ʷ [round]); one of several values tells how an articulator is used
+// (◌̪ [+distributed]), so the base bears it already or the same bundle names it.
 bool Checker::MayBear(const FeatureTree& content, const Sign& sign) const {
   const Tree& tree = grammar_.tree;
   for (const Setting& setting : sign.settings) {
-    if (setting.values.empty()) continue;
+    if (setting.values.empty() || tree[setting.node].type == TreeNode::Type::kBare) continue;
     for (NodeId above = tree[setting.node].mother; above > kRootNode; above = tree[above].mother) {
       const bool named = std::any_of(sign.settings.begin(), sign.settings.end(),
                                      [&](const Setting& s) { return s.node == above && !s.values.empty(); });

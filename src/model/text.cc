@@ -35,10 +35,14 @@ Boundary BoundaryOf(char32_t code) {
   }
 }
 
-std::set<std::string> WordsOf(const std::string& text) {
-  std::istringstream stream(text);
+// The words of a character's name that tell it from others: T and STROKE of LATIN CAPITAL LETTER T WITH STROKE.
+std::set<std::string> TellingWords(const std::string& name) {
+  static const std::set<std::string> common = {"LATIN", "GREEK", "CYRILLIC", "MODIFIER", "SMALL", "CAPITAL", "LETTER", "WITH", "AND"};
+  std::istringstream stream(name);
   std::set<std::string> words;
-  for (std::string word; stream >> word;) words.insert(word);
+  for (std::string word; stream >> word;) {
+    if (common.count(word) == 0) words.insert(word);
+  }
   return words;
 }
 
@@ -237,7 +241,7 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
 }
 
 // The listed symbol that looks most like the character: the same letter in another case or with other marks, else the
-// one whose Unicode name shares most words with it.
+// one whose Unicode name shares most telling words with it.
 std::string Reader::Impl::Nearest(std::size_t unit) const {
   const char32_t code = text.units[unit].code;
   if (IsMark(code)) {
@@ -248,21 +252,20 @@ std::string Reader::Impl::Nearest(std::size_t unit) const {
     }
     return "";
   }
-  const std::set<std::string> wanted = WordsOf(CharacterName(code));
+  const std::set<std::string> wanted = TellingWords(CharacterName(code));
   std::string best;
-  double best_score = 0.55;  // LATIN SMALL LETTER alone is no likeness
+  double best_score = 0.3;
   for (const Symbol& s : inventory().symbols) {
     if (s.kind == Symbol::Kind::kComposite) continue;
     const std::u32string normal = Normalise(s.text);
-    const std::set<std::string> words = WordsOf(CharacterName(normal[0]));
+    const std::set<std::string> words = TellingWords(CharacterName(normal[0]));
     std::size_t common = 0;
     for (const std::string& word : words) common += wanted.count(word);
     const double all = static_cast<double>(words.size() + wanted.size()) - static_cast<double>(common);
     const double score = static_cast<double>(common) / all - (normal.size() > 1 ? 0.01 : 0);
-    if (score > best_score) {
-      best_score = score;
-      best = s.text;
-    }
+    if (score <= best_score) continue;
+    best_score = score;
+    best = s.text;
   }
   return best;
 }
