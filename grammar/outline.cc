@@ -172,7 +172,7 @@ class Cutter {
         ++position_;
         return Token::Kind::kOpenOther;
       case '/':
-        if (section_ != "tree" && section_ != "spelling") return Enclosed(token, "/", "form");
+        if (section_ != "spelling") return Enclosed(token, "/", "form");
         break;
       case '<':
         if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm") return Enclosed(token, ">", "form");
@@ -287,7 +287,9 @@ class Cutter {
       const Token token = Next();
       const bool opens = token.kind == Token::Kind::kOpen && word.block && depth == 0;
       const bool outside = token.first_on_line && token.column <= keyword.column && !opens;
-      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr && !after_comparing &&
+      const bool own_name = (word.kind == SectionKind::kClass || word.kind == SectionKind::kPattern) &&
+                            section.head.span.end == section.head.span.begin && !token.first_on_line;
+      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr && !after_comparing && !own_name &&
                          (token.first_on_line || (word.joined && depth <= 0));
       if (token.kind == Token::Kind::kEnd || outside || other) {
         Back(token);

@@ -133,7 +133,9 @@ struct Word : x3::parser<Word> {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
-    if (!MatchText(i, last, text) || (i != last && notation::IsNameCharacter(*i))) return false;
+    if (!MatchText(i, last, text)) return false;
+    // `empty_0` is the word with a quantity, `emptying` is a name.
+    if (i != last && notation::IsNameCharacter(*i) && PeekBare(first, last) != Bytes(first, i)) return false;
     place = i;
     return true;
   }
@@ -236,15 +238,34 @@ struct SymbolToken : Token<SymbolToken> {
       while (i != last && !Ends(i, last)) ++i;
       name.text = Bytes(first, i);
       if (name.text.empty() || name.text == "surface" || notation::IsReserved(name.text)) return false;
+      for (Iterator c = first; c != i; ++c) Refuse(context, c);
     }
     name.span = SceneOf(context).Between(first, i);
     place = i;
     x3::traits::move_to(std::move(name), attribute);
     return true;
   }
+  // Signs that mean something in forms or patterns.
+  template <class Context>
+  static void Refuse(const Context& context, Iterator c) {
+    if (!notation::IsBarredFromSymbols(*c)) return;
+    Iterator next = c;
+    const Span span = SceneOf(context).Between(c, ++next);
+    throw Refusal{span, "a symbol cannot hold '" + Bytes(c, next) + "'", "symbols are letters with marks, parted by blanks"};
+  }
   static bool Ends(Iterator i, const Iterator& last) {
     const char32_t c = *i;
     return c == U'{' || c == U'}' || c == U'[' || c == U']' || c == U'=' || c == U';' || c == U'"' || SkipBlank(i, last);
+  }
+};
+
+// Looks ahead: the name just read is not the beginning of a longer symbol (`ⁿ` of `ⁿ◌`).
+struct SymbolEnd : x3::parser<SymbolEnd> {
+  using attribute_type = x3::unused_type;
+  static bool const has_attribute = false;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& place, const Iterator& last, const Context&, RContext&, Attribute&) const {
+    return place == last || SymbolToken::Ends(place, last);
   }
 };
 
@@ -431,13 +452,14 @@ struct VariableToken : x3::parser<VariableToken> {
   }
 };
 
-// Looks ahead: does a name begin here, glued.
-struct NameAhead : x3::parser<NameAhead> {
+// Looks ahead: does something other than a blank or a further dot stand here, so that the dot before it is a path's.
+struct PathAhead : x3::parser<PathAhead> {
   using attribute_type = x3::unused_type;
   static bool const has_attribute = false;
   template <class Context, class RContext, class Attribute>
   bool parse(Iterator& place, const Iterator& last, const Context&, RContext&, Attribute&) const {
-    return place != last && notation::IsNameStart(*place);
+    Iterator i = place;
+    return place != last && *place != U'.' && !SkipBlank(i, last);
   }
 };
 
@@ -710,7 +732,7 @@ const auto kNegate = [](auto& context) {
   x3::_val(context) = std::move(outer);
 };
 // Neither a path (`X.N`) nor a label (`X:`).
-const auto name_alone = name >> !Glued(Sign(U".") >> NameAhead{}) >> !Glued(Sign(U":"));
+const auto name_alone = name >> !Glued(Sign(U".") >> PathAhead{}) >> !Glued(Sign(U":"));
 
 const auto atom_def = Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one 'not'")) > atom[kNegate]) |
                       Word(U"empty")[MakeSet(syntax::Set::Kind::kEmpty)] |
@@ -814,6 +836,7 @@ const auto kPlainItem = [](auto& context) {
 };
 const auto kJoin = [](auto& context) {
   syntax::Item& it = x3::_val(context);
+  it = std::move(x3::_attr(context));
   it.kind = syntax::Item::Kind::kGroup;
   JoinSingles(it);
   it.set.span = it.span;
@@ -837,7 +860,7 @@ const auto gap_def = gap_sign[Let(&syntax::Item::kind, syntax::Item::Kind::kGap)
 const auto labelled_def =
     &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >> Glued(Sign(U":")) >>
     (raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] | Wanted("@a set: a bundle, a literal or a class")) >>
-    -raw[Glued(quantity)][kLabelCount];
+    -Glued(raw[quantity][kLabelCount]);
 
 const auto bracketed_def = Sign(U"(")[([](auto& context) {
                              x3::_val(context).kind = syntax::Item::Kind::kGroup;
@@ -849,10 +872,10 @@ const x3::rule<struct BraceBodyRule, syntax::Item> brace_body("a group in { }");
 const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alternatives)] >
                             *(!Sign(U"||") >> Sign(U"|") > pattern[Push(&syntax::Item::alternatives)]) >
                             (Sign(U"}") | Wanted("@an item, '|' or '}'")));
-const auto braced_def = brace_body[kWhole] >> x3::eps[kJoin] >>
+const auto braced_def = brace_body[kJoin] >>
                         *(x3::eps[kIsSet] >> set_tail[kMoreSet]) >> -Glued(quantity[kQuantify]);
 
-const auto later_item_def = ((!gap_sign) >> raw[Sign(U".")][NotYet("'.' in a pattern")]) | raw[Sign(U"&")][NotYet("'&'")];
+const auto later_item_def = ((!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")]) | raw[Sign(U"&")][NotYet("'&'")];
 
 const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
                         x3::_val(context).kind = syntax::Item::Kind::kBoundary;
@@ -891,9 +914,9 @@ const Sign kDot(U".");
 const auto path_ahead = &(name >> Glued(kDot >> !kDot));
 const auto member = (Sign(U"+") | minus_sign) >> name;
 const auto path_def = Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
-    (raw[Glued(member)][NotYet("one member of a contour")] | Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
-    -raw[+Glued(kDot >> name)][NotYet("a path through more than one node")] >>
-    -raw[Glued(Sign(U":")) > value][NotYet("one member of a contour")] >>
+    (Glued(raw[member][NotYet("one member of a contour")]) | Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
+    -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
+    -(Glued(&Sign(U":")) >> raw[Sign(U":") > value][NotYet("one member of a contour")]) >>
     -raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
 
 const auto test_sign = Sign(U"=") | Sign(U"≠") | Sign(U"!=") | (Word(U"is") >> -Word(U"not")) | Wanted("=, ≠, is or is not");
@@ -942,10 +965,9 @@ const auto insert_def =
     label[To(&syntax::Change::label)];
 const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
 
-const auto path_or_label = path | label | Wanted("@a label or a path");
 const auto later_change_def = (raw[Word(U"lengthen")][kNotYetWord] > label) |
                               (raw[Word(U"shorten")][kNotYetWord] > label) |
-                              (raw[Word(U"merge")][kNotYetWord] > path_or_label > path_or_label) |
+                              (raw[Word(U"merge")][kNotYetWord] > ((path_ahead >> path > path) | (label > label) | Wanted("@a label or a path"))) |
                               (raw[Word(U"swap")][kNotYetWord] > label > label) |
                               (raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
                               (raw[Word(U"copy")][kNotYetWord] > pattern >
@@ -1054,10 +1076,13 @@ const auto tree_head_def = -raw[Word(U"from") > StringToken("the name of a tree 
 
 auto Reference(syntax::ValueRef::Kind kind) { return Let(&syntax::ValueRef::kind, kind); }
 const auto kNameRef = To(&syntax::ValueRef::name);
-const auto value_ref_def = (plus_minus[Reference(syntax::ValueRef::Kind::kBoth)] > feature[kNameRef]) |
-                           (Sign(U"+")[Reference(syntax::ValueRef::Kind::kPlus)] > feature[kNameRef]) |
-                           (minus_sign[Reference(syntax::ValueRef::Kind::kMinus)] > feature[kNameRef]) |
-                           (name >> !(Sign(U"=") | Sign(U"[")))[([](auto& context) {
+const auto whole_name = name >> Glued(SymbolEnd{});
+const x3::rule<struct WholeNameRule, syntax::Name> listed_name("@a feature");
+const auto listed_name_def = whole_name[kWhole];
+const auto value_ref_def = (plus_minus[Reference(syntax::ValueRef::Kind::kBoth)] > listed_name[kNameRef]) |
+                           (Sign(U"+")[Reference(syntax::ValueRef::Kind::kPlus)] > listed_name[kNameRef]) |
+                           (minus_sign[Reference(syntax::ValueRef::Kind::kMinus)] > listed_name[kNameRef]) |
+                           (listed_name >> !(Sign(U"=") | Sign(U"[")))[([](auto& context) {
                              x3::_val(context).kind = syntax::ValueRef::Kind::kBare;
                              x3::_val(context).name = std::move(x3::_attr(context));
                            })];
@@ -1107,7 +1132,7 @@ const auto language_def = StringToken("the language's name in double quotes")[To
 const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&syntax::Rule::name)] > End("'{'");
 const auto empty_head_def = x3::eps > End("'{'");
 
-BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, segment, without, omit_value, diacritic, datum, segments_head,
+BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without, omit_value, diacritic, datum, segments_head,
                     segments_entry, diacritics_entry, omit_entry, data_entry, data_head, class_, named_pattern, language, rule_head,
                     empty_head)
 
@@ -1289,7 +1314,7 @@ class Reader {
     const char* remedy = "a row reads: /tilun-pa/ [tilumpa] 'on the rope'";
     syntax::DataFrom from;
     if (!Run(section.head, data_head, from, "write: data from \"forms.tsv\", or data { /a/ [b] }") && !section.has_block) return;
-    if (!from.path.text.empty()) {
+    if (from.path.span.end > 0) {
       if (section.has_block) Later("columns named in braces", section.body.span);
       from.span = section.whole;
       result_.tops.push_back(std::move(from));

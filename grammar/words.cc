@@ -35,7 +35,7 @@ bool IsReserved(std::string_view word) {
 const std::vector<std::string_view>& BundleWords() {
   static const std::vector<std::string_view> words = {
       "long",  "short",  "half",   "first", "last",  "onset",    "peak",       "coda", "appendix", "stray",
-      "open",  "closed", "light",  "heavy", "main",  "stressed", "unstressed", "head", "footed",   "unfooted"};
+      "open",  "closed", "light",  "heavy", "main",  "stressed", "unstressed", "head", "footed",   "unfooted", "rightward", "leftward"};
   return words;
 }
 
@@ -96,14 +96,16 @@ bool IsPlainName(std::string_view name) {
   return true;
 }
 
+bool IsBarredFromSymbols(char32_t c) {
+  constexpr std::u32string_view kBarred = U"-\u2212\u2013=#.\u2016|@/⟨⟩+±,ː{}[];\"";
+  return kBarred.find(c) != std::u32string_view::npos;
+}
+
 bool IsPlainSymbol(std::string_view symbol) {
-  if (symbol.empty() || symbol == "without" || symbol.find("--") != std::string_view::npos) return false;
+  if (symbol.empty() || symbol == "surface" || IsReserved(symbol)) return false;
   for (std::size_t i = 0; i < symbol.size();) {
     const CodePoint c = CodePointAt(symbol, i);
-    if (c.value <= U' ' || std::string_view("{}[]=;\"").find(static_cast<char>(c.value)) != std::string_view::npos) {
-      if (c.value < 0x80) return false;
-    }
-    if (utf8proc_category(static_cast<utf8proc_int32_t>(c.value)) == UTF8PROC_CATEGORY_ZS) return false;
+    if (c.value <= U' ' || c.value == U'\u00A0' || IsBarredFromSymbols(c.value)) return false;
     i += c.length;
   }
   return true;

@@ -26,7 +26,9 @@ std::size_t QuantityTail(std::string_view name);
 
 // Can be written without quotes, in every place where a name may stand.
 bool IsPlainName(std::string_view name);
-// The same for a symbol of `segments` and `diacritics`.
+// Signs no bare symbol may hold: forms and patterns give them a meaning of their own.
+bool IsBarredFromSymbols(char32_t c);
+// Whether a symbol of `segments` and `diacritics` can be written without quotes.
 bool IsPlainSymbol(std::string_view symbol);
 
 // The code point at `position` of valid UTF-8, and its length in bytes. A broken byte is U+FFFD of length 1.
