@@ -36,6 +36,7 @@ class Checker {
   // ---- check_tree.cc
   void CheckTree();
   void CheckRooms();
+  bool SaysLiteral(const syntax::Set& set, std::size_t depth) const;
   std::vector<std::string> NodeNames() const;
   // A node by name, or an error of kind `kind` at the name.
   std::optional<NodeId> NodeOf(const syntax::Name& name, Kind kind);
@@ -104,7 +105,9 @@ class Checker {
     std::map<std::string, int> own_labels;    // label -> index
     std::set<std::string> used;               // labels the changes and conditions use
     std::set<std::string> inserted;           // labels of inserted items
+    std::set<std::string> placed;             // those checked so far
     bool in_unless = false;
+    bool broken = false;                      // the pattern has errors: a label may be missing for that
     int depth = 0;                            // inside groups
     bool repeated = false;                    // inside a group whose quantity is not one
     bool alternative = false;                 // inside one of several alternatives

@@ -94,6 +94,7 @@ void Checker::CheckRule(const syntax::Rule& written) {
   CollectUsedLabels(written, &context);
   bool good = ResolvePattern(written.where, &context, &rule.where);
   if (good) good = CheckShape(rule.where, written.where, context);
+  context.broken = !good;
   for (const syntax::Pattern& unless : written.unless) {
     Pattern pattern;
     RuleContext inner = context;
@@ -221,7 +222,7 @@ bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleCo
     }
     return bad("'" + label.text + "' labels no item of the rule", "in `unless` only labels of the `where` mean something; take it away");
   }
-  if (known != context->own_labels.end() || context->inserted.count(label.text) != 0) {
+  if (known != context->own_labels.end()) {
     return bad("label '" + label.text + "' is used twice", "give each item a label of its own");
   }
   if (classes_.count(label.text) != 0 && ClassOf(item) != label.text) {
@@ -443,6 +444,7 @@ std::optional<int> Checker::LabelOf(const syntax::Name& name, const RuleContext&
           "insert it with that content, or write a second rule");
     return std::nullopt;
   }
+  if (context.broken) return std::nullopt;
   std::vector<std::string> known;
   for (const auto& [label, index] : context.own_labels) known.push_back(label);
   std::string remedy = DidYouMean(name.text, known);
@@ -576,7 +578,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
   result.before = change.before;
   result.span = change.span;
   result.inserted = FeatureTree{kRootNode, 0, {}};
-  if (context->own_labels.count(change.inserted.text) != 0) {
+  const bool twice = !change.inserted.text.empty() && !context->placed.insert(change.inserted.text).second;
+  if (twice || context->own_labels.count(change.inserted.text) != 0) {
     Error(Kind::kBadRule, change.inserted.span, "label '" + change.inserted.text + "' is used twice", "give what is inserted a label of its own");
     return false;
   }

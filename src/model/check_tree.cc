@@ -2,6 +2,8 @@
 //
 // Example: `root > Place > •Labial` and `Labial > round` give root, Place, Labial, round; the lines may stand in any order.
 // Does not handle: nodes with two mothers, trees from a library (errors say so). Tested by tests/unit/model/check_test.cc.
+#include <algorithm>
+
 #include "model/check.h"
 
 namespace tiersmith {
@@ -165,12 +167,13 @@ void Checker::CheckTree() {
   // `root` first among the daughters of slot, so that it is node 1.
   add(add, "slot", kSlotNode);
 
-  for (const syntax::TreeLine* line : lines) {
-    for (const syntax::Name& name : line->mothers) {
-      if (tree.Find(name.text)) continue;  // all others were reached from slot
-      Error(Kind::kBadTree, name.span, "'" + name.text + "' hangs from itself", "hang one of the nodes of this ring from root");
-      break;
-    }
+  // All that hangs from root or from an unknown mother was reached; what was not hangs from itself.
+  const auto ring = std::find_if(lines.begin(), lines.end(), [&](const syntax::TreeLine* line) {
+    return !line->mothers.empty() && !tree.Find(line->mothers.back().text);
+  });
+  if (ring != lines.end()) {
+    const syntax::Name& name = (*ring)->mothers.back();
+    Error(Kind::kBadTree, name.span, "'" + name.text + "' hangs from itself", "hang one of the nodes of this ring from root");
   }
   if (first == nullptr && diagnostics_.all().size() == errors_before) {
     Error(Kind::kBadTree, whole_, "the grammar has no `tree`",
@@ -178,22 +181,25 @@ void Checker::CheckTree() {
   }
 }
 
+// Symbols are made after the tree, so who has the room cannot be told by them.
+bool Checker::SaysLiteral(const syntax::Set& set, std::size_t depth) const {
+  if (set.kind == syntax::Set::Kind::kLiteral) return true;
+  if (set.kind == syntax::Set::Kind::kClass) {
+    const auto found = classes_.find(set.name.text);
+    return found != classes_.end() && depth <= classes_.size() && SaysLiteral(found->second->set, depth + 1);
+  }
+  return std::any_of(set.args.begin(), set.args.end(), [&](const syntax::Set& arg) { return SaysLiteral(arg, depth); });
+}
+
 // After the tree stands, so that the `in [..]` of one node may speak of all others.
 void Checker::CheckRooms() {
   for (const auto& [node, set] : rooms_) {
-    const std::optional<SlotTest> test = ResolveSet(*set);
-    if (!test) continue;
-    const auto has_literal = [](const auto& self, const SlotTest& t) -> bool {
-      if (t.op == SlotTest::Op::kLiteral) return true;
-      for (const SlotTest& arg : t.args) {
-        if (self(self, arg)) return true;
-      }
-      return false;
-    };
-    if (has_literal(has_literal, *test)) {
+    if (SaysLiteral(*set, 0)) {
       Error(Kind::kBadTree, set->span, "who has the room is told by features, not by symbols", "write a bundle: `in [-son]`");
       continue;
     }
+    const std::optional<SlotTest> test = ResolveSet(*set);
+    if (!test) continue;
     grammar_.tree.nodes[node].room = test;
   }
 }
