@@ -15,7 +15,7 @@
 //                   blocked in this derivation, and why, is quoted.
 // Cases 2 and 3 are evidence, not proof: the error may be in the data, in the underlying form or in an earlier rule.
 //
-// Not here: rows with optional rules and probabilities, orders of rules. Tested by tests/unit/analyse/check_test.cc.
+// Not here: rows with optional rules and probabilities, orders of rules. Tested by tests/unit/analyse/check_rows_test.cc.
 #pragma once
 
 #include <map>

@@ -4,6 +4,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <nlohmann/json.hpp>
 
 #include "cli/command.h"
@@ -176,12 +177,21 @@ bool ReadRows(const CheckOptions& options, const Loaded& loaded, std::vector<Dat
   return false;
 }
 
+// The bytes of the row that the error means; the whole form where the file writes it otherwise than it is read.
+Span PlaceOfError(const Report& report, const DataRow& row, const TextError& error) {
+  if (row.span.file >= report.sources.size()) return row.span;
+  const std::string_view text = report.sources.text(row.span.file);
+  if (text.substr(std::min<std::size_t>(row.span.begin, text.size()), row.underlying.size()) != row.underlying) return row.span;
+  const auto begin = row.span.begin + static_cast<std::uint32_t>(error.offset);
+  return {row.span.file, begin, begin + static_cast<std::uint32_t>(error.length)};
+}
+
 void PrintUnreadable(const Report& report, bool json) {
   Diagnostics diagnostics;
   for (std::size_t i = 0; i < report.rows.size(); ++i) {
     const std::optional<TextError>& error = report.result.rows[i].unreadable;
     if (!error) continue;
-    diagnostics.Error(error->kind, report.rows[i].span, error->message, error->remedy);
+    diagnostics.Error(error->kind, PlaceOfError(report, report.rows[i], *error), error->message, error->remedy);
   }
   PrintDiagnostics(diagnostics, report.sources, json);
 }

@@ -49,8 +49,7 @@ void AddCommonOptions(CLI::App& verb, CommonOptions& options) {
   verb.add_option("GRAMMAR", options.grammar, "a .tier file; - is standard input")->required();
   verb.add_option("--without", options.without, "leave a rule out (may be given several times)")
       ->type_name("RULE")
-      ->expected(1)
-      ->multi_option_policy(CLI::MultiOptionPolicy::TakeAll);
+      ->allow_extra_args(false);
   verb.add_option("--format", options.format, "text, tsv or json")->type_name("FORMAT");
   verb.add_option("-o,--output", options.output, "write to this file")->type_name("FILE");
 }
