@@ -90,7 +90,7 @@ class Checker {
   void BuildComposites();
   void AddComposite(int base, std::vector<int> marks);
   void AddWrittenComposites();
-  void AddCompositesOf(std::string_view text);
+  void AddCompositesOf(std::string_view text, const SymbolTrie& listed);
   void CheckOmit();
   void CheckFallTogether();
   void CheckUnspecified();
@@ -161,7 +161,6 @@ class Checker {
   std::set<NodeId> given_;              // nodes some bundle of the inventory gives
   bool from_library_ = false;
   SymbolTrie trie_;
-  int literal_errors_ = 0;
 };
 
 }  // namespace tiersmith

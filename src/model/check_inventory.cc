@@ -459,8 +459,10 @@ void Checker::BuildComposites() {
 // Three and more diacritics on one base are symbols where lexicon, data or rules write them.
 void Checker::AddWrittenComposites() {
   if (signs_.size() < 3) return;
+  SymbolTrie listed;
+  for (std::size_t i = 0; i < entries_.size(); ++i) listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
   const auto in_set = [&](const auto& self, const syntax::Set& set) -> void {
-    if (set.kind == syntax::Set::Kind::kLiteral) AddCompositesOf(set.literal.raw);
+    if (set.kind == syntax::Set::Kind::kLiteral) AddCompositesOf(set.literal.raw, listed);
     for (const syntax::Set& arg : set.args) self(self, arg);
   };
   const auto in_pattern = [&](const auto& self, const syntax::Pattern& pattern) -> void {
@@ -481,14 +483,12 @@ void Checker::AddWrittenComposites() {
     }
   }
   for (const DataRow& row : grammar_.data) {
-    AddCompositesOf(row.underlying);
-    for (const std::string& surface : row.surfaces) AddCompositesOf(surface);
+    AddCompositesOf(row.underlying, listed);
+    for (const std::string& surface : row.surfaces) AddCompositesOf(surface, listed);
   }
 }
 
-void Checker::AddCompositesOf(std::string_view written) {
-  SymbolTrie listed;
-  for (std::size_t i = 0; i < entries_.size(); ++i) listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
+void Checker::AddCompositesOf(std::string_view written, const SymbolTrie& listed) {
   NormalText text;
   text.Assign(written);
   for (std::size_t i = 0; i < text.units.size();) {

@@ -41,6 +41,12 @@ bool NamesEmpty(const SlotTest& test) {
   return test.op == SlotTest::Op::kEmpty || std::any_of(test.args.begin(), test.args.end(), NamesEmpty);
 }
 
+bool NamesLabel(const Pattern& pattern) {
+  return std::any_of(pattern.items.begin(), pattern.items.end(), [](const PatternItem& item) {
+    return item.label >= 0 || std::any_of(item.alternatives.begin(), item.alternatives.end(), NamesLabel);
+  });
+}
+
 Span Covering(Span a, Span b) {
   if (a.end == 0 || a.file != b.file) return b;
   return {a.file, std::min(a.begin, b.begin), std::max(a.end, b.end)};
@@ -99,7 +105,11 @@ void Checker::CheckRule(const syntax::Rule& written) {
     Pattern pattern;
     RuleContext inner = context;
     inner.in_unless = true;
-    const bool fine = ResolvePattern(unless, &inner, &pattern) && CheckShape(pattern, unless, inner);
+    bool fine = ResolvePattern(unless, &inner, &pattern) && CheckShape(pattern, unless, inner);
+    if (fine && good && !NamesLabel(pattern)) {
+      Error(Kind::kBadRule, unless.span, "this `unless` speaks of no item of the rule", "let it name a label of the `where`: its place is told by that item");
+      fine = false;
+    }
     good = fine && good;
     if (fine) rule.unless.push_back(std::move(pattern));
   }
@@ -148,8 +158,9 @@ bool Checker::ResolvePattern(const syntax::Pattern& written, RuleContext* contex
 }
 
 bool Checker::ResolveItem(const SyntaxItem& item, RuleContext* context, Pattern* pattern) {
-  if (item.min < 0 || (item.max >= 0 && item.max < item.min) || item.max == 0) {
-    Error(Kind::kBadRule, item.span, "the least of this quantity is above its most", "write the smaller number below: C₁²");
+  if (item.max == 0 || (item.max > 0 && item.max < item.min)) {
+    Error(Kind::kBadRule, item.span, item.max == 0 ? "nothing can stand here: the most of this quantity is 0" : "the least of this quantity is above its most",
+          "write the smaller number below and the larger above: C₁²");
     return false;
   }
   switch (item.kind) {

@@ -161,6 +161,7 @@ TEST_CASE("check: rules", "[unit]") {
       {"rule \"r\" { where X:V insert E:/p/ before X delete E }", Kind::kNotSupportedYet, "E", "is inserted by this rule"},
       {"rule \"r\" { where X:/pt/ delete X }", Kind::kBadRule, "X", "takes no label"},
       {"rule \"r\" { where X:/pː/ delete X }", Kind::kBadRule, "ː", "one slot each symbol"},
+      {"rule \"r\" { where X:V delete X unless [+nasal] # }", Kind::kBadRule, "[+nasal] #", "speaks of no item of the rule"},
       {"rule \"r\" { where X:V delete X unless Y:[+nasal] }", Kind::kBadRule, "Y", "labels no item of the rule"},
       {"rule \"r\" { where X:V delete X }  rule \"r\" { where X:C delete X }", Kind::kDuplicate, "\"r\"", "stands twice"},
   });
