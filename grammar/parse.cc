@@ -732,7 +732,7 @@ const auto kNegate = [](auto& context) {
   x3::_val(context) = std::move(outer);
 };
 // Neither a path (`X.N`) nor a label (`X:`).
-const auto name_alone = name >> !Glued(Sign(U".") >> PathAhead{}) >> !Glued(Sign(U":"));
+const auto name_alone = name >> !Glued(Sign(U".") >> !Sign(U".")) >> !Glued(Sign(U":"));
 
 const auto atom_def = Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one 'not'")) > atom[kNegate]) |
                       Word(U"empty")[MakeSet(syntax::Set::Kind::kEmpty)] |
@@ -843,10 +843,8 @@ const auto kJoin = [](auto& context) {
 };
 const auto kIsSet = [](auto& context) { x3::_pass(context) = x3::_val(context).kind == syntax::Item::Kind::kSet; };
 const auto kMoreSet = [](auto& context) {
-  Tails tails;
-  tails.push_back(std::move(x3::_attr(context)));
   syntax::Item& it = x3::_val(context);
-  it.set = Fold(std::move(it.set), std::move(tails));
+  it.set = Fold(std::move(it.set), std::move(x3::_attr(context).tails));
 };
 const auto kLabelCount = [](auto& context) {
   const Scene& scene = SceneOf(context);
@@ -869,11 +867,13 @@ const auto bracketed_def = Sign(U"(")[([](auto& context) {
                            (Sign(U")") | Wanted("@an item or ')'")) >> -Glued(quantity[kQuantify]);
 
 const x3::rule<struct BraceBodyRule, syntax::Item> brace_body("a group in { }");
+const x3::rule<struct MoreSetRule, OpenSet> more_set("or, and, but not");
+const auto more_set_def = +set_tail[Push(&OpenSet::tails)];
 const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alternatives)] >
                             *(!Sign(U"||") >> Sign(U"|") > pattern[Push(&syntax::Item::alternatives)]) >
                             (Sign(U"}") | Wanted("@an item, '|' or '}'")));
 const auto braced_def = brace_body[kJoin] >>
-                        *(x3::eps[kIsSet] >> set_tail[kMoreSet]) >> -Glued(quantity[kQuantify]);
+                        -(x3::eps[kIsSet] >> more_set[kMoreSet]) >> -Glued(quantity[kQuantify]);
 
 const auto later_item_def = ((!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")]) | raw[Sign(U"&")][NotYet("'&'")];
 
@@ -886,7 +886,7 @@ const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
 
 const auto pattern_def = Spanned(+(item[Push(&syntax::Pattern::items)] | later_item));
 
-BOOST_SPIRIT_DEFINE(item, later_item, pattern, labelled, braced, brace_body, bracketed, gap)
+BOOST_SPIRIT_DEFINE(item, later_item, pattern, labelled, braced, brace_body, more_set, bracketed, gap)
 
 // ---- rules ----------------------------------------------------------------------------------------
 

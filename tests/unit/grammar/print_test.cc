@@ -1,0 +1,327 @@
+// What a text prints as, and round trips: Parse(Print(x)) == x on the example grammars and on random syntax trees.
+// `+/-voice` prints as `±voice`.
+#include <algorithm>
+#include <catch2/catch.hpp>
+#include <filesystem>
+#include <fstream>
+#include <random>
+#include <sstream>
+
+#include "grammar/parse.h"
+#include "unit/grammar/shape.h"
+
+namespace tiersmith {
+namespace {
+
+struct Parsed {
+  syntax::File file;
+  std::string messages;
+};
+
+Parsed ParseText(const std::string& text) {
+  SourceMap sources;
+  Diagnostics diagnostics;
+  Parsed parsed;
+  parsed.file = Parse(sources, sources.Add("test.tier", text), diagnostics);
+  for (const Diagnostic& d : diagnostics.all()) parsed.messages += d.message + "\n";
+  return parsed;
+}
+
+// ---- random syntax trees, of the forms the parser makes ------------------------------------------
+
+class Maker {
+ public:
+  explicit Maker(unsigned seed) : random_(seed) {}
+
+  syntax::File File() {
+    syntax::File file;
+    const int tops = 1 + Below(4);
+    for (int i = 0; i < tops; ++i) file.tops.push_back(Top());
+    return file;
+  }
+
+ private:
+  int Below(int n) { return static_cast<int>(random_() % static_cast<unsigned>(n)); }
+  bool Chance(int percent) { return Below(100) < percent; }
+  template <class F>
+  auto Several(int least, int most, F make) {
+    std::vector<decltype(make())> list;
+    const int count = least + Below(most - least + 1);
+    for (int i = 0; i < count; ++i) list.push_back(make());
+    return list;
+  }
+  template <class F>
+  auto Perhaps(F make) {
+    std::optional<decltype(make())> maybe;
+    if (Chance(50)) maybe = make();
+    return maybe;
+  }
+
+  syntax::Name Name() {
+    static const std::vector<std::string> names = {"V",    "Place", "back", "N1",   "Tóne", "stem",  "where", "long",  "x2",
+                                                   "C_0",  "a b",   "αx",   "low_", "",     "one",   "on",    "ŋã",    "V1α",
+                                                   "\u00A0", "first", "-",  "a.b",  "x",    "empty", "a{",    "leftward"};
+    return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
+  }
+  syntax::Name Symbol() {
+    static const std::vector<std::string> names = {"p", "t͡s", "kʷ", "◌̃", "ⁿ◌", "without", "in", "a-b", "surface", "A", "a b", "ǃ"};
+    return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
+  }
+  syntax::FormText Form() {
+    static const std::vector<std::string> forms = {"", "k", "pul-lAr", "a{H} -- b", "t'l; }", "[x]", "\""};
+    return {forms[static_cast<std::size_t>(Below(static_cast<int>(forms.size())))], false, {}};
+  }
+  syntax::Feat Feat() {
+    syntax::Feat feat;
+    feat.kind = static_cast<syntax::Feat::Kind>(Below(5));
+    feat.name = Name();
+    if (feat.kind == syntax::Feat::Kind::kValue) feat.values = Several(1, 3, [&] { return Name(); });
+    return feat;
+  }
+  syntax::Bundle Bundle() { return {Several(0, 3, [&] { return Feat(); }), {}}; }
+  syntax::Set Set(int depth) {
+    syntax::Set set;
+    set.kind = static_cast<syntax::Set::Kind>(Below(depth > 0 ? 8 : 4));
+    switch (set.kind) {
+      case syntax::Set::Kind::kBundle: set.bundle = Bundle(); break;
+      case syntax::Set::Kind::kLiteral: set.literal = Form(); break;
+      case syntax::Set::Kind::kClass: set.name = Name(); break;
+      case syntax::Set::Kind::kEmpty: break;
+      case syntax::Set::Kind::kOr:
+      case syntax::Set::Kind::kAnd:
+      case syntax::Set::Kind::kButNot: set.args = Several(2, 3, [&] { return Set(depth - 1); }); break;
+      case syntax::Set::Kind::kNot: set.args.push_back(Set(depth - 1)); break;
+    }
+    return set;
+  }
+  void Quantify(syntax::Item& item) {
+    if (Chance(60)) return;
+    item.min = Below(13);
+    item.max = Chance(50) ? -1 : item.min + 1 + Below(3);
+  }
+  static bool Single(const syntax::Pattern& pattern) {
+    const syntax::Item& item = pattern.items.front();
+    const bool slot = item.kind == syntax::Item::Kind::kSet || item.kind == syntax::Item::Kind::kName;
+    return pattern.items.size() == 1 && slot && !item.label && item.min == 1 && item.max == 1;
+  }
+  syntax::Item Item(int depth) {
+    syntax::Item item;
+    item.kind = static_cast<syntax::Item::Kind>(Below(depth > 0 ? 5 : 4));
+    switch (item.kind) {
+      case syntax::Item::Kind::kSet:
+        item.set = Set(2);
+        if (Chance(40)) {
+          item.label = Name();
+        } else {
+          Quantify(item);
+        }
+        break;
+      case syntax::Item::Kind::kName:
+        item.name = Name();
+        Quantify(item);
+        break;
+      case syntax::Item::Kind::kBoundary: item.boundary = static_cast<syntax::Item::Boundary>(Below(4)); break;
+      case syntax::Item::Kind::kGap: item.tier = Perhaps([&] { return Name(); }); break;
+      case syntax::Item::Kind::kGroup: {
+        item.alternatives = Several(1, 3, [&] { return Pattern(depth - 1); });
+        if (Chance(30)) {
+          item.min = 0;
+        } else {
+          Quantify(item);
+        }
+        bool singles = true;
+        for (const auto& alternative : item.alternatives) singles = singles && Single(alternative);
+        const bool brackets = item.alternatives.size() == 1 && (item.min != 1 || item.max != 1);
+        if (singles && !brackets) {  // these would be a set
+          syntax::Item boundary;
+          boundary.kind = syntax::Item::Kind::kBoundary;
+          item.alternatives.front().items.push_back(boundary);
+        }
+        break;
+      }
+    }
+    return item;
+  }
+  syntax::Pattern Pattern(int depth) { return {Several(1, 4, [&] { return Item(depth); }), {}}; }
+  syntax::Path Path() { return {Name(), Name(), {}}; }
+  syntax::Change Change() {
+    syntax::Change change;
+    change.kind = static_cast<syntax::Change::Kind>(Below(6));
+    const bool paths = change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
+    if (paths) change.paths = Several(1, 3, [&] { return Path(); });
+    if (change.kind != syntax::Change::Kind::kDelink) change.label = Name();
+    if (change.kind == syntax::Change::Kind::kSet || change.kind == syntax::Change::Kind::kFill) change.bundle = Bundle();
+    if (change.kind == syntax::Change::Kind::kInsert) {
+      change.inserted = Name();
+      change.content.kind = Chance(50) ? syntax::Set::Kind::kBundle : syntax::Set::Kind::kLiteral;
+      if (change.content.kind == syntax::Set::Kind::kBundle) change.content.bundle = Bundle();
+      if (change.content.kind == syntax::Set::Kind::kLiteral) change.content.literal = Form();
+      change.before = Chance(50);
+    }
+    return change;
+  }
+  syntax::Daughter Daughter(bool last) {
+    syntax::Daughter daughter;
+    daughter.kind = static_cast<syntax::Daughter::Kind>(Below(4));
+    if (daughter.kind == syntax::Daughter::Kind::kMany && !last) daughter.kind = syntax::Daughter::Kind::kBinary;
+    daughter.name = Name();
+    if (daughter.kind == syntax::Daughter::Kind::kMany) daughter.values = Several(1, 3, [&] { return Name(); });
+    if (Chance(40)) {
+      daughter.max = 1 + Below(4);
+      daughter.room = Perhaps([&] { return Set(1); });
+    }
+    daughter.floating = Chance(30);
+    daughter.abstract_ = Chance(30);
+    return daughter;
+  }
+  syntax::TreeLine TreeLine() {
+    syntax::TreeLine line;
+    line.mothers = Several(1, 3, [&] { return Name(); });
+    line.daughters = Several(0, 3, [&] { return Daughter(false); });
+    line.daughters.push_back(Daughter(true));
+    return line;
+  }
+  syntax::ValuesIn Values() {
+    return {Several(1, 3, [&] { return syntax::ValueRef{static_cast<syntax::ValueRef::Kind>(Below(4)), Name()}; }),
+            Perhaps([&] { return Set(2); }), {}};
+  }
+  syntax::Segments Segments() {
+    syntax::Segments segments;
+    segments.kind = static_cast<syntax::Segments::Kind>(Below(3));
+    segments.from = Perhaps([&] { return syntax::Name{"ipa", {}}; });
+    segments.added = Perhaps([&] { return Bundle(); });
+    segments.entries = Several(0, 4, [&] {
+      return syntax::SegmentEntry{Symbol(), Perhaps([&] { return Symbol(); }), Perhaps([&] { return Bundle(); }), {}};
+    });
+    segments.without = Several(0, 2, [&] { return Values(); });
+    return segments;
+  }
+  syntax::Rule Rule() {
+    syntax::Rule rule;
+    rule.name = {"spread -- it {", {}};
+    rule.where = Pattern(2);
+    rule.unless = Several(0, 2, [&] { return Pattern(2); });
+    rule.changes = Several(1, 3, [&] { return Change(); });
+    rule.mode = static_cast<syntax::Rule::Mode>(Below(3));
+    return rule;
+  }
+  syntax::Datum Datum() {
+    static const std::vector<std::string> glosses = {"rope", "the dog's", "dogs'", "'", "a } -- ; b", "x'y'"};
+    syntax::Datum datum;
+    datum.underlying = Form();
+    datum.surfaces.push_back({Chance(50) ? "" : "pul{H} 'lar", false, {}});
+    if (Chance(60)) datum.gloss = syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
+    return datum;
+  }
+  syntax::Top Top() {
+    switch (Below(10)) {
+      case 0: return syntax::Language{{"Velmari -- north", {}}, {}};
+      case 1: return syntax::Tree{Several(0, 4, [&] { return TreeLine(); }), {}};
+      case 2: return Segments();
+      case 3:
+        return syntax::Diacritics{
+            Several(0, 3, [&] { return syntax::Diacritic{Symbol(), Bundle(), Perhaps([&] { return Set(2); }), Chance(50), {}}; }), {}};
+      case 4: return syntax::Omit{Several(0, 3, [&] { return Values(); }), {}};
+      case 5: return syntax::Class{Name(), Set(3), {}};
+      case 6: return syntax::NamedPattern{Name(), Pattern(2), {}};
+      case 7: return syntax::Data{Several(0, 4, [&] { return Datum(); }), {}};
+      case 8: return syntax::DataFrom{{"forms.tsv", {}}, {}};
+      default: return Rule();
+    }
+  }
+
+  std::mt19937 random_;
+};
+
+}  // namespace
+
+TEST_CASE("print: rows", "[unit]") {
+  struct Row {
+    const char* text;
+    const char* printed;
+  };
+  const Row rows[] = {
+      {"class V=[ +syll ,-cons]", "class V = [+syll -cons]\n"},
+      {"class \"stem\" = V", "class \"stem\" = V\n"},
+      {"class V = {A | B}", "class V = A or B\n"},
+      {"class V = A or B and C but not D", "class V = {{A or B} and C} but not D\n"},
+      {"class V = A or {B or C}", "class V = A or {B or C}\n"},
+      {"class V = not {[a] | empty}", "class V = not {[a] or empty}\n"},
+      {"class V = [Tone:H Tone:(H L) no Place −back]", "class V = [Tone:H Tone:(H L) no Place -back]\n"},
+      {"class A = B class D = E -- two on a line", "class A = B\nclass D = E\n"},
+      {"class A = B\n   or C", "class A = B or C\n"},
+      {"pattern P = C₁ [+syll] C_0 #", "pattern P = C₁ [+syll] C₀ #\n"},
+      {"pattern P = C_0^2 C₀² V1_0", "pattern P = C₀² C₀² V1₀\n"},
+      {"pattern P = {A | B}_1 {A B | C} (A B) (A)₀ {A}", "pattern P = {A or B}₁ {A B | C} (A B) (A)₀ {A}\n"},
+      {"pattern P = - − = # || ‖", "pattern P = - - = # ‖ ‖\n"},
+      {"pattern P = A ... B ...Place C … D", "pattern P = A ... B ...Place C ... D\n"},
+      {"pattern P = {A | B} but not C", "pattern P = {A or B} but not C\n"},
+      {"pattern P = X:{A | B} /tl/ \"on\"", "pattern P = X:A or B /tl/ \"on\"\n"},
+      {"tree { root > +/-cons x2 in [-son] *Labial\n slot > Tone: H L ×2 floating abstract }",
+       "tree {\n  root > ±cons ×2 in [-son] •Labial\n  slot > Tone: H L ×2 floating abstract\n}\n"},
+      {"tree { root > a > b; c > d }", "tree {\n  root > a > b\n  c > d\n}\n"},
+      {"segments from \"ipa\" [Coronal] { i e=ø [a] without ±back round in C }",
+       "segments from \"ipa\" [Coronal] {\n  i\n  e = ø [a]\n  without ±back round in C\n}\n"},
+      {"diacritics { ◌̃ [+nasal] on [-cons] surface ◌ʷ [Labial round] }",
+       "diacritics {\n  ◌̃ [+nasal] on [-cons] surface\n  ◌ʷ [Labial round]\n}\n"},
+      {"omit { -nasal everywhere ±voice in [+son] }", "omit {\n  -nasal everywhere\n  ±voice in [+son]\n}\n"},
+      {"rule \"r\" { iterate rightward within word where A:V ... B:V unless A # spread A.round, A.back to B delink B.\"on\" }",
+       "rule \"r\" {\n  where A:V ... B:V\n  unless A #\n  spread A.round, A.back to B\n  delink B.\"on\"\n  iterate rightward\n}\n"},
+      {"rule \"r\" { where A:V insert E:/i/ before A insert D:[+syll] after A delete A set A [-a] fill A [b] }",
+       "rule \"r\" {\n  where A:V\n  insert E:/i/ before A\n  insert D:[+syll] after A\n  delete A\n  set A [-a]\n  fill A [b]\n}\n"},
+      {"data { /a -- b/ [c}] 'the dog''s' // []; /x/ [y] }", "data {\n  /a -- b/ [c}] 'the dog''s'\n  // []\n  /x/ [y]\n}\n"},
+      {"data from \"forms.tsv\"", "data from \"forms.tsv\"\n"},
+      {"language \"Velmari\" -- north", "language \"Velmari\"\n"},
+  };
+  for (const Row& row : rows) {
+    CAPTURE(row.text);
+    const Parsed parsed = ParseText(row.text);
+    CHECK(parsed.messages == "");
+    CHECK(Print(parsed.file) == row.printed);
+  }
+}
+
+TEST_CASE("print: entries end at line ends that step back", "[unit]") {
+  const Parsed parsed = ParseText("omit {\n  -nasal\n    in V\n  ±back in\n    {/i/ |\n     /e/}\n  round everywhere\n}\n");
+  CHECK(parsed.messages == "");
+  CHECK(Print(parsed.file) == "omit {\n  -nasal in V\n  ±back in /i/ or /e/\n  round everywhere\n}\n");
+}
+
+TEST_CASE("print: the example grammars come back the same", "[unit]") {
+  int grammars = 0;
+  for (const char* folder : {"/rulesets", "/demo"}) {
+    const std::filesystem::path path = std::string(TIERSMITH_TEST_SOURCE) + folder;
+    if (!std::filesystem::exists(path)) continue;
+    for (const auto& entry : std::filesystem::recursive_directory_iterator(path)) {
+      if (entry.path().extension() != ".tier") continue;
+      std::ifstream stream(entry.path());
+      std::stringstream text;
+      text << stream.rdbuf();
+      CAPTURE(entry.path());
+      const Parsed parsed = ParseText(text.str());
+      CHECK(parsed.messages == "");
+      const std::string printed = Print(parsed.file);
+      CHECK(Shape(ParseText(printed).file) == Shape(parsed.file));
+      CHECK(printed.size() > 100);
+      ++grammars;
+    }
+  }
+  CHECK(grammars >= 5);
+}
+
+TEST_CASE("print: random syntax trees come back the same", "[unit]") {
+  for (unsigned seed = 0; seed < 5000; ++seed) {
+    const syntax::File file = Maker(seed).File();
+    const std::string printed = Print(file);
+    const Parsed again = ParseText(printed);
+    INFO("seed " << seed << "\n" << printed << again.messages);
+    REQUIRE(again.messages == "");
+    const std::string made = Shape(file), read = Shape(again.file);
+    const auto differ = std::mismatch(made.begin(), made.end(), read.begin(), read.end()).first - made.begin();
+    INFO("they differ where the tree made reads " << made.substr(static_cast<std::size_t>(std::max<std::ptrdiff_t>(differ - 60, 0)), 120));
+    REQUIRE((made == read));
+    REQUIRE(Print(again.file) == printed);
+  }
+}
+
+}  // namespace tiersmith
