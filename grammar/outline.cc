@@ -66,9 +66,9 @@ struct Token {
   Kind kind = Kind::kEnd;
   std::size_t begin = 0;
   std::size_t end = 0;
-  int column = 0;              // of its first character
+  int column = 0;  // of its first character
   bool first_on_line = false;
-  bool broken = false;         // an unclosed form, string or gloss
+  bool broken = false;  // an unclosed form, string or gloss
 };
 
 class Cutter {
@@ -82,13 +82,16 @@ class Cutter {
     for (Token token = Next(); token.kind != Token::Kind::kEnd; token = Next()) {
       if (token.kind == Token::Kind::kSemicolon) continue;
       if (token.kind == Token::Kind::kClose) {
-        diagnostics_.Error(Kind::kSyntax, SpanOf(token), "this '}' closes nothing", "take it away, or open its block with '{'");
+        diagnostics_.Error(Kind::kSyntax, SpanOf(token), "this '}' closes nothing",
+                           "take it away, or open its block with '{'");
         continue;
       }
       const SectionWord* word = token.kind == Token::Kind::kWord ? FindWord(Text(token)) : nullptr;
       if (word == nullptr) {
-        diagnostics_.Error(Kind::kSyntax, SpanOf(token), "expected the word that begins a section, found '" + std::string(Text(token)) + "'",
-                           "sections begin with words such as tree, segments, class, rule, data");
+        diagnostics_.Error(
+            Kind::kSyntax, SpanOf(token),
+            "expected the word that begins a section, found '" + std::string(Text(token)) + "'",
+            "sections begin with words such as tree, segments, class, rule, data");
         SkipToSection();
         continue;
       }
@@ -98,7 +101,9 @@ class Cutter {
   }
 
  private:
-  std::string_view Text(const Token& token) const { return text_.substr(token.begin, token.end - token.begin); }
+  std::string_view Text(const Token& token) const {
+    return text_.substr(token.begin, token.end - token.begin);
+  }
   Span MakeSpan(std::size_t begin, std::size_t end) const {
     return {file_, static_cast<std::uint32_t>(begin), static_cast<std::uint32_t>(std::max(begin, end))};
   }
@@ -126,13 +131,17 @@ class Cutter {
 
   std::size_t LineEnd(std::size_t from) const { return std::min(text_.find('\n', from), text_.size()); }
 
-  int Column() const {
-    int column = 0;
-    for (std::size_t i = line_start_; i < position_;) {
-      column = text_[i] == '\t' ? (column / 8 + 1) * 8 : column + 1;
-      i += notation::CodePointAt(text_, i).length;
+  // Counted on from where it was last asked for, so that long lines cost no more than short ones.
+  int Column() {
+    if (counted_to_ < line_start_ || counted_to_ > position_) {
+      counted_to_ = line_start_;
+      column_ = 0;
     }
-    return column;
+    while (counted_to_ < position_) {
+      column_ = text_[counted_to_] == '\t' ? (column_ / 8 + 1) * 8 : column_ + 1;
+      counted_to_ += notation::CodePointAt(text_, counted_to_).length;
+    }
+    return column_;
   }
 
   Token Next() {
@@ -160,13 +169,24 @@ class Cutter {
   Token::Kind Step(Token& token) {
     const char c = text_[position_];
     switch (c) {
-      case '{': ++position_; return Token::Kind::kOpen;
-      case '}': ++position_; return Token::Kind::kClose;
-      case '(': ++position_; return Token::Kind::kOpenOther;
+      case '{':
+        ++position_;
+        return Token::Kind::kOpen;
+      case '}':
+        ++position_;
+        return Token::Kind::kClose;
+      case '(':
+        ++position_;
+        return Token::Kind::kOpenOther;
       case ')':
-      case ']': ++position_; return Token::Kind::kCloseOther;
-      case ';': ++position_; return Token::Kind::kSemicolon;
-      case '"': return Enclosed(token, "\"", "string");
+      case ']':
+        ++position_;
+        return Token::Kind::kCloseOther;
+      case ';':
+        ++position_;
+        return Token::Kind::kSemicolon;
+      case '"':
+        return Enclosed(token, "\"", "string");
       case '[':
         if (section_ == "data") return Enclosed(token, "]", "surface form");
         ++position_;
@@ -175,12 +195,14 @@ class Cutter {
         if (section_ != "spelling") return Enclosed(token, "/", "form");
         break;
       case '<':
-        if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm") return Enclosed(token, ">", "form");
+        if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm")
+          return Enclosed(token, ">", "form");
         break;
       case '\'':
         if (section_ == "data" || section_ == "lexicon") return Gloss(token);
         break;
-      default: break;
+      default:
+        break;
     }
     if (At("+/-")) {
       position_ += 3;
@@ -239,7 +261,8 @@ class Cutter {
     while (end > inside && (text_[end - 1] == ' ' || text_[end - 1] == '\r' || text_[end - 1] == '\t')) --end;
     position_ = end;
     token.broken = true;
-    diagnostics_.Error(Kind::kUnclosedForm, MakeSpan(token.begin, end), std::string("this ") + what + " is not closed on its line",
+    diagnostics_.Error(Kind::kUnclosedForm, MakeSpan(token.begin, end),
+                       std::string("this ") + what + " is not closed on its line",
                        "close it with " + closer + " before the end of the line");
   }
 
@@ -251,7 +274,8 @@ class Cutter {
       const std::size_t begin = position_;
       if (begin >= text_.size()) return;
       const Token::Kind kind = Plain();
-      const bool section = kind == Token::Kind::kWord && FindWord(text_.substr(begin, position_ - begin)) != nullptr;
+      const bool section =
+          kind == Token::Kind::kWord && FindWord(text_.substr(begin, position_ - begin)) != nullptr;
       position_ = begin;
       if (section) return;
       fresh_line_ = false;
@@ -289,7 +313,8 @@ class Cutter {
       const bool outside = token.first_on_line && token.column <= keyword.column && !opens;
       const bool own_name = (word.kind == SectionKind::kClass || word.kind == SectionKind::kPattern) &&
                             section.head.span.end == section.head.span.begin && !token.first_on_line;
-      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr && !after_comparing && !own_name &&
+      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr &&
+                         !after_comparing && !own_name &&
                          (token.first_on_line || (word.joined && depth <= 0));
       if (token.kind == Token::Kind::kEnd || outside || other) {
         Back(token);
@@ -324,7 +349,8 @@ class Cutter {
 
   void Deep(int depth, const Token& token, Entry& entry) {
     if (depth <= kDeepest || entry.broken || later_) return;
-    diagnostics_.Error(Kind::kLimit, SpanOf(token), "brackets stand more than " + std::to_string(kDeepest) + " deep",
+    diagnostics_.Error(Kind::kLimit, SpanOf(token),
+                       "brackets stand more than " + std::to_string(kDeepest) + " deep",
                        "name the inner parts with class or pattern");
     entry.broken = true;
   }
@@ -345,7 +371,8 @@ class Cutter {
     section.body.span = MakeSpan(brace.end, brace.end);
     for (;;) {
       const Token token = Next();
-      if (token.kind == Token::Kind::kEnd || (token.first_on_line && BeginsSection(keyword, token, section))) {
+      if (token.kind == Token::Kind::kEnd ||
+          (token.first_on_line && BeginsSection(keyword, token, section))) {
         Back(token);
         finish();
         section.closed = false;
@@ -385,8 +412,8 @@ class Cutter {
   }
 
   void ReportUnclosed(const Token& brace, const Section& section) {
-    diagnostics_.Error(Kind::kUnclosedBlock, SpanOf(brace), "the block of this '" + section.word + "' is not closed",
-                       "add '}' where it ends");
+    diagnostics_.Error(Kind::kUnclosedBlock, SpanOf(brace),
+                       "the block of this '" + section.word + "' is not closed", "add '}' where it ends");
   }
 
   std::string_view text_;
@@ -397,6 +424,8 @@ class Cutter {
   bool later_ = false;
   std::size_t position_ = 0;
   std::size_t line_start_ = 0;
+  std::size_t counted_to_ = 0;
+  int column_ = 0;
   bool fresh_line_ = true;
 };
 

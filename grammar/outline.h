@@ -43,9 +43,9 @@ struct Section {
   std::string word;
   Span whole;
   Span keyword;
-  Entry head;               // from after the word to the block, or to the end
+  Entry head;  // from after the word to the block, or to the end
   bool has_block = false;
-  Entry body;               // what stands between the braces
+  Entry body;  // what stands between the braces
   bool closed = true;
   std::vector<Entry> entries;  // of the block; a rule is not cut
 };

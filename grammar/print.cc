@@ -22,41 +22,63 @@ std::string Joined(const List& list, const char* between, const F& print) {
 }
 
 std::string Quoted(const std::string& text) { return "\"" + text + "\""; }
-std::string PrintName(const syntax::Name& name) { return notation::IsPlainName(name.text) ? name.text : Quoted(name.text); }
-std::string PrintSymbol(const syntax::Name& name) { return notation::IsPlainSymbol(name.text) ? name.text : Quoted(name.text); }
-std::string PrintForm(const syntax::FormText& form) { return form.spelled ? "⟨" + form.raw + "⟩" : "/" + form.raw + "/"; }
+std::string PrintName(const syntax::Name& name) {
+  return notation::IsPlainName(name.text) ? name.text : Quoted(name.text);
+}
+std::string PrintSymbol(const syntax::Name& name) {
+  return notation::IsPlainSymbol(name.text) ? name.text : Quoted(name.text);
+}
+std::string PrintForm(const syntax::FormText& form) {
+  return form.spelled ? "⟨" + form.raw + "⟩" : "/" + form.raw + "/";
+}
 
 std::string PrintFeat(const syntax::Feat& feat) {
   const std::string name = PrintName(feat.name);
   switch (feat.kind) {
-    case syntax::Feat::Kind::kPlus: return "+" + name;
-    case syntax::Feat::Kind::kMinus: return "-" + name;
-    case syntax::Feat::Kind::kBears: return name;
-    case syntax::Feat::Kind::kNo: return "no " + name;
-    case syntax::Feat::Kind::kValue: break;
+    case syntax::Feat::Kind::kPlus:
+      return "+" + name;
+    case syntax::Feat::Kind::kMinus:
+      return "-" + name;
+    case syntax::Feat::Kind::kBears:
+      return name;
+    case syntax::Feat::Kind::kNo:
+      return "no " + name;
+    case syntax::Feat::Kind::kValue:
+      break;
   }
   if (feat.values.size() == 1) return name + ":" + PrintName(feat.values.front());
   return name + ":(" + Joined(feat.values, " ", PrintName) + ")";
 }
 
-std::string PrintBundle(const syntax::Bundle& bundle) { return "[" + Joined(bundle.feats, " ", PrintFeat) + "]"; }
+std::string PrintBundle(const syntax::Bundle& bundle) {
+  return "[" + Joined(bundle.feats, " ", PrintFeat) + "]";
+}
 
 bool IsOperator(const Set& set) {
   return set.kind == Set::Kind::kOr || set.kind == Set::Kind::kAnd || set.kind == Set::Kind::kButNot;
 }
 
 std::string PrintSet(const Set& set);
-std::string PrintArgument(const Set& set) { return IsOperator(set) ? "{" + PrintSet(set) + "}" : PrintSet(set); }
+std::string PrintArgument(const Set& set) {
+  return IsOperator(set) ? "{" + PrintSet(set) + "}" : PrintSet(set);
+}
 
 std::string PrintSet(const Set& set) {
   switch (set.kind) {
-    case Set::Kind::kBundle: return PrintBundle(set.bundle);
-    case Set::Kind::kLiteral: return PrintForm(set.literal);
-    case Set::Kind::kClass: return PrintName(set.name);
-    case Set::Kind::kEmpty: return "empty";
-    case Set::Kind::kOr: return Joined(set.args, " or ", PrintArgument);
-    case Set::Kind::kAnd: return Joined(set.args, " and ", PrintArgument);
-    case Set::Kind::kButNot: return Joined(set.args, " but not ", PrintArgument);
+    case Set::Kind::kBundle:
+      return PrintBundle(set.bundle);
+    case Set::Kind::kLiteral:
+      return PrintForm(set.literal);
+    case Set::Kind::kClass:
+      return PrintName(set.name);
+    case Set::Kind::kEmpty:
+      return "empty";
+    case Set::Kind::kOr:
+      return Joined(set.args, " or ", PrintArgument);
+    case Set::Kind::kAnd:
+      return Joined(set.args, " and ", PrintArgument);
+    case Set::Kind::kButNot:
+      return Joined(set.args, " but not ", PrintArgument);
     case Set::Kind::kNot: {
       const Set& inner = set.args.front();
       return "not " + (inner.kind == Set::Kind::kNot ? "{" + PrintSet(inner) + "}" : PrintArgument(inner));
@@ -83,31 +105,42 @@ std::string PrintPattern(const syntax::Pattern& pattern);
 
 std::string PrintGroup(const Item& item) {
   const std::string inside = Joined(item.alternatives, " | ", PrintPattern);
-  if (item.alternatives.size() == 1 && (item.min != 1 || item.max != 1)) return "(" + inside + ")" + PrintQuantity(item, 0);
+  if (item.alternatives.size() == 1 && (item.min != 1 || item.max != 1))
+    return "(" + inside + ")" + PrintQuantity(item, 0);
   return "{" + inside + "}" + PrintQuantity(item, 1);
 }
 
 std::string PrintItemSet(const Item& item) {
   const std::string label = item.label ? PrintName(*item.label) + ":" : "";
   const std::string quantity = PrintQuantity(item, 1);
-  const bool braces = IsOperator(item.set) ? !quantity.empty() : !item.label && item.set.kind == Set::Kind::kClass;
+  const bool braces =
+      IsOperator(item.set) ? !quantity.empty() : !item.label && item.set.kind == Set::Kind::kClass;
   const std::string set = PrintSet(item.set);
   return label + (braces ? "{" + set + "}" : set) + quantity;
 }
 
 std::string PrintItem(const Item& item) {
   switch (item.kind) {
-    case Item::Kind::kSet: return PrintItemSet(item);
-    case Item::Kind::kName: return PrintName(item.name) + PrintQuantity(item, 1);
-    case Item::Kind::kBoundary: break;
-    case Item::Kind::kGap: return "..." + (item.tier ? PrintName(*item.tier) : std::string());
-    case Item::Kind::kGroup: return PrintGroup(item);
+    case Item::Kind::kSet:
+      return PrintItemSet(item);
+    case Item::Kind::kName:
+      return PrintName(item.name) + PrintQuantity(item, 1);
+    case Item::Kind::kBoundary:
+      break;
+    case Item::Kind::kGap:
+      return "..." + (item.tier ? PrintName(*item.tier) : std::string());
+    case Item::Kind::kGroup:
+      return PrintGroup(item);
   }
   switch (item.boundary) {
-    case Item::Boundary::kMorpheme: return "-";
-    case Item::Boundary::kClitic: return "=";
-    case Item::Boundary::kWord: return "#";
-    case Item::Boundary::kPhrase: return "‖";
+    case Item::Boundary::kMorpheme:
+      return "-";
+    case Item::Boundary::kClitic:
+      return "=";
+    case Item::Boundary::kWord:
+      return "#";
+    case Item::Boundary::kPhrase:
+      return "‖";
   }
   return {};
 }
@@ -119,21 +152,31 @@ std::string PrintPath(const syntax::Path& path) { return PrintName(path.label) +
 std::string PrintChange(const syntax::Change& change) {
   const std::string label = PrintName(change.label);
   switch (change.kind) {
-    case syntax::Change::Kind::kSpread: return "spread " + Joined(change.paths, ", ", PrintPath) + " to " + label;
-    case syntax::Change::Kind::kDelink: return "delink " + Joined(change.paths, ", ", PrintPath);
-    case syntax::Change::Kind::kSet: return "set " + label + " " + PrintBundle(change.bundle);
-    case syntax::Change::Kind::kFill: return "fill " + label + " " + PrintBundle(change.bundle);
-    case syntax::Change::Kind::kDelete: return "delete " + label;
-    case syntax::Change::Kind::kInsert: break;
+    case syntax::Change::Kind::kSpread:
+      return "spread " + Joined(change.paths, ", ", PrintPath) + " to " + label;
+    case syntax::Change::Kind::kDelink:
+      return "delink " + Joined(change.paths, ", ", PrintPath);
+    case syntax::Change::Kind::kSet:
+      return "set " + label + " " + PrintBundle(change.bundle);
+    case syntax::Change::Kind::kFill:
+      return "fill " + label + " " + PrintBundle(change.bundle);
+    case syntax::Change::Kind::kDelete:
+      return "delete " + label;
+    case syntax::Change::Kind::kInsert:
+      break;
   }
-  return "insert " + PrintName(change.inserted) + ":" + PrintSet(change.content) + (change.before ? " before " : " after ") + label;
+  return "insert " + PrintName(change.inserted) + ":" + PrintSet(change.content) +
+         (change.before ? " before " : " after ") + label;
 }
 
 std::string PrintMode(syntax::Rule::Mode mode) {
   switch (mode) {
-    case syntax::Rule::Mode::kAtOnce: return {};
-    case syntax::Rule::Mode::kRightward: return "  iterate rightward\n";
-    case syntax::Rule::Mode::kLeftward: return "  iterate leftward\n";
+    case syntax::Rule::Mode::kAtOnce:
+      return {};
+    case syntax::Rule::Mode::kRightward:
+      return "  iterate rightward\n";
+    case syntax::Rule::Mode::kLeftward:
+      return "  iterate leftward\n";
   }
   return {};
 }
@@ -141,10 +184,15 @@ std::string PrintMode(syntax::Rule::Mode mode) {
 std::string PrintDaughter(const syntax::Daughter& daughter) {
   std::string out;
   switch (daughter.kind) {
-    case syntax::Daughter::Kind::kBinary: out = "±"; break;
-    case syntax::Daughter::Kind::kStanding: out = "•"; break;
+    case syntax::Daughter::Kind::kBinary:
+      out = "±";
+      break;
+    case syntax::Daughter::Kind::kStanding:
+      out = "•";
+      break;
     case syntax::Daughter::Kind::kPlain:
-    case syntax::Daughter::Kind::kMany: break;
+    case syntax::Daughter::Kind::kMany:
+      break;
   }
   out += PrintName(daughter.name);
   if (!daughter.values.empty()) out += ": " + Joined(daughter.values, " ", PrintName);
@@ -158,16 +206,21 @@ std::string PrintDaughter(const syntax::Daughter& daughter) {
 std::string PrintValueRef(const syntax::ValueRef& value) {
   const std::string name = PrintName(value.name);
   switch (value.kind) {
-    case syntax::ValueRef::Kind::kBoth: return "±" + name;
-    case syntax::ValueRef::Kind::kPlus: return "+" + name;
-    case syntax::ValueRef::Kind::kMinus: return "-" + name;
-    case syntax::ValueRef::Kind::kBare: return name;
+    case syntax::ValueRef::Kind::kBoth:
+      return "±" + name;
+    case syntax::ValueRef::Kind::kPlus:
+      return "+" + name;
+    case syntax::ValueRef::Kind::kMinus:
+      return "-" + name;
+    case syntax::ValueRef::Kind::kBare:
+      return name;
   }
   return {};
 }
 
 std::string PrintValues(const syntax::ValuesIn& values) {
-  return Joined(values.values, " ", PrintValueRef) + (values.in ? " in " + PrintSet(*values.in) : " everywhere");
+  return Joined(values.values, " ", PrintValueRef) +
+         (values.in ? " in " + PrintSet(*values.in) : " everywhere");
 }
 
 std::string PrintSegment(const syntax::SegmentEntry& entry) {
@@ -183,7 +236,9 @@ std::string Block(const std::string& head, const List& entries, const F& print) 
 }
 
 struct TopPrinter {
-  std::string operator()(const syntax::Language& top) const { return "language " + Quoted(top.name.text) + "\n"; }
+  std::string operator()(const syntax::Language& top) const {
+    return "language " + Quoted(top.name.text) + "\n";
+  }
   std::string operator()(const syntax::Tree& top) const {
     return Block("tree", top.lines, [](const syntax::TreeLine& line) {
       return Joined(line.mothers, " > ", PrintName) + " > " + Joined(line.daughters, " ", PrintDaughter);
@@ -192,9 +247,15 @@ struct TopPrinter {
   std::string operator()(const syntax::Segments& top) const {
     std::string head;
     switch (top.kind) {
-      case syntax::Segments::Kind::kSegments: head = "segments"; break;
-      case syntax::Segments::Kind::kArchisegments: head = "archisegments"; break;
-      case syntax::Segments::Kind::kAllophones: head = "allophones"; break;
+      case syntax::Segments::Kind::kSegments:
+        head = "segments";
+        break;
+      case syntax::Segments::Kind::kArchisegments:
+        head = "archisegments";
+        break;
+      case syntax::Segments::Kind::kAllophones:
+        head = "allophones";
+        break;
     }
     if (top.from) head += " from " + Quoted(top.from->text);
     if (top.added) head += " " + PrintBundle(*top.added);
@@ -205,12 +266,14 @@ struct TopPrinter {
   }
   std::string operator()(const syntax::Diacritics& top) const {
     return Block("diacritics", top.entries, [](const syntax::Diacritic& entry) {
-      return PrintSymbol(entry.symbol) + " " + PrintBundle(entry.bundle) + (entry.on ? " on " + PrintSet(*entry.on) : "") +
-             (entry.surface ? " surface" : "");
+      return PrintSymbol(entry.symbol) + " " + PrintBundle(entry.bundle) +
+             (entry.on ? " on " + PrintSet(*entry.on) : "") + (entry.surface ? " surface" : "");
     });
   }
   std::string operator()(const syntax::Omit& top) const { return Block("omit", top.entries, PrintValues); }
-  std::string operator()(const syntax::Class& top) const { return "class " + PrintName(top.name) + " = " + PrintSet(top.set) + "\n"; }
+  std::string operator()(const syntax::Class& top) const {
+    return "class " + PrintName(top.name) + " = " + PrintSet(top.set) + "\n";
+  }
   std::string operator()(const syntax::NamedPattern& top) const {
     return "pattern " + PrintName(top.name) + " = " + PrintPattern(top.pattern) + "\n";
   }
@@ -222,16 +285,21 @@ struct TopPrinter {
   }
   std::string operator()(const syntax::Data& top) const {
     return Block("data", top.rows, [](const syntax::Datum& row) {
-      std::string out = PrintForm(row.underlying) + " " +
-                        Joined(row.surfaces, " ~ ", [](const syntax::FormText& form) { return "[" + form.raw + "]"; });
+      std::string out =
+          PrintForm(row.underlying) + " " +
+          Joined(row.surfaces, " ~ ", [](const syntax::FormText& form) { return "[" + form.raw + "]"; });
       if (!row.gloss) return out;
       out += " '";
       for (const char c : row.gloss->text) out += c == '\'' ? "''" : std::string(1, c);
       return out + "'";
     });
   }
-  std::string operator()(const syntax::DataFrom& top) const { return "data from " + Quoted(top.path.text) + "\n"; }
-  std::string operator()(const syntax::Unsupported& top) const { return "-- not supported yet: " + top.construct + "\n"; }
+  std::string operator()(const syntax::DataFrom& top) const {
+    return "data from " + Quoted(top.path.text) + "\n";
+  }
+  std::string operator()(const syntax::Unsupported& top) const {
+    return "-- not supported yet: " + top.construct + "\n";
+  }
 };
 
 }  // namespace

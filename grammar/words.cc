@@ -11,17 +11,19 @@ namespace tiersmith::notation {
 const std::vector<std::string_view>& ReservedWords() {
   static const std::vector<std::string_view> words = {
       // what begins a section or a step among the rules
-      "language", "include", "strict", "given", "print", "tree", "segments", "archisegments", "allophones", "diacritics",
-      "omit", "class", "pattern", "fuse", "sharing", "length", "rule", "complete", "parse", "apply", "stratum", "cyclic",
-      "syllable", "mora", "foot", "stress", "melody", "dock", "lexicon", "paradigm", "data", "spelling", "from", "at",
+      "language", "include", "strict", "given", "print", "tree", "segments", "archisegments", "allophones",
+      "diacritics", "omit", "class", "pattern", "fuse", "sharing", "length", "rule", "complete", "parse",
+      "apply", "stratum", "cyclic", "syllable", "mora", "foot", "stress", "melody", "dock", "lexicon",
+      "paradigm", "data", "spelling", "from", "at",
       // clauses, conditions and modifiers
-      "where", "otherwise", "on", "over", "within", "if", "unless", "only", "except", "derived", "preserving", "cutting",
-      "prefer", "iterate", "repeat", "optional",
+      "where", "otherwise", "on", "over", "within", "if", "unless", "only", "except", "derived", "preserving",
+      "cutting", "prefer", "iterate", "repeat", "optional",
       // changes
-      "spread", "delink", "set", "fill", "delete", "lengthen", "shorten", "insert", "merge", "swap", "link", "copy",
+      "spread", "delink", "set", "fill", "delete", "lengthen", "shorten", "insert", "merge", "swap", "link",
+      "copy",
       // what joins them
-      "to", "before", "after", "between", "in", "is", "or", "but", "not", "no", "and", "everywhere", "alpha", "shared",
-      "unshared", "begins", "ends", "empty", "floating", "abstract", "without", "linked", "held",
+      "to", "before", "after", "between", "in", "is", "or", "but", "not", "no", "and", "everywhere", "alpha",
+      "shared", "unshared", "begins", "ends", "empty", "floating", "abstract", "without", "linked", "held",
       // domains
       "morpheme", "stem", "host", "word", "phrase"};
   return words;
@@ -34,8 +36,9 @@ bool IsReserved(std::string_view word) {
 
 const std::vector<std::string_view>& BundleWords() {
   static const std::vector<std::string_view> words = {
-      "long",  "short",  "half",   "first", "last",  "onset",    "peak",       "coda", "appendix", "stray",
-      "open",  "closed", "light",  "heavy", "main",  "stressed", "unstressed", "head", "footed",   "unfooted", "rightward", "leftward"};
+      "long",       "short", "half",   "first",    "last",      "onset",   "peak", "coda",
+      "appendix",   "stray", "open",   "closed",   "light",     "heavy",   "main", "stressed",
+      "unstressed", "head",  "footed", "unfooted", "rightward", "leftward"};
   return words;
 }
 
@@ -52,8 +55,10 @@ bool IsNameStart(char32_t c) {
     case UTF8PROC_CATEGORY_LL:
     case UTF8PROC_CATEGORY_LT:
     case UTF8PROC_CATEGORY_LM:
-    case UTF8PROC_CATEGORY_LO: return !IsGreekVariable(c);
-    default: return false;
+    case UTF8PROC_CATEGORY_LO:
+      return !IsGreekVariable(c);
+    default:
+      return false;
   }
 }
 
@@ -62,14 +67,18 @@ bool IsNameCharacter(char32_t c) {
   switch (utf8proc_category(static_cast<utf8proc_int32_t>(c))) {
     case UTF8PROC_CATEGORY_MN:
     case UTF8PROC_CATEGORY_MC:
-    case UTF8PROC_CATEGORY_ME: return true;
-    default: return IsNameStart(c);
+    case UTF8PROC_CATEGORY_ME:
+      return true;
+    default:
+      return IsNameStart(c);
   }
 }
 
 std::size_t QuantityTail(std::string_view name) {
   std::size_t digits = 0;
-  while (digits < name.size() && name[name.size() - 1 - digits] >= '0' && name[name.size() - 1 - digits] <= '9') ++digits;
+  while (digits < name.size() && name[name.size() - 1 - digits] >= '0' &&
+         name[name.size() - 1 - digits] <= '9')
+    ++digits;
   const bool tail = digits > 0 && digits + 1 < name.size() && name[name.size() - 1 - digits] == '_';
   return tail ? digits + 1 : 0;
 }
@@ -85,7 +94,9 @@ bool LooksLikeTimes(std::string_view name) {
 }  // namespace
 
 bool IsPlainName(std::string_view name) {
-  if (name.empty() || IsReserved(name) || IsBundleWord(name) || LooksLikeTimes(name) || QuantityTail(name) > 0) return false;
+  if (name.empty() || IsReserved(name) || IsBundleWord(name) || LooksLikeTimes(name) ||
+      QuantityTail(name) > 0)
+    return false;
   bool first = true;
   for (std::size_t i = 0; i < name.size();) {
     const CodePoint c = CodePointAt(name, i);

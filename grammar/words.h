@@ -15,8 +15,8 @@ bool IsReserved(std::string_view word);
 const std::vector<std::string_view>& BundleWords();
 bool IsBundleWord(std::string_view word);
 
-// Letters with their marks, ASCII digits, `_`. Subscripts and superscripts are quantities, never part of a name,
-// although Unicode's own rule for names takes them in.
+// Letters with their marks, ASCII digits, `_`. Subscripts and superscripts are quantities, never part of a
+// name, although Unicode's own rule for names takes them in.
 bool IsNameStart(char32_t c);
 bool IsNameCharacter(char32_t c);
 bool IsGreekVariable(char32_t c);  // α β γ δ

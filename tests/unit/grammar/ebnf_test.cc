@@ -1,6 +1,7 @@
-// grammar/notation.ebnf against the parser. The file is read as a grammar; a generator makes random sentences of it,
-// a recogniser that knows nothing of the parser says of spoiled sentences whether they are still in the language,
-// and the parser must agree both times. /pul-lAr/ in `data { /pul-lAr/ [pullɑr] }` is one token here.
+// grammar/notation.ebnf against the parser. The file is read as a grammar; a generator makes random sentences
+// of it, a recogniser that knows nothing of the parser says of spoiled sentences whether they are still in
+// the language, and the parser must agree both times. /pul-lAr/ in `data { /pul-lAr/ [pullɑr] }` is one token
+// here.
 #include <array>
 #include <catch2/catch.hpp>
 #include <fstream>
@@ -77,7 +78,8 @@ class EbnfReader {
   void SkipComment() {
     int depth = 0;
     do {
-      const bool open = text_.compare(position_, 2, "(*") == 0, close = text_.compare(position_, 2, "*)") == 0;
+      const bool open = text_.compare(position_, 2, "(*") == 0,
+                 close = text_.compare(position_, 2, "*)") == 0;
       depth += open - close;
       position_ += open || close ? 2 : 1;
     } while (depth > 0 && position_ < text_.size());
@@ -92,7 +94,8 @@ class EbnfReader {
   }
   Expression Sequence() {
     Expression sequence;
-    while (token_ != "" && token_ != "|" && token_ != ";" && token_ != "]" && token_ != "}" && token_ != "}-" && token_ != ")")
+    while (token_ != "" && token_ != "|" && token_ != ";" && token_ != "]" && token_ != "}" &&
+           token_ != "}-" && token_ != ")")
       sequence.parts.push_back(Part());
     return sequence;
   }
@@ -154,7 +157,9 @@ std::string Text(const Sentence& sentence) {
 
 class Ebnf {
  public:
-  Ebnf() : productions_(EbnfReader(ReadFile(std::string(TIERSMITH_TEST_SOURCE) + "/grammar/notation.ebnf")).Read()) {
+  Ebnf()
+      : productions_(
+            EbnfReader(ReadFile(std::string(TIERSMITH_TEST_SOURCE) + "/grammar/notation.ebnf")).Read()) {
     Literals(productions_.at("reserved"), reserved_);
     Literals(productions_.at("bundle_word"), bundle_words_);
     for (int round = 0; round < 100; ++round)
@@ -188,8 +193,10 @@ class Ebnf {
       case Expression::Kind::kOptional:
       case Expression::Kind::kRepeat:
       case Expression::Kind::kLiteral:
-      case Expression::Kind::kWords: return 0;
-      case Expression::Kind::kName: return depth_.count(e.text) ? depth_.at(e.text) : 1000;
+      case Expression::Kind::kWords:
+        return 0;
+      case Expression::Kind::kName:
+        return depth_.count(e.text) ? depth_.at(e.text) : 1000;
       case Expression::Kind::kSequence:
       case Expression::Kind::kRepeatOnce: {
         int deepest = 0;
@@ -205,11 +212,15 @@ class Ebnf {
     return 0;
   }
 
-  static int Pick(std::mt19937& random, int below) { return static_cast<int>(random() % static_cast<unsigned>(below)); }
+  static int Pick(std::mt19937& random, int below) {
+    return static_cast<int>(random() % static_cast<unsigned>(below));
+  }
 
   void Make(const Expression& e, std::mt19937& random, int depth, Sentence& out, bool& glue) const {
     switch (e.kind) {
-      case Expression::Kind::kLiteral: out.push_back({e.text, std::exchange(glue, false)}); return;
+      case Expression::Kind::kLiteral:
+        out.push_back({e.text, std::exchange(glue, false)});
+        return;
       case Expression::Kind::kWords:
         if (e.text == "glued") {
           glue = true;
@@ -217,22 +228,28 @@ class Ebnf {
           out.push_back({Spell(e.text, random), std::exchange(glue, false)});
         }
         return;
-      case Expression::Kind::kName: return Make(productions_.at(e.text), random, depth - 1, out, glue);
+      case Expression::Kind::kName:
+        return Make(productions_.at(e.text), random, depth - 1, out, glue);
       case Expression::Kind::kSequence:
         for (const Expression& part : e.parts) Make(part, random, depth, out, glue);
         return;
       case Expression::Kind::kOptional:
-        if (Pick(random, 2) == 0 && Depth(e.parts[0]) < std::max(depth, 1)) Make(e.parts[0], random, depth, out, glue);
+        if (Pick(random, 2) == 0 && Depth(e.parts[0]) < std::max(depth, 1))
+          Make(e.parts[0], random, depth, out, glue);
         return;
-      case Expression::Kind::kRepeatOnce: Make(e.parts[0], random, depth, out, glue); [[fallthrough]];
+      case Expression::Kind::kRepeatOnce:
+        Make(e.parts[0], random, depth, out, glue);
+        [[fallthrough]];
       case Expression::Kind::kRepeat:
-        while (Pick(random, 5) < 2 && Depth(e.parts[0]) < std::max(depth, 1)) Make(e.parts[0], random, depth, out, glue);
+        while (Pick(random, 5) < 2 && Depth(e.parts[0]) < std::max(depth, 1))
+          Make(e.parts[0], random, depth, out, glue);
         return;
       case Expression::Kind::kChoice: {
         std::vector<const Expression*> open;
         for (const Expression& part : e.parts)
           if (Depth(part) <= std::max(depth, Depth(e))) open.push_back(&part);
-        Make(*open[static_cast<std::size_t>(Pick(random, static_cast<int>(open.size())))], random, depth, out, glue);
+        Make(*open[static_cast<std::size_t>(Pick(random, static_cast<int>(open.size())))], random, depth, out,
+             glue);
         return;
       }
     }
@@ -263,17 +280,21 @@ class Ebnf {
   }
 
   bool IsBareName(const std::string& text) const {
-    if (reserved_.count(text) || text.empty() || !notation::IsNameStart(notation::CodePointAt(text, 0).value)) return false;
+    if (reserved_.count(text) || text.empty() || !notation::IsNameStart(notation::CodePointAt(text, 0).value))
+      return false;
     for (std::size_t i = 0; i < text.size(); i += notation::CodePointAt(text, i).length)
       if (!notation::IsNameCharacter(notation::CodePointAt(text, i).value)) return false;
     return true;
   }
   static bool IsBareSymbol(const std::string& text) {
-    for (const char* barred : {"-", "−", "–", "=", "#", ".", "‖", "|", "@", "/", "⟨", "⟩", "+", "±", ",", "ː", "{", "}", "[", "]", ";", "\"", " ", "\n"})
+    for (const char* barred : {"-", "−", "–", "=", "#", ".", "‖", "|", "@", "/",  "⟨", "⟩",
+                               "+", "±", ",", "ː", "{", "}", "[", "]", ";", "\"", " ", "\n"})
       if (text.find(barred) != std::string::npos) return false;
     return text != "surface";
   }
-  static bool Digits(const std::string& text) { return text.find_first_not_of("0123456789") == std::string::npos; }
+  static bool Digits(const std::string& text) {
+    return text.find_first_not_of("0123456789") == std::string::npos;
+  }
   static bool Between(const std::string& text, const std::string& open, const std::string& close) {
     return text.size() >= open.size() + close.size() && text.compare(0, open.size(), open) == 0 &&
            text.compare(text.size() - close.size(), close.size(), close) == 0;
@@ -304,9 +325,11 @@ class Ebnf {
     switch (e.kind) {
       case Expression::Kind::kLiteral:
       case Expression::Kind::kWords: {
-        if (e.kind == Expression::Kind::kWords && e.text == "glued") return {static_cast<int>(position) * 2 + 1};
+        if (e.kind == Expression::Kind::kWords && e.text == "glued")
+          return {static_cast<int>(position) * 2 + 1};
         if (position >= s.size() || s[position].glued != glue) return {};
-        const bool fits = e.kind == Expression::Kind::kLiteral ? s[position].text == e.text : Fits(e.text, s[position].text);
+        const bool fits = e.kind == Expression::Kind::kLiteral ? s[position].text == e.text
+                                                               : Fits(e.text, s[position].text);
         return fits ? States{(static_cast<int>(position) + 1) * 2} : States{};
       }
       case Expression::Kind::kName: {
@@ -372,7 +395,8 @@ Verdict Judge(const std::string& text) {
   Verdict verdict;
   for (const syntax::Top& top : file.tops) {
     const auto* later = std::get_if<syntax::Unsupported>(&top);
-    verdict.later_section = verdict.later_section || (later != nullptr && later->construct.find("rule ") != 0);
+    verdict.later_section =
+        verdict.later_section || (later != nullptr && later->construct.find("rule ") != 0);
   }
   for (const syntax::Unsupported& later : file.unsupported)
     verdict.later_section = verdict.later_section || later.construct == "columns named in braces";
@@ -397,7 +421,8 @@ TEST_CASE("sentences of the EBNF parse", "[unit]") {
   INFO("seed " << kSeed);
   std::mt19937 random(kSeed);
   std::map<std::string, int> made;
-  for (const char* start : {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data", "language"}) {
+  for (const char* start : {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern",
+                            "rule", "data", "language"}) {
     for (int i = 0; i < 2000; ++i) {
       const Sentence sentence = ebnf.Generate(start, random, 4 + i % 12);
       const std::string text = Text(sentence);
@@ -415,26 +440,37 @@ TEST_CASE("spoiled sentences: parser and EBNF agree", "[unit]") {
   INFO("seed " << kSeed + 1);
   std::mt19937 random(kSeed + 1);
   int refused = 0, accepted = 0;
-  for (const char* start : {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data"}) {
+  for (const char* start :
+       {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data"}) {
     for (int i = 0; i < 4000; ++i) {
       Sentence sentence = ebnf.Generate(start, random, 4 + i % 10);
       if (sentence.size() < 3) continue;
       const std::size_t at = 1 + random() % (sentence.size() - 1);
       const std::size_t other = 1 + random() % (sentence.size() - 1);
       switch (random() % 4) {
-        case 0: sentence.erase(sentence.begin() + static_cast<std::ptrdiff_t>(at)); break;
-        case 1: sentence.insert(sentence.begin() + static_cast<std::ptrdiff_t>(at), {sentence[other].text, false}); break;
-        case 2: std::swap(sentence[at].text, sentence[other].text); break;
-        default: sentence[at].text = sentence[other].text; break;
+        case 0:
+          sentence.erase(sentence.begin() + static_cast<std::ptrdiff_t>(at));
+          break;
+        case 1:
+          sentence.insert(sentence.begin() + static_cast<std::ptrdiff_t>(at), {sentence[other].text, false});
+          break;
+        case 2:
+          std::swap(sentence[at].text, sentence[other].text);
+          break;
+        default:
+          sentence[at].text = sentence[other].text;
+          break;
       }
       if (at < sentence.size()) sentence[at].glued = false;
       if (at + 1 < sentence.size()) sentence[at + 1].glued = false;
       if (other < sentence.size()) sentence[other].glued = false;
       if (other + 1 < sentence.size()) sentence[other + 1].glued = false;
       bool other_text = false;  // a later block may hold anything
-      for (const Piece& piece : sentence) other_text = other_text || piece.text.find("peak") == 0 || piece.text.find("a = b") == 0;
+      for (const Piece& piece : sentence)
+        other_text = other_text || piece.text.find("peak") == 0 || piece.text.find("a = b") == 0;
       for (std::size_t k = 0; k < sentence.size(); ++k)  // `C_` without its number is a name of its own
-        other_text = other_text || (sentence[k].text == "_" && !(k + 1 < sentence.size() && sentence[k + 1].glued));
+        other_text =
+            other_text || (sentence[k].text == "_" && !(k + 1 < sentence.size() && sentence[k + 1].glued));
       if (other_text) continue;
       const std::string text = Text(sentence);
       const Verdict verdict = Judge(text);

@@ -1,4 +1,5 @@
-// What a text prints as, and round trips: Parse(Print(x)) == x on the example grammars and on random syntax trees.
+// What a text prints as, and round trips: Parse(Print(x)) == x on the example grammars and on random syntax
+// trees.
 // `+/-voice` prints as `±voice`.
 #include <algorithm>
 #include <catch2/catch.hpp>
@@ -58,13 +59,15 @@ class Maker {
   }
 
   syntax::Name Name() {
-    static const std::vector<std::string> names = {"V",    "Place", "back", "N1",   "Tóne", "stem",  "where", "long",  "x2",
-                                                   "C_0",  "a b",   "αx",   "low_", "",     "one",   "on",    "ŋã",    "V1α",
-                                                   "\u00A0", "first", "-",  "a.b",  "x",    "empty", "a{",    "leftward"};
+    static const std::vector<std::string> names = {
+        "V",      "Place", "back", "N1",   "Tóne", "stem",  "where", "long",    "x2",
+        "C_0",    "a b",   "αx",   "low_", "",     "one",   "on",    "ŋã",      "V1α",
+        "\u00A0", "first", "-",    "a.b",  "x",    "empty", "a{",    "leftward"};
     return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
   }
   syntax::Name Symbol() {
-    static const std::vector<std::string> names = {"p", "t͡s", "kʷ", "◌̃", "ⁿ◌", "without", "in", "a-b", "surface", "A", "a b", "ǃ"};
+    static const std::vector<std::string> names = {"p",  "t͡s",  "kʷ",      "◌̃", "ⁿ◌",  "without",
+                                                   "in", "a-b", "surface", "A", "a b", "ǃ"};
     return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
   }
   syntax::FormText Form() {
@@ -78,19 +81,32 @@ class Maker {
     if (feat.kind == syntax::Feat::Kind::kValue) feat.values = Several(1, 3, [&] { return Name(); });
     return feat;
   }
-  syntax::Bundle Bundle() { return {Several(0, 3, [&] { return Feat(); }), {}}; }
+  syntax::Bundle Bundle() {
+    return {Several(0, 3, [&] { return Feat(); }), {}};
+  }
   syntax::Set Set(int depth) {
     syntax::Set set;
     set.kind = static_cast<syntax::Set::Kind>(Below(depth > 0 ? 8 : 4));
     switch (set.kind) {
-      case syntax::Set::Kind::kBundle: set.bundle = Bundle(); break;
-      case syntax::Set::Kind::kLiteral: set.literal = Form(); break;
-      case syntax::Set::Kind::kClass: set.name = Name(); break;
-      case syntax::Set::Kind::kEmpty: break;
+      case syntax::Set::Kind::kBundle:
+        set.bundle = Bundle();
+        break;
+      case syntax::Set::Kind::kLiteral:
+        set.literal = Form();
+        break;
+      case syntax::Set::Kind::kClass:
+        set.name = Name();
+        break;
+      case syntax::Set::Kind::kEmpty:
+        break;
       case syntax::Set::Kind::kOr:
       case syntax::Set::Kind::kAnd:
-      case syntax::Set::Kind::kButNot: set.args = Several(2, 3, [&] { return Set(depth - 1); }); break;
-      case syntax::Set::Kind::kNot: set.args.push_back(Set(depth - 1)); break;
+      case syntax::Set::Kind::kButNot:
+        set.args = Several(2, 3, [&] { return Set(depth - 1); });
+        break;
+      case syntax::Set::Kind::kNot:
+        set.args.push_back(Set(depth - 1));
+        break;
     }
     return set;
   }
@@ -120,8 +136,12 @@ class Maker {
         item.name = Name();
         Quantify(item);
         break;
-      case syntax::Item::Kind::kBoundary: item.boundary = static_cast<syntax::Item::Boundary>(Below(4)); break;
-      case syntax::Item::Kind::kGap: item.tier = Perhaps([&] { return Name(); }); break;
+      case syntax::Item::Kind::kBoundary:
+        item.boundary = static_cast<syntax::Item::Boundary>(Below(4));
+        break;
+      case syntax::Item::Kind::kGap:
+        item.tier = Perhaps([&] { return Name(); });
+        break;
       case syntax::Item::Kind::kGroup: {
         item.alternatives = Several(1, 3, [&] { return Pattern(depth - 1); });
         if (Chance(30)) {
@@ -142,15 +162,19 @@ class Maker {
     }
     return item;
   }
-  syntax::Pattern Pattern(int depth) { return {Several(1, 4, [&] { return Item(depth); }), {}}; }
+  syntax::Pattern Pattern(int depth) {
+    return {Several(1, 4, [&] { return Item(depth); }), {}};
+  }
   syntax::Path Path() { return {Name(), Name(), {}}; }
   syntax::Change Change() {
     syntax::Change change;
     change.kind = static_cast<syntax::Change::Kind>(Below(6));
-    const bool paths = change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
+    const bool paths =
+        change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
     if (paths) change.paths = Several(1, 3, [&] { return Path(); });
     if (change.kind != syntax::Change::Kind::kDelink) change.label = Name();
-    if (change.kind == syntax::Change::Kind::kSet || change.kind == syntax::Change::Kind::kFill) change.bundle = Bundle();
+    if (change.kind == syntax::Change::Kind::kSet || change.kind == syntax::Change::Kind::kFill)
+      change.bundle = Bundle();
     if (change.kind == syntax::Change::Kind::kInsert) {
       change.inserted = Name();
       change.content.kind = Chance(50) ? syntax::Set::Kind::kBundle : syntax::Set::Kind::kLiteral;
@@ -163,9 +187,11 @@ class Maker {
   syntax::Daughter Daughter(bool last) {
     syntax::Daughter daughter;
     daughter.kind = static_cast<syntax::Daughter::Kind>(Below(4));
-    if (daughter.kind == syntax::Daughter::Kind::kMany && !last) daughter.kind = syntax::Daughter::Kind::kBinary;
+    if (daughter.kind == syntax::Daughter::Kind::kMany && !last)
+      daughter.kind = syntax::Daughter::Kind::kBinary;
     daughter.name = Name();
-    if (daughter.kind == syntax::Daughter::Kind::kMany) daughter.values = Several(1, 3, [&] { return Name(); });
+    if (daughter.kind == syntax::Daughter::Kind::kMany)
+      daughter.values = Several(1, 3, [&] { return Name(); });
     if (Chance(40)) {
       daughter.max = 1 + Below(4);
       daughter.room = Perhaps([&] { return Set(1); });
@@ -182,8 +208,12 @@ class Maker {
     return line;
   }
   syntax::ValuesIn Values() {
-    return {Several(1, 3, [&] { return syntax::ValueRef{static_cast<syntax::ValueRef::Kind>(Below(4)), Name()}; }),
-            Perhaps([&] { return Set(2); }), {}};
+    return {Several(1, 3,
+                    [&] {
+                      return syntax::ValueRef{static_cast<syntax::ValueRef::Kind>(Below(4)), Name()};
+                    }),
+            Perhaps([&] { return Set(2); }),
+            {}};
   }
   syntax::Segments Segments() {
     syntax::Segments segments;
@@ -191,7 +221,8 @@ class Maker {
     segments.from = Perhaps([&] { return syntax::Name{"ipa", {}}; });
     segments.added = Perhaps([&] { return Bundle(); });
     segments.entries = Several(0, 4, [&] {
-      return syntax::SegmentEntry{Symbol(), Perhaps([&] { return Symbol(); }), Perhaps([&] { return Bundle(); }), {}};
+      return syntax::SegmentEntry{
+          Symbol(), Perhaps([&] { return Symbol(); }), Perhaps([&] { return Bundle(); }), {}};
     });
     segments.without = Several(0, 2, [&] { return Values(); });
     return segments;
@@ -210,23 +241,39 @@ class Maker {
     syntax::Datum datum;
     datum.underlying = Form();
     datum.surfaces.push_back({Chance(50) ? "" : "pul{H} 'lar", false, {}});
-    if (Chance(60)) datum.gloss = syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
+    if (Chance(60))
+      datum.gloss =
+          syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
     return datum;
   }
   syntax::Top Top() {
     switch (Below(10)) {
-      case 0: return syntax::Language{{"Velmari -- north", {}}, {}};
-      case 1: return syntax::Tree{Several(0, 4, [&] { return TreeLine(); }), {}};
-      case 2: return Segments();
+      case 0:
+        return syntax::Language{{"Velmari -- north", {}}, {}};
+      case 1:
+        return syntax::Tree{Several(0, 4, [&] { return TreeLine(); }), {}};
+      case 2:
+        return Segments();
       case 3:
         return syntax::Diacritics{
-            Several(0, 3, [&] { return syntax::Diacritic{Symbol(), Bundle(), Perhaps([&] { return Set(2); }), Chance(50), {}}; }), {}};
-      case 4: return syntax::Omit{Several(0, 3, [&] { return Values(); }), {}};
-      case 5: return syntax::Class{Name(), Set(3), {}};
-      case 6: return syntax::NamedPattern{Name(), Pattern(2), {}};
-      case 7: return syntax::Data{Several(0, 4, [&] { return Datum(); }), {}};
-      case 8: return syntax::DataFrom{{"forms.tsv", {}}, {}};
-      default: return Rule();
+            Several(0, 3,
+                    [&] {
+                      return syntax::Diacritic{
+                          Symbol(), Bundle(), Perhaps([&] { return Set(2); }), Chance(50), {}};
+                    }),
+            {}};
+      case 4:
+        return syntax::Omit{Several(0, 3, [&] { return Values(); }), {}};
+      case 5:
+        return syntax::Class{Name(), Set(3), {}};
+      case 6:
+        return syntax::NamedPattern{Name(), Pattern(2), {}};
+      case 7:
+        return syntax::Data{Several(0, 4, [&] { return Datum(); }), {}};
+      case 8:
+        return syntax::DataFrom{{"forms.tsv", {}}, {}};
+      default:
+        return Rule();
     }
   }
 
@@ -265,11 +312,16 @@ TEST_CASE("print: rows", "[unit]") {
       {"diacritics { ◌̃ [+nasal] on [-cons] surface ◌ʷ [Labial round] }",
        "diacritics {\n  ◌̃ [+nasal] on [-cons] surface\n  ◌ʷ [Labial round]\n}\n"},
       {"omit { -nasal everywhere ±voice in [+son] }", "omit {\n  -nasal everywhere\n  ±voice in [+son]\n}\n"},
-      {"rule \"r\" { iterate rightward within word where A:V ... B:V unless A # spread A.round, A.back to B delink B.\"on\" }",
-       "rule \"r\" {\n  where A:V ... B:V\n  unless A #\n  spread A.round, A.back to B\n  delink B.\"on\"\n  iterate rightward\n}\n"},
-      {"rule \"r\" { where A:V insert E:/i/ before A insert D:[+syll] after A delete A set A [-a] fill A [b] }",
-       "rule \"r\" {\n  where A:V\n  insert E:/i/ before A\n  insert D:[+syll] after A\n  delete A\n  set A [-a]\n  fill A [b]\n}\n"},
-      {"data { /a -- b/ [c}] 'the dog''s' // []; /x/ [y] }", "data {\n  /a -- b/ [c}] 'the dog''s'\n  // []\n  /x/ [y]\n}\n"},
+      {"rule \"r\" { iterate rightward within word where A:V ... B:V unless A # spread A.round, A.back to B "
+       "delink B.\"on\" }",
+       "rule \"r\" {\n  where A:V ... B:V\n  unless A #\n  spread A.round, A.back to B\n  delink B.\"on\"\n  "
+       "iterate rightward\n}\n"},
+      {"rule \"r\" { where A:V insert E:/i/ before A insert D:[+syll] after A delete A set A [-a] fill A [b] "
+       "}",
+       "rule \"r\" {\n  where A:V\n  insert E:/i/ before A\n  insert D:[+syll] after A\n  delete A\n  set A "
+       "[-a]\n  fill A [b]\n}\n"},
+      {"data { /a -- b/ [c}] 'the dog''s' // []; /x/ [y] }",
+       "data {\n  /a -- b/ [c}] 'the dog''s'\n  // []\n  /x/ [y]\n}\n"},
       {"data from \"forms.tsv\"", "data from \"forms.tsv\"\n"},
       {"language \"Velmari\" -- north", "language \"Velmari\"\n"},
   };
@@ -282,7 +334,8 @@ TEST_CASE("print: rows", "[unit]") {
 }
 
 TEST_CASE("print: entries end at line ends that step back", "[unit]") {
-  const Parsed parsed = ParseText("omit {\n  -nasal\n    in V\n  ±back in\n    {/i/ |\n     /e/}\n  round everywhere\n}\n");
+  const Parsed parsed =
+      ParseText("omit {\n  -nasal\n    in V\n  ±back in\n    {/i/ |\n     /e/}\n  round everywhere\n}\n");
   CHECK(parsed.messages == "");
   CHECK(Print(parsed.file) == "omit {\n  -nasal in V\n  ±back in /i/ or /e/\n  round everywhere\n}\n");
 }
@@ -317,8 +370,10 @@ TEST_CASE("print: random syntax trees come back the same", "[unit]") {
     INFO("seed " << seed << "\n" << printed << again.messages);
     REQUIRE(again.messages == "");
     const std::string made = Shape(file), read = Shape(again.file);
-    const auto differ = std::mismatch(made.begin(), made.end(), read.begin(), read.end()).first - made.begin();
-    INFO("they differ where the tree made reads " << made.substr(static_cast<std::size_t>(std::max<std::ptrdiff_t>(differ - 60, 0)), 120));
+    const auto differ =
+        std::mismatch(made.begin(), made.end(), read.begin(), read.end()).first - made.begin();
+    INFO("they differ where the tree made reads "
+         << made.substr(static_cast<std::size_t>(std::max<std::ptrdiff_t>(differ - 60, 0)), 120));
     REQUIRE((made == read));
     REQUIRE(Print(again.file) == printed);
   }
