@@ -21,8 +21,14 @@ class Runner {
   // whose result no symbol spells. Not thread-safe.
   bool Derive(std::string_view underlying, std::string* surface, TextError* error);
 
-  // The machine's answer on a form, for agreement tests: none if the form is outside the machine's domain.
-  std::optional<Form> Apply(const Form& underlying);
+  // The machine's answer on a form, for agreement tests. `form` is none if the form is outside the machine's domain; the
+  // flags are raised only by machines compiled for testing.
+  struct Answer {
+    std::optional<Form> form;
+    bool ambiguous = false;
+    bool reaches = false;
+  };
+  Answer Apply(const Form& underlying);
 
   struct Candidate {
     std::string form;      // "in-posible"

@@ -1,0 +1,212 @@
+#include "compile/build_letter.h"
+
+#include <algorithm>
+
+namespace tiersmith {
+namespace {
+
+bool SameContent(const LetterPart& a, const WorkPart& b) {
+  if (a.node != b.node || a.value != b.value || a.daughters.size() != b.daughters.size()) return false;
+  for (std::size_t i = 0; i < a.daughters.size(); ++i) {
+    if (!SameContent(a.daughters[i], b.daughters[i])) return false;
+  }
+  return true;
+}
+
+WorkPart Work(const LetterPart& part, Origin origin, int old_index) {
+  WorkPart work;
+  work.node = part.node;
+  work.value = part.value;
+  work.origin = origin;
+  work.old_index = old_index;
+  work.links = part.links;
+  int sister = 0;
+  for (std::size_t i = 0; i < part.daughters.size(); ++i) {
+    sister = i > 0 && part.daughters[i - 1].node == part.daughters[i].node ? sister + 1 : 0;
+    work.daughters.push_back(Work(part.daughters[i], Origin::kOwn, sister));
+  }
+  return work;
+}
+
+// Replaces stored bits by the object-level marks of the annotation, for nodes with bits in force.
+void MarkLinks(WorkPart* part, const Key& annotated, const RuleSpace& space) {
+  const std::vector<NodeId>& kinds = space.tree()[part->node].daughters;
+  part->links = 0;
+  for (std::size_t i = 0; i < kinds.size(); ++i) {
+    if (space.LiveIndex(kinds[i]) >= 0 && (space.Marks(annotated, kinds[i]) & kObjectRight)) part->links |= 1u << i;
+  }
+  for (WorkPart& daughter : part->daughters) MarkLinks(&daughter, annotated, space);
+}
+
+const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last) {
+  const WorkPart* found = nullptr;
+  for (const WorkPart& daughter : part.daughters) {
+    const WorkPart* here = daughter.node == node ? &daughter : FindPart(daughter, node, last);
+    if (here == nullptr) continue;
+    found = here;
+    if (!last) return found;
+  }
+  return found;
+}
+
+}  // namespace
+
+int ContentPool::Intern(const WorkPart& part) {
+  Letter letter;
+  letter.part = LetterBuilder::Plain(part, /*links=*/true);
+  return parts_.Intern(letter);
+}
+
+WorkPart ContentPool::Get(int id, Origin origin) const { return Work(parts_[id].part, origin, -1); }
+
+bool ContentPool::Equal(int id, const WorkPart& part) const { return SameContent(parts_[id].part, part); }
+
+LetterPart LetterBuilder::Plain(const WorkPart& part, bool links) {
+  LetterPart plain;
+  plain.node = part.node;
+  plain.value = part.value;
+  if (links) plain.links = part.links;
+  for (const WorkPart& daughter : part.daughters) plain.daughters.push_back(Plain(daughter, links));
+  return plain;
+}
+
+WorkPart LetterBuilder::Before(const Key& annotated) const {
+  const RuleSpace& space = requests_.space();
+  WorkPart work = Work(space.classes()[annotated[0]].visible.part, Origin::kOwn, 0);
+  MarkLinks(&work, annotated, space);
+  return work;
+}
+
+int LetterBuilder::ContentOf(const Key& annotated, NodeId node, bool last) const {
+  const WorkPart before = Before(annotated);
+  const WorkPart* part = FindPart(before, node, last);
+  return part == nullptr ? -1 : pool_.Intern(*part);
+}
+
+int LetterBuilder::ClassOf(const WorkPart& slot, int like) const {
+  Letter letter = requests_.space().classes()[like].visible;
+  letter.part = Plain(slot, /*links=*/false);
+  return requests_.space().classes().ClassWithRestOf(like, letter);
+}
+
+// The part that bears (or would bear) `node`; with `make`, class nodes on the way are made fresh.
+WorkPart* LetterBuilder::MotherFor(WorkPart* slot, NodeId node, bool make) const {
+  const Tree& tree = requests_.space().tree();
+  std::vector<NodeId> path;
+  for (NodeId at = tree[node].mother; at != kSlotNode; at = tree[at].mother) path.push_back(at);
+  WorkPart* part = slot;
+  for (std::size_t i = path.size(); i-- > 0;) {
+    const NodeId kind = path[i];
+    auto it = std::find_if(part->daughters.begin(), part->daughters.end(), [kind](const WorkPart& d) { return d.node == kind; });
+    if (it == part->daughters.end()) {
+      if (!make) return nullptr;
+      WorkPart fresh;
+      fresh.node = kind;
+      fresh.origin = Origin::kFresh;
+      // Daughters stand in tree order of their kinds.
+      const std::vector<NodeId>& order = tree[part->node].daughters;
+      const auto rank = [&order](NodeId n) { return std::find(order.begin(), order.end(), n) - order.begin(); };
+      it = std::find_if(part->daughters.begin(), part->daughters.end(),
+                        [&](const WorkPart& d) { return rank(d.node) > rank(kind); });
+      it = part->daughters.insert(it, fresh);
+    }
+    part = &*it;
+  }
+  return part;
+}
+
+BuiltLetter LetterBuilder::Build(const Key& annotated, const Key& request, const Lines& lines) const {
+  BuiltLetter built;
+  built.slot = Before(annotated);
+  built.effective.assign(requests_.nodes().size(), 0);
+  bool any = false;
+  for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+    const std::int32_t ask = request[1 + i];
+    if (ask == 0) continue;
+    if (ask & kClash) built.clash = true;
+    const bool gives = (ask & (kLineLeft | kLineRight)) ||
+                       ((ask >> kValuesShift) > 0 && !requests_.contents()[(ask >> kValuesShift) - 1].empty());
+    WorkPart* mother = MotherFor(&built.slot, requests_.nodes()[i], gives);
+    if (mother == nullptr) continue;
+    Relist(mother, requests_.nodes()[i], ask, i, annotated, lines, &built);
+    any = any || built.effective[i];
+  }
+  if (any) {
+    for (WorkPart& top : built.slot.daughters) Prune(&top);
+  }
+  return built;
+}
+
+// Gives `mother` its new list of `node`: left line, own, right line; or fresh values.
+void LetterBuilder::Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated,
+                           const Lines& lines, BuiltLetter* built) const {
+  const RuleSpace& space = requests_.space();
+  std::vector<WorkPart> old, others;
+  for (WorkPart& daughter : mother->daughters) (daughter.node == node ? old : others).push_back(std::move(daughter));
+  std::vector<WorkPart> list;
+  for (std::size_t i = 0; i < old.size(); ++i) {
+    const std::int32_t cut = i == 0 ? kCutFirst : i + 1 == old.size() ? kCutLast : kCutMiddle;
+    if (!(request & cut)) list.push_back(old[i]);
+  }
+  bool effective = list.size() != old.size();
+  const bool lines_asked = request & (kLineLeft | kLineRight);
+  if (lines_asked && DrawLines(node, request, index, annotated, lines, &list, &built->clash)) effective = true;
+  const std::int32_t values = request >> kValuesShift;
+  if (values > 0) {
+    if (effective) built->clash = true;  // a line and a content
+    effective = true;
+    list.clear();
+    for (Value value : requests_.contents()[values - 1]) {
+      WorkPart fresh;
+      fresh.node = node;
+      fresh.value = value;
+      fresh.origin = Origin::kFresh;
+      list.push_back(fresh);
+    }
+  }
+  built->effective[index] = effective;
+  const std::vector<NodeId>& order = space.tree()[mother->node].daughters;
+  const auto rank = [&order](NodeId n) { return std::find(order.begin(), order.end(), n) - order.begin(); };
+  mother->daughters = std::move(others);
+  const auto at = std::find_if(mother->daughters.begin(), mother->daughters.end(),
+                               [&](const WorkPart& d) { return rank(d.node) > rank(node); });
+  mother->daughters.insert(at, list.begin(), list.end());
+}
+
+// Adds the lines asked for at both ends of what the mother keeps; true if any is new.
+bool LetterBuilder::DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
+                              std::vector<WorkPart>* list, bool* clash) const {
+  const std::int32_t left = (request & kLineLeft) && lines.left != nullptr ? lines.left[index] : -1;
+  const std::int32_t right = (request & kLineRight) && lines.right != nullptr ? lines.right[index] : -1;
+  bool add_left = left >= 0, add_right = right >= 0;
+  if (((request & kLineLeft) && !add_left) || ((request & kLineRight) && !add_right)) {
+    *clash = true;  // no such bearer: no form reads so
+  }
+  if (list->empty() && add_left && add_right) {
+    if (requests_.space().Marks(annotated, node) & kOver) {
+      add_left = false;  // one instance, whose span passes over this mother
+    } else if (pool_.Equal(left, pool_.Get(right, Origin::kOwn))) {
+      *clash = true;
+    }
+  } else if (!list->empty()) {
+    if (add_left && pool_.Equal(left, list->front())) add_left = false;
+    if (add_right && pool_.Equal(right, list->back())) add_right = false;
+  }
+  if (add_left) list->insert(list->begin(), pool_.Get(left, lines.left_origin));
+  if (add_right) list->push_back(pool_.Get(right, lines.right_origin));
+  if (!add_left && !add_right) return false;
+  if (static_cast<int>(list->size()) > requests_.space().Room(annotated[0], node)) *clash = true;
+  return true;
+}
+
+// Removes class nodes with nothing under them; true if `part` itself is such a node.
+bool LetterBuilder::Prune(WorkPart* part) const {
+  const TreeNode& kind = requests_.space().tree()[part->node];
+  part->daughters.erase(std::remove_if(part->daughters.begin(), part->daughters.end(), [this](WorkPart& d) { return Prune(&d); }),
+                        part->daughters.end());
+  const bool is_class = kind.type == TreeNode::Type::kClass && part->node != kSlotNode && part->node != kRootNode;
+  const bool hides = part->value != 0;  // LetterClasses: something hidden stands under it
+  return is_class && !kind.standing && part->daughters.empty() && !hides;
+}
+
+}  // namespace tiersmith

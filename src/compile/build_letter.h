@@ -1,0 +1,82 @@
+// One letter after a rule: its parts, and where each came from.
+//
+// Used twice: by iterative rules, which must know what stands behind them, and by the last pass, which
+// computes the link bits from the origins (compile/apply.h).
+#pragma once
+
+#include <vector>
+
+#include "compile/requests.h"
+#include "letters/letter.h"
+
+namespace tiersmith {
+
+enum class Origin : std::uint8_t {
+  kOwn,       // was there
+  kOldLeft,   // the N that was nearest on the left before the rule
+  kOldRight,
+  kNewLeft,   // the last N on the left as it is after the rule (iterative)
+  kNewRight,
+  kFresh,
+};
+
+struct WorkPart {
+  NodeId node = 0;
+  Value value = 0;
+  Origin origin = Origin::kOwn;
+  int old_index = -1;       // kOwn: position among the mother's old instances of the node
+  std::uint32_t links = 0;  // for each daughter kind: is the last one linked to the right, as an object (kObjectRight)
+  std::vector<WorkPart> daughters;
+};
+
+// Contents that travel, with the links of their right end.
+class ContentPool {
+ public:
+  int Intern(const WorkPart& part);
+  WorkPart Get(int id, Origin origin) const;
+  bool Equal(int id, const WorkPart& part) const;  // contents only
+
+ private:
+  Alphabet parts_;
+};
+
+struct BuiltLetter {
+  WorkPart slot;
+  bool clash = false;
+  std::vector<char> effective;  // by request node: did the mother's list change
+};
+
+class LetterBuilder {
+ public:
+  LetterBuilder(const RequestSpace& requests, ContentPool& pool) : requests_(requests), pool_(pool) {}
+
+  // The letter's parts before the rule, links replaced by kObjectRight marks.
+  WorkPart Before(const Key& annotated) const;
+  // The first or last N of a letter as content, or -1.
+  int ContentOf(const Key& annotated, NodeId node, bool last) const;
+
+  struct Lines {            // contents the requests may draw on, by request node; -1: none
+    const std::int32_t* left = nullptr;
+    const std::int32_t* right = nullptr;
+    Origin left_origin = Origin::kOldLeft;
+    Origin right_origin = Origin::kOldRight;
+  };
+  BuiltLetter Build(const Key& annotated, const Key& request, const Lines& lines) const;
+
+  // A letter of a work tree with the given links dropped, as a class that keeps the rest key of `like`.
+  int ClassOf(const WorkPart& slot, int like) const;
+  static LetterPart Plain(const WorkPart& part, bool links);
+
+ private:
+  WorkPart* MotherFor(WorkPart* slot, NodeId node, bool make) const;
+  void Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
+              BuiltLetter* built) const;
+  bool DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
+                 std::vector<WorkPart>* list, bool* clash) const;
+  bool Prune(WorkPart* part) const;
+
+  const RequestSpace& requests_;
+  ContentPool& pool_;
+};
+
+}  // namespace tiersmith

@@ -1,0 +1,513 @@
+#include "compile/cascade.h"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <chrono>
+#include <map>
+
+#include "compile/cascade_data.h"
+#include "compile/compose.h"
+#include "compile/plan.h"
+#include "compile/rule_machine.h"
+#include "graph/interpreter.h"
+#include "model/text.h"
+
+namespace tiersmith {
+namespace {
+
+double Seconds(std::chrono::steady_clock::time_point since) {
+  return std::chrono::duration<double>(std::chrono::steady_clock::now() - since).count();
+}
+
+std::size_t BytesOf(const Tape& tape) {
+  std::size_t bytes = tape.arcs.size() * (sizeof(std::vector<TapeArc>) + 1) + tape.ArcCount() * sizeof(TapeArc);
+  for (int i = 0; i < tape.symbols.size(); ++i) bytes += tape.symbols[i].size() * sizeof(std::int32_t);
+  return bytes;
+}
+
+class CascadeCompiler {
+ public:
+  CascadeCompiler(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics, const std::vector<Letter>* testing)
+      : grammar_(grammar), limits_(limits), diagnostics_(diagnostics), testing_(testing != nullptr),
+        plan_(MakePlan(grammar, testing_)), data_(std::make_unique<CascadeData>()) {
+    data_->grammar = &grammar;
+    data_->classes = std::make_unique<LetterClasses>(grammar, plan_.visible, plan_.literals);
+    if (testing_) {
+      for (const Letter& letter : *testing) AddInput(letter, -1);
+    } else {
+      AddInputs();
+    }
+  }
+
+  // From here on the inputs are fixed; every rule narrows or extends the alphabet of the next one exactly.
+  std::unique_ptr<CascadeData> Run() {
+    Open(testing_ ? AnyString(InputClasses()) : UnderlyingForms(), /*exact=*/true);
+    for (std::size_t i = 0; i < grammar_.rules.size(); ++i) {
+      if (!AddRule(static_cast<int>(i))) return nullptr;
+    }
+    Close();
+    if (!testing_) CheckSpelling();
+    if (diagnostics_.HasErrors()) return nullptr;
+    return std::move(data_);
+  }
+
+ private:
+  // ---- inputs -----------------------------------------------------------------------------------
+  void AddInput(const Letter& letter, int symbol) {
+    InputLetter input;
+    input.parts = data_->classes->Classify(letter);
+    input.symbol = symbol;
+    input.boundary = letter.boundary;
+    for (const auto& daughter : letter.part.daughters) {
+      if (daughter.node == kRootNode && (letter.part.links >> LinkBit(grammar_.tree, kRootNode) & 1u)) input.linked = true;
+    }
+    data_->inputs.push_back(input);
+  }
+
+  void AddInputs() {
+    std::vector<int> symbols = grammar_.inventory.UnderlyingSymbols();
+    for (int symbol : SymbolsInData()) {
+      if (std::find(symbols.begin(), symbols.end(), symbol) == symbols.end()) symbols.push_back(symbol);
+    }
+    for (int symbol : symbols) {
+      Letter letter;
+      letter.part.daughters.push_back(PartOf(grammar_.inventory.symbols[symbol].underlying));
+      AddInput(letter, symbol);
+      letter.part.links |= 1u << LinkBit(grammar_.tree, kRootNode);
+      AddInput(letter, symbol);
+    }
+    for (Boundary boundary : {Boundary::kMorpheme, Boundary::kClitic, Boundary::kWord, Boundary::kPhrase}) {
+      Letter letter;
+      letter.kind = FormItem::Kind::kBoundary;
+      letter.boundary = boundary;
+      AddInput(letter, -1);
+    }
+  }
+
+  std::vector<int> SymbolsInData() const {
+    const Reader reader(grammar_);
+    std::vector<int> symbols;
+    std::vector<Token> tokens;
+    TextError error;
+    for (const DataRow& row : grammar_.data) {
+      if (!reader.Read(row.underlying, Reader::Side::kUnderlying, &tokens, &error)) continue;
+      for (const Token& token : tokens) {
+        if (token.kind == Token::Kind::kSymbol) symbols.push_back(token.symbol);
+      }
+    }
+    std::sort(symbols.begin(), symbols.end());
+    symbols.erase(std::unique(symbols.begin(), symbols.end()), symbols.end());
+    return symbols;
+  }
+
+  std::vector<int> InputClasses() const {
+    std::vector<int> classes;
+    for (const InputLetter& input : data_->inputs) classes.push_back(input.parts.class_id);
+    std::sort(classes.begin(), classes.end());
+    classes.erase(std::unique(classes.begin(), classes.end()), classes.end());
+    return classes;
+  }
+
+  static Tape AnyString(const std::vector<int>& classes) {
+    Tape tape;
+    tape.arcs.resize(1);
+    tape.starts = {0};
+    tape.ends = {1};
+    for (int c : classes) tape.arcs[0].push_back({c, tape.symbols.Intern(Key{0, c, -1}), 0});
+    return tape;
+  }
+
+  // Words over the input letters in which a long one is the same letter twice: a class of state for each that waits for its second half.
+  Tape UnderlyingForms() const {
+    std::map<int, std::pair<int, int>> halves;  // class with its root linked -> (class without, state that waits)
+    for (std::size_t i = 0; i + 1 < data_->inputs.size(); ++i) {
+      if (!data_->inputs[i + 1].linked) continue;
+      halves.emplace(data_->inputs[i + 1].parts.class_id,
+                     std::make_pair(data_->inputs[i].parts.class_id, static_cast<int>(halves.size()) + 1));
+    }
+    Tape tape = AnyString({});
+    tape.arcs.resize(halves.size() + 1);
+    tape.ends.resize(halves.size() + 1, 0);
+    const auto add = [&tape](int from, int c, int to) {
+      tape.arcs[from].push_back({c, tape.symbols.Intern(Key{0, c, -1}), to});
+    };
+    for (int c : InputClasses()) {
+      const auto half = halves.find(c);
+      if (half == halves.end()) {
+        add(0, c, 0);
+        continue;
+      }
+      add(0, c, half->second.second);
+      add(half->second.second, c, half->second.second);
+      add(half->second.second, half->second.first, 0);
+    }
+    return tape;
+  }
+
+  // ---- segments ---------------------------------------------------------------------------------
+  void Open(Tape domain, bool exact) {
+    current_ = std::move(domain);
+    segment_ = Segment{};
+    segment_.exact = exact;
+    opened_ = std::chrono::steady_clock::now();
+  }
+
+  void Close() {
+    std::vector<char> seen(data_->classes->size(), 0);
+    for (const auto& arcs : current_.arcs) {
+      for (const TapeArc& arc : arcs) seen[arc.in] = 1;
+    }
+    segment_.letters = LettersIn(seen);
+    for (int c : ClassesWritten(current_)) seen[c] = 1;
+    segment_.classes = static_cast<std::size_t>(std::count(seen.begin(), seen.end(), 1));
+    segment_.machine = std::move(current_);
+    segment_.seconds = Seconds(opened_);
+    data_->segments.push_back(std::move(segment_));
+  }
+
+  std::size_t LettersIn(const std::vector<char>& classes) const {
+    std::size_t letters = 0;
+    for (const InputLetter& input : data_->inputs) letters += classes[input.parts.class_id] ? 1 : 0;
+    return letters;
+  }
+
+  bool AddRule(int index) {
+    const Rule& rule = grammar_.rules[index];
+    const std::vector<int> classes_in = ClassesWritten(current_);
+    const std::vector<NodeId> live = LinksIn(classes_in, rule, plan_.live[index]);
+    RuleMachine machine = CompileRule(rule, *data_->classes, classes_in, live, plan_.live[index + 1], limits_);
+    if (machine.over_budget) {
+      diagnostics_.Error(Kind::kLimit, rule.span,
+                         fmt::format("rule \"{}\" needs more than {} states on one side", rule.name, limits_.side_states),
+                         Costs(rule));
+      return false;
+    }
+    const Tape reduced = Reduce(std::move(machine.tape));
+    bool over = false;
+    Tape composed = Compose(current_, reduced, limits_.states, limits_.arcs, &over);
+    if (!over) {
+      if (!CheckRule(rule, composed)) return false;
+      composed = Reduce(MapSymbols(composed, WithoutFlags(testing_ ? ~kFlagChanged : 0)));
+      over = composed.arcs.size() > limits_.states || composed.ArcCount() > limits_.arcs;
+    }
+    if (over) {
+      if (segment_.rules.empty()) {
+        diagnostics_.Error(Kind::kLimit, rule.span,
+                           fmt::format("rule \"{}\" alone makes a machine of more than {} states or {} arcs", rule.name,
+                                       limits_.states, limits_.arcs),
+                           Costs(rule));
+        return false;
+      }
+      const std::vector<int> classes = ClassesWritten(current_);
+      Close();
+      Open(AnyString(classes), /*exact=*/false);
+      return AddRule(index);
+    }
+    current_ = std::move(composed);
+    segment_.rules.push_back(index);
+    return true;
+  }
+
+  // Of the nodes whose links may matter: those of which some letter that comes in has a link, or the rule draws one. The
+  // others have no links at all, so nothing needs to watch them.
+  std::vector<NodeId> LinksIn(const std::vector<int>& classes, const Rule& rule, const std::vector<NodeId>& planned) const {
+    NodeSet linked(grammar_.tree.nodes.size(), false);
+    linked[kRootNode] = true;
+    const auto note = [&](const auto& self, const LetterPart& part) -> void {
+      const std::vector<NodeId>& kinds = grammar_.tree[part.node].daughters;
+      for (std::size_t i = 0; i < kinds.size(); ++i) {
+        if (part.links >> i & 1u) linked[kinds[i]] = true;
+      }
+      for (const LetterPart& daughter : part.daughters) self(self, daughter);
+    };
+    for (int c : classes) note(note, (*data_->classes)[c].visible.part);
+    for (const Change& change : rule.changes) {
+      if (change.op == Change::Op::kSpread) linked[change.node] = true;
+    }
+    std::vector<NodeId> live;
+    for (NodeId node : planned) {
+      if (linked[node]) live.push_back(node);
+    }
+    return live;
+  }
+
+  static std::function<Key(const Key&)> WithoutFlags(std::int32_t kept) {
+    return [kept](const Key& symbol) {
+      Key plain = symbol;
+      plain[0] &= kept;
+      return plain;
+    };
+  }
+
+  static std::string Costs(const Rule& rule) {
+    std::size_t spreads = 0;
+    for (const Change& change : rule.changes) spreads += change.op == Change::Op::kSpread;
+    if (spreads > 2) return "split its spreads over several rules, or narrow its pattern";
+    return "narrow its pattern: fewer optional items, a shorter window between the items it compares";
+  }
+
+  // ---- what a rule may not do --------------------------------------------------------------------
+  bool CheckRule(const Rule& rule, const Tape& composed) {
+    if (testing_) return true;
+    const auto flagged = [&composed](std::int32_t flag) {
+      return [&composed, flag](const TapeArc& arc) { return (composed.symbols[arc.out][0] & flag) != 0; };
+    };
+    std::size_t at = 0;
+    const Severity severity = segment_.exact ? Severity::kError : Severity::kWarning;
+    const std::string possibly = segment_.exact ? "" : "possibly reached: ";
+    const std::vector<TapeArc> ambiguous = ShortestThrough(composed, flagged(kFlagAmbiguous), &at);
+    if (!ambiguous.empty()) {
+      const std::string form = FormText(ambiguous);
+      diagnostics_.Add({Kind::kAmbiguousRule, severity, rule.span,
+                        fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}", possibly,
+                                    rule.name, form, Explained(rule, form)),
+                        "narrow the pattern so that only one of them matches, or let the rule `iterate`",
+                        {}});
+      if (segment_.exact) return false;
+    }
+    const std::vector<TapeArc> reaches = ShortestThrough(composed, flagged(kFlagReaches), &at);
+    if (!reaches.empty()) {
+      diagnostics_.Add({Kind::kReachesOtherRoot, severity, rule.span,
+                        fmt::format("{}rule \"{}\" iterates, but in /{}/ its change would reach another segment through a shared node",
+                                    possibly, rule.name, FormText(reaches)),
+                        "spread or set the lower feature instead of what is shared, delink it first in a rule of its own, or apply the "
+                        "rule at once (without `iterate`)",
+                        {}});
+      if (segment_.exact) return false;
+    }
+    const bool applies = !ShortestThrough(composed, flagged(kFlagChanged), &at).empty();
+    if (!applies) {
+      diagnostics_.Warning(Kind::kNeverApplies, rule.span,
+                           fmt::format("rule \"{}\" never changes anything: no form that reaches it fits its pattern", rule.name),
+                           "check its features against the inventory, and the rules before it");
+    }
+    return true;
+  }
+
+  std::string Explained(const Rule& rule, const std::string& form) const {
+    const std::optional<Form> before = Before(rule, form);
+    if (!before.has_value()) return "";
+    const Application application = ApplyRule(grammar_, rule, *before);
+    return application.ambiguous.empty() ? "" : fmt::format(" ({})", application.ambiguous);
+  }
+
+  // The form as it is when it comes to a rule.
+  std::optional<Form> Before(const Rule& rule, const std::string& text) const {
+    const Reader reader(grammar_);
+    std::vector<Token> tokens;
+    TextError error;
+    if (!reader.Read(text, Reader::Side::kUnderlying, &tokens, &error)) return std::nullopt;
+    Form form = reader.FormOf(tokens, Reader::Side::kUnderlying);
+    for (const Rule& earlier : grammar_.rules) {
+      if (&earlier == &rule) break;
+      form = ApplyRule(grammar_, earlier, form).form;
+    }
+    return form;
+  }
+
+  // ---- spelling ---------------------------------------------------------------------------------
+  struct Unspelled {
+    std::string form;
+    FeatureTree tree;
+  };
+
+  // Every letter that can come out must have a symbol.
+  void CheckSpelling() {
+    const Segment& last = data_->segments.back();
+    std::map<int, std::vector<const InputLetter*>> by_class;
+    for (const InputLetter& input : data_->inputs) by_class[input.parts.class_id].push_back(&input);
+    // Trees without a symbol, each with the arc and the rest that make it.
+    std::vector<std::pair<FeatureTree, std::pair<TapeArc, int>>> found;
+    const bool one_segment = data_->segments.size() == 1;
+    for (const auto& arcs : last.machine.arcs) {
+      for (const TapeArc& arc : arcs) {
+        const Key& written = last.machine.symbols[arc.out];
+        for (std::size_t k = 1; k + 1 < written.size(); k += 2) {
+          if (written[k + 1] >= 0) {
+            Note(written[k], written[k + 1], arc, written[k + 1], &found);
+            continue;
+          }
+          if (!one_segment) continue;  // what rides along is not followed across a cut
+          for (const InputLetter* input : by_class[arc.in]) Note(written[k], input->parts.rest, arc, input->parts.rest, &found);
+        }
+      }
+    }
+    // No more than a few: one mistake often makes many trees.
+    constexpr std::size_t kMost = 3;
+    for (std::size_t i = 0; i < found.size() && i < kMost; ++i) Report(found[i].first, found[i].second.first, found[i].second.second);
+  }
+
+  void Note(int class_id, int rest, const TapeArc& arc, int arc_rest,
+            std::vector<std::pair<FeatureTree, std::pair<TapeArc, int>>>* found) {
+    const auto [it, added] = spelled_.emplace(std::make_pair(class_id, rest), true);
+    if (!added) return;
+    const std::optional<FeatureTree> root = RootContent(data_->classes->Join(class_id, rest));
+    if (!root.has_value()) return;
+    if (grammar_.inventory.Spell(*root).symbol >= 0) return;
+    for (const auto& known : *found) {
+      if (known.first == *root) return;
+    }
+    found->emplace_back(*root, std::make_pair(arc, arc_rest));
+  }
+
+  void Report(const FeatureTree& tree, const TapeArc& wanted, int rest) {
+    const Segment& last = data_->segments.back();
+    std::size_t at = 0;
+    const std::vector<TapeArc> path = ShortestThrough(
+        last.machine, [&](const TapeArc& arc) { return arc.in == wanted.in && arc.out == wanted.out; }, &at);
+    const std::string form = FormText(path, static_cast<int>(at), rest);
+    const std::vector<int>& candidates = grammar_.inventory.Spell(tree).candidates;
+    std::string message = candidates.empty() ? fmt::format("no symbol spells {}", grammar_.inventory.Describe(tree, grammar_.tree))
+                                             : fmt::format("two or more symbols could spell {}", Bracketed(tree));
+    message += fmt::format(", which /{}/ comes to", form);
+    Span span = grammar_.rules.empty() ? Span{} : grammar_.rules.back().span;
+    const int rule = LastRuleThatChanged(form);
+    if (rule >= 0) {
+      span = grammar_.rules[rule].span;
+      message += fmt::format(" (rule \"{}\" changed it last)", grammar_.rules[rule].name);
+    } else {
+      message += " (no rule changed it: it is an underlying tree that nothing completes)";
+    }
+    std::string remedy;
+    if (!candidates.empty()) {
+      remedy = "candidates:";
+      for (int candidate : candidates) remedy += " " + grammar_.inventory.symbols[candidate].text;
+      remedy += "; tell them apart with a rule that fills the missing value, or take one out of `omit`";
+    } else {
+      remedy = fmt::format("declare it (allophones {{ x = {} }}), let `omit` restore what is missing, or add a rule that sets or fills it",
+                           Bracketed(tree));
+    }
+    diagnostics_.Add({Kind::kNoSymbol, DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
+  }
+
+  std::string Bracketed(const FeatureTree& tree) const {
+    std::string text;
+    const auto walk = [&](const auto& self, const FeatureTree& at) -> void {
+      for (const FeatureTree& daughter : at.daughters) {
+        if (!text.empty()) text += ' ';
+        text += grammar_.tree.ValueName(daughter.node, daughter.value);
+        self(self, daughter);
+      }
+    };
+    walk(walk, tree);
+    return "[" + text + "]";
+  }
+
+  int LastRuleThatChanged(const std::string& text) const {
+    const Reader reader(grammar_);
+    std::vector<Token> tokens;
+    TextError error;
+    if (!reader.Read(text, Reader::Side::kUnderlying, &tokens, &error)) return -1;
+    const Derivation derivation = Derive(grammar_, reader.FormOf(tokens, Reader::Side::kUnderlying));
+    int last = -1;
+    for (const Step& step : derivation.steps) {
+      if (step.applied) last = step.rule;
+    }
+    return last;
+  }
+
+  // Do the data reach this tree (or are there none to ask)?
+  bool DataReach(const FeatureTree& tree) {
+    if (grammar_.data.empty()) return true;
+    if (!data_surfaces_done_) {
+      data_surfaces_done_ = true;
+      const Reader reader(grammar_);
+      std::vector<Token> tokens;
+      TextError error;
+      for (const DataRow& row : grammar_.data) {
+        if (!reader.Read(row.underlying, Reader::Side::kUnderlying, &tokens, &error)) continue;
+        const Form surface = Derive(grammar_, reader.FormOf(tokens, Reader::Side::kUnderlying)).surface;
+        for (const FormItem& item : surface.items) {
+          if (item.kind != FormItem::Kind::kSlot || RootOf(surface, item) < 0) continue;
+          data_roots_.push_back(ContentOf(surface, static_cast<InstanceId>(RootOf(surface, item))));
+        }
+      }
+    }
+    return std::find(data_roots_.begin(), data_roots_.end(), tree) != data_roots_.end();
+  }
+
+  // A form that goes this path, written with the first symbols that fit; at position `at`, one with the given rest.
+  std::string FormText(const std::vector<TapeArc>& path, int at = -1, int rest = -1) const {
+    std::string text;
+    bool linked = false;
+    int previous = -1;
+    for (std::size_t i = 0; i < path.size(); ++i) {
+      const InputLetter* chosen = nullptr;
+      for (const InputLetter& input : data_->inputs) {
+        if (input.parts.class_id != path[i].in) continue;
+        if (static_cast<int>(i) == at && input.parts.rest != rest) continue;
+        if (linked && input.symbol != previous) continue;
+        chosen = &input;
+        break;
+      }
+      if (chosen == nullptr) {  // past a cut the letters are not underlying ones
+        text += "?";
+        linked = false;
+        continue;
+      }
+      if (chosen->symbol < 0) {
+        text += chosen->boundary == Boundary::kMorpheme ? "-" : chosen->boundary == Boundary::kClitic ? "="
+                : chosen->boundary == Boundary::kWord   ? "#"
+                                                        : "‖";
+      } else {
+        text += linked ? "ː" : grammar_.inventory.symbols[chosen->symbol].text;
+      }
+      linked = chosen->linked;
+      previous = chosen->symbol;
+    }
+    return text;
+  }
+
+  const Grammar& grammar_;
+  const Limits& limits_;
+  Diagnostics& diagnostics_;
+  bool testing_;
+  Plan plan_;
+  std::unique_ptr<CascadeData> data_;
+  Tape current_;
+  Segment segment_;
+  std::chrono::steady_clock::time_point opened_;
+  std::map<std::pair<int, int>, bool> spelled_;
+  std::vector<FeatureTree> data_roots_;
+  bool data_surfaces_done_ = false;
+};
+
+std::unique_ptr<Cascade> CompileWith(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,
+                                     const std::vector<Letter>* testing) {
+  std::unique_ptr<CascadeData> data = CascadeCompiler(grammar, limits, diagnostics, testing).Run();
+  return data == nullptr ? nullptr : std::make_unique<Cascade>(std::move(data));
+}
+
+}  // namespace
+
+Cascade::Cascade(std::unique_ptr<CascadeData> data) : data_(std::move(data)) {}
+Cascade::~Cascade() = default;
+Cascade::Cascade(Cascade&&) noexcept = default;
+
+std::vector<SegmentStats> Cascade::Stats() const {
+  std::vector<SegmentStats> all;
+  for (const Segment& segment : data_->segments) {
+    SegmentStats stats;
+    for (int rule : segment.rules) stats.rules.push_back(data_->grammar->rules[rule].name);
+    stats.states = segment.machine.arcs.size();
+    stats.arcs = segment.machine.ArcCount();
+    stats.classes = segment.classes;
+    stats.letters = segment.letters;
+    stats.bytes = BytesOf(segment.machine);
+    stats.seconds = segment.seconds;
+    all.push_back(std::move(stats));
+  }
+  return all;
+}
+
+std::unique_ptr<Cascade> Compile(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics) {
+  return CompileWith(grammar, limits, diagnostics, nullptr);
+}
+
+std::unique_ptr<Cascade> CompileForTesting(const Grammar& grammar, const std::vector<Letter>& letters,
+                                           const Limits& limits, Diagnostics& diagnostics) {
+  return CompileWith(grammar, limits, diagnostics, &letters);
+}
+
+}  // namespace tiersmith

@@ -1,0 +1,709 @@
+#include "compile/find.h"
+
+#include <algorithm>
+
+#include "compile/sides.h"
+
+namespace tiersmith {
+namespace {
+
+// Whether a content that travels is still to be met, walking from the letter that asks towards its source.
+enum Need : std::int32_t {
+  kNotNeeded = 0,
+  kInMother = 1,  // still inside the span of the asking letter's own mother
+  kBeyond = 2,
+};
+
+// One step of Need at a letter: is its N the source? `towards` is the mark of the mother's line on the asking side.
+bool MeetsSource(std::int32_t* need, const Key& letter, NodeId node, std::int32_t towards, const RuleSpace& space) {
+  if (*need == kNotNeeded) return false;
+  const RuleSpace::Bearing& bearing = space.Of(letter[0], node);
+  const bool same = *need == kInMother && bearing.mother && (space.Marks(letter, space.tree()[node].mother) & towards);
+  if (same) return false;
+  if (bearing.count > 0) {
+    *need = kNotNeeded;
+    return true;
+  }
+  if (bearing.mother) *need = kBeyond;
+  return false;
+}
+
+void Ask(std::int32_t* need, const Key& letter, NodeId node, const RuleSpace& space) {
+  *need = space.Of(letter[0], node).mother ? kInMother : kBeyond;
+}
+
+// role arcs grouped by profile
+struct RoleArc {
+  int from, role, to;
+};
+
+std::vector<std::vector<RoleArc>> RoleArcs(const PatternMachine& machine, int profiles) {
+  std::vector<std::vector<RoleArc>> arcs(profiles);
+  for (int s = 0; s < machine.states; ++s) {
+    for (const PatternArc& arc : machine.arcs[s]) {
+      if (arc.role >= 0) arcs[arc.profile].push_back({s, arc.role, arc.next});
+    }
+  }
+  return arcs;
+}
+
+std::vector<const Role*> RolesBetween(const PatternMachine& machine, const std::vector<RoleArc>& arcs,
+                                      const std::vector<char>& before, const std::vector<char>& after) {
+  std::vector<char> found(machine.roles.size(), 0);
+  for (const RoleArc& arc : arcs) {
+    if (before[arc.from] && after[arc.to]) found[arc.role] = 1;
+  }
+  std::vector<const Role*> roles;
+  for (std::size_t i = 0; i < found.size(); ++i) {
+    if (found[i]) roles.push_back(&machine.roles[i]);
+  }
+  return roles;
+}
+
+Key Annotated(const Key& symbol, const RuleSpace& space) {
+  return Key(symbol.begin(), symbol.begin() + static_cast<std::ptrdiff_t>(space.AnnotatedSize()));
+}
+
+void Append(Key* key, const Key& more) { key->insert(key->end(), more.begin(), more.end()); }
+
+// ---- at once ------------------------------------------------------------------------------------
+
+// Carries requests on shared mothers to the right, and contents from the left. State, by request node: the request
+// carried for each proper ancestor below the slot, the last content (+1), the content left of the mother's span (+1), Need to the right.
+class SpanPass {
+ public:
+  SpanPass(const RequestSpace& requests, const LetterBuilder& builder) : requests_(requests), builder_(builder) {
+    for (NodeId node : requests.nodes()) {
+      std::vector<NodeId> ancestors;
+      for (NodeId at = requests.space().tree()[node].mother; at != kSlotNode; at = requests.space().tree()[at].mother) {
+        ancestors.push_back(at);
+      }
+      offsets_.push_back(size_);
+      size_ += ancestors.size() + 3;
+      ancestors_.push_back(std::move(ancestors));
+    }
+  }
+
+  Key Start() const { return Key(size_, 0); }
+
+  PassStep Step(const Key& state, const Key& symbol) const {
+    const RuleSpace& space = requests_.space();
+    PassStep step{state, symbol};
+    if (!space.IsSlot(symbol[0])) return step;
+    const std::size_t request_at = space.AnnotatedSize();
+    const std::size_t left_at = request_at + requests_.size();
+    const std::size_t right_at = left_at + requests_.nodes().size();
+    for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+      const NodeId node = requests_.nodes()[i];
+      std::int32_t* carried = &step.state[offsets_[i]];
+      std::int32_t* last = carried + ancestors_[i].size();
+      std::int32_t* of_mother = last + 1;
+      std::int32_t* need = last + 2;
+      std::int32_t& request = step.symbol[request_at + 1 + i];
+      if (requests_.SpreadsFrom(false, i)) {
+        step.symbol[right_at + i] = MeetsSource(need, symbol, node, kFromLeft, space);
+        if (request & kLineRight) Ask(need, symbol, node, space);
+      }
+      Carry(symbol, i, carried, &request);
+      if (!requests_.SpreadsFrom(true, i)) {
+        step.symbol[left_at + i] = -1;
+        continue;
+      }
+      const bool needed = symbol[left_at + i] != 0;
+      const RuleSpace::Bearing& bearing = space.Of(symbol[0], node);
+      if (bearing.mother && !(space.Marks(symbol, space.tree()[node].mother) & kFromLeft)) *of_mother = *last;
+      step.symbol[left_at + i] = (bearing.mother ? *of_mother : *last) - 1;
+      if (bearing.count > 0) *last = needed ? builder_.ContentOf(Annotated(symbol, space), node, true) + 1 : 0;
+    }
+    return step;
+  }
+
+ private:
+  void Carry(const Key& symbol, std::size_t i, std::int32_t* carried, std::int32_t* request) const {
+    const RuleSpace& space = requests_.space();
+    const NodeId anchor = space.LowestAncestor(symbol[0], requests_.nodes()[i]);
+    for (std::size_t k = 0; k < ancestors_[i].size(); ++k) {
+      const NodeId ancestor = ancestors_[i][k];
+      if (space.Of(symbol[0], ancestor).count == 0) continue;
+      if (ancestor == anchor && (space.Marks(symbol, ancestor) & kFromLeft)) {
+        *request = RequestSpace::Combine(*request, carried[k]);
+      }
+      carried[k] = ancestor == anchor && (space.Marks(symbol, ancestor) & kToRight) ? *request : 0;
+    }
+  }
+
+  const RequestSpace& requests_;
+  const LetterBuilder& builder_;
+  std::vector<std::vector<NodeId>> ancestors_;
+  std::vector<std::size_t> offsets_;
+  std::size_t size_ = 0;
+};
+
+}  // namespace
+
+Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
+                 std::size_t max_states) {
+  const RuleSpace& space = requests.space();
+  std::vector<int> profile_of(annotated.symbols.size());
+  for (int i = 0; i < annotated.symbols.size(); ++i) profile_of[i] = pattern.Profile(annotated.symbols[i]);
+  const int profiles = pattern.profiles();
+  const PatternMachine machine = pattern.Build(max_states);
+  const Side left = SubsetsOf(machine, profiles, /*reduce=*/true, max_states);
+  const Side right = SubsetsOf(Reversed(machine), profiles, /*reduce=*/true, max_states);
+  if (left.next.empty() || right.next.empty()) return {Tape{}, true};
+  const std::vector<std::vector<RoleArc>> arcs = RoleArcs(machine, profiles);
+
+  Tape tape = PassRightward(
+      annotated, Key{left.start},
+      [&](const Key& state, const Key& symbol) {
+        PassStep step{Key{left.next[state[0]][pattern.Profile(symbol)]}, symbol};
+        step.symbol.push_back(state[0]);
+        return step;
+      },
+      max_states);
+  const std::size_t nodes = requests.nodes().size();
+  Key right_start(1 + nodes, kNotNeeded);
+  right_start[0] = right.start;
+  tape = PassLeftward(
+      tape, right_start,
+      [&](const Key& state, const Key& symbol) {
+        PassStep step;
+        step.state = state;
+        const Key letter = Annotated(symbol, space);
+        const int profile = pattern.Profile(letter);
+        step.state[0] = right.next[state[0]][profile];
+        step.symbol = letter;
+        const Key request =
+            requests.Of(RolesBetween(machine, arcs[profile], left.members[symbol.back()], right.members[state[0]]), letter);
+        Append(&step.symbol, request);
+        Key needs(2 * nodes, 0);
+        if (space.IsSlot(letter[0])) {
+          for (std::size_t i = 0; i < nodes; ++i) {
+            if (!requests.SpreadsFrom(true, i)) continue;
+            std::int32_t* need = &step.state[1 + i];
+            needs[i] = MeetsSource(need, letter, requests.nodes()[i], kToRight, space);
+            if (request[1 + i] & kLineLeft) Ask(need, letter, requests.nodes()[i], space);
+          }
+        }
+        Append(&step.symbol, needs);
+        return step;
+      },
+      max_states);
+  const LetterBuilder builder(requests, pool);
+  const SpanPass spans(requests, builder);
+  tape = PassRightward(
+      tape, spans.Start(), [&spans](const Key& state, const Key& symbol) { return spans.Step(state, symbol); }, max_states);
+  const bool over_budget = tape.starts.empty() && !annotated.starts.empty();
+  return {std::move(tape), over_budget};
+}
+
+// ---- iterating ------------------------------------------------------------------------------------
+namespace {
+
+// The sweep goes from `near` (what it leaves behind) to `far` (what is ahead). Rightward: near is left.
+struct Direction {
+  bool rightward = true;
+  std::int32_t near_line() const { return rightward ? kFromLeft : kToRight; }
+  std::int32_t near_object() const { return rightward ? kObjectLeft : kObjectRight; }
+  std::int32_t far_line() const { return rightward ? kToRight : kFromLeft; }
+  std::int32_t far_object() const { return rightward ? kObjectRight : kObjectLeft; }
+};
+
+// What the letters behind say to the next: by live node, is the last bearer linked ahead (1), and its near object mark (2).
+constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
+
+const WorkPart* PartIn(const WorkPart& part, NodeId node, bool last) {
+  const WorkPart* found = nullptr;
+  for (const WorkPart& daughter : part.daughters) {
+    const WorkPart* here = daughter.node == node ? &daughter : PartIn(daughter, node, last);
+    if (here == nullptr) continue;
+    found = here;
+    if (!last) return found;
+  }
+  return found;
+}
+
+void DropLinks(WorkPart* part) {
+  part->links = 0;
+  for (WorkPart& daughter : part->daughters) DropLinks(&daughter);
+}
+
+// Everything a sweep carries.
+struct SweepState {
+  std::int32_t near = 0;       // subset behind, of the output
+  std::int32_t visit = -1;     // subset behind of the form at the visit of the root we are in, or -1
+  Key requests;                // of that visit, on the root and below
+  Key behind, behind_visit;    // what the letters behind say
+  Key contents;                // by request node: content behind (+1)
+  Key visit_contents;          // the same as it was at the visit
+
+  Key Pack() const {
+    Key key{near, visit};
+    for (const Key* part : {&requests, &behind, &behind_visit, &contents, &visit_contents}) Append(&key, *part);
+    return key;
+  }
+};
+
+class Sweep {
+ public:
+  Sweep(const RequestSpace& requests, PatternCompiler& pattern, const PatternMachine& machine, ContentPool& pool,
+        Direction direction, int known_profiles)
+      : requests_(requests), space_(requests.space()), pattern_(pattern), direction_(direction), builder_(requests, pool), pool_(pool),
+        machine_(direction.rightward ? machine : Reversed(machine)), known_profiles_(known_profiles) {
+    by_profile_.resize(known_profiles);
+    for (int s = 0; s < machine_.states; ++s) {
+      for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
+    }
+    std::vector<char> start(machine_.states, 0);
+    for (int s : machine_.initial) start[s] = 1;
+    near_start_ = Set(start);
+    std::vector<char> end(machine_.states, 0);
+    for (int s = 0; s < machine_.states; ++s) end[s] = machine_.final[s];
+    far_start_ = Set(end);
+  }
+
+  std::size_t nodes() const { return requests_.nodes().size(); }
+  bool saw_new_profile() const { return saw_new_profile_; }
+
+  // First pass, against the sweep. State: [far subset, ahead, content ahead (+1) and ahead of the mother (+1) by node].
+  Key FarStart() const {
+    Key state(2 + 2 * nodes(), 0);
+    state[0] = far_start_;
+    state[1] = -1;
+    return state;
+  }
+  PassStep Far(const Key& state, const Key& symbol) {
+    PassStep step{state, symbol};
+    step.symbol.push_back(state[0]);
+    step.symbol.push_back(state[1]);
+    const int profile = pattern_.Profile(symbol);
+    step.state[0] = StepBack(state[0], profile);
+    step.state[1] = AheadBefore(state, symbol, profile);
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      std::int32_t* first = &step.state[2 + 2 * i];
+      std::int32_t* of_mother = first + 1;
+      std::int32_t content = -1;
+      if (requests_.SpreadsFrom(!direction_.rightward, i) && space_.IsSlot(symbol[0])) {
+        const NodeId node = requests_.nodes()[i];
+        const RuleSpace::Bearing& bearing = space_.Of(symbol[0], node);
+        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.far_line())) *of_mother = *first;
+        content = (bearing.mother ? *of_mother : *first) - 1;
+        if (bearing.count > 0) *first = builder_.ContentOf(symbol, node, !direction_.rightward) + 1;
+      }
+      step.symbol.push_back(content);
+    }
+    return step;
+  }
+
+  // Second pass, with the sweep.
+  Key NearStart() const {
+    SweepState state;
+    state.near = near_start_;
+    state.requests = Key(nodes(), 0);
+    state.behind = state.behind_visit = Key(space_.live().size(), 0);
+    state.contents = state.visit_contents = Key(nodes(), 0);
+    return state.Pack();
+  }
+
+  PassStep Near(const Key& packed, const Key& symbol) {
+    SweepState state = Unpack(packed);
+    const Key input = Annotated(symbol, space_);
+    const std::int32_t far = symbol[space_.AnnotatedSize()], ahead = symbol[space_.AnnotatedSize() + 1];
+    const std::int32_t* far_contents = &symbol[space_.AnnotatedSize() + 2];
+    if (!space_.IsSlot(input[0])) {
+      const int profile = Known(input);
+      if (state.visit >= 0) state.visit = StepOn(state.visit, profile);
+      state.near = StepOn(state.near, profile);
+      return {state.Pack(), Written(input, requests_.None(), Key(nodes(), 0), Key(nodes(), -1).data())};
+    }
+    const bool first = state.visit < 0;
+    if (first) {
+      state.visit = state.near;
+      state.behind_visit = state.behind;
+      state.visit_contents = state.contents;
+    }
+    const Key at_visit = Current(input, state.behind_visit);
+    const Key request = Decide(&state, at_visit, far, ahead, first);
+    const Key now = Current(input, state.behind);
+    const BuiltLetter built = Built(now, request, state, far_contents);
+    Key with_flags = request;
+    if (Reaches(now, built)) with_flags[0] |= kReaches;
+    const Key written = Written(InputWithOver(input, now), with_flags, state.visit_contents, far_contents);
+
+    // On to the next letter.
+    const bool same_root_ahead = space_.Of(input[0], kRootNode).count > 0 && (space_.Marks(input, kRootNode) & direction_.far_line());
+    if (same_root_ahead) {
+      state.visit = StepOn(state.visit, Known(at_visit));
+      Pass(&state.behind_visit, at_visit);
+    } else {
+      state.visit = -1;
+      state.requests.assign(nodes(), 0);
+      state.behind_visit.assign(space_.live().size(), 0);
+      state.visit_contents.assign(nodes(), 0);
+    }
+    Leave(&state, now, request, built);
+    return {state.Pack(), written};
+  }
+
+ private:
+  struct Arc {
+    int from, role, to;
+  };
+
+  SweepState Unpack(const Key& key) const {
+    SweepState state;
+    state.near = key[0];
+    state.visit = key[1];
+    auto at = key.begin() + 2;
+    const auto take = [&at](std::size_t n) {
+      Key part(at, at + static_cast<std::ptrdiff_t>(n));
+      at += static_cast<std::ptrdiff_t>(n);
+      return part;
+    };
+    state.requests = take(nodes());
+    state.behind = take(space_.live().size());
+    state.behind_visit = take(space_.live().size());
+    state.contents = take(nodes());
+    state.visit_contents = take(nodes());
+    return state;
+  }
+
+  int Set(const std::vector<char>& set) { return sets_.Intern(Key(set.begin(), set.end())); }
+
+  // Profiles that the machine was not built for stop the sweep; it is then built again with them.
+  int Known(const Key& letter) {
+    const int profile = pattern_.Profile(letter);
+    if (profile < known_profiles_) return profile;
+    saw_new_profile_ = true;
+    return 0;
+  }
+
+  int StepOn(int set, int profile) {
+    std::vector<char> next(machine_.states, 0);
+    for (const Arc& arc : by_profile_[profile]) {
+      if (sets_[set][arc.from]) next[arc.to] = 1;
+    }
+    return Set(next);
+  }
+  int StepBack(int set, int profile) {
+    std::vector<char> before(machine_.states, 0);
+    for (const Arc& arc : by_profile_[profile]) {
+      if (sets_[set][arc.to]) before[arc.from] = 1;
+    }
+    return Set(before);
+  }
+
+  // Pairs (state before the rest of this root, role that one of its further slots then gets), as numbers; -1: none.
+  int AheadBefore(const Key& state, const Key& symbol, int profile) {
+    const bool slot = space_.IsSlot(symbol[0]) && space_.Of(symbol[0], kRootNode).count > 0;
+    if (slot && !(space_.Marks(symbol, kRootNode) & direction_.near_line())) return -1;
+    std::vector<std::int32_t> pairs;
+    const int roles = static_cast<int>(machine_.roles.size());
+    for (const Arc& arc : by_profile_[profile]) {
+      if (slot && arc.role >= 0 && sets_[state[0]][arc.to]) pairs.push_back(arc.from * roles + arc.role);
+      if (state[1] < 0) continue;
+      for (std::int32_t pair : aheads_[state[1]]) {
+        if (pair / roles == arc.to) pairs.push_back(arc.from * roles + pair % roles);
+      }
+    }
+    if (pairs.empty()) return -1;
+    std::sort(pairs.begin(), pairs.end());
+    pairs.erase(std::unique(pairs.begin(), pairs.end()), pairs.end());
+    return aheads_.Intern(pairs);
+  }
+
+  // The letter with what the letters behind say on its near side; its far side as in the input.
+  Key Current(const Key& input, const Key& behind) const {
+    Key letter = input;
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      const NodeId node = space_.live()[i];
+      std::int32_t& marks = letter[1 + i];
+      marks &= direction_.far_line() | direction_.far_object();
+      const bool linked = behind[i] & kLinkedAhead;
+      if (space_.Of(input[0], node).count == 0) {
+        if (linked) marks |= kOver;
+        continue;
+      }
+      const int mother = space_.LiveIndex(space_.tree()[node].mother);
+      const bool same_mother = mother >= 0 && (letter[1 + mother] & direction_.near_line());
+      if (linked) marks |= direction_.near_line();
+      if (same_mother ? (behind[i] & kNearObject) != 0 : linked) marks |= direction_.near_object();
+    }
+    return letter;
+  }
+
+  // What the last pass reads: links as they were in the input, spans over the letter as they are now.
+  Key InputWithOver(const Key& input, const Key& now) const {
+    Key letter = input;
+    for (std::size_t i = 1; i < letter.size(); ++i) letter[i] = (letter[i] & ~kOver) | (now[i] & kOver);
+    return letter;
+  }
+
+  // An unchanged letter goes by.
+  void Pass(Key* behind, const Key& letter) const {
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      if (space_.Of(letter[0], space_.live()[i]).count == 0) continue;
+      (*behind)[i] = (letter[1 + i] & direction_.far_line() ? kLinkedAhead : 0) |
+                     (letter[1 + i] & direction_.near_object() ? kNearObject : 0);
+    }
+  }
+
+  // What is asked of this slot: its own roles, and on the root and below also those of its further slots.
+  Key Decide(SweepState* state, const Key& at_visit, std::int32_t far, std::int32_t ahead, bool first) {
+    const int profile = Known(at_visit);
+    const int roles = static_cast<int>(machine_.roles.size());
+    std::vector<char> found(machine_.roles.size(), 0), later(machine_.roles.size(), 0);
+    for (const Arc& arc : by_profile_[profile]) {
+      if (!sets_[state->visit][arc.from]) continue;
+      if (arc.role >= 0 && sets_[far][arc.to]) found[arc.role] = 1;
+      if (!first || ahead < 0) continue;
+      for (std::int32_t pair : aheads_[ahead]) {
+        if (pair / roles == arc.to) later[pair % roles] = 1;
+      }
+    }
+    Key request = requests_.Of(Chosen(found), at_visit);
+    const Key of_later = requests_.Of(Chosen(later), at_visit);
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (requests_.nodes()[i] == kRootNode) continue;
+      std::int32_t& carried = state->requests[i];
+      if (first) carried = RequestSpace::Combine(request[1 + i], of_later[1 + i]);
+      request[1 + i] = carried;
+    }
+    return request;
+  }
+
+  std::vector<const Role*> Chosen(const std::vector<char>& found) const {
+    std::vector<const Role*> chosen;
+    for (std::size_t i = 0; i < found.size(); ++i) {
+      if (found[i]) chosen.push_back(&machine_.roles[i]);
+    }
+    return chosen;
+  }
+
+  BuiltLetter Built(const Key& now, const Key& request, const SweepState& state, const std::int32_t* far_contents) const {
+    Key near_contents = state.visit_contents;
+    for (std::int32_t& content : near_contents) --content;
+    LetterBuilder::Lines lines;
+    lines.left = direction_.rightward ? near_contents.data() : far_contents;
+    lines.right = direction_.rightward ? far_contents : near_contents.data();
+    lines.left_origin = direction_.rightward ? Origin::kNewLeft : Origin::kOldLeft;
+    lines.right_origin = direction_.rightward ? Origin::kOldRight : Origin::kNewRight;
+    return builder_.Build(now, request, lines);
+  }
+
+  Key Written(const Key& letter, const Key& request, const Key& near_plus_one, const std::int32_t* far_contents) const {
+    Key near = near_plus_one;
+    for (std::int32_t& content : near) --content;
+    Key far(far_contents, far_contents + nodes());
+    for (std::size_t i = 0; i < nodes(); ++i) {  // what is not asked for need not be told apart
+      const std::int32_t near_ask = direction_.rightward ? kLineLeft : kLineRight;
+      const std::int32_t far_ask = direction_.rightward ? kLineRight : kLineLeft;
+      if (!(request[1 + i] & near_ask)) near[i] = -1;
+      if (!(request[1 + i] & far_ask)) far[i] = -1;
+    }
+    Key symbol = letter;
+    Append(&symbol, request);
+    Append(&symbol, direction_.rightward ? near : far);
+    Append(&symbol, direction_.rightward ? far : near);
+    return symbol;
+  }
+
+  // Does an effective change touch an object that another root holds as well?
+  bool Reaches(const Key& now, const BuiltLetter& built) const {
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (!built.effective[i]) continue;
+      for (NodeId at = space_.LowestAncestor(now[0], requests_.nodes()[i]); at != kSlotNode && at != kRootNode;
+           at = space_.tree()[at].mother) {
+        if (space_.Marks(now, at) & (kObjectLeft | kObjectRight)) return true;
+      }
+    }
+    return false;
+  }
+
+  // Steps over what the visit made of this slot: insertions, and the slot unless it went.
+  void Leave(SweepState* state, const Key& now, const Key& request, const BuiltLetter& built) {
+    const std::vector<Change>& changes = requests_.rule().changes;
+    const auto insertions = [&](bool before) {
+      for (std::size_t k = 0; k < changes.size(); ++k) {
+        const std::size_t i = direction_.rightward ? k : changes.size() - 1 - k;
+        if (changes[i].op != Change::Op::kInsert || changes[i].before != before) continue;
+        if (!(request[0] >> (kInsertShift + i) & 1)) continue;
+        LeaveInserted(state, changes[i].inserted);
+      }
+    };
+    insertions(direction_.rightward);
+    if (request[0] & kDeleteSlot) {
+      for (std::size_t i = 0; i < space_.live().size(); ++i) {
+        if (space_.Of(now[0], space_.live()[i]).count > 0 && !LinkGoesOn(now, i)) state->behind[i] &= ~kLinkedAhead;
+      }
+    } else {
+      LeaveSlot(state, now, built);
+    }
+    insertions(!direction_.rightward);
+  }
+
+  // With this letter's own N gone: is the N behind linked to the next one ahead?
+  bool LinkGoesOn(const Key& now, std::size_t live) const {
+    const std::int32_t marks = now[1 + live];
+    return (marks & direction_.near_line()) && (marks & direction_.far_line()) &&
+           space_.Of(now[0], space_.live()[live]).count == 1;
+  }
+
+  void LeaveInserted(SweepState* state, const FeatureTree& content) {
+    Letter letter;
+    letter.part.daughters.push_back(PartOf(content));
+    Key annotated(space_.AnnotatedSize(), 0);
+    annotated[0] = space_.classes().Classify(letter).class_id;
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      if (space_.Of(annotated[0], space_.live()[i]).count > 0) {
+        state->behind[i] = 0;
+      } else if (state->behind[i] & kLinkedAhead) {
+        annotated[1 + i] = kOver;
+      }
+    }
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (space_.Of(annotated[0], requests_.nodes()[i]).count > 0) {
+        state->contents[i] = builder_.ContentOf(annotated, requests_.nodes()[i], direction_.rightward) + 1;
+      }
+    }
+    state->near = StepOn(state->near, Known(annotated));
+  }
+
+  void LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
+    Key letter(space_.AnnotatedSize(), 0);
+    letter[0] = builder_.ClassOf(built.slot, now[0]);
+    for (std::size_t i = 0; i < space_.live().size(); ++i) LeaveNode(state, now, built.slot, i, &letter);
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (!requests_.SpreadsFrom(direction_.rightward, i)) continue;
+      const WorkPart* part = PartIn(built.slot, requests_.nodes()[i], direction_.rightward);
+      if (part == nullptr) continue;
+      WorkPart content = *part;
+      if (direction_.rightward) {
+        if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
+      } else {
+        DropLinks(&content);
+      }
+      state->contents[i] = pool_.Intern(content) + 1;
+    }
+    state->near = StepOn(state->near, Known(letter));
+  }
+
+  // A content that moves past this slot loses the links that led to what the slot gave up.
+  void BreakLinks(WorkPart* content, const Key& now) const {
+    const std::vector<NodeId>& kinds = space_.tree()[content->node].daughters;
+    for (std::size_t k = 0; k < kinds.size(); ++k) {
+      const RuleSpace::Bearing& bearing = space_.Of(now[0], kinds[k]);
+      if (bearing.count > 0 && !(bearing.count == 1 && (space_.Marks(now, kinds[k]) & kObjectRight))) content->links &= ~(1u << k);
+    }
+    for (WorkPart& daughter : content->daughters) BreakLinks(&daughter, now);
+  }
+
+  // One live node of the letter as it is now: its marks, and what it says to the next.
+  void LeaveNode(SweepState* state, const Key& now, const WorkPart& slot, std::size_t live, Key* letter) const {
+    const NodeId node = space_.live()[live];
+    const int old_count = space_.Of(now[0], node).count;
+    const std::int32_t old_marks = now[1 + live];
+    std::int32_t& behind = state->behind[live];
+    const bool linked = behind & kLinkedAhead;
+    const bool goes_on = old_count == 0 ? linked : LinkGoesOn(now, live);
+    const WorkPart* first = PartIn(slot, node, !direction_.rightward);  // nearest to what is behind
+    if (first == nullptr) {
+      if (!goes_on) behind &= ~kLinkedAhead;
+      if (goes_on) (*letter)[1 + live] = kOver;
+      return;
+    }
+    const WorkPart* last = PartIn(slot, node, direction_.rightward);
+    const Origin near_origin = direction_.rightward ? Origin::kNewLeft : Origin::kNewRight;
+    const Origin far_origin = direction_.rightward ? Origin::kOldRight : Origin::kOldLeft;
+    const Moved moved = MovedWith(slot, node, near_origin, far_origin);
+    const int near_index = direction_.rightward ? 0 : old_count - 1, far_index = direction_.rightward ? old_count - 1 : 0;
+    bool near_line = false, far_line = false;
+    if (moved.near) {
+      near_line = true;
+      const int mother = space_.LiveIndex(space_.tree()[node].mother);
+      far_line = mother >= 0 && ((*letter)[1 + mother] & direction_.far_line());
+      if (!far_line && direction_.rightward) far_line = moved.mother->links >> LinkBit(space_.tree(), node) & 1;
+    } else if (moved.far) {
+      near_line = goes_on;
+      far_line = true;
+    } else {
+      near_line = first->origin == near_origin || (first->origin == far_origin && goes_on) ||
+                  (first->origin == Origin::kOwn && first->old_index == near_index && linked);
+      far_line = last->origin == far_origin || (last->origin == near_origin && old_count == 0 && linked) ||
+                 (last->origin == Origin::kOwn && last->old_index == far_index && (old_marks & direction_.far_line()));
+    }
+    const int mother = space_.LiveIndex(space_.tree()[node].mother);
+    const bool same_mother = mother >= 0 && ((*letter)[1 + mother] & direction_.near_line());
+    const bool near_object = same_mother ? (behind & kNearObject) != 0 : near_line;
+    const bool far_object = last->origin == Origin::kOwn && !moved.near && !moved.far
+                                ? (old_marks & direction_.far_object()) != 0 && last->old_index == far_index
+                                : far_line;
+    (*letter)[1 + live] = (near_line ? direction_.near_line() : 0) | (near_object ? direction_.near_object() : 0) |
+                          (far_line ? direction_.far_line() : 0) | (far_object ? direction_.far_object() : 0);
+    behind = (far_line ? kLinkedAhead : 0) | (near_object ? kNearObject : 0);
+  }
+
+  // Is the bearer of `node` in this letter part of something that moved here?
+  struct Moved {
+    bool near = false, far = false;
+    const WorkPart* mother = nullptr;
+  };
+  static Moved MovedWith(const WorkPart& slot, NodeId node, Origin near_origin, Origin far_origin) {
+    Moved moved;
+    Search(slot, node, near_origin, far_origin, moved, &moved);
+    return moved;
+  }
+  static bool Search(const WorkPart& part, NodeId node, Origin near_origin, Origin far_origin, Moved on_path, Moved* result) {
+    for (const WorkPart& daughter : part.daughters) {
+      if (daughter.node == node) {
+        *result = on_path;
+        result->mother = &part;
+        return true;
+      }
+      Moved below = on_path;
+      below.near = below.near || daughter.origin == near_origin;
+      below.far = below.far || daughter.origin == far_origin;
+      if (Search(daughter, node, near_origin, far_origin, below, result)) return true;
+    }
+    return false;
+  }
+
+  const RequestSpace& requests_;
+  const RuleSpace& space_;
+  PatternCompiler& pattern_;
+  Direction direction_;
+  LetterBuilder builder_;
+  ContentPool& pool_;
+  PatternMachine machine_;
+  int known_profiles_;
+  std::vector<std::vector<Arc>> by_profile_;
+  KeyPool sets_, aheads_;
+  int near_start_ = 0, far_start_ = 0;
+  bool saw_new_profile_ = false;
+};
+
+}  // namespace
+
+Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
+                    std::size_t max_states) {
+  const Direction direction{requests.rule().mode == Rule::Mode::kRightward};
+  for (int i = 0; i < annotated.symbols.size(); ++i) pattern.Profile(annotated.symbols[i]);
+  while (true) {
+    const int profiles = pattern.profiles();
+    const PatternMachine machine = pattern.Build(max_states);
+    Sweep sweep(requests, pattern, machine, pool, direction, profiles);
+    const PassFunction far = [&sweep](const Key& state, const Key& symbol) { return sweep.Far(state, symbol); };
+    const PassFunction near = [&sweep](const Key& state, const Key& symbol) { return sweep.Near(state, symbol); };
+    Tape tape = direction.rightward ? PassLeftward(annotated, sweep.FarStart(), far, max_states)
+                                    : PassRightward(annotated, sweep.FarStart(), far, max_states);
+    if (tape.starts.empty()) return {Tape{}, true};
+    tape = direction.rightward ? PassRightward(tape, sweep.NearStart(), near, max_states)
+                               : PassLeftward(tape, sweep.NearStart(), near, max_states);
+    // Letters that only the changes make ask things of the pattern that it was not built for: once more with them.
+    if (sweep.saw_new_profile()) continue;
+    const bool over_budget = tape.starts.empty();
+    return {std::move(tape), over_budget};
+  }
+}
+
+}  // namespace tiersmith

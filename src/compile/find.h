@@ -1,0 +1,32 @@
+// Where a rule applies: annotated letters -> annotated letters with requests.
+//
+// At once: L, the subsets of the pattern machine from the left, and R, those from the right; at letter a
+// between l and r the roles are { role : q -a:role-> q', q in l, q' in r }: exact for overlapping matches, several changed items and
+// conditions on both sides (shared/compiler page, "Find"). /n n k/ with [+nasal] [+cons Place]: both n get
+// a role, each by its own match.
+// Iterative: one pass reads the input ahead, then one goes with the sweep and reads its own output behind; it
+// visits a root at its first slot on the way and decides for all its slots.
+//
+// Layout of the symbols written: annotated letter (kOver as it is after the changes behind, when iterating),
+// then the request key, then the contents on the left, then on the right, by request node (-1: none or not asked).
+// At once only the left contents are filled; the right ones hold whether they are needed.
+#pragma once
+
+#include "compile/build_letter.h"
+#include "compile/pattern.h"
+#include "compile/requests.h"
+
+namespace tiersmith {
+
+struct Found {
+  Tape tape;
+  bool over_budget = false;
+};
+
+Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
+                 std::size_t max_states);
+
+Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
+                    std::size_t max_states);
+
+}  // namespace tiersmith

@@ -1,0 +1,77 @@
+// A rule's pattern as an automaton over annotated letters, with the places it changes marked.
+//
+// Example: where N:[+nasal] C:[+cons Place] -- on /n k/ the automaton has one accepting run, which
+// consumes n with the role "N, source bears Place" and k without one.
+//
+// Method, after Kaplan & Kay 1994 (rules as regular relations) with marked strings for what one run cannot see:
+//   1. the where-pattern as an automaton whose states remember the place in the pattern, the
+//      boundaries still to be met, which spreads have a source that bears their node, and for each such
+//      spread a *zone* that watches that no other bearer stands between source and target;
+//   2. minus the strings with a match of an `unless` pattern on the same labelled slots;
+//   3. minus, for a gap with a changed end, the strings with a nearer slot at which the rule would apply:
+//      automaton 1-2 again with that end's mark moved, determinised, complemented.
+// Capacity and crossing are tests of single letters, because letters are annotated (compile/space.h).
+// Letters are grouped by *profile*: the answers to all that 1-3 ask of a letter.
+//
+// Not here: which letters change, and how (compile/find.h, compile/apply.h).
+// Tested by tests/agreement/.
+#pragma once
+
+#include <map>
+#include <memory>
+#include <vector>
+
+#include "compile/space.h"
+
+namespace tiersmith {
+
+struct Spread {
+  int change = 0;           // index into Rule::changes
+  int source = 0, target = 0;
+  NodeId node = 0, mother = 0;
+  bool from_left = true;    // the source stands left of the target
+  bool delinks = false;     // the rule also delinks the target's own
+  bool inserts_between = false;  // the rule inserts a bearer between source and target
+};
+
+// Why a slot is changed: its label, and for each spread to that label whether its source bears the node.
+struct Role {
+  int label = 0;
+  enum Ask : char { kNothing, kAsk, kAskOwnMother };  // the last: source and target share the mother
+  std::vector<Ask> asks;  // by spread
+};
+
+struct PatternArc {
+  int profile = 0;
+  int role = -1;  // index into PatternMachine::roles, or -1
+  int next = 0;
+};
+
+struct PatternMachine {
+  int states = 0;
+  std::vector<int> initial;
+  std::vector<char> final;
+  std::vector<std::vector<PatternArc>> arcs;  // by state
+  std::vector<Role> roles;
+};
+
+// Asks of letters what the pattern needs, and builds the machine.
+class PatternCompiler {
+ public:
+  PatternCompiler(const Rule& rule, const RuleSpace& space);
+  ~PatternCompiler();
+
+  // The profile of an annotated letter; numbers are dense and grow as letters come.
+  int Profile(const Key& annotated);
+  int profiles() const;
+  const std::vector<Spread>& spreads() const;
+
+  // The machine over all profiles seen so far. No states if it passes the limit.
+  PatternMachine Build(std::size_t max_states) const;
+
+ private:
+  struct Impl;
+  std::unique_ptr<Impl> impl_;
+};
+
+}  // namespace tiersmith

@@ -1,0 +1,91 @@
+#include "compile/plan.h"
+
+namespace tiersmith {
+namespace {
+
+void AddUpward(const Tree& tree, NodeId node, NodeSet* set) {
+  for (; node != kSlotNode; node = tree[node].mother) (*set)[node] = true;
+}
+
+void AddDownward(const Tree& tree, NodeId node, NodeSet* set) {
+  (*set)[node] = true;
+  for (NodeId daughter : tree[node].daughters) AddDownward(tree, daughter, set);
+}
+
+void AddTest(const Tree& tree, const SlotTest& test, Plan* plan) {
+  for (const FeatureTest& feature : test.bundle) AddUpward(tree, feature.node, &plan->visible);
+  if (test.op == SlotTest::Op::kLiteral) plan->literals.insert(test.literal);
+  for (const SlotTest& inner : test.args) AddTest(tree, inner, plan);
+}
+
+void AddPattern(const Tree& tree, const Pattern& pattern, Plan* plan) {
+  for (const PatternItem& item : pattern.items) {
+    if (item.kind == PatternItem::Kind::kSlot) AddTest(tree, item.test, plan);
+    if (item.tier.has_value()) AddUpward(tree, *item.tier, &plan->visible);
+    for (const Pattern& alternative : item.alternatives) AddPattern(tree, alternative, plan);
+  }
+}
+
+void AddContent(const FeatureTree& content, NodeSet* set) {
+  (*set)[content.node] = true;
+  for (const FeatureTree& daughter : content.daughters) AddContent(daughter, set);
+}
+
+void AddChange(const Tree& tree, const Change& change, Plan* plan, NodeSet* read) {
+  switch (change.op) {
+    case Change::Op::kSpread:
+    case Change::Op::kDelink:
+      AddUpward(tree, change.node, read);
+      AddDownward(tree, change.node, &plan->visible);
+      break;
+    case Change::Op::kSet:
+    case Change::Op::kFill:
+      for (const Setting& setting : change.settings) {
+        AddUpward(tree, setting.node, read);
+        AddDownward(tree, setting.node, &plan->visible);
+      }
+      break;
+    case Change::Op::kInsert:
+      AddContent(change.inserted, read);
+      break;
+    case Change::Op::kDelete:
+      break;
+  }
+}
+
+}  // namespace
+
+Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
+  const Tree& tree = grammar.tree;
+  Plan plan;
+  plan.visible.assign(tree.nodes.size(), false);
+  plan.visible[kSlotNode] = plan.visible[kRootNode] = true;
+  std::vector<NodeSet> reads;
+  for (const Rule& rule : grammar.rules) {
+    NodeSet read(tree.nodes.size(), false);
+    AddPattern(tree, rule.where, &plan);
+    for (const Pattern& pattern : rule.unless) AddPattern(tree, pattern, &plan);
+    for (const Change& change : rule.changes) AddChange(tree, change, &plan, &read);
+    reads.push_back(std::move(read));
+  }
+  NodeSet live(tree.nodes.size(), keep_all_links);
+  live[kRootNode] = true;
+  live[kSlotNode] = false;
+  plan.live.resize(reads.size() + 1);
+  for (std::size_t i = reads.size() + 1; i-- > 0;) {
+    if (i < reads.size()) {
+      for (std::size_t n = kRootNode; n < live.size(); ++n) live[n] = live[n] || reads[i][n];
+    }
+    for (std::size_t n = kRootNode; n < live.size(); ++n) {
+      if (live[n]) plan.live[i].push_back(static_cast<NodeId>(n));
+    }
+    for (std::size_t n = 0; n < live.size(); ++n) plan.visible[n] = plan.visible[n] || live[n];
+  }
+  // Room depends on the mother's own features.
+  for (std::size_t n = 0; n < tree.nodes.size(); ++n) {
+    if (plan.visible[n] && tree.nodes[n].room.has_value()) AddTest(tree, *tree.nodes[n].room, &plan);
+  }
+  return plan;
+}
+
+}  // namespace tiersmith

@@ -1,0 +1,25 @@
+// What the rules of a grammar look at, before any machine is built: which nodes are visible to them, and whose link bits
+// are in force before each rule (shared/compiler page, "Liveness").
+//
+// A rule reads the bits of the nodes it spreads, cuts, sets or fills, of all nodes above them, and of all that an
+// insertion brings. Bits are in force from the start up to their last reader; the root's stay to the end, for `ː` is
+// written with them. Reading a node is reading all above it, so a set of live nodes is closed upward.
+#pragma once
+
+#include <set>
+#include <vector>
+
+#include "letters/classes.h"
+#include "model/grammar.h"
+
+namespace tiersmith {
+
+struct Plan {
+  NodeSet visible;
+  std::set<int> literals;
+  std::vector<std::vector<NodeId>> live;  // before each rule, and after the last; mothers first
+};
+
+Plan MakePlan(const Grammar& grammar, bool keep_all_links);
+
+}  // namespace tiersmith

@@ -1,0 +1,95 @@
+// Reduce (compile/tape.h): the tape's arcs become labels of an acceptor, which OpenFst makes small. Merging states of the
+// acceptor never moves a label, so the alignment of input and output stays. Determinising may blow up: it is tried under a
+// budget, and the smaller result is kept. Plain transducer minimisation would push labels and break the alignment.
+#include <fst/determinize.h>
+#include <fst/flags.h>
+#include <fst/minimize.h>
+#include <fst/vector-fst.h>
+
+#include "compile/tape.h"
+
+DECLARE_bool(fst_error_fatal);
+
+namespace tiersmith {
+namespace {
+
+using Acceptor = fst::VectorFst<fst::StdArc>;
+
+Acceptor ToAcceptor(const Tape& tape, std::vector<std::pair<int, int>>* labels) {
+  Acceptor acceptor;
+  std::unordered_map<std::uint64_t, int> ids;
+  const auto label = [&](const TapeArc& arc) {
+    const std::uint64_t key =
+        (static_cast<std::uint64_t>(static_cast<std::uint32_t>(arc.in)) << 32) | static_cast<std::uint32_t>(arc.out);
+    const auto [it, added] = ids.emplace(key, static_cast<int>(labels->size()) + 1);
+    if (added) labels->emplace_back(arc.in, arc.out);
+    return it->second;
+  };
+  for (std::size_t s = 0; s < tape.arcs.size(); ++s) {
+    acceptor.AddState();
+    if (tape.ends[s]) acceptor.SetFinal(static_cast<int>(s), fst::TropicalWeight::One());
+  }
+  const int start = acceptor.AddState();
+  acceptor.SetStart(start);
+  for (std::size_t s = 0; s < tape.arcs.size(); ++s) {
+    for (const TapeArc& arc : tape.arcs[s]) {
+      const int l = label(arc);
+      acceptor.AddArc(static_cast<int>(s), fst::StdArc(l, l, fst::TropicalWeight::One(), arc.next));
+    }
+  }
+  for (int s : tape.starts) {
+    if (tape.ends[s]) acceptor.SetFinal(start, fst::TropicalWeight::One());
+    for (const TapeArc& arc : tape.arcs[s]) {
+      const int l = label(arc);
+      acceptor.AddArc(start, fst::StdArc(l, l, fst::TropicalWeight::One(), arc.next));
+    }
+  }
+  return acceptor;
+}
+
+// Determinised by subsets as far as the budget goes; false if it goes past it.
+bool DeterminizeWithin(const Acceptor& acceptor, int max_states, Acceptor* result) {
+  const fst::DeterminizeFst<fst::StdArc> lazy(acceptor);
+  int count = 0;
+  for (fst::StateIterator<fst::DeterminizeFst<fst::StdArc>> it(lazy); !it.Done(); it.Next()) {
+    if (++count > max_states) return false;
+  }
+  *result = Acceptor(lazy);
+  return result->Properties(fst::kError, false) == 0;
+}
+
+std::size_t Arcs(const Acceptor& acceptor) {
+  std::size_t count = 0;
+  for (int s = 0; s < acceptor.NumStates(); ++s) count += acceptor.NumArcs(s);
+  return count;
+}
+
+}  // namespace
+
+Tape Reduce(Tape tape) {
+  FLAGS_fst_error_fatal = false;
+  if (tape.starts.empty()) return tape;
+  std::vector<std::pair<int, int>> labels;
+  Acceptor small = ToAcceptor(tape, &labels);
+  Acceptor determined;
+  const bool fits = DeterminizeWithin(small, 2 * small.NumStates() + 16, &determined);
+  if (fits) fst::Minimize(&determined, static_cast<Acceptor*>(nullptr));
+  fst::Minimize(&small, static_cast<Acceptor*>(nullptr), fst::kShortestDelta, /*allow_nondet=*/true);
+  if (fits && Arcs(determined) <= Arcs(small)) small = determined;
+  Tape result;
+  result.symbols = std::move(tape.symbols);
+  if (small.Start() == fst::kNoStateId) return result;
+  result.starts = {small.Start()};
+  result.arcs.resize(small.NumStates());
+  result.ends.resize(small.NumStates());
+  for (int s = 0; s < small.NumStates(); ++s) {
+    result.ends[s] = small.Final(s) != fst::TropicalWeight::Zero();
+    for (fst::ArcIterator<Acceptor> it(small, s); !it.Done(); it.Next()) {
+      const auto& [in, out] = labels[it.Value().ilabel - 1];
+      result.arcs[s].push_back({in, out, it.Value().nextstate});
+    }
+  }
+  return result;
+}
+
+}  // namespace tiersmith

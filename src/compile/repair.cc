@@ -1,0 +1,179 @@
+#include "compile/repair.h"
+
+#include <algorithm>
+
+namespace tiersmith {
+namespace {
+
+// What became of a letter's old instances of one node.
+enum class Old { kNone, kInPlace, kGivenUp, kElsewhere };  // the last: their mother lives on, its right end is not here
+
+struct NodeState {
+  Old old = Old::kNone;
+  bool raw = false;         // the new last entry is the first entry of the next bearer (stored or implied)
+  WorkPart* part = nullptr; // the new entry, for class nodes
+  Origin from = Origin::kOwn;  // how `part` came here, inherited downward
+};
+
+bool FromRight(Origin origin) { return origin == Origin::kOldRight || origin == Origin::kNewRight; }
+bool FromLeft(Origin origin) { return origin == Origin::kOldLeft || origin == Origin::kNewLeft; }
+
+// The memory of one node while one letter's entries go by.
+struct Walker {
+  std::int32_t next;
+  bool alive;
+  bool crossed = false;
+  bool first_done = false;
+  bool bit = false;  // link of the last new entry
+
+  void New(bool linked, std::int32_t then) {
+    if (!first_done) bit = linked;
+    first_done = true;
+    next = then;
+  }
+  void Kept(bool old_bit) {
+    New(next == Repair::kNewToTheLeft || next == Repair::kOldToTheLeft || (next == Repair::kNearestOld && old_bit),
+        Repair::kNearestOld);
+  }
+  void GivenUp(bool old_bit) {
+    if (next == Repair::kNewToTheLeft) return;
+    next = next == Repair::kOldToTheLeft || (next == Repair::kNearestOld && old_bit) ? Repair::kNearestOld
+                                                                                     : Repair::kUnrelated;
+  }
+  void Fresh() {
+    if (next == Repair::kOldToTheLeft) crossed = true;
+    New(next == Repair::kNewToTheLeft, Repair::kBehindFresh);
+  }
+  void OldRight() {
+    if (next == Repair::kOldToTheLeft || next == Repair::kBehindFresh) crossed = true;
+    New(next == Repair::kNearestOld || next == Repair::kNewToTheLeft, Repair::kNearestOld);
+    alive = true;
+  }
+  void NewRight() { New(true, next); }
+  void OldLeft() { New(next == Repair::kOldToTheLeft || next == Repair::kNewToTheLeft, Repair::kOldToTheLeft); }
+  void NewLeft(bool over) {
+    New(next == Repair::kNewToTheLeft || (next == Repair::kNearestOld && over), Repair::kNewToTheLeft);
+  }
+};
+
+}  // namespace
+
+bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) const {
+  const Tree& tree = space_.tree();
+  std::vector<NodeState> states(space_.live().size());
+  std::vector<std::pair<WorkPart*, std::uint32_t>> links;
+  bool fine = true;
+  for (std::size_t i = 0; i < space_.live().size(); ++i) {
+    const NodeId node = space_.live()[i];
+    const int mother_index = space_.LiveIndex(tree[node].mother);
+    const int bit_index = LinkBit(tree, node);
+    NodeState slot;
+    slot.old = after == nullptr ? Old::kGivenUp : Old::kInPlace;
+    slot.part = after;
+    const NodeState& mother = mother_index < 0 ? slot : states[mother_index];
+    NodeState& state = states[i];
+    Walker walker{memory[i] & kNextMask, (memory[i] & kAliveBit) != 0};
+
+    const int old_count = space_.Of(before[0], node).count;
+    const std::int32_t marks = space_.Marks(before, node);
+    const bool old_bit = marks & kObjectRight;
+    const bool over = marks & kOver;
+    std::vector<WorkPart*> list;
+    if (mother.part != nullptr) {
+      for (WorkPart& daughter : mother.part->daughters) {
+        if (daughter.node == node) list.push_back(&daughter);
+      }
+    }
+    // The entries of a mother that is one object with the next bearer's are settled at its right end.
+    const bool settled = mother.raw;
+    const bool mother_moved = mother.part != nullptr && mother.from != Origin::kOwn && mother.from != Origin::kFresh;
+
+    const auto moved_entries = [&] {  // under a mother that moved here they keep their links
+      for (std::size_t k = list.size(); k-- > 0;) {
+        walker.Kept(k + 1 == list.size() && (mother.part->links >> bit_index & 1u));
+      }
+    };
+    const auto give_up = [&] {
+      const std::int32_t next = walker.next;
+      const bool lives = (old_count == 1 && (marks & kToRight) && walker.alive) || next == kOldToTheLeft || next == kNewToTheLeft;
+      for (int k = old_count; k-- > 0;) walker.GivenUp(k + 1 == old_count && old_bit);
+      state.old = lives ? Old::kElsewhere : Old::kGivenUp;
+      walker.alive = lives;
+    };
+
+    if (mother_moved) {
+      if (!settled && FromRight(mother.from)) moved_entries();
+      if (old_count > 0) {
+        if (mother.old == Old::kElsewhere) {
+          state.old = Old::kElsewhere;
+        } else {
+          give_up();
+        }
+      }
+      if (!settled && FromLeft(mother.from)) moved_entries();
+      state.from = mother.from;
+    } else if (mother.old == Old::kElsewhere) {
+      state.old = old_count > 0 ? Old::kElsewhere : Old::kNone;
+    } else if (mother.old == Old::kGivenUp) {
+      if (old_count > 0) give_up();
+    }
+    if (!mother_moved && mother.part != nullptr && !settled) {
+      // New ones from the right, the old ones in their places, new ones from the left.
+      for (std::size_t k = list.size(); k-- > 0 && FromRight(list[k]->origin);) {
+        list[k]->origin == Origin::kNewRight ? walker.NewRight() : walker.OldRight();
+      }
+      if (old_count > 0 && mother.old == Old::kInPlace) {
+        std::vector<char> kept(old_count, 0);
+        for (const WorkPart* part : list) {
+          if (part->origin == Origin::kOwn) kept[part->old_index] = 1;
+        }
+        const bool any_kept = std::find(kept.begin(), kept.end(), 1) != kept.end();
+        if (!any_kept) {
+          give_up();
+        } else {
+          for (int k = old_count; k-- > 0;) {
+            const bool bit = k + 1 == old_count && old_bit;
+            kept[k] ? walker.Kept(bit) : walker.GivenUp(bit);
+          }
+          state.old = Old::kInPlace;
+          walker.alive = kept[0] != 0;
+        }
+      }
+      for (std::size_t k = list.size(); k-- > 0;) {
+        if (list[k]->origin == Origin::kFresh) walker.Fresh();
+      }
+      for (std::size_t k = list.size(); k-- > 0;) {
+        if (!FromLeft(list[k]->origin)) continue;
+        if (list[k]->origin == Origin::kNewLeft) {
+          walker.NewLeft(over);
+        } else if (!over) {
+          walker.OldLeft();
+        } else if (iterating_left_) {
+          walker.NewRight();
+        } else {
+          walker.OldRight();
+        }
+      }
+    } else if (!mother_moved && settled && old_count > 0 && mother.old == Old::kInPlace) {
+      state.old = list.empty() ? Old::kElsewhere : Old::kInPlace;
+    }
+    if (!list.empty()) {
+      state.raw = settled || walker.bit;
+      state.part = list.back();
+      if (!mother_moved) state.from = list.back()->origin;
+      if (!settled && walker.bit && kept_links_[i]) links.emplace_back(mother.part, 1u << bit_index);
+    }
+    fine = fine && !walker.crossed;
+    memory[i] = walker.next | (walker.alive ? kAliveBit : 0);
+  }
+  if (after == nullptr) return fine;
+  const auto drop = [](const auto& self, WorkPart* part) -> void {
+    part->links = 0;
+    for (WorkPart& daughter : part->daughters) self(self, &daughter);
+  };
+  drop(drop, after);
+  for (const auto& [part, bit] : links) part->links |= bit;
+  return fine;
+}
+
+}  // namespace tiersmith

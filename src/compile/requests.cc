@@ -1,0 +1,126 @@
+#include "compile/requests.h"
+
+#include <algorithm>
+#include <set>
+
+namespace tiersmith {
+
+std::vector<Value> ValuesOf(const LetterPart& part, NodeId node) {
+  std::vector<Value> values;
+  for (const LetterPart& daughter : part.daughters) {
+    if (daughter.node == node) values.push_back(daughter.value);
+    const std::vector<Value> below = ValuesOf(daughter, node);
+    values.insert(values.end(), below.begin(), below.end());
+  }
+  return values;
+}
+
+RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const std::vector<Spread>& spreads)
+    : rule_(rule), space_(space), spreads_(spreads) {
+  std::set<NodeId> nodes;  // mothers have smaller numbers
+  for (const Change& change : rule.changes) {
+    if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) nodes.insert(change.node);
+    for (const Setting& setting : change.settings) {
+      nodes.insert(setting.node);
+      if (ContentIndex(setting.values) < 0) contents_.push_back(setting.values);
+    }
+  }
+  nodes_.assign(nodes.begin(), nodes.end());
+}
+
+int RequestSpace::IndexOf(NodeId node) const {
+  const auto it = std::find(nodes_.begin(), nodes_.end(), node);
+  return it == nodes_.end() ? -1 : static_cast<int>(it - nodes_.begin());
+}
+
+int RequestSpace::ContentIndex(const std::vector<Value>& values) const {
+  const auto it = std::find(contents_.begin(), contents_.end(), values);
+  return it == contents_.end() ? -1 : static_cast<int>(it - contents_.begin());
+}
+
+bool RequestSpace::SpreadsFrom(bool left, std::size_t node_index) const {
+  return std::any_of(spreads_.begin(), spreads_.end(), [&](const Spread& s) {
+    return s.from_left == left && s.node == nodes_[node_index];
+  });
+}
+
+Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated) const {
+  Key request = None();
+  for (const Role* role : roles) {
+    for (std::size_t j = 0; j < role->asks.size(); ++j) {
+      if (spreads_[j].target != role->label) continue;
+      std::int32_t held = 0;
+      request[1 + IndexOf(spreads_[j].node)] |= AskSpread(*role, j, annotated, &held);
+    }
+    for (std::size_t i = 0; i < rule_.changes.size(); ++i) {
+      const Change& change = rule_.changes[i];
+      if (change.target != role->label) continue;
+      switch (change.op) {
+        case Change::Op::kSpread:
+          break;  // above: it depends on the source
+        case Change::Op::kDelink:
+          request[1 + IndexOf(change.node)] |= CutOf(change, *role, annotated);
+          break;
+        case Change::Op::kSet:
+        case Change::Op::kFill:
+          AskSettings(change, annotated, &request);
+          break;
+        case Change::Op::kInsert:
+          request[0] |= 1 << (kInsertShift + i);
+          break;
+        case Change::Op::kDelete:
+          request[0] |= kDeleteSlot;
+          break;
+      }
+    }
+  }
+  return request;
+}
+
+// The line that a spread draws, or none if the mother holds that very instance; then `held` gets its place.
+std::int32_t RequestSpace::AskSpread(const Role& role, std::size_t j, const Key& annotated, std::int32_t* held) const {
+  const Spread& spread = spreads_[j];
+  if (role.asks[j] == Role::kNothing) return 0;
+  const int count = space_.Of(annotated[0], spread.node).count;
+  const bool object_line =
+      count > 0 && (space_.Marks(annotated, spread.node) & (spread.from_left ? kObjectLeft : kObjectRight));
+  if (role.asks[j] != Role::kAskOwnMother && !object_line) return spread.from_left ? kLineLeft : kLineRight;
+  // Of a mother shared with the source, the instance that faces the target; else the one its own line leads to.
+  const bool last = (role.asks[j] == Role::kAskOwnMother) == spread.from_left;
+  *held |= last && count > 1 ? kCutLast : kCutFirst;
+  return 0;
+}
+
+// What a delink cuts: all but what the same match spreads to the same mother.
+std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const Key& annotated) const {
+  const int count = space_.Of(annotated[0], change.node).count;
+  std::int32_t held = 0;
+  for (std::size_t j = 0; j < role.asks.size(); ++j) {
+    if (spreads_[j].target == role.label && spreads_[j].node == change.node) AskSpread(role, j, annotated, &held);
+  }
+  const std::int32_t all = (count > 0 ? kCutFirst : 0) | (count > 1 ? kCutLast : 0) | (count > 2 ? kCutMiddle : 0);
+  return all & ~held;
+}
+
+void RequestSpace::AskSettings(const Change& change, const Key& annotated, Key* request) const {
+  for (const Setting& setting : change.settings) {
+    const int count = space_.Of(annotated[0], setting.node).count;
+    if (change.op == Change::Op::kFill && count > 0) continue;
+    if (setting.values.empty() && count == 0) continue;
+    if (count > 0 && !setting.values.empty()) {
+      if (space_.tree()[setting.node].type == TreeNode::Type::kClass) continue;
+      if (ValuesOf(space_.classes()[annotated[0]].visible.part, setting.node) == setting.values) continue;
+    }
+    std::int32_t& at = (*request)[1 + IndexOf(setting.node)];
+    at = Combine(at, (1 + ContentIndex(setting.values)) << kValuesShift);
+  }
+}
+
+std::int32_t RequestSpace::Combine(std::int32_t a, std::int32_t b) {
+  const std::int32_t values_a = a >> kValuesShift, values_b = b >> kValuesShift;
+  std::int32_t combined = (a | b) & ((1 << kValuesShift) - 1);
+  if (values_a != 0 && values_b != 0 && values_a != values_b) combined |= kClash;
+  return combined | (values_a != 0 ? values_a : values_b) << kValuesShift;
+}
+
+}  // namespace tiersmith

@@ -1,0 +1,68 @@
+// What a rule asks of the objects in one letter, and how two askings of one object combine.
+//
+// A *request* concerns one node N and the mother that bears it (or would): draw a line to the nearest N on the left, cut
+// the mother's own, put these values there. Requests on the slot itself are insertions and deletion.
+// Layout of a request key: [slot bits, request of node 0, request of node 1, ...] over RequestSpace::nodes.
+// The rulings on what combines, and what is ambiguous, are in grammar/notation.md ("Rulings").
+#pragma once
+
+#include <vector>
+
+#include "compile/pattern.h"
+#include "compile/space.h"
+
+namespace tiersmith {
+
+enum RequestBit : std::int32_t {
+  kCutFirst = 1,     // of the mother's own: the first (and only) one goes
+  kCutMiddle = 2,    // those between
+  kCutLast = 4,      // the last of several
+  kCutAll = kCutFirst | kCutMiddle | kCutLast,
+  kLineLeft = 8,     // a line to the nearest N on the left
+  kLineRight = 16,
+  kClash = 32,       // two contents asked for
+  kValuesShift = 6   // from here up: 1 + index into RequestSpace::contents, or 0
+};
+enum SlotBit : std::int32_t {
+  kDeleteSlot = 1,
+  kChanged = 2,      // some match that is not vacuous
+  kReaches = 4,      // an iterative change that reaches another root
+  kInsertShift = 3,  // from here up: one bit for each change of the rule
+};
+
+class RequestSpace {
+ public:
+  RequestSpace(const Rule& rule, const RuleSpace& space, const std::vector<Spread>& spreads);
+
+  const std::vector<NodeId>& nodes() const { return nodes_; }
+  const std::vector<std::vector<Value>>& contents() const { return contents_; }
+  std::size_t size() const { return 1 + nodes_.size(); }
+  Key None() const { return Key(size(), 0); }
+  // The lists of values that set and fill of `node` put there; -1 if there is none.
+  int IndexOf(NodeId node) const;
+  bool SpreadsFrom(bool left, std::size_t node_index) const;
+
+  // What the roles at one letter ask.
+  Key Of(const std::vector<const Role*>& roles, const Key& annotated) const;
+  // Both of one object.
+  static std::int32_t Combine(std::int32_t a, std::int32_t b);
+  const Rule& rule() const { return rule_; }
+  const RuleSpace& space() const { return space_; }
+
+ private:
+  std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
+  std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
+  void AskSettings(const Change& change, const Key& annotated, Key* request) const;
+  int ContentIndex(const std::vector<Value>& values) const;
+
+  const Rule& rule_;
+  const RuleSpace& space_;
+  const std::vector<Spread>& spreads_;
+  std::vector<NodeId> nodes_;
+  std::vector<std::vector<Value>> contents_;
+};
+
+// The values a letter's part bears of `node`, in order.
+std::vector<Value> ValuesOf(const LetterPart& part, NodeId node);
+
+}  // namespace tiersmith

@@ -1,0 +1,223 @@
+#include "compile/rule_machine.h"
+
+#include <algorithm>
+
+#include "compile/build_letter.h"
+#include "compile/find.h"
+#include "compile/pattern.h"
+#include "compile/repair.h"
+#include "compile/requests.h"
+
+namespace tiersmith {
+namespace {
+
+// The last pass, from right to left: requests that come along shared mothers from the right, contents from the right, the
+// letter after the change, its link bits, and then the same bits once more after deletions.
+class ApplyPass {
+ public:
+  ApplyPass(const Rule& rule, const RequestSpace& requests, ContentPool& pool, const std::vector<char>& all_links,
+            const std::vector<char>& kept_links)
+      : rule_(rule), requests_(requests), space_(requests.space()), builder_(requests, pool),
+        at_once_(rule.mode == Rule::Mode::kAtOnce),
+        deletes_(std::any_of(rule.changes.begin(), rule.changes.end(), [](const Change& c) { return c.op == Change::Op::kDelete; })),
+        draw_(space_, deletes_ ? all_links : kept_links, rule.mode == Rule::Mode::kLeftward),
+        erase_(space_, kept_links, false) {
+    for (NodeId node : requests.nodes()) {
+      std::vector<NodeId> ancestors;
+      for (NodeId at = space_.tree()[node].mother; at != kSlotNode; at = space_.tree()[at].mother) ancestors.push_back(at);
+      offsets_.push_back(size_);
+      size_ += ancestors.size() + 2;
+      ancestors_.push_back(std::move(ancestors));
+    }
+    Letter empty;
+    no_letter_.assign(space_.AnnotatedSize(), 0);
+    no_letter_[0] = space_.classes().Classify(empty).class_id;
+    for (const Change& change : rule.changes) {
+      Letter inserted;
+      if (change.op == Change::Op::kInsert) inserted.part.daughters.push_back(PartOf(change.inserted));
+      inserted_.push_back(space_.classes().Classify(inserted));
+    }
+    draw_at_ = size_;
+    erase_at_ = draw_at_ + space_.live().size();
+    objects_at_ = erase_at_ + space_.live().size();
+    size_ = objects_at_ + space_.live().size();
+  }
+
+  Key Start() const { return Key(size_, 0); }
+
+  PassStep Step(const Key& state, const Key& symbol) const {
+    PassStep step;
+    step.state = state;
+    if (!space_.IsSlot(symbol[0])) {
+      step.symbol = Key{0, symbol[0], -1};
+      return step;
+    }
+    const Key letter(symbol.begin(), symbol.begin() + static_cast<std::ptrdiff_t>(space_.AnnotatedSize()));
+    const std::size_t request_at = space_.AnnotatedSize();
+    Key request(symbol.begin() + static_cast<std::ptrdiff_t>(request_at),
+                symbol.begin() + static_cast<std::ptrdiff_t>(request_at + requests_.size()));
+    const std::int32_t* left = &symbol[request_at + requests_.size()];
+    const std::int32_t* right = left + requests_.nodes().size();
+    Key contents(requests_.nodes().size(), -1);
+    if (at_once_) {
+      for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+        Carry(letter, i, &step.state[offsets_[i]], &request[1 + i]);
+        contents[i] = RightContent(letter, i, right[i] != 0, &step.state[offsets_[i] + ancestors_[i].size()]);
+      }
+      right = contents.data();
+    }
+    LetterBuilder::Lines lines;
+    lines.left = left;
+    lines.right = right;
+    lines.left_origin = rule_.mode == Rule::Mode::kRightward ? Origin::kNewLeft : Origin::kOldLeft;
+    lines.right_origin = rule_.mode == Rule::Mode::kLeftward ? Origin::kNewRight : Origin::kOldRight;
+    BuiltLetter built = builder_.Build(letter, request, lines);
+    bool ambiguous = built.clash;
+
+    std::vector<std::pair<int, int>> output;  // from right to left
+    Insert(request, /*before=*/false, &step.state, &output, &ambiguous);
+    Slot(letter, request, &built, &step.state, &output, &ambiguous);
+    Insert(request, /*before=*/true, &step.state, &output, &ambiguous);
+
+    const bool changed = std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end() ||
+                         (request[0] & kDeleteSlot) || (request[0] >> kInsertShift) != 0;
+    step.symbol.push_back((changed ? kFlagChanged : 0) | (ambiguous ? kFlagAmbiguous : 0) |
+                          (request[0] & kReaches ? kFlagReaches : 0));
+    for (std::size_t k = output.size(); k-- > 0;) {
+      step.symbol.push_back(output[k].first);
+      step.symbol.push_back(output[k].second);
+    }
+    return step;
+  }
+
+ private:
+  void Carry(const Key& letter, std::size_t i, std::int32_t* carried, std::int32_t* request) const {
+    const NodeId anchor = space_.LowestAncestor(letter[0], requests_.nodes()[i]);
+    for (std::size_t k = 0; k < ancestors_[i].size(); ++k) {
+      const NodeId ancestor = ancestors_[i][k];
+      if (space_.Of(letter[0], ancestor).count == 0) continue;
+      if (ancestor == anchor && (space_.Marks(letter, ancestor) & kToRight)) {
+        *request = RequestSpace::Combine(*request, carried[k]);
+      }
+      carried[k] = ancestor == anchor && (space_.Marks(letter, ancestor) & kFromLeft) ? *request : 0;
+    }
+  }
+
+  // `memory`: the first content to the right (+1), and the one right of the mother's span (+1).
+  std::int32_t RightContent(const Key& letter, std::size_t i, bool needed, std::int32_t* memory) const {
+    if (!requests_.SpreadsFrom(false, i)) return -1;
+    const NodeId node = requests_.nodes()[i];
+    const RuleSpace::Bearing& bearing = space_.Of(letter[0], node);
+    if (bearing.mother && !(space_.Marks(letter, space_.tree()[node].mother) & kToRight)) memory[1] = memory[0];
+    const std::int32_t content = (bearing.mother ? memory[1] : memory[0]) - 1;
+    if (bearing.count > 0) memory[0] = needed ? builder_.ContentOf(letter, node, false) + 1 : 0;
+    return content;
+  }
+
+  void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output, bool* ambiguous) const {
+    for (std::size_t i = rule_.changes.size(); i-- > 0;) {
+      if (rule_.changes[i].op != Change::Op::kInsert || rule_.changes[i].before != before) continue;
+      if (!(request[0] >> (kInsertShift + i) & 1)) continue;
+      Key plain = no_letter_;
+      plain[0] = inserted_[i].class_id;
+      WorkPart slot = builder_.Before(plain);
+      Freshen(&slot);
+      slot.origin = Origin::kOwn;
+      if (!draw_.Letter(no_letter_, &slot, &(*state)[draw_at_])) *ambiguous = true;
+      output->emplace_back(AfterDeletions(slot, plain[0], state), inserted_[i].rest);
+    }
+  }
+
+  static void Freshen(WorkPart* part) {
+    part->origin = Origin::kFresh;
+    for (WorkPart& daughter : part->daughters) Freshen(&daughter);
+  }
+
+  void Slot(const Key& letter, const Key& request, BuiltLetter* built, Key* state, std::vector<std::pair<int, int>>* output,
+            bool* ambiguous) const {
+    if (!draw_.Letter(letter, &built->slot, &(*state)[draw_at_])) *ambiguous = true;
+    if (!(request[0] & kDeleteSlot)) {
+      output->emplace_back(AfterDeletions(built->slot, letter[0], state), -1);
+      return;
+    }
+    const Key between = Between(ClassWithLinks(built->slot, letter[0]), state);
+    erase_.Letter(between, nullptr, &(*state)[erase_at_]);
+  }
+
+  int ClassWithLinks(const WorkPart& slot, int like) const {
+    tiersmith::Letter letter = space_.classes()[like].visible;
+    letter.part = LetterBuilder::Plain(slot, /*links=*/true);
+    return space_.classes().ClassWithRestOf(like, letter);
+  }
+
+  // The letter between lines and deletions, annotated on its right side.
+  Key Between(int class_id, Key* state) const {
+    Key annotated = no_letter_;
+    annotated[0] = class_id;
+    const Key objects(state->begin() + static_cast<std::ptrdiff_t>(objects_at_), state->end());
+    const Key marks = space_.RightMarks(objects, annotated);
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      annotated[1 + i] = marks[i];
+      if (space_.Of(class_id, space_.live()[i]).count > 0) (*state)[objects_at_ + i] = marks[i];
+    }
+    return annotated;
+  }
+
+  int AfterDeletions(const WorkPart& slot, int like, Key* state) const {
+    const int class_id = ClassWithLinks(slot, like);
+    if (!deletes_) return class_id;
+    const Key between = Between(class_id, state);
+    WorkPart work = builder_.Before(between);
+    erase_.Letter(between, &work, &(*state)[erase_at_]);
+    return ClassWithLinks(work, like);
+  }
+
+  const Rule& rule_;
+  const RequestSpace& requests_;
+  const RuleSpace& space_;
+  LetterBuilder builder_;
+  bool at_once_;
+  bool deletes_;
+  Repair draw_, erase_;
+  std::vector<std::vector<NodeId>> ancestors_;
+  std::vector<std::size_t> offsets_;
+  std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0;
+  Key no_letter_;
+  std::vector<LetterClasses::Parts> inserted_;
+};
+
+// The tape of all strings over some classes.
+Tape AllStrings(const std::vector<int>& classes) {
+  Tape tape;
+  tape.arcs.resize(1);
+  tape.starts = {0};
+  tape.ends = {1};
+  for (int c : classes) tape.arcs[0].push_back({c, tape.symbols.Intern(Key{c}), 0});
+  return tape;
+}
+
+}  // namespace
+
+RuleMachine CompileRule(const Rule& rule, LetterClasses& classes, const std::vector<int>& classes_in,
+                        const std::vector<NodeId>& live_in, const std::vector<NodeId>& live_out, const Limits& limits) {
+  const RuleSpace space(classes, live_in);
+  PatternCompiler pattern(rule, space);
+  const RequestSpace requests(rule, space, pattern.spreads());
+  ContentPool pool;
+  const std::size_t most = limits.side_states * 16;  // of any intermediate tape
+  const Tape annotated = space.Annotate(AllStrings(classes_in), most);
+  Found found = rule.mode == Rule::Mode::kAtOnce ? FindAtOnce(annotated, pattern, requests, pool, most)
+                                                 : FindIterating(annotated, pattern, requests, pool, most);
+  if (found.over_budget) return {Tape{}, true};
+  std::vector<char> all(live_in.size(), 1), kept(live_in.size(), 0);
+  for (std::size_t i = 0; i < live_in.size(); ++i) {
+    kept[i] = std::find(live_out.begin(), live_out.end(), live_in[i]) != live_out.end();
+  }
+  const ApplyPass apply(rule, requests, pool, all, kept);
+  Tape tape = PassLeftward(
+      found.tape, apply.Start(), [&apply](const Key& state, const Key& symbol) { return apply.Step(state, symbol); }, most);
+  const bool over_budget = tape.starts.empty() && !found.tape.starts.empty();
+  return {std::move(tape), over_budget};
+}
+
+}  // namespace tiersmith

@@ -1,0 +1,71 @@
+// What one rule needs to know of letters: the bits in force, who bears what, and *annotated* letters.
+//
+// A link bit sits on the left member of a pair, and one under a shared mother is implied. So that the rest of the
+// compiler can ask both neighbours of a slot the same questions, two passes annotate each
+// letter, for every node with bits in force ("live", shared/compiler page, "Liveness"):
+//   kFromLeft    its first N is the last N of the bearer before
+//   kToRight     its last N is the first N of the next bearer
+//   kObjectLeft  the same two of the mother as an object: of its first and last holder
+//   kObjectRight
+//   kOver        it bears no N, but one N is held on both sides of it
+// An annotated letter is the key [class, marks of live node 0, marks of live node 1, ...].
+#pragma once
+
+#include <vector>
+
+#include "compile/tape.h"
+#include "letters/classes.h"
+#include "model/grammar.h"
+
+namespace tiersmith {
+
+enum LinkMark : std::int32_t { kFromLeft = 1, kToRight = 2, kObjectLeft = 4, kObjectRight = 8, kOver = 16 };
+
+class RuleSpace {
+ public:
+  struct Bearing {
+    bool mother = false;      // bears the node's mother
+    int count = 0;            // instances of the node
+    bool bit = false;         // the stored link bit
+  };
+
+  // `live`: nodes with bits in force in the input, mothers first, without `slot`.
+  RuleSpace(LetterClasses& classes, std::vector<NodeId> live);
+
+  LetterClasses& classes() const { return classes_; }
+  const Tree& tree() const { return classes_.grammar().tree; }
+  const std::vector<NodeId>& live() const { return live_; }
+  int LiveIndex(NodeId node) const { return live_index_[node]; }
+  bool IsSlot(int class_id) const { return classes_[class_id].visible.kind == FormItem::Kind::kSlot; }
+
+  const Bearing& Of(int class_id, NodeId node) const;
+  // Marks of a node in an annotated letter; 0 if its bits are not in force.
+  std::int32_t Marks(const Key& annotated, NodeId node) const {
+    const int live = live_index_[node];
+    return live < 0 ? 0 : annotated[1 + live];
+  }
+  // The lowest proper ancestor of `node` that the letter bears (slot at the highest).
+  NodeId LowestAncestor(int class_id, NodeId node) const;
+  // How many of `node` a mother in this letter may hold.
+  int Room(int class_id, NodeId node) const;
+  std::size_t AnnotatedSize() const { return 1 + live_.size(); }
+
+  // Tape whose symbols are [class] -> tape whose symbols are annotated letters.
+  Tape Annotate(const Tape& tape, std::size_t max_states) const;
+
+  // The left half of the annotation, one letter at a time. A key of the pass holds per live node whether the last bearer
+  // is linked to the right, and its kObjectLeft.
+  Key LeftStart() const { return Key(live_.size(), 0); }
+  // Marks of the letter's left side (kFromLeft, kObjectLeft, kOver), from the state before it.
+  Key LeftMarks(const Key& state, int class_id) const;
+  // The mirror image for the right side; the state holds the same of the next bearer.
+  Key RightMarks(const Key& state, const Key& annotated) const;
+
+ private:
+  LetterClasses& classes_;
+  std::vector<NodeId> live_;
+  std::vector<int> live_index_;
+  mutable std::vector<std::vector<Bearing>> bearings_;  // by class, by node
+};
+
+}  // namespace tiersmith

@@ -1,0 +1,351 @@
+#include "run/recovery.h"
+
+#include <fmt/format.h>
+#include <fst/arcsort.h>
+#include <fst/compose.h>
+#include <fst/connect.h>
+#include <fst/flags.h>
+#include <fst/invert.h>
+#include <fst/project.h>
+#include <fst/rmepsilon.h>
+#include <fst/shortest-path.h>
+#include <fst/vector-fst.h>
+
+#include <algorithm>
+#include <map>
+#include <set>
+
+#include "compile/cascade_data.h"
+
+DECLARE_bool(fst_error_fatal);
+
+namespace tiersmith {
+namespace {
+
+using Fst = fst::VectorFst<fst::StdArc>;
+using fst::StdArc;
+const fst::TropicalWeight kFree = fst::TropicalWeight::One();
+const fst::TropicalWeight kRestored(1.0F);
+
+// Letters with their rests, numbered from 1 (0 is epsilon).
+class RealLetters {
+ public:
+  int Id(int class_id, int rest) {
+    const auto [it, added] = ids_.emplace(std::make_pair(class_id, rest), static_cast<int>(parts_.size()) + 1);
+    if (added) parts_.push_back({class_id, rest});
+    return it->second;
+  }
+  const LetterClasses::Parts& operator[](int id) const { return parts_[id - 1]; }
+  int size() const { return static_cast<int>(parts_.size()); }
+
+ private:
+  std::map<std::pair<int, int>, int> ids_;
+  std::vector<LetterClasses::Parts> parts_;
+};
+
+// What a letter is to the reader of a form.
+struct LetterFacts {
+  bool slot = false;      // a slot with a root
+  bool empty = false;     // a slot without one
+  bool linked = false;
+  int symbol = -1;        // that spells it
+  Boundary boundary = Boundary::kNone;
+};
+
+}  // namespace
+
+struct Recovery::Impl {
+  const Grammar& grammar;
+  const CascadeData& data;
+  RealLetters letters;
+  std::vector<LetterFacts> facts;               // by letter id - 1
+  std::vector<std::set<int>> entering;          // by segment: letters that may come in
+  std::vector<std::set<int>> leaving;
+  std::vector<Fst> inverted;                    // by segment: from what it writes to what it reads
+  Fst underlying;                               // acceptor of underlying forms, boundaries costing 1
+  std::map<int, const InputLetter*> input_of;   // by letter id
+  std::map<int, std::vector<int>> spelled_by;   // symbol -> letters that leave the last segment
+
+  Impl(const Grammar& g, const CascadeData& d) : grammar(g), data(d) {
+    FLAGS_fst_error_fatal = false;
+    std::set<int> coming;
+    for (const InputLetter& input : data.inputs) {
+      const int id = letters.Id(input.parts.class_id, input.parts.rest);
+      input_of.emplace(id, &input);
+      coming.insert(id);
+    }
+    for (const Segment& segment : data.segments) {
+      entering.push_back(coming);
+      inverted.push_back(Expand(segment, coming));
+      coming = written_;
+      leaving.push_back(coming);
+    }
+    for (int id = 1; id <= letters.size(); ++id) facts.push_back(FactsOf(letters[id]));
+    for (int id : leaving.back()) {
+      if (facts[id - 1].symbol >= 0) spelled_by[facts[id - 1].symbol].push_back(id);
+    }
+    underlying = UnderlyingForms();
+  }
+
+  LetterFacts FactsOf(const LetterClasses::Parts& parts) const {
+    LetterFacts fact;
+    const Letter letter = data.classes->Join(parts.class_id, parts.rest);
+    fact.boundary = letter.boundary;
+    if (letter.kind != FormItem::Kind::kSlot) return fact;
+    const std::optional<FeatureTree> root = RootContent(letter);
+    fact.slot = root.has_value();
+    fact.empty = !fact.slot;
+    fact.linked = letter.part.links >> LinkBit(grammar.tree, kRootNode) & 1u;
+    if (fact.slot) fact.symbol = grammar.inventory.Spell(*root).symbol;
+    return fact;
+  }
+
+  // A segment over whole letters, inverted. A letter read of which nothing is written is a restored one.
+  Fst Expand(const Segment& segment, const std::set<int>& coming) {
+    std::map<int, std::vector<int>> by_class;
+    for (int id : coming) by_class[letters[id].class_id].push_back(id);
+    written_.clear();
+    Fst result;
+    for (std::size_t s = 0; s < segment.machine.arcs.size(); ++s) {
+      result.AddState();
+      if (segment.machine.ends[s]) result.SetFinal(static_cast<int>(s), kFree);
+    }
+    const int start = result.AddState();
+    result.SetStart(start);
+    for (int s : segment.machine.starts) result.AddArc(start, StdArc(0, 0, kFree, s));
+    for (std::size_t s = 0; s < segment.machine.arcs.size(); ++s) {
+      for (const TapeArc& arc : segment.machine.arcs[s]) {
+        for (int in : by_class[arc.in]) AddWritten(&result, static_cast<int>(s), in, segment.machine.symbols[arc.out], arc.next);
+      }
+    }
+    fst::ArcSort(&result, fst::ILabelCompare<StdArc>());
+    return result;
+  }
+
+  void AddWritten(Fst* result, int from, int in, const Key& string, int to) {
+    const std::size_t count = (string.size() - 1) / 2;
+    bool rides = false;
+    for (std::size_t k = 0; k < count; ++k) rides = rides || string[2 + 2 * k] < 0;
+    const bool slot = data.classes->Join(letters[in].class_id, letters[in].rest).kind == FormItem::Kind::kSlot;
+    const fst::TropicalWeight weight = !rides && slot ? kRestored : kFree;
+    if (count == 0) {
+      result->AddArc(from, StdArc(0, in, weight, to));
+      return;
+    }
+    for (std::size_t k = 0; k < count; ++k) {
+      const int rest = string[2 + 2 * k];
+      const int id = letters.Id(string[1 + 2 * k], rest < 0 ? letters[in].rest : rest);
+      written_.insert(id);
+      const int next = k + 1 == count ? to : result->AddState();
+      result->AddArc(from, StdArc(id, k == 0 ? in : 0, k == 0 ? weight : kFree, next));
+      from = next;
+    }
+  }
+
+  // States: may a boundary come next or not, and for each long letter the wait for its other half.
+  Fst UnderlyingForms() const {
+    Fst result;
+    const int open = result.AddState();      // at the start or after a slot
+    const int bounded = result.AddState();   // after a boundary
+    result.SetStart(open);
+    result.SetFinal(open, kFree);
+    result.SetFinal(bounded, kFree);
+    std::map<int, int> waiting;  // symbol -> state
+    for (const auto& [id, input] : input_of) {
+      if (input->symbol >= 0 && input->linked) waiting.emplace(input->symbol, result.AddState());
+    }
+    for (const auto& [id, input] : input_of) {  // a letter is written by one symbol: no two symbols fall together
+      if (input->symbol < 0) {
+        result.AddArc(open, StdArc(id, id, kRestored, bounded));
+        continue;
+      }
+      const int next = input->linked ? waiting[input->symbol] : open;
+      result.AddArc(open, StdArc(id, id, kFree, next));
+      result.AddArc(bounded, StdArc(id, id, kFree, next));
+      if (waiting.count(input->symbol) > 0) result.AddArc(waiting[input->symbol], StdArc(id, id, kFree, next));
+    }
+    fst::ArcSort(&result, fst::ILabelCompare<StdArc>());
+    return result;
+  }
+
+  // All strings of letters that are written so.
+  Fst Lattice(const std::vector<Token>& surface) const {
+    Fst result;
+    int state = result.AddState();
+    result.SetStart(state);
+    AddUnwritten(&result, state);
+    for (std::size_t i = 0; i < surface.size(); ++i) {
+      const int symbol = SymbolAt(surface, i);
+      const bool may_link = symbol >= 0 && i + 1 < surface.size() && SymbolAt(surface, i + 1) == symbol;
+      // After a linked letter only its other half may come, so the two ways go apart for one letter.
+      const int next = result.AddState();
+      if (symbol < 0) {
+        for (int id : leaving.back()) {
+          if (facts[id - 1].boundary == surface[i].boundary) result.AddArc(state, StdArc(id, id, kFree, next));
+        }
+      } else {
+        const auto found = spelled_by.find(symbol);
+        if (found != spelled_by.end()) {
+          for (int id : found->second) {
+            if (!facts[id - 1].linked || may_link) result.AddArc(state, StdArc(id, id, kFree, next));
+          }
+        }
+      }
+      state = next;
+      AddUnwritten(&result, state);
+    }
+    result.SetFinal(state, kFree);
+    fst::ArcSort(&result, fst::OLabelCompare<StdArc>());
+    return result;
+  }
+
+  static int SymbolAt(const std::vector<Token>& surface, std::size_t i) {
+    while (surface[i].kind == Token::Kind::kLength && i > 0) --i;
+    return surface[i].kind == Token::Kind::kSymbol ? surface[i].symbol : -1;
+  }
+
+  void AddUnwritten(Fst* result, int state) const {
+    for (int id : leaving.back()) {
+      const LetterFacts& fact = facts[id - 1];
+      const bool unwritten = fact.empty || fact.boundary == Boundary::kMorpheme || fact.boundary == Boundary::kClitic;
+      if (unwritten) result->AddArc(state, StdArc(id, id, kFree, state));
+    }
+  }
+
+  // Acceptor of the underlying forms of a surface form.
+  Fst Candidates(const std::vector<Token>& surface) const {
+    Fst at = Lattice(surface);
+    for (std::size_t k = inverted.size(); k-- > 0;) {
+      Fst next;
+      fst::Compose(at, inverted[k], &next);
+      fst::Project(&next, fst::ProjectType::OUTPUT);
+      fst::Connect(&next);
+      fst::ArcSort(&next, fst::OLabelCompare<StdArc>());
+      at = std::move(next);
+    }
+    Fst result;
+    fst::Compose(at, underlying, &result);
+    fst::Connect(&result);
+    fst::RmEpsilon(&result);
+    return result;
+  }
+
+  std::string Text(const std::vector<int>& ids) const {
+    std::string text;
+    bool linked = false;
+    for (int id : ids) {
+      const InputLetter* input = input_of.at(id);
+      if (input->symbol < 0) {
+        text += input->boundary == Boundary::kMorpheme ? "-" : input->boundary == Boundary::kClitic ? "="
+                : input->boundary == Boundary::kWord   ? "#"
+                                                       : "‖";
+      } else {
+        text += linked ? "ː" : grammar.inventory.symbols[input->symbol].text;
+      }
+      linked = input->linked;
+    }
+    return text;
+  }
+
+  // The letters on cycles, with the first rule that deletes them.
+  std::string InfiniteWhy(const Fst& candidates) const {
+    std::set<std::string> names;
+    for (int s = 0; s < candidates.NumStates(); ++s) {
+      for (fst::ArcIterator<Fst> it(candidates, s); !it.Done(); it.Next()) {
+        const auto found = input_of.find(it.Value().ilabel);
+        if (found == input_of.end() || found->second->symbol < 0) continue;
+        if (Reaches(candidates, it.Value().nextstate, s)) names.insert(grammar.inventory.symbols[found->second->symbol].text);
+      }
+    }
+    std::string text = "any number of";
+    for (const std::string& name : names) text += " " + name;
+    const std::string rule = DeletingRule();
+    return rule.empty() ? text : fmt::format("{} (rule \"{}\")", text, rule);
+  }
+
+  static bool Reaches(const Fst& machine, int from, int to) {
+    std::vector<char> seen(machine.NumStates(), 0);
+    std::vector<int> stack{from};
+    while (!stack.empty()) {
+      const int s = stack.back();
+      stack.pop_back();
+      if (s == to) return true;
+      if (seen[s]) continue;
+      seen[s] = 1;
+      for (fst::ArcIterator<Fst> it(machine, s); !it.Done(); it.Next()) stack.push_back(it.Value().nextstate);
+    }
+    return false;
+  }
+
+  std::string DeletingRule() const {
+    for (const Rule& rule : grammar.rules) {
+      for (const Change& change : rule.changes) {
+        if (change.op == Change::Op::kDelete || (change.op == Change::Op::kDelink && change.node == kRootNode)) return rule.name;
+      }
+    }
+    return "";
+  }
+
+ private:
+  std::set<int> written_;
+};
+
+Recovery::Recovery(const Grammar& grammar, const Cascade& cascade) : impl_(std::make_unique<Impl>(grammar, cascade.data())) {}
+Recovery::~Recovery() = default;
+
+bool Recovery::Recover(const std::vector<Token>& surface, std::size_t best, Runner::Candidates* candidates) {
+  const Fst machine = impl_->Candidates(surface);
+  if (machine.Properties(fst::kError, false) != 0) return false;
+  *candidates = {};
+  if (machine.Start() == fst::kNoStateId) return true;
+  candidates->infinite = machine.Properties(fst::kAcyclic, true) == 0;
+  if (candidates->infinite) candidates->infinite_why = impl_->InfiniteWhy(machine);
+  Fst paths;
+  fst::ShortestPath(machine, &paths, static_cast<int>(best) + 1);
+  std::set<std::string> seen;
+  // The result is a tree of paths from the start.
+  for (fst::ArcIterator<Fst> first(paths, paths.Start() < 0 ? 0 : paths.Start()); paths.Start() >= 0 && !first.Done(); first.Next()) {
+    std::vector<int> ids;
+    float weight = 0;
+    StdArc arc = first.Value();
+    while (true) {
+      if (arc.ilabel != 0) ids.push_back(arc.ilabel);
+      weight += arc.weight.Value();
+      if (paths.NumArcs(arc.nextstate) == 0) {
+        weight += paths.Final(arc.nextstate).Value();
+        break;
+      }
+      arc = fst::ArcIterator<Fst>(paths, arc.nextstate).Value();
+    }
+    Runner::Candidate candidate;
+    candidate.form = impl_->Text(ids);
+    candidate.restorations = static_cast<int>(weight + 0.5F);
+    if (seen.insert(candidate.form).second) candidates->best.push_back(std::move(candidate));
+  }
+  if (paths.Start() >= 0 && paths.Final(paths.Start()) != fst::TropicalWeight::Zero()) candidates->best.insert(candidates->best.begin(), Runner::Candidate{});
+  std::stable_sort(candidates->best.begin(), candidates->best.end(), [](const Runner::Candidate& a, const Runner::Candidate& b) {
+    return a.restorations < b.restorations;
+  });
+  candidates->more = candidates->best.size() > best || candidates->infinite;
+  if (candidates->best.size() > best) candidates->best.resize(best);
+  return true;
+}
+
+bool Recovery::IsCandidate(const std::vector<LetterClasses::Parts>& underlying, const std::vector<Token>& surface) {
+  Fst form;
+  int state = form.AddState();
+  form.SetStart(state);
+  for (const LetterClasses::Parts& parts : underlying) {
+    const int id = impl_->letters.Id(parts.class_id, parts.rest);
+    const int next = form.AddState();
+    form.AddArc(state, StdArc(id, id, kFree, next));
+    state = next;
+  }
+  form.SetFinal(state, kFree);
+  Fst both;
+  fst::Compose(impl_->Candidates(surface), form, &both);
+  fst::Connect(&both);
+  return both.Start() != fst::kNoStateId;
+}
+
+}  // namespace tiersmith
