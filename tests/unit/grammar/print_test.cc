@@ -362,6 +362,31 @@ TEST_CASE("print: the example grammars come back the same", "[unit]") {
   CHECK(grammars >= 5);
 }
 
+TEST_CASE("the examples of notation.md parse and come back the same", "[unit]") {
+  std::ifstream page(std::string(TIERSMITH_TEST_SOURCE) + "/grammar/notation.md");
+  REQUIRE(page.good());
+  int examples = 0;
+  bool inside = false;
+  std::string line, example;
+  while (std::getline(page, line)) {
+    if (line == "```tier") {
+      inside = true;
+      example.clear();
+    } else if (line == "```" && inside) {
+      inside = false;
+      CAPTURE(example);
+      const Parsed parsed = ParseText(example);
+      CHECK(parsed.messages == "");
+      CHECK(!parsed.file.tops.empty());
+      CHECK(Shape(ParseText(Print(parsed.file)).file) == Shape(parsed.file));
+      ++examples;
+    } else if (inside) {
+      example += line + "\n";
+    }
+  }
+  CHECK(examples >= 7);
+}
+
 TEST_CASE("print: random syntax trees come back the same", "[unit]") {
   for (unsigned seed = 0; seed < 5000; ++seed) {
     const syntax::File file = Maker(seed).File();
