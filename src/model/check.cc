@@ -37,9 +37,11 @@ void Checker::Run() {
   LoadDataFiles();
   CheckRooms();
   CheckInventory();
+  // Symbols missing for an error above would be unknown in every row.
+  const bool readable = !diagnostics_.HasErrors() && !grammar_.inventory.symbols.empty();
   CheckClasses();
   CheckRules();
-  if (!grammar_.inventory.symbols.empty()) CheckData();
+  if (readable) CheckData();
 }
 
 namespace {

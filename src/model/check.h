@@ -136,8 +136,14 @@ class Checker {
   // ---- check_data.cc
   void LoadDataFiles();
   void CheckData();
-  void CheckForm(std::string_view text, Span span, bool underlying, const class Reader& reader);
+  struct Unread {  // an error of a form, and how many further forms have the same
+    Diagnostic diagnostic;
+    int further = 0;
+  };
+  void CheckForm(std::string_view text, Span span, bool underlying, const class Reader& reader, std::vector<Unread>* unread);
 
+  // One mistake in a declaration makes every use of the name an error: after a few of them the rest is not said.
+  bool SaidOften(const std::string& name) { return ++said_[name] > 3; }
   void Error(Kind kind, Span span, std::string message, std::string remedy) {
     diagnostics_.Error(kind, span, std::move(message), std::move(remedy));
   }
@@ -160,6 +166,7 @@ class Checker {
   std::set<std::string> failed_libraries_;
   std::set<NodeId> given_;              // nodes some bundle of the inventory gives
   bool from_library_ = false;
+  std::map<std::string, int> said_;
   SymbolTrie trie_;
 };
 

@@ -163,7 +163,7 @@ void Checker::LoadDataFiles() {
   }
 }
 
-void Checker::CheckForm(std::string_view text, Span span, bool underlying, const Reader& reader) {
+void Checker::CheckForm(std::string_view text, Span span, bool underlying, const Reader& reader, std::vector<Unread>* unread) {
   std::vector<Token> tokens;
   TextError error;
   if (reader.Read(text, underlying ? Reader::Side::kUnderlying : Reader::Side::kSurface, &tokens, &error)) {
@@ -171,15 +171,28 @@ void Checker::CheckForm(std::string_view text, Span span, bool underlying, const
     if (!any && underlying) Error(Kind::kBadForm, span, "the form has no segment", "write at least one symbol");
     return;
   }
+  const auto same = std::find_if(unread->begin(), unread->end(), [&](const Unread& u) { return u.diagnostic.message == error.message; });
+  if (same != unread->end()) {
+    ++same->further;
+    return;
+  }
   const std::uint32_t begin = span.begin + static_cast<std::uint32_t>(error.offset);
-  Error(error.kind, {span.file, begin, begin + static_cast<std::uint32_t>(error.length)}, error.message, error.remedy);
+  const Span place{span.file, begin, begin + static_cast<std::uint32_t>(error.length)};
+  unread->push_back({{error.kind, Severity::kError, place, error.message, error.remedy, {}}, 0});
 }
 
+// One character that is not in the inventory may stand in every row: it is said where it stands first, with the number of
+// the others.
 void Checker::CheckData() {
   const Reader reader(grammar_);
+  std::vector<Unread> unread;
   for (const DataRow& row : grammar_.data) {
-    CheckForm(row.underlying, row.span, true, reader);
-    for (std::size_t i = 0; i < row.surfaces.size(); ++i) CheckForm(row.surfaces[i], row.surface_spans[i], false, reader);
+    CheckForm(row.underlying, row.span, true, reader, &unread);
+    for (std::size_t i = 0; i < row.surfaces.size(); ++i) CheckForm(row.surfaces[i], row.surface_spans[i], false, reader, &unread);
+  }
+  for (Unread& u : unread) {
+    if (u.further > 0) u.diagnostic.message += " (" + std::to_string(u.further) + (u.further == 1 ? " further form has the same)" : " further forms have the same)");
+    diagnostics_.Add(std::move(u.diagnostic));
   }
 }
 

@@ -340,6 +340,7 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
     return true;
   }
   if (classes_.count(name) == 0) {
+    if (SaidOften("class " + name)) return false;
     std::vector<std::string> known = ClassNames();
     for (const auto& [pattern_name, declared] : patterns_) known.push_back(pattern_name);
     std::string remedy = DidYouMean(name, known);

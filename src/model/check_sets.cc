@@ -257,7 +257,7 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
             "write two items, or test length with other means; a literal accepts a root however long it is");
     } else if (shown == "-" || shown == "=" || shown == "#" || shown == " " || shown == "‖") {
       Error(Kind::kBadRule, span, "a boundary does not stand inside a literal", "write it as an item of its own: /a/ - /b/");
-    } else {
+    } else if (!SaidOften("symbol " + shown)) {
       Error(Kind::kUnknownSymbol, span, "'" + shown + "' is no symbol of the grammar",
             Or(DidYouMean(literal.raw, SymbolNames()), "list it in `segments`"));
     }
@@ -276,6 +276,7 @@ std::optional<SlotTest> Checker::ResolveClass(const syntax::Name& name) {
   if (failed_classes_.count(name.text) != 0) return std::nullopt;  // said already
   const auto found = classes_.find(name.text);
   if (found == classes_.end()) {
+    if (SaidOften("class " + name.text)) return std::nullopt;
     std::string remedy = DidYouMean(name.text, ClassNames());
     if (patterns_.count(name.text) != 0) remedy = "it is a named pattern, which stands only as an item of its own; ";
     if (grammar_.tree.Find(name.text)) remedy = "a feature stands in brackets: [" + name.text + "]; ";

@@ -29,6 +29,7 @@ std::vector<std::string> Checker::NodeNames() const {
 
 std::optional<NodeId> Checker::NodeOf(const syntax::Name& name, Kind kind) {
   if (const std::optional<NodeId> node = grammar_.tree.Find(name.text)) return node;
+  if (SaidOften("node " + name.text)) return std::nullopt;
   std::string remedy = DidYouMean(name.text, NodeNames());
   for (const TreeNode& node : grammar_.tree.nodes) {
     for (const std::string& value : node.values) {

@@ -127,7 +127,6 @@ TEST_CASE("check: the inventory", "[unit]") {
       {"omit { ±bakc in [+son] }", Kind::kUnknownFeature, "bakc", "did you mean 'back'?"},
       {"diacritics { ◌ʷ [round]  ◌ʷ [+voice] }", Kind::kDuplicate, "◌ʷ", "declared twice"},
       {"diacritics { ʷ [round] }", Kind::kNotSupportedYet, "ʷ", "has no ◌"},
-      {"diacritics { ◌ː [round] }", Kind::kBadForm, "◌ː", "cannot be a diacritic"},
       {"diacritics { ◌ʷ [] }", Kind::kBadValue, "[]", "gives nothing"},
       {"segments { b = p }", Kind::kSymbolsFallTogether, "b", "'p' and 'b' fall together"},
   });
@@ -191,6 +190,13 @@ TEST_CASE("check: several mistakes in one run", "[unit]") {
   std::string kinds;
   for (const Diagnostic& d : loaded.diagnostics.all()) kinds += loaded.Covered(d) + " ";
   CHECK(kinds == "nasl Y q ");
+}
+
+TEST_CASE("check: one mistake is not said for ever", "[unit]") {
+  const Loaded rows = Load(kHead + "data { /taqa/ [taqa]  /qa/ [q]  /ta/ [ta] }");
+  REQUIRE(rows.diagnostics.all().size() == 1);
+  CHECK(rows.diagnostics.all()[0].message == "'q' (U+0071, LATIN SMALL LETTER Q) is in no symbol of the grammar (3 further forms have the same)");
+  CHECK(Load(kHead + "class A = [+x] class B = [+x] class C = [+x] class D = [+x] class E = [+x]").diagnostics.all().size() == 3);
 }
 
 TEST_CASE("check: patterns, labels and changes", "[unit]") {
