@@ -87,6 +87,9 @@ std::string FindLibrary() {
     const fs::path candidate = (self.parent_path() / relative).lexically_normal();
     if (fs::is_directory(candidate / "ipa", error)) return candidate.string();
   }
+#ifdef TIERSMITH_INSTALLED_RULESETS  // for programs elsewhere that use the installed library
+  if (fs::is_directory(fs::path(TIERSMITH_INSTALLED_RULESETS) / "ipa", error)) return TIERSMITH_INSTALLED_RULESETS;
+#endif
   return "";
 }
 

@@ -9,5 +9,5 @@ run compile "$velmari" -o "$t/x.machine"
 is_code 2; has_err 'comes with a later release'
 [[ ! -e "$t/x.machine" ]] || fail "no file expected"
 run compile "$velmari"
-is_code 0; has_out '5 rules'
+is_code 0; has_out '6 rules'
 done_testing
