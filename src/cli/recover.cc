@@ -3,8 +3,10 @@
 // the gloss is empty. Tested by tests/cli/recover.sh.
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <iostream>
 #include <nlohmann/json.hpp>
+#include <tuple>
 
 #include "cli/command.h"
 #include "run/run.h"
@@ -21,6 +23,13 @@ struct RecoverOptions : CommonOptions {
 };
 
 std::string Weight(double weight) { return fmt::format("{:.4g}", weight); }
+
+// Ties in an order of their own, so that the same list always reads the same.
+void Sort(Runner::Candidates& candidates) {
+  std::sort(candidates.best.begin(), candidates.best.end(), [](const auto& a, const auto& b) {
+    return std::tie(a.restorations, a.weight, a.form) < std::tie(b.restorations, b.weight, b.form);
+  });
+}
 
 // "infinitely many: ...; the 10 with the fewest restorations are shown", or "" if the list is whole.
 std::string Bound(const Runner::Candidates& candidates) {
@@ -96,6 +105,7 @@ int RunRecover(const RecoverOptions& options) {
       }
       candidates = {};
     }
+    Sort(candidates);
     none = none || candidates.best.empty();
     if (options.json()) {
       output.Write(first ? "\n" : ",\n");
