@@ -12,7 +12,11 @@ void Checker::Run() {
   const syntax::Language* language = nullptr;
   for (const syntax::Top& top : file_.tops) {
     const auto twice = [&](const syntax::Name& name, Span first, const std::string& what) {
-      diagnostics_.Add({Kind::kDuplicate, Severity::kError, name.span, what + " '" + name.text + "' is declared twice", "keep one of the two",
+      diagnostics_.Add({Kind::kDuplicate,
+                        Severity::kError,
+                        name.span,
+                        what + " '" + name.text + "' is declared twice",
+                        "keep one of the two",
                         {{first, "first declared here"}}});
     };
     if (const auto* named = std::get_if<syntax::Language>(&top)) {
@@ -25,11 +29,13 @@ void Checker::Run() {
     } else if (const auto* pattern = std::get_if<syntax::NamedPattern>(&top)) {
       const auto [place, fresh] = patterns_.emplace(pattern->name.text, pattern);
       if (!fresh) twice(pattern->name, place->second->name.span, "pattern");
-      if (classes_.count(pattern->name.text) != 0) twice(pattern->name, classes_[pattern->name.text]->name.span, "name");
+      if (classes_.count(pattern->name.text) != 0)
+        twice(pattern->name, classes_[pattern->name.text]->name.span, "name");
     }
   }
   if (file_.tops.empty() && file_.unsupported.empty()) {
-    Error(Kind::kBadTree, whole_, "the grammar is empty", "it needs at least a `tree`, `segments` and a `rule`");
+    Error(Kind::kBadTree, whole_, "the grammar is empty",
+          "it needs at least a `tree`, `segments` and a `rule`");
     return;
   }
   CheckTree();
@@ -46,14 +52,16 @@ void Checker::Run() {
 
 namespace {
 
-// The parser keeps what this release does not run; each is an error unless it was reported where it was parsed.
+// The parser keeps what this release does not run; each is an error unless it was reported where it was
+// parsed.
 void PassOnUnsupported(const syntax::File& file, Diagnostics& diagnostics) {
   const auto pass = [&](const syntax::Unsupported& construct) {
     for (const Diagnostic& said : diagnostics.all()) {
       if (said.kind != Kind::kNotSupportedYet || said.span.file != construct.span.file) continue;
       if (said.span.begin <= construct.span.end && construct.span.begin <= said.span.end) return;
     }
-    diagnostics.Error(Kind::kNotSupportedYet, construct.span, "`" + construct.construct + "` is not supported by this release",
+    diagnostics.Error(Kind::kNotSupportedYet, construct.span,
+                      "`" + construct.construct + "` is not supported by this release",
                       "take it out, or state the analysis without it");
   };
   for (const syntax::Top& top : file.tops) {
@@ -62,7 +70,8 @@ void PassOnUnsupported(const syntax::File& file, Diagnostics& diagnostics) {
   for (const syntax::Unsupported& construct : file.unsupported) pass(construct);
 }
 
-std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
+std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources,
+                              Diagnostics& diagnostics) {
   const auto errors = [&] {
     int count = 0;
     for (const Diagnostic& d : diagnostics.all()) count += d.severity == Severity::kError ? 1 : 0;
@@ -70,7 +79,8 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   };
   const auto hard = [&] {
     int count = 0;
-    for (const Diagnostic& d : diagnostics.all()) count += d.severity == Severity::kError && d.kind != Kind::kNotSupportedYet ? 1 : 0;
+    for (const Diagnostic& d : diagnostics.all())
+      count += d.severity == Severity::kError && d.kind != Kind::kNotSupportedYet ? 1 : 0;
     return count;
   };
   const int before = errors(), hard_before = hard();
@@ -87,13 +97,15 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
 
 }  // namespace
 
-std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
+std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_ptr<SourceMap>& sources,
+                                     Diagnostics& diagnostics) {
   std::uint32_t file = 0;
   if (!sources->Load(path, Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
   return Load(file, sources, diagnostics);
 }
 
-std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text, const std::shared_ptr<SourceMap>& sources,
+std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
+                                         const std::shared_ptr<SourceMap>& sources,
                                          Diagnostics& diagnostics) {
   return Load(sources->Add(path, text), sources, diagnostics);
 }

@@ -1,7 +1,8 @@
 // Syntax tree -> checked grammar. Inner header of src/model/check_*.cc: nothing outside includes it.
 //
-// Order: tree, classes, symbols, diacritics, omit, rules, data; each looks up names only in what stands before it here, so
-// that declarations may stand in any order in the file. Tested by tests/unit/model/check_test.cc.
+// Order: tree, classes, symbols, diacritics, omit, rules, data; each looks up names only in what stands
+// before it here, so that declarations may stand in any order in the file. Tested by
+// tests/unit/model/check_test.cc.
 #pragma once
 
 #include <map>
@@ -40,7 +41,9 @@ class Checker {
   std::vector<std::string> NodeNames() const;
   // A node by name, or an error of kind `kind` at the name.
   std::optional<NodeId> NodeOf(const syntax::Name& name, Kind kind);
-  bool IsSlotBorne(NodeId node) const { return node != kSlotNode && !grammar_.tree.Dominates(kRootNode, node); }
+  bool IsSlotBorne(NodeId node) const {
+    return node != kSlotNode && !grammar_.tree.Dominates(kRootNode, node);
+  }
 
   // ---- check_sets.cc
   std::optional<SlotTest> ResolveSet(const syntax::Set& set);
@@ -73,10 +76,13 @@ class Checker {
   void CheckInventory();
   void CollectEntries();
   void AddEntry(const syntax::SegmentEntry& entry, const syntax::Segments& block);
-  bool IsFull(const Entry& entry) const { return entry.entry->like || entry.entry->bundle || entry.block->added; }
+  bool IsFull(const Entry& entry) const {
+    return entry.entry->like || entry.entry->bundle || entry.block->added;
+  }
   void BuildTrees();
   bool Build(std::size_t id);
-  const FeatureTree* FromLibrary(const syntax::Name& symbol, const syntax::Segments& block, FeatureTree* content);
+  const FeatureTree* FromLibrary(const syntax::Name& symbol, const syntax::Segments& block,
+                                 FeatureTree* content);
   Library* LibraryOf(const syntax::Name* name, Span span);
   void Apply(const std::vector<Setting>& settings, FeatureTree* root);
   bool HasRoom(const FeatureTree& root, NodeId* full) const;
@@ -84,7 +90,8 @@ class Checker {
   void TakeWithout();
   bool SymbolPasses(const SlotTest& test, int symbol) const;
   // The node and values a line of `without` or `omit` lists; empty after an error.
-  std::vector<std::pair<NodeId, Value>> ResolveValues(const syntax::ValueRef& ref, Span span, const char* verb);
+  std::vector<std::pair<NodeId, Value>> ResolveValues(const syntax::ValueRef& ref, Span span,
+                                                      const char* verb);
   void CheckDiacritics();
   bool MayBear(const FeatureTree& content, const Sign& sign) const;
   void BuildComposites();
@@ -101,17 +108,17 @@ class Checker {
   // ---- check_rules.cc
   struct RuleContext {
     Rule* rule = nullptr;
-    std::map<std::string, int> mentions;      // classes named as whole items of the `where`
-    std::map<std::string, int> own_labels;    // label -> index
-    std::set<std::string> used;               // labels the changes and conditions use
-    std::set<std::string> inserted;           // labels of inserted items
-    std::set<std::string> placed;             // those checked so far
+    std::map<std::string, int> mentions;    // classes named as whole items of the `where`
+    std::map<std::string, int> own_labels;  // label -> index
+    std::set<std::string> used;             // labels the changes and conditions use
+    std::set<std::string> inserted;         // labels of inserted items
+    std::set<std::string> placed;           // those checked so far
     bool in_unless = false;
-    bool broken = false;                      // the pattern has errors: a label may be missing for that
-    int depth = 0;                            // inside groups
-    bool repeated = false;                    // inside a group whose quantity is not one
-    bool alternative = false;                 // inside one of several alternatives
-    std::vector<std::string> expanding;       // named patterns being expanded
+    bool broken = false;                 // the pattern has errors: a label may be missing for that
+    int depth = 0;                       // inside groups
+    bool repeated = false;               // inside a group whose quantity is not one
+    bool alternative = false;            // inside one of several alternatives
+    std::vector<std::string> expanding;  // named patterns being expanded
   };
   void CheckRules();
   void CheckRule(const syntax::Rule& written);
@@ -140,9 +147,11 @@ class Checker {
     Diagnostic diagnostic;
     int further = 0;
   };
-  void CheckForm(std::string_view text, Span span, bool underlying, const class Reader& reader, std::vector<Unread>* unread);
+  void CheckForm(std::string_view text, Span span, bool underlying, const class Reader& reader,
+                 std::vector<Unread>* unread);
 
-  // One mistake in a declaration makes every use of the name an error: after a few of them the rest is not said.
+  // One mistake in a declaration makes every use of the name an error: after a few of them the rest is not
+  // said.
   bool SaidOften(const std::string& name) { return ++said_[name] > 3; }
   void Error(Kind kind, Span span, std::string message, std::string remedy) {
     diagnostics_.Error(kind, span, std::move(message), std::move(remedy));
@@ -159,12 +168,12 @@ class Checker {
   std::vector<std::string> resolving_;  // classes being resolved
   std::map<std::string, const syntax::NamedPattern*> patterns_;
   std::vector<std::pair<NodeId, const syntax::Set*>> rooms_;
-  std::vector<Entry> entries_;          // beside Inventory::symbols
-  std::vector<Sign> signs_;             // beside Inventory::marks
+  std::vector<Entry> entries_;  // beside Inventory::symbols
+  std::vector<Sign> signs_;     // beside Inventory::marks
   std::vector<std::pair<std::pair<NodeId, Value>, SlotTest>> without_;
   std::map<std::string, Library> libraries_;
   std::set<std::string> failed_libraries_;
-  std::set<NodeId> given_;              // nodes some bundle of the inventory gives
+  std::set<NodeId> given_;  // nodes some bundle of the inventory gives
   bool from_library_ = false;
   std::map<std::string, int> said_;
   SymbolTrie trie_;

@@ -1,7 +1,8 @@
 // Rows of data, in the grammar and from tables.
 //
-// Example: the row `/in-bata/ [imbata] 'x'`; a table has the columns underlying, surface, gloss, source by name, in any order.
-// Does not handle: starred surfaces, spelled forms, tags, CSV (errors say so). Tested by tests/unit/model/data_test.cc.
+// Example: the row `/in-bata/ [imbata] 'x'`; a table has the columns underlying, surface, gloss, source by
+// name, in any order. Does not handle: starred surfaces, spelled forms, tags, CSV (errors say so). Tested by
+// tests/unit/model/data_test.cc.
 #include <algorithm>
 #include <filesystem>
 
@@ -25,8 +26,9 @@ std::vector<Cell> CellsOf(std::string_view line, std::uint32_t file, std::size_t
     std::size_t first = begin, last = stop;
     while (first < last && line[first] == ' ') ++first;
     while (last > first && line[last - 1] == ' ') --last;
-    cells.push_back({std::string(line.substr(first, last - first)),
-                     {file, static_cast<std::uint32_t>(offset + first), static_cast<std::uint32_t>(offset + last)}});
+    cells.push_back(
+        {std::string(line.substr(first, last - first)),
+         {file, static_cast<std::uint32_t>(offset + first), static_cast<std::uint32_t>(offset + last)}});
     if (end == std::string_view::npos) return cells;
     begin = end + 1;
   }
@@ -41,7 +43,8 @@ std::vector<Cell> Alternatives(const Cell& cell) {
     const std::size_t stop = end == std::string::npos ? cell.text.size() : end;
     Cell part;
     part.text = cell.text.substr(begin, stop - begin);
-    part.span = {cell.span.file, cell.span.begin + static_cast<std::uint32_t>(begin), cell.span.begin + static_cast<std::uint32_t>(stop)};
+    part.span = {cell.span.file, cell.span.begin + static_cast<std::uint32_t>(begin),
+                 cell.span.begin + static_cast<std::uint32_t>(stop)};
     result.push_back(part);
     if (end == std::string::npos) return result;
     begin = end + 3;
@@ -56,10 +59,13 @@ std::optional<std::size_t> ColumnOf(const std::vector<Cell>& heading, std::strin
 }
 
 // One row, or nothing after an error.
-std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector<Cell>& cells, std::size_t line, Span line_span, Diagnostics& diagnostics) {
+std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector<Cell>& cells,
+                             std::size_t line, Span line_span, Diagnostics& diagnostics) {
   if (cells.size() != heading.size()) {
     diagnostics.Error(Kind::kBadData, line_span,
-                      "line " + std::to_string(line) + " has " + std::to_string(cells.size()) + (cells.size() == 1 ? " cell" : " cells") + ", the heading has " + std::to_string(heading.size()),
+                      "line " + std::to_string(line) + " has " + std::to_string(cells.size()) +
+                          (cells.size() == 1 ? " cell" : " cells") + ", the heading has " +
+                          std::to_string(heading.size()),
                       "give every line as many cells as the heading, parted by single tabs");
     return std::nullopt;
   }
@@ -67,11 +73,13 @@ std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector
   const Cell& surface = cells[*ColumnOf(heading, "surface")];
   for (const auto& [cell, name] : {std::pair(&underlying, "underlying"), std::pair(&surface, "surface")}) {
     if (!cell->text.empty()) continue;
-    diagnostics.Error(Kind::kBadData, line_span, "line " + std::to_string(line) + " has no " + name + " form", "fill the cell in, or take the line out");
+    diagnostics.Error(Kind::kBadData, line_span, "line " + std::to_string(line) + " has no " + name + " form",
+                      "fill the cell in, or take the line out");
     return std::nullopt;
   }
   if (surface.text[0] == '*') {
-    diagnostics.Error(Kind::kNotSupportedYet, surface.span, "starred surface forms are not supported by this release", "take the row out");
+    diagnostics.Error(Kind::kNotSupportedYet, surface.span,
+                      "starred surface forms are not supported by this release", "take the row out");
     return std::nullopt;
   }
   DataRow row;
@@ -88,7 +96,8 @@ std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector
 
 }  // namespace
 
-std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics) {
+std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from,
+                              Diagnostics& diagnostics) {
   std::vector<DataRow> rows;
   std::uint32_t file = 0;
   if (!sources.Load(path, from, diagnostics, &file)) return rows;
@@ -104,27 +113,32 @@ std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span 
     begin = end + 1;
     ++number;
     if (line.empty()) continue;
-    const Span line_span{file, static_cast<std::uint32_t>(offset), static_cast<std::uint32_t>(offset + line.size())};
+    const Span line_span{file, static_cast<std::uint32_t>(offset),
+                         static_cast<std::uint32_t>(offset + line.size())};
     std::vector<Cell> cells = CellsOf(line, file, offset);
     if (!heading.empty()) {
-      if (std::optional<DataRow> row = RowOf(heading, cells, number, line_span, diagnostics)) rows.push_back(std::move(*row));
+      if (std::optional<DataRow> row = RowOf(heading, cells, number, line_span, diagnostics))
+        rows.push_back(std::move(*row));
       continue;
     }
     heading = std::move(cells);
     for (std::size_t i = 0; i < heading.size(); ++i) {
       if (heading[i].text.empty() || *ColumnOf(heading, heading[i].text) == i) continue;
-      diagnostics.Error(Kind::kDuplicate, heading[i].span, "two columns are called '" + heading[i].text + "'", "rename one");
+      diagnostics.Error(Kind::kDuplicate, heading[i].span, "two columns are called '" + heading[i].text + "'",
+                        "rename one");
       return rows;
     }
     for (const char* wanted : {"underlying", "surface"}) {
       if (ColumnOf(heading, wanted)) continue;
-      diagnostics.Error(Kind::kBadData, line_span, std::string("the heading names no column '") + wanted + "'",
-                        "name the columns in the first line, parted by tabs: underlying, surface, gloss, source");
+      diagnostics.Error(
+          Kind::kBadData, line_span, std::string("the heading names no column '") + wanted + "'",
+          "name the columns in the first line, parted by tabs: underlying, surface, gloss, source");
       return rows;
     }
   }
   if (heading.empty()) {
-    diagnostics.Error(Kind::kBadData, Span{file, 0, 0}, "the table is empty", "its first line names the columns: underlying, surface, gloss, source");
+    diagnostics.Error(Kind::kBadData, Span{file, 0, 0}, "the table is empty",
+                      "its first line names the columns: underlying, surface, gloss, source");
   }
   return rows;
 }
@@ -144,7 +158,8 @@ void Checker::LoadDataFiles() {
           spelled = spelled || surface.spelled;
         }
         if (spelled) {
-          Error(Kind::kNotSupportedYet, datum.span, "spelled forms ⟨..⟩ are not supported by this release", "write the symbols: /../ and [..]");
+          Error(Kind::kNotSupportedYet, datum.span, "spelled forms ⟨..⟩ are not supported by this release",
+                "write the symbols: /../ and [..]");
           continue;
         }
         grammar_.data.push_back(std::move(row));
@@ -152,26 +167,33 @@ void Checker::LoadDataFiles() {
     } else if (const auto* from = std::get_if<syntax::DataFrom>(&top)) {
       const std::filesystem::path path(from->path.text);
       if (path.extension() == ".csv") {
-        Error(Kind::kNotSupportedYet, from->path.span, "tables parted by commas are not supported by this release", "give a table parted by tabs (.tsv)");
+        Error(Kind::kNotSupportedYet, from->path.span,
+              "tables parted by commas are not supported by this release",
+              "give a table parted by tabs (.tsv)");
         continue;
       }
       // A relative name is beside the grammar.
       const std::filesystem::path grammar(grammar_.sources->path(whole_.file));
       const std::string full = path.is_absolute() ? path.string() : (grammar.parent_path() / path).string();
-      for (DataRow& row : LoadData(full, *grammar_.sources, from->path.span, diagnostics_)) grammar_.data.push_back(std::move(row));
+      for (DataRow& row : LoadData(full, *grammar_.sources, from->path.span, diagnostics_))
+        grammar_.data.push_back(std::move(row));
     }
   }
 }
 
-void Checker::CheckForm(std::string_view text, Span span, bool underlying, const Reader& reader, std::vector<Unread>* unread) {
+void Checker::CheckForm(std::string_view text, Span span, bool underlying, const Reader& reader,
+                        std::vector<Unread>* unread) {
   std::vector<Token> tokens;
   TextError error;
   if (reader.Read(text, underlying ? Reader::Side::kUnderlying : Reader::Side::kSurface, &tokens, &error)) {
-    const bool any = std::any_of(tokens.begin(), tokens.end(), [](const Token& token) { return token.kind == Token::Kind::kSymbol; });
-    if (!any && underlying) Error(Kind::kBadForm, span, "the form has no segment", "write at least one symbol");
+    const bool any = std::any_of(tokens.begin(), tokens.end(),
+                                 [](const Token& token) { return token.kind == Token::Kind::kSymbol; });
+    if (!any && underlying)
+      Error(Kind::kBadForm, span, "the form has no segment", "write at least one symbol");
     return;
   }
-  const auto same = std::find_if(unread->begin(), unread->end(), [&](const Unread& u) { return u.diagnostic.message == error.message; });
+  const auto same = std::find_if(unread->begin(), unread->end(),
+                                 [&](const Unread& u) { return u.diagnostic.message == error.message; });
   if (same != unread->end()) {
     ++same->further;
     return;
@@ -181,17 +203,21 @@ void Checker::CheckForm(std::string_view text, Span span, bool underlying, const
   unread->push_back({{error.kind, Severity::kError, place, error.message, error.remedy, {}}, 0});
 }
 
-// One character that is not in the inventory may stand in every row: it is said where it stands first, with the number of
-// the others.
+// One character that is not in the inventory may stand in every row: it is said where it stands first, with
+// the number of the others.
 void Checker::CheckData() {
   const Reader reader(grammar_);
   std::vector<Unread> unread;
   for (const DataRow& row : grammar_.data) {
     CheckForm(row.underlying, row.span, true, reader, &unread);
-    for (std::size_t i = 0; i < row.surfaces.size(); ++i) CheckForm(row.surfaces[i], row.surface_spans[i], false, reader, &unread);
+    for (std::size_t i = 0; i < row.surfaces.size(); ++i)
+      CheckForm(row.surfaces[i], row.surface_spans[i], false, reader, &unread);
   }
   for (Unread& u : unread) {
-    if (u.further > 0) u.diagnostic.message += " (" + std::to_string(u.further) + (u.further == 1 ? " further form has the same)" : " further forms have the same)");
+    if (u.further > 0)
+      u.diagnostic.message +=
+          " (" + std::to_string(u.further) +
+          (u.further == 1 ? " further form has the same)" : " further forms have the same)");
     diagnostics_.Add(std::move(u.diagnostic));
   }
 }

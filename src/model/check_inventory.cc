@@ -1,9 +1,10 @@
 // Segments, archisegments, allophones, diacritics and omit -> the inventory.
 //
-// Example: `segments from "ipa" { t i }  archisegments { I = i [no back] }  omit { -voice in [-son] }` gives t and i with the
-// library's features that the tree has, I as i without back, and t underlying without its Laryngeal node.
-// Order: listed symbols, `without`, diacritics and the symbols made with them, omit, then what falls together.
-// Does not handle: marks of slot-borne nodes, floats (errors say so). Tested by tests/unit/model/inventory_test.cc.
+// Example: `segments from "ipa" { t i }  archisegments { I = i [no back] }  omit { -voice in [-son] }` gives
+// t and i with the library's features that the tree has, I as i without back, and t underlying without its
+// Laryngeal node. Order: listed symbols, `without`, diacritics and the symbols made with them, omit, then
+// what falls together. Does not handle: marks of slot-borne nodes, floats (errors say so). Tested by
+// tests/unit/model/inventory_test.cc.
 #include <algorithm>
 #include <unordered_map>
 
@@ -47,7 +48,9 @@ Symbol::Kind KindOf(const syntax::Segments& block) {
 // The first code point that no symbol may hold, or 0.
 char32_t BadIn(std::u32string_view symbol) {
   for (const char32_t code : symbol) {
-    if (std::u32string_view(U" \t-=#.\u2016|@{}[]/\u27E8\u27E9\";\u02D0").find(code) != std::u32string_view::npos) return code;
+    if (std::u32string_view(U" \t-=#.\u2016|@{}[]/\u27E8\u27E9\";\u02D0").find(code) !=
+        std::u32string_view::npos)
+      return code;
   }
   return 0;
 }
@@ -81,17 +84,22 @@ void Checker::CollectEntries() {
   }
   if (any) return;
   for (const Diagnostic& diagnostic : diagnostics_.all()) {
-    if (diagnostic.kind == Kind::kBadTree && diagnostic.span.begin == whole_.begin && diagnostic.span.end == whole_.end) return;
+    if (diagnostic.kind == Kind::kBadTree && diagnostic.span.begin == whole_.begin &&
+        diagnostic.span.end == whole_.end)
+      return;
   }
-  Error(Kind::kUnknownSymbol, whole_, "the grammar lists no segments", "list them: `segments from \"ipa\" { p t k i u a }`");
+  Error(Kind::kUnknownSymbol, whole_, "the grammar lists no segments",
+        "list them: `segments from \"ipa\" { p t k i u a }`");
 }
 
 void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segments& block) {
   Inventory& inventory = grammar_.inventory;
   const std::u32string normal = Normalise(written.symbol.text);
   if (normal.empty() || BadIn(normal) != 0) {
-    const std::string which = normal.empty() ? "an empty name" : "'" + ToUtf8(std::u32string(1, BadIn(normal))) + "'";
-    Error(Kind::kBadForm, written.symbol.span, "'" + written.symbol.text + "' cannot be a symbol: " + which + " is no part of one",
+    const std::string which =
+        normal.empty() ? "an empty name" : "'" + ToUtf8(std::u32string(1, BadIn(normal))) + "'";
+    Error(Kind::kBadForm, written.symbol.span,
+          "'" + written.symbol.text + "' cannot be a symbol: " + which + " is no part of one",
           "length, boundaries and brackets have meanings of their own in forms; choose another sign");
     return;
   }
@@ -117,10 +125,17 @@ void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segmen
   Entry& old = entries_[static_cast<std::size_t>(found->second)];
   Symbol& symbol = inventory.symbols[static_cast<std::size_t>(found->second)];
   const auto twice = [&](Severity severity, const std::string& message, const std::string& remedy) {
-    diagnostics_.Add({Kind::kDuplicate, severity, written.symbol.span, message, remedy, {{symbol.span, "first listed here"}}});
+    diagnostics_.Add({Kind::kDuplicate,
+                      severity,
+                      written.symbol.span,
+                      message,
+                      remedy,
+                      {{symbol.span, "first listed here"}}});
   };
   if (symbol.kind != kind) {
-    twice(Severity::kError, "'" + text + "' is listed in " + KindName(symbol.kind) + " and in " + KindName(kind), "keep one of the two");
+    twice(Severity::kError,
+          "'" + text + "' is listed in " + KindName(symbol.kind) + " and in " + KindName(kind),
+          "keep one of the two");
   } else if (IsFull(old) && IsFull(entry)) {
     twice(Severity::kError, "'" + text + "' is defined twice", "keep one of the two");
   } else if (!IsFull(old) && !IsFull(entry)) {
@@ -143,7 +158,8 @@ Library* Checker::LibraryOf(const syntax::Name* name, Span span) {
   return &place->second;
 }
 
-const FeatureTree* Checker::FromLibrary(const syntax::Name& symbol, const syntax::Segments& block, FeatureTree* content) {
+const FeatureTree* Checker::FromLibrary(const syntax::Name& symbol, const syntax::Segments& block,
+                                        FeatureTree* content) {
   Library* library = LibraryOf(block.from ? &*block.from : nullptr, symbol.span);
   if (library == nullptr) return nullptr;
   const Library::Segment* segment = library->Find(symbol.text);
@@ -151,8 +167,10 @@ const FeatureTree* Checker::FromLibrary(const syntax::Name& symbol, const syntax
     std::vector<std::string> known = library->Symbols();
     const std::vector<std::string> listed = SymbolNames();
     known.insert(known.end(), listed.begin(), listed.end());
-    Error(Kind::kUnknownSymbol, symbol.span, "the library \"" + (block.from ? block.from->text : "ipa") + "\" has no '" + symbol.text + "'",
-          Or(DidYouMean(symbol.text, known), "say what it is: `" + symbol.text + " = y [..]`, where y is a symbol that is known"));
+    Error(Kind::kUnknownSymbol, symbol.span,
+          "the library \"" + (block.from ? block.from->text : "ipa") + "\" has no '" + symbol.text + "'",
+          Or(DidYouMean(symbol.text, known),
+             "say what it is: `" + symbol.text + " = y [..]`, where y is a symbol that is known"));
     return nullptr;
   }
   from_library_ = true;
@@ -160,7 +178,8 @@ const FeatureTree* Checker::FromLibrary(const syntax::Name& symbol, const syntax
   *content = library->ContentOf(*segment, grammar_.tree, &cut);
   for (const std::string& name : cut) {
     diagnostics_.Warning(Kind::kBadValue, symbol.span,
-                         "'" + segment->symbol + "' has two values of '" + name + "' in a row, for which this tree has no room: only the first is kept",
+                         "'" + segment->symbol + "' has two values of '" + name +
+                             "' in a row, for which this tree has no room: only the first is kept",
                          "write `×2` after " + name + " in `tree`");
   }
   return content;
@@ -201,7 +220,8 @@ bool Checker::Build(std::size_t id) {
     case Entry::State::kFailed:
       return false;
     case Entry::State::kBusy:
-      Error(Kind::kUnknownSymbol, written.symbol.span, "'" + written.symbol.text + "' is told by way of itself",
+      Error(Kind::kUnknownSymbol, written.symbol.span,
+            "'" + written.symbol.text + "' is told by way of itself",
             "make one symbol of this ring like one of the library's");
       return false;
     case Entry::State::kNew:
@@ -233,8 +253,10 @@ bool Checker::Build(std::size_t id) {
     Apply(settings, &content);
     NodeId full = 0;
     if (good && !HasRoom(content, &full)) {
-      Error(Kind::kBadValue, (*bundle)->span, "'" + written.symbol.text + "' has no room for two of '" + grammar_.tree[full].name + "'",
-            "give the values one by one, or widen `in [..]` after " + grammar_.tree[full].name + " in `tree`");
+      Error(
+          Kind::kBadValue, (*bundle)->span,
+          "'" + written.symbol.text + "' has no room for two of '" + grammar_.tree[full].name + "'",
+          "give the values one by one, or widen `in [..]` after " + grammar_.tree[full].name + " in `tree`");
       good = false;
     }
   }
@@ -256,18 +278,21 @@ void Checker::BuildTrees() {
 
 bool Checker::SymbolPasses(const SlotTest& test, int symbol) const {
   const Inventory& inventory = grammar_.inventory;
-  return Passes(test, inventory.symbols[static_cast<std::size_t>(symbol)].full,
-                [&](int literal) { return inventory.literals[static_cast<std::size_t>(literal)].symbol == symbol; });
+  return Passes(test, inventory.symbols[static_cast<std::size_t>(symbol)].full, [&](int literal) {
+    return inventory.literals[static_cast<std::size_t>(literal)].symbol == symbol;
+  });
 }
 
-std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::ValueRef& ref, Span span, const char* verb) {
+std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::ValueRef& ref, Span span,
+                                                             const char* verb) {
   const Span place = ref.name.span.end > ref.name.span.begin ? ref.name.span : span;
   const std::optional<NodeId> node = NodeOf(syntax::Name{ref.name.text, place}, Kind::kUnknownFeature);
   if (!node) return {};
   const TreeNode& kind = grammar_.tree[*node];
   switch (kind.type) {
     case TreeNode::Type::kClass:
-      Error(Kind::kBadValue, place, std::string("`") + verb + "` takes values, and '" + kind.name + "' is a class node",
+      Error(Kind::kBadValue, place,
+            std::string("`") + verb + "` takes values, and '" + kind.name + "' is a class node",
             "list the features under it");
       return {};
     case TreeNode::Type::kBinary:
@@ -281,7 +306,8 @@ std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::Value
         case syntax::ValueRef::Kind::kBare:
           break;
       }
-      Error(Kind::kBadValue, place, "'" + kind.name + "' needs a sign here", "write ±" + kind.name + " for both values, or +" + kind.name + " or -" + kind.name);
+      Error(Kind::kBadValue, place, "'" + kind.name + "' needs a sign here",
+            "write ±" + kind.name + " for both values, or +" + kind.name + " or -" + kind.name);
       return {};
     case TreeNode::Type::kBare:
     case TreeNode::Type::kMany: {
@@ -298,7 +324,8 @@ std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::Value
   return {};
 }
 
-// For all symbols of the grammar, and for good. Every `in` is asked of the trees before any line has taken its part.
+// For all symbols of the grammar, and for good. Every `in` is asked of the trees before any line has taken
+// its part.
 void Checker::TakeWithout() {
   for (const syntax::Top& top : file_.tops) {
     const auto* block = std::get_if<syntax::Segments>(&top);
@@ -317,7 +344,8 @@ void Checker::TakeWithout() {
   for (std::size_t id = 0; id < inventory.symbols.size(); ++id) {
     FeatureTree reduced = inventory.symbols[id].full;
     for (const auto& [value, test] : without_) {
-      if (BearsValue(reduced, value.first, value.second) && SymbolPasses(test, static_cast<int>(id))) Remove(&reduced, value.first);
+      if (BearsValue(reduced, value.first, value.second) && SymbolPasses(test, static_cast<int>(id)))
+        Remove(&reduced, value.first);
     }
     Prune(grammar_.tree, &reduced);
     inventory.symbols[id].full = std::move(reduced);
@@ -336,7 +364,9 @@ void Checker::CheckDiacritics() {
       std::u32string text = Normalise(written.symbol.text);
       const std::size_t circle = text.find(kCircle);
       if (circle == std::u32string::npos) {
-        Error(Kind::kNotSupportedYet, written.symbol.span, "'" + written.symbol.text + "' has no ◌: signs of floating instances are not supported by this release",
+        Error(Kind::kNotSupportedYet, written.symbol.span,
+              "'" + written.symbol.text +
+                  "' has no ◌: signs of floating instances are not supported by this release",
               "write ◌ where the base letter stands: ◌" + written.symbol.text);
         continue;
       }
@@ -350,7 +380,11 @@ void Checker::CheckDiacritics() {
       const std::string key = SymbolKey(written.symbol.text);
       const auto [place, fresh] = seen.emplace(key, written.symbol.span);
       if (!fresh) {
-        diagnostics_.Add({Kind::kDuplicate, Severity::kError, written.symbol.span, "'" + key + "' is declared twice", "keep one of the two",
+        diagnostics_.Add({Kind::kDuplicate,
+                          Severity::kError,
+                          written.symbol.span,
+                          "'" + key + "' is declared twice",
+                          "keep one of the two",
                           {{place->second, "first declared here"}}});
         continue;
       }
@@ -371,9 +405,10 @@ void Checker::CheckDiacritics() {
   }
 }
 
-// By default a diacritic may stand on any base that has the room for what it gives. A feature that is there or not brings
-// its articulator along, as secondary articulations do (◌ʷ [round]); one of several values tells how an articulator is used
-// (◌̪ [+distributed]), so the base bears it already or the same bundle names it.
+// By default a diacritic may stand on any base that has the room for what it gives. A feature that is there
+// or not brings its articulator along, as secondary articulations do (◌ʷ [round]); one of several values
+// tells how an articulator is used (◌̪ [+distributed]), so the base bears it already or the same bundle names
+// it.
 bool Checker::MayBear(const FeatureTree& content, const Sign& sign) const {
   const Tree& tree = grammar_.tree;
   for (const Setting& setting : sign.settings) {
@@ -399,8 +434,10 @@ void Checker::AddComposite(int base, std::vector<int> marks) {
     Apply(sign.settings, &raw);
     if (raw == before) return;  // it adds nothing there
   }
-  for (auto mark = marks.rbegin(); mark != marks.rend(); ++mark) Apply(signs_[static_cast<std::size_t>(*mark)].settings, &backward);
-  if (raw != backward) return;  // they are a set: two that ask for different values of one feature cannot stand together
+  for (auto mark = marks.rbegin(); mark != marks.rend(); ++mark)
+    Apply(signs_[static_cast<std::size_t>(*mark)].settings, &backward);
+  if (raw != backward)
+    return;  // they are a set: two that ask for different values of one feature cannot stand together
   NodeId no_room = 0;
   if (!HasRoom(raw, &no_room)) return;
   FeatureTree full = raw;
@@ -444,8 +481,11 @@ void Checker::BuildComposites() {
   for (int mark = 0; mark < marks; ++mark) {
     for (int base = 0; base < bases; ++base) AddComposite(base, {mark});
   }
-  if (static_cast<std::size_t>(bases) * static_cast<std::size_t>(marks) * static_cast<std::size_t>(marks) / 2 > kMostComposites) {
-    diagnostics_.Warning(Kind::kLimit, inventory.marks[0].span, "so many diacritics make too many pairs: only single ones are symbols of themselves",
+  if (static_cast<std::size_t>(bases) * static_cast<std::size_t>(marks) * static_cast<std::size_t>(marks) /
+          2 >
+      kMostComposites) {
+    diagnostics_.Warning(Kind::kLimit, inventory.marks[0].span,
+                         "so many diacritics make too many pairs: only single ones are symbols of themselves",
                          "narrow the bases with `on [..]`, or list the pairs you need in `segments`");
     return;
   }
@@ -460,7 +500,8 @@ void Checker::BuildComposites() {
 void Checker::AddWrittenComposites() {
   if (signs_.size() < 3) return;
   SymbolTrie listed;
-  for (std::size_t i = 0; i < entries_.size(); ++i) listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
+  for (std::size_t i = 0; i < entries_.size(); ++i)
+    listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
   const auto in_set = [&](const auto& self, const syntax::Set& set) -> void {
     if (set.kind == syntax::Set::Kind::kLiteral) AddCompositesOf(set.literal.raw, listed);
     for (const syntax::Set& arg : set.args) self(self, arg);
@@ -529,10 +570,12 @@ void Checker::CheckOmit() {
       for (const syntax::ValueRef& ref : line.values) {
         for (const auto& [node, value] : ResolveValues(ref, line.span, "omit")) {
           if (!test) continue;
-          auto entry = std::find_if(inventory.omitted.begin(), inventory.omitted.end(),
-                                    [n = node, v = value](const Inventory::OmitEntry& e) { return e.node == n && e.value == v; });
+          auto entry = std::find_if(
+              inventory.omitted.begin(), inventory.omitted.end(),
+              [n = node, v = value](const Inventory::OmitEntry& e) { return e.node == n && e.value == v; });
           if (entry == inventory.omitted.end()) {
-            entry = inventory.omitted.insert(entry, {node, value, std::vector<bool>(inventory.symbols.size(), false)});
+            entry = inventory.omitted.insert(
+                entry, {node, value, std::vector<bool>(inventory.symbols.size(), false)});
           }
           for (std::size_t id = 0; id < inventory.symbols.size(); ++id) {
             if (SymbolPasses(*test, static_cast<int>(id))) entry->takes[id] = true;
@@ -549,7 +592,8 @@ void Checker::CheckOmit() {
         self(self, &daughters[i], node, value);
         continue;
       }
-      const bool contour = (i > 0 && daughters[i - 1].node == node) || (i + 1 < daughters.size() && daughters[i + 1].node == node);
+      const bool contour = (i > 0 && daughters[i - 1].node == node) ||
+                           (i + 1 < daughters.size() && daughters[i + 1].node == node);
       if (contour || daughters[i].value != value) continue;
       daughters.erase(daughters.begin() + static_cast<std::ptrdiff_t>(i));
       return;
@@ -577,12 +621,19 @@ void Checker::CheckFallTogether() {
     const auto [by_full, first] = full.emplace(symbol.full, static_cast<int>(i));
     const auto [by_underlying, first_underlying] = underlying.emplace(symbol.underlying, static_cast<int>(i));
     if (first && first_underlying) continue;
-    const Symbol& other = inventory.symbols[static_cast<std::size_t>(first ? by_underlying->second : by_full->second)];
+    const Symbol& other =
+        inventory.symbols[static_cast<std::size_t>(first ? by_underlying->second : by_full->second)];
     const std::string why = first ? "once `omit` has taken its part" : "in this tree";
-    const std::string remedy = first ? "let `omit` leave them a difference"
-                                     : "give one of them a value of its own, `" + symbol.text + " = " + symbol.text + " [..]`, or the tree a feature that tells them apart";
-    diagnostics_.Add({Kind::kSymbolsFallTogether, Severity::kError, symbol.span,
-                      "'" + other.text + "' and '" + symbol.text + "' fall together " + why, remedy, {{other.span, "'" + other.text + "' is listed here"}}});
+    const std::string remedy = first
+                                   ? "let `omit` leave them a difference"
+                                   : "give one of them a value of its own, `" + symbol.text + " = " +
+                                         symbol.text + " [..]`, or the tree a feature that tells them apart";
+    diagnostics_.Add({Kind::kSymbolsFallTogether,
+                      Severity::kError,
+                      symbol.span,
+                      "'" + other.text + "' and '" + symbol.text + "' fall together " + why,
+                      remedy,
+                      {{other.span, "'" + other.text + "' is listed here"}}});
   }
 }
 
@@ -594,10 +645,15 @@ void Checker::CheckUnspecified() {
     const TreeNode& kind = tree[node];
     const bool leaf = kind.type != TreeNode::Type::kClass || kind.daughters.empty();
     if (!leaf || kind.abstract_ || IsSlotBorne(node) || given_.count(node) != 0) continue;
-    const bool known = std::any_of(libraries_.begin(), libraries_.end(), [&](const auto& l) { return l.second.KnowsFeature(kind.name); });
+    const bool known = std::any_of(libraries_.begin(), libraries_.end(),
+                                   [&](const auto& l) { return l.second.KnowsFeature(kind.name); });
     if (known) continue;
-    diagnostics_.Warning(Kind::kUnspecifiedFeature, kind.span, "the library does not know '" + kind.name + "', and no line of `segments` gives it: no segment bears it",
-                         Or(DidYouMean(kind.name, libraries_.begin()->second.Features()), "give it to the segments that bear it: `x = x [" + tree.ValueName(node, 1) + "]`"));
+    diagnostics_.Warning(
+        Kind::kUnspecifiedFeature, kind.span,
+        "the library does not know '" + kind.name +
+            "', and no line of `segments` gives it: no segment bears it",
+        Or(DidYouMean(kind.name, libraries_.begin()->second.Features()),
+           "give it to the segments that bear it: `x = x [" + tree.ValueName(node, 1) + "]`"));
   }
 }
 

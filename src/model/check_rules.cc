@@ -1,8 +1,8 @@
 // Rules: patterns of items -> tests in order; changes -> operations on labels and nodes.
 //
-// Example: `where N:[+nasal] C:[+cons Place]  delink N.Place  spread C.Place to N` has labels N and C, two slot items and two
-// changes. Classes and named patterns are gone afterwards. Does not handle: what a rule does to forms (graph/, compile/).
-// Tested by tests/unit/model/check_test.cc.
+// Example: `where N:[+nasal] C:[+cons Place]  delink N.Place  spread C.Place to N` has labels N and C, two
+// slot items and two changes. Classes and named patterns are gone afterwards. Does not handle: what a rule
+// does to forms (graph/, compile/). Tested by tests/unit/model/check_test.cc.
 #include <algorithm>
 #include <functional>
 
@@ -33,7 +33,8 @@ Boundary BoundaryOf(SyntaxItem::Boundary boundary) {
 // The class an item consists of, or "".
 std::string ClassOf(const SyntaxItem& item) {
   if (item.kind == SyntaxItem::Kind::kName) return item.name.text;
-  if (item.kind == SyntaxItem::Kind::kSet && item.set.kind == syntax::Set::Kind::kClass) return item.set.name.text;
+  if (item.kind == SyntaxItem::Kind::kSet && item.set.kind == syntax::Set::Kind::kClass)
+    return item.set.name.text;
   return "";
 }
 
@@ -61,20 +62,28 @@ void Checker::CheckRules() {
     if (rule == nullptr) continue;
     const auto [place, fresh] = seen.emplace(rule->name.text, rule->name.span);
     if (!fresh) {
-      diagnostics_.Add({Kind::kDuplicate, Severity::kError, rule->name.span, "rule \"" + rule->name.text + "\" stands twice",
-                        "give one of them another name", {{place->second, "first declared here"}}});
+      diagnostics_.Add({Kind::kDuplicate,
+                        Severity::kError,
+                        rule->name.span,
+                        "rule \"" + rule->name.text + "\" stands twice",
+                        "give one of them another name",
+                        {{place->second, "first declared here"}}});
     }
     CheckRule(*rule);
   }
-  // Losing its last line, such a node would stay as an item of the form, which rules of this release do not see to.
+  // Losing its last line, such a node would stay as an item of the form, which rules of this release do not
+  // see to.
   for (std::size_t i = kRootNode + 1; i < grammar_.tree.nodes.size() && !grammar_.rules.empty(); ++i) {
     const NodeId node = static_cast<NodeId>(i);
     const TreeNode& kind = grammar_.tree[node];
     if (!kind.floating) continue;
     const auto& symbols = grammar_.inventory.symbols;
-    const auto bearer = std::find_if(symbols.begin(), symbols.end(), [&](const Symbol& s) { return Bears(s.full, node); });
+    const auto bearer =
+        std::find_if(symbols.begin(), symbols.end(), [&](const Symbol& s) { return Bears(s.full, node); });
     if (bearer == symbols.end()) continue;
-    Error(Kind::kNotSupportedYet, kind.span, "'" + kind.name + "' may float and '" + bearer->text + "' bears it: rules over floating nodes are not supported by this release",
+    Error(Kind::kNotSupportedYet, kind.span,
+          "'" + kind.name + "' may float and '" + bearer->text +
+              "' bears it: rules over floating nodes are not supported by this release",
           "take `floating` away from " + kind.name);
   }
 }
@@ -107,18 +116,21 @@ void Checker::CheckRule(const syntax::Rule& written) {
     inner.in_unless = true;
     bool fine = ResolvePattern(unless, &inner, &pattern) && CheckShape(pattern, unless, inner);
     if (fine && good && !NamesLabel(pattern)) {
-      Error(Kind::kBadRule, unless.span, "this `unless` speaks of no item of the rule", "let it name a label of the `where`: its place is told by that item");
+      Error(Kind::kBadRule, unless.span, "this `unless` speaks of no item of the rule",
+            "let it name a label of the `where`: its place is told by that item");
       fine = false;
     }
     good = fine && good;
     if (fine) rule.unless.push_back(std::move(pattern));
   }
   if (written.changes.empty()) {
-    Error(Kind::kBadRule, written.name.span, "rule \"" + rule.name + "\" changes nothing", "say what it does: spread, delink, set, fill, insert or delete");
+    Error(Kind::kBadRule, written.name.span, "rule \"" + rule.name + "\" changes nothing",
+          "say what it does: spread, delink, set, fill, insert or delete");
     good = false;
   }
   bool changes_good = true;
-  for (const syntax::Change& change : written.changes) changes_good = ResolveChange(change, &context) && changes_good;
+  for (const syntax::Change& change : written.changes)
+    changes_good = ResolveChange(change, &context) && changes_good;
   if (good && changes_good) CheckChanges(written, rule);
   grammar_.rules.push_back(std::move(rule));
 }
@@ -138,7 +150,8 @@ void Checker::CollectUsedLabels(const syntax::Rule& written, RuleContext* contex
   for (const syntax::Change& change : written.changes) {
     for (const syntax::Path& path : change.paths) context->used.insert(path.label.text);
     if (!change.label.text.empty()) context->used.insert(change.label.text);
-    if (change.kind == syntax::Change::Kind::kInsert && !change.inserted.text.empty()) context->inserted.insert(change.inserted.text);
+    if (change.kind == syntax::Change::Kind::kInsert && !change.inserted.text.empty())
+      context->inserted.insert(change.inserted.text);
   }
   // A bare name in `unless` may be the label of an item of the `where`.
   for (const syntax::Pattern& unless : written.unless) {
@@ -159,7 +172,9 @@ bool Checker::ResolvePattern(const syntax::Pattern& written, RuleContext* contex
 
 bool Checker::ResolveItem(const SyntaxItem& item, RuleContext* context, Pattern* pattern) {
   if (item.max == 0 || (item.max > 0 && item.max < item.min)) {
-    Error(Kind::kBadRule, item.span, item.max == 0 ? "nothing can stand here: the most of this quantity is 0" : "the least of this quantity is above its most",
+    Error(Kind::kBadRule, item.span,
+          item.max == 0 ? "nothing can stand here: the most of this quantity is 0"
+                        : "the least of this quantity is above its most",
           "write the smaller number below and the larger above: C₁²");
     return false;
   }
@@ -173,7 +188,8 @@ bool Checker::ResolveItem(const SyntaxItem& item, RuleContext* context, Pattern*
       boundary.kind = PatternItem::Kind::kBoundary;
       boundary.boundary = BoundaryOf(item.boundary);
       if (!pattern->items.empty() && pattern->items.back().kind == PatternItem::Kind::kBoundary) {
-        Error(Kind::kBadRule, item.span, "two boundaries stand side by side", "a run of boundaries counts as its strongest: write only that one");
+        Error(Kind::kBadRule, item.span, "two boundaries stand side by side",
+              "a run of boundaries counts as its strongest: write only that one");
         return false;
       }
       pattern->items.push_back(std::move(boundary));
@@ -183,7 +199,8 @@ bool Checker::ResolveItem(const SyntaxItem& item, RuleContext* context, Pattern*
       PatternItem gap;
       gap.kind = PatternItem::Kind::kGap;
       if (context->depth > 0) {
-        Error(Kind::kNotSupportedYet, item.span, "a gap inside ( ) or { } is not supported by this release", "write the rule twice, once with the gap");
+        Error(Kind::kNotSupportedYet, item.span, "a gap inside ( ) or { } is not supported by this release",
+              "write the rule twice, once with the gap");
         return false;
       }
       if (item.tier) {
@@ -231,19 +248,24 @@ bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleCo
       *index = known->second;
       return true;
     }
-    return bad("'" + label.text + "' labels no item of the rule", "in `unless` only labels of the `where` mean something; take it away");
+    return bad("'" + label.text + "' labels no item of the rule",
+               "in `unless` only labels of the `where` mean something; take it away");
   }
   if (known != context->own_labels.end()) {
     return bad("label '" + label.text + "' is used twice", "give each item a label of its own");
   }
   if (classes_.count(label.text) != 0 && ClassOf(item) != label.text) {
-    return bad("label '" + label.text + "' is the name of a class, and this item is another", "choose a label that no class has");
+    return bad("label '" + label.text + "' is the name of a class, and this item is another",
+               "choose a label that no class has");
   }
   if (!Once(item) || context->repeated) {
-    return bad("label '" + label.text + "' stands inside a repeated group: it could be several slots, or none", "label an item outside, or write the items one by one");
+    return bad(
+        "label '" + label.text + "' stands inside a repeated group: it could be several slots, or none",
+        "label an item outside, or write the items one by one");
   }
   if (context->alternative) {
-    return bad("label '" + label.text + "' stands in one of several alternatives only", "label the whole set: " + label.text + ":{.. | ..}");
+    return bad("label '" + label.text + "' stands in one of several alternatives only",
+               "label the whole set: " + label.text + ":{.. | ..}");
   }
   *index = static_cast<int>(context->rule->labels.size());
   context->rule->labels.push_back(label.text);
@@ -276,8 +298,10 @@ bool Checker::ResolveSetItem(const SyntaxItem& item, RuleContext* context, Patte
     return good;
   }
   if (item.label) {
-    Error(Kind::kBadRule, item.label->span, "/" + item.set.literal.raw + "/ is " + std::to_string(symbols->size()) + " items and takes no label",
-          "write the symbols one by one and label the one you mean");
+    Error(
+        Kind::kBadRule, item.label->span,
+        "/" + item.set.literal.raw + "/ is " + std::to_string(symbols->size()) + " items and takes no label",
+        "write the symbols one by one and label the one you mean");
     return false;
   }
   Pattern several;
@@ -307,7 +331,8 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
     slot.label = context->own_labels.at(name);
     // The label of a class is that item again, and it passed the class already.
     if (!Once(item)) {
-      Error(Kind::kBadRule, item.span, "'" + name + "' is one item of the rule and takes no quantity", "take the quantity away");
+      Error(Kind::kBadRule, item.span, "'" + name + "' is one item of the rule and takes no quantity",
+            "take the quantity away");
       return false;
     }
     pattern->items.push_back(std::move(slot));
@@ -346,7 +371,8 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
     std::string remedy = DidYouMean(name, known);
     if (grammar_.tree.Find(name)) remedy = "a feature stands in brackets: [" + name + "]; ";
     if (grammar_.inventory.Find(name)) remedy = "a symbol stands between slashes: /" + name + "/; ";
-    Error(Kind::kUnknownClass, item.name.span, "there is no class or pattern '" + name + "'", Or(remedy, "declare it: `class " + name + " = [..]`"));
+    Error(Kind::kUnknownClass, item.name.span, "there is no class or pattern '" + name + "'",
+          Or(remedy, "declare it: `class " + name + " = [..]`"));
     return false;
   }
   std::optional<SlotTest> test = ResolveClass(item.name);
@@ -354,8 +380,9 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
   PatternItem slot;
   slot.test = std::move(*test);
   const auto mentions = context->mentions.find(name);
-  const bool own = !context->in_unless && mentions != context->mentions.end() && mentions->second == 1 && context->used.count(name) != 0 &&
-                   context->own_labels.count(name) == 0 && !context->repeated && !context->alternative && Once(item);
+  const bool own = !context->in_unless && mentions != context->mentions.end() && mentions->second == 1 &&
+                   context->used.count(name) != 0 && context->own_labels.count(name) == 0 &&
+                   !context->repeated && !context->alternative && Once(item);
   if (own) {
     slot.label = static_cast<int>(context->rule->labels.size());
     context->rule->labels.push_back(name);
@@ -386,17 +413,22 @@ bool Checker::ResolveGroup(const SyntaxItem& item, RuleContext* context, Pattern
   context->alternative = outer_alternative;
   if (!good) return false;
   // Alternatives of one slot each are a set.
-  const bool is_set = group.alternatives.size() > 1 && std::all_of(group.alternatives.begin(), group.alternatives.end(), [](const Pattern& p) {
-    return p.items.size() == 1 && p.items[0].kind == PatternItem::Kind::kSlot && p.items[0].label < 0;
-  });
+  const bool is_set =
+      group.alternatives.size() > 1 &&
+      std::all_of(group.alternatives.begin(), group.alternatives.end(), [](const Pattern& p) {
+        return p.items.size() == 1 && p.items[0].kind == PatternItem::Kind::kSlot && p.items[0].label < 0;
+      });
   PatternItem slot;
   if (is_set) {
     slot.test.op = SlotTest::Op::kOr;
-    for (Pattern& alternative : group.alternatives) slot.test.args.push_back(std::move(alternative.items[0].test));
+    for (Pattern& alternative : group.alternatives)
+      slot.test.args.push_back(std::move(alternative.items[0].test));
   }
   if (item.label) {
     if (!is_set) {
-      Error(Kind::kBadRule, item.label->span, "a label covers one slot, and this group is not a set of single items", "label the item you mean");
+      Error(Kind::kBadRule, item.label->span,
+            "a label covers one slot, and this group is not a set of single items",
+            "label the item you mean");
       return false;
     }
     if (!AddLabel(*item.label, item, context, &slot.label)) return false;
@@ -423,24 +455,30 @@ bool Checker::CheckShape(const Pattern& pattern, const syntax::Pattern& written,
   for (std::size_t i = 0; i < pattern.items.size(); ++i) {
     const PatternItem& item = pattern.items[i];
     if (item.kind == PatternItem::Kind::kGap) {
-      const bool between = i > 0 && i + 1 < pattern.items.size() && pattern.items[i - 1].kind == PatternItem::Kind::kSlot &&
+      const bool between = i > 0 && i + 1 < pattern.items.size() &&
+                           pattern.items[i - 1].kind == PatternItem::Kind::kSlot &&
                            pattern.items[i + 1].kind == PatternItem::Kind::kSlot;
       if (!between) {
-        const auto gap = std::find_if(written.items.begin(), written.items.end(), [](const SyntaxItem& w) { return w.kind == SyntaxItem::Kind::kGap; });
-        Error(Kind::kBadRule, gap != written.items.end() ? gap->span : written.span, "a gap stands between two single slots",
+        const auto gap = std::find_if(written.items.begin(), written.items.end(),
+                                      [](const SyntaxItem& w) { return w.kind == SyntaxItem::Kind::kGap; });
+        Error(Kind::kBadRule, gap != written.items.end() ? gap->span : written.span,
+              "a gap stands between two single slots",
               "write one item without a quantity before it and one after it");
         good = false;
       }
     }
-    const bool inner = i > 0 && i + 1 < pattern.items.size() && may_be_slot(pattern.items[i - 1]) && may_be_slot(pattern.items[i + 1]);
+    const bool inner = i > 0 && i + 1 < pattern.items.size() && may_be_slot(pattern.items[i - 1]) &&
+                       may_be_slot(pattern.items[i + 1]);
     const auto one_slot = [](const PatternItem& other) { return other.kind == PatternItem::Kind::kSlot; };
-    if (item.kind == PatternItem::Kind::kBoundary && item.boundary >= Boundary::kWord && inner && one_slot(pattern.items[i - 1]) && one_slot(pattern.items[i + 1])) {
+    if (item.kind == PatternItem::Kind::kBoundary && item.boundary >= Boundary::kWord && inner &&
+        one_slot(pattern.items[i - 1]) && one_slot(pattern.items[i + 1])) {
       const auto place = std::find_if(written.items.begin(), written.items.end(), [&](const SyntaxItem& w) {
         return w.kind == SyntaxItem::Kind::kBoundary && BoundaryOf(w.boundary) == item.boundary;
       });
-      diagnostics_.Warning(Kind::kNeverApplies, place != written.items.end() ? place->span : written.span,
-                           "this never matches: a rule stays within the word, and this boundary is the edge of one",
-                           "put the boundary at an end of the pattern, or take it out");
+      diagnostics_.Warning(
+          Kind::kNeverApplies, place != written.items.end() ? place->span : written.span,
+          "this never matches: a rule stays within the word, and this boundary is the edge of one",
+          "put the boundary at an end of the pattern, or take it out");
     }
   }
   return good;
@@ -452,7 +490,9 @@ std::optional<int> Checker::LabelOf(const syntax::Name& name, const RuleContext&
   const auto found = context.own_labels.find(name.text);
   if (found != context.own_labels.end()) return found->second;
   if (context.inserted.count(name.text) != 0) {
-    Error(Kind::kNotSupportedYet, name.span, "'" + name.text + "' is inserted by this rule; changing it in the same rule is not supported by this release",
+    Error(Kind::kNotSupportedYet, name.span,
+          "'" + name.text +
+              "' is inserted by this rule; changing it in the same rule is not supported by this release",
           "insert it with that content, or write a second rule");
     return std::nullopt;
   }
@@ -462,24 +502,31 @@ std::optional<int> Checker::LabelOf(const syntax::Name& name, const RuleContext&
   std::string remedy = DidYouMean(name.text, known);
   const auto mentions = context.mentions.find(name.text);
   if (mentions != context.mentions.end() && mentions->second > 1) {
-    remedy = "the class stands " + std::to_string(mentions->second) + " times in the pattern: label the one you mean, X:" + name.text + "; ";
+    remedy = "the class stands " + std::to_string(mentions->second) +
+             " times in the pattern: label the one you mean, X:" + name.text + "; ";
   } else if (mentions != context.mentions.end()) {
-    remedy = "the class stands inside a repeated group or an alternative, where it could be several slots or none; ";
+    remedy =
+        "the class stands inside a repeated group or an alternative, where it could be several slots or "
+        "none; ";
   }
-  Error(Kind::kUnknownLabel, name.span, "no item of the rule is labelled '" + name.text + "'", Or(remedy, "label one: " + name.text + ":[..]"));
+  Error(Kind::kUnknownLabel, name.span, "no item of the rule is labelled '" + name.text + "'",
+        Or(remedy, "label one: " + name.text + ":[..]"));
   return std::nullopt;
 }
 
 bool Checker::Changeable(NodeId node, Span span) {
   const Tree& tree = grammar_.tree;
   if (node == kSlotNode || IsSlotBorne(node)) {
-    Error(Kind::kNotSupportedYet, span, "'" + tree[node].name + "' is borne by the slot; changing it is not supported by this release",
+    Error(Kind::kNotSupportedYet, span,
+          "'" + tree[node].name + "' is borne by the slot; changing it is not supported by this release",
           "change a node under root");
     return false;
   }
   for (NodeId above = node; above > kRootNode; above = tree[above].mother) {
     if (tree[above].type != TreeNode::Type::kClass || tree[above].max < 2) continue;
-    Error(Kind::kNotSupportedYet, span, "one mother may hold several of '" + tree[above].name + "', a class node; changing it or what hangs from it is not supported by this release",
+    Error(Kind::kNotSupportedYet, span,
+          "one mother may hold several of '" + tree[above].name +
+              "', a class node; changing it or what hangs from it is not supported by this release",
           "take ×" + std::to_string(tree[above].max) + " away from " + tree[above].name);
     return false;
   }
@@ -526,7 +573,8 @@ bool Checker::ResolveLine(const syntax::Change& change, RuleContext* context) {
       continue;
     }
     if (spread && target && *label == *target) {
-      Error(Kind::kBadRule, path.span, "'" + path.label.text + "' spreads to itself", "spread to another item");
+      Error(Kind::kBadRule, path.span, "'" + path.label.text + "' spreads to itself",
+            "spread to another item");
       good = false;
       continue;
     }
@@ -551,13 +599,16 @@ bool Checker::ResolveContent(const syntax::Change& change, RuleContext* context)
   if (!good) return false;
   result.target = *label;
   if (result.settings.empty()) {
-    Error(Kind::kBadRule, change.span, std::string(fill ? "`fill`" : "`set`") + " with an empty bundle changes nothing", "name the features: [+f]");
+    Error(Kind::kBadRule, change.span,
+          std::string(fill ? "`fill`" : "`set`") + " with an empty bundle changes nothing",
+          "name the features: [+f]");
     return false;
   }
   for (const Setting& setting : result.settings) {
     good = Changeable(setting.node, change.bundle.span) && good;
     if (fill && setting.values.empty()) {
-      Error(Kind::kBadRule, change.bundle.span, "`fill` gives what is missing and takes nothing away", "write `set " + change.label.text + " [no " + grammar_.tree[setting.node].name + "]`");
+      Error(Kind::kBadRule, change.bundle.span, "`fill` gives what is missing and takes nothing away",
+            "write `set " + change.label.text + " [no " + grammar_.tree[setting.node].name + "]`");
       good = false;
     }
   }
@@ -567,18 +618,23 @@ bool Checker::ResolveContent(const syntax::Change& change, RuleContext* context)
     // [Labial round]: the Labial comes along with the round under it.
     return tree[setting.node].type == TreeNode::Type::kClass && !setting.values.empty() &&
            std::any_of(all.begin(), all.end(), [&](const Setting& other) {
-             return other.node != setting.node && !other.values.empty() && tree.Dominates(setting.node, other.node);
+             return other.node != setting.node && !other.values.empty() &&
+                    tree.Dominates(setting.node, other.node);
            });
   };
   for (const Setting& above : all) {
     for (const Setting& below : all) {
-      if (!above.values.empty() || above.node == below.node || !tree.Dominates(above.node, below.node)) continue;
-      Error(Kind::kBadRule, change.bundle.span, "the bundle takes '" + tree[above.node].name + "' away and says something of '" + tree[below.node].name + "' under it",
+      if (!above.values.empty() || above.node == below.node || !tree.Dominates(above.node, below.node))
+        continue;
+      Error(Kind::kBadRule, change.bundle.span,
+            "the bundle takes '" + tree[above.node].name + "' away and says something of '" +
+                tree[below.node].name + "' under it",
             "write two rules, or name the features to take away one by one");
       good = false;
     }
   }
-  result.settings.erase(std::remove_if(result.settings.begin(), result.settings.end(), covered), result.settings.end());
+  result.settings.erase(std::remove_if(result.settings.begin(), result.settings.end(), covered),
+                        result.settings.end());
   if (good) context->rule->changes.push_back(std::move(result));
   return good;
 }
@@ -592,7 +648,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
   result.inserted = FeatureTree{kRootNode, 0, {}};
   const bool twice = !change.inserted.text.empty() && !context->placed.insert(change.inserted.text).second;
   if (twice || context->own_labels.count(change.inserted.text) != 0) {
-    Error(Kind::kBadRule, change.inserted.span, "label '" + change.inserted.text + "' is used twice", "give what is inserted a label of its own");
+    Error(Kind::kBadRule, change.inserted.span, "label '" + change.inserted.text + "' is used twice",
+          "give what is inserted a label of its own");
     return false;
   }
   switch (change.content.kind) {
@@ -600,7 +657,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
       const std::optional<std::vector<int>> symbols = SymbolsOf(change.content.literal);
       if (!symbols) return false;
       if (symbols->size() != 1) {
-        Error(Kind::kBadRule, change.content.literal.span, "/" + change.content.literal.raw + "/ is no single symbol", "insert one symbol at a time");
+        Error(Kind::kBadRule, change.content.literal.span,
+              "/" + change.content.literal.raw + "/ is no single symbol", "insert one symbol at a time");
         return false;
       }
       result.inserted = grammar_.inventory.symbols[static_cast<std::size_t>((*symbols)[0])].underlying;
@@ -612,7 +670,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
       Apply(settings, &result.inserted);
       NodeId full = 0;
       if (!HasRoom(result.inserted, &full)) {
-        Error(Kind::kBadValue, change.content.span, "what is inserted has no room for two of '" + grammar_.tree[full].name + "'", "give one value");
+        Error(Kind::kBadValue, change.content.span,
+              "what is inserted has no room for two of '" + grammar_.tree[full].name + "'", "give one value");
         return false;
       }
       break;
@@ -623,7 +682,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
     case syntax::Set::Kind::kAnd:
     case syntax::Set::Kind::kButNot:
     case syntax::Set::Kind::kNot:
-      Error(Kind::kBadRule, change.content.span, "a set does not say which segment to insert", "write a symbol /ə/ or a bundle [+syll]");
+      Error(Kind::kBadRule, change.content.span, "a set does not say which segment to insert",
+            "write a symbol /ə/ or a bundle [+syll]");
       return false;
   }
   if (!host) return false;
@@ -643,9 +703,13 @@ void Checker::CheckChanges(const syntax::Rule& written, const Rule& rule) {
       for (const Setting& setting : other.settings) nodes.push_back(setting.node);
       for (const NodeId node : nodes) {
         if (node == line.node || !tree.Dominates(line.node, node)) continue;
-        diagnostics_.Add({Kind::kBadRule, Severity::kError, other.span,
-                          "this rule moves lines of '" + tree[line.node].name + "' and changes '" + tree[node].name + "' under it",
-                          "write two rules, one after the other", {{line.span, "lines of '" + tree[line.node].name + "' are moved here"}}});
+        diagnostics_.Add({Kind::kBadRule,
+                          Severity::kError,
+                          other.span,
+                          "this rule moves lines of '" + tree[line.node].name + "' and changes '" +
+                              tree[node].name + "' under it",
+                          "write two rules, one after the other",
+                          {{line.span, "lines of '" + tree[line.node].name + "' are moved here"}}});
         return;
       }
     }
@@ -653,10 +717,14 @@ void Checker::CheckChanges(const syntax::Rule& written, const Rule& rule) {
   if (rule.mode == Rule::Mode::kAtOnce) return;
   for (const Change& change : rule.changes) {
     if (change.target == rule.changes[0].target) continue;
-    diagnostics_.Add({Kind::kBadRule, Severity::kError, change.span,
+    diagnostics_.Add({Kind::kBadRule,
+                      Severity::kError,
+                      change.span,
                       "an iterative rule changes one item, and \"" + written.name.text + "\" changes '" +
-                          rule.labels[static_cast<std::size_t>(rule.changes[0].target)] + "' and '" + rule.labels[static_cast<std::size_t>(change.target)] + "'",
-                      "write one rule for each, or leave `iterate` out", {{rule.changes[0].span, "the first change is here"}}});
+                          rule.labels[static_cast<std::size_t>(rule.changes[0].target)] + "' and '" +
+                          rule.labels[static_cast<std::size_t>(change.target)] + "'",
+                      "write one rule for each, or leave `iterate` out",
+                      {{rule.changes[0].span, "the first change is here"}}});
     return;
   }
 }

@@ -1,8 +1,8 @@
 // Bundles, sets, classes and literals -> tests of one slot; bundles that give content -> settings.
 //
-// Example: `[Coronal +strident]` is two tests, "bears Coronal" and "bears strident with value +"; as content it is a
-// Coronal and one +strident. Does not handle: αf, shared, long and other parts of bundles that the parser keeps as not
-// supported. Tested by tests/unit/model/check_test.cc.
+// Example: `[Coronal +strident]` is two tests, "bears Coronal" and "bears strident with value +"; as content
+// it is a Coronal and one +strident. Does not handle: αf, shared, long and other parts of bundles that the
+// parser keeps as not supported. Tested by tests/unit/model/check_test.cc.
 #include <algorithm>
 
 #include "model/check.h"
@@ -23,7 +23,8 @@ std::optional<Value> Checker::ValueOf(const TreeNode& node, const syntax::Name& 
   if (found != node.values.end()) return static_cast<Value>(found - node.values.begin());
   std::string all;
   for (const std::string& v : node.values) all += (all.empty() ? "" : " ") + v;
-  Error(Kind::kBadValue, value.span, "'" + node.name + "' has no value '" + value.text + "'", "its values are: " + all);
+  Error(Kind::kBadValue, value.span, "'" + node.name + "' has no value '" + value.text + "'",
+        "its values are: " + all);
   return std::nullopt;
 }
 
@@ -61,7 +62,8 @@ std::optional<FeatureTest> Checker::ResolveFeature(const syntax::Feat& feat) {
         Error(Kind::kBadValue, feat.span, "'" + kind.name + "' cannot be " + Signed(feat), HowToWrite(kind));
         return std::nullopt;
       }
-      return FeatureTest{FeatureTest::Kind::kHasValue, *node, static_cast<Value>(feat.kind == syntax::Feat::Kind::kPlus)};
+      return FeatureTest{FeatureTest::Kind::kHasValue, *node,
+                         static_cast<Value>(feat.kind == syntax::Feat::Kind::kPlus)};
     case syntax::Feat::Kind::kBears:
       return FeatureTest{FeatureTest::Kind::kBears, *node, 0};
     case syntax::Feat::Kind::kNo:
@@ -69,11 +71,13 @@ std::optional<FeatureTest> Checker::ResolveFeature(const syntax::Feat& feat) {
       [[fallthrough]];
     case syntax::Feat::Kind::kValue: {
       if (kind.type != TreeNode::Type::kMany) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
+        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon",
+              HowToWrite(kind));
         return std::nullopt;
       }
       if (feat.values.size() != 1) {
-        Error(Kind::kNotSupportedYet, feat.span, "a list of values in a test is not supported by this release",
+        Error(Kind::kNotSupportedYet, feat.span,
+              "a list of values in a test is not supported by this release",
               "name one value: `" + kind.name + ":" + kind.values[0] + "`");
         return std::nullopt;
       }
@@ -118,14 +122,15 @@ void Checker::WarnContradictions(const std::vector<FeatureTest>& tests, Span spa
       std::string why;
       if (b.kind == FeatureTest::Kind::kLacks && tree.Dominates(b.node, a.node)) {
         why = "'" + name(a) + "' and 'no " + tree[b.node].name + "'";
-      } else if (b.kind == FeatureTest::Kind::kLacksValue && a.kind == FeatureTest::Kind::kHasValue && a.node == b.node &&
-                 a.value == b.value) {
+      } else if (b.kind == FeatureTest::Kind::kLacksValue && a.kind == FeatureTest::Kind::kHasValue &&
+                 a.node == b.node && a.value == b.value) {
         why = "'" + name(a) + "' and 'no " + name(a) + "'";
-      } else if (&a < &b && a.kind == FeatureTest::Kind::kHasValue && b.kind == FeatureTest::Kind::kHasValue &&
-                 a.node == b.node && a.value != b.value) {
+      } else if (&a < &b && a.kind == FeatureTest::Kind::kHasValue &&
+                 b.kind == FeatureTest::Kind::kHasValue && a.node == b.node && a.value != b.value) {
         // Two values are a contour where one mother, or one of several mothers, has the room.
         bool room = false;
-        for (NodeId above = a.node; above > kRootNode; above = tree[above].mother) room = room || tree[above].max > 1;
+        for (NodeId above = a.node; above > kRootNode; above = tree[above].mother)
+          room = room || tree[above].max > 1;
         if (!room) why = "'" + name(a) + "' and '" + name(b) + "'";
       }
       if (why.empty()) continue;
@@ -143,11 +148,13 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
   if (!node) return false;
   const TreeNode& kind = grammar_.tree[*node];
   if (*node <= kRootNode) {
-    Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is no content to give", "name the features under it");
+    Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is no content to give",
+          "name the features under it");
     return false;
   }
   if (IsSlotBorne(*node)) {
-    Error(Kind::kNotSupportedYet, feat.span, "'" + kind.name + "' hangs from the slot; giving it to a slot is not supported by this release",
+    Error(Kind::kNotSupportedYet, feat.span,
+          "'" + kind.name + "' hangs from the slot; giving it to a slot is not supported by this release",
           "hang it under root, or leave it out");
     return false;
   }
@@ -170,13 +177,15 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
       break;
     case syntax::Feat::Kind::kNo:
       if (!feat.values.empty()) {
-        Error(Kind::kBadValue, feat.span, "`no` takes a node away with all its values", "write `no " + kind.name + "`");
+        Error(Kind::kBadValue, feat.span, "`no` takes a node away with all its values",
+              "write `no " + kind.name + "`");
         return false;
       }
       break;
     case syntax::Feat::Kind::kValue:
       if (kind.type != TreeNode::Type::kMany) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
+        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon",
+              HowToWrite(kind));
         return false;
       }
       for (const syntax::Name& name : feat.values) {
@@ -186,7 +195,8 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
       }
       break;
   }
-  auto place = std::find_if(settings->begin(), settings->end(), [&](const Setting& s) { return s.node == *node; });
+  auto place =
+      std::find_if(settings->begin(), settings->end(), [&](const Setting& s) { return s.node == *node; });
   if (place == settings->end()) {
     place = settings->insert(place, {*node, std::move(values)});
   } else if (!continues || values.empty() || place->values.empty() || kind.type == TreeNode::Type::kClass) {
@@ -199,13 +209,16 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
   const Setting& now = *place;
   for (std::size_t i = 1; i < now.values.size(); ++i) {
     if (now.values[i] != now.values[i - 1]) continue;
-    Error(Kind::kBadValue, feat.span, "a contour cannot have '" + grammar_.tree.ValueName(*node, now.values[i]) + "' twice side by side",
+    Error(Kind::kBadValue, feat.span,
+          "a contour cannot have '" + grammar_.tree.ValueName(*node, now.values[i]) + "' twice side by side",
           "take one out");
     return false;
   }
   if (static_cast<int>(now.values.size()) > kind.max) {
-    Error(Kind::kBadValue, feat.span, "one mother holds at most " + std::to_string(kind.max) + " of '" + kind.name + "'",
-          "write ×" + std::to_string(now.values.size()) + " after " + kind.name + " in `tree`, or take a value out");
+    Error(Kind::kBadValue, feat.span,
+          "one mother holds at most " + std::to_string(kind.max) + " of '" + kind.name + "'",
+          "write ×" + std::to_string(now.values.size()) + " after " + kind.name +
+              " in `tree`, or take a value out");
     return false;
   }
   return true;
@@ -224,7 +237,8 @@ bool Checker::ResolveSettings(const syntax::Bundle& bundle, std::vector<Setting>
 
 SlotTest Checker::LiteralTest(int symbol) {
   std::vector<Literal>& literals = grammar_.inventory.literals;
-  const auto found = std::find_if(literals.begin(), literals.end(), [&](const Literal& l) { return l.symbol == symbol; });
+  const auto found =
+      std::find_if(literals.begin(), literals.end(), [&](const Literal& l) { return l.symbol == symbol; });
   SlotTest test;
   test.op = SlotTest::Op::kLiteral;
   test.literal = static_cast<int>(found - literals.begin());
@@ -234,7 +248,8 @@ SlotTest Checker::LiteralTest(int symbol) {
 
 std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& literal) {
   if (literal.spelled) {
-    Error(Kind::kNotSupportedYet, literal.span, "spelled forms ⟨..⟩ are not supported by this release", "write the symbols: /../");
+    Error(Kind::kNotSupportedYet, literal.span, "spelled forms ⟨..⟩ are not supported by this release",
+          "write the symbols: /../");
     return std::nullopt;
   }
   NormalText text;
@@ -253,10 +268,12 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
     span.end = literal.span.begin + unit.end;
     const std::string shown = literal.raw.substr(unit.begin, unit.end - unit.begin);
     if (unit.code == kLengthSign && !symbols.empty()) {
-      Error(Kind::kBadRule, span, "a literal stands for one slot each symbol; ː writes a second slot of the same root",
+      Error(Kind::kBadRule, span,
+            "a literal stands for one slot each symbol; ː writes a second slot of the same root",
             "write two items, or test length with other means; a literal accepts a root however long it is");
     } else if (shown == "-" || shown == "=" || shown == "#" || shown == " " || shown == "‖") {
-      Error(Kind::kBadRule, span, "a boundary does not stand inside a literal", "write it as an item of its own: /a/ - /b/");
+      Error(Kind::kBadRule, span, "a boundary does not stand inside a literal",
+            "write it as an item of its own: /a/ - /b/");
     } else if (!SaidOften("symbol " + shown)) {
       Error(Kind::kUnknownSymbol, span, "'" + shown + "' is no symbol of the grammar",
             Or(DidYouMean(literal.raw, SymbolNames()), "list it in `segments`"));
@@ -264,7 +281,8 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
     return std::nullopt;
   }
   if (symbols.empty()) {
-    Error(Kind::kBadRule, literal.span, "an empty literal matches nothing", "write a symbol, or `empty` for a slot without a root");
+    Error(Kind::kBadRule, literal.span, "an empty literal matches nothing",
+          "write a symbol, or `empty` for a slot without a root");
     return std::nullopt;
   }
   return symbols;
@@ -278,7 +296,8 @@ std::optional<SlotTest> Checker::ResolveClass(const syntax::Name& name) {
   if (found == classes_.end()) {
     if (SaidOften("class " + name.text)) return std::nullopt;
     std::string remedy = DidYouMean(name.text, ClassNames());
-    if (patterns_.count(name.text) != 0) remedy = "it is a named pattern, which stands only as an item of its own; ";
+    if (patterns_.count(name.text) != 0)
+      remedy = "it is a named pattern, which stands only as an item of its own; ";
     if (grammar_.tree.Find(name.text)) remedy = "a feature stands in brackets: [" + name.text + "]; ";
     if (grammar_.inventory.Find(name.text)) remedy = "a symbol stands between slashes: /" + name.text + "/; ";
     Error(Kind::kUnknownClass, name.span, "there is no class '" + name.text + "'",
@@ -309,7 +328,9 @@ std::optional<SlotTest> Checker::ResolveSet(const syntax::Set& set) {
       const std::optional<std::vector<int>> symbols = SymbolsOf(set.literal);
       if (!symbols) return std::nullopt;
       if (symbols->size() != 1) {
-        Error(Kind::kBadRule, set.literal.span, "/" + set.literal.raw + "/ is " + std::to_string(symbols->size()) + " symbols; one is wanted here",
+        Error(Kind::kBadRule, set.literal.span,
+              "/" + set.literal.raw + "/ is " + std::to_string(symbols->size()) +
+                  " symbols; one is wanted here",
               "list it as one symbol in `segments`, or write the symbols one by one");
         return std::nullopt;
       }

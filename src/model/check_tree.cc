@@ -1,7 +1,8 @@
 // The feature tree: lines of `tree` -> nodes with their mothers before them.
 //
-// Example: `root > Place > •Labial` and `Labial > round` give root, Place, Labial, round; the lines may stand in any order.
-// Does not handle: nodes with two mothers, trees from a library (errors say so). Tested by tests/unit/model/check_test.cc.
+// Example: `root > Place > •Labial` and `Labial > round` give root, Place, Labial, round; the lines may stand
+// in any order. Does not handle: nodes with two mothers, trees from a library (errors say so). Tested by
+// tests/unit/model/check_test.cc.
 #include <algorithm>
 
 #include "model/check.h"
@@ -33,11 +34,14 @@ std::optional<NodeId> Checker::NodeOf(const syntax::Name& name, Kind kind) {
   std::string remedy = DidYouMean(name.text, NodeNames());
   for (const TreeNode& node : grammar_.tree.nodes) {
     for (const std::string& value : node.values) {
-      if (value == name.text) remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + "; ";
+      if (value == name.text)
+        remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + "; ";
     }
   }
   if (classes_.count(name.text) != 0) remedy = "it is a class, which stands without brackets; ";
-  Error(kind, name.span, "the tree has no " + std::string(kind == Kind::kUnknownFeature ? "feature" : "node") + " '" + name.text + "'",
+  Error(kind, name.span,
+        "the tree has no " + std::string(kind == Kind::kUnknownFeature ? "feature" : "node") + " '" +
+            name.text + "'",
         Or(remedy, "declare it in `tree`"));
   return std::nullopt;
 }
@@ -57,10 +61,12 @@ void Checker::CheckTree() {
   declared["slot"].daughters = {"root"};
   declared["root"].mother = "slot";
 
-  const auto hang = [&](const std::string& mother, const syntax::Name& name, const syntax::Daughter* daughter) {
+  const auto hang = [&](const std::string& mother, const syntax::Name& name,
+                        const syntax::Daughter* daughter) {
     if (name.text == "slot" || name.text == "root") {
       if (mother == "slot" && name.text == "root" && daughter == nullptr) return;
-      Error(Kind::kBadTree, name.span, "'" + name.text + "' hangs from nothing: slot stands above root in every tree",
+      Error(Kind::kBadTree, name.span,
+            "'" + name.text + "' hangs from nothing: slot stands above root in every tree",
             "give the node another name");
       return;
     }
@@ -68,13 +74,19 @@ void Checker::CheckTree() {
     Declared& node = place->second;
     if (!fresh && !node.mother.empty()) {
       if (node.mother != mother) {
-        diagnostics_.Add({Kind::kNotSupportedYet, Severity::kError, name.span,
+        diagnostics_.Add({Kind::kNotSupportedYet,
+                          Severity::kError,
+                          name.span,
                           "'" + name.text + "' has two mothers, " + node.mother + " and " + mother,
                           "this release takes one mother a node: give the two nodes different names",
                           {{node.span, "first hung here"}}});
       } else if (daughter != nullptr && node.daughter != nullptr) {
-        diagnostics_.Add({Kind::kDuplicate, Severity::kError, name.span, "'" + name.text + "' is declared twice under " + mother,
-                          "take one of the two away", {{node.span, "first declared here"}}});
+        diagnostics_.Add({Kind::kDuplicate,
+                          Severity::kError,
+                          name.span,
+                          "'" + name.text + "' is declared twice under " + mother,
+                          "take one of the two away",
+                          {{node.span, "first declared here"}}});
       } else if (daughter != nullptr) {
         node.daughter = daughter;
         node.span = name.span;
@@ -87,7 +99,8 @@ void Checker::CheckTree() {
     declared[mother].daughters.push_back(name.text);
   };
   for (const syntax::TreeLine* line : lines) {
-    for (std::size_t i = 1; i < line->mothers.size(); ++i) hang(line->mothers[i - 1].text, line->mothers[i], nullptr);
+    for (std::size_t i = 1; i < line->mothers.size(); ++i)
+      hang(line->mothers[i - 1].text, line->mothers[i], nullptr);
     if (line->mothers.empty()) continue;
     const std::string& mother = line->mothers.back().text;
     for (const syntax::Daughter& daughter : line->daughters) hang(mother, daughter.name, &daughter);
@@ -101,7 +114,8 @@ void Checker::CheckTree() {
   for (const syntax::TreeLine* line : lines) {
     if (line->mothers.empty()) continue;
     const syntax::Name& top = line->mothers[0];
-    if (top.text == "slot" || !declared[top.text].mother.empty() || !reported.insert(top.text).second) continue;
+    if (top.text == "slot" || !declared[top.text].mother.empty() || !reported.insert(top.text).second)
+      continue;
     std::vector<std::string> others;
     for (const std::string& name : names) {
       if (name != top.text) others.push_back(name);
@@ -128,7 +142,8 @@ void Checker::CheckTree() {
       made.floating = daughter.floating;
       made.abstract_ = daughter.abstract_;
       if (daughter.max < 1 || daughter.max > kMostOnOneMother) {
-        Error(Kind::kBadTree, node.span, "'" + name + "' may stand 1 to " + std::to_string(kMostOnOneMother) + " times on one mother",
+        Error(Kind::kBadTree, node.span,
+              "'" + name + "' may stand 1 to " + std::to_string(kMostOnOneMother) + " times on one mother",
               "write ×2 for a contour of two");
       }
       if (daughter.room) rooms_.emplace_back(id, &*daughter.room);
@@ -149,12 +164,14 @@ void Checker::CheckTree() {
       std::set<std::string> seen;
       for (const syntax::Name& value : daughter.values) {
         if (!seen.insert(value.text).second) {
-          Error(Kind::kDuplicate, value.span, "'" + value.text + "' stands twice among the values of " + name, "take one away");
+          Error(Kind::kDuplicate, value.span, "'" + value.text + "' stands twice among the values of " + name,
+                "take one away");
         }
         made.values.push_back(value.text);
       }
       if (made.type == TreeNode::Type::kMany && (made.values.empty() || made.values.size() > 250)) {
-        Error(Kind::kBadTree, node.span, "'" + name + "' needs 1 to 250 values", "write them after the colon: `" + name + ": a b`");
+        Error(Kind::kBadTree, node.span, "'" + name + "' needs 1 to 250 values",
+              "write them after the colon: `" + name + ": a b`");
       }
     }
     if (!node.daughters.empty() && made.type != TreeNode::Type::kClass) {
@@ -174,7 +191,8 @@ void Checker::CheckTree() {
   });
   if (ring != lines.end()) {
     const syntax::Name& name = (*ring)->mothers.back();
-    Error(Kind::kBadTree, name.span, "'" + name.text + "' hangs from itself", "hang one of the nodes of this ring from root");
+    Error(Kind::kBadTree, name.span, "'" + name.text + "' hangs from itself",
+          "hang one of the nodes of this ring from root");
   }
   if (first == nullptr && diagnostics_.all().size() == errors_before) {
     Error(Kind::kBadTree, whole_, "the grammar has no `tree`",
@@ -189,14 +207,16 @@ bool Checker::SaysLiteral(const syntax::Set& set, std::size_t depth) const {
     const auto found = classes_.find(set.name.text);
     return found != classes_.end() && depth <= classes_.size() && SaysLiteral(found->second->set, depth + 1);
   }
-  return std::any_of(set.args.begin(), set.args.end(), [&](const syntax::Set& arg) { return SaysLiteral(arg, depth); });
+  return std::any_of(set.args.begin(), set.args.end(),
+                     [&](const syntax::Set& arg) { return SaysLiteral(arg, depth); });
 }
 
 // After the tree stands, so that the `in [..]` of one node may speak of all others.
 void Checker::CheckRooms() {
   for (const auto& [node, set] : rooms_) {
     if (SaysLiteral(*set, 0)) {
-      Error(Kind::kBadTree, set->span, "who has the room is told by features, not by symbols", "write a bundle: `in [-son]`");
+      Error(Kind::kBadTree, set->span, "who has the room is told by features, not by symbols",
+            "write a bundle: `in [-son]`");
       continue;
     }
     const std::optional<SlotTest> test = ResolveSet(*set);

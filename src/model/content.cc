@@ -64,7 +64,8 @@ void SetValues(const Tree& tree, FeatureTree* content, NodeId node, const std::v
   FeatureTree* mother = Ensure(tree, content, tree[node].mother);
   Remove(mother, node);
   auto place = PlaceFor(tree, mother, node);
-  for (const Value value : values) place = std::next(mother->daughters.insert(place, FeatureTree{node, value, {}}));
+  for (const Value value : values)
+    place = std::next(mother->daughters.insert(place, FeatureTree{node, value, {}}));
 }
 
 void Remove(FeatureTree* content, NodeId node) {
@@ -81,7 +82,8 @@ void Prune(const Tree& tree, FeatureTree* content) {
   daughters.erase(std::remove_if(daughters.begin(), daughters.end(),
                                  [&](const FeatureTree& daughter) {
                                    const TreeNode& kind = tree[daughter.node];
-                                   return kind.type == TreeNode::Type::kClass && !kind.standing && daughter.daughters.empty();
+                                   return kind.type == TreeNode::Type::kClass && !kind.standing &&
+                                          daughter.daughters.empty();
                                  }),
                   daughters.end());
 }
@@ -151,7 +153,8 @@ class DifferenceWriter {
   int steps = 0;
 
  private:
-  void CompareClass(NodeId node, const std::vector<const FeatureTree*>& old, const std::vector<const FeatureTree*>& now) {
+  void CompareClass(NodeId node, const std::vector<const FeatureTree*>& old,
+                    const std::vector<const FeatureTree*>& now) {
     if (old.empty() && (tree_[node].standing || now[0]->daughters.empty())) Step(tree_[node].name);
     Compare(old.empty() ? FeatureTree{node, 0, {}} : *old[0], *now[0]);
   }

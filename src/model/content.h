@@ -19,7 +19,8 @@ int CountOf(const FeatureTree& content, NodeId node);
 // The instance of class node `node`, made together with the class nodes above it where it is missing.
 // Requires: `content` is of a node that dominates `node`; `node` is a class node.
 FeatureTree* Ensure(const Tree& tree, FeatureTree* content, NodeId node);
-// The mother of `node` gets exactly these values of it, in order (none: taken away). Class nodes above come along.
+// The mother of `node` gets exactly these values of it, in order (none: taken away). Class nodes above come
+// along.
 void SetValues(const Tree& tree, FeatureTree* content, NodeId node, const std::vector<Value>& values);
 // Takes every instance of `node` away with all under it.
 void Remove(FeatureTree* content, NodeId node);

@@ -1,9 +1,9 @@
 // Forms as plain values: canonical numbering, content, and the promises a form keeps.
 //
-// Example: /anta/ with one Place under n and t. Canonical() numbers slot, root and all under it as they are first
-// mentioned, so the second mention of Place is a number already given, and two ways of building the graph come
-// out as the same numbers. Does not handle: rules (graph/, compile/), symbols (text.h).
-// Tested by tests/unit/model/form_test.cc.
+// Example: /anta/ with one Place under n and t. Canonical() numbers slot, root and all under it as they are
+// first mentioned, so the second mention of Place is a number already given, and two ways of building the
+// graph come out as the same numbers. Does not handle: rules (graph/, compile/), symbols (text.h). Tested by
+// tests/unit/model/form_test.cc.
 #include "model/form.h"
 
 #include <algorithm>
@@ -16,8 +16,8 @@ namespace {
 
 constexpr InstanceId kUnnumbered = ~InstanceId{0};
 
-// Renumbers depth first. Daughter lists are built in place in the result, so a short form costs one allocation
-// for each instance that has daughters and four besides.
+// Renumbers depth first. Daughter lists are built in place in the result, so a short form costs one
+// allocation for each instance that has daughters and four besides.
 class Renumberer {
  public:
   explicit Renumberer(const Form& from) : from_(from), number_(from.instances.size(), kUnnumbered) {
@@ -129,8 +129,10 @@ class DefectFinder {
       if (!Reach(item.instance)) return false;
       const NodeId node = form_.instances[item.instance].node;
       if (!slots.insert(item.instance).second) Say(NameOf(item.instance) + " is in two items");
-      if (item.kind == FormItem::Kind::kSlot && node != kSlotNode) Say(NameOf(item.instance) + " stands as a slot");
-      if (item.kind == FormItem::Kind::kFloat && !tree_[node].floating) Say(NameOf(item.instance) + " may not float");
+      if (item.kind == FormItem::Kind::kSlot && node != kSlotNode)
+        Say(NameOf(item.instance) + " stands as a slot");
+      if (item.kind == FormItem::Kind::kFloat && !tree_[node].floating)
+        Say(NameOf(item.instance) + " may not float");
     }
     for (std::size_t i = 0; i < form_.instances.size(); ++i) {
       if (!reached_[i]) continue;
@@ -172,7 +174,8 @@ class DefectFinder {
   void CheckInstance(InstanceId id) {
     const Instance& instance = form_.instances[id];
     const TreeNode& kind = tree_[instance.node];
-    if (instance.value >= ValueCount(kind)) Say("instance " + std::to_string(id) + " of " + kind.name + " has no such value");
+    if (instance.value >= ValueCount(kind))
+      Say("instance " + std::to_string(id) + " of " + kind.name + " has no such value");
     for (std::size_t i = 1; i < instance.daughters.size(); ++i) {
       const Instance& left = form_.instances[instance.daughters[i - 1]];
       const Instance& right = form_.instances[instance.daughters[i]];
@@ -240,9 +243,11 @@ class DefectFinder {
         return std::all_of(test.bundle.begin(), test.bundle.end(),
                            [&](const FeatureTest& feature) { return PassesFeature(feature, slot); });
       case SlotTest::Op::kAnd:
-        return std::all_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, slot); });
+        return std::all_of(test.args.begin(), test.args.end(),
+                           [&](const SlotTest& t) { return Passes(t, slot); });
       case SlotTest::Op::kOr:
-        return std::any_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, slot); });
+        return std::any_of(test.args.begin(), test.args.end(),
+                           [&](const SlotTest& t) { return Passes(t, slot); });
       case SlotTest::Op::kNot:
         return !Passes(test.args[0], slot);
     }
@@ -268,14 +273,15 @@ class DefectFinder {
                        [&](InstanceId daughter) { return Bears(daughter, node, value); });
   }
 
-  // Lines cross unless every instance stands in one unbroken stretch when the lists of all mothers of its kind are
-  // written in order, each mother once.
+  // Lines cross unless every instance stands in one unbroken stretch when the lists of all mothers of its
+  // kind are written in order, each mother once.
   void CheckTiers() {
     std::vector<std::vector<InstanceId>> tiers(tree_.nodes.size());
     std::vector<bool> written(form_.instances.size(), false);
     for (const FormItem& item : form_.items) {
       if (item.kind == FormItem::Kind::kBoundary) continue;
-      if (item.kind == FormItem::Kind::kFloat) tiers[form_.instances[item.instance].node].push_back(item.instance);
+      if (item.kind == FormItem::Kind::kFloat)
+        tiers[form_.instances[item.instance].node].push_back(item.instance);
       Write(item.instance, tiers, written);
     }
     for (std::size_t node = 1; node < tiers.size(); ++node) {
@@ -283,7 +289,8 @@ class DefectFinder {
       for (std::size_t i = 0; i < tiers[node].size(); ++i) {
         const InstanceId id = tiers[node][i];
         if (i > 0 && tiers[node][i - 1] == id) continue;
-        if (!closed.insert(id).second) Say("lines of " + tree_[static_cast<NodeId>(node)].name + " cross at " + NameOf(id));
+        if (!closed.insert(id).second)
+          Say("lines of " + tree_[static_cast<NodeId>(node)].name + " cross at " + NameOf(id));
       }
     }
   }

@@ -1,9 +1,9 @@
 // Completion: which symbol spells a tree.
 //
-// Example: where `omit { -voice in [-son] }`, the tree of d without its Laryngeal node has all that t has but -voice,
-// which omit lists for t: it is spelled t. Listed symbols go before symbols with diacritics, fewest diacritics first.
-// Does not handle: tones and other marks of the slot (they are no part of a root), spelling rules.
-// Tested by tests/unit/model/inventory_test.cc.
+// Example: where `omit { -voice in [-son] }`, the tree of d without its Laryngeal node has all that t has but
+// -voice, which omit lists for t: it is spelled t. Listed symbols go before symbols with diacritics, fewest
+// diacritics first. Does not handle: tones and other marks of the slot (they are no part of a root), spelling
+// rules. Tested by tests/unit/model/inventory_test.cc.
 #include "model/inventory.h"
 
 #include <algorithm>
@@ -56,9 +56,11 @@ class Completer {
       }
       return true;
     }
-    return std::any_of(inventory_.omitted.begin(), inventory_.omitted.end(), [&](const Inventory::OmitEntry& entry) {
-      return entry.node == full.node && entry.value == full.value && symbol_ < entry.takes.size() && entry.takes[symbol_];
-    });
+    return std::any_of(inventory_.omitted.begin(), inventory_.omitted.end(),
+                       [&](const Inventory::OmitEntry& entry) {
+                         return entry.node == full.node && entry.value == full.value &&
+                                symbol_ < entry.takes.size() && entry.takes[symbol_];
+                       });
   }
 
   const Inventory& inventory_;
@@ -77,7 +79,8 @@ Inventory::Spelling Inventory::Complete(const FeatureTree& root) const {
   for (; tiered_ < symbols.size(); ++tiered_) {
     const Symbol& symbol = symbols[tiered_];
     if (!symbol.completes) continue;
-    const std::size_t tier = symbol.kind == Symbol::Kind::kComposite ? static_cast<std::size_t>(symbol.diacritics) : 0;
+    const std::size_t tier =
+        symbol.kind == Symbol::Kind::kComposite ? static_cast<std::size_t>(symbol.diacritics) : 0;
     if (tiers_.size() <= tier) tiers_.resize(tier + 1);
     tiers_[tier].push_back(static_cast<int>(tiered_));
   }

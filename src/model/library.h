@@ -1,7 +1,8 @@
-// The library behind `segments from "ipa"`: what each symbol bears, by feature name, before any tree has a say.
+// The library behind `segments from "ipa"`: what each symbol bears, by feature name, before any tree has a
+// say.
 //
-// Example: ŋ is "+cons +son -syll +nasal .. Dorsal +high -low +back"; in a tree without `low` that name is passed over.
-// The files are described in rulesets/ipa/README.md. Tested by tests/unit/model/library_test.cc.
+// Example: ŋ is "+cons +son -syll +nasal .. Dorsal +high -low +back"; in a tree without `low` that name is
+// passed over. The files are described in rulesets/ipa/README.md. Tested by tests/unit/model/library_test.cc.
 #pragma once
 
 #include <map>
@@ -28,17 +29,19 @@ class Library {
     std::vector<Feature> features;
   };
 
-  // Reads segments.tsv, diacritics.tsv and features.tsv of the library `name`; on failure adds an error at `from`.
+  // Reads segments.tsv, diacritics.tsv and features.tsv of the library `name`; on failure adds an error at
+  // `from`.
   bool Load(const std::string& name, Span from, Diagnostics& diagnostics);
 
-  // The segment a symbol stands for, the library's own diacritics applied; null if it is none of the library's.
+  // The segment a symbol stands for, the library's own diacritics applied; null if it is none of the
+  // library's.
   const Segment* Find(std::string_view symbol);
   bool KnowsFeature(std::string_view name) const { return bare_.count(std::string(name)) != 0; }
   std::vector<std::string> Symbols() const;
   std::vector<std::string> Features() const;
 
-  // The content of a segment in this tree (notation, "What "ipa" says"). Contours the tree has no room for keep their
-  // first value; their names are added to `cut`.
+  // The content of a segment in this tree (notation, "What "ipa" says"). Contours the tree has no room for
+  // keep their first value; their names are added to `cut`.
   FeatureTree ContentOf(const Segment& segment, const Tree& tree, std::vector<std::string>* cut) const;
 
  private:

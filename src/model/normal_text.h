@@ -1,7 +1,9 @@
-// Text as the reader compares it: decomposed, with the equated signs made one (g ɡ, : ː, ' ʼ ’, U+035C U+0361, ʦ t͡s).
+// Text as the reader compares it: decomposed, with the equated signs made one (g ɡ, : ː, ' ʼ ’, U+035C
+// U+0361, ʦ t͡s).
 //
-// Example: "tã" and "tã" (one code point or two) give the same three code points. Offsets lead back to the text as typed.
-// Does not handle: which symbols there are (symbol_trie.h). Tested by tests/unit/model/text_test.cc.
+// Example: "tã" and "tã" (one code point or two) give the same three code points. Offsets lead back to the
+// text as typed. Does not handle: which symbols there are (symbol_trie.h). Tested by
+// tests/unit/model/text_test.cc.
 #pragma once
 
 #include <cstddef>

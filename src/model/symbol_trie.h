@@ -1,7 +1,7 @@
 // Longest match of symbols over normalised code points.
 //
-// Example: with t, t͡ʃ and ʃ listed, "t͡ʃʃ" is t͡ʃ and ʃ. Diacritics are a set: every order of those at a symbol's end is
-// added, so tʰ̪ and t̪ʰ are one symbol. Does not handle: boundaries and length (text.cc).
+// Example: with t, t͡ʃ and ʃ listed, "t͡ʃʃ" is t͡ʃ and ʃ. Diacritics are a set: every order of those at a
+// symbol's end is added, so tʰ̪ and t̪ʰ are one symbol. Does not handle: boundaries and length (text.cc).
 // Tested by tests/unit/model/text_test.cc.
 #pragma once
 

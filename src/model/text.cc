@@ -1,7 +1,7 @@
 // Reading and writing forms. See text.h.
 //
-// Example: "ba:t-a" over p t b a is b, a, length, t, boundary, a; its form has one root on the second and third slot.
-// Does not handle: floats, tags, marks of prosody and tone, spelling rules (an error says so).
+// Example: "ba:t-a" over p t b a is b, a, length, t, boundary, a; its form has one root on the second and
+// third slot. Does not handle: floats, tags, marks of prosody and tone, spelling rules (an error says so).
 // Tested by tests/unit/model/text_test.cc.
 #include "model/text.h"
 
@@ -35,9 +35,11 @@ Boundary BoundaryOf(char32_t code) {
   }
 }
 
-// The words of a character's name that tell it from others: T and STROKE of LATIN CAPITAL LETTER T WITH STROKE.
+// The words of a character's name that tell it from others: T and STROKE of LATIN CAPITAL LETTER T WITH
+// STROKE.
 std::set<std::string> TellingWords(const std::string& name) {
-  static const std::set<std::string> common = {"LATIN", "GREEK", "CYRILLIC", "MODIFIER", "SMALL", "CAPITAL", "LETTER", "WITH", "AND"};
+  static const std::set<std::string> common = {"LATIN",   "GREEK",  "CYRILLIC", "MODIFIER", "SMALL",
+                                               "CAPITAL", "LETTER", "WITH",     "AND"};
   std::istringstream stream(name);
   std::set<std::string> words;
   for (std::string word; stream >> word;) {
@@ -51,9 +53,9 @@ std::set<std::string> TellingWords(const std::string& name) {
 struct Reader::Impl {
   const Grammar* grammar = nullptr;
   SymbolTrie trie;
-  mutable NormalText text;                             // kept between calls: no allocation on the good path
-  std::vector<std::pair<std::u32string, int>> marks;   // declared diacritics that follow their base
-  std::vector<Form> underlying, surface;               // the pool of one slot, per symbol
+  mutable NormalText text;                            // kept between calls: no allocation on the good path
+  std::vector<std::pair<std::u32string, int>> marks;  // declared diacritics that follow their base
+  std::vector<Form> underlying, surface;              // the pool of one slot, per symbol
 
   const Inventory& inventory() const { return grammar->inventory; }
   const Symbol& symbol(int id) const { return grammar->inventory.symbols[static_cast<std::size_t>(id)]; }
@@ -82,7 +84,8 @@ Reader::Reader(const Grammar& grammar) : impl_(new Impl) {
     }
   }
   for (std::size_t i = 0; i < inventory.marks.size(); ++i) {
-    if (!inventory.marks[i].before) impl_->marks.emplace_back(Normalise(inventory.marks[i].text), static_cast<int>(i));
+    if (!inventory.marks[i].before)
+      impl_->marks.emplace_back(Normalise(inventory.marks[i].text), static_cast<int>(i));
   }
 }
 
@@ -97,7 +100,8 @@ bool Reader::Impl::Allowed(int id, Side side) const {
   return side == Side::kUnderlying ? s.in_underlying : s.completes;
 }
 
-bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const {
+bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens,
+                        TextError* error) const {
   tokens->clear();
   text.Assign(typed);
   const NormalText::Unit* units = text.units.data();
@@ -114,7 +118,8 @@ bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* t
     const char32_t code = units[i].code;
     if (code == kLengthSign) {
       if (tokens->empty() || tokens->back().kind == Token::Kind::kBoundary) {
-        return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long", error);
+        return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long",
+                    error);
       }
       ++i;
       // Marks may stand behind the length sign: aː̃ is ãː.
@@ -144,7 +149,8 @@ const std::pair<std::u32string, int>* Reader::Impl::MarkAt(std::size_t position)
   for (const auto& mark : marks) {
     if (mark.first.size() > text.units.size() - position) continue;
     bool same = true;
-    for (std::size_t k = 0; k < mark.first.size(); ++k) same = same && text.units[position + k].code == mark.first[k];
+    for (std::size_t k = 0; k < mark.first.size(); ++k)
+      same = same && text.units[position + k].code == mark.first[k];
     if (same) return &mark;
   }
   return nullptr;
@@ -164,14 +170,16 @@ int Reader::Impl::WithMarksAfterLength(int id, std::size_t* position) const {
   NormalText cluster;
   cluster.Assign(written);
   const SymbolTrie::Match match = trie.Longest(cluster.units.data(), 0, cluster.units.size());
-  if (match.symbol < 0 || match.end != cluster.units.size()) return id;  // the mark is then reported where it stands
+  if (match.symbol < 0 || match.end != cluster.units.size())
+    return id;  // the mark is then reported where it stands
   *position = end;
   return match.symbol;
 }
 
 // ---- errors -----------------------------------------------------------------------------------------
 
-bool Reader::Impl::Fail(std::size_t unit, Kind kind, std::string message, std::string remedy, TextError* error) const {
+bool Reader::Impl::Fail(std::size_t unit, Kind kind, std::string message, std::string remedy,
+                        TextError* error) const {
   error->kind = kind;
   error->offset = text.units[unit].begin;
   error->length = text.units[unit].end - text.units[unit].begin;
@@ -200,14 +208,16 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
     case U'.':
     case U'\u02C8':
     case U'\u02CC':
-      return Fail(unit, Kind::kNotSupportedYet, "marks of stress and syllables (ˈ ˌ .) are not read by this release",
-                  "leave them out", error);
+      return Fail(unit, Kind::kNotSupportedYet,
+                  "marks of stress and syllables (ˈ ˌ .) are not read by this release", "leave them out",
+                  error);
     case U'{':
       return Fail(unit, Kind::kNotSupportedYet, "floating instances {..} are not read by this release",
                   "leave the float out", error);
     case U'@':
     case U'\u221A':
-      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release", "leave the tag out", error);
+      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release",
+                  "leave the tag out", error);
     default:
       break;
   }
@@ -226,29 +236,33 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
       return Fail(unit, Kind::kBadForm, "'" + shown + "' carries more than two diacritics",
                   "list " + shown + " in `segments`, or use it in the grammar's data or rules", error);
     }
-    return Fail(unit, Kind::kBadForm, "'" + shown + "' is no symbol: ◌" + ToUtf8(mark->first) + " may not stand on that base",
+    return Fail(unit, Kind::kBadForm,
+                "'" + shown + "' is no symbol: ◌" + ToUtf8(mark->first) + " may not stand on that base",
                 "change the diacritic's `on`, or list " + shown + " in `segments`", error);
   }
-  const std::string shown = IsMark(code) ? "◌" + ToUtf8(std::u32string(1, code)) : ToUtf8(std::u32string(1, code));
+  const std::string shown =
+      IsMark(code) ? "◌" + ToUtf8(std::u32string(1, code)) : ToUtf8(std::u32string(1, code));
   const std::string nearest = Nearest(unit);
   std::string remedy = nearest.empty() ? "" : "did you mean '" + nearest + "'? ";
   remedy += IsLeaning(code) ? "declare it in `diacritics`, or list the symbol it is part of in `segments`"
                             : "or list it in `segments` or `allophones`";
   if (nearest.empty() && !IsLeaning(code)) remedy = "list it in `segments` or `allophones`";
   return Fail(unit, Kind::kUnknownCharacter,
-              "'" + shown + "' (" + CodePointName(code) + ", " + CharacterName(code) + ") is in no symbol of the grammar", remedy,
-              error);
+              "'" + shown + "' (" + CodePointName(code) + ", " + CharacterName(code) +
+                  ") is in no symbol of the grammar",
+              remedy, error);
 }
 
-// The listed symbol that looks most like the character: the same letter in another case or with other marks, else the
-// one whose Unicode name shares most telling words with it.
+// The listed symbol that looks most like the character: the same letter in another case or with other marks,
+// else the one whose Unicode name shares most telling words with it.
 std::string Reader::Impl::Nearest(std::size_t unit) const {
   const char32_t code = text.units[unit].code;
   if (IsMark(code)) {
     // Base and mark: perhaps a symbol with another mark on the same base.
     for (const Symbol& s : inventory().symbols) {
       const std::u32string normal = Normalise(s.text);
-      if (unit > 0 && normal.size() > 1 && normal[0] == text.units[unit - 1].code && IsMark(normal[1])) return s.text;
+      if (unit > 0 && normal.size() > 1 && normal[0] == text.units[unit - 1].code && IsMark(normal[1]))
+        return s.text;
     }
     return "";
   }
@@ -276,7 +290,8 @@ Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
   const std::vector<Form>& pools = side == Side::kUnderlying ? impl_->underlying : impl_->surface;
   std::size_t size = tokens.size();
   for (const Token& token : tokens) {
-    if (token.kind == Token::Kind::kSymbol) size += pools[static_cast<std::size_t>(token.symbol)].instances.size();
+    if (token.kind == Token::Kind::kSymbol)
+      size += pools[static_cast<std::size_t>(token.symbol)].instances.size();
   }
   Form form;
   form.instances.reserve(size);
@@ -305,8 +320,8 @@ Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
 // ---- forms to text ----------------------------------------------------------------------------------
 namespace {
 
-// Writes symbols, ː for further slots of a root that stand directly after it. `boundaries`: those with a sign of their
-// own in `sign`. Returns false at the first root `spell` gives nothing for.
+// Writes symbols, ː for further slots of a root that stand directly after it. `boundaries`: those with a sign
+// of their own in `sign`. Returns false at the first root `spell` gives nothing for.
 template <typename Spell, typename Sign>
 bool Write(const Form& form, Spell spell, Sign sign, std::string* text) {
   std::int64_t before = -1;
@@ -413,7 +428,9 @@ std::string ComparisonKey(std::string_view surface) {
     for (; length > 0; --length) result += std::u32string(cluster);
     cluster.clear();
   };
-  const auto is_prefix = [](char32_t code) { return code == 0x207F || code == 0x1D50 || code == 0x1D51; };  // ⁿ ᵐ ᵑ
+  const auto is_prefix = [](char32_t code) {
+    return code == 0x207F || code == 0x1D50 || code == 0x1D51;
+  };  // ⁿ ᵐ ᵑ
   for (std::size_t i = 0; i < text.units.size(); ++i) {
     const char32_t code = text.units[i].code;
     if (BoundaryOf(code) != Boundary::kNone || code == U'|') {
@@ -423,7 +440,8 @@ std::string ComparisonKey(std::string_view surface) {
     } else if (is_prefix(code) && i + 1 < text.units.size() && !IsLeaning(text.units[i + 1].code)) {
       close();
       cluster = code;
-    } else if (!cluster.empty() && (IsLeaning(code) || cluster.back() == kTie || (cluster.size() == 1 && is_prefix(cluster[0])))) {
+    } else if (!cluster.empty() && (IsLeaning(code) || cluster.back() == kTie ||
+                                    (cluster.size() == 1 && is_prefix(cluster[0])))) {
       cluster += code;
     } else {
       close();
