@@ -95,7 +95,7 @@ void Requests::Add(const LabelSlots& match) {
         AddSpread(change, match);
         break;
       case Change::Op::kDelink:
-        AddDelink(change, slot);
+        AddDelink(change, match);
         break;
       case Change::Op::kSet:
       case Change::Op::kFill:
@@ -123,17 +123,29 @@ void Requests::AddSpread(const Change& change, const LabelSlots& match) {
   const InstanceId carried = Carried(view_, change, match);
   if (carried == kNone) return;
   const int target = match[change.target];
-  Lines& lines = LinesAt(MakeMotherOf(target, change.node), change.node);
+  const InstanceId mother = MakeMotherOf(target, change.node);
+  if (Has(OldList(mother, change.node), carried)) return;  // held already: no line is drawn
+  Lines& lines = LinesAt(mother, change.node);
   IdList& side = match[change.source] < target ? lines.left : lines.right;
   if (!Has(side, carried)) side.push_back(carried);
   lines.room = std::min(lines.room, RoomAt(view_, change.node, target));
 }
 
-void Requests::AddDelink(const Change& change, int slot) {
+// What the same match spreads to the same mother is not cut: only the mother's other instances are.
+void Requests::AddDelink(const Change& change, const LabelSlots& match) {
+  const int slot = match[change.target];
   const InstanceId mother =
       view_.graph().FindUnder(view_.slot(slot), view_.graph().tree()[change.node].mother);
-  if (mother == kNone || OldList(mother, change.node).empty()) return;
-  LinesAt(mother, change.node).delinked = true;
+  if (mother == kNone) return;
+  for (InstanceId id : OldList(mother, change.node)) {
+    const bool spread_too = std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& other) {
+      return other.op == Change::Op::kSpread && other.target == change.target && other.node == change.node &&
+             Carried(view_, other, match) == id;
+    });
+    if (spread_too) continue;
+    Lines& lines = LinesAt(mother, change.node);
+    if (!Has(lines.cut, id)) lines.cut.push_back(id);
+  }
 }
 
 void Requests::AddSetting(const Setting& setting, int slot, bool only_missing) {
@@ -160,7 +172,7 @@ Requests::Lines& Requests::LinesAt(InstanceId mother, NodeId node) {
   for (Lines& lines : lines_) {
     if (lines.mother == mother && lines.node == node) return lines;
   }
-  lines_.push_back({mother, node, {}, {}, false, std::numeric_limits<int>::max()});
+  lines_.push_back({mother, node, {}, {}, {}, std::numeric_limits<int>::max()});
   return lines_.back();
 }
 
@@ -205,19 +217,15 @@ IdList Requests::OldList(InstanceId mother, NodeId node) const {
 Requests::Merged Requests::Merge(const Lines& lines) const {
   const Graph& before = view_.graph();
   IdList kept = OldList(lines.mother, lines.node);
-  if (lines.delinked) {
-    kept.erase(std::remove_if(kept.begin(), kept.end(),
-                              [&](InstanceId id) { return !Has(lines.left, id) && !Has(lines.right, id); }),
-               kept.end());
-  }
+  kept.erase(std::remove_if(kept.begin(), kept.end(), [&](InstanceId id) { return Has(lines.cut, id); }), kept.end());
   Merged merged;
   merged.nothing_kept = kept.empty();
   for (InstanceId id : lines.left) {
-    if (Has(kept, id) || (!kept.empty() && before.Equal(id, kept.front()))) continue;
+    if (!kept.empty() && before.Equal(id, kept.front())) continue;
     merged.added_left.push_back(id);
   }
   for (InstanceId id : lines.right) {
-    if (Has(kept, id) || Has(merged.added_left, id)) continue;
+    if (Has(merged.added_left, id)) continue;
     if (!kept.empty() && before.Equal(id, kept.back())) continue;
     merged.added_right.push_back(id);
   }

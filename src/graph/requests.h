@@ -5,7 +5,7 @@
 // are merged; two that cannot both be met are ambiguous. A match alone may fail: no room, or a line would cross
 // another (the ban on crossing lines: Goldsmith 1976).
 // Everything is decided on the form before; then insertions, lines, contents, deletions, in that order.
-// Tested by tests/unit/graph/requests_test.cc.
+// Tested by tests/unit/graph/graph_changes_test.cc and graph_rulings_test.cc.
 #pragma once
 
 #include <boost/container/small_vector.hpp>
@@ -32,8 +32,8 @@ class Requests {
   struct Lines {
     InstanceId mother;
     NodeId node;
-    IdList left, right;  // instances asked for at its left and its right edge
-    bool delinked = false;
+    IdList left, right;  // new instances asked for at its left and its right edge
+    IdList cut;          // of its own
     int room;
   };
   struct Content {
@@ -82,7 +82,7 @@ class Requests {
   InstanceId FindMade(InstanceId above, NodeId node) const;
   Lines& LinesAt(InstanceId mother, NodeId node);
   void AddSpread(const Change& change, const LabelSlots& match);
-  void AddDelink(const Change& change, int slot);
+  void AddDelink(const Change& change, const LabelSlots& match);
   void AddSetting(const Setting& setting, int slot, bool only_missing);
   void AskContent(InstanceId mother, NodeId node, const std::vector<Value>& values);
 
