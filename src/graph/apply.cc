@@ -70,11 +70,10 @@ class Matches {
 
  private:
   int Find(const LabelSlots& labels) {
-    for (std::size_t i = 0; i < matches_.size(); ++i) {
-      if (matches_[i].labels == labels) return static_cast<int>(i);
+    if (matches_.empty() || matches_.back().labels != labels) {  // the ways of one match stand together
+      matches_.emplace_back();
+      matches_.back().labels = labels;
     }
-    matches_.emplace_back();
-    matches_.back().labels = labels;
     return static_cast<int>(matches_.size()) - 1;
   }
 
@@ -179,7 +178,7 @@ class Run {
   // Carries out the matches together (those at the visit, if there is one). True if the form changed.
   bool Apply(const View& view, Matches& matches, const Visit* visit) {
     Requests requests(view, rule_);
-    bool some = false;
+    std::vector<const Match*> changing;
     for (std::size_t i = 0; i < matches.size(); ++i) {
       if (visit != nullptr && !IsAt(view, matches.labels(i), *visit)) continue;
       const Match& match = matches.Judged(i);
@@ -188,13 +187,15 @@ class Run {
         if (notes_) NoteBlocked(view, rule_, match.labels, NameOf(match.failure), &result_.notes);
         continue;
       }
-      some = true;
       requests.Add(match.labels);
-      if (!match.changes) continue;
-      ++result_.changed;
-      if (notes_) NoteChanges(view, rule_, match.labels, &result_.notes);
+      if (match.changes) changing.push_back(&match);
     }
-    if (!some || !requests.Changes()) return false;
+    // One may undo another: what one match cuts, another may ask for.
+    if (changing.empty() || !requests.Changes()) return false;
+    result_.changed += static_cast<int>(changing.size());
+    if (notes_) {
+      for (const Match* match : changing) NoteChanges(view, rule_, match->labels, &result_.notes);
+    }
     result_.ambiguous = requests.Ambiguity();
     if (visit != nullptr) result_.reaches = Reached(view, requests, *visit);
     if (!Problem().empty()) return false;

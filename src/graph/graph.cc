@@ -118,7 +118,9 @@ int RankUnder(const Tree& tree, NodeId mother, NodeId node) {
 Graph::Graph(const Form& form, const Tree& tree) : items(form.items), tree_(&tree) {
   nodes.reserve(form.instances.size() + 16);
   for (const Instance& instance : form.instances) {
-    nodes.push_back({instance.node, instance.value, {}});
+    nodes.emplace_back();
+    nodes.back().node = instance.node;
+    nodes.back().value = instance.value;
     nodes.back().daughters.assign(instance.daughters.begin(), instance.daughters.end());
   }
 }
@@ -172,7 +174,9 @@ FeatureTree Graph::Content(InstanceId id) const {
 }
 
 InstanceId Graph::Add(NodeId node, Value value) {
-  nodes.push_back({node, value, {}});
+  nodes.emplace_back();
+  nodes.back().node = node;
+  nodes.back().value = value;
   return static_cast<InstanceId>(nodes.size() - 1);
 }
 

@@ -3,7 +3,7 @@
 // The interpreter's own structure: a pool of instances, each with the list of those hanging from it, and the string
 // of items above them. In /anta/ with one Place for n and t, two roots list the same Place. The plain value
 // (model/form.h) is what goes in and comes out.
-// Tested by tests/unit/graph/graph_test.cc.
+// Tested by tests/unit/graph/graph_rulings_test.cc.
 #pragma once
 
 #include <boost/container/small_vector.hpp>

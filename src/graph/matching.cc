@@ -61,9 +61,10 @@ class Search {
     known_.resize(slot_items_.size() * view.size(), 0);
   }
 
-  // Every way; each once.
+  // Every way, each once, by the slots of the labels from left to right.
   std::vector<Way> All() {
     if (!SomeItemHasNoSlot()) Continue({&pattern_, 0, nullptr, 0, {}, nullptr});
+    if (ways_.size() > 1) KeepEachOnce();
     return std::move(ways_);
   }
   bool Any() { return !SomeItemHasNoSlot() && Continue({&pattern_, 0, nullptr, 0, {}, nullptr}); }
@@ -216,15 +217,17 @@ class Search {
       if (!Passable(gap)) return false;
     }
     if (fixed_ != nullptr) return true;
-    const bool known = std::any_of(ways_.begin(), ways_.end(), [this](const Way& way) {
-      return way.labels == labels_ &&
-             std::equal(way.gaps.begin(), way.gaps.end(), gaps_.begin(), gaps_.end(),
-                        [](const Way::Gap& a, const Way::Gap& b) {
-                          return a.item == b.item && a.left == b.left && a.right == b.right;
-                        });
-    });
-    if (!known) ways_.push_back({labels_, gaps_});
+    ways_.push_back({labels_, gaps_});
+    if (ways_.size() >= most_) {  // quantities come to the same match in many ways
+      KeepEachOnce();
+      most_ = std::max(most_, 2 * ways_.size());
+    }
     return false;
+  }
+
+  void KeepEachOnce() {
+    std::sort(ways_.begin(), ways_.end());
+    ways_.erase(std::unique(ways_.begin(), ways_.end()), ways_.end());
   }
 
   // Nothing that the gap is measured by stands in it; also notes which of its ends the rule changes.
@@ -251,8 +254,9 @@ class Search {
   boost::container::small_vector<signed char, 96> known_;  // per slot item and slot: 0 not tested yet
   Place place_;
   LabelSlots labels_;
-  boost::container::small_vector<Way::Gap, 2> gaps_;
+  std::vector<Way::Gap> gaps_;
   std::vector<Way> ways_;
+  std::size_t most_ = 256;
 };
 
 Boundary RunAfter(const Graph& graph, int item) {
@@ -358,6 +362,11 @@ bool View::Passes(const SlotTest& test, int ordinal) const {
       return rooted && !Passes(test.args.front(), ordinal);
   }
   return false;
+}
+
+bool operator==(const Way& a, const Way& b) { return a.labels == b.labels && a.gaps == b.gaps; }
+bool operator<(const Way& a, const Way& b) {
+  return a.labels != b.labels ? a.labels < b.labels : a.gaps < b.gaps;
 }
 
 std::vector<Way> FindWays(const View& view, const Rule& rule) {

@@ -4,10 +4,11 @@
 // boundary between them is weaker than `#`), `A:[+nasal] # B:[-son]` on nothing (the edges of a word are
 // never crossed). What a match then asks for, and whether it may, is requests.h.
 // Not here: the no-nearer-slot condition on gaps, which needs to know which matches fail (apply.cc).
-// Tested by tests/unit/graph/matching_test.cc.
+// Tested by tests/unit/graph/graph_rulings_test.cc.
 #pragma once
 
 #include <boost/container/small_vector.hpp>
+#include <tuple>
 #include <vector>
 
 #include "graph/graph.h"
@@ -66,12 +67,21 @@ struct Way {
     const PatternItem* item;
     int left, right;               // ordinals of the slots on its two sides
     bool left_changes, right_changes;  // is that item changed by the rule?
+
+    friend bool operator==(const Gap& a, const Gap& b) {
+      return a.item == b.item && a.left == b.left && a.right == b.right;
+    }
+    friend bool operator<(const Gap& a, const Gap& b) {
+      return std::tie(a.left, a.right, a.item) < std::tie(b.left, b.right, b.item);
+    }
   };
   LabelSlots labels;
-  boost::container::small_vector<Gap, 2> gaps;
+  std::vector<Gap> gaps;
 };
+bool operator==(const Way& a, const Way& b);
+bool operator<(const Way& a, const Way& b);  // by labels first, so that the ways of one match stand together
 
-// All ways of matching rule.where, measured gaps included, that no `unless` discards; each once.
+// All ways of matching rule.where, measured gaps included, that no `unless` discards; each once, in order.
 std::vector<Way> FindWays(const View& view, const Rule& rule);
 
 }  // namespace tiersmith::graph

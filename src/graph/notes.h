@@ -1,5 +1,5 @@
 // Notes for traces: what a match did, and why one was blocked, in words with symbols.
-// Tested by tests/unit/graph/notes_test.cc.
+// Tested by tests/unit/graph/graph_rulings_test.cc.
 #pragma once
 
 #include <string>
