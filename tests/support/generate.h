@@ -33,7 +33,7 @@ struct FormOptions {
   double empty = 0.0;           // a slot without a root
   double again = 0.3;           // a slot like the one before: makes equal neighbours, hence sharing, likely
   double geminate = 0.3;        // equal neighbouring roots are one
-  double share = 0.4;           // equal neighbours on any other tier are one
+  double share = 0.25;          // equal neighbours on any other tier are one
   std::vector<NodeId> sharing;  // which tiers may be shared; empty: all
 };
 Form RandomForm(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, const FormOptions& options);
@@ -69,6 +69,9 @@ void NoteEmpty(Pattern* pattern);
 // A rule of any shape. Not refused, but it may be ambiguous, reach other roots, or never change anything.
 Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
                 const std::vector<FeatureTree>& letters);
+// One that does this, among perhaps other things, in this mode.
+Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+                const std::vector<FeatureTree>& letters, Change::Op op, Rule::Mode mode);
 
 // What a rule does to a sample of forms.
 struct Effect {

@@ -56,13 +56,12 @@ class RuleMaker {
     }
   }
 
-  Rule Make() {
+  Rule Make(Op first, Rule::Mode mode) {
     Rule rule;
     rule.name = "r";
-    const int mode = Below(rng_, 3);
-    rule.mode = mode == 0 ? Rule::Mode::kAtOnce : mode == 1 ? Rule::Mode::kRightward : Rule::Mode::kLeftward;
-    MakeWhere(&rule);
-    MakeChanges(&rule);
+    rule.mode = mode;
+    MakeWhere(&rule, first == Op::kSpread ? 2 : 1);
+    MakeChanges(&rule, first);
     while (Chance(rng_, 0.15) && rule.unless.size() < 2) rule.unless.push_back(Unless(rule));
     NoteEmpty(&rule.where);
     for (Pattern& pattern : rule.unless) NoteEmpty(&pattern);
@@ -130,9 +129,9 @@ class RuleMaker {
     return item;
   }
 
-  void MakeWhere(Rule* rule) {
+  void MakeWhere(Rule* rule, int least) {
     const int pick = Below(rng_, 10);
-    const int slots = pick < 2 ? 1 : pick < 7 ? 2 : 3;
+    const int slots = std::max(least, pick < 2 ? 1 : pick < 7 ? 2 : 3);
     std::vector<PatternItem>& items = rule->where.items;
     if (Chance(rng_, 0.1)) items.push_back(EdgeItem());
     if (Chance(rng_, 0.04)) items.push_back(GroupItem());
@@ -230,53 +229,76 @@ class RuleMaker {
     return Chance(rng_, empties ? 0.5 : 0.03) ? kRootNode : Any(nodes_);
   }
 
-  void MakeChanges(Rule* rule) {
+  void MakeChanges(Rule* rule, Op op) {
     const int labels = static_cast<int>(rule->labels.size());
     int target = Below(rng_, labels);
     const int count = Chance(rng_, 0.2) ? 2 : 1;
     for (int i = 0; i < count; ++i) {
+      if (i > 0) op = labels > 1 ? AnyOp() : Op::kSet;
       if (i > 0 && rule->mode == Rule::Mode::kAtOnce && Chance(rng_, 0.6)) target = Below(rng_, labels);
-      Change change;
-      change.target = target;
-      switch (Below(rng_, labels > 1 ? 8 : 5)) {
-        case 0:
-          change.op = Op::kDelink;
-          change.node = Node(*rule);
-          break;
-        case 1:
-          change.op = Op::kSet;
-          change.settings = Settings(*rule, target, true);
-          break;
-        case 2:
-          change.op = Op::kFill;
-          change.settings = Settings(*rule, target, false);
-          break;
-        case 3:
-          change.op = Op::kInsert;
-          change.inserted = Any(letters_);
-          change.before = Chance(rng_, 0.5);
-          break;
-        case 4:
-          change.op = Op::kDelete;
-          break;
-        case 5:
-        case 6:
-        case 7: {
-          change.op = Op::kSpread;
-          change.node = Node(*rule);
-          change.source = (target + 1 + Below(rng_, labels - 1)) % labels;
-          rule->changes.push_back(change);
-          if (!Chance(rng_, 0.5)) continue;
-          change.op = Op::kDelink;
-          change.source = -1;
-          break;
-        }
-      }
-      if ((change.op == Op::kSet || change.op == Op::kFill) && change.settings.empty()) continue;
-      rule->changes.push_back(change);
+      MakeChange(rule, op, target);
     }
   }
 
+  void MakeChange(Rule* rule, Op op, int target) {
+    const int labels = static_cast<int>(rule->labels.size());
+    Change change;
+    change.op = op;
+    change.target = target;
+    switch (op) {
+      case Op::kSpread: {
+        change.node = Node(*rule);
+        change.source = (target + 1 + Below(rng_, labels - 1)) % labels;
+        rule->changes.push_back(change);
+        const bool delinks = Chance(rng_, 0.5);
+        MakeBear(rule, change.source, change.node, FeatureTest::Kind::kBears);
+        if (!delinks) MakeBear(rule, target, change.node, FeatureTest::Kind::kLacks);
+        if (!delinks) return;
+        change.op = Op::kDelink;
+        change.source = -1;
+        break;
+      }
+      case Op::kDelink:
+        change.node = Node(*rule);
+        break;
+      case Op::kSet:
+      case Op::kFill:
+        change.settings = Settings(*rule, target, op == Op::kSet);
+        if (change.settings.empty()) return;
+        if (op == Op::kFill) MakeBear(rule, target, change.settings.front().node, FeatureTest::Kind::kLacks);
+        break;
+      case Op::kInsert:
+        change.inserted = Any(letters_);
+        change.before = Chance(rng_, 0.5);
+        break;
+      case Op::kDelete:
+        break;
+    }
+    rule->changes.push_back(change);
+  }
+
+  // Mostly asks for what lets a spread do something: a source that bears the node, a target that lacks it.
+  void MakeBear(Rule* rule, int label, NodeId node, FeatureTest::Kind kind) {
+    if (node == kRootNode || Chance(rng_, 0.4)) return;
+    for (PatternItem& item : rule->where.items) {
+      if (item.kind != Kind::kSlot || item.label != label || MentionsEmpty(item.test)) continue;
+      if (item.test.op != SlotTest::Op::kBundle || Chance(rng_, 0.5)) item.test = SlotTest();
+      item.test.op = SlotTest::Op::kBundle;
+      item.test.bundle.push_back({kind, node, 0});
+    }
+  }
+
+ public:
+  Op AnyOp() {
+    const Op all[] = {Op::kSpread, Op::kSpread, Op::kDelink, Op::kSet, Op::kFill, Op::kInsert, Op::kDelete};
+    return all[Below(rng_, 7)];
+  }
+  Rule::Mode AnyMode() {
+    const Rule::Mode all[] = {Rule::Mode::kAtOnce, Rule::Mode::kRightward, Rule::Mode::kLeftward};
+    return all[Below(rng_, 3)];
+  }
+
+ private:
   Rng& rng_;
   const Grammar& grammar_;
   const Tree& tree_;
@@ -326,6 +348,9 @@ bool Refused(const Tree& tree, const Rule& rule) {
       if (UnderContour(tree, node)) return true;
       for (const Change& other : rule.changes) {
         if (Relinks(other) && other.node != node && tree.Dominates(other.node, node)) return true;
+        for (const Setting& setting : other.settings) {
+          if (setting.values.empty() && setting.node != node && tree.Dominates(setting.node, node)) return true;
+        }
       }
     }
   }
@@ -334,8 +359,16 @@ bool Refused(const Tree& tree, const Rule& rule) {
 
 Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
                 const std::vector<FeatureTree>& letters) {
+  RuleMaker maker(rng, grammar, tests, letters);
+  const Op op = maker.AnyOp();
+  const Rule::Mode mode = maker.AnyMode();
+  return RandomRule(rng, grammar, tests, letters, op, mode);
+}
+
+Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+                const std::vector<FeatureTree>& letters, Change::Op op, Rule::Mode mode) {
   for (;;) {
-    Rule rule = RuleMaker(rng, grammar, tests, letters).Make();
+    Rule rule = RuleMaker(rng, grammar, tests, letters).Make(op, mode);
     if (!Refused(grammar.tree, rule)) return rule;
   }
 }
@@ -358,8 +391,12 @@ Rule UsefulRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& 
   Rule best;
   int best_changed = -1;
   const bool problems = with_problems && Chance(rng, 0.2);
+  // What it does is chosen first, or the changes that come easily (insert, delete) would be nearly all.
+  RuleMaker maker(rng, grammar, tests, letters);
+  const Op op = maker.AnyOp();
+  const Rule::Mode mode = maker.AnyMode();
   for (int tries = 0; tries < 200; ++tries) {
-    const Rule rule = RandomRule(rng, grammar, tests, letters);
+    const Rule rule = RandomRule(rng, grammar, tests, letters, op, mode);
     const Effect effect = EffectOn(grammar, rule, sample);
     if (!problems && effect.ambiguous + effect.reaching > 0) continue;
     if (effect.changed > best_changed) {

@@ -1,6 +1,7 @@
 // The generators of the agreement tests: what they make is well-formed, varied, and changes things.
 #include <catch2/catch.hpp>
 #include <map>
+#include <memory>
 #include <set>
 
 #include "graph/interpreter.h"
@@ -173,6 +174,34 @@ TEST_CASE("generate: a case is printed in the notation", "[unit]") {
   CHECK(printed.find("Place > •Labial •Coronal •Dorsal\n") != std::string::npos);
   CHECK(printed.find("derive case.tier 'an' --trace") != std::string::npos);
   CHECK(printed.find("archisegments {") != std::string::npos);
+}
+
+// A node of one tree by its name in another: printing a tree may number it differently.
+Form Renumbered(Form form, const Tree& from, const Tree& to) {
+  for (Instance& instance : form.instances) instance.node = *to.Find(from[instance.node].name);
+  return form;
+}
+
+TEST_CASE("generate: a printed grammar is read back as the same grammar", "[unit]") {
+  Rng rng(4);
+  for (int i = 0; i < 20; ++i) {
+    const Grammar g = RandomGrammar(rng, 6, /*with_problems=*/true);
+    const std::string text = PrintGrammar(g);
+    CAPTURE(text);
+    Diagnostics diagnostics;
+    const auto read = LoadGrammarText("case.tier", text, std::make_shared<SourceMap>(), diagnostics);
+    for (const Diagnostic& diagnostic : diagnostics.all()) {
+      if (diagnostic.severity == Severity::kError) FAIL_CHECK(diagnostic.message);
+    }
+    REQUIRE(read != nullptr);
+    const std::vector<FeatureTree> letters = LettersOf(g);
+    for (int k = 0; k < 25; ++k) {
+      const Form form = RandomForm(rng, g, letters, FormOptions());
+      const Derivation a = Derive(g, form), b = Derive(*read, Renumbered(form, g.tree, read->tree));
+      CHECK(a.problem == b.problem);
+      if (a.problem.empty()) CHECK(Dump(a.surface, g.tree) == Dump(b.surface, read->tree));
+    }
+  }
 }
 
 }  // namespace

@@ -214,6 +214,8 @@ TEST_CASE("graph: requests that meet on one mother", "[unit]") {
   const Grammar g = SmallGrammar();
   const Rule sides = RuleBuilder(g, "A:[] B:[no cont] C:[]").Spread("A.cont", "B").Spread("C.cont", "B");
   const Rule contents = RuleBuilder(g, "A:[+nasal] B:[-son]").Set("A", "+ant").Set("B", "-ant");
+  const Rule nasal = RuleBuilder(g, "A:[+nasal] B:[-syll Place]").Spread("B.Place", "A").Delink("A.Place");
+  const Rule lose = RuleBuilder(g, "A:[+nasal] B:[-syll]").Spread("B.Place", "A").Delink("A.Place");
   // From two slots off, from the left or from the right.
   Rule off = RuleBuilder(g, "A:[Place] [no Place] B:[no Place]").Spread("A.Place", "B");
   Pattern mirrored = off.where;
@@ -234,6 +236,12 @@ TEST_CASE("graph: requests that meet on one mother", "[unit]") {
                 {contents, "n{no ant Coronal:1} t{no ant Coronal:1}", "", "ambiguous"},
                 {RuleBuilder(g, "A:[voice] B:[-son]").Spread("A.voice", "B").Delink("B.voice").Set("B", "-voice"),
                  "a d", "", "ambiguous"},
+                // Between the halves of a long nasal nothing is asked (what is shared already is not spread), so nothing
+                // stands against the line from p, nor against the cut of what the root had.
+                {nasal, "n{root:1} n{root:1} p", "m{root:1 Place:1} m{root:1} p{Place:1}"},
+                {nasal, "n{Place:1} n{Place:1} p", "n m{Place:1} p{Place:1}"},
+                {nasal, "m{root:1} m{root:1} N", "m{root:1} m{root:1} N"},
+                {lose, "n{root:1} n{root:1} N", "N{root:1} N{root:1} N"},
                 // Two changes, each fine alone, whose lines would cross each other.
                 {off, "p N N", "p{Place:1} N m{Place:1}"},
                 {off, "p N N t", "", "ambiguous"},
