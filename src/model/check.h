@@ -120,6 +120,7 @@ class Checker {
     bool alternative = false;            // inside one of several alternatives
     std::vector<std::string> expanding;  // named patterns being expanded
   };
+  void CheckPatterns();
   void CheckRules();
   void CheckRule(const syntax::Rule& written);
   void CountMentions(const syntax::Pattern& pattern, RuleContext* context);
@@ -167,6 +168,7 @@ class Checker {
   std::set<std::string> failed_classes_;
   std::vector<std::string> resolving_;  // classes being resolved
   std::map<std::string, const syntax::NamedPattern*> patterns_;
+  std::set<std::string> failed_patterns_;
   std::vector<std::pair<NodeId, const syntax::Set*>> rooms_;
   std::vector<Entry> entries_;  // beside Inventory::symbols
   std::vector<Sign> signs_;     // beside Inventory::marks

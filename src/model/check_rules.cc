@@ -55,7 +55,20 @@ Span Covering(Span a, Span b) {
 
 }  // namespace
 
+// A named pattern is told once, whether a rule uses it or not.
+void Checker::CheckPatterns() {
+  for (const auto& [name, declared] : patterns_) {
+    Rule scratch;
+    RuleContext context;
+    context.rule = &scratch;
+    context.expanding.push_back(name);
+    Pattern pattern;
+    if (!ResolvePattern(declared->pattern, &context, &pattern)) failed_patterns_.insert(name);
+  }
+}
+
 void Checker::CheckRules() {
+  CheckPatterns();
   std::map<std::string, Span> seen;
   for (const syntax::Top& top : file_.tops) {
     const auto* rule = std::get_if<syntax::Rule>(&top);
@@ -251,6 +264,10 @@ bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleCo
     return bad("'" + label.text + "' labels no item of the rule",
                "in `unless` only labels of the `where` mean something; take it away");
   }
+  if (!context->expanding.empty()) {
+    return bad("a named pattern has no labels inside",
+               "take the label away, or write the pattern out in the rule");
+  }
   if (known != context->own_labels.end()) {
     return bad("label '" + label.text + "' is used twice", "give each item a label of its own");
   }
@@ -340,6 +357,7 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
   }
   const auto named = patterns_.find(name);
   if (named != patterns_.end() && classes_.count(name) == 0) {
+    if (failed_patterns_.count(name) != 0) return false;  // said where it is declared
     if (std::find(context->expanding.begin(), context->expanding.end(), name) != context->expanding.end()) {
       Error(Kind::kBadRule, item.span, "pattern '" + name + "' is told by itself", "write it out");
       return false;
