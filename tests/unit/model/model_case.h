@@ -1,4 +1,4 @@
-// Helpers of the model's tests: grammars from text, what a symbol bears, messages with the text they point at.
+// What the model's tests share: grammars from text, what a symbol bears, messages with the text they point at.
 #pragma once
 
 #include <catch2/catch.hpp>
