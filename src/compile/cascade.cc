@@ -209,8 +209,8 @@ class CascadeCompiler {
     return true;
   }
 
-  // Of the nodes whose links may matter: those of which some letter that comes in has a link, or the rule draws one. The
-  // others have no links at all, so nothing needs to watch them.
+  // Of the nodes whose links may matter: those of which some letter that comes in has a link, or the rule draws one, and
+  // what is above them. The others have no links at all, so nothing needs to watch them.
   std::vector<NodeId> LinksIn(const std::vector<int>& classes, const Rule& rule, const std::vector<NodeId>& planned) const {
     NodeSet linked(grammar_.tree.nodes.size(), false);
     linked[kRootNode] = true;
@@ -224,6 +224,9 @@ class CascadeCompiler {
     for (int c : classes) note(note, (*data_->classes)[c].visible.part);
     for (const Change& change : rule.changes) {
       if (change.op == Change::Op::kSpread) linked[change.node] = true;
+    }
+    for (NodeId node = static_cast<NodeId>(linked.size()); node-- > kRootNode;) {  // mothers have smaller numbers
+      if (linked[node]) linked[grammar_.tree[node].mother] = true;
     }
     std::vector<NodeId> live;
     for (NodeId node : planned) {

@@ -113,6 +113,7 @@ class SpanPass {
       const RuleSpace::Bearing& bearing = space.Of(symbol[0], node);
       if (bearing.mother && !(space.Marks(symbol, space.tree()[node].mother) & kFromLeft)) *of_mother = *last;
       step.symbol[left_at + i] = (bearing.mother ? *of_mother : *last) - 1;
+      if (bearing.mother && !(space.Marks(symbol, space.tree()[node].mother) & kToRight)) *of_mother = 0;
       if (bearing.count > 0) *last = needed ? builder_.ContentOf(Annotated(symbol, space), node, true) + 1 : 0;
     }
     return step;
@@ -148,8 +149,8 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
   for (int i = 0; i < annotated.symbols.size(); ++i) profile_of[i] = pattern.Profile(annotated.symbols[i]);
   const int profiles = pattern.profiles();
   const PatternMachine machine = pattern.Build(max_states);
-  const Side left = SubsetsOf(machine, profiles, /*reduce=*/true, max_states);
-  const Side right = SubsetsOf(Reversed(machine), profiles, /*reduce=*/true, max_states);
+  const Side left = SubsetsOf(machine, profiles, max_states);
+  const Side right = SubsetsOf(Reversed(machine), profiles, max_states);
   if (left.next.empty() || right.next.empty()) return {Tape{}, true};
   const std::vector<std::vector<RoleArc>> arcs = RoleArcs(machine, profiles);
 
@@ -247,20 +248,17 @@ struct SweepState {
 class Sweep {
  public:
   Sweep(const RequestSpace& requests, PatternCompiler& pattern, const PatternMachine& machine, ContentPool& pool,
-        Direction direction, int known_profiles)
+        Direction direction, int known_profiles, std::size_t max_states)
       : requests_(requests), space_(requests.space()), pattern_(pattern), direction_(direction), builder_(requests, pool), pool_(pool),
-        machine_(direction.rightward ? machine : Reversed(machine)), known_profiles_(known_profiles) {
+        machine_(direction.rightward ? machine : Reversed(machine)), known_profiles_(known_profiles),
+        near_(SubsetsOf(machine_, known_profiles, max_states)), far_(SubsetsOf(Reversed(machine_), known_profiles, max_states)) {
     by_profile_.resize(known_profiles);
     for (int s = 0; s < machine_.states; ++s) {
       for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
     }
-    std::vector<char> start(machine_.states, 0);
-    for (int s : machine_.initial) start[s] = 1;
-    near_start_ = Set(start);
-    std::vector<char> end(machine_.states, 0);
-    for (int s = 0; s < machine_.states; ++s) end[s] = machine_.final[s];
-    far_start_ = Set(end);
   }
+
+  bool over_budget() const { return near_.next.empty() || far_.next.empty(); }
 
   std::size_t nodes() const { return requests_.nodes().size(); }
   bool saw_new_profile() const { return saw_new_profile_; }
@@ -268,7 +266,7 @@ class Sweep {
   // First pass, against the sweep. State: [far subset, ahead, content ahead (+1) and ahead of the mother (+1) by node].
   Key FarStart() const {
     Key state(2 + 2 * nodes(), 0);
-    state[0] = far_start_;
+    state[0] = far_.start;
     state[1] = -1;
     return state;
   }
@@ -277,7 +275,7 @@ class Sweep {
     step.symbol.push_back(state[0]);
     step.symbol.push_back(state[1]);
     const int profile = pattern_.Profile(symbol);
-    step.state[0] = StepBack(state[0], profile);
+    step.state[0] = far_.next[state[0]][profile];
     step.state[1] = AheadBefore(state, symbol, profile);
     for (std::size_t i = 0; i < nodes(); ++i) {
       std::int32_t* first = &step.state[2 + 2 * i];
@@ -288,8 +286,13 @@ class Sweep {
         const RuleSpace::Bearing& bearing = space_.Of(symbol[0], node);
         if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.far_line())) *of_mother = *first;
         content = (bearing.mother ? *of_mother : *first) - 1;
+        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.near_line())) *of_mother = 0;
         if (bearing.count > 0) *first = builder_.ContentOf(symbol, node, !direction_.rightward) + 1;
       }
+      // Another slot of the same root may be the target: a content is dropped only where a root ends.
+      const bool root_ends =
+          space_.IsSlot(symbol[0]) && !(space_.Marks(symbol, kRootNode) & (direction_.near_line() | kOver));
+      if (root_ends && !Underway(far_, step.state[0], i)) *first = 0;
       step.symbol.push_back(content);
     }
     return step;
@@ -298,7 +301,7 @@ class Sweep {
   // Second pass, with the sweep.
   Key NearStart() const {
     SweepState state;
-    state.near = near_start_;
+    state.near = near_.start;
     state.requests = Key(nodes(), 0);
     state.behind = state.behind_visit = Key(space_.live().size(), 0);
     state.contents = state.visit_contents = Key(nodes(), 0);
@@ -342,6 +345,9 @@ class Sweep {
       state.visit_contents.assign(nodes(), 0);
     }
     Leave(&state, now, request, built);
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (!Underway(near_, state.near, i)) state.contents[i] = 0;
+    }
     return {state.Pack(), written};
   }
 
@@ -368,8 +374,6 @@ class Sweep {
     return state;
   }
 
-  int Set(const std::vector<char>& set) { return sets_.Intern(Key(set.begin(), set.end())); }
-
   // Profiles that the machine was not built for stop the sweep; it is then built again with them.
   int Known(const Key& letter) {
     const int profile = pattern_.Profile(letter);
@@ -378,19 +382,15 @@ class Sweep {
     return 0;
   }
 
-  int StepOn(int set, int profile) {
-    std::vector<char> next(machine_.states, 0);
-    for (const Arc& arc : by_profile_[profile]) {
-      if (sets_[set][arc.from]) next[arc.to] = 1;
+  int StepOn(int near, int profile) const { return near_.next[near][profile]; }
+
+  // Is a spread of this node between its ends?
+  bool Underway(const Side& side, int state, std::size_t node_index) const {
+    const std::vector<Spread>& spreads = pattern_.spreads();
+    for (std::size_t j = 0; j < spreads.size(); ++j) {
+      if (spreads[j].node == requests_.nodes()[node_index] && (side.underway[state] >> j & 1)) return true;
     }
-    return Set(next);
-  }
-  int StepBack(int set, int profile) {
-    std::vector<char> before(machine_.states, 0);
-    for (const Arc& arc : by_profile_[profile]) {
-      if (sets_[set][arc.to]) before[arc.from] = 1;
-    }
-    return Set(before);
+    return false;
   }
 
   // Pairs (state before the rest of this root, role that one of its further slots then gets), as numbers; -1: none.
@@ -400,7 +400,7 @@ class Sweep {
     std::vector<std::int32_t> pairs;
     const int roles = static_cast<int>(machine_.roles.size());
     for (const Arc& arc : by_profile_[profile]) {
-      if (slot && arc.role >= 0 && sets_[state[0]][arc.to]) pairs.push_back(arc.from * roles + arc.role);
+      if (slot && arc.role >= 0 && far_.members[state[0]][arc.to]) pairs.push_back(arc.from * roles + arc.role);
       if (state[1] < 0) continue;
       for (std::int32_t pair : aheads_[state[1]]) {
         if (pair / roles == arc.to) pairs.push_back(arc.from * roles + pair % roles);
@@ -419,6 +419,7 @@ class Sweep {
       const NodeId node = space_.live()[i];
       std::int32_t& marks = letter[1 + i];
       marks &= direction_.far_line() | direction_.far_object();
+      if (!space_.Watched(i)) continue;
       const bool linked = behind[i] & kLinkedAhead;
       if (space_.Of(input[0], node).count == 0) {
         if (linked) marks |= kOver;
@@ -442,10 +443,17 @@ class Sweep {
   // An unchanged letter goes by.
   void Pass(Key* behind, const Key& letter) const {
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
-      if (space_.Of(letter[0], space_.live()[i]).count == 0) continue;
-      (*behind)[i] = (letter[1 + i] & direction_.far_line() ? kLinkedAhead : 0) |
-                     (letter[1 + i] & direction_.near_object() ? kNearObject : 0);
+      if (space_.Of(letter[0], space_.live()[i]).count == 0 || !space_.Watched(i)) continue;
+      (*behind)[i] = Behind(letter, i);
     }
+  }
+
+  // What a letter leaves behind; its object mark only where the mother goes on.
+  std::int32_t Behind(const Key& letter, std::size_t live) const {
+    const int mother = space_.LiveIndex(space_.tree()[space_.live()[live]].mother);
+    const bool mother_goes_on = mother >= 0 && (letter[1 + mother] & direction_.far_line());
+    return (letter[1 + live] & direction_.far_line() ? kLinkedAhead : 0) |
+           (mother_goes_on && (letter[1 + live] & direction_.near_object()) ? kNearObject : 0);
   }
 
   // What is asked of this slot: its own roles, and on the root and below also those of its further slots.
@@ -454,8 +462,8 @@ class Sweep {
     const int roles = static_cast<int>(machine_.roles.size());
     std::vector<char> found(machine_.roles.size(), 0), later(machine_.roles.size(), 0);
     for (const Arc& arc : by_profile_[profile]) {
-      if (!sets_[state->visit][arc.from]) continue;
-      if (arc.role >= 0 && sets_[far][arc.to]) found[arc.role] = 1;
+      if (!near_.members[state->visit][arc.from]) continue;
+      if (arc.role >= 0 && far_.members[far][arc.to]) found[arc.role] = 1;
       if (!first || ahead < 0) continue;
       for (std::int32_t pair : aheads_[ahead]) {
         if (pair / roles == arc.to) later[pair % roles] = 1;
@@ -572,7 +580,9 @@ class Sweep {
   void LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
     Key letter(space_.AnnotatedSize(), 0);
     letter[0] = builder_.ClassOf(built.slot, now[0]);
-    for (std::size_t i = 0; i < space_.live().size(); ++i) LeaveNode(state, now, built.slot, i, &letter);
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      if (space_.Watched(i)) LeaveNode(state, now, built.slot, i, &letter);
+    }
     for (std::size_t i = 0; i < nodes(); ++i) {
       if (!requests_.SpreadsFrom(direction_.rightward, i)) continue;
       const WorkPart* part = PartIn(built.slot, requests_.nodes()[i], direction_.rightward);
@@ -640,7 +650,7 @@ class Sweep {
                                 : far_line;
     (*letter)[1 + live] = (near_line ? direction_.near_line() : 0) | (near_object ? direction_.near_object() : 0) |
                           (far_line ? direction_.far_line() : 0) | (far_object ? direction_.far_object() : 0);
-    behind = (far_line ? kLinkedAhead : 0) | (near_object ? kNearObject : 0);
+    behind = Behind(*letter, live);
   }
 
   // Is the bearer of `node` in this letter part of something that moved here?
@@ -677,8 +687,8 @@ class Sweep {
   PatternMachine machine_;
   int known_profiles_;
   std::vector<std::vector<Arc>> by_profile_;
-  KeyPool sets_, aheads_;
-  int near_start_ = 0, far_start_ = 0;
+  Side near_, far_;
+  KeyPool aheads_;
   bool saw_new_profile_ = false;
 };
 
@@ -691,7 +701,8 @@ Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const Reque
   while (true) {
     const int profiles = pattern.profiles();
     const PatternMachine machine = pattern.Build(max_states);
-    Sweep sweep(requests, pattern, machine, pool, direction, profiles);
+    Sweep sweep(requests, pattern, machine, pool, direction, profiles, max_states);
+    if (sweep.over_budget()) return {Tape{}, true};
     const PassFunction far = [&sweep](const Key& state, const Key& symbol) { return sweep.Far(state, symbol); };
     const PassFunction near = [&sweep](const Key& state, const Key& symbol) { return sweep.Near(state, symbol); };
     Tape tape = direction.rightward ? PassLeftward(annotated, sweep.FarStart(), far, max_states)

@@ -63,6 +63,7 @@ struct MarkedMachine {
   std::vector<int> initial;
   std::vector<char> final;
   std::vector<std::vector<MarkedArc>> arcs;
+  std::vector<std::int32_t> underway;  // PatternMachine::underway
 };
 
 // Drops states that no accepting run visits.
@@ -97,6 +98,7 @@ MarkedMachine Trim(const MarkedMachine& machine) {
       number[s] = static_cast<int>(result.arcs.size());
       result.arcs.emplace_back();
       result.final.push_back(machine.final[s]);
+      result.underway.push_back(machine.underway[s]);
     }
   }
   for (int s = 0; s < n; ++s) {
@@ -166,6 +168,7 @@ MarkedMachine Minus(const MarkedMachine& machine, Subsets banned, std::size_t ma
     const auto [state, subset] = pairs[at];
     result.arcs.emplace_back();
     result.final.push_back(machine.final[state] && !banned.Accepts(subset));
+    result.underway.push_back(machine.underway[state]);
     for (MarkedArc arc : machine.arcs[state]) {
       arc.next = intern(arc.next, banned.Next(subset, arc.profile, arc.mark));
       result.arcs.back().push_back(arc);
@@ -312,9 +315,10 @@ struct PatternCompiler::Impl {
           instruction.op = Instruction::Op::kGap;
           instruction.gap = static_cast<int>(gaps.size());
           gaps.emplace_back();
+          if (item.tier.has_value()) gaps.back().nodes.push_back(*item.tier);
           if (main) {
             gaps.back().right_mark = program->code[next].mark;
-            DescribeGap(pattern, i, &gaps.back());
+            if (!item.tier.has_value()) DescribeGap(pattern, i, &gaps.back());
           }
           next = Emit(program, instruction);
           break;
@@ -361,11 +365,6 @@ struct PatternCompiler::Impl {
   }
 
   void DescribeGap(const Pattern& pattern, std::size_t i, GapInfo* gap) {
-    const PatternItem& item = pattern.items[i];
-    if (item.tier.has_value()) {
-      gap->nodes.push_back(*item.tier);
-      return;
-    }
     const int left = LabelOf(pattern, i - 1), right = LabelOf(pattern, i + 1);
     std::set<NodeId> across, at_ends;
     const std::size_t split = LabelsBefore(pattern, i);
@@ -599,6 +598,11 @@ struct PatternCompiler::Impl::Builder {
     if (id == static_cast<int>(machine.arcs.size())) {
       machine.arcs.emplace_back();
       machine.final.push_back(IsFinal(config));
+      std::int32_t underway = 0;
+      for (std::size_t j = 0; j < SpreadCount(); ++j) {
+        if (config[kZones + j] != kBefore && config[kZones + j] != kDone) underway |= 1 << j;
+      }
+      machine.underway.push_back(underway);
     }
     return id;
   }
@@ -921,6 +925,7 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
   result.states = static_cast<int>(machine.arcs.size());
   result.initial = machine.initial;
   result.final = machine.final;
+  result.underway = machine.underway;
   result.arcs.resize(machine.arcs.size());
   for (std::size_t s = 0; s < machine.arcs.size(); ++s) {
     for (const MarkedArc& arc : machine.arcs[s]) result.arcs[s].push_back({arc.profile, arc.role, arc.next});

@@ -53,6 +53,7 @@ struct PatternMachine {
   std::vector<char> final;
   std::vector<std::vector<PatternArc>> arcs;  // by state
   std::vector<Role> roles;
+  std::vector<std::int32_t> underway;         // by state: bit j, it stands between source and target of spread j
 };
 
 // Asks of letters what the pattern needs, and builds the machine.

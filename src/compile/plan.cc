@@ -31,29 +31,34 @@ void AddContent(const FeatureTree& content, NodeSet* set) {
   for (const FeatureTree& daughter : content.daughters) AddContent(daughter, set);
 }
 
-void AddChange(const Tree& tree, const Change& change, Plan* plan, NodeSet* read) {
-  switch (change.op) {
-    case Change::Op::kSpread:
-    case Change::Op::kDelink:
-      AddUpward(tree, change.node, read);
-      AddDownward(tree, change.node, &plan->visible);
-      break;
-    case Change::Op::kSet:
-    case Change::Op::kFill:
-      for (const Setting& setting : change.settings) {
-        AddUpward(tree, setting.node, read);
-        AddDownward(tree, setting.node, &plan->visible);
-      }
-      break;
-    case Change::Op::kInsert:
-      AddContent(change.inserted, read);
-      break;
-    case Change::Op::kDelete:
-      break;
-  }
+void AddVisible(const Tree& tree, const Change& change, NodeSet* visible) {
+  if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) AddDownward(tree, change.node, visible);
+  for (const Setting& setting : change.settings) AddDownward(tree, setting.node, visible);
 }
 
 }  // namespace
+
+NodeSet NodesRead(const Rule& rule, const Tree& tree) {
+  NodeSet read(tree.nodes.size(), false);
+  for (const Change& change : rule.changes) {
+    switch (change.op) {
+      case Change::Op::kSpread:
+      case Change::Op::kDelink:
+        AddUpward(tree, change.node, &read);
+        break;
+      case Change::Op::kSet:
+      case Change::Op::kFill:
+        for (const Setting& setting : change.settings) AddUpward(tree, setting.node, &read);
+        break;
+      case Change::Op::kInsert:
+        AddContent(change.inserted, &read);
+        break;
+      case Change::Op::kDelete:
+        break;
+    }
+  }
+  return read;
+}
 
 Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   const Tree& tree = grammar.tree;
@@ -62,11 +67,10 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   plan.visible[kSlotNode] = plan.visible[kRootNode] = true;
   std::vector<NodeSet> reads;
   for (const Rule& rule : grammar.rules) {
-    NodeSet read(tree.nodes.size(), false);
     AddPattern(tree, rule.where, &plan);
     for (const Pattern& pattern : rule.unless) AddPattern(tree, pattern, &plan);
-    for (const Change& change : rule.changes) AddChange(tree, change, &plan, &read);
-    reads.push_back(std::move(read));
+    for (const Change& change : rule.changes) AddVisible(tree, change, &plan.visible);
+    reads.push_back(NodesRead(rule, tree));
   }
   NodeSet live(tree.nodes.size(), keep_all_links);
   live[kRootNode] = true;

@@ -20,6 +20,9 @@ struct Plan {
   std::vector<std::vector<NodeId>> live;  // before each rule, and after the last; mothers first
 };
 
+// The nodes whose links the rule reads.
+NodeSet NodesRead(const Rule& rule, const Tree& tree);
+
 Plan MakePlan(const Grammar& grammar, bool keep_all_links);
 
 }  // namespace tiersmith

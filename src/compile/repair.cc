@@ -6,7 +6,7 @@ namespace tiersmith {
 namespace {
 
 // What became of a letter's old instances of one node.
-enum class Old { kNone, kInPlace, kGivenUp, kElsewhere };  // the last: their mother lives on, its right end is not here
+enum class Old { kNone, kInPlace, kGivenUp, kElsewhere };  // the last: dealt with at another letter that holds them
 
 struct NodeState {
   Old old = Old::kNone;
@@ -20,7 +20,12 @@ bool FromLeft(Origin origin) { return origin == Origin::kOldLeft || origin == Or
 
 // The memory of one node while one letter's entries go by.
 struct Walker {
+  explicit Walker(std::int32_t memory)
+      : next(memory & Repair::kNextMask), pending(memory & Repair::kPendingMask), alive((memory & Repair::kAliveBit) != 0) {}
+  std::int32_t Memory() const { return next | pending | (alive ? Repair::kAliveBit : 0); }
+
   std::int32_t next;
+  std::int32_t pending;
   bool alive;
   bool crossed = false;
   bool first_done = false;
@@ -32,31 +37,47 @@ struct Walker {
     next = then;
   }
   void Kept(bool old_bit) {
+    if (pending == Repair::kOldLeftTaken || (pending == Repair::kNearestOldTaken && old_bit)) crossed = true;
+    pending = Repair::kNothing;
     New(next == Repair::kNewToTheLeft || next == Repair::kOldToTheLeft || (next == Repair::kNearestOld && old_bit),
         Repair::kNearestOld);
   }
   void GivenUp(bool old_bit) {
+    if (pending != Repair::kNothing) {
+      const bool goes_on = pending == Repair::kOldLeftTaken || old_bit;
+      pending = goes_on ? Repair::kNearestOldTaken : Repair::kNothing;
+    }
     if (next == Repair::kNewToTheLeft) return;
     next = next == Repair::kOldToTheLeft || (next == Repair::kNearestOld && old_bit) ? Repair::kNearestOld
                                                                                      : Repair::kUnrelated;
   }
   void Fresh() {
-    if (next == Repair::kOldToTheLeft) crossed = true;
+    if (next == Repair::kOldToTheLeft) pending = Repair::kOldLeftTaken;
     New(next == Repair::kNewToTheLeft, Repair::kBehindFresh);
   }
   void OldRight() {
-    if (next == Repair::kOldToTheLeft || next == Repair::kBehindFresh) crossed = true;
+    if (alive && (next == Repair::kOldToTheLeft || next == Repair::kBehindFresh)) crossed = true;
+    if (pending == Repair::kNearestOldTaken && next != Repair::kNearestOld) crossed = true;
+    if (next == Repair::kOldToTheLeft) pending = Repair::kOldLeftTaken;
     New(next == Repair::kNearestOld || next == Repair::kNewToTheLeft, Repair::kNearestOld);
     alive = true;
   }
   void NewRight() { New(true, next); }
-  void OldLeft() { New(next == Repair::kOldToTheLeft || next == Repair::kNewToTheLeft, Repair::kOldToTheLeft); }
+  void OldLeft() {
+    if (pending == Repair::kOldLeftTaken && next != Repair::kOldToTheLeft) crossed = true;
+    New(next == Repair::kOldToTheLeft || next == Repair::kNewToTheLeft, Repair::kOldToTheLeft);
+  }
   void NewLeft(bool over) {
     New(next == Repair::kNewToTheLeft || (next == Repair::kNearestOld && over), Repair::kNewToTheLeft);
   }
 };
 
 }  // namespace
+
+bool Repair::BearsMother(int class_id, NodeId node) const {
+  const NodeId mother = space_.tree()[node].mother;
+  return mother != kSlotNode && space_.Of(class_id, mother).count > 0;
+}
 
 bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) const {
   const Tree& tree = space_.tree();
@@ -72,7 +93,12 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
     slot.part = after;
     const NodeState& mother = mother_index < 0 ? slot : states[mother_index];
     NodeState& state = states[i];
-    Walker walker{memory[i] & kNextMask, (memory[i] & kAliveBit) != 0};
+    std::int32_t& before_loss = memory[kEntries * i + 1];
+    if (before_loss != 0 && mother.old != Old::kElsewhere && BearsMother(before[0], node)) {
+      if (space_.Marks(before, tree[node].mother) & kToRight) memory[kEntries * i] = before_loss - 1;
+      before_loss = 0;
+    }
+    Walker walker(memory[kEntries * i]);
 
     const int old_count = space_.Of(before[0], node).count;
     const std::int32_t marks = space_.Marks(before, node);
@@ -95,10 +121,15 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
     };
     const auto give_up = [&] {
       const std::int32_t next = walker.next;
-      const bool lives = (old_count == 1 && (marks & kToRight) && walker.alive) || next == kOldToTheLeft || next == kNewToTheLeft;
+      const bool lives = (old_count == 1 && old_bit && walker.alive) || next == kOldToTheLeft || next == kNewToTheLeft;
       for (int k = old_count; k-- > 0;) walker.GivenUp(k + 1 == old_count && old_bit);
       state.old = lives ? Old::kElsewhere : Old::kGivenUp;
       walker.alive = lives;
+    };
+
+    const auto lose = [&] {  // together with the mother
+      if (mother_index >= 0) before_loss = walker.Memory() + 1;  // a slot is of one item only
+      give_up();
     };
 
     if (mother_moved) {
@@ -107,7 +138,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
         if (mother.old == Old::kElsewhere) {
           state.old = Old::kElsewhere;
         } else {
-          give_up();
+          lose();
         }
       }
       if (!settled && FromLeft(mother.from)) moved_entries();
@@ -115,7 +146,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
     } else if (mother.old == Old::kElsewhere) {
       state.old = old_count > 0 ? Old::kElsewhere : Old::kNone;
     } else if (mother.old == Old::kGivenUp) {
-      if (old_count > 0) give_up();
+      if (old_count > 0) lose();
     }
     if (!mother_moved && mother.part != nullptr && !settled) {
       // New ones from the right, the old ones in their places, new ones from the left.
@@ -155,7 +186,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
         }
       }
     } else if (!mother_moved && settled && old_count > 0 && mother.old == Old::kInPlace) {
-      state.old = list.empty() ? Old::kElsewhere : Old::kInPlace;
+      state.old = Old::kElsewhere;
     }
     if (!list.empty()) {
       state.raw = settled || walker.bit;
@@ -164,7 +195,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
       if (!settled && walker.bit && kept_links_[i]) links.emplace_back(mother.part, 1u << bit_index);
     }
     fine = fine && !walker.crossed;
-    memory[i] = walker.next | (walker.alive ? kAliveBit : 0);
+    memory[kEntries * i] = walker.Memory();
   }
   if (after == nullptr) return fine;
   const auto drop = [](const auto& self, WorkPart* part) -> void {

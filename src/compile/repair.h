@@ -26,8 +26,19 @@ class Repair {
     kNewToTheLeft = 3,  // whatever new entry comes next to the left
     kBehindFresh = 4,   // unrelated, with a new N between here and the nearest old one
   };
-  // One entry a live node: Next, and whether the nearest old N to the right is still held by someone (bit kAliveBit).
-  static constexpr std::int32_t kNextMask = 7, kAliveBit = 8;
+  // Lines that would cross only if someone further left still holds what an entry to the right took.
+  enum Pending : std::int32_t {
+    kNothing = 0,
+    kOldLeftTaken = 16,     // an entry on the right, not the next one, holds the N that is nearest on the left
+    kNearestOldTaken = 32,  // ... holds the nearest old N to the right, which its own bearer gave up
+  };
+  // Two entries a live node. The first: Next, Pending, and whether the nearest old N to the right is still held by someone (kAliveBit).
+  // The second: 1 + what the first was before the node's mother was given up here, or 0: should the next mother to the left be the
+  // same object, its list is still to be settled there.
+  static constexpr std::int32_t kNextMask = 7, kAliveBit = 8, kPendingMask = 48;
+  static constexpr std::size_t kEntries = 2;
+  // At the right end of a form: as if an unlinked bearer stood there.
+  static constexpr std::int32_t kStart[kEntries] = {kNearestOld | kAliveBit, 0};
 
   // `iterating_left`: an old N on the left that spans over the letter is also the next new one on the right.
   Repair(const RuleSpace& space, const std::vector<char>& kept_links, bool iterating_left)
@@ -39,6 +50,8 @@ class Repair {
   bool Letter(const Key& before, WorkPart* after, std::int32_t* memory) const;
 
  private:
+  bool BearsMother(int class_id, NodeId node) const;
+
   const RuleSpace& space_;
   std::vector<char> kept_links_;  // by live node
   bool iterating_left_;

@@ -38,12 +38,17 @@ class ApplyPass {
       inserted_.push_back(space_.classes().Classify(inserted));
     }
     draw_at_ = size_;
-    erase_at_ = draw_at_ + space_.live().size();
-    objects_at_ = erase_at_ + space_.live().size();
+    erase_at_ = draw_at_ + Repair::kEntries * space_.live().size();
+    objects_at_ = erase_at_ + Repair::kEntries * space_.live().size();
     size_ = objects_at_ + space_.live().size();
   }
 
-  Key Start() const { return Key(size_, 0); }
+  // With nothing to the right, all is as if an unlinked bearer stood there: memories that no change stirs stay as they are.
+  Key Start() const {
+    Key start(size_, 0);
+    for (std::size_t i = draw_at_; i < objects_at_; ++i) start[i] = Repair::kStart[(i - draw_at_) % Repair::kEntries];
+    return start;
+  }
 
   PassStep Step(const Key& state, const Key& symbol) const {
     PassStep step;
@@ -110,6 +115,7 @@ class ApplyPass {
     const RuleSpace::Bearing& bearing = space_.Of(letter[0], node);
     if (bearing.mother && !(space_.Marks(letter, space_.tree()[node].mother) & kToRight)) memory[1] = memory[0];
     const std::int32_t content = (bearing.mother ? memory[1] : memory[0]) - 1;
+    if (bearing.mother && !(space_.Marks(letter, space_.tree()[node].mother) & kFromLeft)) memory[1] = 0;
     if (bearing.count > 0) memory[0] = needed ? builder_.ContentOf(letter, node, false) + 1 : 0;
     return content;
   }
@@ -158,7 +164,7 @@ class ApplyPass {
     const Key marks = space_.RightMarks(objects, annotated);
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       annotated[1 + i] = marks[i];
-      if (space_.Of(class_id, space_.live()[i]).count > 0) (*state)[objects_at_ + i] = marks[i];
+      if (space_.Of(class_id, space_.live()[i]).count > 0) (*state)[objects_at_ + i] = marks[i] & kObjectRight;
     }
     return annotated;
   }
@@ -200,12 +206,13 @@ Tape AllStrings(const std::vector<int>& classes) {
 
 RuleMachine CompileRule(const Rule& rule, LetterClasses& classes, const std::vector<int>& classes_in,
                         const std::vector<NodeId>& live_in, const std::vector<NodeId>& live_out, const Limits& limits) {
-  const RuleSpace space(classes, live_in);
+  const RuleSpace space(classes, rule, live_in);
   PatternCompiler pattern(rule, space);
   const RequestSpace requests(rule, space, pattern.spreads());
   ContentPool pool;
-  const std::size_t most = limits.side_states * 16;  // of any intermediate tape
+  const std::size_t most = limits.side_states * 64;  // of any intermediate tape
   const Tape annotated = space.Annotate(AllStrings(classes_in), most);
+  if (annotated.starts.empty()) return {Tape{}, true};
   Found found = rule.mode == Rule::Mode::kAtOnce ? FindAtOnce(annotated, pattern, requests, pool, most)
                                                  : FindIterating(annotated, pattern, requests, pool, most);
   if (found.over_budget) return {Tape{}, true};

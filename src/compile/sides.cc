@@ -6,7 +6,7 @@
 namespace tiersmith {
 namespace {
 
-// Merges states with the same colour now and after every string.
+// Merges states with the same colour, the members that can take a role, now and after every string (Moore refinement).
 Side Refine(const Side& side, const std::vector<char>& interesting) {
   const std::size_t n = side.next.size();
   std::map<std::vector<char>, int> colours;
@@ -34,9 +34,11 @@ Side Refine(const Side& side, const std::vector<char>& interesting) {
   result.start = block[side.start];
   result.next.resize(count);
   result.members.resize(count);
+  result.underway.assign(count, 0);
   for (std::size_t s = 0; s < n; ++s) {
+    result.underway[block[s]] |= side.underway[s];
     if (!result.members[block[s]].empty()) continue;
-    result.members[block[s]] = colour[s];
+    result.members[block[s]] = side.members[s];
     for (int next : side.next[s]) result.next[block[s]].push_back(block[next]);
   }
   return result;
@@ -49,6 +51,7 @@ PatternMachine Reversed(const PatternMachine& machine) {
   result.states = machine.states;
   result.roles = machine.roles;
   result.arcs.resize(machine.states);
+  result.underway = machine.underway;
   result.final.assign(machine.states, 0);
   for (int s : machine.initial) result.final[s] = 1;
   for (int s = 0; s < machine.states; ++s) {
@@ -58,7 +61,7 @@ PatternMachine Reversed(const PatternMachine& machine) {
   return result;
 }
 
-Side SubsetsOf(const PatternMachine& machine, int profiles, bool reduce, std::size_t max_states) {
+Side SubsetsOf(const PatternMachine& machine, int profiles, std::size_t max_states) {
   Side side;
   std::map<std::vector<char>, int> ids;
   const auto intern = [&](const std::vector<char>& set) {
@@ -81,7 +84,11 @@ Side SubsetsOf(const PatternMachine& machine, int profiles, bool reduce, std::si
     for (int p = 0; p < profiles; ++p) row[p] = intern(next[p]);
     side.next.push_back(std::move(row));
   }
-  if (!reduce) return side;
+  for (const std::vector<char>& set : side.members) {
+    std::int32_t underway = 0;
+    for (int s = 0; s < machine.states; ++s) underway |= set[s] ? machine.underway[s] : 0;
+    side.underway.push_back(underway);
+  }
   std::vector<char> interesting(machine.states, 0);
   for (int s = 0; s < machine.states; ++s) {
     for (const PatternArc& arc : machine.arcs[s]) {

@@ -7,19 +7,18 @@
 
 namespace tiersmith {
 
-// Deterministic over profiles. `members[s]`: the states of the machine in subset s (in a reduced side, only those that can
-// take, or result from, a role).
+// Deterministic over profiles, and minimal: subsets from which the same roles follow, whatever comes, are one state.
 struct Side {
   int start = 0;
-  std::vector<std::vector<int>> next;     // by state, by profile
-  std::vector<std::vector<char>> members; // by state, by machine state
+  std::vector<std::vector<int>> next;      // by state, by profile
+  std::vector<std::vector<char>> members;  // by state, by machine state: one of its subsets
+  std::vector<std::int32_t> underway;      // by state: PatternMachine::underway of all its subsets
 };
 
 // The same machine read from its end.
 PatternMachine Reversed(const PatternMachine& machine);
 
-// All reachable subsets from the initial states; none if more than `max_states` arise.
-// With `reduce`, states that differ only in members without roles are merged (Moore refinement).
-Side SubsetsOf(const PatternMachine& machine, int profiles, bool reduce, std::size_t max_states);
+// The subsets reachable from the initial states; none if more than `max_states` arise.
+Side SubsetsOf(const PatternMachine& machine, int profiles, std::size_t max_states);
 
 }  // namespace tiersmith

@@ -1,5 +1,7 @@
 #include "compile/space.h"
 
+#include "compile/plan.h"
+
 namespace tiersmith {
 namespace {
 
@@ -17,9 +19,13 @@ void Collect(const LetterPart& part, const Tree& tree, std::vector<RuleSpace::Be
 
 }  // namespace
 
-RuleSpace::RuleSpace(LetterClasses& classes, std::vector<NodeId> live)
+RuleSpace::RuleSpace(LetterClasses& classes, const Rule& rule, std::vector<NodeId> live)
     : classes_(classes), live_(std::move(live)), live_index_(classes.grammar().tree.nodes.size(), -1) {
-  for (std::size_t i = 0; i < live_.size(); ++i) live_index_[live_[i]] = static_cast<int>(i);
+  const NodeSet read = NodesRead(rule, tree());
+  for (std::size_t i = 0; i < live_.size(); ++i) {
+    live_index_[live_[i]] = static_cast<int>(i);
+    watched_.push_back(read[live_[i]] || live_[i] == kRootNode);  // a sweep asks where a root begins
+  }
 }
 
 const RuleSpace::Bearing& RuleSpace::Of(int class_id, NodeId node) const {
@@ -51,6 +57,7 @@ Key RuleSpace::LeftMarks(const Key& state, int class_id) const {
   Key marks(live_.size(), 0);
   if (!IsSlot(class_id)) return marks;
   for (std::size_t i = 0; i < live_.size(); ++i) {
+    if (!watched_[i]) continue;
     const int mother = live_index_[tree()[live_[i]].mother];
     const bool linked = state[i] & kToRight;
     if (Of(class_id, live_[i]).count == 0) {
@@ -93,10 +100,12 @@ Tape RuleSpace::Annotate(const Tape& tape, std::size_t max_states) const {
         if (!IsSlot(class_id)) return step;
         for (std::size_t i = 0; i < live_.size(); ++i) {
           const Bearing& bearing = Of(class_id, live_[i]);
-          if (bearing.count == 0) continue;
+          if (bearing.count == 0 || !watched_[i]) continue;
           const int mother = live_index_[tree()[live_[i]].mother];
-          const bool linked = bearing.bit || (mother >= 0 && (step.state[mother] & kToRight));
-          step.state[i] = (linked ? kToRight : 0) | (marks[i] & kObjectLeft);
+          // The object mark is wanted only where the mother goes on: by then it is the same object.
+          const bool mother_goes_on = mother >= 0 && (step.state[mother] & kToRight);
+          const bool linked = bearing.bit || mother_goes_on;
+          step.state[i] = (linked ? kToRight : 0) | (mother_goes_on ? marks[i] & kObjectLeft : 0);
         }
         return step;
       },
@@ -109,7 +118,10 @@ Tape RuleSpace::Annotate(const Tape& tape, std::size_t max_states) const {
         const Key marks = RightMarks(state, symbol);
         for (std::size_t i = 0; i < live_.size(); ++i) {
           step.symbol[1 + i] |= marks[i];
-          if (Of(symbol[0], live_[i]).count > 0) step.state[i] = marks[i];
+          if (Of(symbol[0], live_[i]).count == 0) continue;
+          const int mother = live_index_[tree()[live_[i]].mother];
+          const bool mother_goes_on = mother >= 0 && (!watched_[mother] || (symbol[1 + mother] & kFromLeft));
+          step.state[i] = mother_goes_on ? marks[i] & kObjectRight : 0;
         }
         return step;
       },

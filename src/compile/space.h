@@ -29,20 +29,23 @@ class RuleSpace {
     bool bit = false;         // the stored link bit
   };
 
-  // `live`: nodes with bits in force in the input, mothers first, without `slot`.
-  RuleSpace(LetterClasses& classes, std::vector<NodeId> live);
+  // `live`: nodes with bits in force in the input, mothers first, without `slot`. What stands on the left of a letter is
+  // told only for the nodes that the rule draws, cuts, sets or brings in, and those above them ("watched").
+  RuleSpace(LetterClasses& classes, const Rule& rule, std::vector<NodeId> live);
 
   LetterClasses& classes() const { return classes_; }
   const Tree& tree() const { return classes_.grammar().tree; }
   const std::vector<NodeId>& live() const { return live_; }
   int LiveIndex(NodeId node) const { return live_index_[node]; }
+  bool Watched(std::size_t live) const { return watched_[live] != 0; }
   bool IsSlot(int class_id) const { return classes_[class_id].visible.kind == FormItem::Kind::kSlot; }
 
   const Bearing& Of(int class_id, NodeId node) const;
-  // Marks of a node in an annotated letter; 0 if its bits are not in force.
+  // Marks of a node in an annotated letter. One without bits in force has no lines of its own: it goes where its mother goes.
   std::int32_t Marks(const Key& annotated, NodeId node) const {
-    const int live = live_index_[node];
-    return live < 0 ? 0 : annotated[1 + live];
+    if (live_index_[node] >= 0) return annotated[1 + live_index_[node]];
+    if (node == kSlotNode || Of(annotated[0], node).count == 0) return 0;
+    return Marks(annotated, tree()[node].mother) & (kFromLeft | kToRight);
   }
   // The lowest proper ancestor of `node` that the letter bears (slot at the highest).
   NodeId LowestAncestor(int class_id, NodeId node) const;
@@ -65,6 +68,7 @@ class RuleSpace {
   LetterClasses& classes_;
   std::vector<NodeId> live_;
   std::vector<int> live_index_;
+  std::vector<char> watched_;  // by live node
   mutable std::vector<std::vector<Bearing>> bearings_;  // by class, by node
 };
 

@@ -270,7 +270,15 @@ std::vector<InstanceId> Requests::MothersChanged() const {
   return mothers;
 }
 
-bool Requests::CrossesAlone() const { return BeforeDeletions(true).Crosses(); }
+bool Requests::CrossesAlone() const { return InsertionsCross() || BeforeDeletions(true).Crosses(); }
+
+// Insertions come before lines: they are made while all lines of the form before still stand.
+bool Requests::InsertionsCross() const {
+  if (insertions_.empty()) return false;
+  Graph graph = view_.graph();
+  Insert(graph);
+  return graph.Crosses();
+}
 
 std::string Requests::CrossedTier() const {
   const std::optional<NodeId> node = BeforeDeletions(true).CrossedTier();

@@ -98,6 +98,7 @@ class Requests {
   // The form with everything but deletions. Alone: mothers that only lose something are left aside.
   Graph BeforeDeletions(bool alone) const;
   void Insert(Graph& graph) const;
+  bool InsertionsCross() const;
 
   const View& view_;
   const Rule& rule_;

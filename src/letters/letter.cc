@@ -1,6 +1,7 @@
 #include "letters/letter.h"
 
 #include <algorithm>
+#include <map>
 
 namespace tiersmith {
 namespace {
@@ -14,6 +15,14 @@ struct Occurrence {
   LetterPart* part;
   InstanceId object;
 };
+
+// No later part is the same object.
+bool IsLast(const std::vector<Occurrence>& line, const Occurrence& occurrence) {
+  for (std::size_t i = line.size(); i-- > 0;) {
+    if (line[i].object == occurrence.object) return &line[i] == &occurrence;
+  }
+  return true;
+}
 
 LetterPart BuildPart(const Form& form, InstanceId id) {
   const Instance& instance = form.instances[id];
@@ -109,6 +118,11 @@ class Decoder {
       if (parts_[id].floating) line.push_back(id);
     }
     std::sort(line.begin(), line.end());
+    std::map<int, int> first_of, last_of;  // by object: its first and last part
+    for (int id : by_node_[mother]) {
+      first_of.emplace(Find(id), id);
+      last_of[Find(id)] = id;
+    }
     int previous = -1;
     for (int id : line) {
       const bool is_float = parts_[id].part->node == node;
@@ -117,16 +131,17 @@ class Decoder {
         if (parts_[id].part->links & bit) return false;
         continue;
       }
-      if (previous >= 0 && parts_[previous].part->node == mother) {
-        const std::vector<int> before = DaughtersOf(previous, node);
-        if (!is_float && Find(previous) == Find(id)) {
-          if (before.size() != own.size()) return false;
-          for (std::size_t i = 0; i < own.size(); ++i) {
-            if (!Join(before[i], own[i])) return false;
-          }
-        } else if (parts_[previous].part->links & bit) {
-          if (is_float || !Join(before.back(), own.front())) return false;
+      const int same = is_float ? id : first_of[Find(id)];
+      if (same != id) {  // another part of the same mother
+        const std::vector<int> before = DaughtersOf(same, node);
+        if (before.size() != own.size()) return false;
+        for (std::size_t i = 0; i < own.size(); ++i) {
+          if (!Join(before[i], own[i])) return false;
         }
+      }
+      if (previous >= 0 && parts_[previous].part->node == mother && (parts_[previous].part->links & bit)) {
+        if (is_float || last_of[Find(previous)] != previous) return false;
+        if (!Join(DaughtersOf(previous, node).back(), own.front())) return false;
       }
       previous = id;
     }
@@ -208,10 +223,13 @@ std::vector<Letter> Encode(const Form& form, const Tree& tree) {
     const std::uint32_t bit = 1u << LinkBit(tree, node);
     const Occurrence* previous = nullptr;
     std::size_t previous_last = 0;
-    for (const Occurrence& mother : by_node[tree[node].mother]) {
+    const std::vector<Occurrence>& mothers = by_node[tree[node].mother];
+    for (std::size_t m = 0; m < mothers.size(); ++m) {
+      const Occurrence& mother = mothers[m];
       std::size_t first = 0, last = 0;
       if (!DaughterRange(*mother.part, node, &first, &last)) continue;
-      if (previous != nullptr && previous->object != mother.object) {
+      // A contour held by two slots comes twice, one after the other: a b a b. Only an object's last part can be linked.
+      if (previous != nullptr && previous->object != mother.object && IsLast(mothers, *previous)) {
         const InstanceId a = form.instances[previous->object].daughters[previous_last];
         const InstanceId b = form.instances[mother.object].daughters[first];
         if (a == b) previous->part->links |= bit;

@@ -14,7 +14,7 @@ namespace tiersmith {
 struct Runner::Impl {
   const Grammar& grammar;
   const Cascade& cascade;
-  Reader reader;
+  std::unique_ptr<Reader> reader_made;  // when the first text comes: forms need none
   std::vector<Walker> walkers;
   // What a letter that comes out is written as.
   struct Spelled {
@@ -31,7 +31,7 @@ struct Runner::Impl {
   std::vector<LetterClasses::Parts> letters;
   std::unique_ptr<Recovery> recovery;
 
-  Impl(const Grammar& g, const Cascade& c) : grammar(g), cascade(c), reader(g) {
+  Impl(const Grammar& g, const Cascade& c) : grammar(g), cascade(c) {
     for (const Segment& segment : cascade.data().segments) walkers.emplace_back(segment);
     of_symbol.assign(g.inventory.symbols.size(), {LetterClasses::Parts{-1, 0}, LetterClasses::Parts{-1, 0}});
     for (const InputLetter& input : cascade.data().inputs) {
@@ -41,6 +41,11 @@ struct Runner::Impl {
         of_boundary[static_cast<int>(input.boundary)] = input.parts;
       }
     }
+  }
+
+  const Reader& reader() {
+    if (reader_made == nullptr) reader_made = std::make_unique<Reader>(grammar);
+    return *reader_made;
   }
 
   const Spelled& Spell(const LetterClasses::Parts& letter) {
@@ -74,7 +79,7 @@ struct Runner::Impl {
 
   // Tokens -> letters; false if a symbol is not one that the machine was compiled for.
   bool ToLetters(std::string_view text, TextError* error) {
-    if (!reader.Read(text, Reader::Side::kUnderlying, &tokens, error)) return false;
+    if (!reader().Read(text, Reader::Side::kUnderlying, &tokens, error)) return false;
     letters.clear();
     for (std::size_t i = 0; i < tokens.size(); ++i) {
       const Token& token = tokens[i];
@@ -152,14 +157,14 @@ Runner::Answer Runner::Apply(const Form& underlying) {
 
 bool Runner::Recover(std::string_view surface, std::size_t best, Candidates* candidates, TextError* error) {
   if (impl_->recovery == nullptr) impl_->recovery = std::make_unique<Recovery>(impl_->grammar, impl_->cascade);
-  if (!impl_->reader.Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
+  if (!impl_->reader().Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
   return impl_->recovery->Recover(impl_->tokens, best, candidates);
 }
 
 bool Runner::IsCandidate(std::string_view underlying, std::string_view surface, bool* answer, TextError* error) {
   if (impl_->recovery == nullptr) impl_->recovery = std::make_unique<Recovery>(impl_->grammar, impl_->cascade);
   if (!impl_->ToLetters(underlying, error)) return false;
-  if (!impl_->reader.Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
+  if (!impl_->reader().Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
   *answer = impl_->recovery->IsCandidate(impl_->letters, impl_->tokens);
   return true;
 }

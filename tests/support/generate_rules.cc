@@ -349,6 +349,8 @@ bool Refused(const Tree& tree, const Rule& rule) {
       for (const Change& other : rule.changes) {
         if (Relinks(other) && other.node != node && tree.Dominates(other.node, node)) return true;
         for (const Setting& setting : other.settings) {
+          // A line and a content of one node on one item never go together.
+          if (Relinks(change) && setting.node == node && other.target == change.target) return true;
           if (setting.values.empty() && setting.node != node && tree.Dominates(setting.node, node)) return true;
         }
       }

@@ -1,0 +1,144 @@
+#include "support/agree.h"
+
+#include <fmt/format.h>
+
+#include <set>
+
+#include "compile/cascade_data.h"
+#include "graph/interpreter.h"
+#include "run/run.h"
+#include "support/generate.h"
+
+namespace tiersmith::testing {
+namespace {
+
+std::string Failure(const Grammar& grammar, const Form& form, const std::string& what) {
+  return what + "\n" + PrintCase(grammar, form);
+}
+
+// Sharing below the root is not part of what is spelled.
+Form OnlyRootsShared(const Form& form) {
+  Form result;
+  std::map<InstanceId, InstanceId> roots;
+  for (const FormItem& item : form.items) {
+    FormItem copy = item;
+    if (item.kind == FormItem::Kind::kSlot) {
+      Instance slot;
+      slot.node = kSlotNode;
+      const std::int64_t root = RootOf(form, item);
+      copy.instance = static_cast<InstanceId>(result.instances.size());
+      result.instances.push_back(slot);
+      if (root >= 0) {
+        const auto found = roots.find(static_cast<InstanceId>(root));
+        const InstanceId fresh =
+            found != roots.end() ? found->second : AddContent(result, ContentOf(form, static_cast<InstanceId>(root)));
+        roots.emplace(static_cast<InstanceId>(root), fresh);
+        result.instances[copy.instance].daughters.push_back(fresh);
+      }
+    }
+    result.items.push_back(copy);
+  }
+  return Canonical(result);
+}
+
+Form WithoutEmpty(const Form& form) {
+  Form result = form;
+  result.items.clear();
+  for (const FormItem& item : form.items) {
+    if (item.kind == FormItem::Kind::kSlot && RootOf(form, item) < 0) continue;
+    result.items.push_back(item);
+  }
+  return Canonical(result);
+}
+
+}  // namespace
+
+std::string Tally::Report() const {
+  std::string text = fmt::format("{} rule sets, {} pairs, {:.1f} % changed, {} ambiguous, {} reaching another root, {} over budget\n", rules,
+                                 pairs, 100 * ChangedShare(), ambiguous, reaching, over_budget);
+  for (const auto& [shape, count] : applied) text += fmt::format("  {:<32} {:>10}\n", shape, count);
+  return text;
+}
+
+std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector<Form>& forms, std::size_t least, Tally* tally) {
+  std::vector<Letter> letters;
+  for (const Form& form : forms) {
+    for (Letter& letter : Encode(form, grammar.tree)) letters.push_back(std::move(letter));
+  }
+  Diagnostics diagnostics;
+  const Limits limits;
+  const std::unique_ptr<Cascade> cascade = CompileForTesting(grammar, letters, limits, diagnostics);
+  if (cascade == nullptr && !diagnostics.all().empty() && diagnostics.all()[0].kind == Kind::kLimit) {
+    ++tally->over_budget;
+    return std::nullopt;
+  }
+  if (cascade == nullptr) {
+    return Failure(grammar, forms.front(), "does not compile: " + (diagnostics.all().empty() ? "" : diagnostics.all()[0].message));
+  }
+  Runner runner(grammar, *cascade);
+  ++tally->rules;
+  std::size_t changed = 0, same = 0;
+  for (const Form& form : forms) {
+    const Application expected = ApplyRule(grammar, grammar.rules[0], form);
+    const bool refused = !expected.ambiguous.empty() || !expected.reaches.empty();
+    const bool changes = !refused && !(expected.form == form);
+    if (!changes && !refused && same >= std::max(changed, least)) continue;
+    const Runner::Answer answer = runner.Apply(form);
+    ++tally->pairs;
+    if (refused) {
+      tally->ambiguous += !expected.ambiguous.empty();
+      tally->reaching += expected.ambiguous.empty();
+      if (!answer.ambiguous && !answer.reaches) {
+        return Failure(grammar, form, "the interpreter refuses (" + expected.ambiguous + expected.reaches + "), the machine does not");
+      }
+      continue;
+    }
+    changes ? ++changed : ++same;
+    tally->changed += changes;
+    if (answer.ambiguous || answer.reaches) {
+      return Failure(grammar, form, answer.ambiguous ? "the machine says ambiguous, the interpreter does not"
+                                                     : "the machine says it reaches another root, the interpreter does not");
+    }
+    if (!answer.form.has_value()) return Failure(grammar, form, "the machine has no (well-formed) answer");
+    if (!(*answer.form == expected.form)) {
+      return Failure(grammar, form,
+                     fmt::format("interpreter: {}\nmachine:     {}", Dump(expected.form, grammar.tree), Dump(*answer.form, grammar.tree)));
+    }
+  }
+  tally->applied[ShapeOf(grammar.rules[0])] += changed;
+  return std::nullopt;
+}
+
+std::optional<std::string> CompareGrammar(const Grammar& grammar, const std::vector<Form>& forms, Tally* tally, bool* compiled) {
+  Diagnostics diagnostics;
+  const Limits limits;
+  const std::unique_ptr<Cascade> cascade = Compile(grammar, limits, diagnostics);
+  *compiled = cascade != nullptr;
+  if (cascade == nullptr) return std::nullopt;
+  Runner runner(grammar, *cascade);
+  ++tally->rules;
+  std::map<std::string, std::uint64_t> applied;
+  for (const Form& form : forms) {
+    const Derivation expected = Derive(grammar, form);
+    ++tally->pairs;
+    if (!expected.problem.empty()) {
+      return Failure(grammar, form, "it compiled, but the interpreter refuses: " + expected.problem);
+    }
+    const Form* before = &form;
+    for (const Step& step : expected.steps) {
+      if (!(step.after == *before)) ++tally->applied[ShapeOf(grammar.rules[step.rule])];
+      before = &step.after;
+    }
+    const Form surface = OnlyRootsShared(expected.surface);
+    tally->changed += !(surface == form);
+    const Runner::Answer answer = runner.Apply(form);
+    if (!answer.form.has_value()) return Failure(grammar, form, "the machine has no (well-formed) answer");
+    const Form machine = OnlyRootsShared(WithoutEmpty(*answer.form));
+    if (!(machine == surface)) {
+      return Failure(grammar, form, fmt::format("interpreter: {}\nmachine:     {}", Dump(surface, grammar.tree), Dump(machine, grammar.tree)));
+    }
+  }
+  return std::nullopt;
+}
+
+}  // namespace tiersmith::testing
