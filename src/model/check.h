@@ -140,6 +140,9 @@ class Checker {
   bool ResolveInsert(const syntax::Change& change, RuleContext* context);
   bool Changeable(NodeId node, Span span);
   void CheckChanges(const syntax::Rule& written, const Rule& rule);
+  bool CheckBesideLine(const Rule& rule, const Change& line);
+  bool CheckBesideTaken(const Rule& rule, const Change& taking);
+  void CheckOneChanged(const syntax::Rule& written, const Rule& rule);
 
   // ---- check_data.cc
   void LoadDataFiles();

@@ -48,6 +48,18 @@ bool NamesLabel(const Pattern& pattern) {
   });
 }
 
+bool MovesLines(const Change& change) {
+  return change.op == Change::Op::kSpread || change.op == Change::Op::kDelink;
+}
+
+// The nodes a change is about, of those that are already there.
+std::vector<NodeId> ChangedNodes(const Change& change) {
+  std::vector<NodeId> nodes;
+  if (MovesLines(change)) nodes.push_back(change.node);
+  for (const Setting& setting : change.settings) nodes.push_back(setting.node);
+  return nodes;
+}
+
 Span Covering(Span a, Span b) {
   if (a.end == 0 || a.file != b.file) return b;
   return {a.file, std::min(a.begin, b.begin), std::max(a.end, b.end)};
@@ -712,26 +724,66 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
 
 // Which changes cannot stand beside each other in one rule.
 void Checker::CheckChanges(const syntax::Rule& written, const Rule& rule) {
+  for (const Change& change : rule.changes) {
+    if (MovesLines(change) && !CheckBesideLine(rule, change)) return;
+    if (!CheckBesideTaken(rule, change)) return;
+  }
+  CheckOneChanged(written, rule);
+}
+
+// Lines of a node moved, and the same rule at work on that node by contents, or under it.
+bool Checker::CheckBesideLine(const Rule& rule, const Change& line) {
   const Tree& tree = grammar_.tree;
-  for (const Change& line : rule.changes) {
-    if (line.op != Change::Op::kSpread && line.op != Change::Op::kDelink) continue;
+  const std::string& name = tree[line.node].name;
+  const auto bad = [&](const Change& other, const std::string& message, const std::string& remedy) {
+    diagnostics_.Add({Kind::kBadRule,
+                      Severity::kError,
+                      other.span,
+                      message,
+                      remedy,
+                      {{line.span, "lines of '" + name + "' are moved here"}}});
+    return false;
+  };
+  for (const Change& other : rule.changes) {
+    for (const NodeId node : ChangedNodes(other)) {
+      if (node == line.node && !MovesLines(other) && other.target == line.target) {
+        return bad(other,
+                   "this rule asks for a line and a content of '" + name + "' on '" +
+                       rule.labels[static_cast<std::size_t>(line.target)] + "'",
+                   "make two rules, one after the other");
+      }
+      if (node == line.node || !tree.Dominates(line.node, node)) continue;
+      return bad(other, "this rule moves lines of '" + name + "' and changes '" + tree[node].name + "' under it",
+                 "write two rules, one after the other");
+    }
+  }
+  return true;
+}
+
+// A node taken away by `set X [no N]`, and the same rule at work under it; one bundle that does both is told by
+// itself. Whoever shares the node would feel both, so the labels make no difference.
+bool Checker::CheckBesideTaken(const Rule& rule, const Change& taking) {
+  const Tree& tree = grammar_.tree;
+  for (const Setting& taken : taking.settings) {
+    if (!taken.values.empty()) continue;
     for (const Change& other : rule.changes) {
-      std::vector<NodeId> nodes;
-      if (other.op == Change::Op::kSpread || other.op == Change::Op::kDelink) nodes.push_back(other.node);
-      for (const Setting& setting : other.settings) nodes.push_back(setting.node);
-      for (const NodeId node : nodes) {
-        if (node == line.node || !tree.Dominates(line.node, node)) continue;
+      for (const NodeId node : ChangedNodes(other)) {
+        if (node == taken.node || !tree.Dominates(taken.node, node)) continue;
         diagnostics_.Add({Kind::kBadRule,
                           Severity::kError,
                           other.span,
-                          "this rule moves lines of '" + tree[line.node].name + "' and changes '" +
-                              tree[node].name + "' under it",
+                          "this rule takes '" + tree[taken.node].name + "' away and changes '" + tree[node].name +
+                              "' under it",
                           "write two rules, one after the other",
-                          {{line.span, "lines of '" + tree[line.node].name + "' are moved here"}}});
-        return;
+                          {{taking.span, "'" + tree[taken.node].name + "' is taken away here"}}});
+        return false;
       }
     }
   }
+  return true;
+}
+
+void Checker::CheckOneChanged(const syntax::Rule& written, const Rule& rule) {
   if (rule.mode == Rule::Mode::kAtOnce) return;
   for (const Change& change : rule.changes) {
     if (change.target == rule.changes[0].target) continue;

@@ -150,6 +150,13 @@ TEST_CASE("check: rules", "[unit]") {
       {"rule \"r\" { where X:V Y:V spread X.Place to X }", Kind::kBadRule, "X.Place", "spreads to itself"},
       {"rule \"r\" { where X:V Y:V delink Y.Place spread X.back to Y }", Kind::kBadRule, "spread X.back to Y", "moves lines of 'Place'"},
       {"rule \"r\" { where X:V Y:V spread X.Place to Y set Y [+back] }", Kind::kBadRule, "set Y [+back]", "changes 'back' under it"},
+      {"rule \"r\" { where X:V Y:V spread X.back to Y set Y [+back] }", Kind::kBadRule, "set Y [+back]", "a line and a content of 'back' on 'Y'"},
+      {"rule \"r\" { where Y:V fill Y [-back] delink Y.back }", Kind::kBadRule, "fill Y [-back]", "a line and a content of 'back' on 'Y'"},
+      {"rule \"r\" { where Y:V set Y [no Place] delink Y.Place }", Kind::kBadRule, "set Y [no Place]", "a line and a content of 'Place' on 'Y'"},
+      {"rule \"r\" { where Y:V set Y [no Place] set Y [+back] }", Kind::kBadRule, "set Y [+back]", "takes 'Place' away and changes 'back' under it"},
+      {"rule \"r\" { where X:V Y:V set X [+nasal no Place] fill Y [-back] }", Kind::kBadRule, "fill Y [-back]", "takes 'Place' away and changes 'back' under it"},
+      {"rule \"r\" { where X:V Y:V spread X.back to Y set Y [no Place] }", Kind::kBadRule, "spread X.back to Y", "takes 'Place' away and changes 'back' under it"},
+      {"rule \"r\" { where Y:V delink Y.back set Y [no Place] }", Kind::kBadRule, "delink Y.back", "takes 'Place' away and changes 'back' under it"},
       {"rule \"r\" { where X:V Y:V delete X delete Y iterate rightward }", Kind::kBadRule, "delete Y", "changes one item"},
       {"rule \"r\" { where X:V set X [no Place +back] }", Kind::kBadRule, "[no Place +back]", "takes 'Place' away"},
       {"rule \"r\" { where X:V fill X [no round] }", Kind::kBadRule, "[no round]", "takes nothing away"},
@@ -193,6 +200,17 @@ TEST_CASE("check: several mistakes in one run", "[unit]") {
   std::string kinds;
   for (const Diagnostic& d : loaded.diagnostics.all()) kinds += loaded.Covered(d) + " ";
   CHECK(kinds == "nasl Y q ");
+}
+
+TEST_CASE("check: changes that may stand side by side", "[unit]") {
+  const Loaded loaded = LoadOrFail(kHead + R"(
+rule "two nodes"   { where X:[+syll] Y:[+syll]  spread X.high to Y  set Y [+back] }
+rule "two items"   { where X:[+syll] Y:[+syll]  delink X.back  set Y [+back] }
+rule "in place of" { where X:[+syll] Y:[+syll]  delink Y.Place  spread X.Place to Y }
+rule "side by side" { where X:[+syll]  set X [no Place]  set X [-nasal] }
+rule "above"       { where X:[+syll]  set X [no back]  set X [Labial] }
+)");
+  CHECK(loaded.diagnostics.all().empty());
 }
 
 TEST_CASE("check: one mistake is not said for ever", "[unit]") {
