@@ -6,9 +6,11 @@
 #include "model/text.h"
 
 #include <algorithm>
+#include <memory>
 #include <set>
 #include <sstream>
 #include <unordered_map>
+#include <utility>
 
 #include "base/utf8.h"
 #include "model/character_names.h"
@@ -48,6 +50,36 @@ std::set<std::string> TellingWords(const std::string& name) {
   return words;
 }
 
+// Does the last word of a character's name hold this letter of the alphabet (ENG holds n)?
+bool NameHolds(const std::string& name, char32_t letter) {
+  if (letter < U'a' || letter > U'z') return false;
+  const std::size_t space = name.rfind(' ');
+  return name.find(static_cast<char>(letter - U'a' + U'A'), space == std::string::npos ? 0 : space) != std::string::npos;
+}
+
+// How far two segments are apart: each node that only one of them bears, or with another value, counts; what hangs
+// under such a node does not.
+int Distance(const Tree& tree, const FeatureTree& a, const FeatureTree& b) {
+  const auto first = [](const FeatureTree& content, NodeId node) -> const FeatureTree* {
+    for (const FeatureTree& daughter : content.daughters) {
+      if (daughter.node == node) return &daughter;
+    }
+    return nullptr;
+  };
+  int distance = 0;
+  for (const NodeId node : tree[a.node].daughters) {
+    const FeatureTree *one = first(a, node), *other = first(b, node);
+    if (one == nullptr && other == nullptr) continue;
+    const bool manner = a.node == kRootNode && tree[node].type != TreeNode::Type::kClass;
+    if (one == nullptr || other == nullptr || one->value != other->value) {
+      distance += manner ? 3 : 1;
+    } else {
+      distance += Distance(tree, *one, *other);
+    }
+  }
+  return distance;
+}
+
 }  // namespace
 
 struct Reader::Impl {
@@ -69,6 +101,9 @@ struct Reader::Impl {
   bool FailSymbol(int id, std::size_t unit, std::size_t end, Side side, TextError* error) const;
   bool FailUnknown(std::size_t unit, TextError* error) const;
   std::string Nearest(std::size_t unit) const;
+  std::string NearestByFeatures(char32_t code) const;
+  std::string NearestByShape(char32_t code) const;
+  mutable std::unique_ptr<Library> library;  // read when the first unknown character comes
 };
 
 Reader::Reader(const Grammar& grammar) : impl_(new Impl) {
@@ -253,8 +288,8 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
               remedy, error);
 }
 
-// The listed symbol that looks most like the character: the same letter in another case or with other marks,
-// else the one whose Unicode name shares most telling words with it.
+// What is meant by a character that is in no symbol: the listed symbol nearest to what the library says of it, else
+// the one that looks most like it.
 std::string Reader::Impl::Nearest(std::size_t unit) const {
   const char32_t code = text.units[unit].code;
   if (IsMark(code)) {
@@ -266,6 +301,37 @@ std::string Reader::Impl::Nearest(std::size_t unit) const {
     }
     return "";
   }
+  const std::string by_features = NearestByFeatures(code);
+  return by_features.empty() ? NearestByShape(code) : by_features;
+}
+
+// ŋ is n before ɡ: manner, borne by the root itself, counts three times what hangs deeper.
+std::string Reader::Impl::NearestByFeatures(char32_t code) const {
+  if (library == nullptr) {
+    library = std::make_unique<Library>();
+    Diagnostics unread;  // without the library there are fewer hints, no errors
+    if (!library->Load("ipa", Span{}, unread)) *library = Library();
+  }
+  const Library::Segment* segment = library->Find(ToUtf8(std::u32string(1, code)));
+  if (segment == nullptr) return "";
+  const FeatureTree wanted = library->ContentOf(*segment, grammar->tree, nullptr);
+  const std::string name = CharacterName(code);
+  constexpr int kTooFar = 9;  // three of manner
+  std::string best;
+  std::pair<int, bool> best_score = {kTooFar, false};
+  for (const Symbol& s : inventory().symbols) {
+    if (s.kind == Symbol::Kind::kComposite || s.kind == Symbol::Kind::kArchisegment) continue;
+    // Of two as near, the one whose letter is in the character's name: n in ENG, before m.
+    const std::pair<int, bool> score = {Distance(grammar->tree, s.full, wanted), !NameHolds(name, Normalise(s.text)[0])};
+    if (score.first >= kTooFar || score >= best_score) continue;
+    best_score = score;
+    best = s.text;
+  }
+  return best;
+}
+
+// The same letter in another case or with other marks, else the symbol whose Unicode name shares most telling words.
+std::string Reader::Impl::NearestByShape(char32_t code) const {
   const std::set<std::string> wanted = TellingWords(CharacterName(code));
   std::string best;
   double best_score = 0.3;

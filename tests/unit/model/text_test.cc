@@ -118,10 +118,12 @@ TEST_CASE("text: reading", "[unit]") {
 }
 
 TEST_CASE("text: the nearest symbol is named", "[unit]") {
-  const Loaded loaded = LoadOrFail(std::string(kFullTree) + "segments from \"ipa\" { p t n s i u a ɡ ø }\nsegments { o = o [-tense] }");
+  const Loaded loaded = LoadOrFail(std::string(kFullTree) + "segments from \"ipa\" { p t k n s i u a ɡ ø }\nsegments { o = o [-tense] }");
   const Reader reader(*loaded.grammar);
   struct Row { const char* text; const char* nearest; };
-  const Row rows[] = {{"T", "t"}, {"ŧ", "t"}, {"ɳ", "n"}, {"ö", ""}, {"Ø", "ø"}, {"ɑ", ""}, {"☃", ""}, {"ŋ", ""}};
+  const Row rows[] = {{"T", "t"}, {"ŧ", "t"}, {"ɳ", "n"}, {"ö", ""}, {"Ø", "ø"}, {"☃", ""},
+                      // By features (the chart's descriptions): the only nasal; the other bilabial stop; the other open vowel.
+                      {"ŋ", "n"}, {"m", "n"}, {"b", "p"}, {"ɑ", "a"}, {"ʃ", "s"}, {"c", "k"}};
   for (const Row& row : rows) {
     std::vector<Token> tokens;
     TextError error;
