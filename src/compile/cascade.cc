@@ -279,6 +279,16 @@ class CascadeCompiler {
                         {}});
       if (segment_.exact) return false;
     }
+    const std::vector<TapeArc> unsure = ShortestThrough(composed, flagged(kFlagUnsure), &at);
+    if (!unsure.empty()) {
+      diagnostics_.Add({Kind::kLimit, severity, rule.span,
+                        fmt::format("{}rule \"{}\" iterates over a gap, and in /{}/ cuts a line that decides whether a nearer segment "
+                                    "could change: this cannot be compiled",
+                                    possibly, rule.name, FormText(unsure)),
+                        "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
+                        {}});
+      if (segment_.exact) return false;
+    }
     const bool applies = !ShortestThrough(composed, flagged(kFlagChanged), &at).empty();
     if (!applies) {
       diagnostics_.Warning(Kind::kNeverApplies, rule.span,

@@ -256,6 +256,7 @@ class Sweep {
     for (int s = 0; s < machine_.states; ++s) {
       for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
     }
+    deciding_ = Deciding();
   }
 
   bool over_budget() const { return near_.next.empty() || far_.next.empty(); }
@@ -331,6 +332,7 @@ class Sweep {
     const BuiltLetter built = Built(now, request, state, far_contents);
     Key with_flags = request;
     if (Reaches(now, built)) with_flags[0] |= kReaches;
+    if (FreesBehind(now, request, built)) with_flags[0] |= kUnsure;
     const Key written = Written(InputWithOver(input, now), with_flags, state.visit_contents, far_contents);
 
     // On to the next letter.
@@ -528,6 +530,49 @@ class Sweep {
     return false;
   }
 
+  // Is a line cut that led here from behind, of a node whose lines decide whether a slot may change?
+  bool FreesBehind(const Key& now, const Key& request, const BuiltLetter& built) const {
+    if (deciding_.empty()) return false;
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      const NodeId node = space_.live()[i];
+      if (!deciding_[node] || !(now[1 + i] & direction_.near_line()) || LinkGoesOn(now, i)) continue;
+      const WorkPart* first = PartIn(built.slot, node, !direction_.rightward);
+      const int near_index = direction_.rightward ? 0 : space_.Of(now[0], node).count - 1;
+      const bool stays = !(request[0] & kDeleteSlot) && first != nullptr && first->origin == Origin::kOwn &&
+                         first->old_index == near_index;
+      if (!stays) return true;
+    }
+    return false;
+  }
+
+  // Nodes whose lines decide whether the rule may change a slot; none where no gap asks for the nearest.
+  NodeSet Deciding() const {
+    NodeSet nodes;
+    if (!pattern_.AsksForNearest()) return nodes;
+    nodes.assign(space_.tree().nodes.size(), false);
+    const auto above = [&](NodeId node) {
+      for (NodeId at = space_.tree()[node].mother; at != kSlotNode && at != kRootNode; at = space_.tree()[at].mother) nodes[at] = true;
+    };
+    for (const Change& change : requests_.rule().changes) {
+      if (change.op == Change::Op::kInsert) {
+        const auto all = [&](const auto& self, const FeatureTree& content) -> void {
+          nodes[content.node] = true;
+          for (const FeatureTree& daughter : content.daughters) self(self, daughter);
+        };
+        all(all, change.inserted);
+      }
+      for (const Setting& setting : change.settings) {
+        nodes[setting.node] = true;
+        above(setting.node);
+      }
+    }
+    for (const Spread& spread : pattern_.spreads()) {
+      above(spread.node);
+      if (spread.from_left != direction_.rightward) nodes[spread.node] = true;
+    }
+    return nodes;
+  }
+
   // Steps over what the visit made of this slot: insertions, and the slot unless it went.
   void Leave(SweepState* state, const Key& now, const Key& request, const BuiltLetter& built) {
     const std::vector<Change>& changes = requests_.rule().changes;
@@ -688,6 +733,7 @@ class Sweep {
   int known_profiles_;
   std::vector<std::vector<Arc>> by_profile_;
   Side near_, far_;
+  NodeSet deciding_;
   KeyPool aheads_;
   bool saw_new_profile_ = false;
 };

@@ -6,6 +6,9 @@
 // a role, each by its own match.
 // Iterative: one pass reads the input ahead, then one goes with the sweep and reads its own output behind; it
 // visits a root at its first slot on the way and decides for all its slots.
+// One thing a sweep cannot see: a slot behind that could not change because of a line towards what is ahead, when that
+// line is cut later in the sweep, and a gap then asks whether this slot is the nearer one. Such a letter is marked
+// kUnsure, and a grammar that can reach one is refused.
 //
 // Layout of the symbols written: annotated letter (kOver as it is after the changes behind, when iterating),
 // then the request key, then the contents on the left, then on the right, by request node (-1: none or not asked).

@@ -859,6 +859,10 @@ PatternCompiler::~PatternCompiler() = default;
 int PatternCompiler::Profile(const Key& annotated) { return impl_->Profile(annotated); }
 int PatternCompiler::profiles() const { return impl_->profile_keys.size(); }
 const std::vector<Spread>& PatternCompiler::spreads() const { return impl_->spreads; }
+bool PatternCompiler::AsksForNearest() const {
+  return std::any_of(impl_->gaps.begin(), impl_->gaps.end(),
+                     [](const GapInfo& gap) { return gap.nearest_left || gap.nearest_right; });
+}
 
 namespace {
 

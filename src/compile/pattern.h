@@ -66,6 +66,8 @@ class PatternCompiler {
   int Profile(const Key& annotated);
   int profiles() const;
   const std::vector<Spread>& spreads() const;
+  // Does some gap ask that no nearer slot would do?
+  bool AsksForNearest() const;
 
   // The machine over all profiles seen so far. No states if it passes the limit.
   PatternMachine Build(std::size_t max_states) const;

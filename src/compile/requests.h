@@ -27,7 +27,8 @@ enum SlotBit : std::int32_t {
   kDeleteSlot = 1,
   kChanged = 2,      // some match that is not vacuous
   kReaches = 4,      // an iterative change that reaches another root
-  kInsertShift = 3,  // from here up: one bit for each change of the rule
+  kUnsure = 8,       // an iterative change that may free a nearer target behind it (compile/find.h)
+  kInsertShift = 4,  // from here up: one bit for each change of the rule
 };
 
 class RequestSpace {

@@ -87,7 +87,7 @@ class ApplyPass {
     const bool changed = std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end() ||
                          (request[0] & kDeleteSlot) || (request[0] >> kInsertShift) != 0;
     step.symbol.push_back((changed ? kFlagChanged : 0) | (ambiguous ? kFlagAmbiguous : 0) |
-                          (request[0] & kReaches ? kFlagReaches : 0));
+                          (request[0] & kReaches ? kFlagReaches : 0) | (request[0] & kUnsure ? kFlagUnsure : 0));
     for (std::size_t k = output.size(); k-- > 0;) {
       step.symbol.push_back(output[k].first);
       step.symbol.push_back(output[k].second);

@@ -17,6 +17,7 @@ enum OutputFlag : std::int32_t {
   kFlagChanged = 1,    // something was done here
   kFlagAmbiguous = 2,  // two matches ask for different things
   kFlagReaches = 4,    // an iterative change reached another root
+  kFlagUnsure = 8,     // the machine cannot tell whether a nearer target behind became free (compile/find.h)
 };
 
 struct RuleMachine {

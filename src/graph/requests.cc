@@ -214,19 +214,19 @@ IdList Requests::OldList(InstanceId mother, NodeId node) const {
 
 // ---- judging ------------------------------------------------------------------------------------
 
-Requests::Merged Requests::Merge(const Lines& lines) const {
+Requests::Merged Requests::Merge(const Lines& lines, bool also_equal) const {
   const Graph& before = view_.graph();
   IdList kept = OldList(lines.mother, lines.node);
   kept.erase(std::remove_if(kept.begin(), kept.end(), [&](InstanceId id) { return Has(lines.cut, id); }), kept.end());
   Merged merged;
   merged.nothing_kept = kept.empty();
   for (InstanceId id : lines.left) {
-    if (!kept.empty() && before.Equal(id, kept.front())) continue;
+    if (!also_equal && !kept.empty() && before.Equal(id, kept.front())) continue;
     merged.added_left.push_back(id);
   }
   for (InstanceId id : lines.right) {
     if (Has(merged.added_left, id)) continue;
-    if (!kept.empty() && before.Equal(id, kept.back())) continue;
+    if (!also_equal && !kept.empty() && before.Equal(id, kept.back())) continue;
     merged.added_right.push_back(id);
   }
   merged.list = merged.added_left;
@@ -309,7 +309,7 @@ Graph Requests::BeforeDeletions(bool alone) const {
   if (!insertions_.empty()) Insert(graph);
   for (const Lines& lines : lines_) {
     if (alone && lines.left.empty() && lines.right.empty()) continue;
-    graph.SetList(lines.mother, lines.node, Merge(lines).list);
+    graph.SetList(lines.mother, lines.node, Merge(lines, /*also_equal=*/alone).list);
   }
   for (const Content& content : contents_) {
     const bool class_node = IsClass(graph.tree(), content.node);

@@ -93,7 +93,8 @@ class Requests {
     IdList added_left, added_right;
     bool nothing_kept = false;
   };
-  Merged Merge(const Lines& lines) const;
+  // A line to an instance equal to its neighbour-to-be is not drawn (but judged: whether it would cross comes first).
+  Merged Merge(const Lines& lines, bool also_equal = false) const;
   std::string LineAmbiguity(const Lines& lines) const;
   // The form with everything but deletions. Alone: mothers that only lose something are left aside.
   Graph BeforeDeletions(bool alone) const;

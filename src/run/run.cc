@@ -148,6 +148,7 @@ Runner::Answer Runner::Apply(const Form& underlying) {
   }
   answer.ambiguous = flags & kFlagAmbiguous;
   answer.reaches = flags & kFlagReaches;
+  answer.unsure = flags & kFlagUnsure;
   if (answer.ambiguous || answer.reaches) return answer;
   std::vector<Letter> written;
   for (const LetterClasses::Parts& letter : letters) written.push_back(data.classes->Join(letter.class_id, letter.rest));

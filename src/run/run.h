@@ -27,6 +27,7 @@ class Runner {
     std::optional<Form> form;
     bool ambiguous = false;
     bool reaches = false;
+    bool unsure = false;
   };
   Answer Apply(const Form& underlying);
 

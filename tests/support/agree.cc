@@ -2,7 +2,7 @@
 
 #include <fmt/format.h>
 
-#include <set>
+#include <cstdlib>
 
 #include "compile/cascade_data.h"
 #include "graph/interpreter.h"
@@ -54,10 +54,24 @@ Form WithoutEmpty(const Form& form) {
 }  // namespace
 
 std::string Tally::Report() const {
-  std::string text = fmt::format("{} rule sets, {} pairs, {:.1f} % changed, {} ambiguous, {} reaching another root, {} over budget\n", rules,
-                                 pairs, 100 * ChangedShare(), ambiguous, reaching, over_budget);
+  std::string text = fmt::format("{} rule sets, {} pairs, {:.1f} % changed, {} ambiguous, {} reaching another root, {} over budget, {} forms not compilable\n", rules,
+                                 pairs, 100 * ChangedShare(), ambiguous, reaching, over_budget, unsure);
   for (const auto& [shape, count] : applied) text += fmt::format("  {:<32} {:>10}\n", shape, count);
   return text;
+}
+
+std::uint64_t Tally::Applied(const std::string& operation, const std::string& mode) const {
+  std::uint64_t sum = 0;
+  for (const auto& [shape, count] : applied) {
+    const std::size_t at = shape.size() - std::min(shape.size(), mode.size());
+    if (shape.compare(at, std::string::npos, mode) == 0 && shape.find(operation) != std::string::npos) sum += count;
+  }
+  return sum;
+}
+
+std::uint64_t SeedOr(std::uint64_t seed) {
+  const char* given = std::getenv("TIERSMITH_SEED");
+  return given == nullptr ? seed : std::strtoull(given, nullptr, 10);
 }
 
 std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector<Form>& forms, std::size_t least, Tally* tally) {
@@ -84,6 +98,10 @@ std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector
     const bool changes = !refused && !(expected.form == form);
     if (!changes && !refused && same >= std::max(changed, least)) continue;
     const Runner::Answer answer = runner.Apply(form);
+    if (answer.unsure) {  // users get an error for a grammar that comes here
+      ++tally->unsure;
+      continue;
+    }
     ++tally->pairs;
     if (refused) {
       tally->ambiguous += !expected.ambiguous.empty();
