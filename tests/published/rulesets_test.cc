@@ -3,7 +3,8 @@
 // The rows are those of rulesets/*/data.tsv, each with its source beside it (public word lists and transcriptions; ten Finnish
 // rows are recalled from the literature, its README says which). Analyses: Harris 1984 and Padgett 1994 (Spanish), Whitney 1889
 // section 189 and Schein and Steriade 1986 (Sanskrit), Clements and Sezer 1982 and Lewis 1967 (Turkish), Kiparsky 1981 and Ringen
-// 1975 (Finnish); the English plural is the textbook one. Controls that are not rows say beside them what they rest on.
+// 1975 (Finnish); the English plural is the textbook one. Controls that are not rows say beside them which published statement they rest
+// on; their words are made up to put it to the test, unless a row has them.
 #include <catch2/catch.hpp>
 #include <cstdlib>
 #include <iostream>
