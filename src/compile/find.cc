@@ -329,27 +329,23 @@ class Sweep {
     const Key at_visit = Current(input, state.behind_visit);
     const Key request = Decide(&state, at_visit, far, ahead, first);
     const Key now = Current(input, state.behind);
+    const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
+    if (!asked) {
+      const Key written = Written(InputWithOver(input, now), request, state.visit_contents, far_contents);
+      VisitOn(&state, input, at_visit);
+      LeaveAlone(&state, now);
+      Forget(&state);
+      return {state.Pack(), written};
+    }
     const BuiltLetter built = Built(now, request, state, far_contents);
     Key with_flags = request;
     if (Reaches(now, built)) with_flags[0] |= kReaches;
     if (FreesBehind(now, request, built)) with_flags[0] |= kUnsure;
     const Key written = Written(InputWithOver(input, now), with_flags, state.visit_contents, far_contents);
 
-    // On to the next letter.
-    const bool same_root_ahead = space_.Of(input[0], kRootNode).count > 0 && (space_.Marks(input, kRootNode) & direction_.far_line());
-    if (same_root_ahead) {
-      state.visit = StepOn(state.visit, Known(at_visit));
-      Pass(&state.behind_visit, at_visit);
-    } else {
-      state.visit = -1;
-      state.requests.assign(nodes(), 0);
-      state.behind_visit.assign(space_.live().size(), 0);
-      state.visit_contents.assign(nodes(), 0);
-    }
+    VisitOn(&state, input, at_visit);
     Leave(&state, now, request, built);
-    for (std::size_t i = 0; i < nodes(); ++i) {
-      if (!Underway(near_, state.near, i)) state.contents[i] = 0;
-    }
+    Forget(&state);
     return {state.Pack(), written};
   }
 
@@ -412,6 +408,43 @@ class Sweep {
     std::sort(pairs.begin(), pairs.end());
     pairs.erase(std::unique(pairs.begin(), pairs.end()), pairs.end());
     return aheads_.Intern(pairs);
+  }
+
+  // On to the next letter: a visit lasts while the root does.
+  void VisitOn(SweepState* state, const Key& input, const Key& at_visit) {
+    if (space_.Of(input[0], kRootNode).count > 0 && (space_.Marks(input, kRootNode) & direction_.far_line())) {
+      state->visit = StepOn(state->visit, Known(at_visit));
+      Pass(&state->behind_visit, at_visit);
+      return;
+    }
+    state->visit = -1;
+    state->requests.assign(nodes(), 0);
+    state->behind_visit.assign(space_.live().size(), 0);
+    state->visit_contents.assign(nodes(), 0);
+  }
+
+  // A slot that nothing is asked of stays as it is.
+  void LeaveAlone(SweepState* state, const Key& now) {
+    Pass(&state->behind, now);
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (!requests_.SpreadsFrom(direction_.rightward, i)) continue;
+      const WorkPart before = builder_.Before(now);
+      const WorkPart* part = PartIn(before, requests_.nodes()[i], direction_.rightward);
+      if (part != nullptr) Remember(state, i, *part);
+    }
+    state->near = StepOn(state->near, Known(now));
+  }
+
+  void Remember(SweepState* state, std::size_t node_index, WorkPart content) {
+    if (!direction_.rightward) DropLinks(&content);  // its right end is behind
+    state->contents[node_index] = pool_.Intern(content) + 1;
+  }
+
+  // Contents are kept only while a spread is between its ends.
+  void Forget(SweepState* state) const {
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (!Underway(near_, state->near, i)) state->contents[i] = 0;
+    }
   }
 
   // The letter with what the letters behind say on its near side; its far side as in the input.
@@ -633,12 +666,8 @@ class Sweep {
       const WorkPart* part = PartIn(built.slot, requests_.nodes()[i], direction_.rightward);
       if (part == nullptr) continue;
       WorkPart content = *part;
-      if (direction_.rightward) {
-        if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
-      } else {
-        DropLinks(&content);
-      }
-      state->contents[i] = pool_.Intern(content) + 1;
+      if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
+      Remember(state, i, std::move(content));
     }
     state->near = StepOn(state->near, Known(letter));
   }

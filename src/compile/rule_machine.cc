@@ -192,13 +192,37 @@ class ApplyPass {
   std::vector<LetterClasses::Parts> inserted_;
 };
 
-// The tape of all strings over some classes.
-Tape AllStrings(const std::vector<int>& classes) {
+// The tape of all strings over some classes in which a root that goes on does go on: after a slot whose root is linked, the
+// next slot with a root has the same one. (Links of lower nodes are left to the composition: few letters have them.)
+Tape FormsOver(const std::vector<int>& classes, const LetterClasses& letters, const Tree& tree) {
   Tape tape;
-  tape.arcs.resize(1);
   tape.starts = {0};
+  tape.arcs.resize(1);
   tape.ends = {1};
-  for (int c : classes) tape.arcs[0].push_back({c, tape.symbols.Intern(Key{c}), 0});
+  std::vector<std::pair<FeatureTree, int>> waiting;  // a content, and the state that waits for it
+  const auto content_of = [&](int c) { return RootContent(letters[c].visible); };
+  const auto linked = [&](int c) { return (letters[c].visible.part.links >> LinkBit(tree, kRootNode) & 1u) != 0; };
+  for (int c : classes) {
+    if (!linked(c)) continue;
+    const FeatureTree content = *content_of(c);
+    const bool known = std::any_of(waiting.begin(), waiting.end(), [&](const auto& w) { return w.first == content; });
+    if (known) continue;
+    waiting.emplace_back(content, static_cast<int>(tape.arcs.size()));
+    tape.arcs.emplace_back();
+    tape.ends.push_back(0);
+  }
+  for (int c : classes) {
+    const int symbol = tape.symbols.Intern(Key{c});
+    const std::optional<FeatureTree> content = content_of(c);
+    int after = 0, own = -1;
+    for (const auto& [held, state] : waiting) {
+      if (!content.has_value()) tape.arcs[state].push_back({c, symbol, state});
+      if (content.has_value() && held == *content) own = state;
+    }
+    if (linked(c)) after = own;
+    tape.arcs[0].push_back({c, symbol, after});
+    if (own >= 0) tape.arcs[own].push_back({c, symbol, after});
+  }
   return tape;
 }
 
@@ -211,7 +235,7 @@ RuleMachine CompileRule(const Rule& rule, LetterClasses& classes, const std::vec
   const RequestSpace requests(rule, space, pattern.spreads());
   ContentPool pool;
   const std::size_t most = limits.side_states * 64;  // of any intermediate tape
-  const Tape annotated = space.Annotate(AllStrings(classes_in), most);
+  const Tape annotated = space.Annotate(FormsOver(classes_in, classes, space.tree()), most);
   if (annotated.starts.empty()) return {Tape{}, true};
   Found found = rule.mode == Rule::Mode::kAtOnce ? FindAtOnce(annotated, pattern, requests, pool, most)
                                                  : FindIterating(annotated, pattern, requests, pool, most);
