@@ -8,7 +8,8 @@ namespace tiersmith {
 struct Limits {
   std::size_t states = 20'000;        // of one cascade segment
   std::size_t arcs = 1'000'000;       // of one cascade segment
-  std::size_t side_states = 4'096;    // of the left or right automaton of one rule
+  std::size_t side_states = 4'096;    // of the pattern automaton of one rule, read from either side
+  std::size_t step_states = 262'144;  // of what one rule's machine is between two of its passes
   std::size_t candidates = 1'000;     // recovered forms listed at most
 };
 

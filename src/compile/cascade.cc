@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <chrono>
 #include <map>
+#include <set>
 
 #include "compile/cascade_data.h"
 #include "compile/compose.h"
@@ -42,6 +43,7 @@ class CascadeCompiler {
 
   // From here on the inputs are fixed; every rule narrows or extends the alphabet of the next one exactly.
   std::unique_ptr<CascadeData> Run() {
+    for (const InputLetter& input : data_->inputs) rests_[input.parts.class_id].insert(input.parts.rest);
     Open(testing_ ? AnyString(InputClasses()) : UnderlyingForms(), /*exact=*/true);
     for (std::size_t i = 0; i < grammar_.rules.size(); ++i) {
       if (!AddRule(static_cast<int>(i))) return nullptr;
@@ -159,11 +161,32 @@ class CascadeCompiler {
       for (const TapeArc& arc : arcs) seen[arc.in] = 1;
     }
     segment_.letters = LettersIn(seen);
+    rests_before_ = rests_;
+    rests_ = RestsAfter(current_);
     for (int c : ClassesWritten(current_)) seen[c] = 1;
     segment_.classes = static_cast<std::size_t>(std::count(seen.begin(), seen.end(), 1));
     segment_.machine = std::move(current_);
     segment_.seconds = Seconds(opened_);
     data_->segments.push_back(std::move(segment_));
+  }
+
+  // Which rests may ride with a class after a machine, letter by letter.
+  std::map<int, std::set<int>> RestsAfter(const Tape& machine) const {
+    std::map<int, std::set<int>> after;
+    for (const auto& arcs : machine.arcs) {
+      for (const TapeArc& arc : arcs) {
+        const Key& string = machine.symbols[arc.out];
+        for (std::size_t k = 1; k + 1 < string.size(); k += 2) {
+          if (string[k + 1] >= 0) {
+            after[string[k]].insert(string[k + 1]);
+          } else {
+            const auto found = rests_.find(arc.in);
+            if (found != rests_.end()) after[string[k]].insert(found->second.begin(), found->second.end());
+          }
+        }
+      }
+    }
+    return after;
   }
 
   std::size_t LettersIn(const std::vector<char>& classes) const {
@@ -179,7 +202,8 @@ class CascadeCompiler {
     RuleMachine machine = CompileRule(rule, *data_->classes, classes_in, live, plan_.live[index + 1], limits_);
     if (machine.over_budget) {
       diagnostics_.Error(Kind::kLimit, rule.span,
-                         fmt::format("rule \"{}\" needs more than {} states on one side", rule.name, limits_.side_states),
+                         fmt::format("rule \"{}\" needs more than {} states to find its matches, or {} to carry them out", rule.name,
+                                     limits_.side_states, limits_.step_states),
                          Costs(rule));
       return false;
     }
@@ -199,9 +223,12 @@ class CascadeCompiler {
                            Costs(rule));
         return false;
       }
-      const std::vector<int> classes = ClassesWritten(current_);
+      // What comes out so far is what goes into the next segment; followed exactly if its acceptor is small enough.
+      Tape outputs = OutputsOf(current_, limits_.states);
+      const bool exact = segment_.exact && !outputs.starts.empty();
+      if (!exact) outputs = AnyString(ClassesWritten(current_));
       Close();
-      Open(AnyString(classes), /*exact=*/false);
+      Open(std::move(outputs), exact);
       return AddRule(index);
     }
     current_ = std::move(composed);
@@ -328,11 +355,8 @@ class CascadeCompiler {
   // Every letter that can come out must have a symbol.
   void CheckSpelling() {
     const Segment& last = data_->segments.back();
-    std::map<int, std::vector<const InputLetter*>> by_class;
-    for (const InputLetter& input : data_->inputs) by_class[input.parts.class_id].push_back(&input);
     // Trees without a symbol, each with the arc and the rest that make it.
     std::vector<std::pair<FeatureTree, std::pair<TapeArc, int>>> found;
-    const bool one_segment = data_->segments.size() == 1;
     for (const auto& arcs : last.machine.arcs) {
       for (const TapeArc& arc : arcs) {
         const Key& written = last.machine.symbols[arc.out];
@@ -341,8 +365,7 @@ class CascadeCompiler {
             Note(written[k], written[k + 1], arc, written[k + 1], &found);
             continue;
           }
-          if (!one_segment) continue;  // what rides along is not followed across a cut
-          for (const InputLetter* input : by_class[arc.in]) Note(written[k], input->parts.rest, arc, input->parts.rest, &found);
+          for (int rest : rests_before_[arc.in]) Note(written[k], rest, arc, rest, &found);
         }
       }
     }
@@ -373,13 +396,14 @@ class CascadeCompiler {
     const std::vector<int>& candidates = grammar_.inventory.Spell(tree).candidates;
     std::string message = candidates.empty() ? fmt::format("no symbol spells {}", grammar_.inventory.Describe(tree, grammar_.tree))
                                              : fmt::format("two or more symbols could spell {}", Bracketed(tree));
-    message += fmt::format(", which /{}/ comes to", form);
+    const bool whole = data_->segments.size() == 1;  // else the path begins in the middle
+    message += whole ? fmt::format(", which /{}/ comes to", form) : ", which some form may come to";
     Span span = grammar_.rules.empty() ? Span{} : grammar_.rules.back().span;
-    const int rule = LastRuleThatChanged(form);
+    const int rule = whole ? LastRuleThatChanged(form) : -1;
     if (rule >= 0) {
       span = grammar_.rules[rule].span;
       message += fmt::format(" (rule \"{}\" changed it last)", grammar_.rules[rule].name);
-    } else {
+    } else if (whole) {
       message += " (no rule changed it: it is an underlying tree that nothing completes)";
     }
     std::string remedy;
@@ -484,6 +508,7 @@ class CascadeCompiler {
   std::map<std::pair<int, int>, bool> spelled_;
   std::vector<FeatureTree> data_roots_;
   bool data_surfaces_done_ = false;
+  std::map<int, std::set<int>> rests_, rests_before_;  // by class: after, and before, the last closed segment
 };
 
 std::unique_ptr<Cascade> CompileWith(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,

@@ -143,15 +143,16 @@ class SpanPass {
 }  // namespace
 
 Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
-                 std::size_t max_states) {
+                 const Limits& limits) {
+  const std::size_t max_states = limits.step_states;
   const RuleSpace& space = requests.space();
   std::vector<int> profile_of(annotated.symbols.size());
   for (int i = 0; i < annotated.symbols.size(); ++i) profile_of[i] = pattern.Profile(annotated.symbols[i]);
   const int profiles = pattern.profiles();
-  const PatternMachine machine = pattern.Build(max_states);
-  const Side left = SubsetsOf(machine, profiles, max_states);
-  const Side right = SubsetsOf(Reversed(machine), profiles, max_states);
-  if (left.next.empty() || right.next.empty()) return {Tape{}, true};
+  const PatternMachine machine = pattern.Build(limits.side_states);
+  const Side left = SubsetsOf(machine, profiles, limits.side_states);
+  const Side right = SubsetsOf(Reversed(machine), profiles, limits.side_states);
+  if (machine.over_budget || left.next.empty() || right.next.empty()) return {Tape{}, true};
   const std::vector<std::vector<RoleArc>> arcs = RoleArcs(machine, profiles);
 
   Tape tape = PassRightward(
@@ -770,14 +771,15 @@ class Sweep {
 }  // namespace
 
 Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
-                    std::size_t max_states) {
+                    const Limits& limits) {
+  const std::size_t max_states = limits.step_states;
   const Direction direction{requests.rule().mode == Rule::Mode::kRightward};
   for (int i = 0; i < annotated.symbols.size(); ++i) pattern.Profile(annotated.symbols[i]);
   while (true) {
     const int profiles = pattern.profiles();
-    const PatternMachine machine = pattern.Build(max_states);
-    Sweep sweep(requests, pattern, machine, pool, direction, profiles, max_states);
-    if (sweep.over_budget()) return {Tape{}, true};
+    const PatternMachine machine = pattern.Build(limits.side_states);
+    Sweep sweep(requests, pattern, machine, pool, direction, profiles, limits.side_states);
+    if (machine.over_budget || sweep.over_budget()) return {Tape{}, true};
     const PassFunction far = [&sweep](const Key& state, const Key& symbol) { return sweep.Far(state, symbol); };
     const PassFunction near = [&sweep](const Key& state, const Key& symbol) { return sweep.Near(state, symbol); };
     Tape tape = direction.rightward ? PassLeftward(annotated, sweep.FarStart(), far, max_states)

@@ -15,6 +15,7 @@
 // At once only the left contents are filled; the right ones hold whether they are needed.
 #pragma once
 
+#include "base/limits.h"
 #include "compile/build_letter.h"
 #include "compile/pattern.h"
 #include "compile/requests.h"
@@ -27,9 +28,9 @@ struct Found {
 };
 
 Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
-                 std::size_t max_states);
+                 const Limits& limits);
 
 Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
-                    std::size_t max_states);
+                    const Limits& limits);
 
 }  // namespace tiersmith

@@ -64,7 +64,14 @@ struct MarkedMachine {
   std::vector<char> final;
   std::vector<std::vector<MarkedArc>> arcs;
   std::vector<std::int32_t> underway;  // PatternMachine::underway
+  bool over_budget = false;
 };
+
+MarkedMachine OverBudget() {
+  MarkedMachine machine;
+  machine.over_budget = true;
+  return machine;
+}
 
 // Drops states that no accepting run visits.
 MarkedMachine Trim(const MarkedMachine& machine) {
@@ -154,6 +161,7 @@ class Subsets {
 
 // The strings of `machine` on which `banned` does not accept.
 MarkedMachine Minus(const MarkedMachine& machine, Subsets banned, std::size_t max_states) {
+  if (machine.over_budget) return machine;
   MarkedMachine result;
   std::map<std::pair<int, int>, int> ids;
   std::vector<std::pair<int, int>> pairs;
@@ -164,7 +172,7 @@ MarkedMachine Minus(const MarkedMachine& machine, Subsets banned, std::size_t ma
   };
   for (int s : machine.initial) result.initial.push_back(intern(s, banned.start()));
   for (std::size_t at = 0; at < pairs.size(); ++at) {
-    if (pairs.size() > max_states) return MarkedMachine{};
+    if (pairs.size() > max_states) return OverBudget();
     const auto [state, subset] = pairs[at];
     result.arcs.emplace_back();
     result.final.push_back(machine.final[state] && !banned.Accepts(subset));
@@ -660,7 +668,7 @@ struct PatternCompiler::Impl::Builder {
       for (const Key& config : starts) machine.initial.push_back(Intern(config));
     }
     for (int at = 0; at < configs.size(); ++at) {
-      if (static_cast<std::size_t>(configs.size()) > max_states) return MarkedMachine{};
+      if (static_cast<std::size_t>(configs.size()) > max_states) return OverBudget();
       const Key config = configs[at];
       for (int profile = 0; profile < impl.profile_keys.size(); ++profile) {
         Expand(at, config, profile, impl.profile_keys[profile]);
@@ -926,6 +934,7 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
     if (gap.nearest_right) machine = Minus(machine, NearerBan(whole, gap.left_mark, gap.right_mark, false), max_states);
   }
   PatternMachine result;
+  result.over_budget = machine.over_budget;
   result.states = static_cast<int>(machine.arcs.size());
   result.initial = machine.initial;
   result.final = machine.final;

@@ -48,6 +48,7 @@ struct PatternArc {
 };
 
 struct PatternMachine {
+  bool over_budget = false;
   int states = 0;
   std::vector<int> initial;
   std::vector<char> final;
@@ -69,7 +70,7 @@ class PatternCompiler {
   // Does some gap ask that no nearer slot would do?
   bool AsksForNearest() const;
 
-  // The machine over all profiles seen so far. No states if it passes the limit.
+  // The machine over all profiles seen so far. No states: the pattern never matches.
   PatternMachine Build(std::size_t max_states) const;
 
  private:

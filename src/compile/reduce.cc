@@ -1,9 +1,10 @@
-// Reduce (compile/tape.h): the tape's arcs become labels of an acceptor, which OpenFst makes small. Merging states of the
+// Reduce and OutputsOf (compile/tape.h), the work that OpenFst does for the compiler. Reduce: the tape's arcs become labels of an acceptor, which OpenFst makes small. Merging states of the
 // acceptor never moves a label, so the alignment of input and output stays. Determinising may blow up: it is tried under a
 // budget, and the smaller result is kept. Plain transducer minimisation would push labels and break the alignment.
 #include <fst/determinize.h>
 #include <fst/flags.h>
 #include <fst/minimize.h>
+#include <fst/rmepsilon.h>
 #include <fst/vector-fst.h>
 
 #include "compile/tape.h"
@@ -87,6 +88,45 @@ Tape Reduce(Tape tape) {
     for (fst::ArcIterator<Acceptor> it(small, s); !it.Done(); it.Next()) {
       const auto& [in, out] = labels[it.Value().ilabel - 1];
       result.arcs[s].push_back({in, out, it.Value().nextstate});
+    }
+  }
+  return result;
+}
+
+Tape OutputsOf(const Tape& tape, std::size_t max_states) {
+  FLAGS_fst_error_fatal = false;
+  Acceptor acceptor;
+  for (std::size_t s = 0; s <= tape.arcs.size(); ++s) acceptor.AddState();
+  const int start = static_cast<int>(tape.arcs.size());
+  acceptor.SetStart(start);
+  for (int s : tape.starts) acceptor.AddArc(start, fst::StdArc(0, 0, fst::TropicalWeight::One(), s));
+  for (std::size_t s = 0; s < tape.arcs.size(); ++s) {
+    if (tape.ends[s]) acceptor.SetFinal(static_cast<int>(s), fst::TropicalWeight::One());
+    for (const TapeArc& arc : tape.arcs[s]) {
+      const Key& string = tape.symbols[arc.out];
+      int from = static_cast<int>(s);
+      for (std::size_t k = 1; k + 1 < string.size(); k += 2) {
+        const int to = k + 3 < string.size() ? acceptor.AddState() : arc.next;
+        acceptor.AddArc(from, fst::StdArc(string[k] + 1, string[k] + 1, fst::TropicalWeight::One(), to));
+        from = to;
+      }
+      if (string.size() == 1) acceptor.AddArc(from, fst::StdArc(0, 0, fst::TropicalWeight::One(), arc.next));
+    }
+  }
+  fst::RmEpsilon(&acceptor);
+  Acceptor determined;
+  if (!DeterminizeWithin(acceptor, static_cast<int>(max_states), &determined)) return Tape{};
+  fst::Minimize(&determined, static_cast<Acceptor*>(nullptr));
+  Tape result;
+  if (determined.Start() == fst::kNoStateId) return result;
+  result.starts = {determined.Start()};
+  result.arcs.resize(determined.NumStates());
+  result.ends.resize(determined.NumStates());
+  for (int s = 0; s < determined.NumStates(); ++s) {
+    result.ends[s] = determined.Final(s) != fst::TropicalWeight::Zero();
+    for (fst::ArcIterator<Acceptor> it(determined, s); !it.Done(); it.Next()) {
+      const int c = it.Value().ilabel - 1;
+      result.arcs[s].push_back({c, result.symbols.Intern(Key{0, c, -1}), it.Value().nextstate});
     }
   }
   return result;

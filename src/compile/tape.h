@@ -74,6 +74,10 @@ using PassFunction = std::function<PassStep(const Key& state, const Key& symbol)
 Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
 Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
 
+// What a machine of strings (symbols [flags, class, rest, ...]) writes, as a tape that reads and writes the same class, one
+// letter an arc: the domain of a further machine. No starts if it needs more than `max_states`.
+Tape OutputsOf(const Tape& tape, std::size_t max_states);
+
 // Merges states with equal futures, exactly (arcs as labels of an acceptor; OpenFst).
 Tape Reduce(Tape tape);
 

@@ -250,17 +250,21 @@ struct Recovery::Impl {
   // The letters on cycles, with the first rule that deletes them.
   std::string InfiniteWhy(const Fst& candidates) const {
     std::set<std::string> names;
+    std::set<int> on_cycles;
     for (int s = 0; s < candidates.NumStates(); ++s) {
       for (fst::ArcIterator<Fst> it(candidates, s); !it.Done(); it.Next()) {
         const auto found = input_of.find(it.Value().ilabel);
         if (found == input_of.end() || found->second->symbol < 0) continue;
-        if (Reaches(candidates, it.Value().nextstate, s)) names.insert(grammar.inventory.symbols[found->second->symbol].text);
+        if (names.count(grammar.inventory.symbols[found->second->symbol].text) > 0) continue;
+        if (!Reaches(candidates, it.Value().nextstate, s)) continue;
+        names.insert(grammar.inventory.symbols[found->second->symbol].text);
+        on_cycles.insert(it.Value().ilabel);
       }
     }
     std::string text = "any number of";
     for (const std::string& name : names) text += " " + name;
-    const std::string rule = DeletingRule();
-    return rule.empty() ? text : fmt::format("{} (rule \"{}\")", text, rule);
+    const std::string rules = DeletingRules(on_cycles);
+    return rules.empty() ? text : fmt::format("{} ({})", text, rules);
   }
 
   static bool Reaches(const Fst& machine, int from, int to) {
@@ -277,13 +281,34 @@ struct Recovery::Impl {
     return false;
   }
 
-  std::string DeletingRule() const {
+  // The rules that delete such a symbol, as their patterns say; if an earlier rule changes it first, all that delete.
+  std::string DeletingRules(const std::set<int>& letters_on_cycles) const {
+    std::string fitting, all;
     for (const Rule& rule : grammar.rules) {
       for (const Change& change : rule.changes) {
-        if (change.op == Change::Op::kDelete || (change.op == Change::Op::kDelink && change.node == kRootNode)) return rule.name;
+        if (change.op != Change::Op::kDelete && !(change.op == Change::Op::kDelink && change.node == kRootNode)) continue;
+        const std::string name = fmt::format("rule \"{}\"", rule.name);
+        all += (all.empty() ? "" : ", ") + name;
+        const SlotTest* test = TestOf(rule.where, change.target);
+        const bool fits = test != nullptr && std::any_of(letters_on_cycles.begin(), letters_on_cycles.end(), [&](int id) {
+          return data.classes->Matches(letters[id].class_id, *test);
+        });
+        if (fits) fitting += (fitting.empty() ? "" : ", ") + name;
+        break;
       }
     }
-    return "";
+    return fitting.empty() ? all : fitting;
+  }
+
+  static const SlotTest* TestOf(const Pattern& pattern, int label) {
+    for (const PatternItem& item : pattern.items) {
+      if (item.kind == PatternItem::Kind::kSlot && item.label == label) return &item.test;
+      for (const Pattern& alternative : item.alternatives) {
+        const SlotTest* found = TestOf(alternative, label);
+        if (found != nullptr) return found;
+      }
+    }
+    return nullptr;
   }
 
  private:
