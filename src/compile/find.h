@@ -2,7 +2,7 @@
 //
 // At once: L, the subsets of the pattern machine from the left, and R, those from the right; at letter a
 // between l and r the roles are { role : q -a:role-> q', q in l, q' in r }: exact for overlapping matches, several changed items and
-// conditions on both sides (shared/compiler page, "Find"). /n n k/ with [+nasal] [+cons Place]: both n get
+// conditions on both sides. /n n k/ with [+nasal] [+cons Place]: both n get
 // a role, each by its own match.
 // Iterative: one pass reads the input ahead, then one goes with the sweep and reads its own output behind; it
 // visits a root at its first slot on the way and decides for all its slots.

@@ -13,7 +13,7 @@
 // Capacity and crossing are tests of single letters, because letters are annotated (compile/space.h).
 // Letters are grouped by *profile*: the answers to all that 1-3 ask of a letter.
 //
-// Not here: which letters change, and how (compile/find.h, compile/apply.h).
+// Not here: which letters change, and how (compile/find.h, compile/build_letter.h).
 // Tested by tests/agreement/.
 #pragma once
 

@@ -1,5 +1,5 @@
 // What the rules of a grammar look at, before any machine is built: which nodes are visible to them, and whose link bits
-// are in force before each rule (shared/compiler page, "Liveness").
+// are in force before each rule (DEVELOPERS.md, "The compiler").
 //
 // A rule reads the bits of the nodes it spreads, cuts, sets or fills, of all nodes above them, and of all that an
 // insertion brings. Bits are in force from the start up to their last reader; the root's stay to the end, for `ː` is

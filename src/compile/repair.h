@@ -1,4 +1,4 @@
-// Keeping link bits right when lists of instances change (shared/compiler page, "Repair").
+// Keeping link bits right when lists of instances change.
 //
 // Letters come from right to left, and in each letter the mother's entries from right to left. Per node one memory
 // says what the next new entry to the right is: unrelated, the nearest old instance to the right, the

@@ -2,7 +2,7 @@
 //
 // A link bit sits on the left member of a pair, and one under a shared mother is implied. So that the rest of the
 // compiler can ask both neighbours of a slot the same questions, two passes annotate each
-// letter, for every node with bits in force ("live", shared/compiler page, "Liveness"):
+// letter, for every node with bits in force ("live", compile/plan.h):
 //   kFromLeft    its first N is the last N of the bearer before
 //   kToRight     its last N is the first N of the next bearer
 //   kObjectLeft  the same two of the mother as an object: of its first and last holder

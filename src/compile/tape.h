@@ -8,7 +8,7 @@
 // survives: the tape stays unambiguous. Both keep every state on some accepted path.
 //
 // Pass states and symbols are keys, short vectors of integers; each pass gives them its meaning.
-// Tested through tests/unit/compile/tape_test.cc and all agreement tests.
+// Tested by tests/unit/compile/cascade_test.cc (sizes) and all of tests/agreement/.
 #pragma once
 
 #include <cstdint>

@@ -1,5 +1,5 @@
 // The graph interpreter: applies rules to autosegmental graphs directly, by drawing and cutting
-// association lines. Slow and obvious; it is the judge of the compiler (design, section 3) and
+// association lines. Slow and obvious; it is the judge of the compiler (DEVELOPERS.md) and
 // it explains derivations. It knows nothing of letters, automata or OpenFst.
 #pragma once
 

@@ -7,7 +7,7 @@
 // A rest never changes: an output letter has the visible part of the output class and the rest of
 // the input letter (an inserted letter brings its own).
 //
-// Tested by tests/unit/letters/classes_test.cc and by every agreement test.
+// Tested by tests/agreement/random_test.cc (grammars compiled as users compile them) and tests/published/.
 #pragma once
 
 #include <map>

@@ -1,4 +1,4 @@
-// The linear encoding: a form as a string of letters, one letter an item (shared/compiler page, "Letters").
+// The linear encoding: a form as a string of letters, one letter an item (DEVELOPERS.md, "The compiler").
 //
 // A slot's letter is its tree of parts. Every mother part has, for each kind of daughter it bears,
 // one link bit: 1 if its last N is also the first N of the next part (to the right, through the whole

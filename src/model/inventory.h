@@ -55,7 +55,7 @@ class Inventory {
     int symbol = -1;
     std::vector<int> candidates;
   };
-  // Completion (notation §3). Memoised; not thread-safe.
+  // Completion (grammar/notation.md §4). Memoised; not thread-safe.
   const Spelling& Spell(const FeatureTree& root) const;
   bool LiteralMatches(int literal, const FeatureTree& root) const;
 

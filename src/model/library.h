@@ -40,7 +40,7 @@ class Library {
   std::vector<std::string> Symbols() const;
   std::vector<std::string> Features() const;
 
-  // The content of a segment in this tree (notation, "What "ipa" says"). Contours the tree has no room for
+  // The content of a segment in this tree (grammar/notation.md §3, "Library values"). Contours the tree has no room for
   // keep their first value; their names are added to `cut`.
   FeatureTree ContentOf(const Segment& segment, const Tree& tree, std::vector<std::string>* cut) const;
 

@@ -1,4 +1,4 @@
-// Each change in each mode, worked out by hand from the meaning of rules (design, "What a form is"; notation §5, §6).
+// Each change in each mode, worked out by hand from the meaning of rules (grammar/notation.md §6, §8).
 #include "unit/graph/graph_case.h"
 
 namespace tiersmith::testing {

@@ -1,5 +1,5 @@
-// What one application of a rule means, point by point; every expected graph is worked out by hand from design §1 and
-// notation §4-§6, never from output.
+// What one application of a rule means, point by point; every expected graph is worked out by hand from
+// grammar/notation.md §5, §6, §8, never from output.
 #include <algorithm>
 
 #include "unit/graph/graph_case.h"

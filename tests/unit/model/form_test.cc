@@ -1,4 +1,4 @@
-// Feature trees and forms as plain values. The graphs are written down by hand from the design, "What a form is".
+// Feature trees and forms as plain values. The graphs are written down by hand from grammar/notation.md §2, §8.
 #include "model/form.h"
 
 #include "unit/model/model_case.h"

@@ -1,5 +1,5 @@
 // Segments, archisegments, allophones, diacritics, omit and Completion. Expected contents are worked out by hand from the
-// notation (grammar/notation.md, sections 2 and 3).
+// notation (grammar/notation.md §3, §4).
 #include "unit/model/model_case.h"
 
 namespace tiersmith::testing {

@@ -1,5 +1,5 @@
-// The segment library: what "ipa" says. The values are the ones fixed in the notation (grammar/notation.md, "What "ipa"
-// says"), after the chart of the International Phonetic Association (2020 revision); every row repeats a clause of that page.
+// The segment library: what "ipa" says. The values are the ones fixed in the notation (grammar/notation.md §3, "Library
+// values"), after the chart of the International Phonetic Association (2020 revision); every row repeats a clause of that page.
 #include "model/library.h"
 
 #include "unit/model/model_case.h"

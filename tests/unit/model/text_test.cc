@@ -1,4 +1,4 @@
-// Reading and writing forms (grammar/notation.md, section 9: "Symbols are matched longest first"), comparison, and what is
+// Reading and writing forms (grammar/notation.md §7: symbols are read longest first), comparison, and what is
 // said of text that cannot be read. Equated signs are those the notation lists; code points and names are Unicode's.
 #include "model/text.h"
 

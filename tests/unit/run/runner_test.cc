@@ -1,5 +1,5 @@
 // Running machines on text: what cannot be read or written, length, boundaries, empty forms; recovery: order, how many, when to stop.
-// Expected forms follow from the notation (section 7) and the rules written beside them; counts are worked out by hand.
+// Expected forms follow from grammar/notation.md §7, §8 and the rules written beside them; counts are worked out by hand.
 #include "unit/run/compiled_case.h"
 
 #include <algorithm>
