@@ -1,4 +1,4 @@
-# Runs the console blocks of README.md and compares: a line "$ command", then what it prints. In an expected line the
+# Runs the console blocks of README.md and compares, and its table of sizes: a line "$ command", then what it prints. In an expected line the
 # sign … stands for anything (times).
 source "$(dirname "$0")/common.inc"
 mkdir "$t/bin"
@@ -49,5 +49,16 @@ while IFS= read -r line; do
     expected+="$line"$'\n'
   fi
 done <README.md
+# The table of sizes: a row for each ruleset with data, as `compile` counts them.
+rows=0
+for grammar in rulesets/*/*.tier; do
+  name="$(basename "$grammar" .tier)"
+  run compile "$grammar" --format tsv
+  IFS=$'\t' read -r _ rules states arcs _ <<<"${out##*$'\n'}"
+  row="| \`$name\` | $rules | $states | $arcs |"
+  grep -qxF "$row" README.md || fail "in the README's table of sizes expected: $row"
+  rows=$((rows + 1))
+done
+[[ "$rows" -ge 5 ]] || fail "rulesets expected"
 [[ "$examples" -ge 5 ]] || { code=0; out="$examples"; err=""; fail "examples expected in README.md"; }
 done_testing
