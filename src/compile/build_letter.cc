@@ -38,6 +38,8 @@ void MarkLinks(WorkPart* part, const Key& annotated, const RuleSpace& space) {
   for (WorkPart& daughter : part->daughters) MarkLinks(&daughter, annotated, space);
 }
 
+}  // namespace
+
 const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last) {
   const WorkPart* found = nullptr;
   for (const WorkPart& daughter : part.daughters) {
@@ -48,8 +50,6 @@ const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last) {
   }
   return found;
 }
-
-}  // namespace
 
 int ContentPool::Intern(const WorkPart& part) {
   Letter letter;

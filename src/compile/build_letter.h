@@ -1,7 +1,7 @@
 // One letter after a rule: its parts, and where each came from.
 //
 // Used twice: by iterative rules, which must know what stands behind them, and by the last pass, which
-// computes the link bits from the origins (compile/apply.h).
+// computes the link bits from the origins (compile/rule_machine.h).
 #pragma once
 
 #include <vector>
@@ -28,6 +28,9 @@ struct WorkPart {
   std::uint32_t links = 0;  // for each daughter kind: is the last one linked to the right, as an object (kObjectRight)
   std::vector<WorkPart> daughters;
 };
+
+// The first or last part of a node under `part`, or null.
+const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last);
 
 // Contents that travel, with the links of their right end.
 class ContentPool {

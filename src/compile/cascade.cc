@@ -466,34 +466,20 @@ class CascadeCompiler {
 
   // A form that goes this path, written with the first symbols that fit; at position `at`, one with the given rest.
   std::string FormText(const std::vector<TapeArc>& path, int at = -1, int rest = -1) const {
-    std::string text;
-    bool linked = false;
-    int previous = -1;
+    std::vector<const InputLetter*> letters;
     for (std::size_t i = 0; i < path.size(); ++i) {
-      const InputLetter* chosen = nullptr;
+      const InputLetter* before = letters.empty() ? nullptr : letters.back();
+      const InputLetter* chosen = nullptr;  // past a cut the letters are not underlying ones
       for (const InputLetter& input : data_->inputs) {
         if (input.parts.class_id != path[i].in) continue;
         if (static_cast<int>(i) == at && input.parts.rest != rest) continue;
-        if (linked && input.symbol != previous) continue;
+        if (before != nullptr && before->linked && input.symbol != before->symbol) continue;
         chosen = &input;
         break;
       }
-      if (chosen == nullptr) {  // past a cut the letters are not underlying ones
-        text += "?";
-        linked = false;
-        continue;
-      }
-      if (chosen->symbol < 0) {
-        text += chosen->boundary == Boundary::kMorpheme ? "-" : chosen->boundary == Boundary::kClitic ? "="
-                : chosen->boundary == Boundary::kWord   ? "#"
-                                                        : "‖";
-      } else {
-        text += linked ? "ː" : grammar_.inventory.symbols[chosen->symbol].text;
-      }
-      linked = chosen->linked;
-      previous = chosen->symbol;
+      letters.push_back(chosen);
     }
-    return text;
+    return WriteInputs(grammar_, letters);
   }
 
   const Grammar& grammar_;
@@ -518,6 +504,22 @@ std::unique_ptr<Cascade> CompileWith(const Grammar& grammar, const Limits& limit
 }
 
 }  // namespace
+
+std::string WriteInputs(const Grammar& grammar, const std::vector<const InputLetter*>& letters) {
+  std::string text;
+  bool linked = false;
+  for (const InputLetter* letter : letters) {
+    if (letter == nullptr) {
+      text += "?";
+    } else if (letter->symbol < 0) {
+      text += BoundarySign(letter->boundary);
+    } else {
+      text += linked ? "ː" : grammar.inventory.symbols[letter->symbol].text;
+    }
+    linked = letter != nullptr && letter->linked;
+  }
+  return text;
+}
 
 Cascade::Cascade(std::unique_ptr<CascadeData> data) : data_(std::move(data)) {}
 Cascade::~Cascade() = default;

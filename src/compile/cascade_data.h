@@ -36,6 +36,9 @@ struct CascadeData {
   std::vector<Segment> segments;
 };
 
+// The form these letters spell; null: a letter that no underlying form has ("?").
+std::string WriteInputs(const Grammar& grammar, const std::vector<const InputLetter*>& letters);
+
 // For agreement tests: compiles over given letters (any sharing), keeps all link bits, and leaves ambiguous and far-reaching
 // changes in the machine as flags instead of refusing the grammar.
 std::unique_ptr<Cascade> CompileForTesting(const Grammar& grammar, const std::vector<Letter>& letters,

@@ -72,15 +72,11 @@ void Append(Key* key, const Key& more) { key->insert(key->end(), more.begin(), m
 // carried for each proper ancestor below the slot, the last content (+1), the content left of the mother's span (+1), Need to the right.
 class SpanPass {
  public:
-  SpanPass(const RequestSpace& requests, const LetterBuilder& builder) : requests_(requests), builder_(builder) {
-    for (NodeId node : requests.nodes()) {
-      std::vector<NodeId> ancestors;
-      for (NodeId at = requests.space().tree()[node].mother; at != kSlotNode; at = requests.space().tree()[at].mother) {
-        ancestors.push_back(at);
-      }
+  SpanPass(const RequestSpace& requests, const LetterBuilder& builder)
+      : requests_(requests), builder_(builder), carrier_(requests, /*rightward=*/true) {
+    for (std::size_t i = 0; i < requests.nodes().size(); ++i) {
       offsets_.push_back(size_);
-      size_ += ancestors.size() + 3;
-      ancestors_.push_back(std::move(ancestors));
+      size_ += carrier_.StateSize(i) + 3;
     }
   }
 
@@ -96,7 +92,7 @@ class SpanPass {
     for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
       const NodeId node = requests_.nodes()[i];
       std::int32_t* carried = &step.state[offsets_[i]];
-      std::int32_t* last = carried + ancestors_[i].size();
+      std::int32_t* last = carried + carrier_.StateSize(i);
       std::int32_t* of_mother = last + 1;
       std::int32_t* need = last + 2;
       std::int32_t& request = step.symbol[request_at + 1 + i];
@@ -104,7 +100,7 @@ class SpanPass {
         step.symbol[right_at + i] = MeetsSource(need, symbol, node, kFromLeft, space);
         if (request & kLineRight) Ask(need, symbol, node, space);
       }
-      Carry(symbol, i, carried, &request);
+      carrier_.Step(symbol, i, carried, &request);
       if (!requests_.SpreadsFrom(true, i)) {
         step.symbol[left_at + i] = -1;
         continue;
@@ -120,22 +116,9 @@ class SpanPass {
   }
 
  private:
-  void Carry(const Key& symbol, std::size_t i, std::int32_t* carried, std::int32_t* request) const {
-    const RuleSpace& space = requests_.space();
-    const NodeId anchor = space.LowestAncestor(symbol[0], requests_.nodes()[i]);
-    for (std::size_t k = 0; k < ancestors_[i].size(); ++k) {
-      const NodeId ancestor = ancestors_[i][k];
-      if (space.Of(symbol[0], ancestor).count == 0) continue;
-      if (ancestor == anchor && (space.Marks(symbol, ancestor) & kFromLeft)) {
-        *request = RequestSpace::Combine(*request, carried[k]);
-      }
-      carried[k] = ancestor == anchor && (space.Marks(symbol, ancestor) & kToRight) ? *request : 0;
-    }
-  }
-
   const RequestSpace& requests_;
   const LetterBuilder& builder_;
-  std::vector<std::vector<NodeId>> ancestors_;
+  RequestCarrier carrier_;
   std::vector<std::size_t> offsets_;
   std::size_t size_ = 0;
 };
@@ -213,17 +196,6 @@ struct Direction {
 
 // What the letters behind say to the next: by live node, is the last bearer linked ahead (1), and its near object mark (2).
 constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
-
-const WorkPart* PartIn(const WorkPart& part, NodeId node, bool last) {
-  const WorkPart* found = nullptr;
-  for (const WorkPart& daughter : part.daughters) {
-    const WorkPart* here = daughter.node == node ? &daughter : PartIn(daughter, node, last);
-    if (here == nullptr) continue;
-    found = here;
-    if (!last) return found;
-  }
-  return found;
-}
 
 void DropLinks(WorkPart* part) {
   part->links = 0;
@@ -430,7 +402,7 @@ class Sweep {
     for (std::size_t i = 0; i < nodes(); ++i) {
       if (!requests_.SpreadsFrom(direction_.rightward, i)) continue;
       const WorkPart before = builder_.Before(now);
-      const WorkPart* part = PartIn(before, requests_.nodes()[i], direction_.rightward);
+      const WorkPart* part = FindPart(before, requests_.nodes()[i], direction_.rightward);
       if (part != nullptr) Remember(state, i, *part);
     }
     state->near = StepOn(state->near, Known(now));
@@ -570,7 +542,7 @@ class Sweep {
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       const NodeId node = space_.live()[i];
       if (!deciding_[node] || !(now[1 + i] & direction_.near_line()) || LinkGoesOn(now, i)) continue;
-      const WorkPart* first = PartIn(built.slot, node, !direction_.rightward);
+      const WorkPart* first = FindPart(built.slot, node, !direction_.rightward);
       const int near_index = direction_.rightward ? 0 : space_.Of(now[0], node).count - 1;
       const bool stays = !(request[0] & kDeleteSlot) && first != nullptr && first->origin == Origin::kOwn &&
                          first->old_index == near_index;
@@ -664,7 +636,7 @@ class Sweep {
     }
     for (std::size_t i = 0; i < nodes(); ++i) {
       if (!requests_.SpreadsFrom(direction_.rightward, i)) continue;
-      const WorkPart* part = PartIn(built.slot, requests_.nodes()[i], direction_.rightward);
+      const WorkPart* part = FindPart(built.slot, requests_.nodes()[i], direction_.rightward);
       if (part == nullptr) continue;
       WorkPart content = *part;
       if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
@@ -691,13 +663,13 @@ class Sweep {
     std::int32_t& behind = state->behind[live];
     const bool linked = behind & kLinkedAhead;
     const bool goes_on = old_count == 0 ? linked : LinkGoesOn(now, live);
-    const WorkPart* first = PartIn(slot, node, !direction_.rightward);  // nearest to what is behind
+    const WorkPart* first = FindPart(slot, node, !direction_.rightward);  // nearest to what is behind
     if (first == nullptr) {
       if (!goes_on) behind &= ~kLinkedAhead;
       if (goes_on) (*letter)[1 + live] = kOver;
       return;
     }
-    const WorkPart* last = PartIn(slot, node, direction_.rightward);
+    const WorkPart* last = FindPart(slot, node, direction_.rightward);
     const Origin near_origin = direction_.rightward ? Origin::kNewLeft : Origin::kNewRight;
     const Origin far_origin = direction_.rightward ? Origin::kOldRight : Origin::kOldLeft;
     const Moved moved = MovedWith(slot, node, near_origin, far_origin);

@@ -32,7 +32,11 @@ struct Program {
   std::vector<Instruction> code;
   int start = 0;
   bool sees_empty = false;
+  bool too_long = false;
 };
+
+// Quantities are unrolled, and may be nested: a program longer than this is refused, not built.
+constexpr std::size_t kMostInstructions = 20'000;
 
 // ---- configurations ---------------------------------------------------------------------------
 // Zones of a spread (all as seen walking from the source to the target).
@@ -291,6 +295,8 @@ struct PatternCompiler::Impl {
 
   // Returns the entry of code that matches `pattern` and goes on at `next`.
   int CompileSequence(const Pattern& pattern, int next, bool main, Program* program) {
+    if (program->code.size() > kMostInstructions) program->too_long = true;
+    if (program->too_long) return next;
     for (std::size_t i = pattern.items.size(); i-- > 0;) {
       const PatternItem& item = pattern.items[i];
       Instruction instruction;
@@ -533,7 +539,7 @@ struct PatternCompiler::Impl {
   // ---- the automaton --------------------------------------------------------------------------
   struct Builder;
   MarkedMachine BuildMain(std::size_t max_states, KeyPool* roles) const;
-  MarkedMachine BuildUnless(const Program& program) const;
+  MarkedMachine BuildUnless(const Program& program, std::size_t max_states) const;
 };
 
 bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& setting, bool fill) const {
@@ -660,6 +666,7 @@ struct PatternCompiler::Impl::Builder {
   }
 
   MarkedMachine Run(std::size_t max_states) {
+    if (program.too_long) return OverBudget();
     const std::int32_t masks = 1 << SpreadCount();
     for (std::int32_t mask = 0; mask < masks; ++mask) {
       machine.initial.push_back(Intern(Start(mask)));
@@ -858,8 +865,8 @@ MarkedMachine PatternCompiler::Impl::BuildMain(std::size_t max_states, KeyPool* 
   return Builder(*this, where, /*is_main=*/true, roles).Run(max_states);
 }
 
-MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program) const {
-  return Builder(*this, program, /*is_main=*/false, nullptr).Run(static_cast<std::size_t>(-1));
+MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program, std::size_t max_states) const {
+  return Builder(*this, program, /*is_main=*/false, nullptr).Run(max_states);
 }
 
 PatternCompiler::PatternCompiler(const Rule& rule, const RuleSpace& space) : impl_(new Impl(rule, space)) {}
@@ -926,7 +933,9 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
     for (const Instruction& instruction : program.code) {
       if (instruction.op == Instruction::Op::kSlot && instruction.mark >= 0) labels.insert(instruction.mark);
     }
-    machine = Minus(machine, UnlessBan(impl_->BuildUnless(program), labels), max_states);
+    const MarkedMachine unless = impl_->BuildUnless(program, max_states);
+    if (unless.over_budget) machine = unless;
+    machine = Minus(machine, UnlessBan(unless, labels), max_states);
   }
   const MarkedMachine whole = machine;
   for (const GapInfo& gap : impl_->gaps) {

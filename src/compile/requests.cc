@@ -123,4 +123,26 @@ std::int32_t RequestSpace::Combine(std::int32_t a, std::int32_t b) {
   return combined | (values_a != 0 ? values_a : values_b) << kValuesShift;
 }
 
+RequestCarrier::RequestCarrier(const RequestSpace& requests, bool rightward)
+    : requests_(requests), from_(rightward ? kFromLeft : kToRight), onward_(rightward ? kToRight : kFromLeft) {
+  const Tree& tree = requests.space().tree();
+  for (NodeId node : requests.nodes()) {
+    std::vector<NodeId> ancestors;
+    for (NodeId at = tree[node].mother; at != kSlotNode; at = tree[at].mother) ancestors.push_back(at);
+    ancestors_.push_back(std::move(ancestors));
+  }
+}
+
+void RequestCarrier::Step(const Key& annotated, std::size_t node_index, std::int32_t* state, std::int32_t* request) const {
+  const RuleSpace& space = requests_.space();
+  const NodeId anchor = space.LowestAncestor(annotated[0], requests_.nodes()[node_index]);
+  for (std::size_t k = 0; k < ancestors_[node_index].size(); ++k) {
+    const NodeId ancestor = ancestors_[node_index][k];
+    if (space.Of(annotated[0], ancestor).count == 0) continue;  // goes by
+    const std::int32_t marks = ancestor == anchor ? space.Marks(annotated, ancestor) : 0;
+    if (marks & from_) *request = RequestSpace::Combine(*request, state[k]);
+    state[k] = marks & onward_ ? *request : 0;
+  }
+}
+
 }  // namespace tiersmith

@@ -25,10 +25,9 @@ enum RequestBit : std::int32_t {
 };
 enum SlotBit : std::int32_t {
   kDeleteSlot = 1,
-  kChanged = 2,      // some match that is not vacuous
-  kReaches = 4,      // an iterative change that reaches another root
-  kUnsure = 8,       // an iterative change that may free a nearer target behind it (compile/find.h)
-  kInsertShift = 4,  // from here up: one bit for each change of the rule
+  kReaches = 2,      // an iterative change that reaches another root
+  kUnsure = 4,       // an iterative change that may free a nearer target behind it (compile/find.h)
+  kInsertShift = 3,  // from here up: one bit for each change of the rule
 };
 
 class RequestSpace {
@@ -61,6 +60,22 @@ class RequestSpace {
   const std::vector<Spread>& spreads_;
   std::vector<NodeId> nodes_;
   std::vector<std::vector<Value>> contents_;
+};
+
+// Carries requests along the spans of shared mothers, in one direction: a request made of one holder is made of all. State of
+// one request node: the request carried for each of its ancestors below the slot.
+class RequestCarrier {
+ public:
+  RequestCarrier(const RequestSpace& requests, bool rightward);
+
+  std::size_t StateSize(std::size_t node_index) const { return ancestors_[node_index].size(); }
+  // Adds what is carried here to `request`, and takes what is to be carried on.
+  void Step(const Key& annotated, std::size_t node_index, std::int32_t* state, std::int32_t* request) const;
+
+ private:
+  const RequestSpace& requests_;
+  std::int32_t from_, onward_;  // marks of a line to the holder before, and to the next
+  std::vector<std::vector<NodeId>> ancestors_;
 };
 
 // The values a letter's part bears of `node`, in order.

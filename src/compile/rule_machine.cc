@@ -21,13 +21,11 @@ class ApplyPass {
         at_once_(rule.mode == Rule::Mode::kAtOnce),
         deletes_(std::any_of(rule.changes.begin(), rule.changes.end(), [](const Change& c) { return c.op == Change::Op::kDelete; })),
         draw_(space_, deletes_ ? all_links : kept_links, rule.mode == Rule::Mode::kLeftward),
-        erase_(space_, kept_links, false) {
-    for (NodeId node : requests.nodes()) {
-      std::vector<NodeId> ancestors;
-      for (NodeId at = space_.tree()[node].mother; at != kSlotNode; at = space_.tree()[at].mother) ancestors.push_back(at);
+        erase_(space_, kept_links, false),
+        carrier_(requests, /*rightward=*/false) {
+    for (std::size_t i = 0; i < requests.nodes().size(); ++i) {
       offsets_.push_back(size_);
-      size_ += ancestors.size() + 2;
-      ancestors_.push_back(std::move(ancestors));
+      size_ += carrier_.StateSize(i) + 2;
     }
     Letter empty;
     no_letter_.assign(space_.AnnotatedSize(), 0);
@@ -66,8 +64,8 @@ class ApplyPass {
     Key contents(requests_.nodes().size(), -1);
     if (at_once_) {
       for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
-        Carry(letter, i, &step.state[offsets_[i]], &request[1 + i]);
-        contents[i] = RightContent(letter, i, right[i] != 0, &step.state[offsets_[i] + ancestors_[i].size()]);
+        carrier_.Step(letter, i, &step.state[offsets_[i]], &request[1 + i]);
+        contents[i] = RightContent(letter, i, right[i] != 0, &step.state[offsets_[i] + carrier_.StateSize(i)]);
       }
       right = contents.data();
     }
@@ -96,18 +94,6 @@ class ApplyPass {
   }
 
  private:
-  void Carry(const Key& letter, std::size_t i, std::int32_t* carried, std::int32_t* request) const {
-    const NodeId anchor = space_.LowestAncestor(letter[0], requests_.nodes()[i]);
-    for (std::size_t k = 0; k < ancestors_[i].size(); ++k) {
-      const NodeId ancestor = ancestors_[i][k];
-      if (space_.Of(letter[0], ancestor).count == 0) continue;
-      if (ancestor == anchor && (space_.Marks(letter, ancestor) & kToRight)) {
-        *request = RequestSpace::Combine(*request, carried[k]);
-      }
-      carried[k] = ancestor == anchor && (space_.Marks(letter, ancestor) & kFromLeft) ? *request : 0;
-    }
-  }
-
   // `memory`: the first content to the right (+1), and the one right of the mother's span (+1).
   std::int32_t RightContent(const Key& letter, std::size_t i, bool needed, std::int32_t* memory) const {
     if (!requests_.SpreadsFrom(false, i)) return -1;
@@ -185,7 +171,7 @@ class ApplyPass {
   bool at_once_;
   bool deletes_;
   Repair draw_, erase_;
-  std::vector<std::vector<NodeId>> ancestors_;
+  RequestCarrier carrier_;
   std::vector<std::size_t> offsets_;
   std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0;
   Key no_letter_;

@@ -61,6 +61,22 @@ class Renumberer {
 
 }  // namespace
 
+const char* BoundarySign(Boundary boundary) {
+  switch (boundary) {
+    case Boundary::kNone:
+      return "";
+    case Boundary::kMorpheme:
+      return "-";
+    case Boundary::kClitic:
+      return "=";
+    case Boundary::kWord:
+      return "#";
+    case Boundary::kPhrase:
+      return "‖";
+  }
+  return "";
+}
+
 Form Canonical(const Form& form) { return Renumberer(form).Run(); }
 
 std::int64_t RootOf(const Form& form, const FormItem& item) {
@@ -362,21 +378,6 @@ class Dumper {
   }
 
  private:
-  static const char* BoundarySign(Boundary boundary) {
-    switch (boundary) {
-      case Boundary::kNone:
-        return "?";
-      case Boundary::kMorpheme:
-        return "-";
-      case Boundary::kClitic:
-        return "=";
-      case Boundary::kWord:
-        return "#";
-      case Boundary::kPhrase:
-        return "‖";
-    }
-    return "?";
-  }
   void Count(InstanceId id, std::vector<bool>& seen) {
     ++holders_[id];
     if (seen[id]) return;

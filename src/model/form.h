@@ -1,4 +1,4 @@
-// A form as a plain value: the autosegmental graph written down (design: "What a form is").
+// A form as a plain value: the autosegmental graph written down (grammar/notation.md §8 says what rules do to it).
 //
 // `instances` is a pool; an instance held by several mothers is shared, which is how geminates,
 // long vowels and spreading look. Example, /anta/ after place assimilation under a Place node:
@@ -27,6 +27,9 @@ struct Instance {
 };
 
 enum class Boundary : std::uint8_t { kNone, kMorpheme, kClitic, kWord, kPhrase };  // by strength
+
+// As it is typed: "-", "=", "#", "‖".
+const char* BoundarySign(Boundary boundary);
 
 struct FormItem {
   enum class Kind : std::uint8_t { kSlot, kBoundary, kFloat };

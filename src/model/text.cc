@@ -431,22 +431,6 @@ const char* SurfaceSign(Boundary boundary) {
   return "";
 }
 
-const char* TypedSign(Boundary boundary) {
-  switch (boundary) {
-    case Boundary::kNone:
-      return "";
-    case Boundary::kMorpheme:
-      return "-";
-    case Boundary::kClitic:
-      return "=";
-    case Boundary::kWord:
-      return "#";
-    case Boundary::kPhrase:
-      return "‖";
-  }
-  return "";
-}
-
 }  // namespace
 
 bool WriteForm(const Grammar& grammar, const Form& form, std::string* text, FeatureTree* no_symbol) {
@@ -470,7 +454,7 @@ std::string DescribeForm(const Grammar& grammar, const Form& form) {
     text += grammar.inventory.Describe(ContentOf(form, root), grammar.tree);
     return true;
   };
-  Write(form, describe, TypedSign, &text);
+  Write(form, describe, BoundarySign, &text);
   return text;
 }
 

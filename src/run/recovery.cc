@@ -231,20 +231,9 @@ struct Recovery::Impl {
   }
 
   std::string Text(const std::vector<int>& ids) const {
-    std::string text;
-    bool linked = false;
-    for (int id : ids) {
-      const InputLetter* input = input_of.at(id);
-      if (input->symbol < 0) {
-        text += input->boundary == Boundary::kMorpheme ? "-" : input->boundary == Boundary::kClitic ? "="
-                : input->boundary == Boundary::kWord   ? "#"
-                                                       : "‖";
-      } else {
-        text += linked ? "ː" : grammar.inventory.symbols[input->symbol].text;
-      }
-      linked = input->linked;
-    }
-    return text;
+    std::vector<const InputLetter*> inputs;
+    for (int id : ids) inputs.push_back(input_of.at(id));
+    return WriteInputs(grammar, inputs);
   }
 
   // The letters on cycles, with the first rule that deletes them.

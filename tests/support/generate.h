@@ -58,7 +58,7 @@ struct NamedTest {
   std::string name;
   SlotTest test;
 };
-// [], C, V, N (nasal), voiceless, without Place first (the six of the exhaustive tests), then more.
+// [], C, V, N (nasal), voiceless, without Place first (the six of the exhaustive tests), then more, then the grammar's literals.
 std::vector<NamedTest> NamedTests(const Grammar& grammar);
 
 // Would the checker refuse it (notation §5, what is said of relinking and of iteration; nodes with contoured mothers)?

@@ -336,6 +336,12 @@ std::vector<NamedTest> NamedTests(const Grammar& grammar) {
                              "+syll -high", "-syll Place", "ant", "cont"}) {
     tests.push_back({bundle, BundleOf(grammar, bundle)});
   }
+  for (std::size_t i = 0; i < grammar.inventory.literals.size(); ++i) {
+    SlotTest test;
+    test.op = SlotTest::Op::kLiteral;
+    test.literal = static_cast<int>(i);
+    tests.push_back({"/" + grammar.inventory.symbols[grammar.inventory.literals[i].symbol].text + "/", test});
+  }
   return tests;
 }
 
@@ -426,7 +432,11 @@ Grammar RandomGrammar(Rng& rng, int max_rules, bool with_problems) {
   }
   symbols.resize(5 + Below(rng, 4));
   grammar.inventory.by_text.clear();
-  for (std::size_t i = 0; i < symbols.size(); ++i) grammar.inventory.by_text[symbols[i].text] = static_cast<int>(i);
+  grammar.inventory.literals.clear();
+  for (std::size_t i = 0; i < symbols.size(); ++i) {
+    grammar.inventory.by_text[symbols[i].text] = static_cast<int>(i);
+    grammar.inventory.literals.push_back({static_cast<int>(i)});
+  }
   const std::vector<FeatureTree> letters = LettersOf(grammar);
   const std::vector<NamedTest> tests = NamedTests(grammar);
   FormOptions options;

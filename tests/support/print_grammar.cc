@@ -66,22 +66,6 @@ const Symbol* SymbolOf(const Grammar& grammar, const FeatureTree& root) {
   return nullptr;
 }
 
-const char* Sign(Boundary boundary) {
-  switch (boundary) {
-    case Boundary::kNone:
-      return "";
-    case Boundary::kMorpheme:
-      return "-";
-    case Boundary::kClitic:
-      return "=";
-    case Boundary::kWord:
-      return "#";
-    case Boundary::kPhrase:
-      return "‖";
-  }
-  return "";
-}
-
 class RulePrinter {
  public:
   RulePrinter(const Grammar& grammar, const Rule& rule) : grammar_(grammar), tree_(grammar.tree), rule_(rule) {}
@@ -117,7 +101,7 @@ class RulePrinter {
         if (unless && item.test.op == SlotTest::Op::kAny) return rule_.labels[item.label];
         return rule_.labels[item.label] + ":" + PrintTest(grammar_, item.test);
       case PatternItem::Kind::kBoundary:
-        return Sign(item.boundary);
+        return BoundarySign(item.boundary);
       case PatternItem::Kind::kGap:
         return "..." + (item.tier ? tree_[*item.tier].name : "");
       case PatternItem::Kind::kGroup: {
@@ -267,7 +251,7 @@ std::string PrintForm(const Grammar& grammar, const Form& form) {
   for (const FormItem& item : form.items) {
     if (item.kind == FormItem::Kind::kFloat) return "";
     if (item.kind == FormItem::Kind::kBoundary) {
-      text += item.boundary == Boundary::kWord ? " " : Sign(item.boundary);
+      text += item.boundary == Boundary::kWord ? " " : BoundarySign(item.boundary);
       root_before = -1;
       continue;
     }

@@ -139,6 +139,22 @@ TEST_CASE("cascade: budgets name the rule", "[unit]") {
   }
 }
 
+// A pattern that is too large is refused, at once, and not taken for one that never matches.
+TEST_CASE("cascade: patterns past every budget are refused", "[unit]") {
+  const char* rules[] = {
+      "rule \"q\" { where X:[-syll] ((((([-syll]₀⁹⁹)₀⁹⁹)₀⁹⁹)₀⁹⁹)₀⁹⁹) Y:[+syll] delete X }",
+      "rule \"q\" { where X:[-son -voice] (([-son]₀⁹⁹ [+son]₀⁹⁹)₀³⁰ [-son])₀⁹⁹ [+nasal] set X [+voice] }",
+      "rule \"q\" { where X:[-syll] unless X ((((([-syll]₀⁹⁹)₀⁹⁹)₀⁹⁹)₀⁹⁹)₀⁹⁹) [+syll] delete X }",
+  };
+  for (const char* rule : rules) {
+    CAPTURE(rule);
+    Compiled compiled = CompileText(std::string(kSmallInventory) + rule);
+    CHECK(compiled.cascade == nullptr);
+    REQUIRE(compiled.diagnostics.all().size() == 1);
+    CHECK(compiled.diagnostics.all()[0].kind == Kind::kLimit);
+  }
+}
+
 // Where the next rule would pass a budget the cascade is cut, and the machines run one after the other: no form comes out differently.
 TEST_CASE("cascade: cut in two it derives the same", "[unit]") {
   struct Case {
