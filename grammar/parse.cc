@@ -592,6 +592,54 @@ struct get_info<no_skip_directive<Subject>> {
   using result_type = std::string;
   std::string operator()(const no_skip_directive<Subject>& parser) const { return what(parser.subject); }
 };
+// "a or b"; the "@" of either stands first.
+inline std::string either(std::string one, std::string other) {
+  const bool name_fits = one.substr(0, 1) == "@" || other.substr(0, 1) == "@";
+  if (one.substr(0, 1) == "@") one.erase(0, 1);
+  if (other.substr(0, 1) == "@") other.erase(0, 1);
+  return (name_fits ? "@" : "") + (one == other ? one : one + " or " + other);
+}
+template <class Left, class Right>
+struct get_info<alternative<Left, Right>> {
+  using result_type = std::string;
+  std::string operator()(const alternative<Left, Right>& parser) const {
+    return either(what(parser.left), what(parser.right));
+  }
+};
+// A sequence is called what it begins with: its first part, and the next one too where the first may be missing.
+template <class Left, class Right>
+struct get_info<sequence<Left, Right>> {
+  using result_type = std::string;
+  std::string operator()(const sequence<Left, Right>& parser) const { return beginning(parser.left, parser.right); }
+
+ private:
+  template <class First>
+  static std::string beginning(const First& first, const Right&) {
+    return what(first);
+  }
+  template <class Subject>
+  static std::string beginning(const not_predicate<Subject>&, const Right& next) {
+    return what(next);
+  }
+  template <class Subject>
+  static std::string beginning(const optional<Subject>& first, const Right& next) {
+    return either(what(first.subject), what(next));
+  }
+  template <class Subject>
+  static std::string beginning(const kleene<Subject>& first, const Right& next) {
+    return either(what(first.subject), what(next));
+  }
+};
+template <class Subject>
+struct get_info<and_predicate<Subject>> {
+  using result_type = std::string;
+  std::string operator()(const and_predicate<Subject>& parser) const { return what(parser.subject); }
+};
+template <>
+struct get_info<tiersmith::Wanted> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::Wanted& wanted) const { return wanted.what; }
+};
 template <>
 struct get_info<tiersmith::End> {
   using result_type = std::string;

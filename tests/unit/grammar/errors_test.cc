@@ -2,8 +2,11 @@
 // that no input, however broken, does more than give errors. `where X:/k delete X }` leaves a form open up to
 // its line's end.
 #include <catch2/catch.hpp>
+#include <cctype>
 #include <fstream>
+#include <iterator>
 #include <random>
+#include <regex>
 #include <sstream>
 
 #include "grammar/parse.h"
@@ -340,6 +343,85 @@ TEST_CASE("errors: deep brackets are refused, not followed", "[unit]") {
   std::string text = "class V = ";
   for (int i = 0; i < 100000; ++i) text += "not ";
   CHECK(!Read(text).errors.empty());
+}
+
+TEST_CASE("errors: what was expected is said in words", "[unit]") {
+  const struct {
+    const char* text;
+    const char* expected;
+  } rows[] = {
+      {"rule \"x\" { where X:[+son] optional }", "expected a number, found the end"},
+      {"rule \"x\" { where H:[+son] optional delete H }", "expected a number, found 'delete'"},
+      {"class V = [no within back]", "'within' is a word of the notation and cannot be a name here"},
+      {"class V = [no : back]", "expected a feature, found ':'"},
+      {"class V = [no Tone:]", "expected a name or '(', found ']'"},
+  };
+  for (const auto& row : rows) {
+    const Found found = Read(row.text);
+    INFO(row.text << "\n" << Names(found));
+    REQUIRE(!found.errors.empty());
+    CHECK(found.errors[0].message == row.expected);
+  }
+}
+
+// Tokens as a reader sees them: words with their letters, any other character alone, blanks with what they follow.
+std::vector<std::string> Tokens(const std::string& text) {
+  std::vector<std::string> tokens;
+  bool in_word = false;
+  for (const char c : text) {
+    const bool blank = c == ' ' || c == '\n';
+    const bool word = std::isalnum(static_cast<unsigned char>(c)) || static_cast<unsigned char>(c) >= 0x80;
+    if (tokens.empty() || !(blank || (word && in_word)))
+      tokens.emplace_back(1, c);
+    else
+      tokens.back() += c;
+    in_word = word;
+  }
+  return tokens;
+}
+
+TEST_CASE("errors: no message names a type of the program", "[unit]") {
+  std::stringstream grammar;
+  grammar << std::ifstream(std::string(TIERSMITH_TEST_SOURCE) + "/demo/velmari.tier").rdbuf();
+  const std::vector<std::string> whole = Tokens(grammar.str());
+  REQUIRE(whole.size() > 300);
+  // Words that the demo does not use stand in some of the messages too.
+  const char* const others[] = {"optional ", "within ", "only ", "except ", "repeat ", "on ", "copy ", "merge ", "swap ",
+                                "link ", "to ", "floating ", "held ", "by ", "first ", "shared ", "begins ", "as ",
+                                "if ", "unless ", "otherwise ", "prefer ", "sharing ", "α", "{", "}", "(", ")", "[",
+                                "]", "~ ", "* ", "± ", "+", "- ", ": ", ". ", "| ", "= ", "× ", "¬ ", "⟨", "/", "\""};
+  const std::regex mangled("boost|spirit|N5|N9tiersmith|St[0-9]|E_|undefined|@");
+  std::mt19937 random(20260);
+  std::size_t messages = 0;
+  for (int round = 0; round < 6000; ++round) {
+    std::vector<std::string> tokens = whole;
+    for (unsigned i = 0, n = 1 + random() % 3; i < n; ++i) {
+      const auto at = static_cast<std::ptrdiff_t>(random() % tokens.size());
+      switch (random() % 4) {
+        case 0:
+          tokens.erase(tokens.begin() + at);
+          break;
+        case 1:
+          tokens.insert(tokens.begin() + at, whole[random() % whole.size()]);
+          break;
+        case 2:
+          tokens.insert(tokens.begin() + at, others[random() % std::size(others)]);
+          break;
+        default:
+          std::swap(tokens[static_cast<std::size_t>(at)], tokens[random() % tokens.size()]);
+          break;
+      }
+    }
+    std::string text;
+    for (const std::string& token : tokens) text += token;
+    for (const Diagnostic& d : Read(text).errors) {
+      ++messages;
+      INFO(round << ": " << d.message << "\n" << d.remedy);
+      REQUIRE(!std::regex_search(d.message, mangled));
+      REQUIRE(!d.remedy.empty());
+    }
+  }
+  CHECK(messages > 6000);
 }
 
 TEST_CASE("broken input gives errors and nothing worse", "[unit]") {
