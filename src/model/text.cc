@@ -6,6 +6,7 @@
 #include "model/text.h"
 
 #include <algorithm>
+#include <cstdio>
 #include <memory>
 #include <set>
 #include <sstream>
@@ -99,6 +100,7 @@ struct Reader::Impl {
 
   bool Fail(std::size_t unit, Kind kind, std::string message, std::string remedy, TextError* error) const;
   bool FailSymbol(int id, std::size_t unit, std::size_t end, Side side, TextError* error) const;
+  bool FailBytes(std::size_t unit, std::string_view typed, TextError* error) const;
   bool FailUnknown(std::size_t unit, TextError* error) const;
   std::string Nearest(std::size_t unit) const;
   std::string NearestByFeatures(char32_t code) const;
@@ -172,7 +174,11 @@ bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* t
       boundary = Boundary::kPhrase;
       ++end;
     }
-    if (boundary == Boundary::kNone) return FailUnknown(i, error);
+    if (boundary == Boundary::kNone) {
+      // A byte that is no UTF-8 was read as U+FFFD, one byte long; U+FFFD itself is three.
+      const bool malformed = code == 0xFFFD && units[i].end - units[i].begin == 1;
+      return malformed ? FailBytes(i, typed, error) : FailUnknown(i, error);
+    }
     while (code == U' ' && end < size && units[end].code == U' ') ++end;
     tokens->push_back({Token::Kind::kBoundary, -1, boundary});
     i = end;
@@ -235,6 +241,19 @@ bool Reader::Impl::FailSymbol(int id, std::size_t unit, std::size_t end, Side si
   }
   error->length = text.units[end - 1].end - error->offset;
   return false;
+}
+
+bool Reader::Impl::FailBytes(std::size_t unit, std::string_view typed, TextError* error) const {
+  const std::string_view mark = typed.substr(0, 2);
+  const bool utf16 = mark == "\xFF\xFE" || mark == "\xFE\xFF";
+  char byte[8];
+  std::snprintf(byte, sizeof byte, "0x%02X",
+                static_cast<unsigned>(static_cast<unsigned char>(typed[text.units[unit].begin])));
+  return Fail(unit, Kind::kNotUtf8,
+              std::string("this form is not UTF-8: byte ") + byte + (utf16 ? " begins UTF-16 text" : " cannot stand here"),
+              utf16 ? "give forms as UTF-8; to convert them: iconv -f UTF-16 -t UTF-8"
+                    : "give forms as UTF-8, or convert them from what they are, for example: iconv -f LATIN1 -t UTF-8",
+              error);
 }
 
 bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {

@@ -29,6 +29,17 @@ is_code 2; has_err 'argument:2:4: error: '
 # Bytes that are not UTF-8 are a bad form, not the end.
 feed 'ta\xFFlu\ntalu\n' derive "$velmari" --keep-going
 is_code 1; is_out '∅\ntalu'
+feed 'talu\nɡa\xF1u\n' derive "$velmari"
+is_code 2; has_err '<stdin>:2:3: error: this form is not UTF-8: byte 0xF1 cannot stand here [not-utf8]'
+has_err 'iconv -f LATIN1 -t UTF-8'
+feed 'talu\nɡa\xF1u\n' derive "$velmari" --trace
+is_code 2; has_err '<stdin>:2:3: error: this form is not UTF-8'
+feed '\xFF\xFEt\x00a\x00\n' derive "$velmari"
+is_code 2; has_err '<stdin>:1:1: error: this form is not UTF-8: byte 0xFF begins UTF-16 text'; has_err 'iconv -f UTF-16'
+feed 'talu\nta\xC5' recover "$velmari"       # cut off within ŋ
+is_code 2; has_err '<stdin>:2:3: error: this form is not UTF-8: byte 0xC5'; has_err 'help: give forms as UTF-8'
+feed 'ta\xEF\xBF\xBDlu\n' derive "$velmari"   # U+FFFD itself is a character like any other
+is_code 2; has_err '<stdin>:1:3: error: '; has_err '[unknown-character]'
 
 # A decomposed spelling is the same symbol (ø has no decomposition; ɡ and g are equated).
 run derive "$velmari" kog
