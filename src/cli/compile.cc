@@ -74,8 +74,9 @@ void AddCompile(CLI::App& app, int& code) {
   auto options = std::make_shared<CompileOptions>();
   CLI::App* verb = app.add_subcommand("compile", "compile a grammar and show statistics");
   AddCommonOptions(*verb, *options);
+  verb->get_option("--output")->group("");  // refused with a reason, and so not offered
   verb->add_flag("--stats", options->stats, "segments, rules, states, arcs, classes, letters, bytes, seconds");
-  verb->footer("\nExample:\n  tiersmith compile velmari.tier --stats");
+  verb->footer("\nWriting the machine to a file comes with a later release.\n\nExample:\n  tiersmith compile velmari.tier --stats");
   verb->callback([options, &code] { code = RunCompile(*options); });
 }
 
