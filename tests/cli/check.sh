@@ -36,6 +36,16 @@ is_code 1; [[ "$(wc -l <"$t/.out")" -eq 34 ]] || fail "a line for each row and t
 has_out $'un-koɡ-lA\tunkoɡla\tuŋkoɡla\tfail\tone-rule\tnasal place\t'
 run check "$velmari" "$survey" --format json
 is_code 1; has_out '"failed": 1'; has_out '"rule": "nasal place"'
+# What the README of a ruleset says is printed.
+for readme in "$TIERSMITH_RULESETS"/*/README.md; do
+  said="$(grep -o '[0-9]* of [0-9]* rows derived, [0-9]* failed' "$readme")" || continue
+  folder="$(dirname "$readme")"
+  run check "$folder/$(basename "$folder").tier"
+  is_code 0; has_out "$said"
+  checked=$((${checked:-0} + 1))
+done
+[[ "${checked:-0}" -ge 5 ]] || fail "five rulesets at least say so"
+
 run check "$velmari" "$t/absent.tsv"
 is_code 3; has_err 'absent.tsv'
 done_testing
