@@ -551,10 +551,10 @@ class Sweep {
     return false;
   }
 
-  // Nodes whose lines decide whether the rule may change a slot; none where no gap asks for the nearest.
+  // Nodes whose lines decide whether the rule may change a slot; none where no gap asks of slots behind.
   NodeSet Deciding() const {
     NodeSet nodes;
-    if (!pattern_.AsksForNearest()) return nodes;
+    if (!pattern_.AsksOfSlotsBehind(direction_.rightward)) return nodes;
     nodes.assign(space_.tree().nodes.size(), false);
     const auto above = [&](NodeId node) {
       for (NodeId at = space_.tree()[node].mother; at != kSlotNode && at != kRootNode; at = space_.tree()[at].mother) nodes[at] = true;

@@ -874,9 +874,10 @@ PatternCompiler::~PatternCompiler() = default;
 int PatternCompiler::Profile(const Key& annotated) { return impl_->Profile(annotated); }
 int PatternCompiler::profiles() const { return impl_->profile_keys.size(); }
 const std::vector<Spread>& PatternCompiler::spreads() const { return impl_->spreads; }
-bool PatternCompiler::AsksForNearest() const {
-  return std::any_of(impl_->gaps.begin(), impl_->gaps.end(),
-                     [](const GapInfo& gap) { return gap.nearest_left || gap.nearest_right; });
+bool PatternCompiler::AsksOfSlotsBehind(bool rightward) const {
+  return std::any_of(impl_->gaps.begin(), impl_->gaps.end(), [rightward](const GapInfo& gap) {
+    return rightward ? gap.nearest_right : gap.nearest_left;  // the changed end is met last
+  });
 }
 
 namespace {

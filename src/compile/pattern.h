@@ -67,8 +67,8 @@ class PatternCompiler {
   int Profile(const Key& annotated);
   int profiles() const;
   const std::vector<Spread>& spreads() const;
-  // Does some gap ask that no nearer slot would do?
-  bool AsksForNearest() const;
+  // Does some gap ask of slots that a sweep has passed whether one of them would do, being nearer?
+  bool AsksOfSlotsBehind(bool rightward) const;
 
   // The machine over all profiles seen so far. No states: the pattern never matches.
   PatternMachine Build(std::size_t max_states) const;
