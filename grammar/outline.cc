@@ -88,10 +88,9 @@ class Cutter {
       }
       const SectionWord* word = token.kind == Token::Kind::kWord ? FindWord(Text(token)) : nullptr;
       if (word == nullptr) {
-        diagnostics_.Error(
-            Kind::kSyntax, SpanOf(token),
-            "expected the word that begins a section, found '" + std::string(Text(token)) + "'",
-            "sections begin with words such as tree, segments, class, rule, data");
+        diagnostics_.Error(Kind::kSyntax, SpanOf(token),
+                           "expected the word that begins a section, found '" + std::string(Text(token)) + "'",
+                           "sections begin with words such as tree, segments, class, rule, data");
         SkipToSection();
         continue;
       }
@@ -101,9 +100,7 @@ class Cutter {
   }
 
  private:
-  std::string_view Text(const Token& token) const {
-    return text_.substr(token.begin, token.end - token.begin);
-  }
+  std::string_view Text(const Token& token) const { return text_.substr(token.begin, token.end - token.begin); }
   Span MakeSpan(std::size_t begin, std::size_t end) const {
     return {file_, static_cast<std::uint32_t>(begin), static_cast<std::uint32_t>(std::max(begin, end))};
   }
@@ -195,8 +192,7 @@ class Cutter {
         if (section_ != "spelling") return Enclosed(token, "/", "form");
         break;
       case '<':
-        if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm")
-          return Enclosed(token, ">", "form");
+        if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm") return Enclosed(token, ">", "form");
         break;
       case '\'':
         if (section_ == "data" || section_ == "lexicon") return Gloss(token);
@@ -274,8 +270,7 @@ class Cutter {
       const std::size_t begin = position_;
       if (begin >= text_.size()) return;
       const Token::Kind kind = Plain();
-      const bool section =
-          kind == Token::Kind::kWord && FindWord(text_.substr(begin, position_ - begin)) != nullptr;
+      const bool section = kind == Token::Kind::kWord && FindWord(text_.substr(begin, position_ - begin)) != nullptr;
       position_ = begin;
       if (section) return;
       fresh_line_ = false;
@@ -313,9 +308,8 @@ class Cutter {
       const bool outside = token.first_on_line && token.column <= keyword.column && !opens;
       const bool own_name = (word.kind == SectionKind::kClass || word.kind == SectionKind::kPattern) &&
                             section.head.span.end == section.head.span.begin && !token.first_on_line;
-      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr &&
-                         !after_comparing && !own_name &&
-                         (token.first_on_line || (word.joined && depth <= 0));
+      const bool other = token.kind == Token::Kind::kWord && FindWord(Text(token)) != nullptr && !after_comparing &&
+                         !own_name && (token.first_on_line || (word.joined && depth <= 0));
       if (token.kind == Token::Kind::kEnd || outside || other) {
         Back(token);
         return;
@@ -349,8 +343,7 @@ class Cutter {
 
   void Deep(int depth, const Token& token, Entry& entry) {
     if (depth <= kDeepest || entry.broken || later_) return;
-    diagnostics_.Error(Kind::kLimit, SpanOf(token),
-                       "brackets stand more than " + std::to_string(kDeepest) + " deep",
+    diagnostics_.Error(Kind::kLimit, SpanOf(token), "brackets stand more than " + std::to_string(kDeepest) + " deep",
                        "name the inner parts with class or pattern");
     entry.broken = true;
   }
@@ -371,8 +364,7 @@ class Cutter {
     section.body.span = MakeSpan(brace.end, brace.end);
     for (;;) {
       const Token token = Next();
-      if (token.kind == Token::Kind::kEnd ||
-          (token.first_on_line && BeginsSection(keyword, token, section))) {
+      if (token.kind == Token::Kind::kEnd || (token.first_on_line && BeginsSection(keyword, token, section))) {
         Back(token);
         finish();
         section.closed = false;
@@ -412,8 +404,8 @@ class Cutter {
   }
 
   void ReportUnclosed(const Token& brace, const Section& section) {
-    diagnostics_.Error(Kind::kUnclosedBlock, SpanOf(brace),
-                       "the block of this '" + section.word + "' is not closed", "add '}' where it ends");
+    diagnostics_.Error(Kind::kUnclosedBlock, SpanOf(brace), "the block of this '" + section.word + "' is not closed",
+                       "add '}' where it ends");
   }
 
   std::string_view text_;

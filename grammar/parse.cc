@@ -36,8 +36,7 @@ struct Scene {
   int later_changes = 0;  // in the clause being read
 
   Span Between(Iterator begin, Iterator end) const {
-    return {file, static_cast<std::uint32_t>(begin.base() - origin),
-            static_cast<std::uint32_t>(end.base() - origin)};
+    return {file, static_cast<std::uint32_t>(begin.base() - origin), static_cast<std::uint32_t>(end.base() - origin)};
   }
   void Later(std::string construct, Span span) {
     for (const auto& known : later)
@@ -191,8 +190,7 @@ struct NameToken : Token<NameToken> {
   bool in_bundle;
   explicit constexpr NameToken(const char* w, bool bundle = false) : what(w), in_bundle(bundle) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
@@ -215,8 +213,7 @@ struct StringToken : Token<StringToken> {
   const char* what;
   explicit constexpr StringToken(const char* w) : what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
@@ -233,8 +230,7 @@ struct StringToken : Token<StringToken> {
 struct SymbolToken : Token<SymbolToken> {
   using attribute_type = syntax::Name;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
@@ -284,8 +280,7 @@ struct RawToken : Token<RawToken> {
   const char* what;
   constexpr RawToken(char32_t o, char32_t c, const char* w) : open(o), close(c), what(w) {}
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || *first != open) return false;
@@ -304,8 +299,7 @@ struct RawToken : Token<RawToken> {
 struct GlossToken : Token<GlossToken> {
   using attribute_type = syntax::Name;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || *first != U'\'') return false;
@@ -333,8 +327,7 @@ struct GlossToken : Token<GlossToken> {
 struct BoundaryToken : Token<BoundaryToken> {
   using attribute_type = syntax::Item::Boundary;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     using Boundary = syntax::Item::Boundary;
     static constexpr std::pair<const char32_t*, Boundary> kSigns[] = {
         {U"-", Boundary::kMorpheme}, {U"\u2212", Boundary::kMorpheme}, {U"\u2013", Boundary::kMorpheme},
@@ -361,13 +354,11 @@ struct Quantity {
 struct QuantityToken : Token<QuantityToken> {
   using attribute_type = Quantity;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator i = place;
     Quantity quantity;
     const bool ascii = i != last && *i == U'_';
-    if (ascii ? !Number(++i, last, U'0', quantity.min) : !Number(i, last, U'\u2080', quantity.min))
-      return false;
+    if (ascii ? !Number(++i, last, U'0', quantity.min) : !Number(i, last, U'\u2080', quantity.min)) return false;
     quantity.max = -1;
     if (ascii) {
       Iterator caret = i;
@@ -403,12 +394,11 @@ struct QuantityToken : Token<QuantityToken> {
     const Iterator begin = i;
     for (; i != last; ++i) {
       const char32_t c = *i;
-      const int digit = c == U'\u00B9'   ? 1
-                        : c == U'\u00B2' ? 2
-                        : c == U'\u00B3' ? 3
-                        : c == U'\u2070' || (c >= U'\u2074' && c <= U'\u2079')
-                            ? static_cast<int>(c - U'\u2070')
-                            : -1;
+      const int digit = c == U'\u00B9'                                         ? 1
+                        : c == U'\u00B2'                                       ? 2
+                        : c == U'\u00B3'                                       ? 3
+                        : c == U'\u2070' || (c >= U'\u2074' && c <= U'\u2079') ? static_cast<int>(c - U'\u2070')
+                                                                               : -1;
       if (digit < 0) break;
       value = std::min(value * 10 + digit, 1000);
     }
@@ -419,8 +409,7 @@ struct QuantityToken : Token<QuantityToken> {
 struct NumberToken : Token<NumberToken> {
   using attribute_type = int;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
@@ -438,8 +427,7 @@ struct NumberToken : Token<NumberToken> {
 struct TimesToken : Token<TimesToken> {
   using attribute_type = int;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&,
-             Attribute& attribute) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     Iterator i = first;
@@ -450,8 +438,7 @@ struct TimesToken : Token<TimesToken> {
       }
     int value = 0;
     const Iterator digits = i;
-    for (; i != last && *i >= U'0' && *i <= U'9'; ++i)
-      value = std::min(value * 10 + static_cast<int>(*i - U'0'), 1000);
+    for (; i != last && *i >= U'0' && *i <= U'9'; ++i) value = std::min(value * 10 + static_cast<int>(*i - U'0'), 1000);
     if (i == digits || (i != last && notation::IsNameCharacter(*i))) return false;
     if (value < 1 || value > 9)
       throw Refusal{SceneOf(context).Between(first, i), "a mother may hold 1 to 9 of a node",
@@ -495,8 +482,7 @@ struct RawDirective : x3::unary_parser<Subject, RawDirective<Subject>> {
   using attribute_type = x3::raw_attribute_type;
   static bool const has_attribute = true;
   static bool const handles_container = false;
-  explicit constexpr RawDirective(const Subject& inner)
-      : x3::unary_parser<Subject, RawDirective<Subject>>(inner) {}
+  explicit constexpr RawDirective(const Subject& inner) : x3::unary_parser<Subject, RawDirective<Subject>>(inner) {}
   template <class Context, class RContext, class Attribute>
   bool parse(Iterator& place, const Iterator& last, const Context& context, RContext& rcontext,
              Attribute& attribute) const {
@@ -509,8 +495,7 @@ struct RawDirective : x3::unary_parser<Subject, RawDirective<Subject>> {
     return true;
   }
   template <class Context, class RContext>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext& rcontext,
-             x3::unused_type) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext& rcontext, x3::unused_type) const {
     return this->subject.parse(place, last, context, rcontext, x3::unused);
   }
 };
@@ -530,9 +515,7 @@ namespace boost::spirit::x3 {
 template <>
 struct get_info<tiersmith::Word> {
   using result_type = std::string;
-  std::string operator()(const tiersmith::Word& word) const {
-    return "'" + to_utf8(std::u32string(word.text)) + "'";
-  }
+  std::string operator()(const tiersmith::Word& word) const { return "'" + to_utf8(std::u32string(word.text)) + "'"; }
   static std::string to_utf8(const std::u32string& text) {
     using Encoder = boost::u32_to_u8_iterator<std::u32string::const_iterator>;
     return std::string(Encoder(text.begin()), Encoder(text.end()));
@@ -583,9 +566,7 @@ struct get_info<plus<Subject>> {
 template <class Subject>
 struct get_info<tiersmith::RawDirective<Subject>> {
   using result_type = std::string;
-  std::string operator()(const tiersmith::RawDirective<Subject>& parser) const {
-    return what(parser.subject);
-  }
+  std::string operator()(const tiersmith::RawDirective<Subject>& parser) const { return what(parser.subject); }
 };
 template <class Subject>
 struct get_info<no_skip_directive<Subject>> {
@@ -753,9 +734,8 @@ const auto plus_minus = Sign(U"±") | Sign(U"+/-");
 const auto agreement = (VariableToken{} >> Glued(name)) | (Word(U"alpha") > name);
 const auto value = name | (Sign(U"(") > +name > Sign(U")"));
 
-const auto prosodic_word = Word(U"onset") | Word(U"peak") | Word(U"coda") | Word(U"appendix") |
-                           Word(U"stray") | Word(U"open") | Word(U"closed") | Word(U"light") |
-                           Word(U"heavy") | Word(U"main");
+const auto prosodic_word = Word(U"onset") | Word(U"peak") | Word(U"coda") | Word(U"appendix") | Word(U"stray") |
+                           Word(U"open") | Word(U"closed") | Word(U"light") | Word(U"heavy") | Word(U"main");
 const auto prosodic_word_2 =
     Word(U"stressed") | Word(U"unstressed") | Word(U"head") | Word(U"footed") | Word(U"unfooted");
 const auto a_domain = Word(U"morpheme") | Word(U"stem") | Word(U"host") | Word(U"word") | Word(U"phrase") |
@@ -764,11 +744,10 @@ const auto a_domain = Word(U"morpheme") | Word(U"stem") | Word(U"host") | Word(U
 
 const auto later_feat_def =
     raw[-(Sign(U"+") | minus_sign) >> agreement][NotYet("agreement by α β γ δ")] |
-    raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))]
-       [kNotYetWord] |
-    (raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) |
-    raw[Word(U"floating")][NotYet("a floating item")] | raw[Word(U"linked")][kNotYetWord] |
-    (raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) | raw[Word(U"long") | Word(U"short")][kNotYetWord] |
+    raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))][kNotYetWord] |
+    (raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) | raw[Word(U"floating")][NotYet("a floating item")] |
+    raw[Word(U"linked")][kNotYetWord] | (raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
+    raw[Word(U"long") | Word(U"short")][kNotYetWord] |
     raw[Word(U"half") > (Word(U"first") | Word(U"second") | Wanted("first or second"))][kNotYetWord] |
     raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
     raw[prosodic_word | prosodic_word_2][kNotYetWord];
@@ -782,17 +761,15 @@ auto Named(syntax::Feat::Kind kind) {
 const auto a_value = name[Push(&syntax::Feat::values)] |
                      (Sign(U"(") > +name[Push(&syntax::Feat::values)] > Sign(U")")) |
                      Wanted("@a value, or several in ( )");
-const auto feat_def =
-    Spanned((Sign(U"+") > feature[Named(syntax::Feat::Kind::kPlus)]) |
-            (minus_sign > feature[Named(syntax::Feat::Kind::kMinus)]) |
-            (Word(U"no") > feature[Named(syntax::Feat::Kind::kNo)] >>
-             -(raw[Sign(U":") > value][NotYet("'no' with a value")])) |
-            (bundle_name[Named(syntax::Feat::Kind::kBears)] >>
-             -(Sign(U":")[Let(&syntax::Feat::kind, syntax::Feat::Kind::kValue)] > a_value)));
+const auto feat_def = Spanned(
+    (Sign(U"+") > feature[Named(syntax::Feat::Kind::kPlus)]) |
+    (minus_sign > feature[Named(syntax::Feat::Kind::kMinus)]) |
+    (Word(U"no") > feature[Named(syntax::Feat::Kind::kNo)] >> -(raw[Sign(U":") > value][NotYet("'no' with a value")])) |
+    (bundle_name[Named(syntax::Feat::Kind::kBears)] >>
+     -(Sign(U":")[Let(&syntax::Feat::kind, syntax::Feat::Kind::kValue)] > a_value)));
 
-const auto bundle_def =
-    Spanned(Sign(U"[") > *(-Sign(U",") >> (later_feat | feat[Push(&syntax::Bundle::feats)])) >
-            (Sign(U"]") | Wanted("@a feature or ']'")));
+const auto bundle_def = Spanned(Sign(U"[") > *(-Sign(U",") >> (later_feat | feat[Push(&syntax::Bundle::feats)])) >
+                                (Sign(U"]") | Wanted("@a feature or ']'")));
 
 const auto kKeepSet = [](auto& context) { x3::_val(context) = std::move(x3::_attr(context)); };
 auto MakeSet(syntax::Set::Kind kind) { return Let(&syntax::Set::kind, kind); }
@@ -820,23 +797,22 @@ const auto kNegate = [](auto& context) {
 // Neither a path (`X.N`) nor a label (`X:`).
 const auto name_alone = name >> !Glued(Sign(U".") >> !Sign(U".")) >> !Glued(Sign(U":"));
 
-const auto atom_def =
-    Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one 'not'")) > atom[kNegate]) |
-            Word(U"empty")[MakeSet(syntax::Set::Kind::kEmpty)] | bundle[([](auto& context) {
-              x3::_val(context).kind = syntax::Set::Kind::kBundle;
-              x3::_val(context).bundle = std::move(x3::_attr(context));
-            })] |
-            literal[([](auto& context) {
-              x3::_val(context).kind = syntax::Set::Kind::kLiteral;
-              x3::_val(context).literal = std::move(x3::_attr(context));
-            })] |
-            raw[spelled][NotYet("⟨ ⟩ in a pattern")] |
-            (Sign(U"{") > set[kAlternative] > *(!Sign(U"||") >> Sign(U"|") > set[kAlternative]) >
-             (Sign(U"}")[kCloseAlternatives] | Wanted("'|' or '}'"))) |
-            name_alone[([](auto& context) {
-              x3::_val(context).kind = syntax::Set::Kind::kClass;
-              x3::_val(context).name = std::move(x3::_attr(context));
-            })]);
+const auto atom_def = Spanned((kNot > ((!Word(U"not")) | Wanted("a set after one 'not'")) > atom[kNegate]) |
+                              Word(U"empty")[MakeSet(syntax::Set::Kind::kEmpty)] | bundle[([](auto& context) {
+                                x3::_val(context).kind = syntax::Set::Kind::kBundle;
+                                x3::_val(context).bundle = std::move(x3::_attr(context));
+                              })] |
+                              literal[([](auto& context) {
+                                x3::_val(context).kind = syntax::Set::Kind::kLiteral;
+                                x3::_val(context).literal = std::move(x3::_attr(context));
+                              })] |
+                              raw[spelled][NotYet("⟨ ⟩ in a pattern")] |
+                              (Sign(U"{") > set[kAlternative] > *(!Sign(U"||") >> Sign(U"|") > set[kAlternative]) >
+                               (Sign(U"}")[kCloseAlternatives] | Wanted("'|' or '}'"))) |
+                              name_alone[([](auto& context) {
+                                x3::_val(context).kind = syntax::Set::Kind::kClass;
+                                x3::_val(context).name = std::move(x3::_attr(context));
+                              })]);
 
 const auto kTailArg = [](auto& context) { x3::_val(context).arg = std::move(x3::_attr(context)); };
 const auto set_tail_def = (kOr[Let(&SetTail::kind, syntax::Set::Kind::kOr)] > atom[kTailArg]) |
@@ -928,9 +904,7 @@ const auto kJoin = [](auto& context) {
   JoinSingles(it);
   it.set.span = it.span;
 };
-const auto kIsSet = [](auto& context) {
-  x3::_pass(context) = x3::_val(context).kind == syntax::Item::Kind::kSet;
-};
+const auto kIsSet = [](auto& context) { x3::_pass(context) = x3::_val(context).kind == syntax::Item::Kind::kSet; };
 const auto kMoreSet = [](auto& context) {
   syntax::Item& it = x3::_val(context);
   it.set = Fold(std::move(it.set), std::move(x3::_attr(context).tails));
@@ -946,8 +920,7 @@ const auto gap_sign = Sign(U"...") | Sign(U"…");
 const auto gap_def = gap_sign[Let(&syntax::Item::kind, syntax::Item::Kind::kGap)] >>
                      -Glued(name[To(&syntax::Item::tier)]);
 
-const auto labelled_def = &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >>
-                          Glued(Sign(U":")) >>
+const auto labelled_def = &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >> Glued(Sign(U":")) >>
                           (raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] |
                            Wanted("@a set: a bundle, a literal or a class")) >>
                           -Glued(raw[quantity][kLabelCount]);
@@ -961,16 +934,13 @@ const auto bracketed_def = Sign(U"(")[([](auto& context) {
 const x3::rule<struct BraceBodyRule, syntax::Item> brace_body("a group in { }");
 const x3::rule<struct MoreSetRule, OpenSet> more_set("or, and, but not");
 const auto more_set_def = +set_tail[Push(&OpenSet::tails)];
-const auto brace_body_def =
-    Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alternatives)] >
-            *(!Sign(U"||") >> Sign(U"|") > pattern[Push(&syntax::Item::alternatives)]) >
-            (Sign(U"}") | Wanted("@an item, '|' or '}'")));
-const auto braced_def = brace_body[kJoin] >> -(x3::eps[kIsSet] >> more_set[kMoreSet]) >>
-                        -Glued(quantity[kQuantify]);
+const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alternatives)] >
+                                    *(!Sign(U"||") >> Sign(U"|") > pattern[Push(&syntax::Item::alternatives)]) >
+                                    (Sign(U"}") | Wanted("@an item, '|' or '}'")));
+const auto braced_def = brace_body[kJoin] >> -(x3::eps[kIsSet] >> more_set[kMoreSet]) >> -Glued(quantity[kQuantify]);
 
-const auto later_item_def =
-    ((!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")]) |
-    raw[Sign(U"&")][NotYet("'&'")];
+const auto later_item_def = ((!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")]) |
+                            raw[Sign(U"&")][NotYet("'&'")];
 
 const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
                                 x3::_val(context).kind = syntax::Item::Kind::kBoundary;
@@ -1008,13 +978,12 @@ const x3::rule<struct ChangeInsertRule, syntax::Change> insert("insert");
 const Sign kDot(U".");
 const auto path_ahead = &(name >> Glued(kDot >> !kDot));
 const auto member = (Sign(U"+") | minus_sign) >> name;
-const auto path_def =
-    Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
-            (Glued(raw[member][NotYet("one member of a contour")]) | Glued(node)[To(&syntax::Path::node)] |
-             Wanted("@the name of a node")) >>
-            -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
-            -(Glued(&Sign(U":")) >> raw[Sign(U":") > value][NotYet("one member of a contour")]) >>
-            -raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
+const auto path_def = Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
+                              (Glued(raw[member][NotYet("one member of a contour")]) |
+                               Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
+                              -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
+                              -(Glued(&Sign(U":")) >> raw[Sign(U":") > value][NotYet("one member of a contour")]) >>
+                              -raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
 
 const auto test_sign =
     Sign(U"=") | Sign(U"≠") | Sign(U"!=") | (Word(U"is") >> -Word(U"not")) | Wanted("=, ≠, is or is not");
@@ -1023,23 +992,19 @@ const auto later_test_def = path > test_sign > path;
 const auto kPaths = path[Push(&syntax::Change::paths)] > *(Sign(U",") > path[Push(&syntax::Change::paths)]);
 const auto spread_def = Word(U"spread")[Let(&syntax::Change::kind, syntax::Change::Kind::kSpread)] >
                         ((path_ahead >> kPaths > Word(U"to") > label[To(&syntax::Change::label)]) |
-                         (label >>
-                          raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) |
+                         (label >> raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) |
                          Wanted("@a path such as X.Place"));
 const auto delink_def = Word(U"delink")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelink)] >
                         ((path_ahead >> kPaths) |
-                         (label >>
-                          raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
+                         (label >> raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
                          Wanted("@a path such as X.Place"));
-const auto as_other =
-    raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
+const auto as_other = raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
 const auto set_fill_def = (Word(U"set")[Let(&syntax::Change::kind, syntax::Change::Kind::kSet)] |
                            Word(U"fill")[Let(&syntax::Change::kind, syntax::Change::Kind::kFill)]) >
                           ((path_ahead >> path > as_other) |
                            (label[To(&syntax::Change::label)] >
-                            (bundle[To(&syntax::Change::bundle)] |
-                             raw[literal][NotYet("'set' to a literal")] | as_other |
-                             Wanted("a bundle such as [+nasal]"))) |
+                            (bundle[To(&syntax::Change::bundle)] | raw[literal][NotYet("'set' to a literal")] |
+                             as_other | Wanted("a bundle such as [+nasal]"))) |
                            Wanted("@a label"));
 const auto delete__def = Word(U"delete")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelete)] >
                          ((path_ahead >> raw[path][NotYet("'delete' of a node")]) |
@@ -1055,32 +1020,30 @@ const auto kContentLiteral = [](auto& context) {
   x3::_val(context).content.literal = std::move(x3::_attr(context));
   x3::_val(context).content.span = x3::_val(context).content.literal.span;
 };
-const auto floating_value = Sign(U"{") > -(Sign(U"+") | minus_sign) > name > -(Sign(U":") > name) >
-                            Sign(U"}");
-const auto insert_def =
-    Word(U"insert")[Let(&syntax::Change::kind, syntax::Change::Kind::kInsert)] >
-    ((&(name >> Glued(Sign(U":"))) >> label[To(&syntax::Change::inserted)] >> Glued(Sign(U":")) >>
-      (literal[kContentLiteral] | bundle[kContentSet] |
-       raw[floating_value][NotYet("'insert' of a floating instance")] | Wanted("a literal or a bundle"))) |
-     raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
-    (Word(U"before") | Word(U"after")[Let(&syntax::Change::before, false)] |
-     Wanted("before or after")) > label[To(&syntax::Change::label)];
-const auto change_def =
-    Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
+const auto floating_value = Sign(U"{") > -(Sign(U"+") | minus_sign) > name > -(Sign(U":") > name) > Sign(U"}");
+const auto insert_def = Word(U"insert")[Let(&syntax::Change::kind, syntax::Change::Kind::kInsert)] >
+                        ((&(name >> Glued(Sign(U":"))) >> label[To(&syntax::Change::inserted)] >> Glued(Sign(U":")) >>
+                          (literal[kContentLiteral] | bundle[kContentSet] |
+                           raw[floating_value][NotYet("'insert' of a floating instance")] |
+                           Wanted("a literal or a bundle"))) |
+                         raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
+                        (Word(U"before") | Word(U"after")[Let(&syntax::Change::before, false)] |
+                         Wanted("before or after")) > label[To(&syntax::Change::label)];
+const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
 
-const auto later_change_def =
-    (raw[Word(U"lengthen")][kNotYetWord] > label) | (raw[Word(U"shorten")][kNotYetWord] > label) |
-    (raw[Word(U"merge")][kNotYetWord] >
-     ((path_ahead >> path > path) | (label > label) | Wanted("@a label or a path"))) |
-    (raw[Word(U"swap")][kNotYetWord] > label > label) |
-    (raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
-    (raw[Word(U"copy")][kNotYetWord] > pattern >
-     (Word(U"before") | Word(U"after") | Wanted("before or after")) > label);
+const auto later_change_def = (raw[Word(U"lengthen")][kNotYetWord] > label) |
+                              (raw[Word(U"shorten")][kNotYetWord] > label) |
+                              (raw[Word(U"merge")][kNotYetWord] >
+                               ((path_ahead >> path > path) | (label > label) | Wanted("@a label or a path"))) |
+                              (raw[Word(U"swap")][kNotYetWord] > label > label) |
+                              (raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
+                              (raw[Word(U"copy")][kNotYetWord] > pattern >
+                               (Word(U"before") | Word(U"after") | Wanted("before or after")) > label);
 
 const auto mode_def =
-    Spanned(Word(U"iterate") > (Word(U"rightward")[Let(&ModeAt::mode, syntax::Rule::Mode::kRightward)] |
-                                Word(U"leftward")[Let(&ModeAt::mode, syntax::Rule::Mode::kLeftward)] |
-                                Wanted("rightward or leftward")));
+    Spanned(Word(U"iterate") >
+            (Word(U"rightward")[Let(&ModeAt::mode, syntax::Rule::Mode::kRightward)] |
+             Word(U"leftward")[Let(&ModeAt::mode, syntax::Rule::Mode::kLeftward)] | Wanted("rightward or leftward")));
 const auto tier_or_level =
     name | Word(U"syllable") | Word(U"foot") | Word(U"mora") | Wanted("@a node, syllable or foot");
 const auto later_modifier_def =
@@ -1090,8 +1053,7 @@ const auto later_modifier_def =
     raw[Word(U"cutting")][kNotYetWord] | raw[Word(U"derived")][kNotYetWord] |
     raw[Word(U"sharing") > (Word(U"blocked") | Word(U"free") | Wanted("blocked or free"))][kNotYetWord] |
     raw[Word(U"prefer") > (Word(U"left") | Word(U"right") | Wanted("left or right"))][kNotYetWord] |
-    raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))]
-       [kNotYetWord] |
+    raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))][kNotYetWord] |
     raw[(Word(U"only") | Word(U"except")) >
         ((Word(U"word") > name) | (name >> -(Word(U"in") > name)) | Wanted("@a tag"))][kNotYetWord];
 
@@ -1113,20 +1075,20 @@ const auto kHasChange = [](auto& context) {
   x3::_pass(context) = !x3::_val(context).changes.empty() || later_changes > 0;
   later_changes = 0;
 };
-const auto clause_def =
-    Word(U"where") > pattern[To(&syntax::Rule::where)] >
-    *(change[Push(&syntax::Rule::changes)] | later_change[kCountChange] |
-      (raw[Word(U"if")][kNotYetWord] > later_test) |
-      (Word(U"unless") > ((path_ahead >> raw[later_test][NotYet("'unless' with a test")]) |
-                          pattern[Push(&syntax::Rule::unless)])) |
-      mode[kSetMode] | later_modifier) >
-    (x3::eps[kHasChange] | Wanted("@an item or a change: spread, delink, set, fill, insert or delete"));
+const auto clause_def = Word(U"where") > pattern[To(&syntax::Rule::where)] >
+                        *(change[Push(&syntax::Rule::changes)] | later_change[kCountChange] |
+                          (raw[Word(U"if")][kNotYetWord] > later_test) |
+                          (Word(U"unless") > ((path_ahead >> raw[later_test][NotYet("'unless' with a test")]) |
+                                              pattern[Push(&syntax::Rule::unless)])) |
+                          mode[kSetMode] | later_modifier) >
+                        (x3::eps[kHasChange] |
+                         Wanted("@an item or a change: spread, delink, set, fill, insert or delete"));
 const auto body_def = *(mode[kSetMode] | later_modifier) >> (clause[kTakeClause] | Wanted("'where'")) >
                       *(raw[Word(U"otherwise")][kNotYetWord] > clause) >
                       End("@an item, a condition, a change or a modifier");
 
-BOOST_SPIRIT_DEFINE(path, later_test, change, later_change, later_modifier, mode, clause, body, spread,
-                    delink, set_fill, delete_, insert)
+BOOST_SPIRIT_DEFINE(path, later_test, change, later_change, later_modifier, mode, clause, body, spread, delink,
+                    set_fill, delete_, insert)
 
 // ---- declarations ---------------------------------------------------------------------------------
 
@@ -1159,18 +1121,17 @@ const x3::rule<struct TreeHeadRule> tree_head("tree");
 const x3::rule<struct EmptyHeadRule> empty_head("'{'");
 
 const auto kNameDaughter = To(&syntax::Daughter::name);
-const auto attribute = TimesToken{}[To(&syntax::Daughter::max)] >>
-                           -(Word(U"in") > set[To(&syntax::Daughter::room)]) |
+const auto attribute = TimesToken{}[To(&syntax::Daughter::max)] >> -(Word(U"in") > set[To(&syntax::Daughter::room)]) |
                        Word(U"floating")[Let(&syntax::Daughter::floating, true)] |
                        Word(U"abstract")[Let(&syntax::Daughter::abstract_, true)];
 const auto many_value = !TimesToken{} >> name[Push(&syntax::Daughter::values)];
-const auto daughter_def = Spanned(
-    ((plus_minus[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kBinary)] > feature[kNameDaughter]) |
-     ((Sign(U"•") | Sign(U"*"))[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kStanding)] >
-      node[kNameDaughter]) |
-     (!TimesToken{} >> name[kNameDaughter] >>
-      -(Sign(U":")[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kMany)] > +many_value))) >>
-    *attribute);
+const auto daughter_def =
+    Spanned(((plus_minus[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kBinary)] > feature[kNameDaughter]) |
+             ((Sign(U"•") | Sign(U"*"))[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kStanding)] >
+              node[kNameDaughter]) |
+             (!TimesToken{} >> name[kNameDaughter] >>
+              -(Sign(U":")[Let(&syntax::Daughter::kind, syntax::Daughter::Kind::kMany)] > +many_value))) >>
+            *attribute);
 const auto mother = name[Push(&syntax::TreeLine::mothers)] >> Sign(U">");
 const auto kLastDaughter = [](auto& context) {
   auto& line = x3::_val(context);
@@ -1186,8 +1147,7 @@ const auto tree_entry_def =
     (Word(U"one") >> raw[Word(U"tier") > name][NotYet("'one tier'")] > End("the end of the line")) |
     tree_line[Push(&syntax::Tree::lines)] | Wanted("@a mother, as in: root > ±son");
 const auto tree_head_def =
-    -raw[Word(U"from") > StringToken("the name of a tree in double quotes")][NotYet("'tree from'")] >
-    End("'{'");
+    -raw[Word(U"from") > StringToken("the name of a tree in double quotes")][NotYet("'tree from'")] > End("'{'");
 
 auto Reference(syntax::ValueRef::Kind kind) { return Let(&syntax::ValueRef::kind, kind); }
 const auto kNameRef = To(&syntax::ValueRef::name);
@@ -1204,32 +1164,29 @@ const auto value_ref_def = (plus_minus[Reference(syntax::ValueRef::Kind::kBoth)]
 const auto in_set = Word(U"in") > set[To(&syntax::ValuesIn::in)];
 const auto without_def = Word(U"without") > +value_ref[Push(&syntax::ValuesIn::values)] >
                          -(Word(U"everywhere") | in_set);
-const auto omit_value_def =
-    Spanned(+value_ref[Push(&syntax::ValuesIn::values)] >
-            (Word(U"everywhere") | in_set | Wanted("@a feature, 'everywhere' or 'in'")));
-const auto segment_def = Spanned(symbol[To(&syntax::SegmentEntry::symbol)] >>
-                                 -(Sign(U"=") > symbol[To(&syntax::SegmentEntry::like)]) >>
-                                 -bundle[To(&syntax::SegmentEntry::bundle)]);
+const auto omit_value_def = Spanned(+value_ref[Push(&syntax::ValuesIn::values)] >
+                                    (Word(U"everywhere") | in_set | Wanted("@a feature, 'everywhere' or 'in'")));
+const auto segment_def =
+    Spanned(symbol[To(&syntax::SegmentEntry::symbol)] >> -(Sign(U"=") > symbol[To(&syntax::SegmentEntry::like)]) >>
+            -bundle[To(&syntax::SegmentEntry::bundle)]);
 const auto segments_entry_def = *(without[Push(&syntax::Segments::without)] |
                                   segment[Push(&syntax::Segments::entries)]) >
                                 End("a symbol, '=', a bundle or 'without'");
 const auto segments_head_def =
     -(Word(U"from") > StringToken("the name of an inventory in double quotes")[To(&syntax::Segments::from)]) >
     -bundle[To(&syntax::Segments::added)] > End("'from', a bundle or '{'");
-const auto diacritic_def = Spanned(
-    symbol[To(&syntax::Diacritic::symbol)] >>
-    ((bundle[To(&syntax::Diacritic::bundle)] >> *((Word(U"on") > set[To(&syntax::Diacritic::on)]) |
-                                                  Word(U"surface")[Let(&syntax::Diacritic::surface, true)])) |
-     (raw[Sign(U"{") > name > -(Sign(U":") > name) > Sign(U"}")][NotYet("a sign for a floating instance")] >>
-      -((Word(U"before") | Word(U"after")) > (Word(U"syllable") | set | Wanted("@a set")))) |
-     Wanted("a bundle such as [+nasal]")));
+const auto diacritic_def =
+    Spanned(symbol[To(&syntax::Diacritic::symbol)] >>
+            ((bundle[To(&syntax::Diacritic::bundle)] >> *((Word(U"on") > set[To(&syntax::Diacritic::on)]) |
+                                                          Word(U"surface")[Let(&syntax::Diacritic::surface, true)])) |
+             (raw[Sign(U"{") > name > -(Sign(U":") > name) > Sign(U"}")][NotYet("a sign for a floating instance")] >>
+              -((Word(U"before") | Word(U"after")) > (Word(U"syllable") | set | Wanted("@a set")))) |
+             Wanted("a bundle such as [+nasal]")));
 const auto kPushDiacritic = [](auto& context) {
-  if (x3::_attr(context).bundle.span.end > 0)
-    x3::_val(context).entries.push_back(std::move(x3::_attr(context)));
+  if (x3::_attr(context).bundle.span.end > 0) x3::_val(context).entries.push_back(std::move(x3::_attr(context)));
 };
 const auto diacritics_entry_def = *diacritic[kPushDiacritic] > End("'on', 'surface' or a diacritic with ◌");
-const auto omit_entry_def = *omit_value[Push(&syntax::Omit::entries)] >
-                            End("@a feature, 'everywhere' or 'in'");
+const auto omit_entry_def = *omit_value[Push(&syntax::Omit::entries)] > End("@a feature, 'everywhere' or 'in'");
 
 const auto later_forms = spelled | spelled_ascii;
 const auto datum_def =
@@ -1246,9 +1203,9 @@ const auto kPushDatum = [](auto& context) {
 };
 const auto data_entry_def = (+datum[kPushDatum] | Wanted("a form such as /kat/")) >
                             End("a form, ~, * or a gloss in ' '");
-const auto data_head_def =
-    -((Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) |
-      raw[Word(U"comparing") > Word(U"length")][kNotYetWord]) > End("'from' or '{'");
+const auto data_head_def = -((Word(U"from") >
+                              StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) |
+                             raw[Word(U"comparing") > Word(U"length")][kNotYetWord]) > End("'from' or '{'");
 
 const auto class__def = name[To(&syntax::Class::name)] > Sign(U"=") > set[To(&syntax::Class::set)] >
                         End("or, and, but not, or the end of the class");
@@ -1257,13 +1214,12 @@ const auto named_pattern_def = name[To(&syntax::NamedPattern::name)] >
                                End("@an item or the end of the pattern");
 const auto language_def = StringToken("the language's name in double quotes")[To(&syntax::Language::name)] >
                           End("nothing more");
-const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&syntax::Rule::name)] >
-                           End("'{'");
+const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&syntax::Rule::name)] > End("'{'");
 const auto empty_head_def = x3::eps > End("'{'");
 
-BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without,
-                    omit_value, diacritic, datum, segments_head, segments_entry, diacritics_entry, omit_entry,
-                    data_entry, data_head, class_, named_pattern, language, rule_head, empty_head)
+BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without, omit_value,
+                    diacritic, datum, segments_head, segments_entry, diacritics_entry, omit_entry, data_entry,
+                    data_head, class_, named_pattern, language, rule_head, empty_head)
 
 // ---- reading --------------------------------------------------------------------------------------
 
@@ -1307,8 +1263,7 @@ class Reader {
     return parsed && scene.later.empty();
   }
 
-  void Expected(const Scene& scene, Iterator where, const Iterator& last, std::string wanted,
-                const char* remedy) {
+  void Expected(const Scene& scene, Iterator where, const Iterator& last, std::string wanted, const char* remedy) {
     while (SkipBlank(where, last)) {
     }
     const bool name_fits = !wanted.empty() && wanted[0] == '@';
@@ -1369,8 +1324,7 @@ class Reader {
       case outline::SectionKind::kAllophones:
         return ReadSegments(section, syntax::Segments::Kind::kAllophones);
       case outline::SectionKind::kDiacritics:
-        return ReadBlock(section, diacritics_entry, syntax::Diacritics(),
-                         "an entry reads: ◌̃ [+nasal] on [+syll]");
+        return ReadBlock(section, diacritics_entry, syntax::Diacritics(), "an entry reads: ◌̃ [+nasal] on [+syll]");
       case outline::SectionKind::kOmit:
         return ReadBlock(section, omit_entry, syntax::Omit(), "an entry reads: -voice in [-son]");
       case outline::SectionKind::kClass:

@@ -50,18 +50,14 @@ std::string PrintFeat(const syntax::Feat& feat) {
   return name + ":(" + Joined(feat.values, " ", PrintName) + ")";
 }
 
-std::string PrintBundle(const syntax::Bundle& bundle) {
-  return "[" + Joined(bundle.feats, " ", PrintFeat) + "]";
-}
+std::string PrintBundle(const syntax::Bundle& bundle) { return "[" + Joined(bundle.feats, " ", PrintFeat) + "]"; }
 
 bool IsOperator(const Set& set) {
   return set.kind == Set::Kind::kOr || set.kind == Set::Kind::kAnd || set.kind == Set::Kind::kButNot;
 }
 
 std::string PrintSet(const Set& set);
-std::string PrintArgument(const Set& set) {
-  return IsOperator(set) ? "{" + PrintSet(set) + "}" : PrintSet(set);
-}
+std::string PrintArgument(const Set& set) { return IsOperator(set) ? "{" + PrintSet(set) + "}" : PrintSet(set); }
 
 std::string PrintSet(const Set& set) {
   switch (set.kind) {
@@ -113,8 +109,7 @@ std::string PrintGroup(const Item& item) {
 std::string PrintItemSet(const Item& item) {
   const std::string label = item.label ? PrintName(*item.label) + ":" : "";
   const std::string quantity = PrintQuantity(item, 1);
-  const bool braces =
-      IsOperator(item.set) ? !quantity.empty() : !item.label && item.set.kind == Set::Kind::kClass;
+  const bool braces = IsOperator(item.set) ? !quantity.empty() : !item.label && item.set.kind == Set::Kind::kClass;
   const std::string set = PrintSet(item.set);
   return label + (braces ? "{" + set + "}" : set) + quantity;
 }
@@ -219,8 +214,7 @@ std::string PrintValueRef(const syntax::ValueRef& value) {
 }
 
 std::string PrintValues(const syntax::ValuesIn& values) {
-  return Joined(values.values, " ", PrintValueRef) +
-         (values.in ? " in " + PrintSet(*values.in) : " everywhere");
+  return Joined(values.values, " ", PrintValueRef) + (values.in ? " in " + PrintSet(*values.in) : " everywhere");
 }
 
 std::string PrintSegment(const syntax::SegmentEntry& entry) {
@@ -236,9 +230,7 @@ std::string Block(const std::string& head, const List& entries, const F& print) 
 }
 
 struct TopPrinter {
-  std::string operator()(const syntax::Language& top) const {
-    return "language " + Quoted(top.name.text) + "\n";
-  }
+  std::string operator()(const syntax::Language& top) const { return "language " + Quoted(top.name.text) + "\n"; }
   std::string operator()(const syntax::Tree& top) const {
     return Block("tree", top.lines, [](const syntax::TreeLine& line) {
       return Joined(line.mothers, " > ", PrintName) + " > " + Joined(line.daughters, " ", PrintDaughter);
@@ -285,18 +277,15 @@ struct TopPrinter {
   }
   std::string operator()(const syntax::Data& top) const {
     return Block("data", top.rows, [](const syntax::Datum& row) {
-      std::string out =
-          PrintForm(row.underlying) + " " +
-          Joined(row.surfaces, " ~ ", [](const syntax::FormText& form) { return "[" + form.raw + "]"; });
+      std::string out = PrintForm(row.underlying) + " " +
+                        Joined(row.surfaces, " ~ ", [](const syntax::FormText& form) { return "[" + form.raw + "]"; });
       if (!row.gloss) return out;
       out += " '";
       for (const char c : row.gloss->text) out += c == '\'' ? "''" : std::string(1, c);
       return out + "'";
     });
   }
-  std::string operator()(const syntax::DataFrom& top) const {
-    return "data from " + Quoted(top.path.text) + "\n";
-  }
+  std::string operator()(const syntax::DataFrom& top) const { return "data from " + Quoted(top.path.text) + "\n"; }
   std::string operator()(const syntax::Unsupported& top) const {
     return "-- not supported yet: " + top.construct + "\n";
   }

@@ -54,14 +54,14 @@ struct Item {
   enum class Kind { kSet, kName, kBoundary, kGap, kGroup };
   enum class Boundary { kMorpheme, kClitic, kWord, kPhrase };
   Kind kind = Kind::kSet;
-  std::optional<Name> label;      // X: before a set
-  Set set;                        // kSet
-  Name name;                      // kName: a class, a named pattern, or (in unless) a label
+  std::optional<Name> label;  // X: before a set
+  Set set;                    // kSet
+  Name name;                  // kName: a class, a named pattern, or (in unless) a label
   Boundary boundary = Boundary::kMorpheme;
-  std::optional<Name> tier;       // kGap: ...Place
+  std::optional<Name> tier;           // kGap: ...Place
   std::vector<Pattern> alternatives;  // kGroup: ( ) has one, { | } several
-  int min = 1;                    // kSet, kName, kGroup: the quantity; ( ) alone is 0..1
-  int max = 1;                    // -1: no bound
+  int min = 1;                        // kSet, kName, kGroup: the quantity; ( ) alone is 0..1
+  int max = 1;                        // -1: no bound
   Span span;
 };
 struct Pattern {
@@ -100,9 +100,9 @@ struct Daughter {
   enum class Kind { kBinary, kPlain, kMany, kStanding };  // ±f, f or Name, Name: a b, •Name
   Kind kind = Kind::kPlain;
   Name name;
-  std::vector<Name> values;   // kMany
-  int max = 1;                // ×n
-  std::optional<Set> room;    // in [..] after ×n
+  std::vector<Name> values;  // kMany
+  int max = 1;               // ×n
+  std::optional<Set> room;   // in [..] after ×n
   bool floating = false;
   bool abstract_ = false;
   Span span;
@@ -112,11 +112,14 @@ struct TreeLine {  // a > b > daughters: the last of `mothers` bears the daughte
   std::vector<Daughter> daughters;
   Span span;
 };
-struct Tree { std::vector<TreeLine> lines; Span span; };
+struct Tree {
+  std::vector<TreeLine> lines;
+  Span span;
+};
 
 struct SegmentEntry {
   Name symbol;
-  std::optional<Name> like;      // x = y
+  std::optional<Name> like;  // x = y
   std::optional<Bundle> bundle;
   Span span;
 };
@@ -127,29 +130,46 @@ struct ValueRef {
 };
 struct ValuesIn {
   std::vector<ValueRef> values;
-  std::optional<Set> in;         // none: everywhere
+  std::optional<Set> in;  // none: everywhere
   Span span;
 };
 struct Segments {
   enum class Kind { kSegments, kArchisegments, kAllophones } kind = Kind::kSegments;
-  std::optional<Name> from;      // segments from "ipa"
-  std::optional<Bundle> added;   // segments from "ipa" [Coronal] { ... }
+  std::optional<Name> from;     // segments from "ipa"
+  std::optional<Bundle> added;  // segments from "ipa" [Coronal] { ... }
   std::vector<SegmentEntry> entries;
   std::vector<ValuesIn> without;
   Span span;
 };
 struct Diacritic {
-  Name symbol;                   // with ◌
+  Name symbol;  // with ◌
   Bundle bundle;
   std::optional<Set> on;
   bool surface = false;
   Span span;
 };
-struct Diacritics { std::vector<Diacritic> entries; Span span; };
-struct Omit { std::vector<ValuesIn> entries; Span span; };
-struct Class { Name name; Set set; Span span; };
-struct NamedPattern { Name name; Pattern pattern; Span span; };
-struct Language { Name name; Span span; };
+struct Diacritics {
+  std::vector<Diacritic> entries;
+  Span span;
+};
+struct Omit {
+  std::vector<ValuesIn> entries;
+  Span span;
+};
+struct Class {
+  Name name;
+  Set set;
+  Span span;
+};
+struct NamedPattern {
+  Name name;
+  Pattern pattern;
+  Span span;
+};
+struct Language {
+  Name name;
+  Span span;
+};
 
 struct Datum {
   FormText underlying;
@@ -157,14 +177,23 @@ struct Datum {
   std::optional<Name> gloss;
   Span span;
 };
-struct Data { std::vector<Datum> rows; Span span; };
-struct DataFrom { Name path; Span span; };
+struct Data {
+  std::vector<Datum> rows;
+  Span span;
+};
+struct DataFrom {
+  Name path;
+  Span span;
+};
 
 // A construct of the notation that this release does not run.
-struct Unsupported { std::string construct; Span span; };
+struct Unsupported {
+  std::string construct;
+  Span span;
+};
 
-using Top = std::variant<Language, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Rule, Data,
-                         DataFrom, Unsupported>;
+using Top =
+    std::variant<Language, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Rule, Data, DataFrom, Unsupported>;
 struct File {
   std::vector<Top> tops;
   // Constructs found inside rules and blocks that this release does not run.

@@ -12,18 +12,17 @@ const std::vector<std::string_view>& ReservedWords() {
   static const std::vector<std::string_view> words = {
       // what begins a section or a step among the rules
       "language", "include", "strict", "given", "print", "tree", "segments", "archisegments", "allophones",
-      "diacritics", "omit", "class", "pattern", "fuse", "sharing", "length", "rule", "complete", "parse",
-      "apply", "stratum", "cyclic", "syllable", "mora", "foot", "stress", "melody", "dock", "lexicon",
-      "paradigm", "data", "spelling", "from", "at",
+      "diacritics", "omit", "class", "pattern", "fuse", "sharing", "length", "rule", "complete", "parse", "apply",
+      "stratum", "cyclic", "syllable", "mora", "foot", "stress", "melody", "dock", "lexicon", "paradigm", "data",
+      "spelling", "from", "at",
       // clauses, conditions and modifiers
       "where", "otherwise", "on", "over", "within", "if", "unless", "only", "except", "derived", "preserving",
       "cutting", "prefer", "iterate", "repeat", "optional",
       // changes
-      "spread", "delink", "set", "fill", "delete", "lengthen", "shorten", "insert", "merge", "swap", "link",
-      "copy",
+      "spread", "delink", "set", "fill", "delete", "lengthen", "shorten", "insert", "merge", "swap", "link", "copy",
       // what joins them
-      "to", "before", "after", "between", "in", "is", "or", "but", "not", "no", "and", "everywhere", "alpha",
-      "shared", "unshared", "begins", "ends", "empty", "floating", "abstract", "without", "linked", "held",
+      "to", "before", "after", "between", "in", "is", "or", "but", "not", "no", "and", "everywhere", "alpha", "shared",
+      "unshared", "begins", "ends", "empty", "floating", "abstract", "without", "linked", "held",
       // domains
       "morpheme", "stem", "host", "word", "phrase"};
   return words;
@@ -76,8 +75,7 @@ bool IsNameCharacter(char32_t c) {
 
 std::size_t QuantityTail(std::string_view name) {
   std::size_t digits = 0;
-  while (digits < name.size() && name[name.size() - 1 - digits] >= '0' &&
-         name[name.size() - 1 - digits] <= '9')
+  while (digits < name.size() && name[name.size() - 1 - digits] >= '0' && name[name.size() - 1 - digits] <= '9')
     ++digits;
   const bool tail = digits > 0 && digits + 1 < name.size() && name[name.size() - 1 - digits] == '_';
   return tail ? digits + 1 : 0;
@@ -94,8 +92,7 @@ bool LooksLikeTimes(std::string_view name) {
 }  // namespace
 
 bool IsPlainName(std::string_view name) {
-  if (name.empty() || IsReserved(name) || IsBundleWord(name) || LooksLikeTimes(name) ||
-      QuantityTail(name) > 0)
+  if (name.empty() || IsReserved(name) || IsBundleWord(name) || LooksLikeTimes(name) || QuantityTail(name) > 0)
     return false;
   bool first = true;
   for (std::size_t i = 0; i < name.size();) {

@@ -52,8 +52,8 @@ std::optional<std::string> Finish(const Grammar& grammar, Form form, std::size_t
 // ---- alignment ----------------------------------------------------------------------------------------
 // A timing slot of a form, or a symbol of an expected surface.
 struct Unit {
-  std::string text;                  // what spells it; a description if nothing does
-  std::optional<FeatureTree> tree;   // none: an empty slot, or a symbol the grammar does not know
+  std::string text;                 // what spells it; a description if nothing does
+  std::optional<FeatureTree> tree;  // none: an empty slot, or a symbol the grammar does not know
   friend bool operator==(const Unit& a, const Unit& b) { return a.tree == b.tree && (a.tree || a.text == b.text); }
 };
 
@@ -89,15 +89,15 @@ std::vector<Pairing> Align(const std::vector<Unit>& left, const std::vector<Unit
         best[i][j] = static_cast<double>(i + j);
         continue;
       }
-      best[i][j] = std::min({best[i - 1][j - 1] + Distance(left[i - 1], right[j - 1]), best[i - 1][j] + 1,
-                             best[i][j - 1] + 1});
+      best[i][j] =
+          std::min({best[i - 1][j - 1] + Distance(left[i - 1], right[j - 1]), best[i - 1][j] + 1, best[i][j - 1] + 1});
     }
   }
   std::vector<Pairing> pairs;
   std::size_t i = n, j = m;
   while (i > 0 || j > 0) {
-    const bool pair = i > 0 && j > 0 &&
-                      std::abs(best[i][j] - best[i - 1][j - 1] - Distance(left[i - 1], right[j - 1])) < 1e-9;
+    const bool pair =
+        i > 0 && j > 0 && std::abs(best[i][j] - best[i - 1][j - 1] - Distance(left[i - 1], right[j - 1])) < 1e-9;
     const bool gone = !pair && i > 0 && std::abs(best[i][j] - best[i - 1][j] - 1) < 1e-9;
     Pairing next;
     if (pair || gone) next.left = static_cast<int>(--i);
@@ -167,8 +167,9 @@ Difference FirstDifference(const std::vector<Unit>& derived, const std::vector<U
   Difference difference;
   std::size_t slot = 0;
   for (const Pairing& pair : Align(derived, expected, nullptr)) {
-    const bool same = pair.left >= 0 && pair.right >= 0 &&
-                      SameText(derived[static_cast<std::size_t>(pair.left)], expected[static_cast<std::size_t>(pair.right)]);
+    const bool same =
+        pair.left >= 0 && pair.right >= 0 &&
+        SameText(derived[static_cast<std::size_t>(pair.left)], expected[static_cast<std::size_t>(pair.right)]);
     if (same) {
       ++slot;
       continue;
@@ -200,7 +201,7 @@ int LastRuleToChange(const Grammar& grammar, const Walk& walk, Difference differ
   }
   for (std::size_t k = walk.applications.size(); k-- > 0;) {
     std::vector<Unit> before = UnitsOf(grammar, walk.forms[k], true);
-    int cell = -1;  // where the segment stands in `before`
+    int cell = -1;                                     // where the segment stands in `before`
     std::size_t gap_from = 0, gap_to = before.size();  // for a gap: the stretch of `before` that fell into it
     bool right_seen = false;
     for (const Pairing& pair : Align(before, later, nullptr)) {
@@ -240,7 +241,8 @@ class Checker {
     }
     const Walk walk = Derivation(grammar_, reader_.FormOf(tokens, Reader::Side::kUnderlying));
     for (std::size_t k = 0; k < walk.applications.size(); ++k) {
-      for (const auto& [reason, count] : walk.applications[k].blocked) result.blocked[static_cast<int>(k)][reason] += count;
+      for (const auto& [reason, count] : walk.applications[k].blocked)
+        result.blocked[static_cast<int>(k)][reason] += count;
     }
     std::string problem = walk.problem;
     if (problem.empty()) {
@@ -367,7 +369,8 @@ CheckResult Check(const Grammar& grammar, const std::vector<DataRow>& rows, Runn
 std::string Describe(const Explanation& explanation, const Grammar& grammar) {
   const auto name = [&](int rule) { return Quoted(grammar.rules[static_cast<std::size_t>(rule)].name); };
   switch (explanation.which) {
-    case Explanation::Case::kNoResult: return "no result: " + explanation.problem;
+    case Explanation::Case::kNoResult:
+      return "no result: " + explanation.problem;
     case Explanation::Case::kOneRule: {
       std::string text = "first went wrong at rule " + name(explanation.rule) +
                          ": with this rule alone left out the expected form comes out";
@@ -377,8 +380,9 @@ std::string Describe(const Explanation& explanation, const Grammar& grammar) {
       return explanation.also.empty() ? text : text + ")";
     }
     case Explanation::Case::kLastChange:
-      return "went wrong at rule " + name(explanation.rule) + ", the last that changed the first segment that differs (" +
-             explanation.difference + "); leaving out no single rule gives the expected form";
+      return "went wrong at rule " + name(explanation.rule) +
+             ", the last that changed the first segment that differs (" + explanation.difference +
+             "); leaving out no single rule gives the expected form";
     case Explanation::Case::kNoRule:
       return "no rule changed the first segment that differs (" + explanation.difference +
              "): a rule is missing or did not apply";

@@ -43,10 +43,10 @@ struct Explanation {
 
 struct CheckedRow {
   bool passed = false;
-  std::optional<std::string> derived;  // none if there is no result
-  std::optional<TextError> unreadable; // the underlying form could not be read; no derivation then
-  std::string engines_differ;          // not empty: the machine's result, where it is not the interpreter's
-  Explanation explanation;             // of a row that fails and was read
+  std::optional<std::string> derived;   // none if there is no result
+  std::optional<TextError> unreadable;  // the underlying form could not be read; no derivation then
+  std::string engines_differ;           // not empty: the machine's result, where it is not the interpreter's
+  Explanation explanation;              // of a row that fails and was read
 };
 
 struct CheckResult {

@@ -5,32 +5,58 @@ namespace tiersmith {
 
 const char* KindName(Kind kind) {
   switch (kind) {
-    case Kind::kMissingFile: return "missing-file";
-    case Kind::kNotUtf8: return "not-utf8";
-    case Kind::kSyntax: return "syntax";
-    case Kind::kUnclosedBlock: return "unclosed-block";
-    case Kind::kUnclosedForm: return "unclosed-form";
-    case Kind::kReservedWord: return "reserved-word";
-    case Kind::kNotSupportedYet: return "not-supported-yet";
-    case Kind::kUnknownFeature: return "unknown-feature";
-    case Kind::kUnknownNode: return "unknown-node";
-    case Kind::kUnknownClass: return "unknown-class";
-    case Kind::kUnknownLabel: return "unknown-label";
-    case Kind::kUnknownSymbol: return "unknown-symbol";
-    case Kind::kDuplicate: return "duplicate";
-    case Kind::kBadTree: return "bad-tree";
-    case Kind::kBadValue: return "bad-value";
-    case Kind::kSymbolsFallTogether: return "symbols-fall-together";
-    case Kind::kUnspecifiedFeature: return "unspecified-feature";
-    case Kind::kBadRule: return "bad-rule";
-    case Kind::kNeverApplies: return "never-applies";
-    case Kind::kNoSymbol: return "no-symbol";
-    case Kind::kAmbiguousRule: return "ambiguous-rule";
-    case Kind::kReachesOtherRoot: return "reaches-other-root";
-    case Kind::kUnknownCharacter: return "unknown-character";
-    case Kind::kBadForm: return "bad-form";
-    case Kind::kBadData: return "bad-data";
-    case Kind::kLimit: return "limit";
+    case Kind::kMissingFile:
+      return "missing-file";
+    case Kind::kNotUtf8:
+      return "not-utf8";
+    case Kind::kSyntax:
+      return "syntax";
+    case Kind::kUnclosedBlock:
+      return "unclosed-block";
+    case Kind::kUnclosedForm:
+      return "unclosed-form";
+    case Kind::kReservedWord:
+      return "reserved-word";
+    case Kind::kNotSupportedYet:
+      return "not-supported-yet";
+    case Kind::kUnknownFeature:
+      return "unknown-feature";
+    case Kind::kUnknownNode:
+      return "unknown-node";
+    case Kind::kUnknownClass:
+      return "unknown-class";
+    case Kind::kUnknownLabel:
+      return "unknown-label";
+    case Kind::kUnknownSymbol:
+      return "unknown-symbol";
+    case Kind::kDuplicate:
+      return "duplicate";
+    case Kind::kBadTree:
+      return "bad-tree";
+    case Kind::kBadValue:
+      return "bad-value";
+    case Kind::kSymbolsFallTogether:
+      return "symbols-fall-together";
+    case Kind::kUnspecifiedFeature:
+      return "unspecified-feature";
+    case Kind::kBadRule:
+      return "bad-rule";
+    case Kind::kNeverApplies:
+      return "never-applies";
+    case Kind::kNoSymbol:
+      return "no-symbol";
+    case Kind::kAmbiguousRule:
+      return "ambiguous-rule";
+    case Kind::kReachesOtherRoot:
+      return "reaches-other-root";
+    case Kind::kUnknownCharacter:
+      return "unknown-character";
+    case Kind::kBadForm:
+      return "bad-form";
+    case Kind::kBadData:
+      return "bad-data";
+    case Kind::kLimit:
+      return "limit";
   }
   return "";
 }
@@ -46,9 +72,12 @@ const std::vector<Kind>& AllKinds() {
 
 const char* SeverityName(Severity severity) {
   switch (severity) {
-    case Severity::kError: return "error";
-    case Severity::kWarning: return "warning";
-    case Severity::kNote: return "note";
+    case Severity::kError:
+      return "error";
+    case Severity::kWarning:
+      return "warning";
+    case Severity::kNote:
+      return "note";
   }
   return "";
 }

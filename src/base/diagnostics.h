@@ -71,7 +71,7 @@ struct Diagnostic {
   Severity severity = Severity::kError;
   Span span;
   std::string message;
-  std::string remedy;  // what to do about it; printed after "help: "
+  std::string remedy;                              // what to do about it; printed after "help: "
   std::vector<std::pair<Span, std::string>> also;  // e.g. "first declared here"
 };
 

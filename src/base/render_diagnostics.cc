@@ -14,9 +14,12 @@ using nlohmann::json;
 
 const char* ColorOf(Severity severity) {
   switch (severity) {
-    case Severity::kError: return "\033[1;31m";
-    case Severity::kWarning: return "\033[1;33m";
-    case Severity::kNote: return "\033[1;36m";
+    case Severity::kError:
+      return "\033[1;31m";
+    case Severity::kWarning:
+      return "\033[1;33m";
+    case Severity::kNote:
+      return "\033[1;36m";
   }
   return "";
 }

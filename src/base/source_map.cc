@@ -83,9 +83,11 @@ bool SourceMap::Load(const std::string& path, Span from, Diagnostics& diagnostic
   Diagnostic diagnostic;
   diagnostic.kind = Kind::kNotUtf8;
   diagnostic.span = {*id, begin, begin + 3};
-  diagnostic.message = std::string("this file is not UTF-8: byte ") + byte + (utf16 ? " begins a UTF-16 file" : " cannot stand here");
-  diagnostic.remedy = utf16 ? "save the file as UTF-8, or convert it: iconv -f UTF-16 -t UTF-8"
-                            : "save the file as UTF-8, or convert it from what it is, for example: iconv -f LATIN1 -t UTF-8";
+  diagnostic.message =
+      std::string("this file is not UTF-8: byte ") + byte + (utf16 ? " begins a UTF-16 file" : " cannot stand here");
+  diagnostic.remedy =
+      utf16 ? "save the file as UTF-8, or convert it: iconv -f UTF-16 -t UTF-8"
+            : "save the file as UTF-8, or convert it from what it is, for example: iconv -f LATIN1 -t UTF-8";
   if (from.file < files_.size() && from.file != *id) diagnostic.also.push_back({from, "read from here"});
   diagnostics.Add(std::move(diagnostic));
   return false;
@@ -104,7 +106,8 @@ SourceMap::Place SourceMap::Find(Span span) const {
   const std::string_view line = text.substr(line_begin, line_end - line_begin);
   const std::string_view left = line.substr(0, std::min(begin - line_begin, line.size()));
   const std::size_t end = std::clamp<std::size_t>(span.end, begin, std::max(begin, line_end));
-  place.line = files_[span.file].first_line + static_cast<int>(std::count(text.begin(), text.begin() + static_cast<std::ptrdiff_t>(line_begin), '\n'));
+  place.line = files_[span.file].first_line +
+               static_cast<int>(std::count(text.begin(), text.begin() + static_cast<std::ptrdiff_t>(line_begin), '\n'));
   place.column = 1 + static_cast<int>(CountCodePoints(left));
   place.line_text = std::string(line);
   place.caret_column = DisplayWidth(left);

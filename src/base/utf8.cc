@@ -9,9 +9,7 @@
 namespace tiersmith {
 namespace {
 
-const utf8proc_uint8_t* Bytes(std::string_view text) {
-  return reinterpret_cast<const utf8proc_uint8_t*>(text.data());
-}
+const utf8proc_uint8_t* Bytes(std::string_view text) { return reinterpret_cast<const utf8proc_uint8_t*>(text.data()); }
 
 std::string Normalise(std::string_view text, utf8proc_option_t options) {
   utf8proc_uint8_t* result = nullptr;

@@ -46,10 +46,14 @@ std::string Expected(const DataRow& row) {
 
 const char* CaseName(Explanation::Case which) {
   switch (which) {
-    case Explanation::Case::kNoResult: return "no-result";
-    case Explanation::Case::kOneRule: return "one-rule";
-    case Explanation::Case::kLastChange: return "last-change";
-    case Explanation::Case::kNoRule: return "no-rule";
+    case Explanation::Case::kNoResult:
+      return "no-result";
+    case Explanation::Case::kOneRule:
+      return "one-rule";
+    case Explanation::Case::kLastChange:
+      return "last-change";
+    case Explanation::Case::kNoRule:
+      return "no-rule";
   }
   return "";
 }
@@ -88,7 +92,8 @@ std::string BlockedText(const Report& report) {
   for (const auto& [rule, reasons] : report.result.blocked) {
     std::vector<std::string> parts;
     for (const auto& [reason, count] : reasons) parts.push_back(fmt::format("{} {}", reason, count));
-    out += fmt::format("matches blocked: '{}': {}\n", report.grammar.rules[static_cast<std::size_t>(rule)].name, Joined(parts, ", "));
+    out += fmt::format("matches blocked: '{}': {}\n", report.grammar.rules[static_cast<std::size_t>(rule)].name,
+                       Joined(parts, ", "));
   }
   return out;
 }
@@ -111,10 +116,11 @@ std::string AsTsv(const Report& report) {
     const DataRow& row = report.rows[i];
     const CheckedRow& checked = report.result.rows[i];
     const bool explained = !checked.passed && !checked.unreadable;
-    out += fmt::format("{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\n", Field(row.underlying), Field(Joined(row.surfaces, " ~ ")),
-                       checked.derived ? Field(*checked.derived) : "∅", checked.passed ? "pass" : "fail",
-                       explained ? CaseName(checked.explanation.which) : "", RuleName(report, checked),
-                       checked.passed ? "" : Field(Why(report, checked)), Field(row.gloss), PlaceOf(report, row.span));
+    out +=
+        fmt::format("{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\n", Field(row.underlying), Field(Joined(row.surfaces, " ~ ")),
+                    checked.derived ? Field(*checked.derived) : "∅", checked.passed ? "pass" : "fail",
+                    explained ? CaseName(checked.explanation.which) : "", RuleName(report, checked),
+                    checked.passed ? "" : Field(Why(report, checked)), Field(row.gloss), PlaceOf(report, row.span));
   }
   return out;
 }
@@ -122,8 +128,9 @@ std::string AsTsv(const Report& report) {
 ordered_json RowJson(const Report& report, std::size_t index) {
   const DataRow& row = report.rows[index];
   const CheckedRow& checked = report.result.rows[index];
-  ordered_json json = {{"underlying", row.underlying}, {"expected", row.surfaces}, {"derived", nullptr},
-                       {"passed", checked.passed},     {"gloss", row.gloss},       {"place", PlaceOf(report, row.span)}};
+  ordered_json json = {{"underlying", row.underlying}, {"expected", row.surfaces},
+                       {"derived", nullptr},           {"passed", checked.passed},
+                       {"gloss", row.gloss},           {"place", PlaceOf(report, row.span)}};
   if (checked.derived) json["derived"] = *checked.derived;
   if (checked.passed) return json;
   json["why"] = Why(report, checked);
@@ -139,7 +146,9 @@ ordered_json RowJson(const Report& report, std::size_t index) {
 }
 
 std::string AsJson(const Report& report) {
-  ordered_json json = {{"rows", report.rows.size()}, {"failed", report.result.failed}, {"results", ordered_json::array()},
+  ordered_json json = {{"rows", report.rows.size()},
+                       {"failed", report.result.failed},
+                       {"results", ordered_json::array()},
                        {"blocked", ordered_json::array()}};
   for (std::size_t i = 0; i < report.rows.size(); ++i) json["results"].push_back(RowJson(report, i));
   for (const auto& [rule, reasons] : report.result.blocked) {
@@ -182,7 +191,8 @@ bool ReadRows(const CheckOptions& options, const Loaded& loaded, std::vector<Dat
 Span PlaceOfError(const Report& report, const DataRow& row, const TextError& error) {
   if (row.span.file >= report.sources.size()) return row.span;
   const std::string_view text = report.sources.text(row.span.file);
-  if (text.substr(std::min<std::size_t>(row.span.begin, text.size()), row.underlying.size()) != row.underlying) return row.span;
+  if (text.substr(std::min<std::size_t>(row.span.begin, text.size()), row.underlying.size()) != row.underlying)
+    return row.span;
   const auto begin = row.span.begin + static_cast<std::uint32_t>(error.offset);
   return {row.span.file, begin, begin + static_cast<std::uint32_t>(error.length)};
 }
@@ -220,10 +230,12 @@ void AddCheck(CLI::App& app, int& code) {
   auto options = std::make_shared<CheckOptions>();
   CLI::App* verb = app.add_subcommand("check", "data against the grammar");
   AddCommonOptions(*verb, *options);
-  verb->add_option("DATA", options->data, "a TSV with a heading (underlying, surface, gloss, source); none: the grammar's data");
-  verb->footer("\nA failing row is explained by the first rule where it went wrong: the first whose leaving out gives the\n"
-               "expected form; failing that, the last that changed the first segment that differs; failing that, none did.\n"
-               "\nExample:\n  tiersmith check velmari.tier survey.tsv");
+  verb->add_option("DATA", options->data,
+                   "a TSV with a heading (underlying, surface, gloss, source); none: the grammar's data");
+  verb->footer(
+      "\nA failing row is explained by the first rule where it went wrong: the first whose leaving out gives the\n"
+      "expected form; failing that, the last that changed the first segment that differs; failing that, none did.\n"
+      "\nExample:\n  tiersmith check velmari.tier survey.tsv");
   verb->callback([options, &code] { code = RunCheck(*options); });
 }
 

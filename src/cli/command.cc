@@ -183,7 +183,8 @@ void PrintTextError(const FormSource& source, const std::string& form, int numbe
   const std::uint32_t file = sources.Add(source.from_stdin() ? "<stdin>" : "argument", form, number);
   const auto begin = static_cast<std::uint32_t>(error.offset);
   Diagnostics diagnostics;
-  diagnostics.Error(error.kind, {file, begin, begin + static_cast<std::uint32_t>(error.length)}, error.message, error.remedy);
+  diagnostics.Error(error.kind, {file, begin, begin + static_cast<std::uint32_t>(error.length)}, error.message,
+                    error.remedy);
   PrintDiagnostics(diagnostics, sources, json);
 }
 

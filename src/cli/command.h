@@ -71,7 +71,7 @@ class Output {
  private:
   bool Drain();
 
-  std::string path_;       // empty: standard output
+  std::string path_;  // empty: standard output
   std::string temporary_;
   std::FILE* file_ = nullptr;
   std::string buffer_;

@@ -21,9 +21,9 @@ Rows StatsRows(const std::vector<SegmentStats>& stats) {
   Rows rows = {{"segment", "rules", "states", "arcs", "classes", "letters", "bytes", "seconds"}};
   for (std::size_t i = 0; i < stats.size(); ++i) {
     const SegmentStats& s = stats[i];
-    rows.push_back({std::to_string(i + 1), std::to_string(s.rules.size()), std::to_string(s.states), std::to_string(s.arcs),
-                    std::to_string(s.classes), std::to_string(s.letters), std::to_string(s.bytes),
-                    fmt::format("{:.3f}", s.seconds)});
+    rows.push_back({std::to_string(i + 1), std::to_string(s.rules.size()), std::to_string(s.states),
+                    std::to_string(s.arcs), std::to_string(s.classes), std::to_string(s.letters),
+                    std::to_string(s.bytes), fmt::format("{:.3f}", s.seconds)});
   }
   return rows;
 }
@@ -40,8 +40,13 @@ std::string Tsv(const Rows& rows) {
 std::string Json(const std::vector<SegmentStats>& stats) {
   ordered_json json = ordered_json::array();
   for (const SegmentStats& s : stats) {
-    json.push_back({{"rules", s.rules}, {"states", s.states}, {"arcs", s.arcs}, {"classes", s.classes},
-                    {"letters", s.letters}, {"bytes", s.bytes}, {"seconds", s.seconds}});
+    json.push_back({{"rules", s.rules},
+                    {"states", s.states},
+                    {"arcs", s.arcs},
+                    {"classes", s.classes},
+                    {"letters", s.letters},
+                    {"bytes", s.bytes},
+                    {"seconds", s.seconds}});
   }
   return json.dump(2) + "\n";
 }
@@ -76,7 +81,9 @@ void AddCompile(CLI::App& app, int& code) {
   AddCommonOptions(*verb, *options);
   verb->get_option("--output")->group("");  // refused with a reason, and so not offered
   verb->add_flag("--stats", options->stats, "segments, rules, states, arcs, classes, letters, bytes, seconds");
-  verb->footer("\nWriting the machine to a file comes with a later release.\n\nExample:\n  tiersmith compile velmari.tier --stats");
+  verb->footer(
+      "\nWriting the machine to a file comes with a later release.\n\nExample:\n  tiersmith compile velmari.tier "
+      "--stats");
   verb->callback([options, &code] { code = RunCompile(*options); });
 }
 

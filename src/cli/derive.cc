@@ -232,7 +232,9 @@ void AddDerive(CLI::App& app, int& code) {
   verb->add_flag("--trace", options->trace, "the derivation, rule by rule");
   verb->add_flag("--pairs", options->pairs, "underlying and surface form, tab-separated");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
-  verb->footer("\nExample:\n  tiersmith derive velmari.tier --trace in-kat\n  tiersmith derive velmari.tier --pairs < words.txt");
+  verb->footer(
+      "\nExample:\n  tiersmith derive velmari.tier --trace in-kat\n  tiersmith derive velmari.tier --pairs < "
+      "words.txt");
   verb->callback([options, &code] { code = RunDerive(*options); });
 }
 

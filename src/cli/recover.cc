@@ -54,7 +54,8 @@ std::string AsTsv(const std::string& form, const Runner::Candidates& candidates)
   std::string out;
   if (candidates.best.empty()) out += Field(form) + "\t∅\t\t\t\n";
   for (const Runner::Candidate& candidate : candidates.best) {
-    out += fmt::format("{}\t{}\t{}\t{}\t\n", Field(form), candidate.form, candidate.restorations, Weight(candidate.weight));
+    out += fmt::format("{}\t{}\t{}\t{}\t\n", Field(form), candidate.form, candidate.restorations,
+                       Weight(candidate.weight));
   }
   return out;
 }
@@ -138,8 +139,9 @@ void AddRecover(CLI::App& app, int& code) {
   verb->add_option("FORMS", options->forms, "surface forms; none, or -: one a line on standard input");
   verb->add_option("--best", options->best, "how many candidates (10)")->type_name("N");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
-  verb->footer("\nColumns: form, restorations (slots and boundaries put back), weight, gloss (empty: no lexicon yet).\n"
-               "\nExample:\n  tiersmith recover velmari.tier --best 5 iŋkat");
+  verb->footer(
+      "\nColumns: form, restorations (slots and boundaries put back), weight, gloss (empty: no lexicon yet).\n"
+      "\nExample:\n  tiersmith recover velmari.tier --best 5 iŋkat");
   verb->callback([options, &code] { code = RunRecover(*options); });
 }
 

@@ -97,7 +97,8 @@ WorkPart* LetterBuilder::MotherFor(WorkPart* slot, NodeId node, bool make) const
   WorkPart* part = slot;
   for (std::size_t i = path.size(); i-- > 0;) {
     const NodeId kind = path[i];
-    auto it = std::find_if(part->daughters.begin(), part->daughters.end(), [kind](const WorkPart& d) { return d.node == kind; });
+    auto it = std::find_if(part->daughters.begin(), part->daughters.end(),
+                           [kind](const WorkPart& d) { return d.node == kind; });
     if (it == part->daughters.end()) {
       if (!make) return nullptr;
       WorkPart fresh;
@@ -174,8 +175,8 @@ void LetterBuilder::Relist(WorkPart* mother, NodeId node, std::int32_t request, 
 }
 
 // Adds the lines asked for at both ends of what the mother keeps; true if any is new.
-bool LetterBuilder::DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
-                              std::vector<WorkPart>* list, bool* clash) const {
+bool LetterBuilder::DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated,
+                              const Lines& lines, std::vector<WorkPart>* list, bool* clash) const {
   const std::int32_t left = (request & kLineLeft) && lines.left != nullptr ? lines.left[index] : -1;
   const std::int32_t right = (request & kLineRight) && lines.right != nullptr ? lines.right[index] : -1;
   bool add_left = left >= 0, add_right = right >= 0;
@@ -202,8 +203,9 @@ bool LetterBuilder::DrawLines(NodeId node, std::int32_t request, std::size_t ind
 // Removes class nodes with nothing under them; true if `part` itself is such a node.
 bool LetterBuilder::Prune(WorkPart* part) const {
   const TreeNode& kind = requests_.space().tree()[part->node];
-  part->daughters.erase(std::remove_if(part->daughters.begin(), part->daughters.end(), [this](WorkPart& d) { return Prune(&d); }),
-                        part->daughters.end());
+  part->daughters.erase(
+      std::remove_if(part->daughters.begin(), part->daughters.end(), [this](WorkPart& d) { return Prune(&d); }),
+      part->daughters.end());
   const bool is_class = kind.type == TreeNode::Type::kClass && part->node != kSlotNode && part->node != kRootNode;
   const bool hides = part->value != 0;  // LetterClasses: something hidden stands under it
   return is_class && !kind.standing && part->daughters.empty() && !hides;

@@ -12,10 +12,10 @@
 namespace tiersmith {
 
 enum class Origin : std::uint8_t {
-  kOwn,       // was there
-  kOldLeft,   // the N that was nearest on the left before the rule
+  kOwn,      // was there
+  kOldLeft,  // the N that was nearest on the left before the rule
   kOldRight,
-  kNewLeft,   // the last N on the left as it is after the rule (iterative)
+  kNewLeft,  // the last N on the left as it is after the rule (iterative)
   kNewRight,
   kFresh,
 };
@@ -58,7 +58,7 @@ class LetterBuilder {
   // The first or last N of a letter as content, or -1.
   int ContentOf(const Key& annotated, NodeId node, bool last) const;
 
-  struct Lines {            // contents the requests may draw on, by request node; -1: none
+  struct Lines {  // contents the requests may draw on, by request node; -1: none
     const std::int32_t* left = nullptr;
     const std::int32_t* right = nullptr;
     Origin left_origin = Origin::kOldLeft;
@@ -72,8 +72,8 @@ class LetterBuilder {
 
  private:
   WorkPart* MotherFor(WorkPart* slot, NodeId node, bool make) const;
-  void Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
-              BuiltLetter* built) const;
+  void Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated,
+              const Lines& lines, BuiltLetter* built) const;
   bool DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,
                  std::vector<WorkPart>* list, bool* clash) const;
   bool Prune(WorkPart* part) const;

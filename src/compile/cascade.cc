@@ -29,9 +29,14 @@ std::size_t BytesOf(const Tape& tape) {
 
 class CascadeCompiler {
  public:
-  CascadeCompiler(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics, const std::vector<Letter>* testing)
-      : grammar_(grammar), limits_(limits), diagnostics_(diagnostics), testing_(testing != nullptr),
-        plan_(MakePlan(grammar, testing_)), data_(std::make_unique<CascadeData>()) {
+  CascadeCompiler(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,
+                  const std::vector<Letter>* testing)
+      : grammar_(grammar),
+        limits_(limits),
+        diagnostics_(diagnostics),
+        testing_(testing != nullptr),
+        plan_(MakePlan(grammar, testing_)),
+        data_(std::make_unique<CascadeData>()) {
     data_->grammar = &grammar;
     data_->classes = std::make_unique<LetterClasses>(grammar, plan_.visible, plan_.literals);
     if (testing_) {
@@ -62,7 +67,8 @@ class CascadeCompiler {
     input.symbol = symbol;
     input.boundary = letter.boundary;
     for (const auto& daughter : letter.part.daughters) {
-      if (daughter.node == kRootNode && (letter.part.links >> LinkBit(grammar_.tree, kRootNode) & 1u)) input.linked = true;
+      if (daughter.node == kRootNode && (letter.part.links >> LinkBit(grammar_.tree, kRootNode) & 1u))
+        input.linked = true;
     }
     data_->inputs.push_back(input);
   }
@@ -201,10 +207,11 @@ class CascadeCompiler {
     const std::vector<NodeId> live = LinksIn(classes_in, rule, plan_.live[index]);
     RuleMachine machine = CompileRule(rule, *data_->classes, classes_in, live, plan_.live[index + 1], limits_);
     if (machine.over_budget) {
-      diagnostics_.Error(Kind::kLimit, rule.span,
-                         fmt::format("rule \"{}\" needs more than {} states to find its matches, or {} to carry them out", rule.name,
-                                     limits_.side_states, limits_.step_states),
-                         Costs(rule));
+      diagnostics_.Error(
+          Kind::kLimit, rule.span,
+          fmt::format("rule \"{}\" needs more than {} states to find its matches, or {} to carry them out", rule.name,
+                      limits_.side_states, limits_.step_states),
+          Costs(rule));
       return false;
     }
     const Tape reduced = Reduce(std::move(machine.tape));
@@ -238,7 +245,8 @@ class CascadeCompiler {
 
   // Of the nodes whose links may matter: those of which some letter that comes in has a link, or the rule draws one, and
   // what is above them. The others have no links at all, so nothing needs to watch them.
-  std::vector<NodeId> LinksIn(const std::vector<int>& classes, const Rule& rule, const std::vector<NodeId>& planned) const {
+  std::vector<NodeId> LinksIn(const std::vector<int>& classes, const Rule& rule,
+                              const std::vector<NodeId>& planned) const {
     NodeSet linked(grammar_.tree.nodes.size(), false);
     linked[kRootNode] = true;
     const auto note = [&](const auto& self, const LetterPart& part) -> void {
@@ -289,38 +297,50 @@ class CascadeCompiler {
     const std::vector<TapeArc> ambiguous = ShortestThrough(composed, flagged(kFlagAmbiguous), &at);
     if (!ambiguous.empty()) {
       const std::string form = FormText(ambiguous);
-      diagnostics_.Add({Kind::kAmbiguousRule, severity, rule.span,
-                        fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}", possibly,
-                                    rule.name, form, Explained(rule, form)),
+      diagnostics_.Add({Kind::kAmbiguousRule,
+                        severity,
+                        rule.span,
+                        fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}",
+                                    possibly, rule.name, form, Explained(rule, form)),
                         "narrow the pattern so that only one of them matches, or let the rule `iterate`",
                         {}});
       if (segment_.exact) return false;
     }
     const std::vector<TapeArc> reaches = ShortestThrough(composed, flagged(kFlagReaches), &at);
     if (!reaches.empty()) {
-      diagnostics_.Add({Kind::kReachesOtherRoot, severity, rule.span,
-                        fmt::format("{}rule \"{}\" iterates, but in /{}/ its change would reach another segment through a shared node",
-                                    possibly, rule.name, FormText(reaches)),
-                        "spread or set the lower feature instead of what is shared, delink it first in a rule of its own, or apply the "
-                        "rule at once (without `iterate`)",
-                        {}});
+      diagnostics_.Add(
+          {Kind::kReachesOtherRoot,
+           severity,
+           rule.span,
+           fmt::format(
+               "{}rule \"{}\" iterates, but in /{}/ its change would reach another segment through a shared node",
+               possibly, rule.name, FormText(reaches)),
+           "spread or set the lower feature instead of what is shared, delink it first in a rule of its own, or apply "
+           "the "
+           "rule at once (without `iterate`)",
+           {}});
       if (segment_.exact) return false;
     }
     const std::vector<TapeArc> unsure = ShortestThrough(composed, flagged(kFlagUnsure), &at);
     if (!unsure.empty()) {
-      diagnostics_.Add({Kind::kLimit, severity, rule.span,
-                        fmt::format("{}rule \"{}\" iterates over a gap, and in /{}/ cuts a line that decides whether a nearer segment "
-                                    "could change: this cannot be compiled",
-                                    possibly, rule.name, FormText(unsure)),
-                        "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
-                        {}});
+      diagnostics_.Add(
+          {Kind::kLimit,
+           severity,
+           rule.span,
+           fmt::format(
+               "{}rule \"{}\" iterates over a gap, and in /{}/ cuts a line that decides whether a nearer segment "
+               "could change: this cannot be compiled",
+               possibly, rule.name, FormText(unsure)),
+           "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
+           {}});
       if (segment_.exact) return false;
     }
     const bool applies = !ShortestThrough(composed, flagged(kFlagChanged), &at).empty();
     if (!applies) {
-      diagnostics_.Warning(Kind::kNeverApplies, rule.span,
-                           fmt::format("rule \"{}\" never changes anything: no form that reaches it fits its pattern", rule.name),
-                           "check its features against the inventory, and the rules before it");
+      diagnostics_.Warning(
+          Kind::kNeverApplies, rule.span,
+          fmt::format("rule \"{}\" never changes anything: no form that reaches it fits its pattern", rule.name),
+          "check its features against the inventory, and the rules before it");
     }
     return true;
   }
@@ -371,7 +391,8 @@ class CascadeCompiler {
     }
     // No more than a few: one mistake often makes many trees.
     constexpr std::size_t kMost = 3;
-    for (std::size_t i = 0; i < found.size() && i < kMost; ++i) Report(found[i].first, found[i].second.first, found[i].second.second);
+    for (std::size_t i = 0; i < found.size() && i < kMost; ++i)
+      Report(found[i].first, found[i].second.first, found[i].second.second);
   }
 
   void Note(int class_id, int rest, const TapeArc& arc, int arc_rest,
@@ -394,8 +415,9 @@ class CascadeCompiler {
         last.machine, [&](const TapeArc& arc) { return arc.in == wanted.in && arc.out == wanted.out; }, &at);
     const std::string form = FormText(path, static_cast<int>(at), rest);
     const std::vector<int>& candidates = grammar_.inventory.Spell(tree).candidates;
-    std::string message = candidates.empty() ? fmt::format("no symbol spells {}", grammar_.inventory.Describe(tree, grammar_.tree))
-                                             : fmt::format("two or more symbols could spell {}", Bracketed(tree));
+    std::string message = candidates.empty()
+                              ? fmt::format("no symbol spells {}", grammar_.inventory.Describe(tree, grammar_.tree))
+                              : fmt::format("two or more symbols could spell {}", Bracketed(tree));
     const bool whole = data_->segments.size() == 1;  // else the path begins in the middle
     message += whole ? fmt::format(", which /{}/ comes to", form) : ", which some form may come to";
     Span span = grammar_.rules.empty() ? Span{} : grammar_.rules.back().span;
@@ -412,10 +434,13 @@ class CascadeCompiler {
       for (int candidate : candidates) remedy += " " + grammar_.inventory.symbols[candidate].text;
       remedy += "; tell them apart with a rule that fills the missing value, or take one out of `omit`";
     } else {
-      remedy = fmt::format("declare it (allophones {{ x = {} }}), let `omit` restore what is missing, or add a rule that sets or fills it",
-                           Bracketed(tree));
+      remedy = fmt::format(
+          "declare it (allophones {{ x = {} }}), let `omit` restore what is missing, or add a rule that sets or fills "
+          "it",
+          Bracketed(tree));
     }
-    diagnostics_.Add({Kind::kNoSymbol, DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
+    diagnostics_.Add(
+        {Kind::kNoSymbol, DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
   }
 
   std::string Bracketed(const FeatureTree& tree) const {

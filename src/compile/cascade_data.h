@@ -18,15 +18,15 @@ struct Segment {
   Tape machine;
   std::size_t classes = 0, letters = 0;
   double seconds = 0;
-  bool exact = true;       // false: what comes in was not followed letter by letter from the start
+  bool exact = true;  // false: what comes in was not followed letter by letter from the start
 };
 
 // A letter of an underlying form, and the symbol it was written with.
 struct InputLetter {
   LetterClasses::Parts parts;
-  int symbol = -1;                       // -1: a boundary
+  int symbol = -1;  // -1: a boundary
   Boundary boundary = Boundary::kNone;
-  bool linked = false;                   // its root goes on to the next slot
+  bool linked = false;  // its root goes on to the next slot
 };
 
 struct CascadeData {

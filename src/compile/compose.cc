@@ -141,7 +141,8 @@ std::vector<int> ClassesWritten(const Tape& tape) {
   return {classes.begin(), classes.end()};
 }
 
-std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(const TapeArc&)>& wanted, std::size_t* at) {
+std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(const TapeArc&)>& wanted,
+                                     std::size_t* at) {
   const int n = static_cast<int>(tape.arcs.size());
   // Breadth first over (state, has a wanted arc been used).
   struct From {

@@ -17,7 +17,8 @@ std::vector<int> ClassesWritten(const Tape& tape);
 
 // The arcs of a shortest accepted path that uses an arc for which `wanted` holds; none if there is none. The position
 // of that arc on the path goes to `at`.
-std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(const TapeArc&)>& wanted, std::size_t* at);
+std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(const TapeArc&)>& wanted,
+                                     std::size_t* at);
 
 // Replaces the symbols of a tape.
 Tape MapSymbols(const Tape& tape, const std::function<Key(const Key&)>& map);

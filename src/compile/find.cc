@@ -158,8 +158,8 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
         const int profile = pattern.Profile(letter);
         step.state[0] = right.next[state[0]][profile];
         step.symbol = letter;
-        const Key request =
-            requests.Of(RolesBetween(machine, arcs[profile], left.members[symbol.back()], right.members[state[0]]), letter);
+        const Key request = requests.Of(
+            RolesBetween(machine, arcs[profile], left.members[symbol.back()], right.members[state[0]]), letter);
         Append(&step.symbol, request);
         Key needs(2 * nodes, 0);
         if (space.IsSlot(letter[0])) {
@@ -177,7 +177,8 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
   const LetterBuilder builder(requests, pool);
   const SpanPass spans(requests, builder);
   tape = PassRightward(
-      tape, spans.Start(), [&spans](const Key& state, const Key& symbol) { return spans.Step(state, symbol); }, max_states);
+      tape, spans.Start(), [&spans](const Key& state, const Key& symbol) { return spans.Step(state, symbol); },
+      max_states);
   const bool over_budget = tape.starts.empty() && !annotated.starts.empty();
   return {std::move(tape), over_budget};
 }
@@ -204,12 +205,12 @@ void DropLinks(WorkPart* part) {
 
 // Everything a sweep carries.
 struct SweepState {
-  std::int32_t near = 0;       // subset behind, of the output
-  std::int32_t visit = -1;     // subset behind of the form at the visit of the root we are in, or -1
-  Key requests;                // of that visit, on the root and below
-  Key behind, behind_visit;    // what the letters behind say
-  Key contents;                // by request node: content behind (+1)
-  Key visit_contents;          // the same as it was at the visit
+  std::int32_t near = 0;     // subset behind, of the output
+  std::int32_t visit = -1;   // subset behind of the form at the visit of the root we are in, or -1
+  Key requests;              // of that visit, on the root and below
+  Key behind, behind_visit;  // what the letters behind say
+  Key contents;              // by request node: content behind (+1)
+  Key visit_contents;        // the same as it was at the visit
 
   Key Pack() const {
     Key key{near, visit};
@@ -222,9 +223,16 @@ class Sweep {
  public:
   Sweep(const RequestSpace& requests, PatternCompiler& pattern, const PatternMachine& machine, ContentPool& pool,
         Direction direction, int known_profiles, std::size_t max_states)
-      : requests_(requests), space_(requests.space()), pattern_(pattern), direction_(direction), builder_(requests, pool), pool_(pool),
-        machine_(direction.rightward ? machine : Reversed(machine)), known_profiles_(known_profiles),
-        near_(SubsetsOf(machine_, known_profiles, max_states)), far_(SubsetsOf(Reversed(machine_), known_profiles, max_states)) {
+      : requests_(requests),
+        space_(requests.space()),
+        pattern_(pattern),
+        direction_(direction),
+        builder_(requests, pool),
+        pool_(pool),
+        machine_(direction.rightward ? machine : Reversed(machine)),
+        known_profiles_(known_profiles),
+        near_(SubsetsOf(machine_, known_profiles, max_states)),
+        far_(SubsetsOf(Reversed(machine_), known_profiles, max_states)) {
     by_profile_.resize(known_profiles);
     for (int s = 0; s < machine_.states; ++s) {
       for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
@@ -258,9 +266,11 @@ class Sweep {
       if (requests_.SpreadsFrom(!direction_.rightward, i) && space_.IsSlot(symbol[0])) {
         const NodeId node = requests_.nodes()[i];
         const RuleSpace::Bearing& bearing = space_.Of(symbol[0], node);
-        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.far_line())) *of_mother = *first;
+        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.far_line()))
+          *of_mother = *first;
         content = (bearing.mother ? *of_mother : *first) - 1;
-        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.near_line())) *of_mother = 0;
+        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.near_line()))
+          *of_mother = 0;
         if (bearing.count > 0) *first = builder_.ContentOf(symbol, node, !direction_.rightward) + 1;
       }
       // Another slot of the same root may be the target: a content is dropped only where a root ends.
@@ -496,7 +506,8 @@ class Sweep {
     return chosen;
   }
 
-  BuiltLetter Built(const Key& now, const Key& request, const SweepState& state, const std::int32_t* far_contents) const {
+  BuiltLetter Built(const Key& now, const Key& request, const SweepState& state,
+                    const std::int32_t* far_contents) const {
     Key near_contents = state.visit_contents;
     for (std::int32_t& content : near_contents) --content;
     LetterBuilder::Lines lines;
@@ -557,7 +568,8 @@ class Sweep {
     if (!pattern_.AsksOfSlotsBehind(direction_.rightward)) return nodes;
     nodes.assign(space_.tree().nodes.size(), false);
     const auto above = [&](NodeId node) {
-      for (NodeId at = space_.tree()[node].mother; at != kSlotNode && at != kRootNode; at = space_.tree()[at].mother) nodes[at] = true;
+      for (NodeId at = space_.tree()[node].mother; at != kSlotNode && at != kRootNode; at = space_.tree()[at].mother)
+        nodes[at] = true;
     };
     for (const Change& change : requests_.rule().changes) {
       if (change.op == Change::Op::kInsert) {
@@ -650,7 +662,8 @@ class Sweep {
     const std::vector<NodeId>& kinds = space_.tree()[content->node].daughters;
     for (std::size_t k = 0; k < kinds.size(); ++k) {
       const RuleSpace::Bearing& bearing = space_.Of(now[0], kinds[k]);
-      if (bearing.count > 0 && !(bearing.count == 1 && (space_.Marks(now, kinds[k]) & kObjectRight))) content->links &= ~(1u << k);
+      if (bearing.count > 0 && !(bearing.count == 1 && (space_.Marks(now, kinds[k]) & kObjectRight)))
+        content->links &= ~(1u << k);
     }
     for (WorkPart& daughter : content->daughters) BreakLinks(&daughter, now);
   }
@@ -673,7 +686,8 @@ class Sweep {
     const Origin near_origin = direction_.rightward ? Origin::kNewLeft : Origin::kNewRight;
     const Origin far_origin = direction_.rightward ? Origin::kOldRight : Origin::kOldLeft;
     const Moved moved = MovedWith(slot, node, near_origin, far_origin);
-    const int near_index = direction_.rightward ? 0 : old_count - 1, far_index = direction_.rightward ? old_count - 1 : 0;
+    const int near_index = direction_.rightward ? 0 : old_count - 1,
+              far_index = direction_.rightward ? old_count - 1 : 0;
     bool near_line = false, far_line = false;
     if (moved.near) {
       near_line = true;
@@ -710,7 +724,8 @@ class Sweep {
     Search(slot, node, near_origin, far_origin, moved, &moved);
     return moved;
   }
-  static bool Search(const WorkPart& part, NodeId node, Origin near_origin, Origin far_origin, Moved on_path, Moved* result) {
+  static bool Search(const WorkPart& part, NodeId node, Origin near_origin, Origin far_origin, Moved on_path,
+                     Moved* result) {
     for (const WorkPart& daughter : part.daughters) {
       if (daughter.node == node) {
         *result = on_path;

@@ -13,18 +13,18 @@ namespace {
 struct Instruction {
   enum class Op { kSlot, kBoundary, kGap, kSplit, kAccept };
   Op op = Op::kAccept;
-  int test = -1;   // kSlot: index into the list of tests
-  int mark = -1;   // kSlot: label, or the number of an unlabelled end of a gap
+  int test = -1;  // kSlot: index into the list of tests
+  int mark = -1;  // kSlot: label, or the number of an unlabelled end of a gap
   Boundary boundary = Boundary::kNone;
-  int gap = -1;    // kGap: index into the list of gaps
-  int next = 0;    // all but kSplit and kAccept
+  int gap = -1;               // kGap: index into the list of gaps
+  int next = 0;               // all but kSplit and kAccept
   std::vector<int> branches;  // kSplit
 };
 
 struct GapInfo {
-  std::vector<NodeId> nodes;   // no slot between may bear one of them
+  std::vector<NodeId> nodes;  // no slot between may bear one of them
   int left_mark = -1, right_mark = -1;
-  bool nearest_left = false;   // the left end is changed: no nearer slot would do
+  bool nearest_left = false;  // the left end is changed: no nearer slot would do
   bool nearest_right = false;
 };
 
@@ -212,12 +212,12 @@ struct PatternCompiler::Impl {
   std::vector<const SlotTest*> tests;
   std::vector<GapInfo> gaps;
   std::vector<Spread> spreads;
-  std::vector<char> changed;                 // by label
-  std::vector<std::vector<NodeId>> inserted; // by change: kinds that an insertion brings
+  std::vector<char> changed;                  // by label
+  std::vector<std::vector<NodeId>> inserted;  // by change: kinds that an insertion brings
   Program where;
   std::vector<Program> unless;
   int mark_count = 0;
-  std::vector<int> where_order;              // labels in the order of the pattern
+  std::vector<int> where_order;  // labels in the order of the pattern
   KeyPool profile_keys;
   std::unordered_map<Key, int, KeyHash> profile_of;
 
@@ -309,7 +309,8 @@ struct PatternCompiler::Impl {
           instruction.mark = item.label;
           // An end of a gap is marked even without a label.
           if (main && instruction.mark < 0) {
-            const bool before_gap = i + 1 < pattern.items.size() && pattern.items[i + 1].kind == PatternItem::Kind::kGap;
+            const bool before_gap =
+                i + 1 < pattern.items.size() && pattern.items[i + 1].kind == PatternItem::Kind::kGap;
             const bool after_gap = i > 0 && pattern.items[i - 1].kind == PatternItem::Kind::kGap;
             if (before_gap || after_gap) instruction.mark = mark_count++;
           }
@@ -454,8 +455,18 @@ struct PatternCompiler::Impl {
   int LabelField(int label) const { return SpreadField(static_cast<int>(spreads.size())) + label; }
 
   // What a letter says to one spread.
-  enum SpreadAnswer { kBearsNode, kBearsMother, kLeftLine, kLeftMother, kRightLine, kRightMother, kHeldLeft, kHeldRight, kHasRoom,
-                      kSpreadFields };
+  enum SpreadAnswer {
+    kBearsNode,
+    kBearsMother,
+    kLeftLine,
+    kLeftMother,
+    kRightLine,
+    kRightMother,
+    kHeldLeft,
+    kHeldRight,
+    kHasRoom,
+    kSpreadFields
+  };
 
   int Profile(const Key& letter) {
     const auto it = profile_of.find(letter);
@@ -476,9 +487,8 @@ struct PatternCompiler::Impl {
     profile[kProfileKind] = empty ? kEmptyKind : kSlotKind;
     for (std::size_t i = 0; i < tests.size(); ++i) profile[1 + i] = space.classes().Matches(class_id, *tests[i]);
     for (std::size_t i = 0; i < gaps.size(); ++i) {
-      profile[GapField(static_cast<int>(i))] = std::none_of(gaps[i].nodes.begin(), gaps[i].nodes.end(), [&](NodeId n) {
-        return space.Of(class_id, n).count > 0;
-      });
+      profile[GapField(static_cast<int>(i))] = std::none_of(gaps[i].nodes.begin(), gaps[i].nodes.end(),
+                                                            [&](NodeId n) { return space.Of(class_id, n).count > 0; });
     }
     for (std::size_t i = 0; i < spreads.size(); ++i) {
       DescribeSpread(letter, spreads[i], &profile[SpreadField(static_cast<int>(i))]);
@@ -551,7 +561,8 @@ bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& settin
       (is_class || ValuesOf(space.classes()[letter[0]].visible.part, setting.node) == setting.values)) {
     return true;  // asks nothing
   }
-  if (setting.values.size() > 1 && static_cast<int>(setting.values.size()) > space.Room(letter[0], setting.node)) return false;
+  if (setting.values.size() > 1 && static_cast<int>(setting.values.size()) > space.Room(letter[0], setting.node))
+    return false;
   if (bearing.count == 0) return !(marks & kOver) && MothersFit(letter, setting.node);
   return !(bearing.count == 1 && (marks & kObjectLeft) && (marks & kObjectRight));
 }
@@ -583,7 +594,8 @@ struct PatternCompiler::Impl::Builder {
   }
 
   // Where the program can stand before its next slot, gap or end, and the strongest boundary named on the way.
-  void Close(int pc, std::int32_t need, std::set<std::pair<int, int>>* seen, std::vector<std::pair<int, int>>* result) const {
+  void Close(int pc, std::int32_t need, std::set<std::pair<int, int>>* seen,
+             std::vector<std::pair<int, int>>* result) const {
     if (!seen->emplace(pc, need).second) return;
     const Instruction& at = program.code[pc];
     switch (at.op) {
@@ -902,26 +914,29 @@ Subsets NearerBan(const MarkedMachine& machine, int left, int right, bool left_m
   for (int s : machine.initial) initial.push_back(4 * s);
   for (std::size_t s = 0; s < machine.arcs.size(); ++s) final[4 * s + 3] = machine.final[s];
   const int moved = left_moves ? left : right;
-  return Subsets(initial, final, [machine, left, right, left_moves, moved](int state, int profile, int mark, std::vector<int>* next) {
-    const int progress = state % 4;
-    for (const MarkedArc& arc : machine.arcs[state / 4]) {
-      if (arc.profile != profile) continue;
-      int after = progress;
-      if (mark == left) {
-        if (progress != 0 || (left_moves ? arc.mark == left || arc.mark == right : arc.mark != left)) continue;
-        after = 1;
-      } else if (mark == right) {
-        if (progress != 2 || (left_moves ? arc.mark != right : arc.mark == left || arc.mark == right)) continue;
-        after = 3;
-      } else if (arc.mark == moved) {
-        if (progress != 1) continue;
-        after = 2;
-      } else if (arc.mark == left || arc.mark == right) {
-        continue;
-      }
-      next->push_back(4 * arc.next + after);
-    }
-  });
+  return Subsets(initial, final,
+                 [machine, left, right, left_moves, moved](int state, int profile, int mark, std::vector<int>* next) {
+                   const int progress = state % 4;
+                   for (const MarkedArc& arc : machine.arcs[state / 4]) {
+                     if (arc.profile != profile) continue;
+                     int after = progress;
+                     if (mark == left) {
+                       if (progress != 0 || (left_moves ? arc.mark == left || arc.mark == right : arc.mark != left))
+                         continue;
+                       after = 1;
+                     } else if (mark == right) {
+                       if (progress != 2 || (left_moves ? arc.mark != right : arc.mark == left || arc.mark == right))
+                         continue;
+                       after = 3;
+                     } else if (arc.mark == moved) {
+                       if (progress != 1) continue;
+                       after = 2;
+                     } else if (arc.mark == left || arc.mark == right) {
+                       continue;
+                     }
+                     next->push_back(4 * arc.next + after);
+                   }
+                 });
 }
 
 }  // namespace

@@ -26,11 +26,11 @@
 namespace tiersmith {
 
 struct Spread {
-  int change = 0;           // index into Rule::changes
+  int change = 0;  // index into Rule::changes
   int source = 0, target = 0;
   NodeId node = 0, mother = 0;
-  bool from_left = true;    // the source stands left of the target
-  bool delinks = false;     // the rule also delinks the target's own
+  bool from_left = true;         // the source stands left of the target
+  bool delinks = false;          // the rule also delinks the target's own
   bool inserts_between = false;  // the rule inserts a bearer between source and target
 };
 
@@ -38,7 +38,7 @@ struct Spread {
 struct Role {
   int label = 0;
   enum Ask : char { kNothing, kAsk, kAskOwnMother };  // the last: source and target share the mother
-  std::vector<Ask> asks;  // by spread
+  std::vector<Ask> asks;                              // by spread
 };
 
 struct PatternArc {
@@ -54,7 +54,7 @@ struct PatternMachine {
   std::vector<char> final;
   std::vector<std::vector<PatternArc>> arcs;  // by state
   std::vector<Role> roles;
-  std::vector<std::int32_t> underway;         // by state: bit j, it stands between source and target of spread j
+  std::vector<std::int32_t> underway;  // by state: bit j, it stands between source and target of spread j
 };
 
 // Asks of letters what the pattern needs, and builds the machine.

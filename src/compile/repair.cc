@@ -10,8 +10,8 @@ enum class Old { kNone, kInPlace, kGivenUp, kElsewhere };  // the last: dealt wi
 
 struct NodeState {
   Old old = Old::kNone;
-  bool raw = false;         // the new last entry is the first entry of the next bearer (stored or implied)
-  WorkPart* part = nullptr; // the new entry, for class nodes
+  bool raw = false;            // the new last entry is the first entry of the next bearer (stored or implied)
+  WorkPart* part = nullptr;    // the new entry, for class nodes
   Origin from = Origin::kOwn;  // how `part` came here, inherited downward
 };
 
@@ -21,7 +21,9 @@ bool FromLeft(Origin origin) { return origin == Origin::kOldLeft || origin == Or
 // The memory of one node while one letter's entries go by.
 struct Walker {
   explicit Walker(std::int32_t memory)
-      : next(memory & Repair::kNextMask), pending(memory & Repair::kPendingMask), alive((memory & Repair::kAliveBit) != 0) {}
+      : next(memory & Repair::kNextMask),
+        pending(memory & Repair::kPendingMask),
+        alive((memory & Repair::kAliveBit) != 0) {}
   std::int32_t Memory() const { return next | pending | (alive ? Repair::kAliveBit : 0); }
 
   std::int32_t next;
@@ -127,7 +129,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
       walker.alive = lives;
     };
 
-    const auto lose = [&] {  // together with the mother
+    const auto lose = [&] {                                      // together with the mother
       if (mother_index >= 0) before_loss = walker.Memory() + 1;  // a slot is of one item only
       give_up();
     };

@@ -39,9 +39,8 @@ int RequestSpace::ContentIndex(const std::vector<Value>& values) const {
 }
 
 bool RequestSpace::SpreadsFrom(bool left, std::size_t node_index) const {
-  return std::any_of(spreads_.begin(), spreads_.end(), [&](const Spread& s) {
-    return s.from_left == left && s.node == nodes_[node_index];
-  });
+  return std::any_of(spreads_.begin(), spreads_.end(),
+                     [&](const Spread& s) { return s.from_left == left && s.node == nodes_[node_index]; });
 }
 
 Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated) const {
@@ -133,7 +132,8 @@ RequestCarrier::RequestCarrier(const RequestSpace& requests, bool rightward)
   }
 }
 
-void RequestCarrier::Step(const Key& annotated, std::size_t node_index, std::int32_t* state, std::int32_t* request) const {
+void RequestCarrier::Step(const Key& annotated, std::size_t node_index, std::int32_t* state,
+                          std::int32_t* request) const {
   const RuleSpace& space = requests_.space();
   const NodeId anchor = space.LowestAncestor(annotated[0], requests_.nodes()[node_index]);
   for (std::size_t k = 0; k < ancestors_[node_index].size(); ++k) {

@@ -14,14 +14,14 @@
 namespace tiersmith {
 
 enum RequestBit : std::int32_t {
-  kCutFirst = 1,     // of the mother's own: the first (and only) one goes
-  kCutMiddle = 2,    // those between
-  kCutLast = 4,      // the last of several
+  kCutFirst = 1,   // of the mother's own: the first (and only) one goes
+  kCutMiddle = 2,  // those between
+  kCutLast = 4,    // the last of several
   kCutAll = kCutFirst | kCutMiddle | kCutLast,
-  kLineLeft = 8,     // a line to the nearest N on the left
+  kLineLeft = 8,  // a line to the nearest N on the left
   kLineRight = 16,
-  kClash = 32,       // two contents asked for
-  kValuesShift = 6   // from here up: 1 + index into RequestSpace::contents, or 0
+  kClash = 32,      // two contents asked for
+  kValuesShift = 6  // from here up: 1 + index into RequestSpace::contents, or 0
 };
 enum SlotBit : std::int32_t {
   kDeleteSlot = 1,

@@ -17,9 +17,13 @@ class ApplyPass {
  public:
   ApplyPass(const Rule& rule, const RequestSpace& requests, ContentPool& pool, const std::vector<char>& all_links,
             const std::vector<char>& kept_links)
-      : rule_(rule), requests_(requests), space_(requests.space()), builder_(requests, pool),
+      : rule_(rule),
+        requests_(requests),
+        space_(requests.space()),
+        builder_(requests, pool),
         at_once_(rule.mode == Rule::Mode::kAtOnce),
-        deletes_(std::any_of(rule.changes.begin(), rule.changes.end(), [](const Change& c) { return c.op == Change::Op::kDelete; })),
+        deletes_(std::any_of(rule.changes.begin(), rule.changes.end(),
+                             [](const Change& c) { return c.op == Change::Op::kDelete; })),
         draw_(space_, deletes_ ? all_links : kept_links, rule.mode == Rule::Mode::kLeftward),
         erase_(space_, kept_links, false),
         carrier_(requests, /*rightward=*/false) {
@@ -106,7 +110,8 @@ class ApplyPass {
     return content;
   }
 
-  void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output, bool* ambiguous) const {
+  void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output,
+              bool* ambiguous) const {
     for (std::size_t i = rule_.changes.size(); i-- > 0;) {
       if (rule_.changes[i].op != Change::Op::kInsert || rule_.changes[i].before != before) continue;
       if (!(request[0] >> (kInsertShift + i) & 1)) continue;
@@ -125,8 +130,8 @@ class ApplyPass {
     for (WorkPart& daughter : part->daughters) Freshen(&daughter);
   }
 
-  void Slot(const Key& letter, const Key& request, BuiltLetter* built, Key* state, std::vector<std::pair<int, int>>* output,
-            bool* ambiguous) const {
+  void Slot(const Key& letter, const Key& request, BuiltLetter* built, Key* state,
+            std::vector<std::pair<int, int>>* output, bool* ambiguous) const {
     if (!draw_.Letter(letter, &built->slot, &(*state)[draw_at_])) *ambiguous = true;
     if (!(request[0] & kDeleteSlot)) {
       output->emplace_back(AfterDeletions(built->slot, letter[0], state), -1);
@@ -232,7 +237,8 @@ RuleMachine CompileRule(const Rule& rule, LetterClasses& classes, const std::vec
   }
   const ApplyPass apply(rule, requests, pool, all, kept);
   Tape tape = PassLeftward(
-      found.tape, apply.Start(), [&apply](const Key& state, const Key& symbol) { return apply.Step(state, symbol); }, most);
+      found.tape, apply.Start(), [&apply](const Key& state, const Key& symbol) { return apply.Step(state, symbol); },
+      most);
   const bool over_budget = tape.starts.empty() && !found.tape.starts.empty();
   return {std::move(tape), over_budget};
 }

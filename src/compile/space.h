@@ -24,9 +24,9 @@ enum LinkMark : std::int32_t { kFromLeft = 1, kToRight = 2, kObjectLeft = 4, kOb
 class RuleSpace {
  public:
   struct Bearing {
-    bool mother = false;      // bears the node's mother
-    int count = 0;            // instances of the node
-    bool bit = false;         // the stored link bit
+    bool mother = false;  // bears the node's mother
+    int count = 0;        // instances of the node
+    bool bit = false;     // the stored link bit
   };
 
   // `live`: nodes with bits in force in the input, mothers first, without `slot`. What stands on the left of a letter is
@@ -68,7 +68,7 @@ class RuleSpace {
   LetterClasses& classes_;
   std::vector<NodeId> live_;
   std::vector<int> live_index_;
-  std::vector<char> watched_;  // by live node
+  std::vector<char> watched_;                           // by live node
   mutable std::vector<std::vector<Bearing>> bearings_;  // by class, by node
 };
 

@@ -11,8 +11,8 @@ class Stepper {
   int State(const Key& key) { return states_.Intern(key); }
 
   std::pair<int, int> Step(int state, int symbol) {
-    const std::uint64_t key = (static_cast<std::uint64_t>(static_cast<std::uint32_t>(state)) << 32) |
-                              static_cast<std::uint32_t>(symbol);
+    const std::uint64_t key =
+        (static_cast<std::uint64_t>(static_cast<std::uint32_t>(state)) << 32) | static_cast<std::uint32_t>(symbol);
     const auto it = memo_.find(key);
     if (it != memo_.end()) return it->second;
     PassStep done = step_(states_[state], tape_.symbols[symbol]);

@@ -57,8 +57,8 @@ struct TapeArc {
 struct Tape {
   std::vector<std::vector<TapeArc>> arcs;  // by state
   std::vector<int> starts;
-  std::vector<char> ends;                  // by state: may a string end here
-  KeyPool symbols;                         // what `out` numbers
+  std::vector<char> ends;  // by state: may a string end here
+  KeyPool symbols;         // what `out` numbers
 
   std::size_t ArcCount() const;
 };

@@ -54,17 +54,15 @@ class PruneWalk {
     seen_[id] = 1;
     IdList& daughters = graph_.nodes[id].daughters;
     for (InstanceId daughter : daughters) Under(daughter);
-    daughters.erase(
-        std::remove_if(daughters.begin(), daughters.end(), [this](InstanceId d) { return Bare(d); }),
-        daughters.end());
+    daughters.erase(std::remove_if(daughters.begin(), daughters.end(), [this](InstanceId d) { return Bare(d); }),
+                    daughters.end());
   }
 
  private:
   bool Bare(InstanceId id) const {
     const Node& node = graph_[id];
     const TreeNode& kind = graph_.tree()[node.node];
-    return kind.type == TreeNode::Type::kClass && node.node > kRootNode && !kind.standing &&
-           node.daughters.empty();
+    return kind.type == TreeNode::Type::kClass && node.node > kRootNode && !kind.standing && node.daughters.empty();
   }
 
   Graph& graph_;
@@ -191,14 +189,13 @@ InstanceId Graph::AddContent(const FeatureTree& content) {
 
 void Graph::SetList(InstanceId mother, NodeId node, const IdList& list) {
   IdList& daughters = nodes[mother].daughters;
-  daughters.erase(std::remove_if(daughters.begin(), daughters.end(),
-                                 [&](InstanceId d) { return nodes[d].node == node; }),
-                  daughters.end());
+  daughters.erase(
+      std::remove_if(daughters.begin(), daughters.end(), [&](InstanceId d) { return nodes[d].node == node; }),
+      daughters.end());
   const NodeId kind = nodes[mother].node;
   const int rank = RankUnder(*tree_, kind, node);
-  auto place = std::find_if(daughters.begin(), daughters.end(), [&](InstanceId d) {
-    return RankUnder(*tree_, kind, nodes[d].node) > rank;
-  });
+  auto place = std::find_if(daughters.begin(), daughters.end(),
+                            [&](InstanceId d) { return RankUnder(*tree_, kind, nodes[d].node) > rank; });
   daughters.insert(place, list.begin(), list.end());
 }
 

@@ -19,19 +19,19 @@ struct StepNotes {
 };
 
 struct Application {
-  Form form;                          // the result (the input if there is a problem)
-  int changed = 0;                    // matches that changed something
-  std::map<std::string, int> blocked; // matches that failed, by reason: "capacity", "crossing"
-  std::string ambiguous;              // not empty: two matches ask for different things; says what
-  std::string reaches;                // not empty: an iterative change reached another root
-  StepNotes notes;                    // filled when asked for
+  Form form;                           // the result (the input if there is a problem)
+  int changed = 0;                     // matches that changed something
+  std::map<std::string, int> blocked;  // matches that failed, by reason: "capacity", "crossing"
+  std::string ambiguous;               // not empty: two matches ask for different things; says what
+  std::string reaches;                 // not empty: an iterative change reached another root
+  StepNotes notes;                     // filled when asked for
 };
 
 // Applies one rule once (one sweep if it iterates). Pure.
 Application ApplyRule(const Grammar& grammar, const Rule& rule, const Form& form, bool notes = false);
 
 struct Step {
-  int rule = 0;   // index into Grammar::rules
+  int rule = 0;  // index into Grammar::rules
   Form after;
   bool applied = false;
   StepNotes notes;
@@ -39,8 +39,8 @@ struct Step {
 struct Derivation {
   Form underlying;
   std::vector<Step> steps;
-  Form surface;          // empty slots erased
-  std::string problem;   // not empty: ambiguous or reaching another root, names the rule; surface is then not valid
+  Form surface;         // empty slots erased
+  std::string problem;  // not empty: ambiguous or reaching another root, names the rule; surface is then not valid
 };
 Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes = false);
 

@@ -74,7 +74,7 @@ class Search {
   struct Place {
     int last = -1;  // the slot matched last, as a place on the track; -1: none yet
     Boundary least = Boundary::kPhrase, most = Boundary::kNone;  // boundary items since then
-    const PatternItem* gap = nullptr;  // a gap since then
+    const PatternItem* gap = nullptr;                            // a gap since then
     bool boundary() const { return most != Boundary::kNone; }
     bool SameAs(const Place& other) const {
       return last == other.last && least == other.least && most == other.most && gap == other.gap;
@@ -348,16 +348,14 @@ bool View::Passes(const SlotTest& test, int ordinal) const {
     case SlotTest::Op::kEmpty:
       return !rooted;
     case SlotTest::Op::kBundle:
-      return rooted && std::all_of(test.bundle.begin(), test.bundle.end(),
-                                   [&](const FeatureTest& t) { return Passes(t, slot); });
+      return rooted &&
+             std::all_of(test.bundle.begin(), test.bundle.end(), [&](const FeatureTest& t) { return Passes(t, slot); });
     case SlotTest::Op::kLiteral:
       return rooted && grammar_.inventory.LiteralMatches(test.literal, graph_.Content(slot.root));
     case SlotTest::Op::kAnd:
-      return std::all_of(test.args.begin(), test.args.end(),
-                         [&](const SlotTest& t) { return Passes(t, ordinal); });
+      return std::all_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, ordinal); });
     case SlotTest::Op::kOr:
-      return std::any_of(test.args.begin(), test.args.end(),
-                         [&](const SlotTest& t) { return Passes(t, ordinal); });
+      return std::any_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, ordinal); });
     case SlotTest::Op::kNot:
       return rooted && !Passes(test.args.front(), ordinal);
   }
@@ -365,19 +363,16 @@ bool View::Passes(const SlotTest& test, int ordinal) const {
 }
 
 bool operator==(const Way& a, const Way& b) { return a.labels == b.labels && a.gaps == b.gaps; }
-bool operator<(const Way& a, const Way& b) {
-  return a.labels != b.labels ? a.labels < b.labels : a.gaps < b.gaps;
-}
+bool operator<(const Way& a, const Way& b) { return a.labels != b.labels ? a.labels < b.labels : a.gaps < b.gaps; }
 
 std::vector<Way> FindWays(const View& view, const Rule& rule) {
   std::vector<Way> ways = Search(view, rule, rule.where, nullptr).All();
   if (rule.unless.empty() || ways.empty()) return ways;
   ways.erase(std::remove_if(ways.begin(), ways.end(),
                             [&](const Way& way) {
-                              return std::any_of(
-                                  rule.unless.begin(), rule.unless.end(), [&](const Pattern& pattern) {
-                                    return Search(view, rule, pattern, &way.labels).Any();
-                                  });
+                              return std::any_of(rule.unless.begin(), rule.unless.end(), [&](const Pattern& pattern) {
+                                return Search(view, rule, pattern, &way.labels).Any();
+                              });
                             }),
              ways.end());
   return ways;

@@ -18,7 +18,7 @@ namespace tiersmith::graph {
 
 // The slots a pattern sees, with the strength of the run of boundaries before each and after the last.
 struct Track {
-  boost::container::small_vector<int, 16> slots;   // ordinals, left to right
+  boost::container::small_vector<int, 16> slots;      // ordinals, left to right
   boost::container::small_vector<Boundary, 17> runs;  // runs[i]: before slots[i]; the ends of the form are ‖
 };
 
@@ -65,7 +65,7 @@ using LabelSlots = boost::container::small_vector<int, 6>;  // per label an ordi
 struct Way {
   struct Gap {
     const PatternItem* item;
-    int left, right;               // ordinals of the slots on its two sides
+    int left, right;                   // ordinals of the slots on its two sides
     bool left_changes, right_changes;  // is that item changed by the rule?
 
     friend bool operator==(const Gap& a, const Gap& b) {

@@ -80,8 +80,7 @@ const Change* WithoutRoom(const View& view, const Rule& rule, const LabelSlots& 
   return nullptr;
 }
 
-Requests::Requests(const View& view, const Rule& rule)
-    : view_(view), rule_(rule), made_graph_(view.graph()) {}
+Requests::Requests(const View& view, const Rule& rule) : view_(view), rule_(rule), made_graph_(view.graph()) {}
 
 // ---- collecting ---------------------------------------------------------------------------------
 
@@ -134,8 +133,7 @@ void Requests::AddSpread(const Change& change, const LabelSlots& match) {
 // What the same match spreads to the same mother is not cut: only the mother's other instances are.
 void Requests::AddDelink(const Change& change, const LabelSlots& match) {
   const int slot = match[change.target];
-  const InstanceId mother =
-      view_.graph().FindUnder(view_.slot(slot), view_.graph().tree()[change.node].mother);
+  const InstanceId mother = view_.graph().FindUnder(view_.slot(slot), view_.graph().tree()[change.node].mother);
   if (mother == kNone) return;
   for (InstanceId id : OldList(mother, change.node)) {
     const bool spread_too = std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& other) {
@@ -252,9 +250,8 @@ std::string Requests::LineAmbiguity(const Lines& lines) const {
 
 bool Requests::Changes() const {
   if (!insertions_.empty() || !deletions_.empty() || !contents_.empty()) return true;
-  return std::any_of(lines_.begin(), lines_.end(), [this](const Lines& lines) {
-    return Merge(lines).list != OldList(lines.mother, lines.node);
-  });
+  return std::any_of(lines_.begin(), lines_.end(),
+                     [this](const Lines& lines) { return Merge(lines).list != OldList(lines.mother, lines.node); });
 }
 
 std::vector<InstanceId> Requests::MothersChanged() const {
@@ -351,8 +348,7 @@ Graph Requests::Result() const {
   for (int slot : deletions_) {
     graph.items.erase(std::remove_if(graph.items.begin(), graph.items.end(),
                                      [&](const FormItem& item) {
-                                       return item.kind == FormItem::Kind::kSlot &&
-                                              item.instance == view_.slot(slot);
+                                       return item.kind == FormItem::Kind::kSlot && item.instance == view_.slot(slot);
                                      }),
                       graph.items.end());
   }
@@ -381,9 +377,8 @@ bool Requests::LineCut(InstanceId mother, NodeId node) const {
 }
 
 bool Requests::ContentAsked(InstanceId mother, NodeId node) const {
-  return std::any_of(contents_.begin(), contents_.end(), [&](const Content& content) {
-    return content.mother == mother && content.node == node;
-  });
+  return std::any_of(contents_.begin(), contents_.end(),
+                     [&](const Content& content) { return content.mother == mother && content.node == node; });
 }
 
 }  // namespace tiersmith::graph

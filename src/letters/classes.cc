@@ -67,8 +67,7 @@ void JoinInto(const LetterPart& seen, const LetterPart* rest, const NodeSet& vis
 bool Within(const LetterPart& a, const LetterPart& b) {
   std::size_t i = 0;
   for (const LetterPart& daughter : a.daughters) {
-    while (i < b.daughters.size() &&
-           (b.daughters[i].node != daughter.node || b.daughters[i].value != daughter.value)) {
+    while (i < b.daughters.size() && (b.daughters[i].node != daughter.node || b.daughters[i].value != daughter.value)) {
       ++i;
     }
     if (i == b.daughters.size() || !Within(daughter, b.daughters[i])) return false;
@@ -90,10 +89,14 @@ bool BearsValue(const LetterPart& part, NodeId node, Value value) {
 
 bool Passes(const LetterPart& slot, const FeatureTest& test) {
   switch (test.kind) {
-    case FeatureTest::Kind::kBears: return Bears(slot, test.node);
-    case FeatureTest::Kind::kLacks: return !Bears(slot, test.node);
-    case FeatureTest::Kind::kHasValue: return BearsValue(slot, test.node, test.value);
-    case FeatureTest::Kind::kLacksValue: return !BearsValue(slot, test.node, test.value);
+    case FeatureTest::Kind::kBears:
+      return Bears(slot, test.node);
+    case FeatureTest::Kind::kLacks:
+      return !Bears(slot, test.node);
+    case FeatureTest::Kind::kHasValue:
+      return BearsValue(slot, test.node, test.value);
+    case FeatureTest::Kind::kLacksValue:
+      return !BearsValue(slot, test.node, test.value);
   }
   return false;
 }
@@ -171,23 +174,23 @@ bool LetterClasses::Matches(int class_id, const SlotTest& test) const {
   if (letter.visible.kind != FormItem::Kind::kSlot) return false;
   const bool empty = !Bears(letter.visible.part, kRootNode);
   switch (test.op) {
-    case SlotTest::Op::kEmpty: return empty;
-    case SlotTest::Op::kAny: return !empty;
+    case SlotTest::Op::kEmpty:
+      return empty;
+    case SlotTest::Op::kAny:
+      return !empty;
     case SlotTest::Op::kBundle:
-      return !empty && std::all_of(test.bundle.begin(), test.bundle.end(), [&letter](const FeatureTest& t) {
-        return Passes(letter.visible.part, t);
-      });
+      return !empty && std::all_of(test.bundle.begin(), test.bundle.end(),
+                                   [&letter](const FeatureTest& t) { return Passes(letter.visible.part, t); });
     case SlotTest::Op::kLiteral: {
       if (empty || letter.rest < 0) return false;
       return grammar_.inventory.LiteralMatches(test.literal, *RootContent(Join(class_id, letter.rest)));
     }
     case SlotTest::Op::kAnd:
-      return std::all_of(test.args.begin(), test.args.end(),
-                         [&](const SlotTest& t) { return Matches(class_id, t); });
+      return std::all_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Matches(class_id, t); });
     case SlotTest::Op::kOr:
-      return std::any_of(test.args.begin(), test.args.end(),
-                         [&](const SlotTest& t) { return Matches(class_id, t); });
-    case SlotTest::Op::kNot: return !empty && !Matches(class_id, test.args[0]);
+      return std::any_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Matches(class_id, t); });
+    case SlotTest::Op::kNot:
+      return !empty && !Matches(class_id, test.args[0]);
   }
   return false;
 }

@@ -75,7 +75,7 @@ class Decoder {
   struct PartInfo {
     const LetterPart* part;
     std::vector<int> daughters;
-    int object;      // union-find parent
+    int object;  // union-find parent
     bool floating;
   };
 
@@ -192,8 +192,7 @@ std::size_t Hash(const LetterPart& part) {
 }
 
 std::size_t Hash(const Letter& letter) {
-  return Mix(Mix(static_cast<std::size_t>(letter.kind), static_cast<std::size_t>(letter.boundary)),
-             Hash(letter.part));
+  return Mix(Mix(static_cast<std::size_t>(letter.kind), static_cast<std::size_t>(letter.boundary)), Hash(letter.part));
 }
 
 int LinkBit(const Tree& tree, NodeId node) {

@@ -34,8 +34,7 @@ void Checker::Run() {
     }
   }
   if (file_.tops.empty() && file_.unsupported.empty()) {
-    Error(Kind::kBadTree, whole_, "the grammar is empty",
-          "it needs at least a `tree`, `segments` and a `rule`");
+    Error(Kind::kBadTree, whole_, "the grammar is empty", "it needs at least a `tree`, `segments` and a `rule`");
     return;
   }
   CheckTree();
@@ -70,8 +69,7 @@ void PassOnUnsupported(const syntax::File& file, Diagnostics& diagnostics) {
   for (const syntax::Unsupported& construct : file.unsupported) pass(construct);
 }
 
-std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources,
-                              Diagnostics& diagnostics) {
+std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
   const auto errors = [&] {
     int count = 0;
     for (const Diagnostic& d : diagnostics.all()) count += d.severity == Severity::kError ? 1 : 0;
@@ -105,8 +103,7 @@ std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_
 }
 
 std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
-                                         const std::shared_ptr<SourceMap>& sources,
-                                         Diagnostics& diagnostics) {
+                                         const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
   return Load(sources->Add(path, text), sources, diagnostics);
 }
 

@@ -41,9 +41,7 @@ class Checker {
   std::vector<std::string> NodeNames() const;
   // A node by name, or an error of kind `kind` at the name.
   std::optional<NodeId> NodeOf(const syntax::Name& name, Kind kind);
-  bool IsSlotBorne(NodeId node) const {
-    return node != kSlotNode && !grammar_.tree.Dominates(kRootNode, node);
-  }
+  bool IsSlotBorne(NodeId node) const { return node != kSlotNode && !grammar_.tree.Dominates(kRootNode, node); }
 
   // ---- check_sets.cc
   std::optional<SlotTest> ResolveSet(const syntax::Set& set);
@@ -76,13 +74,10 @@ class Checker {
   void CheckInventory();
   void CollectEntries();
   void AddEntry(const syntax::SegmentEntry& entry, const syntax::Segments& block);
-  bool IsFull(const Entry& entry) const {
-    return entry.entry->like || entry.entry->bundle || entry.block->added;
-  }
+  bool IsFull(const Entry& entry) const { return entry.entry->like || entry.entry->bundle || entry.block->added; }
   void BuildTrees();
   bool Build(std::size_t id);
-  const FeatureTree* FromLibrary(const syntax::Name& symbol, const syntax::Segments& block,
-                                 FeatureTree* content);
+  const FeatureTree* FromLibrary(const syntax::Name& symbol, const syntax::Segments& block, FeatureTree* content);
   Library* LibraryOf(const syntax::Name* name, Span span);
   void Apply(const std::vector<Setting>& settings, FeatureTree* root);
   bool HasRoom(const FeatureTree& root, NodeId* full) const;
@@ -90,8 +85,7 @@ class Checker {
   void TakeWithout();
   bool SymbolPasses(const SlotTest& test, int symbol) const;
   // The node and values a line of `without` or `omit` lists; empty after an error.
-  std::vector<std::pair<NodeId, Value>> ResolveValues(const syntax::ValueRef& ref, Span span,
-                                                      const char* verb);
+  std::vector<std::pair<NodeId, Value>> ResolveValues(const syntax::ValueRef& ref, Span span, const char* verb);
   void CheckDiacritics();
   bool MayBear(const FeatureTree& content, const Sign& sign) const;
   void BuildComposites();

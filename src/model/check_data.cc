@@ -26,9 +26,8 @@ std::vector<Cell> CellsOf(std::string_view line, std::uint32_t file, std::size_t
     std::size_t first = begin, last = stop;
     while (first < last && line[first] == ' ') ++first;
     while (last > first && line[last - 1] == ' ') --last;
-    cells.push_back(
-        {std::string(line.substr(first, last - first)),
-         {file, static_cast<std::uint32_t>(offset + first), static_cast<std::uint32_t>(offset + last)}});
+    cells.push_back({std::string(line.substr(first, last - first)),
+                     {file, static_cast<std::uint32_t>(offset + first), static_cast<std::uint32_t>(offset + last)}});
     if (end == std::string_view::npos) return cells;
     begin = end + 1;
   }
@@ -59,8 +58,8 @@ std::optional<std::size_t> ColumnOf(const std::vector<Cell>& heading, std::strin
 }
 
 // One row, or nothing after an error.
-std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector<Cell>& cells,
-                             std::size_t line, Span line_span, Diagnostics& diagnostics) {
+std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector<Cell>& cells, std::size_t line,
+                             Span line_span, Diagnostics& diagnostics) {
   if (cells.size() != heading.size()) {
     diagnostics.Error(Kind::kBadData, line_span,
                       "line " + std::to_string(line) + " has " + std::to_string(cells.size()) +
@@ -78,8 +77,8 @@ std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector
     return std::nullopt;
   }
   if (surface.text[0] == '*') {
-    diagnostics.Error(Kind::kNotSupportedYet, surface.span,
-                      "starred surface forms are not supported by this release", "take the row out");
+    diagnostics.Error(Kind::kNotSupportedYet, surface.span, "starred surface forms are not supported by this release",
+                      "take the row out");
     return std::nullopt;
   }
   DataRow row;
@@ -96,8 +95,7 @@ std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector
 
 }  // namespace
 
-std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from,
-                              Diagnostics& diagnostics) {
+std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics) {
   std::vector<DataRow> rows;
   std::uint32_t file = 0;
   if (!sources.Load(path, from, diagnostics, &file)) return rows;
@@ -113,8 +111,7 @@ std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span 
     begin = end + 1;
     ++number;
     if (line.empty()) continue;
-    const Span line_span{file, static_cast<std::uint32_t>(offset),
-                         static_cast<std::uint32_t>(offset + line.size())};
+    const Span line_span{file, static_cast<std::uint32_t>(offset), static_cast<std::uint32_t>(offset + line.size())};
     std::vector<Cell> cells = CellsOf(line, file, offset);
     if (!heading.empty()) {
       if (std::optional<DataRow> row = RowOf(heading, cells, number, line_span, diagnostics))
@@ -130,9 +127,8 @@ std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span 
     }
     for (const char* wanted : {"underlying", "surface"}) {
       if (ColumnOf(heading, wanted)) continue;
-      diagnostics.Error(
-          Kind::kBadData, line_span, std::string("the heading names no column '") + wanted + "'",
-          "name the columns in the first line, parted by tabs: underlying, surface, gloss, source");
+      diagnostics.Error(Kind::kBadData, line_span, std::string("the heading names no column '") + wanted + "'",
+                        "name the columns in the first line, parted by tabs: underlying, surface, gloss, source");
       return rows;
     }
   }
@@ -167,8 +163,7 @@ void Checker::LoadDataFiles() {
     } else if (const auto* from = std::get_if<syntax::DataFrom>(&top)) {
       const std::filesystem::path path(from->path.text);
       if (path.extension() == ".csv") {
-        Error(Kind::kNotSupportedYet, from->path.span,
-              "tables parted by commas are not supported by this release",
+        Error(Kind::kNotSupportedYet, from->path.span, "tables parted by commas are not supported by this release",
               "give a table parted by tabs (.tsv)");
         continue;
       }
@@ -188,8 +183,7 @@ void Checker::CheckForm(std::string_view text, Span span, bool underlying, const
   if (reader.Read(text, underlying ? Reader::Side::kUnderlying : Reader::Side::kSurface, &tokens, &error)) {
     const bool any = std::any_of(tokens.begin(), tokens.end(),
                                  [](const Token& token) { return token.kind == Token::Kind::kSymbol; });
-    if (!any && underlying)
-      Error(Kind::kBadForm, span, "the form has no segment", "write at least one symbol");
+    if (!any && underlying) Error(Kind::kBadForm, span, "the form has no segment", "write at least one symbol");
     return;
   }
   const auto same = std::find_if(unread->begin(), unread->end(),
@@ -215,9 +209,8 @@ void Checker::CheckData() {
   }
   for (Unread& u : unread) {
     if (u.further > 0)
-      u.diagnostic.message +=
-          " (" + std::to_string(u.further) +
-          (u.further == 1 ? " further form has the same)" : " further forms have the same)");
+      u.diagnostic.message += " (" + std::to_string(u.further) +
+                              (u.further == 1 ? " further form has the same)" : " further forms have the same)");
     diagnostics_.Add(std::move(u.diagnostic));
   }
 }

@@ -48,8 +48,7 @@ Symbol::Kind KindOf(const syntax::Segments& block) {
 // The first code point that no symbol may hold, or 0.
 char32_t BadIn(std::u32string_view symbol) {
   for (const char32_t code : symbol) {
-    if (std::u32string_view(U" \t-=#.\u2016|@{}[]/\u27E8\u27E9\";\u02D0").find(code) !=
-        std::u32string_view::npos)
+    if (std::u32string_view(U" \t-=#.\u2016|@{}[]/\u27E8\u27E9\";\u02D0").find(code) != std::u32string_view::npos)
       return code;
   }
   return 0;
@@ -84,8 +83,7 @@ void Checker::CollectEntries() {
   }
   if (any) return;
   for (const Diagnostic& diagnostic : diagnostics_.all()) {
-    if (diagnostic.kind == Kind::kBadTree && diagnostic.span.begin == whole_.begin &&
-        diagnostic.span.end == whole_.end)
+    if (diagnostic.kind == Kind::kBadTree && diagnostic.span.begin == whole_.begin && diagnostic.span.end == whole_.end)
       return;
   }
   Error(Kind::kUnknownSymbol, whole_, "the grammar lists no segments",
@@ -96,8 +94,7 @@ void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segmen
   Inventory& inventory = grammar_.inventory;
   const std::u32string normal = Normalise(written.symbol.text);
   if (normal.empty() || BadIn(normal) != 0) {
-    const std::string which =
-        normal.empty() ? "an empty name" : "'" + ToUtf8(std::u32string(1, BadIn(normal))) + "'";
+    const std::string which = normal.empty() ? "an empty name" : "'" + ToUtf8(std::u32string(1, BadIn(normal))) + "'";
     Error(Kind::kBadForm, written.symbol.span,
           "'" + written.symbol.text + "' cannot be a symbol: " + which + " is no part of one",
           "length, boundaries and brackets have meanings of their own in forms; choose another sign");
@@ -125,16 +122,11 @@ void Checker::AddEntry(const syntax::SegmentEntry& written, const syntax::Segmen
   Entry& old = entries_[static_cast<std::size_t>(found->second)];
   Symbol& symbol = inventory.symbols[static_cast<std::size_t>(found->second)];
   const auto twice = [&](Severity severity, const std::string& message, const std::string& remedy) {
-    diagnostics_.Add({Kind::kDuplicate,
-                      severity,
-                      written.symbol.span,
-                      message,
-                      remedy,
-                      {{symbol.span, "first listed here"}}});
+    diagnostics_.Add(
+        {Kind::kDuplicate, severity, written.symbol.span, message, remedy, {{symbol.span, "first listed here"}}});
   };
   if (symbol.kind != kind) {
-    twice(Severity::kError,
-          "'" + text + "' is listed in " + KindName(symbol.kind) + " and in " + KindName(kind),
+    twice(Severity::kError, "'" + text + "' is listed in " + KindName(symbol.kind) + " and in " + KindName(kind),
           "keep one of the two");
   } else if (IsFull(old) && IsFull(entry)) {
     twice(Severity::kError, "'" + text + "' is defined twice", "keep one of the two");
@@ -220,8 +212,7 @@ bool Checker::Build(std::size_t id) {
     case Entry::State::kFailed:
       return false;
     case Entry::State::kBusy:
-      Error(Kind::kUnknownSymbol, written.symbol.span,
-            "'" + written.symbol.text + "' is told by way of itself",
+      Error(Kind::kUnknownSymbol, written.symbol.span, "'" + written.symbol.text + "' is told by way of itself",
             "make one symbol of this ring like one of the library's");
       return false;
     case Entry::State::kNew:
@@ -253,10 +244,9 @@ bool Checker::Build(std::size_t id) {
     Apply(settings, &content);
     NodeId full = 0;
     if (good && !HasRoom(content, &full)) {
-      Error(
-          Kind::kBadValue, (*bundle)->span,
-          "'" + written.symbol.text + "' has no room for two of '" + grammar_.tree[full].name + "'",
-          "give the values one by one, or widen `in [..]` after " + grammar_.tree[full].name + " in `tree`");
+      Error(Kind::kBadValue, (*bundle)->span,
+            "'" + written.symbol.text + "' has no room for two of '" + grammar_.tree[full].name + "'",
+            "give the values one by one, or widen `in [..]` after " + grammar_.tree[full].name + " in `tree`");
       good = false;
     }
   }
@@ -278,21 +268,18 @@ void Checker::BuildTrees() {
 
 bool Checker::SymbolPasses(const SlotTest& test, int symbol) const {
   const Inventory& inventory = grammar_.inventory;
-  return Passes(test, inventory.symbols[static_cast<std::size_t>(symbol)].full, [&](int literal) {
-    return inventory.literals[static_cast<std::size_t>(literal)].symbol == symbol;
-  });
+  return Passes(test, inventory.symbols[static_cast<std::size_t>(symbol)].full,
+                [&](int literal) { return inventory.literals[static_cast<std::size_t>(literal)].symbol == symbol; });
 }
 
-std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::ValueRef& ref, Span span,
-                                                             const char* verb) {
+std::vector<std::pair<NodeId, Value>> Checker::ResolveValues(const syntax::ValueRef& ref, Span span, const char* verb) {
   const Span place = ref.name.span.end > ref.name.span.begin ? ref.name.span : span;
   const std::optional<NodeId> node = NodeOf(syntax::Name{ref.name.text, place}, Kind::kUnknownFeature);
   if (!node) return {};
   const TreeNode& kind = grammar_.tree[*node];
   switch (kind.type) {
     case TreeNode::Type::kClass:
-      Error(Kind::kBadValue, place,
-            std::string("`") + verb + "` takes values, and '" + kind.name + "' is a class node",
+      Error(Kind::kBadValue, place, std::string("`") + verb + "` takes values, and '" + kind.name + "' is a class node",
             "list the features under it");
       return {};
     case TreeNode::Type::kBinary:
@@ -365,8 +352,7 @@ void Checker::CheckDiacritics() {
       const std::size_t circle = text.find(kCircle);
       if (circle == std::u32string::npos) {
         Error(Kind::kNotSupportedYet, written.symbol.span,
-              "'" + written.symbol.text +
-                  "' has no ◌: signs of floating instances are not supported by this release",
+              "'" + written.symbol.text + "' has no ◌: signs of floating instances are not supported by this release",
               "write ◌ where the base letter stands: ◌" + written.symbol.text);
         continue;
       }
@@ -481,8 +467,7 @@ void Checker::BuildComposites() {
   for (int mark = 0; mark < marks; ++mark) {
     for (int base = 0; base < bases; ++base) AddComposite(base, {mark});
   }
-  if (static_cast<std::size_t>(bases) * static_cast<std::size_t>(marks) * static_cast<std::size_t>(marks) /
-          2 >
+  if (static_cast<std::size_t>(bases) * static_cast<std::size_t>(marks) * static_cast<std::size_t>(marks) / 2 >
       kMostComposites) {
     diagnostics_.Warning(Kind::kLimit, inventory.marks[0].span,
                          "so many diacritics make too many pairs: only single ones are symbols of themselves",
@@ -500,8 +485,7 @@ void Checker::BuildComposites() {
 void Checker::AddWrittenComposites() {
   if (signs_.size() < 3) return;
   SymbolTrie listed;
-  for (std::size_t i = 0; i < entries_.size(); ++i)
-    listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
+  for (std::size_t i = 0; i < entries_.size(); ++i) listed.Add(grammar_.inventory.symbols[i].text, static_cast<int>(i));
   const auto in_set = [&](const auto& self, const syntax::Set& set) -> void {
     if (set.kind == syntax::Set::Kind::kLiteral) AddCompositesOf(set.literal.raw, listed);
     for (const syntax::Set& arg : set.args) self(self, arg);
@@ -574,8 +558,7 @@ void Checker::CheckOmit() {
               inventory.omitted.begin(), inventory.omitted.end(),
               [n = node, v = value](const Inventory::OmitEntry& e) { return e.node == n && e.value == v; });
           if (entry == inventory.omitted.end()) {
-            entry = inventory.omitted.insert(
-                entry, {node, value, std::vector<bool>(inventory.symbols.size(), false)});
+            entry = inventory.omitted.insert(entry, {node, value, std::vector<bool>(inventory.symbols.size(), false)});
           }
           for (std::size_t id = 0; id < inventory.symbols.size(); ++id) {
             if (SymbolPasses(*test, static_cast<int>(id))) entry->takes[id] = true;
@@ -592,8 +575,8 @@ void Checker::CheckOmit() {
         self(self, &daughters[i], node, value);
         continue;
       }
-      const bool contour = (i > 0 && daughters[i - 1].node == node) ||
-                           (i + 1 < daughters.size() && daughters[i + 1].node == node);
+      const bool contour =
+          (i > 0 && daughters[i - 1].node == node) || (i + 1 < daughters.size() && daughters[i + 1].node == node);
       if (contour || daughters[i].value != value) continue;
       daughters.erase(daughters.begin() + static_cast<std::ptrdiff_t>(i));
       return;
@@ -621,13 +604,11 @@ void Checker::CheckFallTogether() {
     const auto [by_full, first] = full.emplace(symbol.full, static_cast<int>(i));
     const auto [by_underlying, first_underlying] = underlying.emplace(symbol.underlying, static_cast<int>(i));
     if (first && first_underlying) continue;
-    const Symbol& other =
-        inventory.symbols[static_cast<std::size_t>(first ? by_underlying->second : by_full->second)];
+    const Symbol& other = inventory.symbols[static_cast<std::size_t>(first ? by_underlying->second : by_full->second)];
     const std::string why = first ? "once `omit` has taken its part" : "in this tree";
-    const std::string remedy = first
-                                   ? "let `omit` leave them a difference"
-                                   : "give one of them a value of its own, `" + symbol.text + " = " +
-                                         symbol.text + " [..]`, or the tree a feature that tells them apart";
+    const std::string remedy = first ? "let `omit` leave them a difference"
+                                     : "give one of them a value of its own, `" + symbol.text + " = " + symbol.text +
+                                           " [..]`, or the tree a feature that tells them apart";
     diagnostics_.Add({Kind::kSymbolsFallTogether,
                       Severity::kError,
                       symbol.span,
@@ -650,8 +631,7 @@ void Checker::CheckUnspecified() {
     if (known) continue;
     diagnostics_.Warning(
         Kind::kUnspecifiedFeature, kind.span,
-        "the library does not know '" + kind.name +
-            "', and no line of `segments` gives it: no segment bears it",
+        "the library does not know '" + kind.name + "', and no line of `segments` gives it: no segment bears it",
         Or(DidYouMean(kind.name, libraries_.begin()->second.Features()),
            "give it to the segments that bear it: `x = x [" + tree.ValueName(node, 1) + "]`"));
   }

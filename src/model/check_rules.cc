@@ -33,8 +33,7 @@ Boundary BoundaryOf(SyntaxItem::Boundary boundary) {
 // The class an item consists of, or "".
 std::string ClassOf(const SyntaxItem& item) {
   if (item.kind == SyntaxItem::Kind::kName) return item.name.text;
-  if (item.kind == SyntaxItem::Kind::kSet && item.set.kind == syntax::Set::Kind::kClass)
-    return item.set.name.text;
+  if (item.kind == SyntaxItem::Kind::kSet && item.set.kind == syntax::Set::Kind::kClass) return item.set.name.text;
   return "";
 }
 
@@ -48,9 +47,7 @@ bool NamesLabel(const Pattern& pattern) {
   });
 }
 
-bool MovesLines(const Change& change) {
-  return change.op == Change::Op::kSpread || change.op == Change::Op::kDelink;
-}
+bool MovesLines(const Change& change) { return change.op == Change::Op::kSpread || change.op == Change::Op::kDelink; }
 
 // The nodes a change is about, of those that are already there.
 std::vector<NodeId> ChangedNodes(const Change& change) {
@@ -154,8 +151,7 @@ void Checker::CheckRule(const syntax::Rule& written) {
     good = false;
   }
   bool changes_good = true;
-  for (const syntax::Change& change : written.changes)
-    changes_good = ResolveChange(change, &context) && changes_good;
+  for (const syntax::Change& change : written.changes) changes_good = ResolveChange(change, &context) && changes_good;
   if (good && changes_good) CheckChanges(written, rule);
   grammar_.rules.push_back(std::move(rule));
 }
@@ -277,8 +273,7 @@ bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleCo
                "in `unless` only labels of the `where` mean something; take it away");
   }
   if (!context->expanding.empty()) {
-    return bad("a named pattern has no labels inside",
-               "take the label away, or write the pattern out in the rule");
+    return bad("a named pattern has no labels inside", "take the label away, or write the pattern out in the rule");
   }
   if (known != context->own_labels.end()) {
     return bad("label '" + label.text + "' is used twice", "give each item a label of its own");
@@ -288,9 +283,8 @@ bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleCo
                "choose a label that no class has");
   }
   if (!Once(item) || context->repeated) {
-    return bad(
-        "label '" + label.text + "' stands inside a repeated group: it could be several slots, or none",
-        "label an item outside, or write the items one by one");
+    return bad("label '" + label.text + "' stands inside a repeated group: it could be several slots, or none",
+               "label an item outside, or write the items one by one");
   }
   if (context->alternative) {
     return bad("label '" + label.text + "' stands in one of several alternatives only",
@@ -327,10 +321,9 @@ bool Checker::ResolveSetItem(const SyntaxItem& item, RuleContext* context, Patte
     return good;
   }
   if (item.label) {
-    Error(
-        Kind::kBadRule, item.label->span,
-        "/" + item.set.literal.raw + "/ is " + std::to_string(symbols->size()) + " items and takes no label",
-        "write the symbols one by one and label the one you mean");
+    Error(Kind::kBadRule, item.label->span,
+          "/" + item.set.literal.raw + "/ is " + std::to_string(symbols->size()) + " items and takes no label",
+          "write the symbols one by one and label the one you mean");
     return false;
   }
   Pattern several;
@@ -411,8 +404,8 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
   slot.test = std::move(*test);
   const auto mentions = context->mentions.find(name);
   const bool own = !context->in_unless && mentions != context->mentions.end() && mentions->second == 1 &&
-                   context->used.count(name) != 0 && context->own_labels.count(name) == 0 &&
-                   !context->repeated && !context->alternative && Once(item);
+                   context->used.count(name) != 0 && context->own_labels.count(name) == 0 && !context->repeated &&
+                   !context->alternative && Once(item);
   if (own) {
     slot.label = static_cast<int>(context->rule->labels.size());
     context->rule->labels.push_back(name);
@@ -451,13 +444,11 @@ bool Checker::ResolveGroup(const SyntaxItem& item, RuleContext* context, Pattern
   PatternItem slot;
   if (is_set) {
     slot.test.op = SlotTest::Op::kOr;
-    for (Pattern& alternative : group.alternatives)
-      slot.test.args.push_back(std::move(alternative.items[0].test));
+    for (Pattern& alternative : group.alternatives) slot.test.args.push_back(std::move(alternative.items[0].test));
   }
   if (item.label) {
     if (!is_set) {
-      Error(Kind::kBadRule, item.label->span,
-            "a label covers one slot, and this group is not a set of single items",
+      Error(Kind::kBadRule, item.label->span, "a label covers one slot, and this group is not a set of single items",
             "label the item you mean");
       return false;
     }
@@ -492,23 +483,21 @@ bool Checker::CheckShape(const Pattern& pattern, const syntax::Pattern& written,
         const auto gap = std::find_if(written.items.begin(), written.items.end(),
                                       [](const SyntaxItem& w) { return w.kind == SyntaxItem::Kind::kGap; });
         Error(Kind::kBadRule, gap != written.items.end() ? gap->span : written.span,
-              "a gap stands between two single slots",
-              "write one item without a quantity before it and one after it");
+              "a gap stands between two single slots", "write one item without a quantity before it and one after it");
         good = false;
       }
     }
-    const bool inner = i > 0 && i + 1 < pattern.items.size() && may_be_slot(pattern.items[i - 1]) &&
-                       may_be_slot(pattern.items[i + 1]);
+    const bool inner =
+        i > 0 && i + 1 < pattern.items.size() && may_be_slot(pattern.items[i - 1]) && may_be_slot(pattern.items[i + 1]);
     const auto one_slot = [](const PatternItem& other) { return other.kind == PatternItem::Kind::kSlot; };
     if (item.kind == PatternItem::Kind::kBoundary && item.boundary >= Boundary::kWord && inner &&
         one_slot(pattern.items[i - 1]) && one_slot(pattern.items[i + 1])) {
       const auto place = std::find_if(written.items.begin(), written.items.end(), [&](const SyntaxItem& w) {
         return w.kind == SyntaxItem::Kind::kBoundary && BoundaryOf(w.boundary) == item.boundary;
       });
-      diagnostics_.Warning(
-          Kind::kNeverApplies, place != written.items.end() ? place->span : written.span,
-          "this never matches: a rule stays within the word, and this boundary is the edge of one",
-          "put the boundary at an end of the pattern, or take it out");
+      diagnostics_.Warning(Kind::kNeverApplies, place != written.items.end() ? place->span : written.span,
+                           "this never matches: a rule stays within the word, and this boundary is the edge of one",
+                           "put the boundary at an end of the pattern, or take it out");
     }
   }
   return good;
@@ -521,8 +510,7 @@ std::optional<int> Checker::LabelOf(const syntax::Name& name, const RuleContext&
   if (found != context.own_labels.end()) return found->second;
   if (context.inserted.count(name.text) != 0) {
     Error(Kind::kNotSupportedYet, name.span,
-          "'" + name.text +
-              "' is inserted by this rule; changing it in the same rule is not supported by this release",
+          "'" + name.text + "' is inserted by this rule; changing it in the same rule is not supported by this release",
           "insert it with that content, or write a second rule");
     return std::nullopt;
   }
@@ -603,8 +591,7 @@ bool Checker::ResolveLine(const syntax::Change& change, RuleContext* context) {
       continue;
     }
     if (spread && target && *label == *target) {
-      Error(Kind::kBadRule, path.span, "'" + path.label.text + "' spreads to itself",
-            "spread to another item");
+      Error(Kind::kBadRule, path.span, "'" + path.label.text + "' spreads to itself", "spread to another item");
       good = false;
       continue;
     }
@@ -629,8 +616,7 @@ bool Checker::ResolveContent(const syntax::Change& change, RuleContext* context)
   if (!good) return false;
   result.target = *label;
   if (result.settings.empty()) {
-    Error(Kind::kBadRule, change.span,
-          std::string(fill ? "`fill`" : "`set`") + " with an empty bundle changes nothing",
+    Error(Kind::kBadRule, change.span, std::string(fill ? "`fill`" : "`set`") + " with an empty bundle changes nothing",
           "name the features: [+f]");
     return false;
   }
@@ -648,23 +634,20 @@ bool Checker::ResolveContent(const syntax::Change& change, RuleContext* context)
     // [Labial round]: the Labial comes along with the round under it.
     return tree[setting.node].type == TreeNode::Type::kClass && !setting.values.empty() &&
            std::any_of(all.begin(), all.end(), [&](const Setting& other) {
-             return other.node != setting.node && !other.values.empty() &&
-                    tree.Dominates(setting.node, other.node);
+             return other.node != setting.node && !other.values.empty() && tree.Dominates(setting.node, other.node);
            });
   };
   for (const Setting& above : all) {
     for (const Setting& below : all) {
-      if (!above.values.empty() || above.node == below.node || !tree.Dominates(above.node, below.node))
-        continue;
+      if (!above.values.empty() || above.node == below.node || !tree.Dominates(above.node, below.node)) continue;
       Error(Kind::kBadRule, change.bundle.span,
-            "the bundle takes '" + tree[above.node].name + "' away and says something of '" +
-                tree[below.node].name + "' under it",
+            "the bundle takes '" + tree[above.node].name + "' away and says something of '" + tree[below.node].name +
+                "' under it",
             "write two rules, or name the features to take away one by one");
       good = false;
     }
   }
-  result.settings.erase(std::remove_if(result.settings.begin(), result.settings.end(), covered),
-                        result.settings.end());
+  result.settings.erase(std::remove_if(result.settings.begin(), result.settings.end(), covered), result.settings.end());
   if (good) context->rule->changes.push_back(std::move(result));
   return good;
 }
@@ -687,8 +670,8 @@ bool Checker::ResolveInsert(const syntax::Change& change, RuleContext* context) 
       const std::optional<std::vector<int>> symbols = SymbolsOf(change.content.literal);
       if (!symbols) return false;
       if (symbols->size() != 1) {
-        Error(Kind::kBadRule, change.content.literal.span,
-              "/" + change.content.literal.raw + "/ is no single symbol", "insert one symbol at a time");
+        Error(Kind::kBadRule, change.content.literal.span, "/" + change.content.literal.raw + "/ is no single symbol",
+              "insert one symbol at a time");
         return false;
       }
       result.inserted = grammar_.inventory.symbols[static_cast<std::size_t>((*symbols)[0])].underlying;
@@ -769,13 +752,13 @@ bool Checker::CheckBesideTaken(const Rule& rule, const Change& taking) {
     for (const Change& other : rule.changes) {
       for (const NodeId node : ChangedNodes(other)) {
         if (node == taken.node || !tree.Dominates(taken.node, node)) continue;
-        diagnostics_.Add({Kind::kBadRule,
-                          Severity::kError,
-                          other.span,
-                          "this rule takes '" + tree[taken.node].name + "' away and changes '" + tree[node].name +
-                              "' under it",
-                          "write two rules, one after the other",
-                          {{taking.span, "'" + tree[taken.node].name + "' is taken away here"}}});
+        diagnostics_.Add(
+            {Kind::kBadRule,
+             Severity::kError,
+             other.span,
+             "this rule takes '" + tree[taken.node].name + "' away and changes '" + tree[node].name + "' under it",
+             "write two rules, one after the other",
+             {{taking.span, "'" + tree[taken.node].name + "' is taken away here"}}});
         return false;
       }
     }

@@ -23,8 +23,7 @@ std::optional<Value> Checker::ValueOf(const TreeNode& node, const syntax::Name& 
   if (found != node.values.end()) return static_cast<Value>(found - node.values.begin());
   std::string all;
   for (const std::string& v : node.values) all += (all.empty() ? "" : " ") + v;
-  Error(Kind::kBadValue, value.span, "'" + node.name + "' has no value '" + value.text + "'",
-        "its values are: " + all);
+  Error(Kind::kBadValue, value.span, "'" + node.name + "' has no value '" + value.text + "'", "its values are: " + all);
   return std::nullopt;
 }
 
@@ -71,13 +70,11 @@ std::optional<FeatureTest> Checker::ResolveFeature(const syntax::Feat& feat) {
       [[fallthrough]];
     case syntax::Feat::Kind::kValue: {
       if (kind.type != TreeNode::Type::kMany) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon",
-              HowToWrite(kind));
+        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
         return std::nullopt;
       }
       if (feat.values.size() != 1) {
-        Error(Kind::kNotSupportedYet, feat.span,
-              "a list of values in a test is not supported by this release",
+        Error(Kind::kNotSupportedYet, feat.span, "a list of values in a test is not supported by this release",
               "name one value: `" + kind.name + ":" + kind.values[0] + "`");
         return std::nullopt;
       }
@@ -125,12 +122,11 @@ void Checker::WarnContradictions(const std::vector<FeatureTest>& tests, Span spa
       } else if (b.kind == FeatureTest::Kind::kLacksValue && a.kind == FeatureTest::Kind::kHasValue &&
                  a.node == b.node && a.value == b.value) {
         why = "'" + name(a) + "' and 'no " + name(a) + "'";
-      } else if (&a < &b && a.kind == FeatureTest::Kind::kHasValue &&
-                 b.kind == FeatureTest::Kind::kHasValue && a.node == b.node && a.value != b.value) {
+      } else if (&a < &b && a.kind == FeatureTest::Kind::kHasValue && b.kind == FeatureTest::Kind::kHasValue &&
+                 a.node == b.node && a.value != b.value) {
         // Two values are a contour where one mother, or one of several mothers, has the room.
         bool room = false;
-        for (NodeId above = a.node; above > kRootNode; above = tree[above].mother)
-          room = room || tree[above].max > 1;
+        for (NodeId above = a.node; above > kRootNode; above = tree[above].mother) room = room || tree[above].max > 1;
         if (!room) why = "'" + name(a) + "' and '" + name(b) + "'";
       }
       if (why.empty()) continue;
@@ -148,8 +144,7 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
   if (!node) return false;
   const TreeNode& kind = grammar_.tree[*node];
   if (*node <= kRootNode) {
-    Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is no content to give",
-          "name the features under it");
+    Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is no content to give", "name the features under it");
     return false;
   }
   if (IsSlotBorne(*node)) {
@@ -177,15 +172,13 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
       break;
     case syntax::Feat::Kind::kNo:
       if (!feat.values.empty()) {
-        Error(Kind::kBadValue, feat.span, "`no` takes a node away with all its values",
-              "write `no " + kind.name + "`");
+        Error(Kind::kBadValue, feat.span, "`no` takes a node away with all its values", "write `no " + kind.name + "`");
         return false;
       }
       break;
     case syntax::Feat::Kind::kValue:
       if (kind.type != TreeNode::Type::kMany) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon",
-              HowToWrite(kind));
+        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
         return false;
       }
       for (const syntax::Name& name : feat.values) {
@@ -195,8 +188,7 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
       }
       break;
   }
-  auto place =
-      std::find_if(settings->begin(), settings->end(), [&](const Setting& s) { return s.node == *node; });
+  auto place = std::find_if(settings->begin(), settings->end(), [&](const Setting& s) { return s.node == *node; });
   if (place == settings->end()) {
     place = settings->insert(place, {*node, std::move(values)});
   } else if (!continues || values.empty() || place->values.empty() || kind.type == TreeNode::Type::kClass) {
@@ -217,8 +209,7 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
   if (static_cast<int>(now.values.size()) > kind.max) {
     Error(Kind::kBadValue, feat.span,
           "one mother holds at most " + std::to_string(kind.max) + " of '" + kind.name + "'",
-          "write ×" + std::to_string(now.values.size()) + " after " + kind.name +
-              " in `tree`, or take a value out");
+          "write ×" + std::to_string(now.values.size()) + " after " + kind.name + " in `tree`, or take a value out");
     return false;
   }
   return true;
@@ -268,8 +259,7 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
     span.end = literal.span.begin + unit.end;
     const std::string shown = literal.raw.substr(unit.begin, unit.end - unit.begin);
     if (unit.code == kLengthSign && !symbols.empty()) {
-      Error(Kind::kBadRule, span,
-            "a literal stands for one slot each symbol; ː writes a second slot of the same root",
+      Error(Kind::kBadRule, span, "a literal stands for one slot each symbol; ː writes a second slot of the same root",
             "write two items, or test length with other means; a literal accepts a root however long it is");
     } else if (shown == "-" || shown == "=" || shown == "#" || shown == " " || shown == "‖") {
       Error(Kind::kBadRule, span, "a boundary does not stand inside a literal",
@@ -296,8 +286,7 @@ std::optional<SlotTest> Checker::ResolveClass(const syntax::Name& name) {
   if (found == classes_.end()) {
     if (SaidOften("class " + name.text)) return std::nullopt;
     std::string remedy = DidYouMean(name.text, ClassNames());
-    if (patterns_.count(name.text) != 0)
-      remedy = "it is a named pattern, which stands only as an item of its own; ";
+    if (patterns_.count(name.text) != 0) remedy = "it is a named pattern, which stands only as an item of its own; ";
     if (grammar_.tree.Find(name.text)) remedy = "a feature stands in brackets: [" + name.text + "]; ";
     if (grammar_.inventory.Find(name.text)) remedy = "a symbol stands between slashes: /" + name.text + "/; ";
     Error(Kind::kUnknownClass, name.span, "there is no class '" + name.text + "'",
@@ -329,8 +318,7 @@ std::optional<SlotTest> Checker::ResolveSet(const syntax::Set& set) {
       if (!symbols) return std::nullopt;
       if (symbols->size() != 1) {
         Error(Kind::kBadRule, set.literal.span,
-              "/" + set.literal.raw + "/ is " + std::to_string(symbols->size()) +
-                  " symbols; one is wanted here",
+              "/" + set.literal.raw + "/ is " + std::to_string(symbols->size()) + " symbols; one is wanted here",
               "list it as one symbol in `segments`, or write the symbols one by one");
         return std::nullopt;
       }

@@ -58,8 +58,7 @@ class TreeBuilder {
   void Hang(const std::string& mother, const syntax::Name& name, const syntax::Daughter* daughter) {
     if (name.text == "slot" || name.text == "root") {
       if (mother == "slot" && name.text == "root" && daughter == nullptr) return;
-      Add(Kind::kBadTree, name.span,
-          "'" + name.text + "' hangs from nothing: slot stands above root in every tree",
+      Add(Kind::kBadTree, name.span, "'" + name.text + "' hangs from nothing: slot stands above root in every tree",
           "give the node another name");
       return;
     }
@@ -77,8 +76,7 @@ class TreeBuilder {
   void HangAgain(const std::string& mother, const syntax::Name& name, const syntax::Daughter* daughter,
                  Declared* node) {
     if (node->mother != mother) {
-      Add(Kind::kNotSupportedYet, name.span,
-          "'" + name.text + "' has two mothers, " + node->mother + " and " + mother,
+      Add(Kind::kNotSupportedYet, name.span, "'" + name.text + "' has two mothers, " + node->mother + " and " + mother,
           "this release takes one mother a node: give the two nodes different names",
           {{node->span, "first hung here"}});
     } else if (daughter != nullptr && node->daughter != nullptr) {
@@ -114,8 +112,7 @@ class TreeBuilder {
     const Declared& node = declared_[name];
     if (tree_.nodes.size() == kMostNodes) {
       if (!too_many_) {
-        Add(Kind::kLimit, node.span, "a tree has at most " + std::to_string(kMostNodes) + " nodes",
-            "leave some out");
+        Add(Kind::kLimit, node.span, "a tree has at most " + std::to_string(kMostNodes) + " nodes", "leave some out");
       }
       too_many_ = true;
       return;
@@ -168,8 +165,8 @@ class TreeBuilder {
     std::set<std::string> seen;
     for (const syntax::Name& value : daughter.values) {
       if (!seen.insert(value.text).second) {
-        Add(Kind::kDuplicate, value.span,
-            "'" + value.text + "' stands twice among the values of " + made->name, "take one away");
+        Add(Kind::kDuplicate, value.span, "'" + value.text + "' stands twice among the values of " + made->name,
+            "take one away");
       }
       made->values.push_back(value.text);
     }
@@ -212,14 +209,12 @@ std::optional<NodeId> Checker::NodeOf(const syntax::Name& name, Kind kind) {
   std::string remedy = DidYouMean(name.text, NodeNames());
   for (const TreeNode& node : grammar_.tree.nodes) {
     for (const std::string& value : node.values) {
-      if (value == name.text)
-        remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + "; ";
+      if (value == name.text) remedy = "it is a value of " + node.name + ": write " + node.name + ":" + value + "; ";
     }
   }
   if (classes_.count(name.text) != 0) remedy = "it is a class, which stands without brackets; ";
   Error(kind, name.span,
-        "the tree has no " + std::string(kind == Kind::kUnknownFeature ? "feature" : "node") + " '" +
-            name.text + "'",
+        "the tree has no " + std::string(kind == Kind::kUnknownFeature ? "feature" : "node") + " '" + name.text + "'",
         Or(remedy, "declare it in `tree`"));
   return std::nullopt;
 }
@@ -246,8 +241,7 @@ bool Checker::SaysLiteral(const syntax::Set& set, std::size_t depth) const {
     const auto found = classes_.find(set.name.text);
     return found != classes_.end() && depth <= classes_.size() && SaysLiteral(found->second->set, depth + 1);
   }
-  return std::any_of(set.args.begin(), set.args.end(),
-                     [&](const syntax::Set& arg) { return SaysLiteral(arg, depth); });
+  return std::any_of(set.args.begin(), set.args.end(), [&](const syntax::Set& arg) { return SaysLiteral(arg, depth); });
 }
 
 // After the tree stands, so that the `in [..]` of one node may speak of all others.

@@ -35,9 +35,8 @@ std::size_t Rank(const Tree& tree, NodeId mother, NodeId daughter) {
 // The place among the daughters of `mother` where instances of `node` stand or would stand.
 std::vector<FeatureTree>::iterator PlaceFor(const Tree& tree, FeatureTree* mother, NodeId node) {
   const std::size_t rank = Rank(tree, mother->node, node);
-  return std::find_if(mother->daughters.begin(), mother->daughters.end(), [&](const FeatureTree& daughter) {
-    return Rank(tree, mother->node, daughter.node) >= rank;
-  });
+  return std::find_if(mother->daughters.begin(), mother->daughters.end(),
+                      [&](const FeatureTree& daughter) { return Rank(tree, mother->node, daughter.node) >= rank; });
 }
 
 }  // namespace
@@ -64,8 +63,7 @@ void SetValues(const Tree& tree, FeatureTree* content, NodeId node, const std::v
   FeatureTree* mother = Ensure(tree, content, tree[node].mother);
   Remove(mother, node);
   auto place = PlaceFor(tree, mother, node);
-  for (const Value value : values)
-    place = std::next(mother->daughters.insert(place, FeatureTree{node, value, {}}));
+  for (const Value value : values) place = std::next(mother->daughters.insert(place, FeatureTree{node, value, {}}));
 }
 
 void Remove(FeatureTree* content, NodeId node) {
@@ -142,8 +140,8 @@ class DifferenceWriter {
         if (!old.empty()) Step("no " + tree_[node].name);
       } else if (tree_[node].type == TreeNode::Type::kClass) {
         CompareClass(node, old, now);
-      } else if (old.size() != now.size() || !std::equal(old.begin(), old.end(), now.begin(),
-                                                         [](auto* a, auto* b) { return *a == *b; })) {
+      } else if (old.size() != now.size() ||
+                 !std::equal(old.begin(), old.end(), now.begin(), [](auto* a, auto* b) { return *a == *b; })) {
         for (const FeatureTree* value : now) Step(tree_.ValueName(node, value->value));
       }
     }

@@ -29,8 +29,6 @@ std::uint64_t MixTree(std::uint64_t h, const FeatureTree& tree) {
 
 }  // namespace
 
-std::size_t Hash(const FeatureTree& tree) {
-  return static_cast<std::size_t>(MixTree(0xCBF29CE484222325ull, tree));
-}
+std::size_t Hash(const FeatureTree& tree) { return static_cast<std::size_t>(MixTree(0xCBF29CE484222325ull, tree)); }
 
 }  // namespace tiersmith

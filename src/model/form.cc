@@ -145,10 +145,8 @@ class DefectFinder {
       if (!Reach(item.instance)) return false;
       const NodeId node = form_.instances[item.instance].node;
       if (!slots.insert(item.instance).second) Say(NameOf(item.instance) + " is in two items");
-      if (item.kind == FormItem::Kind::kSlot && node != kSlotNode)
-        Say(NameOf(item.instance) + " stands as a slot");
-      if (item.kind == FormItem::Kind::kFloat && !tree_[node].floating)
-        Say(NameOf(item.instance) + " may not float");
+      if (item.kind == FormItem::Kind::kSlot && node != kSlotNode) Say(NameOf(item.instance) + " stands as a slot");
+      if (item.kind == FormItem::Kind::kFloat && !tree_[node].floating) Say(NameOf(item.instance) + " may not float");
     }
     for (std::size_t i = 0; i < form_.instances.size(); ++i) {
       if (!reached_[i]) continue;
@@ -259,11 +257,9 @@ class DefectFinder {
         return std::all_of(test.bundle.begin(), test.bundle.end(),
                            [&](const FeatureTest& feature) { return PassesFeature(feature, slot); });
       case SlotTest::Op::kAnd:
-        return std::all_of(test.args.begin(), test.args.end(),
-                           [&](const SlotTest& t) { return Passes(t, slot); });
+        return std::all_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, slot); });
       case SlotTest::Op::kOr:
-        return std::any_of(test.args.begin(), test.args.end(),
-                           [&](const SlotTest& t) { return Passes(t, slot); });
+        return std::any_of(test.args.begin(), test.args.end(), [&](const SlotTest& t) { return Passes(t, slot); });
       case SlotTest::Op::kNot:
         return !Passes(test.args[0], slot);
     }
@@ -296,8 +292,7 @@ class DefectFinder {
     std::vector<bool> written(form_.instances.size(), false);
     for (const FormItem& item : form_.items) {
       if (item.kind == FormItem::Kind::kBoundary) continue;
-      if (item.kind == FormItem::Kind::kFloat)
-        tiers[form_.instances[item.instance].node].push_back(item.instance);
+      if (item.kind == FormItem::Kind::kFloat) tiers[form_.instances[item.instance].node].push_back(item.instance);
       Write(item.instance, tiers, written);
     }
     for (std::size_t node = 1; node < tiers.size(); ++node) {

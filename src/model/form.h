@@ -46,9 +46,7 @@ struct Form {
   std::vector<Instance> instances;
   std::vector<FormItem> items;
 
-  friend bool operator==(const Form& a, const Form& b) {
-    return a.instances == b.instances && a.items == b.items;
-  }
+  friend bool operator==(const Form& a, const Form& b) { return a.instances == b.instances && a.items == b.items; }
 };
 
 // The same form with instances numbered in order of first mention (items left to right, depth

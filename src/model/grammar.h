@@ -72,7 +72,7 @@ struct DataRow {
   std::vector<std::string> surfaces;  // any one passes
   std::string gloss;
   std::string source;
-  Span span;  // of the underlying form, in the grammar or the TSV
+  Span span;                        // of the underlying form, in the grammar or the TSV
   std::vector<Span> surface_spans;  // beside surfaces
 };
 

@@ -56,11 +56,10 @@ class Completer {
       }
       return true;
     }
-    return std::any_of(inventory_.omitted.begin(), inventory_.omitted.end(),
-                       [&](const Inventory::OmitEntry& entry) {
-                         return entry.node == full.node && entry.value == full.value &&
-                                symbol_ < entry.takes.size() && entry.takes[symbol_];
-                       });
+    return std::any_of(inventory_.omitted.begin(), inventory_.omitted.end(), [&](const Inventory::OmitEntry& entry) {
+      return entry.node == full.node && entry.value == full.value && symbol_ < entry.takes.size() &&
+             entry.takes[symbol_];
+    });
   }
 
   const Inventory& inventory_;
@@ -79,8 +78,7 @@ Inventory::Spelling Inventory::Complete(const FeatureTree& root) const {
   for (; tiered_ < symbols.size(); ++tiered_) {
     const Symbol& symbol = symbols[tiered_];
     if (!symbol.completes) continue;
-    const std::size_t tier =
-        symbol.kind == Symbol::Kind::kComposite ? static_cast<std::size_t>(symbol.diacritics) : 0;
+    const std::size_t tier = symbol.kind == Symbol::Kind::kComposite ? static_cast<std::size_t>(symbol.diacritics) : 0;
     if (tiers_.size() <= tier) tiers_.resize(tier + 1);
     tiers_[tier].push_back(static_cast<int>(tiered_));
   }

@@ -16,15 +16,15 @@ namespace tiersmith {
 
 struct Symbol {
   enum class Kind { kSegment, kArchisegment, kAllophone, kComposite };  // kComposite: base with diacritics
-  std::string text;             // NFC
+  std::string text;                                                     // NFC
   Kind kind = Kind::kSegment;
-  FeatureTree full;             // as declared
-  FeatureTree underlying;       // full, less what `omit` takes: what the symbol means in a form
-  bool in_underlying = true;    // may stand in underlying forms
-  int diacritics = 0;           // how many beyond the base
-  bool completes = true;        // may be chosen by Completion: not archisegments, nor what is made from them
-  int base = -1;                // kComposite: the listed symbol under the diacritics
-  std::vector<int> marks;       // kComposite: indices into Inventory::marks, ascending
+  FeatureTree full;                     // as declared
+  FeatureTree underlying;               // full, less what `omit` takes: what the symbol means in a form
+  bool in_underlying = true;            // may stand in underlying forms
+  int diacritics = 0;                   // how many beyond the base
+  bool completes = true;                // may be chosen by Completion: not archisegments, nor what is made from them
+  int base = -1;                        // kComposite: the listed symbol under the diacritics
+  std::vector<int> marks;               // kComposite: indices into Inventory::marks, ascending
   std::vector<FeatureTree> slot_borne;  // instances on the slot (tones), written by diacritics
   Span span;
 };
@@ -47,7 +47,7 @@ class Inventory {
   // Listed symbols first (segments, archisegments, allophones in order of declaration), then composites.
   std::vector<Symbol> symbols;
   std::vector<Literal> literals;
-  std::vector<Mark> marks;      // in order of declaration
+  std::vector<Mark> marks;  // in order of declaration
 
   // What a tree is spelled by. Exactly one symbol: `symbol`; otherwise -1 with the candidates (none: no symbol;
   // several: undecided).

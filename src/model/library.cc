@@ -47,9 +47,8 @@ bool LoadTable(const std::string& path, Span from, Diagnostics& diagnostics,
   // Spans into the library's own files would mean nothing to the grammar's source map: errors stay at `from`.
   Diagnostics own;
   if (!sources.Load(path, from, own, &file)) {
-    diagnostics.Error(
-        Kind::kMissingFile, from, "the segment library's file " + path + " cannot be read",
-        "check the name in `from`, and that $TIERSMITH_RULESETS, if set, names the folder that holds it");
+    diagnostics.Error(Kind::kMissingFile, from, "the segment library's file " + path + " cannot be read",
+                      "check the name in `from`, and that $TIERSMITH_RULESETS, if set, names the folder that holds it");
     return false;
   }
   const std::vector<std::string> lines = Split(sources.text(file), '\n');
@@ -57,8 +56,7 @@ bool LoadTable(const std::string& path, Span from, Diagnostics& diagnostics,
     if (lines[i].empty()) continue;
     std::vector<std::string> cells = Split(lines[i], '\t');
     if (cells.size() != 3) {
-      diagnostics.Error(Kind::kBadData, from,
-                        path + ":" + std::to_string(i + 1) + ": three columns are wanted",
+      diagnostics.Error(Kind::kBadData, from, path + ":" + std::to_string(i + 1) + ": three columns are wanted",
                         "part the columns with single tabs");
       return false;
     }
@@ -92,8 +90,7 @@ std::string FindLibrary() {
     if (fs::is_directory(candidate / "ipa", error)) return candidate.string();
   }
 #ifdef TIERSMITH_INSTALLED_RULESETS  // for programs elsewhere that use the installed library
-  if (fs::is_directory(fs::path(TIERSMITH_INSTALLED_RULESETS) / "ipa", error))
-    return TIERSMITH_INSTALLED_RULESETS;
+  if (fs::is_directory(fs::path(TIERSMITH_INSTALLED_RULESETS) / "ipa", error)) return TIERSMITH_INSTALLED_RULESETS;
 #endif
   return "";
 }
@@ -140,9 +137,8 @@ const Library::Segment* Library::Compose(std::string_view symbol) {
     const std::size_t n = diacritic.sign.size();
     if (text.size() <= n) continue;
     // A mark written before the base's other marks is found by taking it out wherever it stands.
-    const std::size_t at = diacritic.before
-                               ? (text.compare(0, n, diacritic.sign) == 0 ? 0 : std::u32string::npos)
-                               : text.find(diacritic.sign, 1);
+    const std::size_t at = diacritic.before ? (text.compare(0, n, diacritic.sign) == 0 ? 0 : std::u32string::npos)
+                                            : text.find(diacritic.sign, 1);
     if (at == std::u32string::npos) continue;
     std::u32string rest = text;
     rest.erase(at, n);
@@ -176,8 +172,7 @@ std::vector<std::string> Library::Features() const {
   return features;
 }
 
-FeatureTree Library::ContentOf(const Segment& segment, const Tree& tree,
-                               std::vector<std::string>* cut) const {
+FeatureTree Library::ContentOf(const Segment& segment, const Tree& tree, std::vector<std::string>* cut) const {
   FeatureTree root{kRootNode, 0, {}};
   std::vector<NodeId> contours;
   for (const Feature& feature : segment.features) {

@@ -19,10 +19,9 @@ struct Equation {
 };
 // Signs that stand for one another on input.
 constexpr Equation kEquations[] = {
-    {U'g', U"\u0261"},         {U':', U"\u02D0"},         {U'\'', U"\u02BC"},
-    {0x2019, U"\u02BC"},       {0x35C, U"\u0361"},        {0x2A6, U"t\u0361s"},
-    {0x2A3, U"d\u0361z"},      {0x2A7, U"t\u0361\u0283"}, {0x2A4, U"d\u0361\u0292"},
-    {0x2A8, U"t\u0361\u0255"}, {0x2A5, U"d\u0361\u0291"},
+    {U'g', U"\u0261"},         {U':', U"\u02D0"},         {U'\'', U"\u02BC"},        {0x2019, U"\u02BC"},
+    {0x35C, U"\u0361"},        {0x2A6, U"t\u0361s"},      {0x2A3, U"d\u0361z"},      {0x2A7, U"t\u0361\u0283"},
+    {0x2A4, U"d\u0361\u0292"}, {0x2A8, U"t\u0361\u0255"}, {0x2A5, U"d\u0361\u0291"},
 };
 
 // Combining class of each code point, or kSpecial. 254 distinct classes would not fit beside it, but Unicode
@@ -34,9 +33,9 @@ const std::array<std::uint8_t, kTableSize>& Table() {
       const utf8proc_property_t* property = utf8proc_get_property(static_cast<utf8proc_int32_t>(code));
       utf8proc_int32_t buffer[8];
       int boundary = 0;
-      const utf8proc_ssize_t n = utf8proc_decompose_char(
-          static_cast<utf8proc_int32_t>(code), buffer, 8,
-          static_cast<utf8proc_option_t>(UTF8PROC_STABLE | UTF8PROC_DECOMPOSE), &boundary);
+      const utf8proc_ssize_t n =
+          utf8proc_decompose_char(static_cast<utf8proc_int32_t>(code), buffer, 8,
+                                  static_cast<utf8proc_option_t>(UTF8PROC_STABLE | UTF8PROC_DECOMPOSE), &boundary);
       const bool decomposes = n != 1 || buffer[0] != static_cast<utf8proc_int32_t>(code);
       t[code] = decomposes ? kSpecial : static_cast<std::uint8_t>(property->combining_class);
     }
@@ -48,8 +47,7 @@ const std::array<std::uint8_t, kTableSize>& Table() {
 
 std::uint8_t CombiningClass(char32_t code) {
   if (code < kTableSize && Table()[code] != kSpecial) return Table()[code];
-  return static_cast<std::uint8_t>(
-      utf8proc_get_property(static_cast<utf8proc_int32_t>(code))->combining_class);
+  return static_cast<std::uint8_t>(utf8proc_get_property(static_cast<utf8proc_int32_t>(code))->combining_class);
 }
 
 // Appends in canonical order: a mark moves before marks of a higher class.
@@ -75,9 +73,9 @@ void AppendSpecial(std::vector<NormalText::Unit>& units, NormalText::Unit unit) 
   }
   utf8proc_int32_t buffer[32];
   int boundary = 0;
-  const utf8proc_ssize_t n = utf8proc_decompose_char(
-      static_cast<utf8proc_int32_t>(unit.code), buffer, 32,
-      static_cast<utf8proc_option_t>(UTF8PROC_STABLE | UTF8PROC_DECOMPOSE), &boundary);
+  const utf8proc_ssize_t n =
+      utf8proc_decompose_char(static_cast<utf8proc_int32_t>(unit.code), buffer, 32,
+                              static_cast<utf8proc_option_t>(UTF8PROC_STABLE | UTF8PROC_DECOMPOSE), &boundary);
   if (n <= 0) {
     Append(units, unit, 0);
     return;
@@ -103,8 +101,7 @@ void NormalText::Assign(std::string_view text) {
       ++position;
     } else if (first >= 0xC2 && first < 0xE0 && position + 1 < text.size() &&
                (static_cast<unsigned char>(text[position + 1]) & 0xC0) == 0x80) {
-      unit.code = (static_cast<char32_t>(first & 0x1F) << 6) |
-                  (static_cast<unsigned char>(text[position + 1]) & 0x3F);
+      unit.code = (static_cast<char32_t>(first & 0x1F) << 6) | (static_cast<unsigned char>(text[position + 1]) & 0x3F);
       position += 2;
     } else {
       unit.code = NextCodePoint(text, &position);

@@ -11,8 +11,7 @@ void SymbolTrie::Add(std::string_view text, int symbol) {
   const std::u32string normal = Normalise(text);
   if (normal.empty()) return;
   std::size_t tail = normal.size();
-  while (tail > 1 && IsLeaning(normal[tail - 1]) && normal[tail - 1] != kTie && normal[tail - 1] != 0x35C)
-    --tail;
+  while (tail > 1 && IsLeaning(normal[tail - 1]) && normal[tail - 1] != kTie && normal[tail - 1] != 0x35C) --tail;
   constexpr std::size_t kMostReordered = 5;  // beyond that only the order as written is read
   if (normal.size() - tail < 2 || normal.size() - tail > kMostReordered) {
     AddExactly(normal, symbol);

@@ -55,7 +55,8 @@ std::set<std::string> TellingWords(const std::string& name) {
 bool NameHolds(const std::string& name, char32_t letter) {
   if (letter < U'a' || letter > U'z') return false;
   const std::size_t space = name.rfind(' ');
-  return name.find(static_cast<char>(letter - U'a' + U'A'), space == std::string::npos ? 0 : space) != std::string::npos;
+  return name.find(static_cast<char>(letter - U'a' + U'A'), space == std::string::npos ? 0 : space) !=
+         std::string::npos;
 }
 
 // How far two segments are apart: each node that only one of them bears, or with another value, counts; what hangs
@@ -121,8 +122,7 @@ Reader::Reader(const Grammar& grammar) : impl_(new Impl) {
     }
   }
   for (std::size_t i = 0; i < inventory.marks.size(); ++i) {
-    if (!inventory.marks[i].before)
-      impl_->marks.emplace_back(Normalise(inventory.marks[i].text), static_cast<int>(i));
+    if (!inventory.marks[i].before) impl_->marks.emplace_back(Normalise(inventory.marks[i].text), static_cast<int>(i));
   }
 }
 
@@ -137,8 +137,7 @@ bool Reader::Impl::Allowed(int id, Side side) const {
   return side == Side::kUnderlying ? s.in_underlying : s.completes;
 }
 
-bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens,
-                        TextError* error) const {
+bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const {
   tokens->clear();
   text.Assign(typed);
   const NormalText::Unit* units = text.units.data();
@@ -155,8 +154,7 @@ bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* t
     const char32_t code = units[i].code;
     if (code == kLengthSign) {
       if (tokens->empty() || tokens->back().kind == Token::Kind::kBoundary) {
-        return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long",
-                    error);
+        return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long", error);
       }
       ++i;
       // Marks may stand behind the length sign: aː̃ is ãː.
@@ -190,8 +188,7 @@ const std::pair<std::u32string, int>* Reader::Impl::MarkAt(std::size_t position)
   for (const auto& mark : marks) {
     if (mark.first.size() > text.units.size() - position) continue;
     bool same = true;
-    for (std::size_t k = 0; k < mark.first.size(); ++k)
-      same = same && text.units[position + k].code == mark.first[k];
+    for (std::size_t k = 0; k < mark.first.size(); ++k) same = same && text.units[position + k].code == mark.first[k];
     if (same) return &mark;
   }
   return nullptr;
@@ -211,16 +208,14 @@ int Reader::Impl::WithMarksAfterLength(int id, std::size_t* position) const {
   NormalText cluster;
   cluster.Assign(written);
   const SymbolTrie::Match match = trie.Longest(cluster.units.data(), 0, cluster.units.size());
-  if (match.symbol < 0 || match.end != cluster.units.size())
-    return id;  // the mark is then reported where it stands
+  if (match.symbol < 0 || match.end != cluster.units.size()) return id;  // the mark is then reported where it stands
   *position = end;
   return match.symbol;
 }
 
 // ---- errors -----------------------------------------------------------------------------------------
 
-bool Reader::Impl::Fail(std::size_t unit, Kind kind, std::string message, std::string remedy,
-                        TextError* error) const {
+bool Reader::Impl::Fail(std::size_t unit, Kind kind, std::string message, std::string remedy, TextError* error) const {
   error->kind = kind;
   error->offset = text.units[unit].begin;
   error->length = text.units[unit].end - text.units[unit].begin;
@@ -249,11 +244,12 @@ bool Reader::Impl::FailBytes(std::size_t unit, std::string_view typed, TextError
   char byte[8];
   std::snprintf(byte, sizeof byte, "0x%02X",
                 static_cast<unsigned>(static_cast<unsigned char>(typed[text.units[unit].begin])));
-  return Fail(unit, Kind::kNotUtf8,
-              std::string("this form is not UTF-8: byte ") + byte + (utf16 ? " begins UTF-16 text" : " cannot stand here"),
-              utf16 ? "give forms as UTF-8; to convert them: iconv -f UTF-16 -t UTF-8"
-                    : "give forms as UTF-8, or convert them from what they are, for example: iconv -f LATIN1 -t UTF-8",
-              error);
+  return Fail(
+      unit, Kind::kNotUtf8,
+      std::string("this form is not UTF-8: byte ") + byte + (utf16 ? " begins UTF-16 text" : " cannot stand here"),
+      utf16 ? "give forms as UTF-8; to convert them: iconv -f UTF-16 -t UTF-8"
+            : "give forms as UTF-8, or convert them from what they are, for example: iconv -f LATIN1 -t UTF-8",
+      error);
 }
 
 bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
@@ -262,16 +258,15 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
     case U'.':
     case U'\u02C8':
     case U'\u02CC':
-      return Fail(unit, Kind::kNotSupportedYet,
-                  "marks of stress and syllables (ˈ ˌ .) are not read by this release", "leave them out",
-                  error);
+      return Fail(unit, Kind::kNotSupportedYet, "marks of stress and syllables (ˈ ˌ .) are not read by this release",
+                  "leave them out", error);
     case U'{':
       return Fail(unit, Kind::kNotSupportedYet, "floating instances {..} are not read by this release",
                   "leave the float out", error);
     case U'@':
     case U'\u221A':
-      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release",
-                  "leave the tag out", error);
+      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release", "leave the tag out",
+                  error);
     default:
       break;
   }
@@ -294,17 +289,16 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
                 "'" + shown + "' is no symbol: ◌" + ToUtf8(mark->first) + " may not stand on that base",
                 "change the diacritic's `on`, or list " + shown + " in `segments`", error);
   }
-  const std::string shown =
-      IsMark(code) ? "◌" + ToUtf8(std::u32string(1, code)) : ToUtf8(std::u32string(1, code));
+  const std::string shown = IsMark(code) ? "◌" + ToUtf8(std::u32string(1, code)) : ToUtf8(std::u32string(1, code));
   const std::string nearest = Nearest(unit);
   std::string remedy = nearest.empty() ? "" : "did you mean '" + nearest + "'? ";
   remedy += IsLeaning(code) ? "declare it in `diacritics`, or list the symbol it is part of in `segments`"
                             : "or list it in `segments` or `allophones`";
   if (nearest.empty() && !IsLeaning(code)) remedy = "list it in `segments` or `allophones`";
-  return Fail(unit, Kind::kUnknownCharacter,
-              "'" + shown + "' (" + CodePointName(code) + ", " + CharacterName(code) +
-                  ") is in no symbol of the grammar",
-              remedy, error);
+  return Fail(
+      unit, Kind::kUnknownCharacter,
+      "'" + shown + "' (" + CodePointName(code) + ", " + CharacterName(code) + ") is in no symbol of the grammar",
+      remedy, error);
 }
 
 // What is meant by a character that is in no symbol: the listed symbol nearest to what the library says of it, else
@@ -315,8 +309,7 @@ std::string Reader::Impl::Nearest(std::size_t unit) const {
     // Base and mark: perhaps a symbol with another mark on the same base.
     for (const Symbol& s : inventory().symbols) {
       const std::u32string normal = Normalise(s.text);
-      if (unit > 0 && normal.size() > 1 && normal[0] == text.units[unit - 1].code && IsMark(normal[1]))
-        return s.text;
+      if (unit > 0 && normal.size() > 1 && normal[0] == text.units[unit - 1].code && IsMark(normal[1])) return s.text;
     }
     return "";
   }
@@ -341,7 +334,8 @@ std::string Reader::Impl::NearestByFeatures(char32_t code) const {
   for (const Symbol& s : inventory().symbols) {
     if (s.kind == Symbol::Kind::kComposite || s.kind == Symbol::Kind::kArchisegment) continue;
     // Of two as near, the one whose letter is in the character's name: n in ENG, before m.
-    const std::pair<int, bool> score = {Distance(grammar->tree, s.full, wanted), !NameHolds(name, Normalise(s.text)[0])};
+    const std::pair<int, bool> score = {Distance(grammar->tree, s.full, wanted),
+                                        !NameHolds(name, Normalise(s.text)[0])};
     if (score.first >= kTooFar || score >= best_score) continue;
     best_score = score;
     best = s.text;
@@ -375,8 +369,7 @@ Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
   const std::vector<Form>& pools = side == Side::kUnderlying ? impl_->underlying : impl_->surface;
   std::size_t size = tokens.size();
   for (const Token& token : tokens) {
-    if (token.kind == Token::Kind::kSymbol)
-      size += pools[static_cast<std::size_t>(token.symbol)].instances.size();
+    if (token.kind == Token::Kind::kSymbol) size += pools[static_cast<std::size_t>(token.symbol)].instances.size();
   }
   Form form;
   form.instances.reserve(size);
@@ -497,9 +490,7 @@ std::string ComparisonKey(std::string_view surface) {
     for (; length > 0; --length) result += std::u32string(cluster);
     cluster.clear();
   };
-  const auto is_prefix = [](char32_t code) {
-    return code == 0x207F || code == 0x1D50 || code == 0x1D51;
-  };  // ⁿ ᵐ ᵑ
+  const auto is_prefix = [](char32_t code) { return code == 0x207F || code == 0x1D50 || code == 0x1D51; };  // ⁿ ᵐ ᵑ
   for (std::size_t i = 0; i < text.units.size(); ++i) {
     const char32_t code = text.units[i].code;
     if (BoundaryOf(code) != Boundary::kNone || code == U'|') {
@@ -509,8 +500,8 @@ std::string ComparisonKey(std::string_view surface) {
     } else if (is_prefix(code) && i + 1 < text.units.size() && !IsLeaning(text.units[i + 1].code)) {
       close();
       cluster = code;
-    } else if (!cluster.empty() && (IsLeaning(code) || cluster.back() == kTie ||
-                                    (cluster.size() == 1 && is_prefix(cluster[0])))) {
+    } else if (!cluster.empty() &&
+               (IsLeaning(code) || cluster.back() == kTie || (cluster.size() == 1 && is_prefix(cluster[0])))) {
       cluster += code;
     } else {
       close();

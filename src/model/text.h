@@ -17,7 +17,7 @@ struct TextError {
   Kind kind = Kind::kUnknownCharacter;
   std::size_t offset = 0;  // byte offset into the text
   std::size_t length = 1;
-  std::string message;     // names code point, Unicode name and nearest symbol for an unknown character
+  std::string message;  // names code point, Unicode name and nearest symbol for an unknown character
   std::string remedy;
 };
 

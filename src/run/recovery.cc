@@ -45,10 +45,10 @@ class RealLetters {
 
 // What a letter is to the reader of a form.
 struct LetterFacts {
-  bool slot = false;      // a slot with a root
-  bool empty = false;     // a slot without one
+  bool slot = false;   // a slot with a root
+  bool empty = false;  // a slot without one
   bool linked = false;
-  int symbol = -1;        // that spells it
+  int symbol = -1;  // that spells it
   Boundary boundary = Boundary::kNone;
 };
 
@@ -58,13 +58,13 @@ struct Recovery::Impl {
   const Grammar& grammar;
   const CascadeData& data;
   RealLetters letters;
-  std::vector<LetterFacts> facts;               // by letter id - 1
-  std::vector<std::set<int>> entering;          // by segment: letters that may come in
+  std::vector<LetterFacts> facts;       // by letter id - 1
+  std::vector<std::set<int>> entering;  // by segment: letters that may come in
   std::vector<std::set<int>> leaving;
-  std::vector<Fst> inverted;                    // by segment: from what it writes to what it reads
-  Fst underlying;                               // acceptor of underlying forms, boundaries costing 1
-  std::map<int, const InputLetter*> input_of;   // by letter id
-  std::map<int, std::vector<int>> spelled_by;   // symbol -> letters that leave the last segment
+  std::vector<Fst> inverted;                   // by segment: from what it writes to what it reads
+  Fst underlying;                              // acceptor of underlying forms, boundaries costing 1
+  std::map<int, const InputLetter*> input_of;  // by letter id
+  std::map<int, std::vector<int>> spelled_by;  // symbol -> letters that leave the last segment
 
   Impl(const Grammar& g, const CascadeData& d) : grammar(g), data(d) {
     FLAGS_fst_error_fatal = false;
@@ -115,7 +115,8 @@ struct Recovery::Impl {
     for (int s : segment.machine.starts) result.AddArc(start, StdArc(0, 0, kFree, s));
     for (std::size_t s = 0; s < segment.machine.arcs.size(); ++s) {
       for (const TapeArc& arc : segment.machine.arcs[s]) {
-        for (int in : by_class[arc.in]) AddWritten(&result, static_cast<int>(s), in, segment.machine.symbols[arc.out], arc.next);
+        for (int in : by_class[arc.in])
+          AddWritten(&result, static_cast<int>(s), in, segment.machine.symbols[arc.out], arc.next);
       }
     }
     fst::ArcSort(&result, fst::ILabelCompare<StdArc>());
@@ -145,8 +146,8 @@ struct Recovery::Impl {
   // States: may a boundary come next or not, and for each long letter the wait for its other half.
   Fst UnderlyingForms() const {
     Fst result;
-    const int open = result.AddState();      // at the start or after a slot
-    const int bounded = result.AddState();   // after a boundary
+    const int open = result.AddState();     // at the start or after a slot
+    const int bounded = result.AddState();  // after a boundary
     result.SetStart(open);
     result.SetFinal(open, kFree);
     result.SetFinal(bounded, kFree);
@@ -275,13 +276,14 @@ struct Recovery::Impl {
     std::string fitting, all;
     for (const Rule& rule : grammar.rules) {
       for (const Change& change : rule.changes) {
-        if (change.op != Change::Op::kDelete && !(change.op == Change::Op::kDelink && change.node == kRootNode)) continue;
+        if (change.op != Change::Op::kDelete && !(change.op == Change::Op::kDelink && change.node == kRootNode))
+          continue;
         const std::string name = fmt::format("rule \"{}\"", rule.name);
         all += (all.empty() ? "" : ", ") + name;
         const SlotTest* test = TestOf(rule.where, change.target);
-        const bool fits = test != nullptr && std::any_of(letters_on_cycles.begin(), letters_on_cycles.end(), [&](int id) {
-          return data.classes->Matches(letters[id].class_id, *test);
-        });
+        const bool fits =
+            test != nullptr && std::any_of(letters_on_cycles.begin(), letters_on_cycles.end(),
+                                           [&](int id) { return data.classes->Matches(letters[id].class_id, *test); });
         if (fits) fitting += (fitting.empty() ? "" : ", ") + name;
         break;
       }
@@ -304,7 +306,8 @@ struct Recovery::Impl {
   std::set<int> written_;
 };
 
-Recovery::Recovery(const Grammar& grammar, const Cascade& cascade) : impl_(std::make_unique<Impl>(grammar, cascade.data())) {}
+Recovery::Recovery(const Grammar& grammar, const Cascade& cascade)
+    : impl_(std::make_unique<Impl>(grammar, cascade.data())) {}
 Recovery::~Recovery() = default;
 
 bool Recovery::Recover(const std::vector<Token>& surface, std::size_t best, Runner::Candidates* candidates) {
@@ -318,7 +321,8 @@ bool Recovery::Recover(const std::vector<Token>& surface, std::size_t best, Runn
   fst::ShortestPath(machine, &paths, static_cast<int>(best) + 1);
   std::set<std::string> seen;
   // The result is a tree of paths from the start.
-  for (fst::ArcIterator<Fst> first(paths, paths.Start() < 0 ? 0 : paths.Start()); paths.Start() >= 0 && !first.Done(); first.Next()) {
+  for (fst::ArcIterator<Fst> first(paths, paths.Start() < 0 ? 0 : paths.Start()); paths.Start() >= 0 && !first.Done();
+       first.Next()) {
     std::vector<int> ids;
     float weight = 0;
     StdArc arc = first.Value();
@@ -336,10 +340,11 @@ bool Recovery::Recover(const std::vector<Token>& surface, std::size_t best, Runn
     candidate.restorations = static_cast<int>(weight + 0.5F);
     if (seen.insert(candidate.form).second) candidates->best.push_back(std::move(candidate));
   }
-  if (paths.Start() >= 0 && paths.Final(paths.Start()) != fst::TropicalWeight::Zero()) candidates->best.insert(candidates->best.begin(), Runner::Candidate{});
-  std::stable_sort(candidates->best.begin(), candidates->best.end(), [](const Runner::Candidate& a, const Runner::Candidate& b) {
-    return a.restorations < b.restorations;
-  });
+  if (paths.Start() >= 0 && paths.Final(paths.Start()) != fst::TropicalWeight::Zero())
+    candidates->best.insert(candidates->best.begin(), Runner::Candidate{});
+  std::stable_sort(
+      candidates->best.begin(), candidates->best.end(),
+      [](const Runner::Candidate& a, const Runner::Candidate& b) { return a.restorations < b.restorations; });
   candidates->more = candidates->best.size() > best || candidates->infinite;
   if (candidates->best.size() > best) candidates->best.resize(best);
   return true;

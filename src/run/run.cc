@@ -89,7 +89,8 @@ struct Runner::Impl {
       }
       const bool linked = i + 1 < tokens.size() && tokens[i + 1].kind == Token::Kind::kLength;
       if (token.kind == Token::Kind::kSymbol) last_symbol_ = token.symbol;
-      const bool known = last_symbol_ < static_cast<int>(of_symbol.size()) && of_symbol[last_symbol_][linked].class_id >= 0;
+      const bool known =
+          last_symbol_ < static_cast<int>(of_symbol.size()) && of_symbol[last_symbol_][linked].class_id >= 0;
       if (!known) {
         *error = {Kind::kBadForm, 0, text.size(),
                   fmt::format("/{}/ has a letter with more diacritics than this grammar was compiled for", text),
@@ -130,7 +131,8 @@ bool Runner::Derive(std::string_view underlying, std::string* surface, TextError
       case Impl::Spelled::Kind::kNoSymbol:
         *error = {Kind::kNoSymbol, 0, underlying.size(),
                   fmt::format("/{}/ comes to a tree that no symbol spells: {}", underlying, spelled.text),
-                  "declare it, let `omit` restore what is missing, or add a rule that sets it; `derive --trace` shows how it came about"};
+                  "declare it, let `omit` restore what is missing, or add a rule that sets it; `derive --trace` shows "
+                  "how it came about"};
         return false;
     }
   }
@@ -141,7 +143,8 @@ Runner::Answer Runner::Apply(const Form& underlying) {
   Answer answer;
   const CascadeData& data = impl_->cascade.data();
   std::vector<LetterClasses::Parts> letters;
-  for (const Letter& letter : Encode(underlying, impl_->grammar.tree)) letters.push_back(data.classes->Classify(letter));
+  for (const Letter& letter : Encode(underlying, impl_->grammar.tree))
+    letters.push_back(data.classes->Classify(letter));
   std::int32_t flags = 0;
   for (Walker& walker : impl_->walkers) {
     if (!walker.Run(&letters, &flags)) return answer;
@@ -151,7 +154,8 @@ Runner::Answer Runner::Apply(const Form& underlying) {
   answer.unsure = flags & kFlagUnsure;
   if (answer.ambiguous || answer.reaches) return answer;
   std::vector<Letter> written;
-  for (const LetterClasses::Parts& letter : letters) written.push_back(data.classes->Join(letter.class_id, letter.rest));
+  for (const LetterClasses::Parts& letter : letters)
+    written.push_back(data.classes->Join(letter.class_id, letter.rest));
   answer.form = Decode(written, impl_->grammar.tree);
   return answer;
 }

@@ -39,8 +39,8 @@ class Runner {
   struct Candidates {
     std::vector<Candidate> best;  // fewest restorations first
     bool infinite = false;
-    std::string infinite_why;     // "any number of h (rule 'h deletion')"
-    bool more = false;            // the list was cut at the number asked for
+    std::string infinite_why;  // "any number of h (rule 'h deletion')"
+    bool more = false;         // the list was cut at the number asked for
   };
   // Surface text -> candidate underlying forms.
   bool Recover(std::string_view surface, std::size_t best, Candidates* candidates, TextError* error);

@@ -20,7 +20,8 @@ std::vector<FeatureTree> Contents(const Grammar& grammar, const std::vector<std:
   return contents;
 }
 
-std::vector<Form> AllForms(const Grammar& grammar, const std::vector<std::string>& symbols, const AllFormsOptions& options) {
+std::vector<Form> AllForms(const Grammar& grammar, const std::vector<std::string>& symbols,
+                           const AllFormsOptions& options) {
   std::vector<Form> forms;
   ForEachForm(grammar, Contents(grammar, symbols), options, [&](const Form& form) {
     forms.push_back(form);
@@ -105,8 +106,8 @@ TEST_CASE("every ninth rule of up to two items, with all ways of sharing", "[agr
 TEST_CASE("the long run: more rules of three items, more sharing", "[.long][agreement]") {
   Tally tally;
   CompareRules(PlainForms(), 3, 3, 23, &tally);
-  CompareRules(SharingForms(3), 1, 2, 3, &tally);
-  CompareRules(SharingForms(3), 3, 3, 401, &tally);
+  CompareRules(SharingForms(3), 1, 2, 5, &tally);
+  CompareRules(SharingForms(3), 3, 3, 801, &tally);
   CheckTally("exhaustive, long", tally);
-  CHECK(tally.pairs >= 3'500'000);
+  CHECK(tally.pairs >= 2'700'000);  // with the random long run, 5,000,000
 }

@@ -46,8 +46,8 @@ void CompareGrammars(std::uint64_t seed, std::uint64_t wanted, std::size_t forms
     refused += !compiled;
     REQUIRE(refused < 3 * wanted + 10);
   }
-  std::cout << "random grammars: " << refused << " refused (ambiguous, reaching another root, or no symbol for the datum); "
-            << tally->Report();
+  std::cout << "random grammars: " << refused
+            << " refused (ambiguous, reaching another root, or no symbol for the datum); " << tally->Report();
 }
 
 // Nodes to share: the root, and a few that have to do with the rule.

@@ -25,7 +25,8 @@ using Clock = std::chrono::steady_clock;
 double SecondsSince(Clock::time_point start) { return std::chrono::duration<double>(Clock::now() - start).count(); }
 
 // Forms a second: whole rounds over the forms, until `least` seconds have gone by.
-double Rate(const std::vector<std::string>& forms, double least, const std::function<bool(const std::string&)>& derive) {
+double Rate(const std::vector<std::string>& forms, double least,
+            const std::function<bool(const std::string&)>& derive) {
   for (const std::string& form : forms) {  // nothing is measured cold
     if (!derive(form)) return 0;
   }
@@ -48,7 +49,8 @@ bool Measure(const std::string& path) {
   const std::unique_ptr<Cascade> cascade = grammar == nullptr ? nullptr : Compile(*grammar, Limits{}, diagnostics);
   const double compiled = SecondsSince(start);
   if (cascade == nullptr || grammar->data.empty()) {
-    fmt::print(stderr, "{}{}: no machine, or no data to derive\n", RenderDiagnostics(diagnostics, *sources, false), path);
+    fmt::print(stderr, "{}{}: no machine, or no data to derive\n", RenderDiagnostics(diagnostics, *sources, false),
+               path);
     return false;
   }
   std::vector<std::string> forms;
@@ -74,13 +76,14 @@ bool Measure(const std::string& path) {
     }
   }
   const double fast = Rate(forms, 0.5, machine), slow = Rate(forms, 0.5, interpreter);
-  fmt::print("{:<26}{:>6}{:>12.3f}{:>16.0f}{:>16.0f}{:>8.1f}\n", std::filesystem::path(path).stem().string(), grammar->rules.size(),
-             compiled, fast, slow, fast / slow);
+  fmt::print("{:<26}{:>6}{:>12.3f}{:>16.0f}{:>16.0f}{:>8.1f}\n", std::filesystem::path(path).stem().string(),
+             grammar->rules.size(), compiled, fast, slow, fast / slow);
   return true;
 }
 
 int Run(const std::vector<std::string>& paths) {
-  fmt::print("{:<26}{:>6}{:>12}{:>16}{:>16}{:>8}\n", "grammar", "rules", "compile s", "machine forms/s", "interp. forms/s", "ratio");
+  fmt::print("{:<26}{:>6}{:>12}{:>16}{:>16}{:>8}\n", "grammar", "rules", "compile s", "machine forms/s",
+             "interp. forms/s", "ratio");
   bool fine = true;
   for (const std::string& path : paths) fine = Measure(path) && fine;
   return fine ? 0 : 1;
@@ -92,7 +95,8 @@ int Run(const std::vector<std::string>& paths) {
 int main(int argc, char** argv) {
   std::vector<std::string> paths(argv + 1, argv + argc);
   if (paths.empty()) {
-    for (const char* name : {"english-plural", "finnish-vowel-harmony", "sanskrit-nati", "spanish-nasal-place", "turkish-vowel-harmony"}) {
+    for (const char* name :
+         {"english-plural", "finnish-vowel-harmony", "sanskrit-nati", "spanish-nasal-place", "turkish-vowel-harmony"}) {
       paths.push_back(fmt::format("{0}/{1}/{1}.tier", TIERSMITH_TEST_RULESETS, name));
     }
   }

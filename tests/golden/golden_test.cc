@@ -91,15 +91,16 @@ std::string RenderTextError(const std::string& form, const TextError& error) {
   const std::uint32_t file = sources.Add("form", form);
   Diagnostics diagnostics;
   const auto begin = static_cast<std::uint32_t>(error.offset);
-  diagnostics.Error(error.kind, {file, begin, begin + static_cast<std::uint32_t>(error.length)}, error.message, error.remedy);
+  diagnostics.Error(error.kind, {file, begin, begin + static_cast<std::uint32_t>(error.length)}, error.message,
+                    error.remedy);
   return RenderDiagnostics(diagnostics, sources, false);
 }
 
 std::string RunForms(const std::vector<Section>& sections, Runner& runner) {
   std::string out;
   for (const Section& section : sections) {
-    for (const std::string& form : section.head == "derive" || section.head == "recover" ? LinesOf(section.body)
-                                                                                         : std::vector<std::string>{}) {
+    for (const std::string& form :
+         section.head == "derive" || section.head == "recover" ? LinesOf(section.body) : std::vector<std::string>{}) {
       TextError error;
       std::string surface;
       Runner::Candidates candidates;

@@ -54,8 +54,10 @@ Form WithoutEmpty(const Form& form) {
 }  // namespace
 
 std::string Tally::Report() const {
-  std::string text = fmt::format("{} rule sets, {} pairs, {:.1f} % changed, {} ambiguous, {} reaching another root, {} over budget, {} forms not compilable\n", rules,
-                                 pairs, 100 * ChangedShare(), ambiguous, reaching, over_budget, unsure);
+  std::string text = fmt::format(
+      "{} rule sets, {} pairs, {:.1f} % changed, {} ambiguous, {} reaching another root, {} over budget, {} forms not "
+      "compilable\n",
+      rules, pairs, 100 * ChangedShare(), ambiguous, reaching, over_budget, unsure);
   for (const auto& [shape, count] : applied) text += fmt::format("  {:<32} {:>10}\n", shape, count);
   return text;
 }
@@ -74,7 +76,8 @@ std::uint64_t SeedOr(std::uint64_t seed) {
   return given == nullptr ? seed : std::strtoull(given, nullptr, 10);
 }
 
-std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector<Form>& forms, std::size_t least, Tally* tally) {
+std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector<Form>& forms, std::size_t least,
+                                       Tally* tally) {
   std::vector<Letter> letters;
   for (const Form& form : forms) {
     for (Letter& letter : Encode(form, grammar.tree)) letters.push_back(std::move(letter));
@@ -87,7 +90,8 @@ std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector
     return std::nullopt;
   }
   if (cascade == nullptr) {
-    return Failure(grammar, forms.front(), "does not compile: " + (diagnostics.all().empty() ? "" : diagnostics.all()[0].message));
+    return Failure(grammar, forms.front(),
+                   "does not compile: " + (diagnostics.all().empty() ? "" : diagnostics.all()[0].message));
   }
   Runner runner(grammar, *cascade);
   ++tally->rules;
@@ -107,27 +111,31 @@ std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector
       tally->ambiguous += !expected.ambiguous.empty();
       tally->reaching += expected.ambiguous.empty();
       if (!answer.ambiguous && !answer.reaches) {
-        return Failure(grammar, form, "the interpreter refuses (" + expected.ambiguous + expected.reaches + "), the machine does not");
+        return Failure(grammar, form,
+                       "the interpreter refuses (" + expected.ambiguous + expected.reaches + "), the machine does not");
       }
       continue;
     }
     changes ? ++changed : ++same;
     tally->changed += changes;
     if (answer.ambiguous || answer.reaches) {
-      return Failure(grammar, form, answer.ambiguous ? "the machine says ambiguous, the interpreter does not"
-                                                     : "the machine says it reaches another root, the interpreter does not");
+      return Failure(grammar, form,
+                     answer.ambiguous ? "the machine says ambiguous, the interpreter does not"
+                                      : "the machine says it reaches another root, the interpreter does not");
     }
     if (!answer.form.has_value()) return Failure(grammar, form, "the machine has no (well-formed) answer");
     if (!(*answer.form == expected.form)) {
       return Failure(grammar, form,
-                     fmt::format("interpreter: {}\nmachine:     {}", Dump(expected.form, grammar.tree), Dump(*answer.form, grammar.tree)));
+                     fmt::format("interpreter: {}\nmachine:     {}", Dump(expected.form, grammar.tree),
+                                 Dump(*answer.form, grammar.tree)));
     }
   }
   tally->applied[ShapeOf(grammar.rules[0])] += changed;
   return std::nullopt;
 }
 
-std::optional<std::string> CompareGrammar(const Grammar& grammar, const std::vector<Form>& forms, Tally* tally, bool* compiled) {
+std::optional<std::string> CompareGrammar(const Grammar& grammar, const std::vector<Form>& forms, Tally* tally,
+                                          bool* compiled) {
   Diagnostics diagnostics;
   const Limits limits;
   const std::unique_ptr<Cascade> cascade = Compile(grammar, limits, diagnostics);
@@ -153,7 +161,9 @@ std::optional<std::string> CompareGrammar(const Grammar& grammar, const std::vec
     if (!answer.form.has_value()) return Failure(grammar, form, "the machine has no (well-formed) answer");
     const Form machine = OnlyRootsShared(WithoutEmpty(*answer.form));
     if (!(machine == surface)) {
-      return Failure(grammar, form, fmt::format("interpreter: {}\nmachine:     {}", Dump(surface, grammar.tree), Dump(machine, grammar.tree)));
+      return Failure(
+          grammar, form,
+          fmt::format("interpreter: {}\nmachine:     {}", Dump(surface, grammar.tree), Dump(machine, grammar.tree)));
     }
   }
   return std::nullopt;

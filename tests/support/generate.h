@@ -93,7 +93,7 @@ struct AllRulesOptions {
   std::vector<NodeId> nodes;                   // spread (with and without delinking) and delinked
   std::vector<std::vector<Setting>> settings;  // set and filled
   std::vector<FeatureTree> inserted;
-  bool gaps = true;                            // each connection adjacent or a gap (one gap at most)
+  bool gaps = true;  // each connection adjacent or a gap (one gap at most)
   std::vector<Rule::Mode> modes = {Rule::Mode::kAtOnce, Rule::Mode::kRightward, Rule::Mode::kLeftward};
 };
 // Nodes, settings and insertions that suit SmallGrammar, and its six tests.

@@ -53,7 +53,8 @@ void ShareTier(Form* form, const Tree& tree, NodeId node, const std::function<bo
     bool first = true;
     for (InstanceId& daughter : form->instances[mother].daughters) {
       if (form->instances[daughter].node != node) continue;
-      if (first && last != kBreak && last != daughter && ContentOf(*form, last) == ContentOf(*form, daughter) && yes()) {
+      if (first && last != kBreak && last != daughter && ContentOf(*form, last) == ContentOf(*form, daughter) &&
+          yes()) {
         daughter = last;
       }
       first = false;
@@ -77,13 +78,11 @@ void AddSlot(Form* form, const FeatureTree* root) {
   form->instances[slot].daughters.push_back(id);
 }
 
-void AddBoundary(Form* form, Boundary boundary) {
-  form->items.push_back({FormItem::Kind::kBoundary, boundary, 0});
-}
+void AddBoundary(Form* form, Boundary boundary) { form->items.push_back({FormItem::Kind::kBoundary, boundary, 0}); }
 
 Boundary RandomBoundary(Rng& rng) {
-  const Boundary all[] = {Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kClitic,
-                          Boundary::kWord,     Boundary::kPhrase};
+  const Boundary all[] = {Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kMorpheme,
+                          Boundary::kClitic,   Boundary::kWord,     Boundary::kPhrase};
   return all[Below(rng, 6)];
 }
 
@@ -169,7 +168,8 @@ Form RandomForm(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>
     } else if (Chance(rng, options.empty)) {
       AddSlot(&form, nullptr);
     } else {
-      if (before == nullptr || !Chance(rng, options.again)) before = &letters[Below(rng, static_cast<int>(letters.size()))];
+      if (before == nullptr || !Chance(rng, options.again))
+        before = &letters[Below(rng, static_cast<int>(letters.size()))];
       AddSlot(&form, before);
     }
   }

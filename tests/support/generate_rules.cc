@@ -47,7 +47,8 @@ std::vector<NodeId> NodesChanged(const Change& change) {
 
 class RuleMaker {
  public:
-  RuleMaker(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests, const std::vector<FeatureTree>& letters)
+  RuleMaker(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+            const std::vector<FeatureTree>& letters)
       : rng_(rng), grammar_(grammar), tree_(grammar.tree), tests_(tests), letters_(letters) {
     for (std::size_t node = 2; node < tree_.nodes.size(); ++node) {
       if (!UnderContour(tree_, static_cast<NodeId>(node)) && !tree_[node].floating) {
@@ -331,9 +332,10 @@ void NoteEmpty(Pattern* pattern) { pattern->names_empty = MentionsEmpty(*pattern
 
 std::vector<NamedTest> NamedTests(const Grammar& grammar) {
   std::vector<NamedTest> tests;
-  for (const char* bundle : {"", "-syll", "+syll", "+nasal", "-voice", "no Place", "-son", "+voice", "no voice", "Place",
-                             "Coronal", "Labial", "Dorsal", "no back", "back", "+high", "+cont", "-cont", "-son -voice",
-                             "+syll -high", "-syll Place", "ant", "cont"}) {
+  for (const char* bundle :
+       {"",         "-syll", "+syll",       "+nasal",      "-voice",      "no Place", "-son", "+voice",
+        "no voice", "Place", "Coronal",     "Labial",      "Dorsal",      "no back",  "back", "+high",
+        "+cont",    "-cont", "-son -voice", "+syll -high", "-syll Place", "ant",      "cont"}) {
     tests.push_back({bundle, BundleOf(grammar, bundle)});
   }
   for (std::size_t i = 0; i < grammar.inventory.literals.size(); ++i) {

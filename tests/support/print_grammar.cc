@@ -132,7 +132,8 @@ class RulePrinter {
       case Change::Op::kInsert: {
         const Symbol* symbol = SymbolOf(grammar_, change.inserted);
         const std::string content = symbol != nullptr ? "/" + symbol->text + "/" : RootBundle(tree_, change.inserted);
-        return "insert J" + std::to_string(++inserted_) + ":" + content + (change.before ? " before " : " after ") + target;
+        return "insert J" + std::to_string(++inserted_) + ":" + content + (change.before ? " before " : " after ") +
+               target;
       }
       case Change::Op::kDelete:
         return "delete " + target;
@@ -276,8 +277,9 @@ std::string PrintForm(const Grammar& grammar, const Form& form) {
 std::string PrintCase(const Grammar& grammar, const Form& form) {
   const std::string typed = PrintForm(grammar, form);
   std::string text = "-- form: " + Dump(form, grammar.tree) + "\n";
-  text += typed.empty() ? "-- it cannot be typed: it shares more than the roots of long segments, or bears what no symbol is\n"
-                        : "-- save as case.tier, then: tiersmith derive case.tier '" + typed + "' --trace\n";
+  text += typed.empty()
+              ? "-- it cannot be typed: it shares more than the roots of long segments, or bears what no symbol is\n"
+              : "-- save as case.tier, then: tiersmith derive case.tier '" + typed + "' --trace\n";
   return text + PrintGrammar(grammar);
 }
 

@@ -62,7 +62,7 @@ TEST_CASE_METHOD(Fixture, "rows that pass", "[check]") {
   CHECK(Row("ni-lA", {"nilæ"}).passed);
   CHECK(Row("ni-lA", {"nila", "nilæ"}).passed);  // any one passes
   CHECK(Row("tak-lA", {"takla"}).passed);
-  CHECK(Row("ni-ilA", {"niːlæ"}).passed);        // Xː against XX is not compared
+  CHECK(Row("ni-ilA", {"niːlæ"}).passed);  // Xː against XX is not compared
   CHECK(result_.failed == 0);
 }
 
@@ -99,7 +99,8 @@ TEST_CASE_METHOD(Fixture, "a rule that feeds another is the one to name", "[chec
   CHECK(row.explanation.also.empty());
 }
 
-TEST_CASE_METHOD(Fixture, "right at one place and wrong at another: the last rule that changed the segment", "[check]") {
+TEST_CASE_METHOD(Fixture, "right at one place and wrong at another: the last rule that changed the segment",
+                 "[check]") {
   const CheckedRow row = Row("tak-lA-lI", {"taklali"});
   CHECK(row.explanation.which == Case::kLastChange);
   CHECK(RuleOf(row) == "back harmony");

@@ -21,7 +21,8 @@ bool SameStats(const std::vector<SegmentStats>& a, const std::vector<SegmentStat
 }
 
 // Every form of exactly `length` letters over the grammar's symbols, ː and the boundaries, as it would be typed.
-void ForEachForm(const std::vector<std::string>& letters, std::size_t length, const std::function<void(const std::string&)>& visit) {
+void ForEachForm(const std::vector<std::string>& letters, std::size_t length,
+                 const std::function<void(const std::string&)>& visit) {
   std::vector<std::size_t> at(length, 0);
   while (true) {
     std::string form;
@@ -76,10 +77,13 @@ TEST_CASE("cascade: the size of a machine worked out by hand", "[unit]") {
   CHECK(segment.machine.ArcCount() == stats[0].arcs);
   // A nasal takes the voice of what follows: no rule sees place, so the number of consonants makes no difference.
   const auto sizes = [](const std::string& symbols) {
-    Compiled compiled = CompileText("tree {\nroot > ±son ±syll ±nasal ±cont ±cons\nroot > Laryngeal > ±voice\n"
-                                    "root > Place > •Labial •Coronal •Dorsal\nCoronal > ±anterior\nDorsal > ±back ±high ±low\n}\n"
-                                    "segments from \"ipa\" { " + symbols + " }\n"
-                                    "rule \"voice\" { where N:[+nasal] X:[-son] set X [+voice] }");
+    Compiled compiled = CompileText(
+        "tree {\nroot > ±son ±syll ±nasal ±cont ±cons\nroot > Laryngeal > ±voice\n"
+        "root > Place > •Labial •Coronal •Dorsal\nCoronal > ±anterior\nDorsal > ±back ±high ±low\n}\n"
+        "segments from \"ipa\" { " +
+        symbols +
+        " }\n"
+        "rule \"voice\" { where N:[+nasal] X:[-son] set X [+voice] }");
     REQUIRE(compiled.cascade != nullptr);
     const SegmentStats s = compiled.cascade->Stats()[0];
     return std::vector<std::size_t>{s.states, s.arcs, s.classes};
@@ -159,7 +163,7 @@ TEST_CASE("cascade: patterns past every budget are refused", "[unit]") {
 TEST_CASE("cascade: cut in two it derives the same", "[unit]") {
   struct Case {
     const char* ruleset;
-    std::size_t from, to;  // the budgets tried
+    std::size_t from, to;           // the budgets tried
     std::vector<std::string> more;  // forms beside the rows
   };
   const std::vector<Case> cases = {
@@ -215,11 +219,11 @@ TEST_CASE("cascade: a rule that can never apply is warned of, one that can is no
     const char* warned;  // names of rules, a space after each
   };
   const Row rows[] = {
-      {"rule \"a\" { where X:[+nasal -son] delete X }", "a "},              // no such segment
-      {"rule \"a\" { where X:[-son] set X [-son] }", "a "},                 // changes nothing
+      {"rule \"a\" { where X:[+nasal -son] delete X }", "a "},                                  // no such segment
+      {"rule \"a\" { where X:[-son] set X [-son] }", "a "},                                     // changes nothing
       {"rule \"a\" { where X:/h/ delete X } rule \"b\" { where X:/h/ Y:/p/ delete Y }", "b "},  // none is left
       {"rule \"b\" { where X:/h/ Y:/p/ delete Y } rule \"a\" { where X:/h/ delete X }", ""},
-      {"rule \"a\" { where X:/h/ unless X delete X }", "a "},               // always excepted
+      {"rule \"a\" { where X:/h/ unless X delete X }", "a "},                  // always excepted
       {"rule \"a\" { where X:[+nasal] Y:[-son] spread Y.Place to X }", "a "},  // every nasal has a Place already
       {"rule \"a\" { where X:/h/ # delete X }", ""},
   };
@@ -255,15 +259,20 @@ TEST_CASE("cascade: what is refused names a shortest form", "[unit]") {
       // The nasal holds the Place of the stop, so what the sweep does to the stop reaches it.
       {Kind::kReachesOtherRoot, "p t m n a",
        "rule \"s\" { where N:[+nasal] C:[-son] delink N.Place spread C.Place to N }"
-       "rule \"r\" { where C:[-son Coronal] set C [Labial] iterate rightward }", 2},
+       "rule \"r\" { where C:[-son Coronal] set C [Labial] iterate rightward }",
+       2},
       {Kind::kReachesOtherRoot, "p t m a",
        "rule \"s\" { where N:[+nasal] C:[-son] delink N.Place spread C.Place to N }"
-       "rule \"r\" { where C:[-son Coronal] [+syll] # set C [Labial] iterate leftward }", 3},
+       "rule \"r\" { where C:[-son Coronal] [+syll] # set C [Labial] iterate leftward }",
+       3},
   };
   for (const Row& row : rows) {
     CAPTURE(row.rules);
-    Compiled compiled = CompileText("tree {\nroot > ±cons ±son ±syll ±nasal ±cont\nroot > Place > •Labial •Coronal •Dorsal\nDorsal > ±high ±low\n}\n"
-                                    "segments from \"ipa\" { " + std::string(row.symbols) + " }\n" + row.rules);
+    Compiled compiled = CompileText(
+        "tree {\nroot > ±cons ±son ±syll ±nasal ±cont\nroot > Place > •Labial •Coronal •Dorsal\nDorsal > ±high "
+        "±low\n}\n"
+        "segments from \"ipa\" { " +
+        std::string(row.symbols) + " }\n" + row.rules);
     INFO(compiled.loaded.Messages() << compiled.Messages());
     CHECK(compiled.cascade == nullptr);
     const Diagnostic* refused = Find(compiled.diagnostics, row.kind);

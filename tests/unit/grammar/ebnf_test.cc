@@ -78,8 +78,7 @@ class EbnfReader {
   void SkipComment() {
     int depth = 0;
     do {
-      const bool open = text_.compare(position_, 2, "(*") == 0,
-                 close = text_.compare(position_, 2, "*)") == 0;
+      const bool open = text_.compare(position_, 2, "(*") == 0, close = text_.compare(position_, 2, "*)") == 0;
       depth += open - close;
       position_ += open || close ? 2 : 1;
     } while (depth > 0 && position_ < text_.size());
@@ -94,8 +93,8 @@ class EbnfReader {
   }
   Expression Sequence() {
     Expression sequence;
-    while (token_ != "" && token_ != "|" && token_ != ";" && token_ != "]" && token_ != "}" &&
-           token_ != "}-" && token_ != ")")
+    while (token_ != "" && token_ != "|" && token_ != ";" && token_ != "]" && token_ != "}" && token_ != "}-" &&
+           token_ != ")")
       sequence.parts.push_back(Part());
     return sequence;
   }
@@ -157,9 +156,7 @@ std::string Text(const Sentence& sentence) {
 
 class Ebnf {
  public:
-  Ebnf()
-      : productions_(
-            EbnfReader(ReadFile(std::string(TIERSMITH_TEST_SOURCE) + "/grammar/notation.ebnf")).Read()) {
+  Ebnf() : productions_(EbnfReader(ReadFile(std::string(TIERSMITH_TEST_SOURCE) + "/grammar/notation.ebnf")).Read()) {
     Literals(productions_.at("reserved"), reserved_);
     Literals(productions_.at("bundle_word"), bundle_words_);
     for (int round = 0; round < 100; ++round)
@@ -212,9 +209,7 @@ class Ebnf {
     return 0;
   }
 
-  static int Pick(std::mt19937& random, int below) {
-    return static_cast<int>(random() % static_cast<unsigned>(below));
-  }
+  static int Pick(std::mt19937& random, int below) { return static_cast<int>(random() % static_cast<unsigned>(below)); }
 
   void Make(const Expression& e, std::mt19937& random, int depth, Sentence& out, bool& glue) const {
     switch (e.kind) {
@@ -234,8 +229,7 @@ class Ebnf {
         for (const Expression& part : e.parts) Make(part, random, depth, out, glue);
         return;
       case Expression::Kind::kOptional:
-        if (Pick(random, 2) == 0 && Depth(e.parts[0]) < std::max(depth, 1))
-          Make(e.parts[0], random, depth, out, glue);
+        if (Pick(random, 2) == 0 && Depth(e.parts[0]) < std::max(depth, 1)) Make(e.parts[0], random, depth, out, glue);
         return;
       case Expression::Kind::kRepeatOnce:
         Make(e.parts[0], random, depth, out, glue);
@@ -248,8 +242,7 @@ class Ebnf {
         std::vector<const Expression*> open;
         for (const Expression& part : e.parts)
           if (Depth(part) <= std::max(depth, Depth(e))) open.push_back(&part);
-        Make(*open[static_cast<std::size_t>(Pick(random, static_cast<int>(open.size())))], random, depth, out,
-             glue);
+        Make(*open[static_cast<std::size_t>(Pick(random, static_cast<int>(open.size())))], random, depth, out, glue);
         return;
       }
     }
@@ -292,9 +285,7 @@ class Ebnf {
       if (text.find(barred) != std::string::npos) return false;
     return text != "surface";
   }
-  static bool Digits(const std::string& text) {
-    return text.find_first_not_of("0123456789") == std::string::npos;
-  }
+  static bool Digits(const std::string& text) { return text.find_first_not_of("0123456789") == std::string::npos; }
   static bool Between(const std::string& text, const std::string& open, const std::string& close) {
     return text.size() >= open.size() + close.size() && text.compare(0, open.size(), open) == 0 &&
            text.compare(text.size() - close.size(), close.size(), close) == 0;
@@ -325,11 +316,10 @@ class Ebnf {
     switch (e.kind) {
       case Expression::Kind::kLiteral:
       case Expression::Kind::kWords: {
-        if (e.kind == Expression::Kind::kWords && e.text == "glued")
-          return {static_cast<int>(position) * 2 + 1};
+        if (e.kind == Expression::Kind::kWords && e.text == "glued") return {static_cast<int>(position) * 2 + 1};
         if (position >= s.size() || s[position].glued != glue) return {};
-        const bool fits = e.kind == Expression::Kind::kLiteral ? s[position].text == e.text
-                                                               : Fits(e.text, s[position].text);
+        const bool fits =
+            e.kind == Expression::Kind::kLiteral ? s[position].text == e.text : Fits(e.text, s[position].text);
         return fits ? States{(static_cast<int>(position) + 1) * 2} : States{};
       }
       case Expression::Kind::kName: {
@@ -383,7 +373,7 @@ class Ebnf {
 // What the parser says: nothing but constructs of later releases is no error here.
 struct Verdict {
   bool accepted = true;
-  bool by_hand = true;  // rejected only by one of the three checks the EBNF names as made behind the grammar
+  bool by_hand = true;         // rejected only by one of the three checks the EBNF names as made behind the grammar
   bool later_section = false;  // holds a section of a later release, which may say anything
   std::string message;
 };
@@ -395,8 +385,7 @@ Verdict Judge(const std::string& text) {
   Verdict verdict;
   for (const syntax::Top& top : file.tops) {
     const auto* later = std::get_if<syntax::Unsupported>(&top);
-    verdict.later_section =
-        verdict.later_section || (later != nullptr && later->construct.find("rule ") != 0);
+    verdict.later_section = verdict.later_section || (later != nullptr && later->construct.find("rule ") != 0);
   }
   for (const syntax::Unsupported& later : file.unsupported)
     verdict.later_section = verdict.later_section || later.construct == "columns named in braces";
@@ -421,8 +410,8 @@ TEST_CASE("sentences of the EBNF parse", "[unit]") {
   INFO("seed " << kSeed);
   std::mt19937 random(kSeed);
   std::map<std::string, int> made;
-  for (const char* start : {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern",
-                            "rule", "data", "language"}) {
+  for (const char* start :
+       {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data", "language"}) {
     for (int i = 0; i < 2000; ++i) {
       const Sentence sentence = ebnf.Generate(start, random, 4 + i % 12);
       const std::string text = Text(sentence);
@@ -440,8 +429,7 @@ TEST_CASE("spoiled sentences: parser and EBNF agree", "[unit]") {
   INFO("seed " << kSeed + 1);
   std::mt19937 random(kSeed + 1);
   int refused = 0, accepted = 0;
-  for (const char* start :
-       {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data"}) {
+  for (const char* start : {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "data"}) {
     for (int i = 0; i < 4000; ++i) {
       Sentence sentence = ebnf.Generate(start, random, 4 + i % 10);
       if (sentence.size() < 3) continue;
@@ -469,8 +457,7 @@ TEST_CASE("spoiled sentences: parser and EBNF agree", "[unit]") {
       for (const Piece& piece : sentence)
         other_text = other_text || piece.text.find("peak") == 0 || piece.text.find("a = b") == 0;
       for (std::size_t k = 0; k < sentence.size(); ++k)  // `C_` without its number is a name of its own
-        other_text =
-            other_text || (sentence[k].text == "_" && !(k + 1 < sentence.size() && sentence[k + 1].glued));
+        other_text = other_text || (sentence[k].text == "_" && !(k + 1 < sentence.size() && sentence[k + 1].glued));
       if (other_text) continue;
       const std::string text = Text(sentence);
       const Verdict verdict = Judge(text);

@@ -109,8 +109,7 @@ TEST_CASE("errors: one mistake, one message, the right place", "[unit]") {
       {"rule \"r\" { where A:V insert /i/ before A }", Kind::kSyntax, "/"},
       {"rule \"r\" { where A:V insert E:/i/ A }", Kind::kSyntax, "A"},
       {"rule \"r\" { where A:V iterate delete A }", Kind::kSyntax, "delete"},
-      {"rule \"r\" { where A:V iterate rightward iterate leftward delete A }", Kind::kSyntax,
-       "iterate leftward"},
+      {"rule \"r\" { where A:V iterate rightward iterate leftward delete A }", Kind::kSyntax, "iterate leftward"},
       {"data { /a/ b }", Kind::kSyntax, "b"},
       {"data { [b] }", Kind::kSyntax, "["},
       {"data { /a/ [b] 'c' d }", Kind::kSyntax, "d"},
@@ -136,8 +135,7 @@ TEST_CASE("errors: one mistake, one message, the right place", "[unit]") {
       {"tree { slot > Tone: H shared }", Kind::kReservedWord, "shared"},
       {"class V = [+foot]", Kind::kReservedWord, "foot"},
       {"class V = [+a tree]", Kind::kReservedWord, "tree"},
-      {"class V = A or data", Kind::kSyntax,
-       ""},  // a section word ends the class: `data` begins a block without one
+      {"class V = A or data", Kind::kSyntax, ""},  // a section word ends the class: `data` begins a block without one
       {"omit { -mora everywhere }", Kind::kReservedWord, "mora"},
       {"rule \"r\" { where tree A:V delete A }", Kind::kReservedWord, "tree"},
       {"rule \"r\" { where link:V delete A }", Kind::kReservedWord, "link"},
@@ -228,8 +226,7 @@ TEST_CASE("errors: what a later release brings is named and passed", "[unit]") {
       {"rule \"r\" { where A:V delete A derived }", Kind::kNotSupportedYet, "derived"},
       {"rule \"r\" { where A:V delete A sharing blocked }", Kind::kNotSupportedYet, "sharing blocked"},
       {"rule \"r\" { where A:V delete A prefer left }", Kind::kNotSupportedYet, "prefer left"},
-      {"rule \"r\" { where A:V delete A optional 0.3 by word }", Kind::kNotSupportedYet,
-       "optional 0.3 by word"},
+      {"rule \"r\" { where A:V delete A optional 0.3 by word }", Kind::kNotSupportedYet, "optional 0.3 by word"},
       {"rule \"r\" { where A:V delete A repeat 2 }", Kind::kNotSupportedYet, "repeat 2"},
       {"rule \"r\" { where A:V delete A only noun }", Kind::kNotSupportedYet, "only noun"},
       {"rule \"r\" { where A:V delete A except word noun }", Kind::kNotSupportedYet, "except word noun"},
@@ -386,10 +383,12 @@ TEST_CASE("errors: no message names a type of the program", "[unit]") {
   const std::vector<std::string> whole = Tokens(grammar.str());
   REQUIRE(whole.size() > 300);
   // Words that the demo does not use stand in some of the messages too.
-  const char* const others[] = {"optional ", "within ", "only ", "except ", "repeat ", "on ", "copy ", "merge ", "swap ",
-                                "link ", "to ", "floating ", "held ", "by ", "first ", "shared ", "begins ", "as ",
-                                "if ", "unless ", "otherwise ", "prefer ", "sharing ", "α", "{", "}", "(", ")", "[",
-                                "]", "~ ", "* ", "± ", "+", "- ", ": ", ". ", "| ", "= ", "× ", "¬ ", "⟨", "/", "\""};
+  const char* const others[] = {
+      "optional ", "within ", "only ",      "except ", "repeat ",  "on ",    "copy ",   "merge ",  "swap ",
+      "link ",     "to ",     "floating ",  "held ",   "by ",      "first ", "shared ", "begins ", "as ",
+      "if ",       "unless ", "otherwise ", "prefer ", "sharing ", "α",      "{",       "}",       "(",
+      ")",         "[",       "]",          "~ ",      "* ",       "± ",     "+",       "- ",      ": ",
+      ". ",        "| ",      "= ",         "× ",      "¬ ",       "⟨",      "/",       "\""};
   const std::regex mangled("boost|spirit|N5|N9tiersmith|St[0-9]|E_|undefined|@");
   std::mt19937 random(20260);
   std::size_t messages = 0;

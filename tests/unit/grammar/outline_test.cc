@@ -39,10 +39,8 @@ TEST_CASE("outline: sections and entries", "[unit]") {
       {"tree { a > b; c > d }", "tree(){a > b|c > d|}"},
       {"tree {\n  a > b\n  c > d\n    e\n}", "tree(){a > b|c > d\n    e|}"},
       {"tree\n{\n  a > b }", "tree(){a > b|}"},
-      {"omit { -a in {X |\n Y} }",
-       "omit(){-a in {X ||Y|} !}"},  // Y steps back: a new entry, its brace the block's
-      {"omit { -a in {X |\n         Y}\n     -b everywhere }",
-       "omit(){-a in {X |\n         Y}|-b everywhere|}"},
+      {"omit { -a in {X |\n Y} }", "omit(){-a in {X ||Y|} !}"},  // Y steps back: a new entry, its brace the block's
+      {"omit { -a in {X |\n         Y}\n     -b everywhere }", "omit(){-a in {X |\n         Y}|-b everywhere|}"},
       {"segments { a\tb }", "segments(){a\tb|}"},
       {"segments from \"ipa\" [C] { a }", "segments(from \"ipa\" [C]){a|}"},
       {"class V = [a] class C = {b|c}", "class(V = [a])class(C = {b|c})"},

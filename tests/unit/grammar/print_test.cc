@@ -60,9 +60,8 @@ class Maker {
 
   syntax::Name Name() {
     static const std::vector<std::string> names = {
-        "V",      "Place", "back", "N1",   "Tóne", "stem",  "where", "long",    "x2",
-        "C_0",    "a b",   "αx",   "low_", "",     "one",   "on",    "ŋã",      "V1α",
-        "\u00A0", "first", "-",    "a.b",  "x",    "empty", "a{",    "leftward"};
+        "V", "Place", "back", "N1", "Tóne", "stem",   "where", "long", "x2",  "C_0", "a b",   "αx", "low_",
+        "",  "one",   "on",   "ŋã", "V1α",  "\u00A0", "first", "-",    "a.b", "x",   "empty", "a{", "leftward"};
     return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
   }
   syntax::Name Symbol() {
@@ -169,8 +168,7 @@ class Maker {
   syntax::Change Change() {
     syntax::Change change;
     change.kind = static_cast<syntax::Change::Kind>(Below(6));
-    const bool paths =
-        change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
+    const bool paths = change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
     if (paths) change.paths = Several(1, 3, [&] { return Path(); });
     if (change.kind != syntax::Change::Kind::kDelink) change.label = Name();
     if (change.kind == syntax::Change::Kind::kSet || change.kind == syntax::Change::Kind::kFill)
@@ -187,11 +185,9 @@ class Maker {
   syntax::Daughter Daughter(bool last) {
     syntax::Daughter daughter;
     daughter.kind = static_cast<syntax::Daughter::Kind>(Below(4));
-    if (daughter.kind == syntax::Daughter::Kind::kMany && !last)
-      daughter.kind = syntax::Daughter::Kind::kBinary;
+    if (daughter.kind == syntax::Daughter::Kind::kMany && !last) daughter.kind = syntax::Daughter::Kind::kBinary;
     daughter.name = Name();
-    if (daughter.kind == syntax::Daughter::Kind::kMany)
-      daughter.values = Several(1, 3, [&] { return Name(); });
+    if (daughter.kind == syntax::Daughter::Kind::kMany) daughter.values = Several(1, 3, [&] { return Name(); });
     if (Chance(40)) {
       daughter.max = 1 + Below(4);
       daughter.room = Perhaps([&] { return Set(1); });
@@ -221,8 +217,7 @@ class Maker {
     segments.from = Perhaps([&] { return syntax::Name{"ipa", {}}; });
     segments.added = Perhaps([&] { return Bundle(); });
     segments.entries = Several(0, 4, [&] {
-      return syntax::SegmentEntry{
-          Symbol(), Perhaps([&] { return Symbol(); }), Perhaps([&] { return Bundle(); }), {}};
+      return syntax::SegmentEntry{Symbol(), Perhaps([&] { return Symbol(); }), Perhaps([&] { return Bundle(); }), {}};
     });
     segments.without = Several(0, 2, [&] { return Values(); });
     return segments;
@@ -242,8 +237,7 @@ class Maker {
     datum.underlying = Form();
     datum.surfaces.push_back({Chance(50) ? "" : "pul{H} 'lar", false, {}});
     if (Chance(60))
-      datum.gloss =
-          syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
+      datum.gloss = syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
     return datum;
   }
   syntax::Top Top() {
@@ -258,8 +252,7 @@ class Maker {
         return syntax::Diacritics{
             Several(0, 3,
                     [&] {
-                      return syntax::Diacritic{
-                          Symbol(), Bundle(), Perhaps([&] { return Set(2); }), Chance(50), {}};
+                      return syntax::Diacritic{Symbol(), Bundle(), Perhaps([&] { return Set(2); }), Chance(50), {}};
                     }),
             {}};
       case 4:
@@ -395,8 +388,7 @@ TEST_CASE("print: random syntax trees come back the same", "[unit]") {
     INFO("seed " << seed << "\n" << printed << again.messages);
     REQUIRE(again.messages == "");
     const std::string made = Shape(file), read = Shape(again.file);
-    const auto differ =
-        std::mismatch(made.begin(), made.end(), read.begin(), read.end()).first - made.begin();
+    const auto differ = std::mismatch(made.begin(), made.end(), read.begin(), read.end()).first - made.begin();
     INFO("they differ where the tree made reads "
          << made.substr(static_cast<std::size_t>(std::max<std::ptrdiff_t>(differ - 60, 0)), 120));
     REQUIRE((made == read));

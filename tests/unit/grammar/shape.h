@@ -29,39 +29,31 @@ std::string Number(E e) {
   return std::to_string(static_cast<int>(e));
 }
 
-inline std::string Shape(const Feat& f) {
-  return "(feat " + Number(f.kind) + Shape(f.name) + ShapeAll(f.values) + ")";
-}
+inline std::string Shape(const Feat& f) { return "(feat " + Number(f.kind) + Shape(f.name) + ShapeAll(f.values) + ")"; }
 inline std::string Shape(const Bundle& b) { return "(bundle " + ShapeAll(b.feats) + ")"; }
 inline std::string Shape(const Set& s) {
-  return "(set " + Number(s.kind) + Shape(s.bundle) + Shape(s.literal) + Shape(s.name) + ShapeAll(s.args) +
-         ")";
+  return "(set " + Number(s.kind) + Shape(s.bundle) + Shape(s.literal) + Shape(s.name) + ShapeAll(s.args) + ")";
 }
 inline std::string Shape(const Item& i) {
   return "(item " + Number(i.kind) + ShapeMaybe(i.label) + Shape(i.set) + Shape(i.name) + Number(i.boundary) +
-         ShapeMaybe(i.tier) + ShapeAll(i.alternatives) + std::to_string(i.min) + ".." +
-         std::to_string(i.max) + ")";
+         ShapeMaybe(i.tier) + ShapeAll(i.alternatives) + std::to_string(i.min) + ".." + std::to_string(i.max) + ")";
 }
 inline std::string Shape(const Pattern& p) { return ShapeAll(p.items); }
 inline std::string Shape(const Path& p) { return "(path " + Shape(p.label) + Shape(p.node) + ")"; }
 inline std::string Shape(const Change& c) {
-  return "(change " + Number(c.kind) + ShapeAll(c.paths) + Shape(c.label) + Shape(c.bundle) +
-         Shape(c.inserted) + Shape(c.content) + Number(c.before) + ")";
+  return "(change " + Number(c.kind) + ShapeAll(c.paths) + Shape(c.label) + Shape(c.bundle) + Shape(c.inserted) +
+         Shape(c.content) + Number(c.before) + ")";
 }
 inline std::string Shape(const Daughter& d) {
-  return "(daughter " + Number(d.kind) + Shape(d.name) + ShapeAll(d.values) + Number(d.max) +
-         ShapeMaybe(d.room) + Number(d.floating) + Number(d.abstract_) + ")";
+  return "(daughter " + Number(d.kind) + Shape(d.name) + ShapeAll(d.values) + Number(d.max) + ShapeMaybe(d.room) +
+         Number(d.floating) + Number(d.abstract_) + ")";
 }
-inline std::string Shape(const TreeLine& l) {
-  return "(line " + ShapeAll(l.mothers) + ShapeAll(l.daughters) + ")";
-}
+inline std::string Shape(const TreeLine& l) { return "(line " + ShapeAll(l.mothers) + ShapeAll(l.daughters) + ")"; }
 inline std::string Shape(const SegmentEntry& e) {
   return "(segment " + Shape(e.symbol) + ShapeMaybe(e.like) + ShapeMaybe(e.bundle) + ")";
 }
 inline std::string Shape(const ValueRef& v) { return "(value " + Number(v.kind) + Shape(v.name) + ")"; }
-inline std::string Shape(const ValuesIn& v) {
-  return "(values " + ShapeAll(v.values) + ShapeMaybe(v.in) + ")";
-}
+inline std::string Shape(const ValuesIn& v) { return "(values " + ShapeAll(v.values) + ShapeMaybe(v.in) + ")"; }
 inline std::string Shape(const Diacritic& d) {
   return "(diacritic " + Shape(d.symbol) + Shape(d.bundle) + ShapeMaybe(d.on) + Number(d.surface) + ")";
 }
@@ -79,12 +71,9 @@ struct ShapeTop {
   std::string operator()(const Diacritics& t) const { return "(diacritics " + ShapeAll(t.entries) + ")"; }
   std::string operator()(const Omit& t) const { return "(omit " + ShapeAll(t.entries) + ")"; }
   std::string operator()(const Class& t) const { return "(class " + Shape(t.name) + Shape(t.set) + ")"; }
-  std::string operator()(const NamedPattern& t) const {
-    return "(pattern " + Shape(t.name) + Shape(t.pattern) + ")";
-  }
+  std::string operator()(const NamedPattern& t) const { return "(pattern " + Shape(t.name) + Shape(t.pattern) + ")"; }
   std::string operator()(const Rule& t) const {
-    return "(rule " + Shape(t.name) + Shape(t.where) + ShapeAll(t.unless) + ShapeAll(t.changes) +
-           Number(t.mode) + ")";
+    return "(rule " + Shape(t.name) + Shape(t.where) + ShapeAll(t.unless) + ShapeAll(t.changes) + Number(t.mode) + ")";
   }
   std::string operator()(const Data& t) const { return "(data " + ShapeAll(t.rows) + ")"; }
   std::string operator()(const DataFrom& t) const { return "(data-from " + Shape(t.path) + ")"; }

@@ -59,27 +59,27 @@ TEST_CASE("graph: set and fill, mode by mode", "[unit]") {
   const auto fill = [&](Rule::Mode mode) {
     return RuleBuilder(g, "A:[-son no voice] B:[-son +voice]").Fill("A", "+voice").Mode(mode).rule();
   };
-  CheckRows(g, {
-                   {set(kAtOnce), "t t d", "t d d"},
-                   {set(kLeftward), "t t d", "d d d"},
-                   {set(kRightward), "t t d", "t d d"},
-                   {fill(kAtOnce), "t{no voice} t{no voice} d", "t{no voice} d d"},
-                   {fill(kLeftward), "t{no voice} t{no voice} d", "d d d"},
-                   {fill(kRightward), "t{no voice} t{no voice} d", "t{no voice} d d"},
-                   {RuleBuilder(g, "A:[-son]").Fill("A", "+voice"), "t", "t"},
-                   // A bundle: values, class nodes on the way, one taken away.
-                   {RuleBuilder(g, "A:[-son]").Set("A", "no Labial Coronal -ant"), "p", "t{-ant}"},
-                   {RuleBuilder(g, "A:[+nasal]").Fill("A", "Coronal +ant"), "N m", "n m{Coronal +ant}"},
-                   {RuleBuilder(g, "A:[+nasal]").Fill("A", "Coronal"), "N", "n{no ant}"},
-                   {RuleBuilder(g, "A:[+nasal]").Set("A", "Coronal"), "n", "n"},
-                   {RuleBuilder(g, "A:[-son]").Set("A", "no Place"), "t p", "t{no Place} p{no Place}"},
-                   // A contour, in the order given; what has no room for it is blocked.
-                   {RuleBuilder(g, "A:[-son]").Set("A", "-cont +cont"), "t c", "c c"},
-                   {RuleBuilder(g, "A:[+son]").Set("A", "-cont +cont"), "a", "a", "", "capacity"},
-                   // A slot without a root gets one.
-                   {RuleBuilder(g, "A:empty").Set("A", "+voice"), "_ a",
-                    "E{no cons no son no syll no nasal no cont} a"},
-               });
+  CheckRows(g,
+            {
+                {set(kAtOnce), "t t d", "t d d"},
+                {set(kLeftward), "t t d", "d d d"},
+                {set(kRightward), "t t d", "t d d"},
+                {fill(kAtOnce), "t{no voice} t{no voice} d", "t{no voice} d d"},
+                {fill(kLeftward), "t{no voice} t{no voice} d", "d d d"},
+                {fill(kRightward), "t{no voice} t{no voice} d", "t{no voice} d d"},
+                {RuleBuilder(g, "A:[-son]").Fill("A", "+voice"), "t", "t"},
+                // A bundle: values, class nodes on the way, one taken away.
+                {RuleBuilder(g, "A:[-son]").Set("A", "no Labial Coronal -ant"), "p", "t{-ant}"},
+                {RuleBuilder(g, "A:[+nasal]").Fill("A", "Coronal +ant"), "N m", "n m{Coronal +ant}"},
+                {RuleBuilder(g, "A:[+nasal]").Fill("A", "Coronal"), "N", "n{no ant}"},
+                {RuleBuilder(g, "A:[+nasal]").Set("A", "Coronal"), "n", "n"},
+                {RuleBuilder(g, "A:[-son]").Set("A", "no Place"), "t p", "t{no Place} p{no Place}"},
+                // A contour, in the order given; what has no room for it is blocked.
+                {RuleBuilder(g, "A:[-son]").Set("A", "-cont +cont"), "t c", "c c"},
+                {RuleBuilder(g, "A:[+son]").Set("A", "-cont +cont"), "a", "a", "", "capacity"},
+                // A slot without a root gets one.
+                {RuleBuilder(g, "A:empty").Set("A", "+voice"), "_ a", "E{no cons no son no syll no nasal no cont} a"},
+            });
 }
 
 TEST_CASE("graph: insert, mode by mode", "[unit]") {

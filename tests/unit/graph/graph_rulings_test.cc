@@ -35,9 +35,8 @@ TEST_CASE("graph: boundaries between and beside matched slots", "[unit]") {
   const Grammar g = SmallGrammar();
   const auto rule = [&](const char* where) { return RuleBuilder(g, where).Set("B", "+voice").rule(); };
   const Rule plain = rule("A:[-syll] B:[-syll]"), morpheme = rule("A:[-syll] - B:[-syll]"),
-             clitic = rule("A:[-syll] = B:[-syll]"), word = rule("A:[-syll] # B:[-syll]"),
-             final = rule("B:[-syll] -"), word_final = rule("B:[-syll] #"), initial = rule("# B:[-syll]"),
-             phrase = rule("B:[-syll] ‖");
+             clitic = rule("A:[-syll] = B:[-syll]"), word = rule("A:[-syll] # B:[-syll]"), final = rule("B:[-syll] -"),
+             word_final = rule("B:[-syll] #"), initial = rule("# B:[-syll]"), phrase = rule("B:[-syll] ‖");
   CheckRows(g, {
                    {plain, "p - t", "p - d"},
                    {plain, "p = t", "p = d"},
@@ -108,7 +107,8 @@ TEST_CASE("graph: gaps", "[unit]") {
 
 TEST_CASE("graph: unless", "[unit]") {
   const Grammar g = SmallGrammar();
-  const Rule rule = RuleBuilder(g, "A:[-son] B:[]").Set("A", "+voice").Unless("A:[Labial]").Unless("[+nasal] A B:[+syll]");
+  const Rule rule =
+      RuleBuilder(g, "A:[-son] B:[]").Set("A", "+voice").Unless("A:[Labial]").Unless("[+nasal] A B:[+syll]");
   CheckRows(g, {
                    {rule, "t a", "d a"},
                    {rule, "p a", "p a"},
@@ -224,30 +224,30 @@ TEST_CASE("graph: requests that meet on one mother", "[unit]") {
   either.kind = PatternItem::Kind::kGroup;
   either.alternatives = {off.where, mirrored};
   off.where.items = {either};
-  CheckRows(g,
-            {
-                // From opposite sides into room for both: both.
-                {sides, "n t{no cont} i", "n{cont:1} t{-cont +cont cont:1 cont/2:2} i{cont:2}"},
-                {sides, "a t{no cont} i", "", "ambiguous"},
-                {sides, "n a{no cont} i", "", "ambiguous"},
-                // One instance from both sides is one line.
-                {sides, "a{cont:1} t{no cont} i{cont:1}", "a{cont:1} s{cont:1} i{cont:1}"},
-                {contents, "n t", "n t{-ant}"},
-                {contents, "n{no ant Coronal:1} t{no ant Coronal:1}", "", "ambiguous"},
-                {RuleBuilder(g, "A:[voice] B:[-son]").Spread("A.voice", "B").Delink("B.voice").Set("B", "-voice"),
-                 "a d", "", "ambiguous"},
-                // Between the halves of a long nasal nothing is asked (what is shared already is not spread), so nothing
-                // stands against the line from p, nor against the cut of what the root had.
-                {nasal, "n{root:1} n{root:1} p", "m{root:1 Place:1} m{root:1} p{Place:1}"},
-                {nasal, "n{Place:1} n{Place:1} p", "n m{Place:1} p{Place:1}"},
-                {nasal, "m{root:1} m{root:1} N", "m{root:1} m{root:1} N"},
-                {lose, "n{root:1} n{root:1} N", "N{root:1} N{root:1} N"},
-                // Two changes, each fine alone, whose lines would cross each other.
-                {off, "p N N", "p{Place:1} N m{Place:1}"},
-                {off, "p N N t", "", "ambiguous"},
-                {off, "p N E N t", "", "ambiguous"},
-                {off, "p N E N E t", "p{Place:1} N E{Labial Place:1} n{Place:2} E t{Place:2}"},
-            });
+  CheckRows(
+      g, {
+             // From opposite sides into room for both: both.
+             {sides, "n t{no cont} i", "n{cont:1} t{-cont +cont cont:1 cont/2:2} i{cont:2}"},
+             {sides, "a t{no cont} i", "", "ambiguous"},
+             {sides, "n a{no cont} i", "", "ambiguous"},
+             // One instance from both sides is one line.
+             {sides, "a{cont:1} t{no cont} i{cont:1}", "a{cont:1} s{cont:1} i{cont:1}"},
+             {contents, "n t", "n t{-ant}"},
+             {contents, "n{no ant Coronal:1} t{no ant Coronal:1}", "", "ambiguous"},
+             {RuleBuilder(g, "A:[voice] B:[-son]").Spread("A.voice", "B").Delink("B.voice").Set("B", "-voice"), "a d",
+              "", "ambiguous"},
+             // Between the halves of a long nasal nothing is asked (what is shared already is not spread), so nothing
+             // stands against the line from p, nor against the cut of what the root had.
+             {nasal, "n{root:1} n{root:1} p", "m{root:1 Place:1} m{root:1} p{Place:1}"},
+             {nasal, "n{Place:1} n{Place:1} p", "n m{Place:1} p{Place:1}"},
+             {nasal, "m{root:1} m{root:1} N", "m{root:1} m{root:1} N"},
+             {lose, "n{root:1} n{root:1} N", "N{root:1} N{root:1} N"},
+             // Two changes, each fine alone, whose lines would cross each other.
+             {off, "p N N", "p{Place:1} N m{Place:1}"},
+             {off, "p N N t", "", "ambiguous"},
+             {off, "p N E N t", "", "ambiguous"},
+             {off, "p N E N E t", "p{Place:1} N E{Labial Place:1} n{Place:2} E t{Place:2}"},
+         });
 }
 
 TEST_CASE("graph: the order of changes, and deletion", "[unit]") {
@@ -270,29 +270,29 @@ TEST_CASE("graph: sweeps", "[unit]") {
   const auto rule = [&](const char* where, Rule::Mode mode) {
     return RuleBuilder(g, where).Set("A", "-ant").Mode(mode).rule();
   };
-  CheckRows(g, {
-                   // A change that reaches another root has no result, but a vacuous one reaches nobody.
-                   {rule("A:[+nasal]", kRightward), "n{Place:1} t{Place:1}", "", "reaches"},
-                   {rule("A:[+nasal]", kRightward), "n{-ant Place:1} t{-ant Place:1}", "n{-ant Place:1} t{-ant Place:1}"},
-                   {rule("A:[+nasal]", kLeftward), "n{ant:1} t{ant:1}", "n{-ant} t"},
-                   {RuleBuilder(g, "A:[+nasal]").Delink("A.Coronal").Mode(kRightward), "n{Place:1} t{Place:1}", "",
-                    "reaches"},
-                   {RuleBuilder(g, "A:[+nasal]").Delink("A.Place").Mode(kRightward), "n{Place:1} t{Place:1}", "N t"},
-                   // A geminate is visited once, with both its slots.
-                   {rule("[+syll] A:[-son]", kRightward), "a t{root:1} t{root:1}", "a t{-ant root:1} t{root:1}"},
-                   {rule("[+syll] A:[-son]", kLeftward), "a t{root:1} t{root:1}", "a t{-ant root:1} t{root:1}"},
-                   {RuleBuilder(g, "A:[-son]").Delete("A").Mode(kRightward), "a t{root:1} t{root:1} a", "a a"},
-                   // A slot without a root is visited too, and what it gets is there for the next.
-                   {RuleBuilder(g, "A:[+syll] B:empty").Spread("A.root", "B").Mode(kRightward), "a _ _",
-                    "a{root:1} a{root:1} a{root:1}"},
-                   {RuleBuilder(g, "A:[+syll] B:empty").Spread("A.root", "B").Mode(kLeftward), "a _ _",
-                    "a{root:1} a{root:1} _"},
-                   // Harmony step by step, over consonants that bear no Dorsal.
-                   {RuleBuilder(g, "A:[+syll] ... B:[+syll no back]").Spread("A.back", "B").Mode(kRightward),
-                    "i t a{no back} p a{no back}", "i{back:1} t a{-back back:1} p a{-back back:1}"},
-                   {RuleBuilder(g, "A:[+syll] ... B:[+syll no back]").Spread("A.back", "B").Mode(kRightward),
-                    "i k a{no back}", "i k a{no back}"},
-               });
+  CheckRows(
+      g,
+      {
+          // A change that reaches another root has no result, but a vacuous one reaches nobody.
+          {rule("A:[+nasal]", kRightward), "n{Place:1} t{Place:1}", "", "reaches"},
+          {rule("A:[+nasal]", kRightward), "n{-ant Place:1} t{-ant Place:1}", "n{-ant Place:1} t{-ant Place:1}"},
+          {rule("A:[+nasal]", kLeftward), "n{ant:1} t{ant:1}", "n{-ant} t"},
+          {RuleBuilder(g, "A:[+nasal]").Delink("A.Coronal").Mode(kRightward), "n{Place:1} t{Place:1}", "", "reaches"},
+          {RuleBuilder(g, "A:[+nasal]").Delink("A.Place").Mode(kRightward), "n{Place:1} t{Place:1}", "N t"},
+          // A geminate is visited once, with both its slots.
+          {rule("[+syll] A:[-son]", kRightward), "a t{root:1} t{root:1}", "a t{-ant root:1} t{root:1}"},
+          {rule("[+syll] A:[-son]", kLeftward), "a t{root:1} t{root:1}", "a t{-ant root:1} t{root:1}"},
+          {RuleBuilder(g, "A:[-son]").Delete("A").Mode(kRightward), "a t{root:1} t{root:1} a", "a a"},
+          // A slot without a root is visited too, and what it gets is there for the next.
+          {RuleBuilder(g, "A:[+syll] B:empty").Spread("A.root", "B").Mode(kRightward), "a _ _",
+           "a{root:1} a{root:1} a{root:1}"},
+          {RuleBuilder(g, "A:[+syll] B:empty").Spread("A.root", "B").Mode(kLeftward), "a _ _", "a{root:1} a{root:1} _"},
+          // Harmony step by step, over consonants that bear no Dorsal.
+          {RuleBuilder(g, "A:[+syll] ... B:[+syll no back]").Spread("A.back", "B").Mode(kRightward),
+           "i t a{no back} p a{no back}", "i{back:1} t a{-back back:1} p a{-back back:1}"},
+          {RuleBuilder(g, "A:[+syll] ... B:[+syll no back]").Spread("A.back", "B").Mode(kRightward), "i k a{no back}",
+           "i k a{no back}"},
+      });
 }
 
 TEST_CASE("graph: quantities count in every way", "[unit]") {

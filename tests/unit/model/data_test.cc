@@ -14,7 +14,9 @@ namespace fs = std::filesystem;
 // A folder that is there while the test runs.
 class Folder {
  public:
-  Folder() : path_(fs::temp_directory_path() / ("model-data-" + std::to_string(getpid()))) { fs::create_directories(path_); }
+  Folder() : path_(fs::temp_directory_path() / ("model-data-" + std::to_string(getpid()))) {
+    fs::create_directories(path_);
+  }
   ~Folder() { fs::remove_all(path_); }
   std::string Write(const std::string& name, const std::string& text) const {
     std::ofstream(path_ / name, std::ios::binary) << text;
@@ -42,13 +44,17 @@ TEST_CASE("data: rows in the grammar", "[unit]") {
 
 TEST_CASE("data: tables", "[unit]") {
   const Folder folder;
-  struct Row { const char* table; const char* expected; };
+  struct Row {
+    const char* table;
+    const char* expected;
+  };
   const Row rows[] = {
       {"underlying\tsurface\tgloss\tsource\nta\tta\tx\ty\n", "ta>ta 'x' y;"},
-      {"source\tsurface\tnote\tunderlying\ny\tta\tz\tat\n", "at>ta '' y;"},             // by name, any order
-      {"\xEF\xBB\xBFunderlying\tsurface\r\nta\tta\r\n\r\nna\tna\r\n", "ta>ta '' ;na>na '' ;"},  // byte order mark, CRLF, blank line
+      {"source\tsurface\tnote\tunderlying\ny\tta\tz\tat\n", "at>ta '' y;"},  // by name, any order
+      {"\xEF\xBB\xBFunderlying\tsurface\r\nta\tta\r\n\r\nna\tna\r\n",
+       "ta>ta '' ;na>na '' ;"},  // byte order mark, CRLF, blank line
       {"underlying\tsurface\nta\tta ~ tat\n", "ta>ta|tat '' ;"},
-      {"underlying\tsurface\nta\tta", "ta>ta '' ;"},                                      // no last line end
+      {"underlying\tsurface\nta\tta", "ta>ta '' ;"},  // no last line end
       {"underlying\tsurface\tgloss\nta\tta\n", "error 2: line 2 has 2 cells, the heading has 3 @ ta\tta"},
       {"underlying\tsurface\nta\tta\tx\n", "error 2: line 2 has 3 cells, the heading has 2 @ ta\tta\tx"},
       {"underlying\tsurface\nta\t\n", "error 2: line 2 has no surface form @ ta\t"},
@@ -121,8 +127,9 @@ TEST_CASE("data: files that are not there or not UTF-8", "[unit]") {
 
 TEST_CASE("data: the five published rulesets load, each row with its source", "[unit]") {
   // Rows as they were published; whether the rules derive them is tested in tests/published/.
-  for (const auto& [name, rows] : {std::pair("spanish-nasal-place", 25), std::pair("sanskrit-nati", 25), std::pair("turkish-vowel-harmony", 25),
-                                   std::pair("finnish-vowel-harmony", 25), std::pair("english-plural", 20)}) {
+  for (const auto& [name, rows] :
+       {std::pair("spanish-nasal-place", 25), std::pair("sanskrit-nati", 25), std::pair("turkish-vowel-harmony", 25),
+        std::pair("finnish-vowel-harmony", 25), std::pair("english-plural", 20)}) {
     CAPTURE(name);
     const std::string folder = FindLibrary() + "/" + name + "/";
     auto sources = std::make_shared<SourceMap>();

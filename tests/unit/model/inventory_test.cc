@@ -5,7 +5,9 @@
 namespace tiersmith::testing {
 namespace {
 
-std::string Full(const Grammar& grammar, const std::string& symbol) { return Show(SymbolNamed(grammar, symbol).full, grammar.tree); }
+std::string Full(const Grammar& grammar, const std::string& symbol) {
+  return Show(SymbolNamed(grammar, symbol).full, grammar.tree);
+}
 std::string Underlying(const Grammar& grammar, const std::string& symbol) {
   return Show(SymbolNamed(grammar, symbol).underlying, grammar.tree);
 }
@@ -36,7 +38,10 @@ archisegments { N = n [no Place]  I = i [no back] }
 allophones { ŋ  m = p [+son +nasal +voice] }
 )");
   const Grammar& g = *loaded.grammar;
-  struct Row { const char* symbol; const char* content; };
+  struct Row {
+    const char* symbol;
+    const char* content;
+  };
   const Row rows[] = {
       {"p", "root[-son -syll -nasal -cont Laryngeal[-voice] Place[•Labial]]"},
       {"b", "root[-son -syll -nasal -cont Laryngeal[+voice] Place[•Labial]]"},
@@ -86,7 +91,7 @@ diacritics { ◌ʷ [Labial round]  ◌̃ [+nasal] on [+syll]  ⁿ◌ [+voice] su
   CHECK_FALSE(SymbolNamed(g, "ⁿt").in_underlying);  // `surface`
   CHECK_FALSE(SymbolNamed(g, "zʷ").in_underlying);  // from an allophone
   CHECK(SymbolNamed(g, "Tʷ").in_underlying);
-  CHECK_FALSE(SymbolNamed(g, "Tʷ").completes);  // from an archisegment
+  CHECK_FALSE(SymbolNamed(g, "Tʷ").completes);      // from an archisegment
   CHECK_FALSE(g.inventory.Find("t̃").has_value());   // `on [+syll]`
   CHECK_FALSE(g.inventory.Find("uʷ").has_value());  // it adds nothing there
   CHECK_FALSE(g.inventory.Find("t˖").has_value());  // no Dorsal to hang it from
@@ -129,18 +134,22 @@ omit { ±voice in Son   -voice in [-son]   -cont everywhere   -back in /i/ }
   // Nothing is taken from a contour.
   CHECK(Underlying(g, "c") == "root[-son -syll -nasal -cont +cont Place[•Coronal]]");
 
-  struct Row { const char* symbol; std::initializer_list<const char*> less; const char* spelled; };
+  struct Row {
+    const char* symbol;
+    std::initializer_list<const char*> less;
+    const char* spelled;
+  };
   const Row rows[] = {
       {"t", {}, "t"},
       {"t", {"voice"}, "t"},
-      {"d", {"voice"}, "t"},          // delinking is devoicing where omit lists the value
+      {"d", {"voice"}, "t"},  // delinking is devoicing where omit lists the value
       {"t", {"voice", "cont"}, "t"},
       {"n", {"voice"}, "n"},
-      {"n", {"nasal"}, ""},           // omit does not list it: no symbol
+      {"n", {"nasal"}, ""},  // omit does not list it: no symbol
       {"i", {"back"}, "i"},
       {"u", {"back"}, ""},
-      {"c", {"cont"}, "t"},           // both parts of the contour gone, -cont is completed
-      {"n", {"Place"}, ""},           // completion never chooses archisegments
+      {"c", {"cont"}, "t"},  // both parts of the contour gone, -cont is completed
+      {"n", {"Place"}, ""},  // completion never chooses archisegments
       {"t", {"Coronal"}, ""},
   };
   for (const Row& row : rows) {
@@ -239,7 +248,8 @@ TEST_CASE("inventory: symbols that fall together", "[unit]") {
   REQUIRE(first.also.size() == 1);
   CHECK(tree.sources->text(0).substr(first.also[0].first.begin, 1) == "t");
 
-  const Loaded omit = Load("tree { root > ±cons ±son ±voice }\nsegments from \"ipa\" { t d n }\nomit { ±voice in [-son] }");
+  const Loaded omit =
+      Load("tree { root > ±cons ±son ±voice }\nsegments from \"ipa\" { t d n }\nomit { ±voice in [-son] }");
   REQUIRE(omit.diagnostics.all().size() == 1);
   CHECK(omit.diagnostics.all()[0].kind == Kind::kSymbolsFallTogether);
   CHECK(omit.diagnostics.all()[0].message == "'t' and 'd' fall together once `omit` has taken its part");

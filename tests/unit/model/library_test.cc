@@ -25,7 +25,10 @@ TEST_CASE("ipa: the values the notation fixes", "[unit]") {
   const Loaded loaded = LoadOrFail(std::string(kFullTree) + "segments from \"ipa\" { p a }");
   const Tree& tree = loaded.grammar->tree;
   Library library = LoadIpa();
-  struct Row { const char* symbols; const char* bundle; };
+  struct Row {
+    const char* symbols;
+    const char* bundle;
+  };
   const Row rows[] = {
       // Contested values.
       {"h ɦ", "-cons -son +cont sg no Place"},
@@ -102,7 +105,8 @@ TEST_CASE("ipa: what every segment, obstruent, Coronal and Dorsal has", "[unit]"
     if (Bears(content, *tree.Find("Coronal"))) CHECK(both(content, {"anterior", "distributed"}) == "");
     if (Bears(content, *tree.Find("Dorsal"))) CHECK(both(content, {"high", "low", "back"}) == "");
     // Affricates and only they are contours of the chart.
-    CHECK((CountOf(content, *tree.Find("cont")) == 2) == (library.Find(symbol)->name.find("affricate") != std::string::npos));
+    CHECK((CountOf(content, *tree.Find("cont")) == 2) ==
+          (library.Find(symbol)->name.find("affricate") != std::string::npos));
     Form form;
     form.instances.push_back({kSlotNode, 0, {}});
     const InstanceId root = AddContent(form, content);
@@ -123,9 +127,11 @@ TEST_CASE("ipa: features hang where the tree hangs them", "[unit]") {
   CHECK(content("root > ±cons Laryngeal\n Laryngeal > voice", "t") == "root[+cons]");
   // Binary here, bare there: - on every other segment that bears its mother.
   CHECK(content("root > ±cons ±round", "i") == "root[-cons -round]");
-  CHECK(content("root > ±cons Place\n Place > •Labial •Dorsal\n Labial > ±round", "p") == "root[+cons Place[•Labial[-round]]]");
+  CHECK(content("root > ±cons Place\n Place > •Labial •Dorsal\n Labial > ±round", "p") ==
+        "root[+cons Place[•Labial[-round]]]");
   CHECK(content("root > ±cons Place\n Place > •Labial •Dorsal\n Labial > ±round", "i") == "root[-cons Place[•Dorsal]]");
-  CHECK(content("root > ±cons Place\n Place > •Labial •Dorsal\n Labial > ±round", "u") == "root[-cons Place[•Labial[+round] •Dorsal]]");
+  CHECK(content("root > ±cons Place\n Place > •Labial •Dorsal\n Labial > ±round", "u") ==
+        "root[-cons Place[•Labial[+round] •Dorsal]]");
   // A class node that nothing is left under goes, one that stands on its own stays.
   CHECK(content("root > ±cons Place\n Place > Coronal\n Coronal > crunchy", "t") == "root[+cons]");
   CHECK(content("root > ±cons ×2", "t") == "root[+cons]");

@@ -38,7 +38,10 @@ std::string Tokens(const Grammar& g, const Reader& reader, const std::string& te
         result += "ː";
         break;
       case Token::Kind::kBoundary:
-        result += token.boundary == Boundary::kMorpheme ? "-" : token.boundary == Boundary::kClitic ? "=" : token.boundary == Boundary::kWord ? "#" : "‖";
+        result += token.boundary == Boundary::kMorpheme ? "-"
+                  : token.boundary == Boundary::kClitic ? "="
+                  : token.boundary == Boundary::kWord   ? "#"
+                                                        : "‖";
         break;
     }
   }
@@ -46,7 +49,10 @@ std::string Tokens(const Grammar& g, const Reader& reader, const std::string& te
 }
 
 TEST_CASE("text: normalisation", "[unit]") {
-  struct Row { const char* typed; const char32_t* normal; };
+  struct Row {
+    const char* typed;
+    const char32_t* normal;
+  };
   const Row rows[] = {
       {"g", U"\u0261"},
       {"a:", U"a\u02D0"},
@@ -56,7 +62,7 @@ TEST_CASE("text: normalisation", "[unit]") {
       {"\u02A6", U"t\u0361s"},
       {"\u02A7", U"t\u0361\u0283"},
       {"\u02A4", U"d\u0361\u0292"},
-      {"\u00E3", U"a\u0303"},              // one code point or two
+      {"\u00E3", U"a\u0303"},  // one code point or two
       {"a\u0303", U"a\u0303"},
       {"\u00E7", U"c\u0327"},
       {"n\u0303\u032A", U"n\u032A\u0303"},  // canonical order: below (220) before above (230)
@@ -74,14 +80,18 @@ TEST_CASE("text: reading", "[unit]") {
   const Loaded loaded = LoadOrFail(std::string(kFullTree) + kGrammar);
   const Grammar& g = *loaded.grammar;
   const Reader reader(g);
-  struct Row { const char* text; Reader::Side side; const char* tokens; };
+  struct Row {
+    const char* text;
+    Reader::Side side;
+    const char* tokens;
+  };
   const Row rows[] = {
       {"pata", kUnderlying, "p a t a"},
       {"pat-a=ta#pa", kUnderlying, "p a t - a = t a # p a"},
       {"pa  ta", kSurface, "p a # t a"},
       {"pa||ta‖", kUnderlying, "p a ‖ t a ‖"},
-      {"t͡ʃʃ", kUnderlying, "t͡ʃ ʃ"},        // longest first
-      {"tʃ", kUnderlying, "t ʃ"},            // no tie: two symbols
+      {"t͡ʃʃ", kUnderlying, "t͡ʃ ʃ"},  // longest first
+      {"tʃ", kUnderlying, "t ʃ"},    // no tie: two symbols
       {"t͜sʦ", kUnderlying, "t͡s t͡s"},
       {"ga", kUnderlying, "ɡ a"},
       {"ta:", kUnderlying, "t a ː"},
@@ -91,10 +101,10 @@ TEST_CASE("text: reading", "[unit]") {
       {"\u00E3", kUnderlying, "ã"},
       {"ã", kUnderlying, "ã"},
       {"ãː", kUnderlying, "ã ː"},
-      {"aː\u0303", kUnderlying, "ã ː"},      // marks may stand behind the length sign
-      {"tˤʷtʷˤ", kUnderlying, "tʷˤ tʷˤ"},    // a set
+      {"aː\u0303", kUnderlying, "ã ː"},    // marks may stand behind the length sign
+      {"tˤʷtʷˤ", kUnderlying, "tʷˤ tʷˤ"},  // a set
       {"t̪ʰtʰ̪", kUnderlying, "t̪ʰ t̪ʰ"},
-      {"ça", kUnderlying, "ç a"},            // c with cedilla, decomposed or not
+      {"ça", kUnderlying, "ç a"},  // c with cedilla, decomposed or not
       {"", kUnderlying, ""},
       // What cannot be read.
       {"paŋa", kUnderlying, "error at 2+2: 'ŋ' does not stand in underlying forms: it is surface only"},
@@ -118,12 +128,27 @@ TEST_CASE("text: reading", "[unit]") {
 }
 
 TEST_CASE("text: the nearest symbol is named", "[unit]") {
-  const Loaded loaded = LoadOrFail(std::string(kFullTree) + "segments from \"ipa\" { p t k n s i u a ɡ ø }\nsegments { o = o [-tense] }");
+  const Loaded loaded =
+      LoadOrFail(std::string(kFullTree) + "segments from \"ipa\" { p t k n s i u a ɡ ø }\nsegments { o = o [-tense] }");
   const Reader reader(*loaded.grammar);
-  struct Row { const char* text; const char* nearest; };
-  const Row rows[] = {{"T", "t"}, {"ŧ", "t"}, {"ɳ", "n"}, {"ö", ""}, {"Ø", "ø"}, {"☃", ""},
-                      // By features (the chart's descriptions): the only nasal; the other bilabial stop; the other open vowel.
-                      {"ŋ", "n"}, {"m", "n"}, {"b", "p"}, {"ɑ", "a"}, {"ʃ", "s"}, {"c", "k"}};
+  struct Row {
+    const char* text;
+    const char* nearest;
+  };
+  const Row rows[] = {
+      {"T", "t"},
+      {"ŧ", "t"},
+      {"ɳ", "n"},
+      {"ö", ""},
+      {"Ø", "ø"},
+      {"☃", ""},
+      // By features (the chart's descriptions): the only nasal; the other bilabial stop; the other open vowel.
+      {"ŋ", "n"},
+      {"m", "n"},
+      {"b", "p"},
+      {"ɑ", "a"},
+      {"ʃ", "s"},
+      {"c", "k"}};
   for (const Row& row : rows) {
     std::vector<Token> tokens;
     TextError error;
@@ -136,15 +161,18 @@ TEST_CASE("text: the nearest symbol is named", "[unit]") {
 }
 
 TEST_CASE("text: more diacritics than two are refused by name", "[unit]") {
-  const Loaded loaded = LoadOrFail(std::string(kFullTree) +
-                                   "segments from \"ipa\" { t a }\ndiacritics { ◌ʷ [Labial round]  ◌ˤ [rtr]  ◌ʰ [sg] }");
+  const Loaded loaded = LoadOrFail(
+      std::string(kFullTree) + "segments from \"ipa\" { t a }\ndiacritics { ◌ʷ [Labial round]  ◌ˤ [rtr]  ◌ʰ [sg] }");
   const Reader reader(*loaded.grammar);
   CHECK(Tokens(*loaded.grammar, reader, "tʷˤ", kUnderlying) == "tʷˤ");
-  CHECK(Tokens(*loaded.grammar, reader, "tʰʷˤ", kUnderlying) == "error at 5+2: 'tʰʷˤ' carries more than two diacritics");
+  CHECK(Tokens(*loaded.grammar, reader, "tʰʷˤ", kUnderlying) ==
+        "error at 5+2: 'tʰʷˤ' carries more than two diacritics");
 }
 
 TEST_CASE("text: forms", "[unit]") {
-  const Loaded loaded = LoadOrFail(std::string(kSmallTree) + "segments from \"ipa\" { t a }\narchisegments { A = a [no back] }\nomit { -voice in [-son] }");
+  const Loaded loaded =
+      LoadOrFail(std::string(kSmallTree) +
+                 "segments from \"ipa\" { t a }\narchisegments { A = a [no back] }\nomit { -voice in [-son] }");
   const Grammar& g = *loaded.grammar;
   const Reader reader(g);
   const auto form = [&](const char* text, Reader::Side side) {
@@ -186,13 +214,17 @@ TEST_CASE("text: forms", "[unit]") {
 }
 
 TEST_CASE("text: comparison of surface forms", "[unit]") {
-  struct Row { const char* a; const char* b; bool same; };
+  struct Row {
+    const char* a;
+    const char* b;
+    bool same;
+  };
   const Row rows[] = {
-      {"atːa", "atta", true},    {"at:a", "atta", true},       {"aːt", "aat", true},       {"ata", "atta", false},
-      {"ã", "\u00E3", true},     {"gata", "ɡata", true},       {"t͡ʃː", "t͡ʃt͡ʃ", true},     {"t͡ʃː", "t͡ʃʃ", false},
-      {"tʰː", "tʰtʰ", true},     {"t̪ʰ", "tʰ̪", true},           {"aː̃", "ãː", true},         {"ãã", "ãː", true},
-      {"pa-ta", "pata", true},   {"pa ta", "pata", true},      {"ⁿdː", "ⁿdⁿd", true},      {"tʼ", "t'", true},
-      {"ʦa", "t͜sa", true},       {"pa", "ba", false},          {"paː", "pa", false},       {"", "", true},
+      {"atːa", "atta", true},  {"at:a", "atta", true},  {"aːt", "aat", true},  {"ata", "atta", false},
+      {"ã", "\u00E3", true},   {"gata", "ɡata", true},  {"t͡ʃː", "t͡ʃt͡ʃ", true}, {"t͡ʃː", "t͡ʃʃ", false},
+      {"tʰː", "tʰtʰ", true},   {"t̪ʰ", "tʰ̪", true},      {"aː̃", "ãː", true},    {"ãã", "ãː", true},
+      {"pa-ta", "pata", true}, {"pa ta", "pata", true}, {"ⁿdː", "ⁿdⁿd", true}, {"tʼ", "t'", true},
+      {"ʦa", "t͜sa", true},     {"pa", "ba", false},     {"paː", "pa", false},  {"", "", true},
   };
   for (const Row& row : rows) {
     CAPTURE(row.a, row.b);

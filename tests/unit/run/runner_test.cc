@@ -101,7 +101,8 @@ TEST_CASE("runner: a tree without a symbol at the end", "[unit]") {
 TEST_CASE("runner: nothing left, nothing there", "[unit]") {
   Compiled grammar = CompileText(std::string(kSmallInventory) + "rule \"h loss\" { where H:/h/ delete H }");
   REQUIRE(grammar.cascade != nullptr);
-  for (const Row& row : {Row{"", ""}, {"h", ""}, {"hːh", ""}, {"-", ""}, {"h-h", ""}, {"h#h", " "}, {"h‖", "‖"}, {"hah", "a"}}) {
+  for (const Row& row :
+       {Row{"", ""}, {"h", ""}, {"hːh", ""}, {"-", ""}, {"h-h", ""}, {"h#h", " "}, {"h‖", "‖"}, {"hah", "a"}}) {
     CAPTURE(row.underlying);
     CHECK(grammar.Derive(row.underlying) == row.surface);
     CHECK(grammar.IsCandidate(row.underlying, row.surface));
@@ -127,28 +128,14 @@ TEST_CASE("runner: length and boundaries, in and out", "[unit]") {
   INFO(grammar.Messages());
   REQUIRE(grammar.cascade != nullptr);
   const Row rows[] = {
-      {"ta", "ta"},
-      {"taːta", "taːda"},
-      {"taata", "taada"},            // two roots are written as two
-      {"atːa", "atːa"},              // each of its slots has a t beside it
-      {"atta", "atta"},
-      {"aːːta", "aːːda"},
-      {"a:ta", "aːda"},              // the typist's length sign
-      {"at-a", "ada"},
-      {"at=a", "ada"},
-      {"at#a", "at a"},              // no match crosses a word's edge
-      {"at a", "at a"},
-      {"at  a", "at a"},
-      {"at||a", "at‖a"},
-      {"ta-ta=ta#ta‖ta", "tadada ta‖ta"},
-      {"a-ha", "aːa"},               // one root on two slots comes out long
-      {"aː-ha", "aːːa"},
-      {"ai-ha", "aiːa"},
-      {"a-hːa", "aːa"},
-      {"aha", "aa"},
-      {"a-h", "aː"},
-      {"aka", "aka"},
-      {"-a-", "a"},
+      {"ta", "ta"},      {"taːta", "taːda"}, {"taata", "taada"},  // two roots are written as two
+      {"atːa", "atːa"},                                           // each of its slots has a t beside it
+      {"atta", "atta"},  {"aːːta", "aːːda"}, {"a:ta", "aːda"},    // the typist's length sign
+      {"at-a", "ada"},   {"at=a", "ada"},    {"at#a", "at a"},    // no match crosses a word's edge
+      {"at a", "at a"},  {"at  a", "at a"},  {"at||a", "at‖a"},  {"ta-ta=ta#ta‖ta", "tadada ta‖ta"},
+      {"a-ha", "aːa"},  // one root on two slots comes out long
+      {"aː-ha", "aːːa"}, {"ai-ha", "aiːa"},  {"a-hːa", "aːa"},   {"aha", "aa"},
+      {"a-h", "aː"},     {"aka", "aka"},     {"-a-", "a"},
   };
   for (const Row& row : rows) {
     CAPTURE(row.underlying);
@@ -182,7 +169,8 @@ TEST_CASE("runner: candidates by restorations, as many as asked for", "[unit]") 
   REQUIRE(grammar.cascade != nullptr);
   // m or n, and before each of four segments and at the end no boundary, - or =.
   constexpr std::size_t kAll = 2 * 3 * 3 * 3 * 3 * 3;
-  for (const std::size_t best : {std::size_t{0}, std::size_t{1}, std::size_t{2}, std::size_t{30}, kAll - 1, kAll, kAll + 1, 4 * kAll}) {
+  for (const std::size_t best :
+       {std::size_t{0}, std::size_t{1}, std::size_t{2}, std::size_t{30}, kAll - 1, kAll, kAll + 1, 4 * kAll}) {
     CAPTURE(best);
     const Runner::Candidates candidates = grammar.Recover("ampa", best);
     CHECK(candidates.best.size() == std::min(best, kAll));
@@ -191,8 +179,8 @@ TEST_CASE("runner: candidates by restorations, as many as asked for", "[unit]") 
     for (std::size_t i = 0; i < candidates.best.size(); ++i) {
       const Runner::Candidate& candidate = candidates.best[i];
       CAPTURE(candidate.form);
-      CHECK(candidate.restorations == std::count_if(candidate.form.begin(), candidate.form.end(),
-                                                    [](char c) { return c == '-' || c == '='; }));
+      CHECK(candidate.restorations ==
+            std::count_if(candidate.form.begin(), candidate.form.end(), [](char c) { return c == '-' || c == '='; }));
       CHECK(candidate.weight == 0);
       if (i > 0) CHECK(candidates.best[i - 1].restorations <= candidate.restorations);
     }
@@ -216,9 +204,11 @@ TEST_CASE("runner: a deleted slot is a restoration, an inserted one is none", "[
   for (const Runner::Candidate& candidate : deleting.Recover("pat", 1000).best) {
     CAPTURE(candidate.form);
     const auto& f = candidate.form;
-    CHECK(candidate.restorations == std::count_if(f.begin(), f.end(), [](char c) { return c == '-' || c == '=' || c == 'i'; }));
+    CHECK(candidate.restorations ==
+          std::count_if(f.begin(), f.end(), [](char c) { return c == '-' || c == '=' || c == 'i'; }));
   }
-  Compiled inserting = CompileText(std::string(kSmallInventory) + "rule \"break\" { where C:[-syll] # insert V:/i/ after C }");
+  Compiled inserting =
+      CompileText(std::string(kSmallInventory) + "rule \"break\" { where C:[-syll] # insert V:/i/ after C }");
   REQUIRE(inserting.cascade != nullptr);
   CHECK(inserting.Derive("pat") == "pati");
   CHECK(inserting.IsCandidate("pat", "pati"));
