@@ -44,7 +44,7 @@ Tape Trim(Tape&& tape) {
     for (const TapeArc& arc : tape.arcs[s]) {
       if (!keep[arc.next]) continue;
       if (symbol[arc.out] < 0) symbol[arc.out] = result.symbols.Intern(tape.symbols[arc.out]);
-      result.arcs[number[s]].push_back({arc.in, symbol[arc.out], number[arc.next]});
+      result.arcs[number[s]].push_back({arc.in, symbol[arc.out], number[arc.next], arc.weight});
     }
   }
   for (int s : tape.starts) {
@@ -59,6 +59,7 @@ class StringRunner {
   struct Way {
     int state;
     Key written;
+    float weight;
   };
   explicit StringRunner(const Tape& second) : second_(second) {
     by_class_.resize(second.arcs.size());
@@ -69,7 +70,7 @@ class StringRunner {
 
   // All ways from `state` over `string` ([flags, class, rest, ...]).
   std::vector<Way> Run(int state, const Key& string) const {
-    std::vector<Way> ways{{state, Key{string[0]}}};
+    std::vector<Way> ways{{state, Key{string[0]}, 0}};
     for (std::size_t k = 1; k + 1 < string.size() && !ways.empty(); k += 2) {
       std::vector<Way> next;
       for (const Way& way : ways) {
@@ -77,7 +78,7 @@ class StringRunner {
         if (it == by_class_[way.state].end()) continue;
         for (const TapeArc& arc : it->second) {
           const Key& more = second_.symbols[arc.out];
-          Way longer{arc.next, way.written};
+          Way longer{arc.next, way.written, way.weight + arc.weight};
           longer.written[0] |= more[0];
           for (std::size_t m = 1; m + 1 < more.size(); m += 2) {
             longer.written.push_back(more[m]);
@@ -121,7 +122,8 @@ Tape Compose(const Tape& first, const Tape& second, std::size_t max_states, std:
     result.ends.push_back(first.ends[a] && second.ends[b]);
     for (const TapeArc& arc : first.arcs[a]) {
       for (StringRunner::Way& way : runner.Run(b, first.symbols[arc.out])) {
-        result.arcs.back().push_back({arc.in, result.symbols.Intern(way.written), intern(arc.next, way.state)});
+        const int symbol = result.symbols.Intern(way.written);
+        result.arcs.back().push_back({arc.in, symbol, intern(arc.next, way.state), arc.weight + way.weight});
         ++arcs;
       }
     }

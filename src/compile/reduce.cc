@@ -1,4 +1,5 @@
-// Reduce and OutputsOf (compile/tape.h), the work that OpenFst does for the compiler. Reduce: the tape's arcs become labels of an acceptor, which OpenFst makes small. Merging states of the
+// Reduce and OutputsOf (compile/tape.h), the work that OpenFst does for the compiler. Reduce: the tape's arcs, with their
+// weights, become labels of an acceptor, which OpenFst makes small. Merging states of the
 // acceptor never moves a label, so the alignment of input and output stays. Determinising may blow up: it is tried under a
 // budget, and the smaller result is kept. Plain transducer minimisation would push labels and break the alignment.
 #include <fst/determinize.h>
@@ -6,6 +7,9 @@
 #include <fst/minimize.h>
 #include <fst/rmepsilon.h>
 #include <fst/vector-fst.h>
+
+#include <map>
+#include <tuple>
 
 #include "compile/tape.h"
 
@@ -16,14 +20,16 @@ namespace {
 
 using Acceptor = fst::VectorFst<fst::StdArc>;
 
-Acceptor ToAcceptor(const Tape& tape, std::vector<std::pair<int, int>>* labels) {
+// What one label of the acceptor stands for: an arc without its end.
+using ArcLabel = std::tuple<int, int, float>;  // read, written, weight
+
+Acceptor ToAcceptor(const Tape& tape, std::vector<ArcLabel>* labels) {
   Acceptor acceptor;
-  std::unordered_map<std::uint64_t, int> ids;
+  std::map<ArcLabel, int> ids;
   const auto label = [&](const TapeArc& arc) {
-    const std::uint64_t key =
-        (static_cast<std::uint64_t>(static_cast<std::uint32_t>(arc.in)) << 32) | static_cast<std::uint32_t>(arc.out);
+    const ArcLabel key{arc.in, arc.out, arc.weight};
     const auto [it, added] = ids.emplace(key, static_cast<int>(labels->size()) + 1);
-    if (added) labels->emplace_back(arc.in, arc.out);
+    if (added) labels->push_back(key);
     return it->second;
   };
   for (std::size_t s = 0; s < tape.arcs.size(); ++s) {
@@ -70,7 +76,7 @@ std::size_t Arcs(const Acceptor& acceptor) {
 Tape Reduce(Tape tape) {
   FLAGS_fst_error_fatal = false;
   if (tape.starts.empty()) return tape;
-  std::vector<std::pair<int, int>> labels;
+  std::vector<ArcLabel> labels;
   Acceptor small = ToAcceptor(tape, &labels);
   Acceptor determined;
   const bool fits = DeterminizeWithin(small, 2 * small.NumStates() + 16, &determined);
@@ -86,8 +92,8 @@ Tape Reduce(Tape tape) {
   for (int s = 0; s < small.NumStates(); ++s) {
     result.ends[s] = small.Final(s) != fst::TropicalWeight::Zero();
     for (fst::ArcIterator<Acceptor> it(small, s); !it.Done(); it.Next()) {
-      const auto& [in, out] = labels[it.Value().ilabel - 1];
-      result.arcs[s].push_back({in, out, it.Value().nextstate});
+      const auto& [in, out, weight] = labels[it.Value().ilabel - 1];
+      result.arcs[s].push_back({in, out, it.Value().nextstate, weight});
     }
   }
   return result;

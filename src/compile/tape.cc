@@ -67,7 +67,7 @@ Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& ste
     arcs.reserve(tape.arcs[state].size());
     for (const TapeArc& arc : tape.arcs[state]) {
       const auto [next, symbol] = stepper.Step(pass, arc.out);
-      arcs.push_back({arc.in, symbol, pairs.Intern(arc.next, next)});
+      arcs.push_back({arc.in, symbol, pairs.Intern(arc.next, next), arc.weight});
     }
     result.arcs.push_back(std::move(arcs));
     result.ends.push_back(tape.ends[state]);
@@ -81,7 +81,8 @@ Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step
   Pairs pairs;
   std::vector<std::vector<TapeArc>> into(tape.arcs.size());  // `next` is the state the arc comes from
   for (std::size_t state = 0; state < tape.arcs.size(); ++state) {
-    for (const TapeArc& arc : tape.arcs[state]) into[arc.next].push_back({arc.in, arc.out, static_cast<int>(state)});
+    for (const TapeArc& arc : tape.arcs[state])
+      into[arc.next].push_back({arc.in, arc.out, static_cast<int>(state), arc.weight});
   }
   const int pass_start = stepper.State(initial);
   for (std::size_t state = 0; state < tape.arcs.size(); ++state) {
@@ -96,7 +97,7 @@ Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step
       const auto [before, symbol] = stepper.Step(pass, arc.out);
       const int source = pairs.Intern(arc.next, before);
       if (result.arcs.size() < pairs.size()) result.arcs.resize(pairs.size());
-      result.arcs[source].push_back({arc.in, symbol, static_cast<int>(at)});
+      result.arcs[source].push_back({arc.in, symbol, static_cast<int>(at), arc.weight});
     }
   }
   result.ends.assign(pairs.size(), 0);

@@ -52,6 +52,7 @@ struct TapeArc {
   int in = 0;   // class
   int out = 0;  // symbol of the tape's own pool
   int next = 0;
+  float weight = 0;  // negative natural log of the probability; 0 where nothing is optional
 };
 
 struct Tape {

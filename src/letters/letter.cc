@@ -16,14 +16,6 @@ struct Occurrence {
   InstanceId object;
 };
 
-// No later part is the same object.
-bool IsLast(const std::vector<Occurrence>& line, const Occurrence& occurrence) {
-  for (std::size_t i = line.size(); i-- > 0;) {
-    if (line[i].object == occurrence.object) return &line[i] == &occurrence;
-  }
-  return true;
-}
-
 LetterPart BuildPart(const Form& form, InstanceId id) {
   const Instance& instance = form.instances[id];
   LetterPart part;
@@ -118,10 +110,9 @@ class Decoder {
       if (parts_[id].floating) line.push_back(id);
     }
     std::sort(line.begin(), line.end());
-    std::map<int, int> first_of, last_of;  // by object: its first and last part
+    std::map<int, int> first_of;  // by object: its first part
     for (int id : by_node_[mother]) {
       first_of.emplace(Find(id), id);
-      last_of[Find(id)] = id;
     }
     int previous = -1;
     for (int id : line) {
@@ -132,7 +123,7 @@ class Decoder {
         continue;
       }
       const int same = is_float ? id : first_of[Find(id)];
-      if (same != id) {  // another part of the same mother
+      if (same != id) {  // another part of the same mother; a contour held by two slots comes as a b a b
         const std::vector<int> before = DaughtersOf(same, node);
         if (before.size() != own.size()) return false;
         for (std::size_t i = 0; i < own.size(); ++i) {
@@ -140,8 +131,7 @@ class Decoder {
         }
       }
       if (previous >= 0 && parts_[previous].part->node == mother && (parts_[previous].part->links & bit)) {
-        if (is_float || last_of[Find(previous)] != previous) return false;
-        if (!Join(DaughtersOf(previous, node).back(), own.front())) return false;
+        if (is_float || !Join(DaughtersOf(previous, node).back(), own.front())) return false;
       }
       previous = id;
     }
@@ -222,13 +212,10 @@ std::vector<Letter> Encode(const Form& form, const Tree& tree) {
     const std::uint32_t bit = 1u << LinkBit(tree, node);
     const Occurrence* previous = nullptr;
     std::size_t previous_last = 0;
-    const std::vector<Occurrence>& mothers = by_node[tree[node].mother];
-    for (std::size_t m = 0; m < mothers.size(); ++m) {
-      const Occurrence& mother = mothers[m];
+    for (const Occurrence& mother : by_node[tree[node].mother]) {
       std::size_t first = 0, last = 0;
       if (!DaughterRange(*mother.part, node, &first, &last)) continue;
-      // A contour held by two slots comes twice, one after the other: a b a b. Only an object's last part can be linked.
-      if (previous != nullptr && previous->object != mother.object && IsLast(mothers, *previous)) {
+      if (previous != nullptr && previous->object != mother.object) {
         const InstanceId a = form.instances[previous->object].daughters[previous_last];
         const InstanceId b = form.instances[mother.object].daughters[first];
         if (a == b) previous->part->links |= bit;

@@ -119,6 +119,7 @@ class DefectFinder {
     }
     CheckRoom();
     CheckTiers();
+    CheckFloats();
     CheckRoots();
     return text_;
   }
@@ -314,6 +315,30 @@ class DefectFinder {
     }
   }
 
+  // A float of N between two slots that hold one bearer of N: neither comes first on the tier.
+  void CheckFloats() {
+    std::vector<std::pair<std::size_t, std::size_t>> spans(form_.instances.size(), {form_.items.size(), 0});
+    for (std::size_t i = 0; i < form_.items.size(); ++i) {
+      if (form_.items[i].kind != FormItem::Kind::kBoundary) Stretch(form_.items[i].instance, i, spans);
+    }
+    for (std::size_t i = 0; i < form_.items.size(); ++i) {
+      if (form_.items[i].kind != FormItem::Kind::kFloat) continue;
+      const NodeId node = form_.instances[form_.items[i].instance].node;
+      for (std::size_t m = 0; m < spans.size(); ++m) {
+        if (spans[m].first >= i || spans[m].second <= i || form_.instances[m].node != tree_[node].mother) continue;
+        for (InstanceId daughter : form_.instances[m].daughters) {
+          if (form_.instances[daughter].node != node) continue;
+          Say("a floating " + tree_[node].name + " stands inside " + NameOf(static_cast<InstanceId>(m)));
+          break;
+        }
+      }
+    }
+  }
+  void Stretch(InstanceId id, std::size_t item, std::vector<std::pair<std::size_t, std::size_t>>& spans) {
+    spans[id].first = std::min(spans[id].first, item);
+    spans[id].second = std::max(spans[id].second, item);
+    for (InstanceId daughter : form_.instances[id].daughters) Stretch(daughter, item, spans);
+  }
   void CheckRoots() {
     std::map<std::int64_t, std::size_t> last;
     std::size_t slot = 0;

@@ -63,7 +63,7 @@ FeatureTree ContentOf(const Form& form, InstanceId instance);
 InstanceId AddContent(Form& form, const FeatureTree& content);
 
 // Names every broken promise of the data structure, or "" if there is none: a mother holds more than its
-// room, instances of one tier cross, a kind hangs from the wrong mother, roots share non-neighbouring slots.
+// room, instances of one tier cross, a float stands inside a bearer of its tier, a kind hangs from the wrong mother, roots share non-neighbouring slots.
 std::string Defects(const Form& form, const Tree& tree);
 
 // One line for tests and messages, with sharing shown: "s1[root1[+cons Place2[•Coronal]]] - s2[..]".

@@ -214,7 +214,9 @@ Form RandomWideForm(Rng& rng, const Grammar& grammar, int max_items) {
     form.items.push_back({FormItem::Kind::kSlot, Boundary::kNone, id});
   }
   const double share = Chance(rng, 0.2) ? 0.0 : std::uniform_real_distribution<double>(0, 1)(rng);
-  return Shared(form, tree, AllNodes(tree), [&] { return Chance(rng, share); });
+  Form shared = Shared(form, tree, AllNodes(tree), [&] { return Chance(rng, share); });
+  // A root may have come to be shared across a float of a tier that it bears: no form has that.
+  return Defects(shared, tree).empty() ? shared : RandomWideForm(rng, grammar, max_items);
 }
 
 void ForEachForm(const Grammar& grammar, const std::vector<FeatureTree>& letters, const AllFormsOptions& options,
