@@ -83,6 +83,18 @@ int LetterBuilder::ContentOf(const Key& annotated, NodeId node, bool last) const
   return part == nullptr ? -1 : pool_.Intern(*part);
 }
 
+std::int32_t LetterBuilder::CarryContent(const Key& annotated, NodeId node, bool rightward, bool needed,
+                                         std::int32_t* state) const {
+  const RuleSpace& space = requests_.space();
+  const RuleSpace::Bearing& bearing = space.Of(annotated[0], node);
+  const std::int32_t mother = bearing.mother ? space.Marks(annotated, space.tree()[node].mother) : 0;
+  if (bearing.mother && !(mother & (rightward ? kFromLeft : kToRight))) state[1] = state[0];
+  const std::int32_t content = (bearing.mother ? state[1] : state[0]) - 1;
+  if (bearing.mother && !(mother & (rightward ? kToRight : kFromLeft))) state[1] = 0;
+  if (bearing.count > 0) state[0] = needed ? ContentOf(annotated, node, rightward) + 1 : 0;
+  return content;
+}
+
 int LetterBuilder::ClassOf(const WorkPart& slot, int like) const {
   Letter letter = requests_.space().classes()[like].visible;
   letter.part = Plain(slot, /*links=*/false);

@@ -58,6 +58,11 @@ class LetterBuilder {
   // The first or last N of a letter as content, or -1.
   int ContentOf(const Key& annotated, NodeId node, bool last) const;
 
+  // Carries the nearest content of a node along, walking over letters; gives the one that a line from this letter's mother
+  // leads back to, or -1. state[0]: the last content met (+1); state[1]: the last before the span of the mother we
+  // are in (+1). `needed`: will a letter further on ask for this letter's?
+  std::int32_t CarryContent(const Key& annotated, NodeId node, bool rightward, bool needed, std::int32_t* state) const;
+
   struct Lines {  // contents the requests may draw on, by request node; -1: none
     const std::int32_t* left = nullptr;
     const std::int32_t* right = nullptr;

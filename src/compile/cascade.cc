@@ -66,10 +66,7 @@ class CascadeCompiler {
     input.parts = data_->classes->Classify(letter);
     input.symbol = symbol;
     input.boundary = letter.boundary;
-    for (const auto& daughter : letter.part.daughters) {
-      if (daughter.node == kRootNode && (letter.part.links >> LinkBit(grammar_.tree, kRootNode) & 1u))
-        input.linked = true;
-    }
+    input.linked = RootGoesOn(letter, grammar_.tree);
     data_->inputs.push_back(input);
   }
 

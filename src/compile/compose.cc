@@ -10,25 +10,7 @@ namespace {
 // Keeps the states from which a string can end, numbers them again, and drops unused symbols.
 Tape Trim(Tape&& tape) {
   const std::size_t n = tape.arcs.size();
-  std::vector<std::vector<int>> into(n);
-  for (std::size_t s = 0; s < n; ++s) {
-    for (const TapeArc& arc : tape.arcs[s]) into[arc.next].push_back(static_cast<int>(s));
-  }
-  std::vector<char> keep(tape.ends.begin(), tape.ends.end());
-  std::vector<int> stack;
-  for (std::size_t s = 0; s < n; ++s) {
-    if (keep[s]) stack.push_back(static_cast<int>(s));
-  }
-  while (!stack.empty()) {
-    const int s = stack.back();
-    stack.pop_back();
-    for (int p : into[s]) {
-      if (!keep[p]) {
-        keep[p] = 1;
-        stack.push_back(p);
-      }
-    }
-  }
+  const std::vector<char> keep = CanEnd(tape.arcs, tape.ends);
   Tape result;
   std::vector<int> number(n, -1);
   int count = 0;

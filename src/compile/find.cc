@@ -92,9 +92,8 @@ class SpanPass {
     for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
       const NodeId node = requests_.nodes()[i];
       std::int32_t* carried = &step.state[offsets_[i]];
-      std::int32_t* last = carried + carrier_.StateSize(i);
-      std::int32_t* of_mother = last + 1;
-      std::int32_t* need = last + 2;
+      std::int32_t* contents = carried + carrier_.StateSize(i);
+      std::int32_t* need = contents + 2;
       std::int32_t& request = step.symbol[request_at + 1 + i];
       if (requests_.SpreadsFrom(false, i)) {
         step.symbol[right_at + i] = MeetsSource(need, symbol, node, kFromLeft, space);
@@ -106,11 +105,8 @@ class SpanPass {
         continue;
       }
       const bool needed = symbol[left_at + i] != 0;
-      const RuleSpace::Bearing& bearing = space.Of(symbol[0], node);
-      if (bearing.mother && !(space.Marks(symbol, space.tree()[node].mother) & kFromLeft)) *of_mother = *last;
-      step.symbol[left_at + i] = (bearing.mother ? *of_mother : *last) - 1;
-      if (bearing.mother && !(space.Marks(symbol, space.tree()[node].mother) & kToRight)) *of_mother = 0;
-      if (bearing.count > 0) *last = needed ? builder_.ContentOf(Annotated(symbol, space), node, true) + 1 : 0;
+      step.symbol[left_at + i] =
+          builder_.CarryContent(Annotated(symbol, space), node, /*rightward=*/true, needed, contents);
     }
     return step;
   }
@@ -260,23 +256,15 @@ class Sweep {
     step.state[0] = far_.next[state[0]][profile];
     step.state[1] = AheadBefore(state, symbol, profile);
     for (std::size_t i = 0; i < nodes(); ++i) {
-      std::int32_t* first = &step.state[2 + 2 * i];
-      std::int32_t* of_mother = first + 1;
+      std::int32_t* contents = &step.state[2 + 2 * i];
       std::int32_t content = -1;
       if (requests_.SpreadsFrom(!direction_.rightward, i) && space_.IsSlot(symbol[0])) {
-        const NodeId node = requests_.nodes()[i];
-        const RuleSpace::Bearing& bearing = space_.Of(symbol[0], node);
-        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.far_line()))
-          *of_mother = *first;
-        content = (bearing.mother ? *of_mother : *first) - 1;
-        if (bearing.mother && !(space_.Marks(symbol, space_.tree()[node].mother) & direction_.near_line()))
-          *of_mother = 0;
-        if (bearing.count > 0) *first = builder_.ContentOf(symbol, node, !direction_.rightward) + 1;
+        content = builder_.CarryContent(symbol, requests_.nodes()[i], !direction_.rightward, /*needed=*/true, contents);
       }
       // Another slot of the same root may be the target: a content is dropped only where a root ends.
       const bool root_ends =
           space_.IsSlot(symbol[0]) && !(space_.Marks(symbol, kRootNode) & (direction_.near_line() | kOver));
-      if (root_ends && !Underway(far_, step.state[0], i)) *first = 0;
+      if (root_ends && !Underway(far_, step.state[0], i)) contents[0] = 0;
       step.symbol.push_back(content);
     }
     return step;

@@ -80,28 +80,7 @@ MarkedMachine OverBudget() {
 // Drops states that no accepting run visits.
 MarkedMachine Trim(const MarkedMachine& machine) {
   const int n = static_cast<int>(machine.arcs.size());
-  std::vector<std::vector<int>> into(n);
-  for (int s = 0; s < n; ++s) {
-    for (const MarkedArc& arc : machine.arcs[s]) into[arc.next].push_back(s);
-  }
-  std::vector<char> keep(n, 0);
-  std::vector<int> stack;
-  for (int s = 0; s < n; ++s) {
-    if (machine.final[s]) {
-      keep[s] = 1;
-      stack.push_back(s);
-    }
-  }
-  while (!stack.empty()) {
-    const int s = stack.back();
-    stack.pop_back();
-    for (int p : into[s]) {
-      if (!keep[p]) {
-        keep[p] = 1;
-        stack.push_back(p);
-      }
-    }
-  }
+  const std::vector<char> keep = CanEnd(machine.arcs, machine.final);
   std::vector<int> number(n, -1);
   MarkedMachine result;
   for (int s = 0; s < n; ++s) {

@@ -69,7 +69,9 @@ class ApplyPass {
     if (at_once_) {
       for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
         carrier_.Step(letter, i, &step.state[offsets_[i]], &request[1 + i]);
-        contents[i] = RightContent(letter, i, right[i] != 0, &step.state[offsets_[i] + carrier_.StateSize(i)]);
+        if (!requests_.SpreadsFrom(false, i)) continue;
+        contents[i] = builder_.CarryContent(letter, requests_.nodes()[i], /*rightward=*/false, right[i] != 0,
+                                            &step.state[offsets_[i] + carrier_.StateSize(i)]);
       }
       right = contents.data();
     }
@@ -98,18 +100,6 @@ class ApplyPass {
   }
 
  private:
-  // `memory`: the first content to the right (+1), and the one right of the mother's span (+1).
-  std::int32_t RightContent(const Key& letter, std::size_t i, bool needed, std::int32_t* memory) const {
-    if (!requests_.SpreadsFrom(false, i)) return -1;
-    const NodeId node = requests_.nodes()[i];
-    const RuleSpace::Bearing& bearing = space_.Of(letter[0], node);
-    if (bearing.mother && !(space_.Marks(letter, space_.tree()[node].mother) & kToRight)) memory[1] = memory[0];
-    const std::int32_t content = (bearing.mother ? memory[1] : memory[0]) - 1;
-    if (bearing.mother && !(space_.Marks(letter, space_.tree()[node].mother) & kFromLeft)) memory[1] = 0;
-    if (bearing.count > 0) memory[0] = needed ? builder_.ContentOf(letter, node, false) + 1 : 0;
-    return content;
-  }
-
   void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output,
               bool* ambiguous) const {
     for (std::size_t i = rule_.changes.size(); i-- > 0;) {
@@ -192,7 +182,7 @@ Tape FormsOver(const std::vector<int>& classes, const LetterClasses& letters, co
   tape.ends = {1};
   std::vector<std::pair<FeatureTree, int>> waiting;  // a content, and the state that waits for it
   const auto content_of = [&](int c) { return RootContent(letters[c].visible); };
-  const auto linked = [&](int c) { return (letters[c].visible.part.links >> LinkBit(tree, kRootNode) & 1u) != 0; };
+  const auto linked = [&](int c) { return RootGoesOn(letters[c].visible, tree); };
   for (int c : classes) {
     if (!linked(c)) continue;
     const FeatureTree content = *content_of(c);

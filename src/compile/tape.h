@@ -75,6 +75,30 @@ using PassFunction = std::function<PassStep(const Key& state, const Key& symbol)
 Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
 Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
 
+// Which states a string can end from; arcs of any kind that has a `next`.
+template <class Arc>
+std::vector<char> CanEnd(const std::vector<std::vector<Arc>>& arcs, const std::vector<char>& ends) {
+  std::vector<std::vector<int>> into(arcs.size());
+  for (std::size_t s = 0; s < arcs.size(); ++s) {
+    for (const Arc& arc : arcs[s]) into[arc.next].push_back(static_cast<int>(s));
+  }
+  std::vector<char> can = ends;
+  std::vector<int> stack;
+  for (std::size_t s = 0; s < ends.size(); ++s) {
+    if (ends[s]) stack.push_back(static_cast<int>(s));
+  }
+  while (!stack.empty()) {
+    const int s = stack.back();
+    stack.pop_back();
+    for (int before : into[s]) {
+      if (can[before]) continue;
+      can[before] = 1;
+      stack.push_back(before);
+    }
+  }
+  return can;
+}
+
 // What a machine of strings (symbols [flags, class, rest, ...]) writes, as a tape that reads and writes the same class, one
 // letter an arc: the domain of a further machine. No starts if it needs more than `max_states`.
 Tape OutputsOf(const Tape& tape, std::size_t max_states);

@@ -254,6 +254,10 @@ FeatureTree ContentOf(const LetterPart& part) {
   return content;
 }
 
+bool RootGoesOn(const Letter& letter, const Tree& tree) {
+  return letter.kind == FormItem::Kind::kSlot && (letter.part.links >> LinkBit(tree, kRootNode) & 1u) != 0;
+}
+
 int Alphabet::Intern(const Letter& letter) {
   const auto [it, added] = ids_.emplace(letter, static_cast<int>(letters_.size()));
   if (added) letters_.push_back(letter);

@@ -61,6 +61,9 @@ std::optional<FeatureTree> RootContent(const Letter& letter);
 LetterPart PartOf(const FeatureTree& content);
 FeatureTree ContentOf(const LetterPart& part);
 
+// Is the slot's root the next slot's too?
+bool RootGoesOn(const Letter& letter, const Tree& tree);
+
 // Letters and their numbers, in order of first mention.
 class Alphabet {
  public:

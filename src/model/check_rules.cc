@@ -16,6 +16,20 @@ using SyntaxItem = syntax::Item;
 
 bool Once(const SyntaxItem& item) { return item.min == 1 && item.max == 1; }
 
+// What an item came to, as often as the item says: once, it stands among the others; else it is a group.
+void AddQuantified(const SyntaxItem& item, Pattern inner, Pattern* pattern) {
+  if (Once(item)) {
+    for (PatternItem& one : inner.items) pattern->items.push_back(std::move(one));
+    return;
+  }
+  PatternItem group;
+  group.kind = PatternItem::Kind::kGroup;
+  group.min = item.min;
+  group.max = item.max;
+  group.alternatives.push_back(std::move(inner));
+  pattern->items.push_back(std::move(group));
+}
+
 Boundary BoundaryOf(SyntaxItem::Boundary boundary) {
   switch (boundary) {
     case SyntaxItem::Boundary::kMorpheme:
@@ -241,20 +255,11 @@ bool Checker::ResolveItem(const SyntaxItem& item, RuleContext* context, Pattern*
 // One item, or a group where it has a quantity.
 void Checker::Append(PatternItem slot, const SyntaxItem& item, Pattern* pattern) {
   if (slot.kind == PatternItem::Kind::kSlot && NamesEmpty(slot.test)) pattern->names_empty = true;
-  if (Once(item)) {
-    pattern->items.push_back(std::move(slot));
-    return;
-  }
-  PatternItem group;
-  group.kind = PatternItem::Kind::kGroup;
-  group.min = item.min;
-  group.max = item.max;
   Pattern inner;
   inner.span = item.span;
   inner.names_empty = pattern->names_empty;
   inner.items.push_back(std::move(slot));
-  group.alternatives.push_back(std::move(inner));
-  pattern->items.push_back(std::move(group));
+  AddQuantified(item, std::move(inner), pattern);
 }
 
 bool Checker::AddLabel(const syntax::Name& label, const SyntaxItem& item, RuleContext* context, int* index) {
@@ -333,16 +338,7 @@ bool Checker::ResolveSetItem(const SyntaxItem& item, RuleContext* context, Patte
     one.test = LiteralTest(symbol);
     several.items.push_back(std::move(one));
   }
-  if (Once(item)) {
-    for (PatternItem& one : several.items) pattern->items.push_back(std::move(one));
-    return true;
-  }
-  PatternItem group;
-  group.kind = PatternItem::Kind::kGroup;
-  group.min = item.min;
-  group.max = item.max;
-  group.alternatives.push_back(std::move(several));
-  pattern->items.push_back(std::move(group));
+  AddQuantified(item, std::move(several), pattern);
   return true;
 }
 
@@ -375,16 +371,7 @@ bool Checker::ResolveNameItem(const SyntaxItem& item, RuleContext* context, Patt
     Pattern expanded;
     if (!ResolvePattern(named->second->pattern, &inner, &expanded)) return false;
     if (expanded.names_empty) pattern->names_empty = true;
-    if (Once(item)) {
-      for (PatternItem& one : expanded.items) pattern->items.push_back(std::move(one));
-      return true;
-    }
-    PatternItem group;
-    group.kind = PatternItem::Kind::kGroup;
-    group.min = item.min;
-    group.max = item.max;
-    group.alternatives.push_back(std::move(expanded));
-    pattern->items.push_back(std::move(group));
+    AddQuantified(item, std::move(expanded), pattern);
     return true;
   }
   if (classes_.count(name) == 0) {

@@ -95,7 +95,7 @@ struct Recovery::Impl {
     const std::optional<FeatureTree> root = RootContent(letter);
     fact.slot = root.has_value();
     fact.empty = !fact.slot;
-    fact.linked = letter.part.links >> LinkBit(grammar.tree, kRootNode) & 1u;
+    fact.linked = RootGoesOn(letter, grammar.tree);
     if (fact.slot) fact.symbol = grammar.inventory.Spell(*root).symbol;
     return fact;
   }

@@ -70,7 +70,7 @@ struct Runner::Impl {
     const std::optional<FeatureTree> root = RootContent(letter);
     if (!root.has_value()) return result;
     result.slot = true;
-    result.linked = letter.part.links >> LinkBit(grammar.tree, kRootNode) & 1u;
+    result.linked = RootGoesOn(letter, grammar.tree);
     const int symbol = grammar.inventory.Spell(*root).symbol;
     result.kind = symbol < 0 ? Spelled::Kind::kNoSymbol : Spelled::Kind::kText;
     result.text = symbol < 0 ? grammar.inventory.Describe(*root, grammar.tree) : grammar.inventory.symbols[symbol].text;
