@@ -286,6 +286,15 @@ struct TopPrinter {
     });
   }
   std::string operator()(const syntax::DataFrom& top) const { return "data from " + Quoted(top.path.text) + "\n"; }
+  std::string operator()(const syntax::Include& top) const { return "include " + Quoted(top.path.text) + "\n"; }
+  std::string operator()(const syntax::Strict&) const { return "strict\n"; }
+  std::string operator()(const syntax::Complete&) const { return "complete\n"; }
+  std::string operator()(const syntax::Sharing& top) const {
+    return std::string("sharing ") + (top.blocked ? "blocked" : "free") + "\n";
+  }
+  std::string operator()(const syntax::Fuse& top) const {
+    return "fuse " + PrintName(top.node) + " within morpheme" + (top.in ? " in " + PrintPattern(*top.in) : "") + "\n";
+  }
   std::string operator()(const syntax::Unsupported& top) const {
     return "-- not supported yet: " + top.construct + "\n";
   }

@@ -28,10 +28,29 @@ struct FormText {
 
 // ---- bundles, sets, patterns ----------------------------------------------------------------
 struct Feat {
-  enum class Kind { kPlus, kMinus, kBears, kNo, kValue };  // +f, -f, f, no f, Node:value(s)
+  enum class Kind {
+    kPlus,       // +f
+    kMinus,      // -f
+    kBears,      // f
+    kNo,         // no f
+    kValue,      // Node:value, Node:(value value)
+    kAgrees,     // αf, αPlace
+    kDiffers,    // -αf
+    kShared,     // shared N, shared N rightward
+    kUnshared,   // unshared N
+    kLong,       // long
+    kShort,      // short
+    kHalfFirst,  // half first
+    kHalfSecond  // half second
+  };
+  enum class Edge { kUnsaid, kBegins, kEnds };  // begins -f, ends -f; with kPlus, kMinus, kValue, kBears
+  enum class Side { kEither, kLeftward, kRightward };
   Kind kind = Kind::kBears;
   Name name;
   std::vector<Name> values;  // kValue: one, or several for Tone:(H L)
+  Name variable;             // kAgrees, kDiffers: α, β, γ or δ (`alpha` is α)
+  Edge edge = Edge::kUnsaid;
+  Side side = Side::kEither;  // kShared, kUnshared
   Span span;
 };
 struct Bundle {
@@ -51,10 +70,10 @@ struct Set {
 
 struct Pattern;
 struct Item {
-  enum class Kind { kSet, kName, kBoundary, kGap, kGroup };
+  enum class Kind { kSet, kName, kBoundary, kGap, kGroup, kSameMorpheme };  // the last: &
   enum class Boundary { kMorpheme, kClitic, kWord, kPhrase };
   Kind kind = Kind::kSet;
-  std::optional<Name> label;  // X: before a set
+  std::optional<Name> label;  // X: before a set or a boundary
   Set set;                    // kSet
   Name name;                  // kName: a class, a named pattern, or (in unless) a label
   Boundary boundary = Boundary::kMorpheme;
@@ -70,28 +89,75 @@ struct Pattern {
 };
 
 // ---- rules --------------------------------------------------------------------------------------
-struct Path {  // X.Place
+struct Path {  // X.Place, X.-cont, X.Tone:H, X.Tone first
+  enum class Member { kFacing, kPlus, kMinus, kValue, kFirst, kLast };  // kFacing: not narrowed
   Name label;
   Name node;
+  Member member = Member::kFacing;
+  Name value;  // kValue
+  Span span;
+};
+struct Condition {  // A.Place = B.Place
+  enum class Test { kEqual, kUnequal, kIs, kIsNot };
+  Path left;
+  Test test = Test::kEqual;
+  Path right;
+  Span span;
+};
+struct TagTest {  // only loan, except X in loan, only word loan
+  enum class Scope { kChanged, kLabel, kWord };
+  bool only = true;  // else except
+  Scope scope = Scope::kChanged;
+  Name label;  // kLabel
+  Name tag;
   Span span;
 };
 struct Change {
-  enum class Kind { kSpread, kDelink, kSet, kFill, kDelete, kInsert };
+  enum class Kind {
+    kSpread,
+    kDelink,
+    kSet,         // set X [..]
+    kFill,        // fill X [..]
+    kSetLiteral,  // set X /k/
+    kSetAs,       // set X.N as Y.N, set X as Y
+    kFillAs,      // fill X.N as Y.N, fill X as Y
+    kDelete,      // of a slot or a labelled boundary
+    kInsert,
+    kLengthen,
+    kShorten,
+    kMerge  // merge X.N Y.N
+  };
   Kind kind = Kind::kSpread;
-  std::vector<Path> paths;  // kSpread, kDelink
-  Name label;               // the label after `to`; of set, fill, delete; the host of insert
+  std::vector<Path> paths;  // kSpread, kDelink; kSetAs, kFillAs, kMerge: two (`set X as Y`: without node)
+  Name label;               // the label after `to`; of set, fill, delete, lengthen, shorten; the host of insert
   Bundle bundle;            // kSet, kFill
   Name inserted;            // kInsert: its label
-  Set content;              // kInsert: a literal or a bundle
+  Set content;              // kInsert: a literal or a bundle; kSetLiteral: a literal
   bool before = true;       // kInsert
   Span span;
 };
-struct Rule {
-  Name name;
+enum class Domain { kMorpheme, kStem, kHost, kWord, kPhrase };
+struct Clause {  // what stands between `where` and the next `otherwise where`
   Pattern where;
-  std::vector<Pattern> unless;
+  std::vector<Condition> conditions;         // if
+  std::vector<Pattern> unless;               // unless PATTERN
+  std::vector<Condition> unless_conditions;  // unless A.N = B.N
+  std::vector<TagTest> tags;                 // only, except
   std::vector<Change> changes;
-  enum class Mode { kAtOnce, kRightward, kLeftward } mode = Mode::kAtOnce;
+};
+struct Rule : Clause {  // its first clause, and what is said of the rule as a whole
+  enum class Mode { kAtOnce, kRightward, kLeftward };
+  enum class Prefer { kNone, kLeft, kRight };
+  enum class Sharing { kUnsaid, kFree, kBlocked };
+  Name name;
+  std::vector<Clause> otherwise;
+  Mode mode = Mode::kAtOnce;
+  Domain within = Domain::kWord;
+  Prefer prefer = Prefer::kNone;
+  Sharing sharing = Sharing::kUnsaid;
+  bool preserving = false;
+  std::optional<double> probability;  // optional 0.3
+  bool by_word = false;
   Span span;
 };
 
@@ -171,6 +237,26 @@ struct Language {
   Span span;
 };
 
+struct Include {
+  Name path;
+  Span span;
+};
+struct Strict {
+  Span span;
+};
+struct Complete {  // a step among the rules
+  Span span;
+};
+struct Sharing {  // sharing blocked, for the whole grammar
+  bool blocked = true;
+  Span span;
+};
+struct Fuse {  // fuse Place within morpheme [in PATTERN]
+  Name node;
+  std::optional<Pattern> in;
+  Span span;
+};
+
 struct Datum {
   FormText underlying;
   std::vector<FormText> surfaces;
@@ -192,8 +278,8 @@ struct Unsupported {
   Span span;
 };
 
-using Top =
-    std::variant<Language, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Rule, Data, DataFrom, Unsupported>;
+using Top = std::variant<Language, Include, Strict, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Fuse,
+                         Sharing, Rule, Complete, Data, DataFrom, Unsupported>;
 struct File {
   std::vector<Top> tops;
   // Constructs found inside rules and blocks that this release does not run.

@@ -18,8 +18,15 @@ struct StepNotes {
   std::vector<std::string> blocked;
 };
 
+// One way a form may come out. Of all ways with this form, the sum.
+struct Outcome {
+  Form form;
+  double probability = 1;
+};
+
 struct Application {
-  Form form;                           // the result (the input if there is a problem)
+  Form form;                           // the result (the input if there is a problem); optional: of the likeliest way
+  std::vector<Outcome> outcomes;       // each form once, likeliest first; one of probability 1 unless the rule is optional
   int changed = 0;                     // matches that changed something
   std::map<std::string, int> blocked;  // matches that failed, by reason: "capacity", "crossing"
   std::string ambiguous;               // not empty: two matches ask for different things; says what
@@ -39,7 +46,8 @@ struct Step {
 struct Derivation {
   Form underlying;
   std::vector<Step> steps;
-  Form surface;         // empty slots erased
+  Form surface;         // empty slots erased; where rules are optional, the likeliest (and `steps` lead to it)
+  std::vector<Outcome> outcomes;  // all surfaces, each once, likeliest first
   std::string problem;  // not empty: ambiguous or reaching another root, names the rule; surface is then not valid
 };
 Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes = false);

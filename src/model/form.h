@@ -36,9 +36,12 @@ struct FormItem {
   Kind kind = Kind::kSlot;
   Boundary boundary = Boundary::kNone;  // kBoundary
   InstanceId instance = 0;              // kSlot: of node 0, in this item only; kFloat: the floating one
+  // kBoundary: the tags of the morpheme that it opens, one bit for each of Grammar::tags. Where some rule asks for tags,
+  // a form begins with a ‖ that opens its first morpheme; otherwise tags are 0 and no such item stands there.
+  std::uint64_t tags = 0;
 
   friend bool operator==(const FormItem& a, const FormItem& b) {
-    return a.kind == b.kind && a.boundary == b.boundary && a.instance == b.instance;
+    return a.kind == b.kind && a.boundary == b.boundary && a.instance == b.instance && a.tags == b.tags;
   }
 };
 

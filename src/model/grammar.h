@@ -18,10 +18,10 @@ namespace tiersmith {
 // ---- patterns -------------------------------------------------------------------------------------
 struct Pattern;
 struct PatternItem {
-  enum class Kind { kSlot, kBoundary, kGap, kGroup };
+  enum class Kind { kSlot, kBoundary, kGap, kGroup, kSameMorpheme };  // the last: &, no boundary stands here
   Kind kind = Kind::kSlot;
   SlotTest test;                        // kSlot: exactly one slot
-  int label = -1;                       // kSlot: index into Rule::labels, or -1
+  int label = -1;                       // kSlot, kBoundary: index into Clause::labels, or -1
   Boundary boundary = Boundary::kNone;  // kBoundary
   std::optional<NodeId> tier;           // kGap: `...Place`
   std::vector<Pattern> alternatives;    // kGroup: quantities, options, alternatives; no labels inside
@@ -35,34 +35,118 @@ struct Pattern {
   Span span;
 };
 
+// ---- conditions -----------------------------------------------------------------------------------
+// Which of the instances of a node that one mother bears: all or the facing one, or one member of a contour.
+struct Member {
+  enum class Which { kWhole, kValue, kFirst, kLast };
+  Which which = Which::kWhole;
+  Value value = 0;  // kValue
+};
+
+// if A.N = B.N. Equal: same content (false if either lacks it; unequal is its opposite). Same: the very instance.
+// `unless` with such a test is kept as its opposite.
+struct Condition {
+  enum class Test { kEqual, kUnequal, kSame, kNotSame };
+  Test test = Test::kEqual;
+  int left = -1, right = -1;  // labels of slots
+  NodeId node = 0;
+  Member left_member, right_member;
+  Span span;
+};
+
+// only TAG, except TAG: of the morphemes of all changed items, of one item, or of some morpheme of the word.
+struct TagTest {
+  enum class Scope { kChanged, kLabel, kWord };
+  bool only = true;
+  Scope scope = Scope::kChanged;
+  int label = -1;  // kLabel
+  int tag = 0;     // index into Grammar::tags
+  Span span;
+};
+
 // ---- changes --------------------------------------------------------------------------------------
 // Contents asked for by set and fill: the new list of instances of `node` (bare: one 0; several are a contour;
 // none: taken away). Class nodes above it come along where they are missing.
 struct Setting {
   NodeId node = 0;
   std::vector<Value> values;
+  // αf, -αf: `values` is empty and the content is that of the variable (kDiffers: the other value).
+  int variable = -1;
+  bool differs = false;
 };
 
 struct Change {
-  enum class Op { kSpread, kDelink, kSet, kFill, kInsert, kDelete };
+  enum class Op {
+    kSpread,
+    kDelink,
+    kSet,
+    kFill,
+    kSetAs,       // an equal node of its own; where the source bears none, its own goes
+    kFillAs,      // the same, only where it has none and the source has one
+    kSetLiteral,  // a new root of content `inserted` on this slot
+    kInsert,
+    kDelete,  // of a slot, or of a boundary (the label says which)
+    kLengthen,
+    kShorten,
+    kMerge  // source's N and target's N, equal neighbours, become one instance
+  };
   Op op = Op::kSpread;
-  int source = -1;                // kSpread: label whose instance spreads
+  int source = -1;                // kSpread, kSetAs, kFillAs, kMerge: label of the other item
   int target = -1;                // label of the changed item; kInsert: of the host
-  NodeId node = 0;                // kSpread, kDelink
+  NodeId node = 0;                // kSpread, kDelink, kSetAs, kFillAs, kMerge (root: the whole segment)
+  Member member;                  // kDelink: which go; kSpread, kSetAs, kFillAs: which of the source's
   std::vector<Setting> settings;  // kSet, kFill
-  FeatureTree inserted;           // kInsert: the root and all under it
+  FeatureTree inserted;           // kInsert, kSetLiteral: the root and all under it
+  bool is_long = false;           // kInsert, kSetLiteral: on two slots (/aː/)
   bool before = true;             // kInsert
+  int inserted_label = -1;        // kInsert: what the other changes call it, or -1
   Span span;
 };
 
-struct Rule {
-  enum class Mode { kAtOnce, kRightward, kLeftward };
-  std::string name;
+// ---- rules ----------------------------------------------------------------------------------------
+struct Clause {
+  enum class LabelKind : char { kSlot, kBoundary, kInserted };
   std::vector<std::string> labels;
+  std::vector<LabelKind> label_kinds;  // beside labels; shorter: the rest are slots
+  int variables = 0;                   // α, β ..: how many of them the clause uses
   Pattern where;
-  std::vector<Pattern> unless;  // labels index Rule::labels
+  std::vector<Condition> conditions;
+  std::vector<Pattern> unless;  // labels index Clause::labels
+  std::vector<TagTest> tags;
   std::vector<Change> changes;
+
+  LabelKind KindOf(int label) const {
+    return static_cast<std::size_t>(label) < label_kinds.size() ? label_kinds[static_cast<std::size_t>(label)]
+                                                                  : LabelKind::kSlot;
+  }
+};
+
+// A slot's surroundings that a rule stays within.
+enum class Domain : std::uint8_t { kMorpheme, kStem, kHost, kWord, kPhrase };
+
+// A step of the derivation: a rule (its first clause, those after `otherwise`, and what is said of it as a whole), or
+// `complete`.
+struct Rule : Clause {
+  enum class Kind { kRule, kComplete };
+  enum class Mode { kAtOnce, kRightward, kLeftward };
+  enum class Prefer { kNone, kLeft, kRight };
+  Kind kind = Kind::kRule;
+  std::string name;
+  std::vector<Clause> otherwise;  // in order: for sites where no earlier clause matched
   Mode mode = Mode::kAtOnce;
+  Domain within = Domain::kWord;
+  Prefer prefer = Prefer::kNone;
+  bool sharing_blocked = false;  // the Linking Constraint (Hayes 1986)
+  bool preserving = false;       // only where the result is spelled by a symbol of `segments`
+  double probability = 1;        // below 1: optional, one draw a site
+  bool by_word = false;          // one draw a word
+  Span span;
+};
+
+// `fuse N within morpheme`: how typed forms are read, before the first rule.
+struct Fusion {
+  NodeId node = 0;
+  std::optional<Pattern> in;  // only neighbours inside a match
   Span span;
 };
 
@@ -78,8 +162,12 @@ struct DataRow {
 
 struct Grammar {
   std::string language;
+  bool strict = false;  // a tree without a symbol at the end is an error wherever it can arise
   Tree tree;
   Inventory inventory;
+  std::vector<Fusion> fusions;
+  // Tags of morphemes that some rule asks for; FormItem::tags has a bit for each. The four kinds come first.
+  std::vector<std::string> tags = {"stem", "prefix", "suffix", "clitic"};
   std::vector<Rule> rules;  // in order
   std::vector<DataRow> data;
   std::shared_ptr<SourceMap> sources;  // what the spans point into

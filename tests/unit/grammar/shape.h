@@ -77,6 +77,11 @@ struct ShapeTop {
   }
   std::string operator()(const Data& t) const { return "(data " + ShapeAll(t.rows) + ")"; }
   std::string operator()(const DataFrom& t) const { return "(data-from " + Shape(t.path) + ")"; }
+  std::string operator()(const Include& t) const { return "(include " + Shape(t.path) + ")"; }
+  std::string operator()(const Strict&) const { return "(strict)"; }
+  std::string operator()(const Complete&) const { return "(complete)"; }
+  std::string operator()(const Sharing& t) const { return "(sharing " + Number(t.blocked) + ")"; }
+  std::string operator()(const Fuse& t) const { return "(fuse " + Shape(t.node) + ShapeMaybe(t.in) + ")"; }
   std::string operator()(const Unsupported& t) const { return "(unsupported " + t.construct + ")"; }
 };
 
