@@ -69,6 +69,92 @@ void PassOnUnsupported(const syntax::File& file, Diagnostics& diagnostics) {
   for (const syntax::Unsupported& construct : file.unsupported) pass(construct);
 }
 
+// What the parser reads and this checker does not carry out yet: each is an error at its place.
+class NotCheckedYet {
+ public:
+  explicit NotCheckedYet(Diagnostics* diagnostics) : diagnostics_(*diagnostics) {}
+
+  void Visit(const syntax::File& file) {
+    for (const syntax::Top& top : file.tops) {
+      if (const auto* rule = std::get_if<syntax::Rule>(&top)) VisitRule(*rule);
+      if (const auto* declared = std::get_if<syntax::Class>(&top)) VisitSet(declared->set);
+      if (const auto* pattern = std::get_if<syntax::NamedPattern>(&top)) VisitPattern(pattern->pattern);
+      if (const auto* strict = std::get_if<syntax::Strict>(&top)) Refuse(strict->span, "strict");
+      if (const auto* complete = std::get_if<syntax::Complete>(&top)) Refuse(complete->span, "complete");
+      if (const auto* sharing = std::get_if<syntax::Sharing>(&top)) Refuse(sharing->span, "sharing");
+      if (const auto* fuse = std::get_if<syntax::Fuse>(&top)) Refuse(fuse->span, "fuse");
+      if (const auto* include = std::get_if<syntax::Include>(&top)) Refuse(include->span, "include");
+    }
+  }
+
+ private:
+  void Refuse(Span span, const std::string& construct) {
+    diagnostics_.Error(Kind::kNotSupportedYet, span, "`" + construct + "` is not supported by this release",
+                       "take it out, or state the analysis without it");
+  }
+  void VisitBundle(const syntax::Bundle& bundle) {
+    using Feat = syntax::Feat;
+    for (const Feat& feat : bundle.feats) {
+      if (feat.kind > Feat::Kind::kValue) Refuse(feat.span, "this part of a bundle");
+      if (feat.edge != Feat::Edge::kUnsaid) Refuse(feat.span, feat.edge == Feat::Edge::kBegins ? "begins" : "ends");
+    }
+  }
+  void VisitSet(const syntax::Set& set) {
+    VisitBundle(set.bundle);
+    for (const syntax::Set& arg : set.args) VisitSet(arg);
+  }
+  void VisitPattern(const syntax::Pattern& pattern) {
+    for (const syntax::Item& item : pattern.items) {
+      if (item.kind == syntax::Item::Kind::kSameMorpheme) Refuse(item.span, "&");
+      if (item.kind == syntax::Item::Kind::kBoundary && item.label) Refuse(item.label->span, "labelled boundary");
+      VisitSet(item.set);
+      for (const syntax::Pattern& alternative : item.alternatives) VisitPattern(alternative);
+    }
+  }
+  void VisitPath(const syntax::Path& path) {
+    if (path.member != syntax::Path::Member::kFacing) Refuse(path.span, "one member of a contour");
+  }
+  void VisitRule(const syntax::Rule& rule) {
+    VisitPattern(rule.where);
+    for (const syntax::Pattern& unless : rule.unless) VisitPattern(unless);
+    for (const syntax::Condition& condition : rule.conditions) Refuse(condition.span, "if");
+    for (const syntax::Condition& condition : rule.unless_conditions) Refuse(condition.span, "unless A.N = B.N");
+    for (const syntax::TagTest& tag : rule.tags) Refuse(tag.span, tag.only ? "only" : "except");
+    for (const syntax::Change& change : rule.changes) {
+      for (const syntax::Path& path : change.paths) VisitPath(path);
+      VisitBundle(change.bundle);
+      VisitSet(change.content);
+      using Op = syntax::Change::Kind;
+      switch (change.kind) {
+        case Op::kSpread:
+        case Op::kDelink:
+        case Op::kSet:
+        case Op::kFill:
+        case Op::kDelete:
+        case Op::kInsert:
+          break;
+        case Op::kSetLiteral:
+        case Op::kSetAs:
+        case Op::kFillAs:
+        case Op::kLengthen:
+        case Op::kShorten:
+        case Op::kMerge:
+          Refuse(change.span, "this change");
+          break;
+      }
+    }
+    const Span name = rule.name.span;
+    if (!rule.otherwise.empty()) Refuse(name, "otherwise");
+    if (rule.within != syntax::Domain::kWord) Refuse(name, "within");
+    if (rule.prefer != syntax::Rule::Prefer::kNone) Refuse(name, "prefer");
+    if (rule.sharing != syntax::Rule::Sharing::kUnsaid) Refuse(name, "sharing");
+    if (rule.preserving) Refuse(name, "preserving");
+    if (rule.probability) Refuse(name, "optional");
+  }
+
+  Diagnostics& diagnostics_;
+};
+
 std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
   const auto errors = [&] {
     int count = 0;
@@ -84,6 +170,7 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   const int before = errors(), hard_before = hard();
   const syntax::File parsed = Parse(*sources, file, diagnostics);
   PassOnUnsupported(parsed, diagnostics);
+  NotCheckedYet(&diagnostics).Visit(parsed);
   // Names declared in what did not parse would all be unknown: such a file is checked no further.
   if (hard() > hard_before) return nullptr;
   auto grammar = std::make_unique<Grammar>();
