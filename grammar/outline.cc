@@ -36,10 +36,10 @@ constexpr SectionWord kSectionWords[] = {
     {"include", SectionKind::kLater, false, true},
     {"strict", SectionKind::kLater, false, true},
     {"given", SectionKind::kLater, false, false},
-    {"print", SectionKind::kLater, false, false},
+    {"print", SectionKind::kPrint, false, false},
     {"fuse", SectionKind::kLater, false, false},
     {"sharing", SectionKind::kLater, false, true},
-    {"length", SectionKind::kLater, false, false},
+    {"length", SectionKind::kLength, false, true},
     {"complete", SectionKind::kLater, false, true},
     {"parse", SectionKind::kLater, false, true},
     {"apply", SectionKind::kLater, false, false},
@@ -50,9 +50,9 @@ constexpr SectionWord kSectionWords[] = {
     {"stress", SectionKind::kLater, true, true},
     {"melody", SectionKind::kLater, true, true},
     {"dock", SectionKind::kLater, false, true},
-    {"lexicon", SectionKind::kLater, true, true},
-    {"paradigm", SectionKind::kLater, true, true},
-    {"spelling", SectionKind::kLater, true, true},
+    {"lexicon", SectionKind::kLexicon, true, true},
+    {"paradigm", SectionKind::kParadigm, true, true},
+    {"spelling", SectionKind::kSpelling, true, true},
 };
 
 const SectionWord* FindWord(std::string_view word) {
@@ -153,7 +153,16 @@ class Cutter {
     token.column = Column();
     token.kind = Step(token);
     token.end = position_;
+    set_follows_ = SetFollows(token);
     return token;
+  }
+
+  // In `spelling` a slash is a letter, but for literals in a context: `n = ŋ before /k/ or {/ɡ/ | /x/}`.
+  bool SetFollows(const Token& token) const {
+    static constexpr std::string_view kBeforeSets[] = {"before", "after", "between", "or", "and", "not", "|"};
+    const std::string_view text = Text(token);
+    return std::find(std::begin(kBeforeSets), std::end(kBeforeSets), text) != std::end(kBeforeSets) ||
+           (text == "{" && set_follows_);
   }
 
   void Back(const Token& token) {
@@ -189,7 +198,7 @@ class Cutter {
         ++position_;
         return Token::Kind::kOpenOther;
       case '/':
-        if (section_ != "spelling") return Enclosed(token, "/", "form");
+        if (section_ != "spelling" || set_follows_) return Enclosed(token, "/", "form");
         break;
       case '<':
         if (section_ == "data" || section_ == "lexicon" || section_ == "paradigm") return Enclosed(token, ">", "form");
@@ -414,6 +423,7 @@ class Cutter {
   std::vector<Section> sections_;
   std::string_view section_;  // the word of the section being cut: what its signs mean depends on it
   bool later_ = false;
+  bool set_follows_ = false;  // the last token is one that a set may follow
   std::size_t position_ = 0;
   std::size_t line_start_ = 0;
   std::size_t counted_to_ = 0;

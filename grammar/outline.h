@@ -26,6 +26,11 @@ enum class SectionKind {
   kClass,
   kPattern,
   kRule,
+  kLexicon,
+  kParadigm,
+  kSpelling,
+  kLength,
+  kPrint,
   kData,
   kLater,  // a word of the notation whose section this release does not run
 };

@@ -423,6 +423,60 @@ struct NumberToken : Token<NumberToken> {
   }
 };
 
+// 3, 0.25
+struct DecimalToken : Token<DecimalToken> {
+  using attribute_type = double;
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    const auto digits = [&] {
+      const Iterator begin = i;
+      while (i != last && *i >= U'0' && *i <= U'9') ++i;
+      return i != begin;
+    };
+    if (!digits()) return false;
+    const Iterator whole = i;
+    if (!MatchText(i, last, U".") || !digits()) i = whole;
+    place = i;
+    x3::traits::move_to(std::stod(Bytes(first, i)), attribute);
+    return true;
+  }
+};
+
+// The letters on the left of a line of `spelling`, or what they stand for on its right: anything up to white space
+// or a sign of the line. On the right `=` is the boundary of clitics.
+struct LettersToken : Token<LettersToken> {
+  using attribute_type = syntax::Name;
+  const char* what;
+  bool right;
+  constexpr LettersToken(const char* w, bool r) : what(w), right(r) {}
+  template <class Context, class RContext, class Attribute>
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
+    Iterator first = place;
+    x3::skip_over(first, last, context);
+    Iterator i = first;
+    syntax::Name letters;
+    if (!MatchString(i, last, letters.text)) {
+      while (i != last && !Ends(i, last)) ++i;
+      letters.text = Bytes(first, i);
+      if (letters.text.empty() || notation::IsReserved(letters.text)) return false;
+    }
+    letters.span = SceneOf(context).Between(first, i);
+    place = i;
+    x3::traits::move_to(std::move(letters), attribute);
+    return true;
+  }
+
+ private:
+  bool Ends(Iterator i, const Iterator& last) const {
+    const char32_t c = *i;
+    if (c == U';' || c == U'"' || c == U'{' || c == U'}' || SkipBlank(i, last)) return true;
+    return !right && (c == U'=' || c == U'<' || c == U'>');
+  }
+};
+
 // ×2, x2: how many of a node one mother may hold.
 struct TimesToken : Token<TimesToken> {
   using attribute_type = int;
@@ -552,6 +606,16 @@ template <>
 struct get_info<tiersmith::NumberToken> {
   using result_type = std::string;
   std::string operator()(const tiersmith::NumberToken&) const { return "a number"; }
+};
+template <>
+struct get_info<tiersmith::DecimalToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::DecimalToken&) const { return "a number"; }
+};
+template <>
+struct get_info<tiersmith::LettersToken> {
+  using result_type = std::string;
+  std::string operator()(const tiersmith::LettersToken& token) const { return token.what; }
 };
 template <class Subject, class Action>
 struct get_info<action<Subject, Action>> {
@@ -1097,7 +1161,6 @@ struct TreeLineRule;
 struct SegmentRule;
 struct ValuesRule;
 struct DiacriticRule;
-struct DatumRule;
 const x3::rule<DaughterRule, syntax::Daughter> daughter("@a feature or node");
 const x3::rule<TreeLineRule, syntax::TreeLine> tree_line("@a mother");
 const x3::rule<struct TreeEntryRule, syntax::Tree> tree_entry("a line of the tree");
@@ -1106,17 +1169,14 @@ const x3::rule<SegmentRule, syntax::SegmentEntry> segment("a symbol");
 const x3::rule<struct WithoutRule, syntax::ValuesIn> without("without");
 const x3::rule<ValuesRule, syntax::ValuesIn> omit_value("@a feature");
 const x3::rule<DiacriticRule, syntax::Diacritic> diacritic("a diacritic");
-const x3::rule<DatumRule, syntax::Datum> datum("a row of data");
 const x3::rule<struct SegmentsHeadRule, syntax::Segments> segments_head("segments");
 const x3::rule<struct SegmentsEntryRule, syntax::Segments> segments_entry("a symbol");
 const x3::rule<struct DiacriticsEntryRule, syntax::Diacritics> diacritics_entry("a diacritic");
 const x3::rule<struct OmitEntryRule, syntax::Omit> omit_entry("@a feature");
-const x3::rule<struct DataEntryRule, syntax::Data> data_entry("a row of data");
 const x3::rule<struct ClassRule, syntax::Class> class_("@a name");
 const x3::rule<struct NamedPatternRule, syntax::NamedPattern> named_pattern("@a name");
 const x3::rule<struct LanguageRule, syntax::Language> language("the language's name in double quotes");
 const x3::rule<struct RuleHeadRule, syntax::Rule> rule_head("the rule's name in double quotes");
-const x3::rule<struct DataHeadRule, syntax::DataFrom> data_head("data");
 const x3::rule<struct TreeHeadRule> tree_head("tree");
 const x3::rule<struct EmptyHeadRule> empty_head("'{'");
 
@@ -1188,25 +1248,6 @@ const auto kPushDiacritic = [](auto& context) {
 const auto diacritics_entry_def = *diacritic[kPushDiacritic] > End("'on', 'surface' or a diacritic with ◌");
 const auto omit_entry_def = *omit_value[Push(&syntax::Omit::entries)] > End("@a feature, 'everywhere' or 'in'");
 
-const auto later_forms = spelled | spelled_ascii;
-const auto datum_def =
-    Spanned((form[To(&syntax::Datum::underlying)] | raw[later_forms][NotYet("a spelled form in ⟨ ⟩")]) >
-            ((surface[Push(&syntax::Datum::surfaces)] >
-              *(raw[Sign(U"~")][NotYet("'~' between variants")] > surface[Push(&syntax::Datum::surfaces)]) >
-              -(raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface)) |
-             (raw[Sign(U"*")][NotYet("'*' before a form that must not come out")] > surface) |
-             Wanted("a surface form in [ ]")) > -GlossToken{}[To(&syntax::Datum::gloss)]);
-// Rows that a later construct left without one of their two sides have been reported.
-const auto kPushDatum = [](auto& context) {
-  syntax::Datum& row = x3::_attr(context);
-  if (row.underlying.span.end > 0 && !row.surfaces.empty()) x3::_val(context).rows.push_back(std::move(row));
-};
-const auto data_entry_def = (+datum[kPushDatum] | Wanted("a form such as /kat/")) >
-                            End("a form, ~, * or a gloss in ' '");
-const auto data_head_def = -((Word(U"from") >
-                              StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) |
-                             raw[Word(U"comparing") > Word(U"length")][kNotYetWord]) > End("'from' or '{'");
-
 const auto class__def = name[To(&syntax::Class::name)] > Sign(U"=") > set[To(&syntax::Class::set)] >
                         End("or, and, but not, or the end of the class");
 const auto named_pattern_def = name[To(&syntax::NamedPattern::name)] >
@@ -1218,8 +1259,139 @@ const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&s
 const auto empty_head_def = x3::eps > End("'{'");
 
 BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without, omit_value,
-                    diacritic, datum, segments_head, segments_entry, diacritics_entry, omit_entry, data_entry,
-                    data_head, class_, named_pattern, language, rule_head, empty_head)
+                    diacritic, segments_head, segments_entry, diacritics_entry, omit_entry, class_, named_pattern, language, rule_head, empty_head)
+
+// ---- words ----------------------------------------------------------------------------------------
+
+const x3::rule<struct SuppletionRule, syntax::Suppletion> suppletion("in");
+const x3::rule<struct LexiconEntryRule, syntax::LexiconEntry> lexicon_entry("stem, prefix, suffix or clitic");
+const x3::rule<struct LexiconEntriesRule, syntax::Lexicon> lexicon_entries("stem, prefix, suffix or clitic");
+const x3::rule<struct LexiconHeadRule, syntax::LexiconFrom> lexicon_head("'from' or '{'");
+const x3::rule<struct AllomorphRule, syntax::Allomorph> allomorph("a form such as /-lAn/");
+const x3::rule<struct SlotValueRule, syntax::SlotValue> slot_value("@a value and its form");
+const x3::rule<struct SlotRule, syntax::ParadigmSlot> paradigm_slot("@a slot");
+const x3::rule<struct OverrideRule, syntax::CellOverride> cell_override("@a cell");
+const x3::rule<struct ParadigmEntryRule, syntax::Paradigm> paradigm_entry("@a slot");
+const x3::rule<struct ParadigmHeadRule, syntax::Paradigm> paradigm_head("@the paradigm's name");
+const x3::rule<struct SpellingLineRule, syntax::SpellingLine> spelling_line("letters");
+const x3::rule<struct SpellingEntryRule, syntax::Spelling> spelling_entry("letters");
+const x3::rule<struct LengthRule, syntax::LengthDoubled> length_doubled("doubled");
+const x3::rule<struct DatumRule, syntax::Datum> datum("a row of data");
+const x3::rule<struct DataEntryRule, syntax::Data> data_entry("a row of data");
+const x3::rule<struct ColumnRule, syntax::Column> column("@a column");
+const x3::rule<struct ColumnEntryRule, syntax::DataFrom> column_entry("@a column");
+const x3::rule<struct DataHeadRule, syntax::DataFrom> data_head("data");
+const x3::rule<struct WrittenFormRule, syntax::FormText> written_form("a form such as /kat/");
+const x3::rule<struct PlaceRule, syntax::Name> attach_place("@where it attaches");
+
+const auto written_form_def = form[kWhole] | spelled[kWhole] | spelled_ascii[kWhole];
+// `at word`: where an affix attaches; some of the places are words of the notation.
+const auto kWordAsName = [](auto& context) {
+  const Iterator begin = x3::_attr(context).begin(), end = x3::_attr(context).end();
+  x3::_val(context) = {Bytes(begin, end), SceneOf(context).Between(begin, end)};
+};
+const auto attach_place_def =
+    name[kWhole] | raw[Word(U"stem") | Word(U"host") | Word(U"word") | Word(U"phrase")][kWordAsName];
+
+using LexiconKind = syntax::LexiconEntry::Kind;
+const auto affix_word = Word(U"prefix") | Word(U"suffix") | Word(U"clitic");
+// Words that are no bare tags: they go on with the entry, or begin the next.
+const auto tag = !(affix_word | Word(U"weight")) >> name;
+const auto kWeight = [](auto& context) {
+  if (x3::_val(context).weight)
+    throw Refusal{x3::_val(context).form.span, "'weight' stands twice in the entry of this form", "keep one of the two"};
+  x3::_val(context).weight = x3::_attr(context);
+};
+const auto kAttach = [](auto& context) {
+  if (x3::_val(context).at)
+    throw Refusal{x3::_attr(context).span, "'at' stands twice in this entry", "keep one of the two"};
+  x3::_val(context).at = std::move(x3::_attr(context));
+};
+const auto suppletion_def = Word(U"in") > +name[Push(&syntax::Suppletion::in)] >
+                            (written_form[To(&syntax::Suppletion::form)] | Wanted("@a tag or the form that stands there"));
+const auto lexicon_entry_def =
+    Spanned((Word(U"stem")[Let(&syntax::LexiconEntry::kind, LexiconKind::kStem)] |
+             Word(U"prefix")[Let(&syntax::LexiconEntry::kind, LexiconKind::kPrefix)] |
+             Word(U"suffix")[Let(&syntax::LexiconEntry::kind, LexiconKind::kSuffix)] |
+             Word(U"clitic")[Let(&syntax::LexiconEntry::kind, LexiconKind::kClitic)]) >
+            written_form[To(&syntax::LexiconEntry::form)] > -GlossToken{}[To(&syntax::LexiconEntry::gloss)] >
+            *(tag[Push(&syntax::LexiconEntry::tags)] | (Word(U"weight") > DecimalToken{}[kWeight]) |
+              (Word(U"at") > attach_place[kAttach]) | suppletion[Push(&syntax::LexiconEntry::suppletive)]));
+const auto lexicon_entries_def =
+    (+lexicon_entry[Push(&syntax::Lexicon::entries)] | Wanted("stem, prefix, suffix or clitic")) >
+    End("@a tag, 'weight', 'at', 'in', stem, prefix, suffix or clitic");
+const auto lexicon_head_def =
+    -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::LexiconFrom::path)]) >
+    End("'from' or '{'");
+
+const auto allomorph_def = written_form[To(&syntax::Allomorph::form)] >>
+                           -((Word(U"after") >
+                              -raw[+BoundaryToken{}][NotYet("an infix")] > set[To(&syntax::Allomorph::after)]) |
+                             raw[Word(U"over") > set][NotYet("a template")]) >>
+                           -(Word(U"at") > attach_place[To(&syntax::Allomorph::at)]);
+const auto later_exponent = raw[(Word(U"copy") >> (Word(U"first") | Word(U"last")) >> pattern) |
+                                (Word(U"copy") > pattern)][NotYet("'copy' in a paradigm")];
+const auto slot_value_def =
+    Spanned(name[To(&syntax::SlotValue::name)] >>
+            ((allomorph[Push(&syntax::SlotValue::allomorphs)] >>
+              *(Sign(U",") > allomorph[Push(&syntax::SlotValue::allomorphs)])) |
+             later_exponent |
+             Wanted("a form such as /-lAn/, or //")));
+const auto paradigm_slot_def =
+    Spanned(name[To(&syntax::ParadigmSlot::name)] >> Sign(U":") >> +slot_value[Push(&syntax::ParadigmSlot::values)]);
+const auto cell_override_def = Spanned(+name[Push(&syntax::CellOverride::values)] > Sign(U":") >
+                                       allomorph[Push(&syntax::CellOverride::allomorphs)] >>
+                                           *(Sign(U",") > allomorph[Push(&syntax::CellOverride::allomorphs)]));
+const auto paradigm_entry_def =
+    ((Word(U"stem") > name[Push(&syntax::Paradigm::stems)]) |
+     (&(name >> Sign(U":") >> name) >> paradigm_slot[Push(&syntax::Paradigm::slots)]) |
+     (&name >> cell_override[Push(&syntax::Paradigm::overrides)]) |
+     Wanted("@a slot, a cell or 'stem', as in: number : SG // PL /-lAn/")) >
+    End("@a value, a comma, 'after', 'at' or the end of the line");
+const auto paradigm_head_def = name[To(&syntax::Paradigm::name)] > End("'{'");
+
+const LettersToken letters("letters, as in: ng = ŋ", false), means("symbols, a boundary or nothing", true);
+const auto kNothing = [](auto& context) {
+  const Iterator begin = x3::_attr(context).begin(), end = x3::_attr(context).end();
+  x3::_val(context).means = {"", SceneOf(context).Between(begin, end)};
+};
+const auto spelling_line_def =
+    Spanned(letters[To(&syntax::SpellingLine::letters)] >
+            (Sign(U"=") | Sign(U"<")[Let(&syntax::SpellingLine::use, syntax::SpellingLine::Use::kRead)] |
+             Sign(U">")[Let(&syntax::SpellingLine::use, syntax::SpellingLine::Use::kWrite)] | Wanted("=, < or >")) >
+            (raw[Word(U"nothing")][kNothing] | means[To(&syntax::SpellingLine::means)] |
+             Wanted("symbols, a boundary or nothing")) >
+            -(Word(U"before") > set[To(&syntax::SpellingLine::before)]) >
+            -(Word(U"after") > set[To(&syntax::SpellingLine::after)]) >
+            -(Word(U"between") > set[To(&syntax::SpellingLine::between)]));
+const auto spelling_entry_def = (+spelling_line[Push(&syntax::Spelling::lines)] | Wanted("letters, as in: ng = ŋ")) >
+                                End("letters, before, after or between");
+
+const auto length_doubled_def =
+    Word(U"doubled") > -(Word(U"in") > set[To(&syntax::LengthDoubled::in)]) > End("'in' or the end of the line");
+const auto star = Sign(U"*") > surface[Push(&syntax::Datum::starred)];
+const auto datum_def = Spanned(written_form[To(&syntax::Datum::underlying)] >
+                               ((surface[Push(&syntax::Datum::surfaces)] >
+                                 *(Sign(U"~") > surface[Push(&syntax::Datum::surfaces)]) > *star) |
+                                +star | Wanted("a surface form in [ ]")) > -GlossToken{}[To(&syntax::Datum::gloss)]);
+const auto data_entry_def = (+datum[Push(&syntax::Data::rows)] | Wanted("a form such as /kat/")) >
+                            End("a form, ~, * or a gloss in ' '");
+const auto column_def = Spanned(name[To(&syntax::Column::field)] > Sign(U"=") >
+                                (number[To(&syntax::Column::number)] | name[To(&syntax::Column::heading)] |
+                                 Wanted("@the heading or the number of a column")) >
+                                -Word(U"spelled")[Let(&syntax::Column::spelled, true)]);
+const auto column_entry_def =
+    (raw[Word(U"where") > name > Sign(U"=") > (name | Wanted("@a value"))][NotYet("'where' in the columns of a table")] |
+     column[Push(&syntax::DataFrom::columns)] | Wanted("@a column, as in: surface = 2")) >
+    End("'spelled' or the end of the column");
+const auto data_head_def =
+    -(Word(U"comparing") > Word(U"length")[Let(&syntax::DataFrom::comparing_length, true)]) >
+    -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) >
+    End("'from', 'comparing' or '{'");
+
+BOOST_SPIRIT_DEFINE(written_form, attach_place, suppletion, lexicon_entry, lexicon_entries, lexicon_head, allomorph,
+                    slot_value, paradigm_slot, cell_override, paradigm_entry, paradigm_head, spelling_line,
+                    spelling_entry, length_doubled, datum, data_entry, column, column_entry, data_head)
 
 // ---- reading --------------------------------------------------------------------------------------
 
@@ -1333,6 +1505,16 @@ class Reader {
         return ReadLine(section, named_pattern, syntax::NamedPattern(), "write: pattern Coda = [-syll] #");
       case outline::SectionKind::kRule:
         return ReadRule(section);
+      case outline::SectionKind::kLexicon:
+        return ReadLexicon(section);
+      case outline::SectionKind::kParadigm:
+        return ReadParadigm(section);
+      case outline::SectionKind::kSpelling:
+        return ReadBlock(section, spelling_entry, syntax::Spelling(), "a line reads: ng = ŋ");
+      case outline::SectionKind::kLength:
+        return ReadLine(section, length_doubled, syntax::LengthDoubled(), "write: length doubled in [-syll]");
+      case outline::SectionKind::kPrint:
+        return ReadPrint(section);
       case outline::SectionKind::kData:
         return ReadData(section);
       case outline::SectionKind::kLater:
@@ -1407,6 +1589,42 @@ class Reader {
     result_.tops.push_back(std::move(rule));
   }
 
+  void ReadLexicon(const outline::Section& section) {
+    const char* remedy = "an entry reads: stem /tilun/ 'rope' noun";
+    syntax::LexiconFrom from;
+    if (!Run(section.head, lexicon_head, from, "write: lexicon from \"lex.tsv\", or lexicon { stem /a/ }")) return;
+    if (from.path.span.end > 0) {
+      if (section.has_block) return NoBlock(section);
+      from.span = section.whole;
+      result_.tops.push_back(std::move(from));
+      return;
+    }
+    if (!NeedsBlock(section, remedy)) return;
+    syntax::Lexicon lexicon;
+    ReadEntries(section, lexicon_entries, lexicon, remedy);
+    lexicon.span = section.whole;
+    result_.tops.push_back(std::move(lexicon));
+  }
+
+  void ReadParadigm(const outline::Section& section) {
+    const char* remedy = "a paradigm reads: paradigm noun { stem noun; number : SG // PL /-lAn/ }";
+    syntax::Paradigm paradigm;
+    const bool named = Run(section.head, paradigm_head, paradigm, remedy);
+    if (!section.has_block) {
+      if (named) NeedsBlock(section, remedy);
+      return;
+    }
+    ReadEntries(section, paradigm_entry, paradigm, remedy);
+    if (!named) return;
+    paradigm.span = section.whole;
+    result_.tops.push_back(std::move(paradigm));
+  }
+
+  void ReadPrint(const outline::Section& section) {
+    if (section.head.span.end > section.head.span.begin) return Later("marks in 'print'", section.head.span);
+    result_.tops.push_back(syntax::Print{section.whole});
+  }
+
   void ReadData(const outline::Section& section) {
     const char* remedy = "a row reads: /tilun-pa/ [tilumpa] 'on the rope'";
     syntax::DataFrom from;
@@ -1414,16 +1632,23 @@ class Reader {
         !section.has_block)
       return;
     if (from.path.span.end > 0) {
-      if (section.has_block) Later("columns named in braces", section.body.span);
+      ReadEntries(section, column_entry, from, "a column reads: surface = 2, or surface = Phonetic_Form");
       from.span = section.whole;
       result_.tops.push_back(std::move(from));
       return;
     }
     if (!NeedsBlock(section, remedy)) return;
     syntax::Data data;
+    data.comparing_length = from.comparing_length;
     ReadEntries(section, data_entry, data, remedy);
     data.span = section.whole;
     result_.tops.push_back(std::move(data));
+  }
+
+  // A table is named, and a block stands beside it.
+  void NoBlock(const outline::Section& section) {
+    diagnostics_.Error(Kind::kSyntax, section.body.span, "'" + section.word + " from' takes no block",
+                       "write a second '" + section.word + " { }' for what is not in the table");
   }
 
   std::string_view text_;

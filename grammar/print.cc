@@ -1,6 +1,7 @@
 // The syntax tree in the notation again: the dump of this stage. [+nasal -cont] prints as `[+nasal -cont]`.
 // What a later release brings prints as a comment. Tested by tests/unit/grammar/print_test.cc (round trips).
 #include <algorithm>
+#include <sstream>
 
 #include "grammar/parse.h"
 #include "grammar/words.h"
@@ -222,6 +223,96 @@ std::string PrintSegment(const syntax::SegmentEntry& entry) {
          (entry.bundle ? " " + PrintBundle(*entry.bundle) : "");
 }
 
+// ---- words ----------------------------------------------------------------------------------------
+
+std::string PrintGloss(const std::string& gloss) {
+  std::string out = "'";
+  for (const char c : gloss) out += c == '\'' ? "''" : std::string(1, c);
+  return out + "'";
+}
+
+std::string PrintEntryKind(syntax::LexiconEntry::Kind kind) {
+  switch (kind) {
+    case syntax::LexiconEntry::Kind::kStem:
+      return "stem";
+    case syntax::LexiconEntry::Kind::kPrefix:
+      return "prefix";
+    case syntax::LexiconEntry::Kind::kSuffix:
+      return "suffix";
+    case syntax::LexiconEntry::Kind::kClitic:
+      return "clitic";
+  }
+  return {};
+}
+
+// Quoted where bare it would begin or go on with an entry.
+std::string PrintTag(const syntax::Name& tag) {
+  const bool word = tag.text == "prefix" || tag.text == "suffix" || tag.text == "clitic" || tag.text == "weight";
+  return word ? Quoted(tag.text) : PrintName(tag);
+}
+
+std::string PrintLexiconEntry(const syntax::LexiconEntry& entry) {
+  std::string out = PrintEntryKind(entry.kind) + " " + PrintForm(entry.form);
+  if (entry.gloss) out += " " + PrintGloss(entry.gloss->text);
+  for (const syntax::Name& tag : entry.tags) out += " " + PrintTag(tag);
+  if (entry.weight) {
+    std::ostringstream weight;
+    weight << *entry.weight;
+    out += " weight " + weight.str();
+  }
+  if (entry.at) out += " at " + PrintName(*entry.at);
+  for (const syntax::Suppletion& other : entry.suppletive)
+    out += " in " + Joined(other.in, " ", PrintName) + " " + PrintForm(other.form);
+  return out;
+}
+
+std::string PrintAllomorph(const syntax::Allomorph& allomorph) {
+  return PrintForm(allomorph.form) + (allomorph.after ? " after " + PrintSet(*allomorph.after) : "") +
+         (allomorph.at ? " at " + PrintName(*allomorph.at) : "");
+}
+
+std::string PrintSlotValue(const syntax::SlotValue& value) {
+  return PrintName(value.name) + " " + Joined(value.allomorphs, ", ", PrintAllomorph);
+}
+
+std::string PrintLetters(const syntax::Name& letters) {
+  return notation::IsPlainSymbol(letters.text) ? letters.text : Quoted(letters.text);
+}
+
+std::string PrintSpellingLine(const syntax::SpellingLine& line) {
+  std::string out = PrintLetters(line.letters);
+  switch (line.use) {
+    case syntax::SpellingLine::Use::kBoth:
+      out += " = ";
+      break;
+    case syntax::SpellingLine::Use::kRead:
+      out += " < ";
+      break;
+    case syntax::SpellingLine::Use::kWrite:
+      out += " > ";
+      break;
+  }
+  out += line.means.text.empty() ? "nothing" : PrintLetters(line.means);
+  if (line.before) out += " before " + PrintSet(*line.before);
+  if (line.after) out += " after " + PrintSet(*line.after);
+  if (line.between) out += " between " + PrintSet(*line.between);
+  return out;
+}
+
+std::string PrintColumn(const syntax::Column& column) {
+  return PrintName(column.field) + " = " + (column.number ? std::to_string(*column.number) : PrintName(column.heading)) +
+         (column.spelled ? " spelled" : "");
+}
+
+std::string PrintSurface(const syntax::FormText& form) { return "[" + form.raw + "]"; }
+
+std::string PrintDatum(const syntax::Datum& row) {
+  std::string out = PrintForm(row.underlying);
+  if (!row.surfaces.empty()) out += " " + Joined(row.surfaces, " ~ ", PrintSurface);
+  for (const syntax::FormText& form : row.starred) out += " * " + PrintSurface(form);
+  return row.gloss ? out + " " + PrintGloss(row.gloss->text) : out;
+}
+
 template <class List, class F>
 std::string Block(const std::string& head, const List& entries, const F& print) {
   std::string out = head + " {\n";
@@ -275,17 +366,33 @@ struct TopPrinter {
     for (const auto& change : top.changes) out += "  " + PrintChange(change) + "\n";
     return out + PrintMode(top.mode) + "}\n";
   }
-  std::string operator()(const syntax::Data& top) const {
-    return Block("data", top.rows, [](const syntax::Datum& row) {
-      std::string out = PrintForm(row.underlying) + " " +
-                        Joined(row.surfaces, " ~ ", [](const syntax::FormText& form) { return "[" + form.raw + "]"; });
-      if (!row.gloss) return out;
-      out += " '";
-      for (const char c : row.gloss->text) out += c == '\'' ? "''" : std::string(1, c);
-      return out + "'";
-    });
+  std::string operator()(const syntax::Lexicon& top) const { return Block("lexicon", top.entries, PrintLexiconEntry); }
+  std::string operator()(const syntax::LexiconFrom& top) const {
+    return "lexicon from " + Quoted(top.path.text) + "\n";
   }
-  std::string operator()(const syntax::DataFrom& top) const { return "data from " + Quoted(top.path.text) + "\n"; }
+  std::string operator()(const syntax::Paradigm& top) const {
+    std::string out = "paradigm " + PrintName(top.name) + " {\n";
+    for (const syntax::Name& tag : top.stems) out += "  stem " + PrintName(tag) + "\n";
+    for (const syntax::ParadigmSlot& slot : top.slots)
+      out += "  " + PrintName(slot.name) + " : " + Joined(slot.values, "  ", PrintSlotValue) + "\n";
+    for (const syntax::CellOverride& cell : top.overrides) {
+      out += "  " + Joined(cell.values, " ", PrintName) + " : " + Joined(cell.allomorphs, ", ", PrintAllomorph) + "\n";
+    }
+    return out + "}\n";
+  }
+  std::string operator()(const syntax::Spelling& top) const { return Block("spelling", top.lines, PrintSpellingLine); }
+  std::string operator()(const syntax::LengthDoubled& top) const {
+    return "length doubled" + (top.in ? " in " + PrintSet(*top.in) : "") + "\n";
+  }
+  std::string operator()(const syntax::Print&) const { return "print\n"; }
+  std::string operator()(const syntax::Data& top) const {
+    return Block(top.comparing_length ? "data comparing length" : "data", top.rows, PrintDatum);
+  }
+  std::string operator()(const syntax::DataFrom& top) const {
+    const std::string head =
+        std::string(top.comparing_length ? "data comparing length" : "data") + " from " + Quoted(top.path.text);
+    return top.columns.empty() ? head + "\n" : Block(head, top.columns, PrintColumn);
+  }
   std::string operator()(const syntax::Include& top) const { return "include " + Quoted(top.path.text) + "\n"; }
   std::string operator()(const syntax::Strict&) const { return "strict\n"; }
   std::string operator()(const syntax::Complete&) const { return "complete\n"; }

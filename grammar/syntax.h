@@ -257,18 +257,102 @@ struct Fuse {  // fuse Place within morpheme [in PATTERN]
   Span span;
 };
 
+// ---- words --------------------------------------------------------------------------------------
+struct Suppletion {  // in PST /wen/
+  std::vector<Name> in;
+  FormText form;
+};
+struct LexiconEntry {
+  enum class Kind { kStem, kPrefix, kSuffix, kClitic };
+  Kind kind = Kind::kStem;
+  FormText form;
+  std::optional<Name> gloss;
+  std::vector<Name> tags;
+  std::optional<double> weight;
+  std::optional<Name> at;  // at word
+  std::vector<Suppletion> suppletive;
+  Span span;
+};
+struct Lexicon {
+  std::vector<LexiconEntry> entries;
+  Span span;
+};
+struct LexiconFrom {
+  Name path;
+  Span span;
+};
+
+struct Allomorph {  // /-tA/ after C at word
+  FormText form;
+  std::optional<Set> after;
+  std::optional<Name> at;
+};
+struct SlotValue {  // LOC /-tA/ after C, /-sA/ after V
+  Name name;
+  std::vector<Allomorph> allomorphs;
+  Span span;
+};
+struct ParadigmSlot {  // case : NOM // LOC /-tA/
+  Name name;
+  std::vector<SlotValue> values;
+  Span span;
+};
+struct CellOverride {  // PL LOC : /-lessA/
+  std::vector<Name> values;
+  std::vector<Allomorph> allomorphs;
+  Span span;
+};
+struct Paradigm {
+  Name name;
+  std::vector<Name> stems;  // stem TAG, each time it stands
+  std::vector<ParadigmSlot> slots;
+  std::vector<CellOverride> overrides;
+  Span span;
+};
+
+struct SpellingLine {  // ng = ŋ, D < T, pp > pː, n = ŋ before /k/
+  enum class Use { kBoth, kRead, kWrite };
+  Name letters;
+  Use use = Use::kBoth;
+  Name means;  // symbols, ː, boundaries, or empty text for `nothing`
+  std::optional<Set> before, after, between;
+  Span span;
+};
+struct Spelling {
+  std::vector<SpellingLine> lines;
+  Span span;
+};
+struct LengthDoubled {  // length doubled in C
+  std::optional<Set> in;
+  Span span;
+};
+struct Print {  // print: the words without marks of prosody
+  Span span;
+};
+
 struct Datum {
   FormText underlying;
-  std::vector<FormText> surfaces;
+  std::vector<FormText> surfaces;  // any one passes
+  std::vector<FormText> starred;   // * [d]: none may come out
   std::optional<Name> gloss;
   Span span;
 };
 struct Data {
+  bool comparing_length = false;
   std::vector<Datum> rows;
   Span span;
 };
+struct Column {  // surface = 2 spelled, comment = Remarks
+  Name field;
+  std::optional<int> number;
+  Name heading;  // without a number
+  bool spelled = false;
+  Span span;
+};
 struct DataFrom {
+  bool comparing_length = false;
   Name path;
+  std::vector<Column> columns;
   Span span;
 };
 
@@ -279,7 +363,8 @@ struct Unsupported {
 };
 
 using Top = std::variant<Language, Include, Strict, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Fuse,
-                         Sharing, Rule, Complete, Data, DataFrom, Unsupported>;
+                         Sharing, Rule, Complete, Lexicon, LexiconFrom, Paradigm, Spelling, LengthDoubled, Print, Data,
+                         DataFrom, Unsupported>;
 struct File {
   std::vector<Top> tops;
   // Constructs found inside rules and blocks that this release does not run.

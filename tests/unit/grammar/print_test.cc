@@ -231,17 +231,82 @@ class Maker {
     rule.mode = static_cast<syntax::Rule::Mode>(Below(3));
     return rule;
   }
+  syntax::FormText Surface() { return {Chance(50) ? "" : "pul{H} 'lar", false, {}}; }
+  syntax::LexiconEntry LexiconEntry() {
+    syntax::LexiconEntry entry;
+    entry.kind = static_cast<syntax::LexiconEntry::Kind>(Below(4));
+    entry.form = Form();
+    entry.gloss = Perhaps([&] { return syntax::Name{"the dog's", {}}; });
+    entry.tags = Several(0, 3, [&] { return Name(); });
+    if (Chance(20)) entry.tags.push_back({"weight", {}});
+    if (Chance(50)) entry.weight = 0.25;
+    entry.at = Perhaps([&] { return Name(); });
+    entry.suppletive = Several(0, 2, [&] { return syntax::Suppletion{Several(1, 2, [&] { return Name(); }), Form()}; });
+    return entry;
+  }
+  syntax::Allomorph Allomorph() {
+    return {Form(), Perhaps([&] { return Set(2); }), Perhaps([&] { return Name(); })};
+  }
+  syntax::Paradigm Paradigm() {
+    syntax::Paradigm paradigm;
+    paradigm.name = Name();
+    const auto allomorphs = [&] { return Several(1, 3, [&] { return Allomorph(); }); };
+    paradigm.stems = Several(0, 2, [&] { return Name(); });
+    paradigm.slots = Several(0, 3, [&] {
+      return syntax::ParadigmSlot{
+          Name(), Several(1, 3, [&] { return syntax::SlotValue{Name(), allomorphs(), {}}; }), {}};
+    });
+    paradigm.overrides = Several(0, 2, [&] {
+      return syntax::CellOverride{Several(1, 2, [&] { return Name(); }), allomorphs(), {}};
+    });
+    return paradigm;
+  }
+  syntax::SpellingLine SpellingLine() {
+    static const std::vector<std::string> letters = {"ng", "k'", "+", "-", "before", "a b"};
+    static const std::vector<std::string> means = {"ŋ", "aː", "", "-", "=", "k s"};
+    const auto named = [&] {
+      syntax::Set set;
+      set.kind = syntax::Set::Kind::kClass;
+      set.name = Name();
+      return set;
+    };
+    syntax::SpellingLine line;
+    line.letters = {letters[static_cast<std::size_t>(Below(static_cast<int>(letters.size())))], {}};
+    line.use = static_cast<syntax::SpellingLine::Use>(Below(3));
+    line.means = {means[static_cast<std::size_t>(Below(static_cast<int>(means.size())))], {}};
+    line.before = Perhaps(named);
+    line.after = Perhaps(named);
+    line.between = Perhaps(named);
+    return line;
+  }
+  syntax::DataFrom DataFrom() {
+    syntax::DataFrom from;
+    from.comparing_length = Chance(30);
+    from.path = {"forms.tsv", {}};
+    from.columns = Several(0, 3, [&] {
+      syntax::Column column;
+      column.field = Name();
+      if (Chance(50)) column.number = 1 + Below(12);
+      if (!column.number) column.heading = Name();
+      column.spelled = Chance(30);
+      return column;
+    });
+    return from;
+  }
   syntax::Datum Datum() {
     static const std::vector<std::string> glosses = {"rope", "the dog's", "dogs'", "'", "a } -- ; b", "x'y'"};
     syntax::Datum datum;
     datum.underlying = Form();
-    datum.surfaces.push_back({Chance(50) ? "" : "pul{H} 'lar", false, {}});
+    datum.underlying.spelled = Chance(30);
+    if (datum.underlying.spelled) datum.underlying.raw = "tingun-lar";
+    datum.surfaces = Several(0, 2, [&] { return Surface(); });
+    datum.starred = Several(datum.surfaces.empty() ? 1 : 0, 2, [&] { return Surface(); });
     if (Chance(60))
       datum.gloss = syntax::Name{glosses[static_cast<std::size_t>(Below(static_cast<int>(glosses.size())))], {}};
     return datum;
   }
   syntax::Top Top() {
-    switch (Below(10)) {
+    switch (Below(15)) {
       case 0:
         return syntax::Language{{"Velmari -- north", {}}, {}};
       case 1:
@@ -262,9 +327,19 @@ class Maker {
       case 6:
         return syntax::NamedPattern{Name(), Pattern(2), {}};
       case 7:
-        return syntax::Data{Several(0, 4, [&] { return Datum(); }), {}};
+        return syntax::Data{Chance(30), Several(0, 4, [&] { return Datum(); }), {}};
       case 8:
-        return syntax::DataFrom{{"forms.tsv", {}}, {}};
+        return DataFrom();
+      case 9:
+        return syntax::Lexicon{Several(0, 4, [&] { return LexiconEntry(); }), {}};
+      case 10:
+        return Chance(50) ? syntax::Top(syntax::LexiconFrom{{"lex.tsv", {}}, {}}) : syntax::Top(syntax::Print{});
+      case 11:
+        return Paradigm();
+      case 12:
+        return syntax::Spelling{Several(0, 4, [&] { return SpellingLine(); }), {}};
+      case 13:
+        return syntax::LengthDoubled{Perhaps([&] { return Set(2); }), {}};
       default:
         return Rule();
     }
@@ -316,6 +391,24 @@ TEST_CASE("print: rows", "[unit]") {
       {"data { /a -- b/ [c}] 'the dog''s' // []; /x/ [y] }",
        "data {\n  /a -- b/ [c}] 'the dog''s'\n  // []\n  /x/ [y]\n}\n"},
       {"data from \"forms.tsv\"", "data from \"forms.tsv\"\n"},
+      {"data comparing length { ⟨tingun⟩ [tiŋun] ~ [tiŋːun] * [tinun] 'knot' /a/ * [b] <ab> [a] }",
+       "data comparing length {\n  ⟨tingun⟩ [tiŋun] ~ [tiŋːun] * [tinun] 'knot'\n  /a/ * [b]\n  ⟨ab⟩ [a]\n}\n"},
+      {"data from \"x.tsv\" { underlying = 1 spelled; surface = Phonetic_Form\n comment = 4 }",
+       "data from \"x.tsv\" {\n  underlying = 1 spelled\n  surface = Phonetic_Form\n  comment = 4\n}\n"},
+      {"lexicon { stem /mo/ 'go' verb in PST /wen/ stem ⟨tingun⟩ 'knot' noun loan weight 2.5 prefix /mu-/ class1\n"
+       " suffix /-ki/ strong at word clitic /=wa/ }",
+       "lexicon {\n  stem /mo/ 'go' verb in PST /wen/\n  stem ⟨tingun⟩ 'knot' noun loan weight 2.5\n  prefix /mu-/ "
+       "class1\n  suffix /-ki/ strong at \"word\"\n  clitic /=wa/\n}\n"},
+      {"lexicon from \"lex.tsv\"", "lexicon from \"lex.tsv\"\n"},
+      {"paradigm noun { stem noun; number : SG // PL /-lAn/\n case: NOM // LOC /-tA/ after C, /-sA/ after V ABL /-tAr/ "
+       "at word\n PL LOC : /-lessA/ }",
+       "paradigm noun {\n  stem noun\n  number : SG //  PL /-lAn/\n  case : NOM //  LOC /-tA/ after C, /-sA/ after "
+       "V  ABL /-tAr/ at \"word\"\n  PL LOC : /-lessA/\n}\n"},
+      {"spelling { ng = ŋ; aa = aː; n = ŋ before /k/; D < T; pp > pː; \"-\" = ʔ; + < -\n h > nothing between V & < = }",
+       "spelling {\n  ng = ŋ\n  aa = \"aː\"\n  n = ŋ before /k/\n  D < T\n  pp > \"pː\"\n  \"-\" = ʔ\n  \"+\" < "
+       "\"-\"\n  h > nothing between V\n  & < \"=\"\n}\n"},
+      {"length doubled in C", "length doubled in C\n"},
+      {"print", "print\n"},
       {"language \"Velmari\" -- north", "language \"Velmari\"\n"},
   };
   for (const Row& row : rows) {

@@ -57,8 +57,29 @@ inline std::string Shape(const ValuesIn& v) { return "(values " + ShapeAll(v.val
 inline std::string Shape(const Diacritic& d) {
   return "(diacritic " + Shape(d.symbol) + Shape(d.bundle) + ShapeMaybe(d.on) + Number(d.surface) + ")";
 }
+inline std::string Shape(const Suppletion& s) { return "(in " + ShapeAll(s.in) + Shape(s.form) + ")"; }
+inline std::string Shape(const LexiconEntry& e) {
+  return "(entry " + Number(e.kind) + Shape(e.form) + ShapeMaybe(e.gloss) + ShapeAll(e.tags) +
+         (e.weight ? std::to_string(*e.weight) : "none") + ShapeMaybe(e.at) + ShapeAll(e.suppletive) + ")";
+}
+inline std::string Shape(const Allomorph& a) {
+  return "(allomorph " + Shape(a.form) + ShapeMaybe(a.after) + ShapeMaybe(a.at) + ")";
+}
+inline std::string Shape(const SlotValue& v) { return "(value " + Shape(v.name) + ShapeAll(v.allomorphs) + ")"; }
+inline std::string Shape(const ParadigmSlot& s) { return "(slot " + Shape(s.name) + ShapeAll(s.values) + ")"; }
+inline std::string Shape(const CellOverride& o) {
+  return "(cell " + ShapeAll(o.values) + ShapeAll(o.allomorphs) + ")";
+}
+inline std::string Shape(const SpellingLine& l) {
+  return "(line " + Shape(l.letters) + Number(l.use) + Shape(l.means) + ShapeMaybe(l.before) + ShapeMaybe(l.after) +
+         ShapeMaybe(l.between) + ")";
+}
+inline std::string Shape(const Column& c) {
+  return "(column " + Shape(c.field) + (c.number ? std::to_string(*c.number) : Shape(c.heading)) + Number(c.spelled) +
+         ")";
+}
 inline std::string Shape(const Datum& d) {
-  return "(datum " + Shape(d.underlying) + ShapeAll(d.surfaces) + ShapeMaybe(d.gloss) + ")";
+  return "(datum " + Shape(d.underlying) + ShapeAll(d.surfaces) + ShapeAll(d.starred) + ShapeMaybe(d.gloss) + ")";
 }
 
 struct ShapeTop {
@@ -75,8 +96,18 @@ struct ShapeTop {
   std::string operator()(const Rule& t) const {
     return "(rule " + Shape(t.name) + Shape(t.where) + ShapeAll(t.unless) + ShapeAll(t.changes) + Number(t.mode) + ")";
   }
-  std::string operator()(const Data& t) const { return "(data " + ShapeAll(t.rows) + ")"; }
-  std::string operator()(const DataFrom& t) const { return "(data-from " + Shape(t.path) + ")"; }
+  std::string operator()(const Lexicon& t) const { return "(lexicon " + ShapeAll(t.entries) + ")"; }
+  std::string operator()(const LexiconFrom& t) const { return "(lexicon-from " + Shape(t.path) + ")"; }
+  std::string operator()(const Paradigm& t) const {
+    return "(paradigm " + Shape(t.name) + ShapeAll(t.stems) + ShapeAll(t.slots) + ShapeAll(t.overrides) + ")";
+  }
+  std::string operator()(const Spelling& t) const { return "(spelling " + ShapeAll(t.lines) + ")"; }
+  std::string operator()(const LengthDoubled& t) const { return "(length-doubled " + ShapeMaybe(t.in) + ")"; }
+  std::string operator()(const Print&) const { return "(print)"; }
+  std::string operator()(const Data& t) const { return "(data " + Number(t.comparing_length) + ShapeAll(t.rows) + ")"; }
+  std::string operator()(const DataFrom& t) const {
+    return "(data-from " + Number(t.comparing_length) + Shape(t.path) + ShapeAll(t.columns) + ")";
+  }
   std::string operator()(const Include& t) const { return "(include " + Shape(t.path) + ")"; }
   std::string operator()(const Strict&) const { return "(strict)"; }
   std::string operator()(const Complete&) const { return "(complete)"; }
