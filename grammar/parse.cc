@@ -1259,7 +1259,8 @@ const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&s
 const auto empty_head_def = x3::eps > End("'{'");
 
 BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without, omit_value,
-                    diacritic, segments_head, segments_entry, diacritics_entry, omit_entry, class_, named_pattern, language, rule_head, empty_head)
+                    diacritic, segments_head, segments_entry, diacritics_entry, omit_entry, class_, named_pattern,
+                    language, rule_head, empty_head)
 
 // ---- words ----------------------------------------------------------------------------------------
 
@@ -1299,7 +1300,8 @@ const auto affix_word = Word(U"prefix") | Word(U"suffix") | Word(U"clitic");
 const auto tag = !(affix_word | Word(U"weight")) >> name;
 const auto kWeight = [](auto& context) {
   if (x3::_val(context).weight)
-    throw Refusal{x3::_val(context).form.span, "'weight' stands twice in the entry of this form", "keep one of the two"};
+    throw Refusal{x3::_val(context).form.span, "'weight' stands twice in the entry of this form",
+                  "keep one of the two"};
   x3::_val(context).weight = x3::_attr(context);
 };
 const auto kAttach = [](auto& context) {
@@ -1308,7 +1310,8 @@ const auto kAttach = [](auto& context) {
   x3::_val(context).at = std::move(x3::_attr(context));
 };
 const auto suppletion_def = Word(U"in") > +name[Push(&syntax::Suppletion::in)] >
-                            (written_form[To(&syntax::Suppletion::form)] | Wanted("@a tag or the form that stands there"));
+                            (written_form[To(&syntax::Suppletion::form)] |
+                             Wanted("@a tag or the form that stands there"));
 const auto lexicon_entry_def =
     Spanned((Word(U"stem")[Let(&syntax::LexiconEntry::kind, LexiconKind::kStem)] |
              Word(U"prefix")[Let(&syntax::LexiconEntry::kind, LexiconKind::kPrefix)] |
@@ -1317,37 +1320,34 @@ const auto lexicon_entry_def =
             written_form[To(&syntax::LexiconEntry::form)] > -GlossToken{}[To(&syntax::LexiconEntry::gloss)] >
             *(tag[Push(&syntax::LexiconEntry::tags)] | (Word(U"weight") > DecimalToken{}[kWeight]) |
               (Word(U"at") > attach_place[kAttach]) | suppletion[Push(&syntax::LexiconEntry::suppletive)]));
-const auto lexicon_entries_def =
-    (+lexicon_entry[Push(&syntax::Lexicon::entries)] | Wanted("stem, prefix, suffix or clitic")) >
-    End("@a tag, 'weight', 'at', 'in', stem, prefix, suffix or clitic");
-const auto lexicon_head_def =
-    -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::LexiconFrom::path)]) >
-    End("'from' or '{'");
+const auto lexicon_entries_def = (+lexicon_entry[Push(&syntax::Lexicon::entries)] |
+                                  Wanted("stem, prefix, suffix or clitic")) >
+                                 End("@a tag, 'weight', 'at', 'in', stem, prefix, suffix or clitic");
+const auto lexicon_head_def = -(Word(U"from") >
+                                StringToken("the name of a file in double quotes")[To(&syntax::LexiconFrom::path)]) >
+                              End("'from' or '{'");
 
 const auto allomorph_def = written_form[To(&syntax::Allomorph::form)] >>
-                           -((Word(U"after") >
-                              -raw[+BoundaryToken{}][NotYet("an infix")] > set[To(&syntax::Allomorph::after)]) |
+                           -((Word(U"after") > -raw[+BoundaryToken{}][NotYet("an infix")] >
+                              set[To(&syntax::Allomorph::after)]) |
                              raw[Word(U"over") > set][NotYet("a template")]) >>
                            -(Word(U"at") > attach_place[To(&syntax::Allomorph::at)]);
 const auto later_exponent = raw[(Word(U"copy") >> (Word(U"first") | Word(U"last")) >> pattern) |
                                 (Word(U"copy") > pattern)][NotYet("'copy' in a paradigm")];
 const auto slot_value_def =
-    Spanned(name[To(&syntax::SlotValue::name)] >>
-            ((allomorph[Push(&syntax::SlotValue::allomorphs)] >>
-              *(Sign(U",") > allomorph[Push(&syntax::SlotValue::allomorphs)])) |
-             later_exponent |
-             Wanted("a form such as /-lAn/, or //")));
+    Spanned(name[To(&syntax::SlotValue::name)] >> ((allomorph[Push(&syntax::SlotValue::allomorphs)] >>
+                                                    *(Sign(U",") > allomorph[Push(&syntax::SlotValue::allomorphs)])) |
+                                                   later_exponent | Wanted("a form such as /-lAn/, or //")));
 const auto paradigm_slot_def =
     Spanned(name[To(&syntax::ParadigmSlot::name)] >> Sign(U":") >> +slot_value[Push(&syntax::ParadigmSlot::values)]);
 const auto cell_override_def = Spanned(+name[Push(&syntax::CellOverride::values)] > Sign(U":") >
                                        allomorph[Push(&syntax::CellOverride::allomorphs)] >>
-                                           *(Sign(U",") > allomorph[Push(&syntax::CellOverride::allomorphs)]));
-const auto paradigm_entry_def =
-    ((Word(U"stem") > name[Push(&syntax::Paradigm::stems)]) |
-     (&(name >> Sign(U":") >> name) >> paradigm_slot[Push(&syntax::Paradigm::slots)]) |
-     (&name >> cell_override[Push(&syntax::Paradigm::overrides)]) |
-     Wanted("@a slot, a cell or 'stem', as in: number : SG // PL /-lAn/")) >
-    End("@a value, a comma, 'after', 'at' or the end of the line");
+                                       *(Sign(U",") > allomorph[Push(&syntax::CellOverride::allomorphs)]));
+const auto paradigm_entry_def = ((Word(U"stem") > name[Push(&syntax::Paradigm::stems)]) |
+                                 (&(name >> Sign(U":") >> name) >> paradigm_slot[Push(&syntax::Paradigm::slots)]) |
+                                 (&name >> cell_override[Push(&syntax::Paradigm::overrides)]) |
+                                 Wanted("@a slot, a cell or 'stem', as in: number : SG // PL /-lAn/")) >
+                                End("@a value, a comma, 'after', 'at' or the end of the line");
 const auto paradigm_head_def = name[To(&syntax::Paradigm::name)] > End("'{'");
 
 const LettersToken letters("letters, as in: ng = ŋ", false), means("symbols, a boundary or nothing", true);
@@ -1360,34 +1360,33 @@ const auto spelling_line_def =
             (Sign(U"=") | Sign(U"<")[Let(&syntax::SpellingLine::use, syntax::SpellingLine::Use::kRead)] |
              Sign(U">")[Let(&syntax::SpellingLine::use, syntax::SpellingLine::Use::kWrite)] | Wanted("=, < or >")) >
             (raw[Word(U"nothing")][kNothing] | means[To(&syntax::SpellingLine::means)] |
-             Wanted("symbols, a boundary or nothing")) >
-            -(Word(U"before") > set[To(&syntax::SpellingLine::before)]) >
+             Wanted("symbols, a boundary or nothing")) > -(Word(U"before") > set[To(&syntax::SpellingLine::before)]) >
             -(Word(U"after") > set[To(&syntax::SpellingLine::after)]) >
             -(Word(U"between") > set[To(&syntax::SpellingLine::between)]));
 const auto spelling_entry_def = (+spelling_line[Push(&syntax::Spelling::lines)] | Wanted("letters, as in: ng = ŋ")) >
                                 End("letters, before, after or between");
 
-const auto length_doubled_def =
-    Word(U"doubled") > -(Word(U"in") > set[To(&syntax::LengthDoubled::in)]) > End("'in' or the end of the line");
+const auto length_doubled_def = Word(U"doubled") > -(Word(U"in") > set[To(&syntax::LengthDoubled::in)]) >
+                                End("'in' or the end of the line");
 const auto star = Sign(U"*") > surface[Push(&syntax::Datum::starred)];
-const auto datum_def = Spanned(written_form[To(&syntax::Datum::underlying)] >
-                               ((surface[Push(&syntax::Datum::surfaces)] >
-                                 *(Sign(U"~") > surface[Push(&syntax::Datum::surfaces)]) > *star) |
-                                +star | Wanted("a surface form in [ ]")) > -GlossToken{}[To(&syntax::Datum::gloss)]);
+const auto datum_def = Spanned(
+    written_form[To(&syntax::Datum::underlying)] >
+    ((surface[Push(&syntax::Datum::surfaces)] > *(Sign(U"~") > surface[Push(&syntax::Datum::surfaces)]) > *star) |
+     +star | Wanted("a surface form in [ ]")) > -GlossToken{}[To(&syntax::Datum::gloss)]);
 const auto data_entry_def = (+datum[Push(&syntax::Data::rows)] | Wanted("a form such as /kat/")) >
                             End("a form, ~, * or a gloss in ' '");
 const auto column_def = Spanned(name[To(&syntax::Column::field)] > Sign(U"=") >
                                 (number[To(&syntax::Column::number)] | name[To(&syntax::Column::heading)] |
                                  Wanted("@the heading or the number of a column")) >
                                 -Word(U"spelled")[Let(&syntax::Column::spelled, true)]);
-const auto column_entry_def =
-    (raw[Word(U"where") > name > Sign(U"=") > (name | Wanted("@a value"))][NotYet("'where' in the columns of a table")] |
-     column[Push(&syntax::DataFrom::columns)] | Wanted("@a column, as in: surface = 2")) >
-    End("'spelled' or the end of the column");
-const auto data_head_def =
-    -(Word(U"comparing") > Word(U"length")[Let(&syntax::DataFrom::comparing_length, true)]) >
-    -(Word(U"from") > StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) >
-    End("'from', 'comparing' or '{'");
+const auto column_entry_def = (raw[Word(U"where") > name > Sign(U"=") > (name | Wanted("@a value"))]
+                                  [NotYet("'where' in the columns of a table")] |
+                               column[Push(&syntax::DataFrom::columns)] | Wanted("@a column, as in: surface = 2")) >
+                              End("'spelled' or the end of the column");
+const auto data_head_def = -(Word(U"comparing") > Word(U"length")[Let(&syntax::DataFrom::comparing_length, true)]) >
+                           -(Word(U"from") >
+                             StringToken("the name of a file in double quotes")[To(&syntax::DataFrom::path)]) >
+                           End("'from', 'comparing' or '{'");
 
 BOOST_SPIRIT_DEFINE(written_form, attach_place, suppletion, lexicon_entry, lexicon_entries, lexicon_head, allomorph,
                     slot_value, paradigm_slot, cell_override, paradigm_entry, paradigm_head, spelling_line,

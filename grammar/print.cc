@@ -300,7 +300,8 @@ std::string PrintSpellingLine(const syntax::SpellingLine& line) {
 }
 
 std::string PrintColumn(const syntax::Column& column) {
-  return PrintName(column.field) + " = " + (column.number ? std::to_string(*column.number) : PrintName(column.heading)) +
+  return PrintName(column.field) + " = " +
+         (column.number ? std::to_string(*column.number) : PrintName(column.heading)) +
          (column.spelled ? " spelled" : "");
 }
 

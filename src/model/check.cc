@@ -84,6 +84,14 @@ class NotCheckedYet {
       if (const auto* sharing = std::get_if<syntax::Sharing>(&top)) Refuse(sharing->span, "sharing");
       if (const auto* fuse = std::get_if<syntax::Fuse>(&top)) Refuse(fuse->span, "fuse");
       if (const auto* include = std::get_if<syntax::Include>(&top)) Refuse(include->span, "include");
+      if (const auto* lexicon = std::get_if<syntax::Lexicon>(&top)) Refuse(lexicon->span, "lexicon");
+      if (const auto* lexicon = std::get_if<syntax::LexiconFrom>(&top)) Refuse(lexicon->span, "lexicon");
+      if (const auto* paradigm = std::get_if<syntax::Paradigm>(&top)) Refuse(paradigm->span, "paradigm");
+      if (const auto* spelling = std::get_if<syntax::Spelling>(&top)) Refuse(spelling->span, "spelling");
+      if (const auto* length = std::get_if<syntax::LengthDoubled>(&top)) Refuse(length->span, "length doubled");
+      if (const auto* data = std::get_if<syntax::Data>(&top)) VisitData(*data);
+      if (const auto* from = std::get_if<syntax::DataFrom>(&top); from != nullptr && !from->columns.empty())
+        Refuse(from->span, "columns of data");
     }
   }
 
@@ -91,6 +99,12 @@ class NotCheckedYet {
   void Refuse(Span span, const std::string& construct) {
     diagnostics_.Error(Kind::kNotSupportedYet, span, "`" + construct + "` is not supported by this release",
                        "take it out, or state the analysis without it");
+  }
+  void VisitData(const syntax::Data& data) {
+    if (data.comparing_length) Refuse(data.span, "comparing length");
+    for (const syntax::Datum& row : data.rows) {
+      if (!row.starred.empty()) Refuse(row.span, "*");
+    }
   }
   void VisitBundle(const syntax::Bundle& bundle) {
     using Feat = syntax::Feat;

@@ -289,7 +289,8 @@ class Ebnf {
     return text != "surface";
   }
   bool IsLetters(const std::string& text) const {
-    return text.find_first_of(" \n;\"{}") == std::string::npos && text.compare(0, 2, "--") != 0 && !reserved_.count(text);
+    return text.find_first_of(" \n;\"{}") == std::string::npos && text.compare(0, 2, "--") != 0 &&
+           !reserved_.count(text);
   }
   static bool IsEntryWord(const std::string& text) {
     return text == "prefix" || text == "suffix" || text == "clitic" || text == "weight";
@@ -420,9 +421,8 @@ TEST_CASE("sentences of the EBNF parse", "[unit]") {
   INFO("seed " << kSeed);
   std::mt19937 random(kSeed);
   std::map<std::string, int> made;
-  for (const char* start :
-       {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "lexicon", "paradigm",
-        "spelling", "length", "data", "language"}) {
+  for (const char* start : {"file", "tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule",
+                            "lexicon", "paradigm", "spelling", "length", "data", "language"}) {
     for (int i = 0; i < 2000; ++i) {
       const Sentence sentence = ebnf.Generate(start, random, 4 + i % 12);
       const std::string text = Text(sentence);
@@ -440,8 +440,8 @@ TEST_CASE("spoiled sentences: parser and EBNF agree", "[unit]") {
   INFO("seed " << kSeed + 1);
   std::mt19937 random(kSeed + 1);
   int refused = 0, accepted = 0;
-  for (const char* start : {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "lexicon", "paradigm",
-                            "spelling", "length", "data"}) {
+  for (const char* start : {"tree", "segments", "diacritics", "omit", "class", "named_pattern", "rule", "lexicon",
+                            "paradigm", "spelling", "length", "data"}) {
     for (int i = 0; i < 4000; ++i) {
       Sentence sentence = ebnf.Generate(start, random, 4 + i % 10);
       if (sentence.size() < 3) continue;

@@ -253,8 +253,12 @@ class Maker {
     const auto allomorphs = [&] { return Several(1, 3, [&] { return Allomorph(); }); };
     paradigm.stems = Several(0, 2, [&] { return Name(); });
     paradigm.slots = Several(0, 3, [&] {
-      return syntax::ParadigmSlot{
-          Name(), Several(1, 3, [&] { return syntax::SlotValue{Name(), allomorphs(), {}}; }), {}};
+      return syntax::ParadigmSlot{Name(),
+                                  Several(1, 3,
+                                          [&] {
+                                            return syntax::SlotValue{Name(), allomorphs(), {}};
+                                          }),
+                                  {}};
     });
     paradigm.overrides = Several(0, 2, [&] {
       return syntax::CellOverride{Several(1, 2, [&] { return Name(); }), allomorphs(), {}};

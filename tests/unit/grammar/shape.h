@@ -67,9 +67,7 @@ inline std::string Shape(const Allomorph& a) {
 }
 inline std::string Shape(const SlotValue& v) { return "(value " + Shape(v.name) + ShapeAll(v.allomorphs) + ")"; }
 inline std::string Shape(const ParadigmSlot& s) { return "(slot " + Shape(s.name) + ShapeAll(s.values) + ")"; }
-inline std::string Shape(const CellOverride& o) {
-  return "(cell " + ShapeAll(o.values) + ShapeAll(o.allomorphs) + ")";
-}
+inline std::string Shape(const CellOverride& o) { return "(cell " + ShapeAll(o.values) + ShapeAll(o.allomorphs) + ")"; }
 inline std::string Shape(const SpellingLine& l) {
   return "(line " + Shape(l.letters) + Number(l.use) + Shape(l.means) + ShapeMaybe(l.before) + ShapeMaybe(l.after) +
          ShapeMaybe(l.between) + ")";
