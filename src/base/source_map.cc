@@ -55,19 +55,59 @@ bool LooksLikeUtf16(std::string_view text) {
 
 }  // namespace
 
+bool ReadBytes(const std::string& path, Span from, Diagnostics& diagnostics, std::string* bytes) {
+  std::string why;
+  if (ReadAll(path, bytes, &why)) return true;
+  diagnostics.Error(Kind::kMissingFile, from, "cannot read '" + path + "': " + why,
+                    "check the path; a file named in a grammar is looked for beside that grammar");
+  return false;
+}
+
 std::uint32_t SourceMap::Add(std::string path, std::string text, int first_line) {
-  files_.push_back({std::move(path), std::move(text), first_line});
+  files_.push_back({std::move(path), std::move(text), first_line, ""});
   return static_cast<std::uint32_t>(files_.size() - 1);
 }
 
 bool SourceMap::Load(const std::string& path, Span from, Diagnostics& diagnostics, std::uint32_t* id) {
-  std::string text;
-  std::string why;
-  if (!ReadAll(path, &text, &why)) {
-    diagnostics.Error(Kind::kMissingFile, from, "cannot read '" + path + "': " + why,
-                      "check the path; a file named in a grammar is looked for beside that grammar");
+  std::string bytes;
+  return ReadBytes(path, from, diagnostics, &bytes) && AddBytes(path, std::move(bytes), from, diagnostics, id);
+}
+
+bool SourceMap::LoadPart(const std::string& path, const std::string& name, Span from, Diagnostics& diagnostics,
+                         std::uint32_t* id) {
+  const auto known = std::find_if(files_.begin(), files_.end(), [&](const File& file) { return file.name == name; });
+  if (known != files_.end()) {
+    *id = static_cast<std::uint32_t>(known - files_.begin());
+    return true;
+  }
+  const auto part = sealed_parts_.find(name);
+  if (sealed_ && part == sealed_parts_.end()) {
+    diagnostics.Error(Kind::kMissingFile, from, "the machine file does not hold '" + name + "'",
+                      "compile the grammar again: `compile GRAMMAR -o FILE`");
     return false;
   }
+  const bool read = sealed_ ? AddBytes(name, part->second, from, diagnostics, id) : Load(path, from, diagnostics, id);
+  if (read) NamePart(*id, name);
+  return read;
+}
+
+bool SourceMap::LoadBeside(const std::string& written, Span from, Diagnostics& diagnostics, std::uint32_t* id) {
+  namespace fs = std::filesystem;
+  // Below an absolute path operator/ keeps that path alone, which is what is wanted.
+  const fs::path path = fs::path(files_[from.file].path).parent_path() / written;
+  const fs::path name = fs::path(files_[from.file].name).parent_path() / written;
+  return LoadPart(path.string(), name.lexically_normal().string(), from, diagnostics, id);
+}
+
+void SourceMap::NamePart(std::uint32_t file, std::string name) { files_[file].name = std::move(name); }
+
+void SourceMap::Seal(std::map<std::string, std::string> parts) {
+  sealed_ = true;
+  sealed_parts_ = std::move(parts);
+}
+
+bool SourceMap::AddBytes(const std::string& path, std::string text, Span from, Diagnostics& diagnostics,
+                         std::uint32_t* id) {
   const std::string shown = path == "-" ? "<stdin>" : path;
   if (text.compare(0, 3, "\xEF\xBB\xBF") == 0) text.erase(0, 3);
   const std::size_t bad = FirstBadByte(text);

@@ -1,6 +1,10 @@
 // Loading a grammar: read, parse, check. See check.h for the order of the checks.
 #include "model/check.h"
 
+#include <algorithm>
+#include <filesystem>
+
+#include "base/utf8.h"
 #include "grammar/parse.h"
 
 namespace tiersmith {
@@ -194,18 +198,33 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   return grammar;
 }
 
+std::string NameOf(const std::string& path) {
+  return path == "-" ? "<stdin>" : std::filesystem::path(path).filename().string();
+}
+
 }  // namespace
+
+bool LeaveOutRule(const std::string& name, Grammar* grammar) {
+  const auto first = std::remove_if(grammar->rules.begin(), grammar->rules.end(),
+                                    [&](const Rule& rule) { return ToNfc(rule.name) == ToNfc(name); });
+  const bool found = first != grammar->rules.end();
+  grammar->rules.erase(first, grammar->rules.end());
+  return found;
+}
 
 std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_ptr<SourceMap>& sources,
                                      Diagnostics& diagnostics) {
   std::uint32_t file = 0;
-  if (!sources->Load(path, Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
+  if (!sources->LoadPart(path, NameOf(path), Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
   return Load(file, sources, diagnostics);
 }
 
 std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
                                          const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
-  return Load(sources->Add(path, text), sources, diagnostics);
+  std::uint32_t file = 0;
+  if (!sources->AddBytes(path, text, Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
+  sources->NamePart(file, NameOf(path));
+  return Load(file, sources, diagnostics);
 }
 
 }  // namespace tiersmith

@@ -16,16 +16,10 @@
 #include "grammar/syntax.h"
 #include "model/grammar.h"
 #include "model/library.h"
+#include "model/names.h"
 #include "model/symbol_trie.h"
 
 namespace tiersmith {
-
-// The candidate nearest to `name` by edit distance, or "" if none is near enough to be meant.
-std::string NearestName(std::string_view name, const std::vector<std::string>& candidates);
-// "did you mean 'back'? " or "".
-std::string DidYouMean(std::string_view name, const std::vector<std::string>& candidates);
-// A remedy: the hint first if there is one ("did you mean 'back'? or declare it").
-std::string Or(const std::string& hint, const std::string& otherwise);
 
 class Checker {
  public:

@@ -93,12 +93,9 @@ std::optional<DataRow> RowOf(const std::vector<Cell>& heading, const std::vector
   return row;
 }
 
-}  // namespace
-
-std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics) {
+// The rows of a table that was read.
+std::vector<DataRow> RowsOf(std::uint32_t file, const SourceMap& sources, Diagnostics& diagnostics) {
   std::vector<DataRow> rows;
-  std::uint32_t file = 0;
-  if (!sources.Load(path, from, diagnostics, &file)) return rows;
   const std::string_view text = sources.text(file);
   std::vector<Cell> heading;
   std::size_t number = 0;
@@ -139,6 +136,14 @@ std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span 
   return rows;
 }
 
+}  // namespace
+
+std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics) {
+  std::uint32_t file = 0;
+  if (!sources.Load(path, from, diagnostics, &file)) return {};
+  return RowsOf(file, sources, diagnostics);
+}
+
 void Checker::LoadDataFiles() {
   for (const syntax::Top& top : file_.tops) {
     if (const auto* data = std::get_if<syntax::Data>(&top)) {
@@ -167,11 +172,9 @@ void Checker::LoadDataFiles() {
               "give a table parted by tabs (.tsv)");
         continue;
       }
-      // A relative name is beside the grammar.
-      const std::filesystem::path grammar(grammar_.sources->path(whole_.file));
-      const std::string full = path.is_absolute() ? path.string() : (grammar.parent_path() / path).string();
-      for (DataRow& row : LoadData(full, *grammar_.sources, from->path.span, diagnostics_))
-        grammar_.data.push_back(std::move(row));
+      std::uint32_t table = 0;
+      if (!grammar_.sources->LoadBeside(path.string(), from->path.span, diagnostics_, &table)) continue;
+      for (DataRow& row : RowsOf(table, *grammar_.sources, diagnostics_)) grammar_.data.push_back(std::move(row));
     }
   }
 }

@@ -142,7 +142,7 @@ Library* Checker::LibraryOf(const syntax::Name* name, Span span) {
   const std::string which = name != nullptr ? name->text : "ipa";
   if (failed_libraries_.count(which) != 0) return nullptr;
   const auto [place, fresh] = libraries_.emplace(which, Library());
-  if (fresh && !place->second.Load(which, name != nullptr ? name->span : span, diagnostics_)) {
+  if (fresh && !place->second.Load(which, name != nullptr ? name->span : span, *grammar_.sources, diagnostics_)) {
     libraries_.erase(place);
     failed_libraries_.insert(which);
     return nullptr;

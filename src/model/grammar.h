@@ -173,6 +173,9 @@ struct Grammar {
   std::shared_ptr<SourceMap> sources;  // what the spans point into
 };
 
+// Takes the rules of this name out (as if the file did not have them); false if there is none.
+bool LeaveOutRule(const std::string& name, Grammar* grammar);
+
 // Finds the files of a library ("ipa"): the folder that holds `ipa/`, from $TIERSMITH_RULESETS, else relative to the
 // executable (../rulesets, ../share/tiersmith/rulesets). Empty if there is none.
 std::string FindLibrary();

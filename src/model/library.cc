@@ -40,13 +40,13 @@ std::vector<Library::Feature> ParseFeatures(std::string_view text) {
 }
 
 // Rows of a table of three columns below its heading.
-bool LoadTable(const std::string& path, Span from, Diagnostics& diagnostics,
-               std::vector<std::vector<std::string>>* rows) {
-  SourceMap sources;
+bool LoadTable(const std::string& folder, const std::string& table, Span from, SourceMap& sources,
+               Diagnostics& diagnostics, std::vector<std::vector<std::string>>* rows) {
+  const std::string path = folder + "/" + table;
   std::uint32_t file = 0;
-  // Spans into the library's own files would mean nothing to the grammar's source map: errors stay at `from`.
+  // The library's own files are no concern of the grammar's author: errors stay at `from`.
   Diagnostics own;
-  if (!sources.Load(path, from, own, &file)) {
+  if (!sources.LoadPart(path, "<library>/" + table, from, own, &file)) {
     diagnostics.Error(Kind::kMissingFile, from, "the segment library's file " + path + " cannot be read",
                       "check the name in `from`, and that $TIERSMITH_RULESETS, if set, names the folder that holds it");
     return false;
@@ -95,19 +95,18 @@ std::string FindLibrary() {
   return "";
 }
 
-bool Library::Load(const std::string& name, Span from, Diagnostics& diagnostics) {
+bool Library::Load(const std::string& name, Span from, SourceMap& sources, Diagnostics& diagnostics) {
   const std::string folder = FindLibrary();
-  if (folder.empty()) {
+  if (folder.empty() && !sources.sealed()) {
     diagnostics.Error(
         Kind::kMissingFile, from, "the segment library \"" + name + "\" was not found",
         "set TIERSMITH_RULESETS to the folder that holds ipa/, or install the rulesets beside the program");
     return false;
   }
-  const std::string path = folder + "/" + name + "/";
   std::vector<std::vector<std::string>> segments, diacritics, features;
-  if (!LoadTable(path + "segments.tsv", from, diagnostics, &segments) ||
-      !LoadTable(path + "diacritics.tsv", from, diagnostics, &diacritics) ||
-      !LoadTable(path + "features.tsv", from, diagnostics, &features)) {
+  if (!LoadTable(folder, name + "/segments.tsv", from, sources, diagnostics, &segments) ||
+      !LoadTable(folder, name + "/diacritics.tsv", from, sources, diagnostics, &diacritics) ||
+      !LoadTable(folder, name + "/features.tsv", from, sources, diagnostics, &features)) {
     return false;
   }
   for (const auto& row : segments) {

@@ -29,9 +29,9 @@ class Library {
     std::vector<Feature> features;
   };
 
-  // Reads segments.tsv, diacritics.tsv and features.tsv of the library `name`; on failure adds an error at
-  // `from`.
-  bool Load(const std::string& name, Span from, Diagnostics& diagnostics);
+  // Reads segments.tsv, diacritics.tsv and features.tsv of the library `name` as parts of the grammar; on failure adds
+  // an error at `from`.
+  bool Load(const std::string& name, Span from, SourceMap& sources, Diagnostics& diagnostics);
 
   // The segment a symbol stands for, the library's own diacritics applied; null if it is none of the
   // library's.

@@ -1,10 +1,8 @@
-// Which name was meant: edit distance over code points.
-// Example: "bakc" is "back" with two letters swapped, which counts one step.
-// Tested by tests/unit/model/check_test.cc.
+#include "model/names.h"
+
 #include <algorithm>
 
 #include "base/utf8.h"
-#include "model/check.h"
 
 namespace tiersmith {
 namespace {

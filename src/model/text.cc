@@ -321,8 +321,10 @@ std::string Reader::Impl::Nearest(std::size_t unit) const {
 std::string Reader::Impl::NearestByFeatures(char32_t code) const {
   if (library == nullptr) {
     library = std::make_unique<Library>();
-    Diagnostics unread;  // without the library there are fewer hints, no errors
-    if (!library->Load("ipa", Span{}, unread)) *library = Library();
+    // A copy: what is read for a hint becomes no part of the grammar. Without the library there are fewer hints.
+    SourceMap sources = grammar->sources != nullptr ? *grammar->sources : SourceMap();
+    Diagnostics unread;
+    if (!library->Load("ipa", Span{}, sources, unread)) *library = Library();
   }
   const Library::Segment* segment = library->Find(ToUtf8(std::u32string(1, code)));
   if (segment == nullptr) return "";

@@ -83,3 +83,37 @@ TEST_CASE("loading", "[base]") {
     CHECK(diagnostics.all()[1].message.find("folder") != std::string::npos);
   }
 }
+
+TEST_CASE("parts of a grammar: named by where they lie beside it, read once", "[base]") {
+  const std::filesystem::path folder = std::filesystem::temp_directory_path() / ("parts-" + std::to_string(getpid()));
+  std::filesystem::create_directories(folder / "data");
+  std::ofstream(folder / "g.tier") << "main";
+  std::ofstream(folder / "data/a.tsv") << "rows";
+  SourceMap sources;
+  Diagnostics diagnostics;
+  std::uint32_t main = 0, table = 0, again = 0;
+  REQUIRE(sources.LoadPart((folder / "g.tier").string(), "g.tier", {kNoFile, 0, 0}, diagnostics, &main));
+  REQUIRE(sources.LoadBeside("data/a.tsv", {main, 0, 0}, diagnostics, &table));
+  CHECK(sources.name(table) == "data/a.tsv");
+  CHECK(sources.path(table) == (folder / "data/a.tsv").string());
+  REQUIRE(sources.LoadBeside("../g.tier", {table, 0, 0}, diagnostics, &again));
+  CHECK(again == main);
+  CHECK_FALSE(sources.LoadBeside("b.tsv", {table, 0, 0}, diagnostics, &again));
+  REQUIRE(diagnostics.all().size() == 1);
+  CHECK(diagnostics.all()[0].span.file == table);
+  std::filesystem::remove_all(folder);
+}
+
+TEST_CASE("a sealed map reads no file", "[base]") {
+  SourceMap sources;
+  Diagnostics diagnostics;
+  std::uint32_t main = 0, table = 0;
+  sources.Seal({{"g.tier", "main"}, {"a.tsv", "rows"}});
+  REQUIRE(sources.LoadPart("g.tier", "g.tier", {kNoFile, 0, 0}, diagnostics, &main));
+  REQUIRE(sources.LoadBeside("a.tsv", {main, 0, 0}, diagnostics, &table));
+  CHECK(sources.text(table) == "rows");
+  CHECK(sources.path(table) == "a.tsv");
+  CHECK_FALSE(sources.LoadBeside("/etc/hostname", {main, 0, 0}, diagnostics, &table));
+  REQUIRE(diagnostics.all().size() == 1);
+  CHECK(diagnostics.all()[0].kind == Kind::kMissingFile);
+}

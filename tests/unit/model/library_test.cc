@@ -17,7 +17,8 @@ FeatureTree ContentIn(Library& library, const Tree& tree, const std::string& sym
 Library LoadIpa() {
   Library library;
   Diagnostics diagnostics;
-  REQUIRE(library.Load("ipa", Span{}, diagnostics));
+  SourceMap sources;
+  REQUIRE(library.Load("ipa", Span{}, sources, diagnostics));
   return library;
 }
 
