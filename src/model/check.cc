@@ -9,11 +9,13 @@
 
 namespace tiersmith {
 
-Checker::Checker(const syntax::File& file, std::uint32_t file_id, Grammar& grammar, Diagnostics& diagnostics)
-    : file_(file), whole_{file_id, 0, 0}, grammar_(grammar), diagnostics_(diagnostics) {}
+Checker::Checker(const syntax::File& file, std::uint32_t file_id, Reach reach, Grammar& grammar,
+                 Diagnostics& diagnostics)
+    : file_(file), whole_{file_id, 0, 0}, reach_(reach), grammar_(grammar), diagnostics_(diagnostics) {}
 
 void Checker::Run() {
   const syntax::Language* language = nullptr;
+  const syntax::Sharing* sharing = nullptr;
   for (const syntax::Top& top : file_.tops) {
     const auto twice = [&](const syntax::Name& name, Span first, const std::string& what) {
       diagnostics_.Add({Kind::kDuplicate,
@@ -35,6 +37,13 @@ void Checker::Run() {
       if (!fresh) twice(pattern->name, place->second->name.span, "pattern");
       if (classes_.count(pattern->name.text) != 0)
         twice(pattern->name, classes_[pattern->name.text]->name.span, "name");
+    } else if (const auto* strict = std::get_if<syntax::Strict>(&top)) {
+      grammar_.strict = true;
+      RefuseNotRun(NotRunYet(*strict));
+    } else if (const auto* said = std::get_if<syntax::Sharing>(&top)) {
+      if (sharing != nullptr) twice({"sharing", said->span}, sharing->span, "default");
+      sharing = said;
+      sharing_blocked_ = said->blocked;
     }
   }
   if (file_.tops.empty() && file_.unsupported.empty()) {
@@ -80,13 +89,6 @@ class NotCheckedYet {
 
   void Visit(const syntax::File& file) {
     for (const syntax::Top& top : file.tops) {
-      if (const auto* rule = std::get_if<syntax::Rule>(&top)) VisitRule(*rule);
-      if (const auto* declared = std::get_if<syntax::Class>(&top)) VisitSet(declared->set);
-      if (const auto* pattern = std::get_if<syntax::NamedPattern>(&top)) VisitPattern(pattern->pattern);
-      if (const auto* strict = std::get_if<syntax::Strict>(&top)) Refuse(strict->span, "strict");
-      if (const auto* complete = std::get_if<syntax::Complete>(&top)) Refuse(complete->span, "complete");
-      if (const auto* sharing = std::get_if<syntax::Sharing>(&top)) Refuse(sharing->span, "sharing");
-      if (const auto* fuse = std::get_if<syntax::Fuse>(&top)) Refuse(fuse->span, "fuse");
       if (const auto* include = std::get_if<syntax::Include>(&top)) Refuse(include->span, "include");
       if (const auto* lexicon = std::get_if<syntax::Lexicon>(&top)) Refuse(lexicon->span, "lexicon");
       if (const auto* lexicon = std::get_if<syntax::LexiconFrom>(&top)) Refuse(lexicon->span, "lexicon");
@@ -110,70 +112,12 @@ class NotCheckedYet {
       if (!row.starred.empty()) Refuse(row.span, "*");
     }
   }
-  void VisitBundle(const syntax::Bundle& bundle) {
-    using Feat = syntax::Feat;
-    for (const Feat& feat : bundle.feats) {
-      if (feat.kind > Feat::Kind::kValue) Refuse(feat.span, "this part of a bundle");
-      if (feat.edge != Feat::Edge::kUnsaid) Refuse(feat.span, feat.edge == Feat::Edge::kBegins ? "begins" : "ends");
-    }
-  }
-  void VisitSet(const syntax::Set& set) {
-    VisitBundle(set.bundle);
-    for (const syntax::Set& arg : set.args) VisitSet(arg);
-  }
-  void VisitPattern(const syntax::Pattern& pattern) {
-    for (const syntax::Item& item : pattern.items) {
-      if (item.kind == syntax::Item::Kind::kSameMorpheme) Refuse(item.span, "&");
-      if (item.kind == syntax::Item::Kind::kBoundary && item.label) Refuse(item.label->span, "labelled boundary");
-      VisitSet(item.set);
-      for (const syntax::Pattern& alternative : item.alternatives) VisitPattern(alternative);
-    }
-  }
-  void VisitPath(const syntax::Path& path) {
-    if (path.member != syntax::Path::Member::kFacing) Refuse(path.span, "one member of a contour");
-  }
-  void VisitRule(const syntax::Rule& rule) {
-    VisitPattern(rule.where);
-    for (const syntax::Pattern& unless : rule.unless) VisitPattern(unless);
-    for (const syntax::Condition& condition : rule.conditions) Refuse(condition.span, "if");
-    for (const syntax::Condition& condition : rule.unless_conditions) Refuse(condition.span, "unless A.N = B.N");
-    for (const syntax::TagTest& tag : rule.tags) Refuse(tag.span, tag.only ? "only" : "except");
-    for (const syntax::Change& change : rule.changes) {
-      for (const syntax::Path& path : change.paths) VisitPath(path);
-      VisitBundle(change.bundle);
-      VisitSet(change.content);
-      using Op = syntax::Change::Kind;
-      switch (change.kind) {
-        case Op::kSpread:
-        case Op::kDelink:
-        case Op::kSet:
-        case Op::kFill:
-        case Op::kDelete:
-        case Op::kInsert:
-          break;
-        case Op::kSetLiteral:
-        case Op::kSetAs:
-        case Op::kFillAs:
-        case Op::kLengthen:
-        case Op::kShorten:
-        case Op::kMerge:
-          Refuse(change.span, "this change");
-          break;
-      }
-    }
-    const Span name = rule.name.span;
-    if (!rule.otherwise.empty()) Refuse(name, "otherwise");
-    if (rule.within != syntax::Domain::kWord) Refuse(name, "within");
-    if (rule.prefer != syntax::Rule::Prefer::kNone) Refuse(name, "prefer");
-    if (rule.sharing != syntax::Rule::Sharing::kUnsaid) Refuse(name, "sharing");
-    if (rule.preserving) Refuse(name, "preserving");
-    if (rule.probability) Refuse(name, "optional");
-  }
 
   Diagnostics& diagnostics_;
 };
 
-std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
+std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics,
+                              Reach reach) {
   const auto errors = [&] {
     int count = 0;
     for (const Diagnostic& d : diagnostics.all()) count += d.severity == Severity::kError ? 1 : 0;
@@ -188,12 +132,11 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   const int before = errors(), hard_before = hard();
   const syntax::File parsed = Parse(*sources, file, diagnostics);
   PassOnUnsupported(parsed, diagnostics);
-  NotCheckedYet(&diagnostics).Visit(parsed);
   // Names declared in what did not parse would all be unknown: such a file is checked no further.
   if (hard() > hard_before) return nullptr;
   auto grammar = std::make_unique<Grammar>();
   grammar->sources = sources;
-  Checker(parsed, file, *grammar, diagnostics).Run();
+  Checker(parsed, file, reach, *grammar, diagnostics).Run();
   if (errors() > before) return nullptr;
   return grammar;
 }
@@ -213,18 +156,19 @@ bool LeaveOutRule(const std::string& name, Grammar* grammar) {
 }
 
 std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_ptr<SourceMap>& sources,
-                                     Diagnostics& diagnostics) {
+                                     Diagnostics& diagnostics, Reach reach) {
   std::uint32_t file = 0;
   if (!sources->LoadPart(path, NameOf(path), Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
-  return Load(file, sources, diagnostics);
+  return Load(file, sources, diagnostics, reach);
 }
 
 std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
-                                         const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics) {
+                                         const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics,
+                                         Reach reach) {
   std::uint32_t file = 0;
   if (!sources->AddBytes(path, text, Span{kNoFile, 0, 0}, diagnostics, &file)) return nullptr;
   sources->NamePart(file, NameOf(path));
-  return Load(file, sources, diagnostics);
+  return Load(file, sources, diagnostics, reach);
 }
 
 }  // namespace tiersmith

@@ -17,13 +17,14 @@
 #include "model/grammar.h"
 #include "model/library.h"
 #include "model/names.h"
+#include "model/not_run_yet.h"
 #include "model/symbol_trie.h"
 
 namespace tiersmith {
 
 class Checker {
  public:
-  Checker(const syntax::File& file, std::uint32_t file_id, Grammar& grammar, Diagnostics& diagnostics);
+  Checker(const syntax::File& file, std::uint32_t file_id, Reach reach, Grammar& grammar, Diagnostics& diagnostics);
   // Requires: grammar.sources is set. Ensures: grammar is complete if no error was added.
   void Run();
 
@@ -38,17 +39,31 @@ class Checker {
   bool IsSlotBorne(NodeId node) const { return node != kSlotNode && !grammar_.tree.Dominates(kRootNode, node); }
 
   // ---- check_sets.cc
-  std::optional<SlotTest> ResolveSet(const syntax::Set& set);
+  // `context`: the clause whose α β γ δ the bundle may speak of; null where none may stand.
+  struct RuleContext;
+  std::optional<SlotTest> ResolveSet(const syntax::Set& set, RuleContext* context = nullptr);
+  // A set that symbols are asked for: what only a slot of a form can answer is an error.
+  std::optional<SlotTest> ResolveSymbolSet(const syntax::Set& set);
   std::optional<SlotTest> ResolveClass(const syntax::Name& name);
-  std::optional<SlotTest> ResolveBundle(const syntax::Bundle& bundle);
-  std::optional<FeatureTest> ResolveFeature(const syntax::Feat& feat);
+  std::optional<SlotTest> ResolveBundle(const syntax::Bundle& bundle, RuleContext* context);
+  // Adds what one part of a bundle asks: one test, or several for Tone:(H L).
+  bool AddTests(const syntax::Feat& feat, RuleContext* context, std::vector<FeatureTest>* tests);
+  bool AddValueTest(const syntax::Feat& feat, NodeId node, std::vector<FeatureTest>* tests);
+  bool AddListTest(const syntax::Feat& feat, NodeId node, std::vector<FeatureTest>* tests);
   void WarnContradictions(const std::vector<FeatureTest>& tests, Span span);
+  // May one root or slot bear several of `node`, on one mother or on several?
+  bool MayBeContour(NodeId node) const;
+  // The index of α in the clause, noting where it stands, or nothing after an error.
+  std::optional<int> VariableOf(const syntax::Feat& feat, NodeId node, RuleContext* context);
+  std::optional<int> GivenVariable(const syntax::Feat& feat, NodeId node, RuleContext* context);
   // What set, fill, insert, segments and diacritics ask for. False after an error.
-  bool ResolveSettings(const syntax::Bundle& bundle, std::vector<Setting>* settings);
-  bool AddSetting(const syntax::Feat& feat, bool continues, std::vector<Setting>* settings);
+  // `context`: of the rule whose `set` or `fill` it is; null for the content of a new root or a symbol.
+  bool ResolveSettings(const syntax::Bundle& bundle, RuleContext* context, std::vector<Setting>* settings);
+  bool AddSetting(const syntax::Feat& feat, bool continues, RuleContext* context, std::vector<Setting>* settings);
   std::optional<Value> ValueOf(const TreeNode& node, const syntax::Name& value);
-  // The symbols of a literal in order, or nothing after an error.
-  std::optional<std::vector<int>> SymbolsOf(const syntax::FormText& literal);
+  // The symbols of a literal in order, or nothing after an error. Where it gives content, ː behind the one symbol
+  // says that it is long.
+  std::optional<std::vector<int>> SymbolsOf(const syntax::FormText& literal, bool* is_long = nullptr);
   SlotTest LiteralTest(int symbol);
   void CheckClasses();
   std::vector<std::string> ClassNames() const;
@@ -94,13 +109,23 @@ class Checker {
   void AddSymbolText(int symbol);
 
   // ---- check_rules.cc
+  struct Variable {  // α β γ δ of one clause
+    std::string name;
+    NodeId node = 0;       // the first that it speaks of
+    Span span;             // where it stands first
+    int places = 0;        // where it stands, in patterns and changes
+    bool several = false;  // stands in a repeated group: its slots agree with each other
+    bool bound = false;    // some item of every match gives it its value
+  };
   struct RuleContext {
-    Rule* rule = nullptr;
-    std::map<std::string, int> mentions;    // classes named as whole items of the `where`
-    std::map<std::string, int> own_labels;  // label -> index
-    std::set<std::string> used;             // labels the changes and conditions use
-    std::set<std::string> inserted;         // labels of inserted items
-    std::set<std::string> placed;           // those checked so far
+    Clause* clause = nullptr;
+    Domain within = Domain::kWord;
+    Span span;                                   // of the rule
+    std::vector<Variable>* variables = nullptr;  // of the clause, its `unless` included; null: none may stand
+    std::map<std::string, int> mentions;         // classes named as whole items of the `where`
+    std::map<std::string, int> own_labels;       // labels of the `where`
+    std::set<std::string> used;                  // labels the changes and conditions use
+    std::map<std::string, int> inserted;         // labels of inserted items
     bool in_unless = false;
     bool broken = false;                 // the pattern has errors: a label may be missing for that
     int depth = 0;                       // inside groups
@@ -108,29 +133,64 @@ class Checker {
     bool alternative = false;            // inside one of several alternatives
     std::vector<std::string> expanding;  // named patterns being expanded
   };
-  void CheckPatterns();
   void CheckRules();
   void CheckRule(const syntax::Rule& written);
+  void CheckComplete(const syntax::Complete& written);
+  void CheckFusion(const syntax::Fuse& written);
+  void CheckFloats();
+  // False after an error.
+  bool CheckClause(const syntax::Clause& written, const syntax::Rule& whole, const Rule& rule, Clause* clause);
+  bool ResolveUnless(const syntax::Pattern& written, const RuleContext& context, Clause* clause);
+  bool ResolveCondition(const syntax::Condition& written, bool opposite, RuleContext* context);
+  bool ResolveTag(const syntax::TagTest& written, RuleContext* context);
+  void WarnLonelyVariables(const RuleContext& context);
+  // In a clause that is otherwise fine: the edges by which neighbours of changed items are matched.
+  void FaceEdges(Clause* clause) const;
+  void CollectUsedLabels(const syntax::Clause& written, RuleContext* context);
+  std::optional<Member> MemberOf(const syntax::Path& path, NodeId node);
+  void RefuseNotRun(const std::vector<NotYet>& constructs);
+
+  // ---- check_patterns.cc
+  void CheckPatterns();
   void CountMentions(const syntax::Pattern& pattern, RuleContext* context);
-  void CollectUsedLabels(const syntax::Rule& written, RuleContext* context);
   bool ResolvePattern(const syntax::Pattern& written, RuleContext* context, Pattern* pattern);
   bool ResolveItem(const syntax::Item& item, RuleContext* context, Pattern* pattern);
   bool ResolveSetItem(const syntax::Item& item, RuleContext* context, Pattern* pattern);
   bool ResolveNameItem(const syntax::Item& item, RuleContext* context, Pattern* pattern);
+  bool ResolveOwnLabel(const syntax::Item& item, const RuleContext& context, Pattern* pattern);
+  bool ResolveBoundary(const syntax::Item& item, RuleContext* context, Pattern* pattern);
+  bool ResolveGap(const syntax::Item& item, const RuleContext& context, Pattern* pattern);
   bool ResolveGroup(const syntax::Item& item, RuleContext* context, Pattern* pattern);
   bool AddLabel(const syntax::Name& label, const syntax::Item& item, RuleContext* context, int* index);
   void Append(PatternItem slot, const syntax::Item& item, Pattern* pattern);
   bool CheckShape(const Pattern& pattern, const syntax::Pattern& written, const RuleContext& context);
-  std::optional<int> LabelOf(const syntax::Name& name, const RuleContext& context);
+  bool CheckSameMorpheme(const syntax::Pattern& written);
+  void WarnEdgeInside(const Pattern& pattern, const RuleContext& context);
+
+  // ---- check_changes.cc
+  // What may stand in a place that names an item of the clause.
+  enum class LabelUse { kSlot, kSlotOrInserted, kSlotOrBoundary };
+  std::optional<int> LabelOf(const syntax::Name& name, const RuleContext& context, LabelUse use = LabelUse::kSlot);
+  int AddClauseLabel(const std::string& name, Clause::LabelKind kind, Clause* clause);
+  // Labels of inserted items, before the changes that use them.
+  bool AddInsertedLabels(const syntax::Clause& written, RuleContext* context);
   bool ResolveChange(const syntax::Change& change, RuleContext* context);
+  std::optional<NodeId> ChangedNode(const syntax::Path& path);
   bool ResolveLine(const syntax::Change& change, RuleContext* context);
+  bool ResolvePair(const syntax::Change& change, RuleContext* context);
   bool ResolveContent(const syntax::Change& change, RuleContext* context);
+  bool CheckTakenAway(const syntax::Change& written, const std::vector<Setting>& settings);
+  bool ResolveLiteralContent(const syntax::FormText& literal, Change* change);
+  bool ResolveSetLiteral(const syntax::Change& change, RuleContext* context);
   bool ResolveInsert(const syntax::Change& change, RuleContext* context);
-  bool Changeable(NodeId node, Span span);
-  void CheckChanges(const syntax::Rule& written, const Rule& rule);
-  bool CheckBesideLine(const Rule& rule, const Change& line);
-  bool CheckBesideTaken(const Rule& rule, const Change& taking);
-  void CheckOneChanged(const syntax::Rule& written, const Rule& rule);
+  bool ResolveTarget(const syntax::Change& change, Change::Op op, RuleContext* context);
+  // Which changes cannot stand beside each other in one clause. False after an error.
+  bool CheckChanges(const syntax::Rule& written, const Rule& rule, const Clause& clause);
+  bool RefuseBeside(const Change& change, const Change& other, const std::string& message, const std::string& first);
+  bool CheckBesideLine(const Clause& clause, const Change& line);
+  bool CheckBesideReplaced(const Clause& clause, const Change& replacing);
+  bool CheckBesideLength(const Clause& clause, const Change& change);
+  bool CheckOneChanged(const syntax::Rule& written, const Clause& clause);
 
   // ---- check_data.cc
   void LoadDataFiles();
@@ -151,6 +211,7 @@ class Checker {
 
   const syntax::File& file_;
   const Span whole_;
+  const Reach reach_;
   Grammar& grammar_;
   Diagnostics& diagnostics_;
 
@@ -160,6 +221,9 @@ class Checker {
   std::vector<std::string> resolving_;  // classes being resolved
   std::map<std::string, const syntax::NamedPattern*> patterns_;
   std::set<std::string> failed_patterns_;
+  bool sharing_blocked_ = false;  // for the whole grammar
+  // Tags that rules ask for, where each is mentioned first: beside Grammar::tags from the fifth on.
+  std::vector<syntax::Name> tags_asked_;
   std::vector<std::pair<NodeId, const syntax::Set*>> rooms_;
   std::vector<Entry> entries_;  // beside Inventory::symbols
   std::vector<Sign> signs_;     // beside Inventory::marks

@@ -236,7 +236,7 @@ bool Checker::Build(std::size_t id) {
   for (const std::optional<syntax::Bundle>* bundle : {&entry.block->added, &written.bundle}) {
     if (!*bundle) continue;
     std::vector<Setting> settings;
-    if (!ResolveSettings(**bundle, &settings)) {
+    if (!ResolveSettings(**bundle, nullptr, &settings)) {
       good = false;
       continue;
     }
@@ -318,7 +318,7 @@ void Checker::TakeWithout() {
     const auto* block = std::get_if<syntax::Segments>(&top);
     if (block == nullptr) continue;
     for (const syntax::ValuesIn& line : block->without) {
-      std::optional<SlotTest> test = line.in ? ResolveSet(*line.in) : SlotTest{};
+      std::optional<SlotTest> test = line.in ? ResolveSymbolSet(*line.in) : SlotTest{};
       for (const syntax::ValueRef& ref : line.values) {
         for (const auto& value : ResolveValues(ref, line.span, "without")) {
           given_.insert(value.first);
@@ -375,14 +375,14 @@ void Checker::CheckDiacritics() {
         continue;
       }
       Sign sign;
-      sign.usable = ResolveSettings(written.bundle, &sign.settings);
+      sign.usable = ResolveSettings(written.bundle, nullptr, &sign.settings);
       if (sign.usable && sign.settings.empty()) {
         Error(Kind::kBadValue, written.bundle.span, "'" + key + "' gives nothing", "say what it adds: [+f]");
         sign.usable = false;
       }
       for (const Setting& setting : sign.settings) given_.insert(setting.node);
       if (written.on) {
-        sign.on = ResolveSet(*written.on);
+        sign.on = ResolveSymbolSet(*written.on);
         sign.usable = sign.usable && sign.on;
       }
       inventory.marks.push_back({SymbolKey(ToUtf8(text)), circle > 0, written.surface, written.symbol.span});
@@ -496,11 +496,17 @@ void Checker::AddWrittenComposites() {
       for (const syntax::Pattern& alternative : item.alternatives) self(self, alternative);
     }
   };
+  const auto in_clause = [&](const syntax::Clause& clause) {
+    in_pattern(in_pattern, clause.where);
+    for (const syntax::Pattern& unless : clause.unless) in_pattern(in_pattern, unless);
+    for (const syntax::Change& change : clause.changes) in_set(in_set, change.content);
+  };
   for (const syntax::Top& top : file_.tops) {
     if (const auto* rule = std::get_if<syntax::Rule>(&top)) {
-      in_pattern(in_pattern, rule->where);
-      for (const syntax::Pattern& unless : rule->unless) in_pattern(in_pattern, unless);
-      for (const syntax::Change& change : rule->changes) in_set(in_set, change.content);
+      in_clause(*rule);
+      for (const syntax::Clause& clause : rule->otherwise) in_clause(clause);
+    } else if (const auto* fuse = std::get_if<syntax::Fuse>(&top)) {
+      if (fuse->in) in_pattern(in_pattern, *fuse->in);
     } else if (const auto* declared = std::get_if<syntax::Class>(&top)) {
       in_set(in_set, declared->set);
     } else if (const auto* pattern = std::get_if<syntax::NamedPattern>(&top)) {
@@ -550,7 +556,7 @@ void Checker::CheckOmit() {
     const auto* block = std::get_if<syntax::Omit>(&top);
     if (block == nullptr) continue;
     for (const syntax::ValuesIn& line : block->entries) {
-      const std::optional<SlotTest> test = line.in ? ResolveSet(*line.in) : SlotTest{};
+      const std::optional<SlotTest> test = line.in ? ResolveSymbolSet(*line.in) : SlotTest{};
       for (const syntax::ValueRef& ref : line.values) {
         for (const auto& [node, value] : ResolveValues(ref, line.span, "omit")) {
           if (!test) continue;

@@ -1,8 +1,8 @@
 // Bundles, sets, classes and literals -> tests of one slot; bundles that give content -> settings.
 //
 // Example: `[Coronal +strident]` is two tests, "bears Coronal" and "bears strident with value +"; as content
-// it is a Coronal and one +strident. Does not handle: αf, shared, long and other parts of bundles that the
-// parser keeps as not supported. Tested by tests/unit/model/check_test.cc.
+// it is a Coronal and one +strident. Does not handle: which edge of a contour a neighbour of the changed item is
+// matched by (check_rules.cc). Tested by tests/unit/model/check_test.cc.
 #include <algorithm>
 
 #include "model/check.h"
@@ -50,87 +50,363 @@ std::string HowToWrite(const TreeNode& node) {
 
 }  // namespace
 
-std::optional<FeatureTest> Checker::ResolveFeature(const syntax::Feat& feat) {
-  const std::optional<NodeId> node = NodeOf(feat.name, Kind::kUnknownFeature);
-  if (!node) return std::nullopt;
-  const TreeNode& kind = grammar_.tree[*node];
-  switch (feat.kind) {
-    case syntax::Feat::Kind::kPlus:
-    case syntax::Feat::Kind::kMinus:
-      if (kind.type != TreeNode::Type::kBinary) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' cannot be " + Signed(feat), HowToWrite(kind));
-        return std::nullopt;
-      }
-      return FeatureTest{FeatureTest::Kind::kHasValue, *node,
-                         static_cast<Value>(feat.kind == syntax::Feat::Kind::kPlus)};
-    case syntax::Feat::Kind::kBears:
-      return FeatureTest{FeatureTest::Kind::kBears, *node, 0};
-    case syntax::Feat::Kind::kNo:
-      if (feat.values.empty()) return FeatureTest{FeatureTest::Kind::kLacks, *node, 0};
-      [[fallthrough]];
-    case syntax::Feat::Kind::kValue: {
-      if (kind.type != TreeNode::Type::kMany) {
-        Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
-        return std::nullopt;
-      }
-      if (feat.values.size() != 1) {
-        Error(Kind::kNotSupportedYet, feat.span, "a list of values in a test is not supported by this release",
-              "name one value: `" + kind.name + ":" + kind.values[0] + "`");
-        return std::nullopt;
-      }
-      const std::optional<Value> value = ValueOf(kind, feat.values[0]);
-      if (!value) return std::nullopt;
-      const bool has = feat.kind == syntax::Feat::Kind::kValue;
-      return FeatureTest{has ? FeatureTest::Kind::kHasValue : FeatureTest::Kind::kLacksValue, *node, *value};
-    }
+bool Checker::MayBeContour(NodeId node) const {
+  for (; node > kRootNode; node = grammar_.tree[node].mother) {
+    if (grammar_.tree[node].max > 1) return true;
   }
-  return std::nullopt;
+  return false;
 }
 
-std::optional<SlotTest> Checker::ResolveBundle(const syntax::Bundle& bundle) {
+bool Checker::AddTests(const syntax::Feat& feat, RuleContext* context, std::vector<FeatureTest>* tests) {
+  using Feat = syntax::Feat;
+  const auto of_length = [&](FeatureTest::Kind kind) {
+    tests->push_back({kind, kRootNode});
+    return true;
+  };
+  if (feat.kind == Feat::Kind::kLong) return of_length(FeatureTest::Kind::kLong);
+  if (feat.kind == Feat::Kind::kShort) return of_length(FeatureTest::Kind::kShort);
+  if (feat.kind == Feat::Kind::kHalfFirst) return of_length(FeatureTest::Kind::kHalfFirst);
+  if (feat.kind == Feat::Kind::kHalfSecond) return of_length(FeatureTest::Kind::kHalfSecond);
+
+  const std::optional<NodeId> node = NodeOf(feat.name, Kind::kUnknownFeature);
+  if (!node) return false;
+  switch (feat.kind) {
+    case Feat::Kind::kBears:
+      if (feat.edge != Feat::Edge::kUnsaid) {
+        Error(Kind::kBadValue, feat.span, "'" + feat.name.text + "' names no value to begin or end with",
+              HowToWrite(grammar_.tree[*node]));
+        return false;
+      }
+      tests->push_back({FeatureTest::Kind::kBears, *node});
+      return true;
+    case Feat::Kind::kNo:
+      if (!feat.values.empty()) return AddValueTest(feat, *node, tests);
+      tests->push_back({FeatureTest::Kind::kLacks, *node});
+      return true;
+    case Feat::Kind::kPlus:
+    case Feat::Kind::kMinus:
+    case Feat::Kind::kValue:
+      return AddValueTest(feat, *node, tests);
+    case Feat::Kind::kAgrees:
+    case Feat::Kind::kDiffers: {
+      const std::optional<int> variable = VariableOf(feat, *node, context);
+      if (!variable) return false;
+      FeatureTest test;
+      test.kind = feat.kind == Feat::Kind::kAgrees ? FeatureTest::Kind::kAgrees : FeatureTest::Kind::kDiffers;
+      test.node = *node;
+      test.variable = *variable;
+      tests->push_back(test);
+      return true;
+    }
+    case Feat::Kind::kShared:
+    case Feat::Kind::kUnshared: {
+      if (*node == kSlotNode) {
+        Error(Kind::kBadValue, feat.span, "a slot is borne by nothing, so it is never shared",
+              "name root or a node under it");
+        return false;
+      }
+      FeatureTest test;
+      test.kind = feat.kind == Feat::Kind::kShared ? FeatureTest::Kind::kShared : FeatureTest::Kind::kUnshared;
+      test.node = *node;
+      if (feat.side == Feat::Side::kLeftward) test.side = FeatureTest::Side::kLeft;
+      if (feat.side == Feat::Side::kRightward) test.side = FeatureTest::Side::kRight;
+      tests->push_back(test);
+      return true;
+    }
+    case Feat::Kind::kLong:
+    case Feat::Kind::kShort:
+    case Feat::Kind::kHalfFirst:
+    case Feat::Kind::kHalfSecond:
+      break;
+  }
+  return false;
+}
+
+// +f, -f, Node:value, no Node:value
+bool Checker::AddValueTest(const syntax::Feat& feat, NodeId node, std::vector<FeatureTest>* tests) {
+  const TreeNode& kind = grammar_.tree[node];
+  FeatureTest test;
+  test.kind = feat.kind == syntax::Feat::Kind::kNo ? FeatureTest::Kind::kLacksValue : FeatureTest::Kind::kHasValue;
+  test.node = node;
+  if (MayBeContour(node) && feat.edge != syntax::Feat::Edge::kUnsaid) {
+    const bool first = feat.edge == syntax::Feat::Edge::kBegins;
+    test.part = first ? FeatureTest::Part::kFirst : FeatureTest::Part::kLast;
+  }
+  if (feat.kind == syntax::Feat::Kind::kPlus || feat.kind == syntax::Feat::Kind::kMinus) {
+    if (kind.type != TreeNode::Type::kBinary) {
+      Error(Kind::kBadValue, feat.span, "'" + kind.name + "' cannot be " + Signed(feat), HowToWrite(kind));
+      return false;
+    }
+    test.value = static_cast<Value>(feat.kind == syntax::Feat::Kind::kPlus);
+    tests->push_back(test);
+    return true;
+  }
+  if (kind.type != TreeNode::Type::kMany) {
+    Error(Kind::kBadValue, feat.span, "'" + kind.name + "' has no values to name after a colon", HowToWrite(kind));
+    return false;
+  }
+  if (feat.values.size() != 1) return AddListTest(feat, node, tests);
+  const std::optional<Value> value = ValueOf(kind, feat.values[0]);
+  if (!value) return false;
+  test.value = *value;
+  tests->push_back(test);
+  return true;
+}
+
+// Tone:(H L): just these, in this order. Told by the first, the last and which values are there; where that does not
+// tell (longer contours), it is refused.
+bool Checker::AddListTest(const syntax::Feat& feat, NodeId node, std::vector<FeatureTest>* tests) {
+  const TreeNode& kind = grammar_.tree[node];
+  if (feat.kind == syntax::Feat::Kind::kNo || feat.edge != syntax::Feat::Edge::kUnsaid) {
+    Error(Kind::kBadValue, feat.span, "a list of values is all that '" + kind.name + "' has there",
+          "name one value: `" + kind.name + ":" + kind.values[0] + "`, or write `not [" + kind.name + ":(..)]`");
+    return false;
+  }
+  std::vector<Value> values;
+  for (const syntax::Name& name : feat.values) {
+    const std::optional<Value> value = ValueOf(kind, name);
+    if (!value) return false;
+    values.push_back(*value);
+  }
+  const auto most = static_cast<std::size_t>(kind.max);
+  if (std::adjacent_find(values.begin(), values.end()) != values.end()) {
+    Error(Kind::kBadValue, feat.span, "a contour cannot have one value twice side by side", "take one out");
+    return false;
+  }
+  if (values.size() > most) {
+    Error(Kind::kBadValue, feat.span, "one mother holds at most " + std::to_string(most) + " of '" + kind.name + "'",
+          "name no more values than that");
+    return false;
+  }
+  if (most > 3) {
+    Error(Kind::kNotSupportedYet, feat.span,
+          "a list of values of '" + kind.name + "', of which one mother may hold " + std::to_string(most) +
+              ", is not supported by this release",
+          "say how it begins and ends: `begins " + kind.name + ":" + kind.values[values.front()] + " ends " +
+              kind.name + ":" + kind.values[values.back()] + "`");
+    return false;
+  }
+  const auto add = [&](FeatureTest::Kind test, Value value, FeatureTest::Part part) {
+    tests->push_back({test, node, value, part});
+  };
+  add(FeatureTest::Kind::kHasValue, values.front(), FeatureTest::Part::kFirst);
+  for (std::size_t i = 1; i + 1 < values.size(); ++i)
+    add(FeatureTest::Kind::kHasValue, values[i], FeatureTest::Part::kAny);
+  add(FeatureTest::Kind::kHasValue, values.back(), FeatureTest::Part::kLast);
+  for (std::size_t v = 0; v < kind.values.size() && values.size() < most; ++v) {
+    const Value value = static_cast<Value>(v);
+    if (std::find(values.begin(), values.end(), value) == values.end())
+      add(FeatureTest::Kind::kLacksValue, value, FeatureTest::Part::kAny);
+  }
+  return true;
+}
+
+// ---- variables --------------------------------------------------------------------------------------
+
+namespace {
+
+// May one variable hold a value of either? + is there, - is not there.
+bool SameValues(const Tree& tree, NodeId a, NodeId b) {
+  const auto two_ways = [&](NodeId node) {
+    return tree[node].type == TreeNode::Type::kBinary || tree[node].type == TreeNode::Type::kBare;
+  };
+  if (a == b || (two_ways(a) && two_ways(b))) return true;
+  return tree[a].type == TreeNode::Type::kMany && tree[b].type == TreeNode::Type::kMany &&
+         tree[a].values == tree[b].values;
+}
+
+}  // namespace
+
+// The variable whose value `set` and `fill` give: the `where` must say what it is.
+std::optional<int> Checker::GivenVariable(const syntax::Feat& feat, NodeId node, RuleContext* context) {
+  const std::string& name = feat.variable.text;
+  if (context == nullptr) {
+    Error(Kind::kBadValue, feat.span, "'" + name + "' gives no content here",
+          "say the value; in a rule, `set` may give it afterwards: set X [" + name + grammar_.tree[node].name + "]");
+    return std::nullopt;
+  }
+  if (context->broken) return std::nullopt;
+  const std::vector<Variable>& variables = *context->variables;
+  const auto known =
+      std::find_if(variables.begin(), variables.end(), [&](const Variable& variable) { return variable.name == name; });
+  if (known == variables.end() || !known->bound) {
+    Error(Kind::kBadRule, feat.span,
+          known == variables.end() ? "'" + name + "' has no value: it stands nowhere in the `where`"
+                                   : "'" + name +
+                                         "' may have no value: it stands only in `unless` or in a part of the "
+                                         "`where` that may be left out or repeated",
+          "write it in the bundle of an item that every match has: [" + name + grammar_.tree[node].name + "]");
+    return std::nullopt;
+  }
+  return VariableOf(feat, node, context);
+}
+
+std::optional<int> Checker::VariableOf(const syntax::Feat& feat, NodeId node, RuleContext* context) {
+  const TreeNode& kind = grammar_.tree[node];
+  const std::string& name = feat.variable.text;
+  const auto bad = [&](Kind what, const std::string& message, const std::string& remedy) {
+    Error(what, feat.span, message, remedy);
+    return std::nullopt;
+  };
+  if (context == nullptr || context->variables == nullptr || context->alternative) {
+    return bad(Kind::kBadRule, "'" + name + "' has no meaning here: items of a rule agree, each taken as a whole",
+               "write it in a bundle of the rule that is not under `or`, `not` or alternatives");
+  }
+  if (node == kSlotNode)
+    return bad(Kind::kBadValue, "slots have no content of their own", "name root or a node under it");
+  if (feat.kind == syntax::Feat::Kind::kDiffers && kind.type != TreeNode::Type::kBinary) {
+    return bad(Kind::kBadValue, "'" + kind.name + "' has no opposite: only what is + or - has one",
+               "write " + name + kind.name + ", or say the value");
+  }
+  std::vector<Variable>& variables = *context->variables;
+  auto found =
+      std::find_if(variables.begin(), variables.end(), [&](const Variable& variable) { return variable.name == name; });
+  if (found == variables.end()) {
+    Variable variable;
+    variable.name = name;
+    variable.node = node;
+    variable.span = feat.span;
+    found = variables.insert(found, variable);
+  }
+  if (!SameValues(grammar_.tree, found->node, node)) {
+    diagnostics_.Add(
+        {Kind::kBadValue,
+         Severity::kError,
+         feat.span,
+         "'" + name + "' cannot be a value of both '" + grammar_.tree[found->node].name + "' and '" + kind.name + "'",
+         "use another of α β γ δ for one of them",
+         {{found->span, "it is one of '" + grammar_.tree[found->node].name + "' here"}}});
+    return std::nullopt;
+  }
+  ++found->places;
+  if (context->repeated) found->several = true;
+  if (!context->repeated && !context->in_unless) found->bound = true;
+  return static_cast<int>(found - variables.begin());
+}
+
+// ---- bundles ----------------------------------------------------------------------------------------
+
+std::optional<SlotTest> Checker::ResolveBundle(const syntax::Bundle& bundle, RuleContext* context) {
   SlotTest test;
   if (bundle.feats.empty()) return test;
   test.op = SlotTest::Op::kBundle;
   bool good = true;
-  for (const syntax::Feat& feat : bundle.feats) {
-    const std::optional<FeatureTest> feature = ResolveFeature(feat);
-    if (feature) {
-      test.bundle.push_back(*feature);
-    } else {
-      good = false;
-    }
-  }
+  for (const syntax::Feat& feat : bundle.feats) good = AddTests(feat, context, &test.bundle) && good;
   if (!good) return std::nullopt;
   WarnContradictions(test.bundle, bundle.span);
   return test;
 }
 
-void Checker::WarnContradictions(const std::vector<FeatureTest>& tests, Span span) {
-  const Tree& tree = grammar_.tree;
-  const auto positive = [](const FeatureTest& t) {
-    return t.kind == FeatureTest::Kind::kBears || t.kind == FeatureTest::Kind::kHasValue;
+namespace {
+
+using Test = FeatureTest::Kind;
+
+// What a test asks for, as it is written.
+std::string Said(const Tree& tree, const FeatureTest& test) {
+  const std::string& name = tree[test.node].name;
+  const auto on_side = [&](const std::string& word) {
+    switch (test.side) {
+      case FeatureTest::Side::kEither:
+        return word + " " + name;
+      case FeatureTest::Side::kLeft:
+        return word + " " + name + " leftward";
+      case FeatureTest::Side::kRight:
+        return word + " " + name + " rightward";
+    }
+    return word;
   };
-  const auto name = [&](const FeatureTest& t) {
-    return t.kind == FeatureTest::Kind::kHasValue ? tree.ValueName(t.node, t.value) : tree[t.node].name;
-  };
-  for (const FeatureTest& a : tests) {
-    if (!positive(a)) continue;
-    for (const FeatureTest& b : tests) {
-      std::string why;
-      if (b.kind == FeatureTest::Kind::kLacks && tree.Dominates(b.node, a.node)) {
-        why = "'" + name(a) + "' and 'no " + tree[b.node].name + "'";
-      } else if (b.kind == FeatureTest::Kind::kLacksValue && a.kind == FeatureTest::Kind::kHasValue &&
-                 a.node == b.node && a.value == b.value) {
-        why = "'" + name(a) + "' and 'no " + name(a) + "'";
-      } else if (&a < &b && a.kind == FeatureTest::Kind::kHasValue && b.kind == FeatureTest::Kind::kHasValue &&
-                 a.node == b.node && a.value != b.value) {
-        // Two values are a contour where one mother, or one of several mothers, has the room.
-        bool room = false;
-        for (NodeId above = a.node; above > kRootNode; above = tree[above].mother) room = room || tree[above].max > 1;
-        if (!room) why = "'" + name(a) + "' and '" + name(b) + "'";
+  switch (test.kind) {
+    case Test::kBears:
+      return name;
+    case Test::kLacks:
+      return "no " + name;
+    case Test::kHasValue:
+      return tree.ValueName(test.node, test.value);
+    case Test::kLacksValue:
+      return "no " + tree.ValueName(test.node, test.value);
+    case Test::kAgrees:
+      return "agreement in " + name;
+    case Test::kDiffers:
+      return "difference in " + name;
+    case Test::kShared:
+      return on_side("shared");
+    case Test::kUnshared:
+      return on_side("unshared");
+    case Test::kLong:
+      return "long";
+    case Test::kShort:
+      return "short";
+    case Test::kHalfFirst:
+      return "half first";
+    case Test::kHalfSecond:
+      return "half second";
+  }
+  return "";
+}
+
+// Only a slot that bears the node passes.
+bool AsksFor(const Tree& tree, const FeatureTest& test) {
+  switch (test.kind) {
+    case Test::kBears:
+    case Test::kHasValue:
+    case Test::kDiffers:
+    case Test::kShared:
+    case Test::kUnshared:
+      return true;
+    case Test::kAgrees:  // a bare feature agrees in not being there, too
+      return tree[test.node].type != TreeNode::Type::kBare;
+    case Test::kLacks:
+    case Test::kLacksValue:
+    case Test::kLong:
+    case Test::kShort:
+    case Test::kHalfFirst:
+    case Test::kHalfSecond:
+      return false;
+  }
+  return false;
+}
+
+// Can no slot pass both? Where `contour`, a slot may bear two values of their node.
+bool Exclude(const Tree& tree, const FeatureTest& a, const FeatureTest& b, bool contour) {
+  const bool same_part = !contour || (a.part == b.part && a.part != FeatureTest::Part::kAny);
+  const bool same_node = a.node == b.node;
+  switch (a.kind) {
+    case Test::kLacks:
+      return AsksFor(tree, b) && tree.Dominates(a.node, b.node);
+    case Test::kHasValue:
+      if (b.kind == Test::kLacksValue) {
+        return same_node && a.value == b.value && (b.part == FeatureTest::Part::kAny || b.part == a.part);
       }
-      if (why.empty()) continue;
-      diagnostics_.Warning(Kind::kNeverApplies, span, "no segment matches this bundle: it asks for " + why,
+      return b.kind == Test::kHasValue && same_node && a.value != b.value && same_part;
+    case Test::kAgrees:
+      return b.kind == Test::kDiffers && same_node && a.variable == b.variable && same_part;
+    case Test::kUnshared:
+      return b.kind == Test::kShared && same_node && (a.side == FeatureTest::Side::kEither || a.side == b.side);
+    case Test::kShort:
+      return b.kind == Test::kLong || b.kind == Test::kHalfFirst || b.kind == Test::kHalfSecond;
+    case Test::kHalfFirst:
+      return b.kind == Test::kHalfSecond;
+    case Test::kBears:
+    case Test::kLacksValue:
+    case Test::kDiffers:
+    case Test::kShared:
+    case Test::kLong:
+    case Test::kHalfSecond:
+      return false;
+  }
+  return false;
+}
+
+}  // namespace
+
+void Checker::WarnContradictions(const std::vector<FeatureTest>& tests, Span span) {
+  for (const FeatureTest& a : tests) {
+    for (const FeatureTest& b : tests) {
+      if (!Exclude(grammar_.tree, a, b, MayBeContour(a.node))) continue;
+      const bool in_order = &a < &b;
+      diagnostics_.Warning(Kind::kNeverApplies, span,
+                           "no segment matches this bundle: it asks for '" + Said(grammar_.tree, in_order ? a : b) +
+                               "' and '" + Said(grammar_.tree, in_order ? b : a) + "'",
                            "take one of the two out");
       return;
     }
@@ -139,7 +415,17 @@ void Checker::WarnContradictions(const std::vector<FeatureTest>& tests, Span spa
 
 // ---- content ----------------------------------------------------------------------------------------
 
-bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<Setting>* settings) {
+bool Checker::AddSetting(const syntax::Feat& feat, bool continues, RuleContext* context,
+                         std::vector<Setting>* settings) {
+  using Feat = syntax::Feat;
+  const bool of_form =
+      feat.kind != Feat::Kind::kAgrees && feat.kind != Feat::Kind::kDiffers && feat.kind > Feat::Kind::kValue;
+  if (of_form || feat.edge != Feat::Edge::kUnsaid) {
+    Error(Kind::kBadValue, feat.span, "this asks something of a slot; it is no content to give",
+          of_form ? "length and sharing are made by `lengthen`, `shorten`, `spread` and `delink`"
+                  : "write the values of a contour side by side: [-f +f]");
+    return false;
+  }
   const std::optional<NodeId> node = NodeOf(feat.name, Kind::kUnknownFeature);
   if (!node) return false;
   const TreeNode& kind = grammar_.tree[*node];
@@ -147,13 +433,15 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
     Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is no content to give", "name the features under it");
     return false;
   }
-  if (IsSlotBorne(*node)) {
+  if (IsSlotBorne(*node) && context == nullptr) {
     Error(Kind::kNotSupportedYet, feat.span,
           "'" + kind.name + "' hangs from the slot; giving it to a slot is not supported by this release",
           "hang it under root, or leave it out");
     return false;
   }
-  std::vector<Value> values;
+  Setting asked;
+  asked.node = *node;
+  std::vector<Value>& values = asked.values;
   switch (feat.kind) {
     case syntax::Feat::Kind::kPlus:
     case syntax::Feat::Kind::kMinus:
@@ -187,10 +475,25 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
         values.push_back(*value);
       }
       break;
+    case syntax::Feat::Kind::kAgrees:
+    case syntax::Feat::Kind::kDiffers: {
+      const std::optional<int> variable = GivenVariable(feat, *node, context);
+      if (!variable) return false;
+      asked.variable = *variable;
+      asked.differs = feat.kind == syntax::Feat::Kind::kDiffers;
+      break;
+    }
+    case syntax::Feat::Kind::kShared:
+    case syntax::Feat::Kind::kUnshared:
+    case syntax::Feat::Kind::kLong:
+    case syntax::Feat::Kind::kShort:
+    case syntax::Feat::Kind::kHalfFirst:
+    case syntax::Feat::Kind::kHalfSecond:
+      return false;  // said above
   }
   auto place = std::find_if(settings->begin(), settings->end(), [&](const Setting& s) { return s.node == *node; });
   if (place == settings->end()) {
-    place = settings->insert(place, {*node, std::move(values)});
+    place = settings->insert(place, std::move(asked));
   } else if (!continues || values.empty() || place->values.empty() || kind.type == TreeNode::Type::kClass) {
     Error(Kind::kBadValue, feat.span, "'" + kind.name + "' is given twice in one bundle",
           "take one out; the values of a contour stand side by side");
@@ -215,11 +518,11 @@ bool Checker::AddSetting(const syntax::Feat& feat, bool continues, std::vector<S
   return true;
 }
 
-bool Checker::ResolveSettings(const syntax::Bundle& bundle, std::vector<Setting>* settings) {
+bool Checker::ResolveSettings(const syntax::Bundle& bundle, RuleContext* context, std::vector<Setting>* settings) {
   bool good = true;
   for (std::size_t i = 0; i < bundle.feats.size(); ++i) {
     const bool continues = i > 0 && bundle.feats[i - 1].name.text == bundle.feats[i].name.text;
-    good = AddSetting(bundle.feats[i], continues, settings) && good;
+    good = AddSetting(bundle.feats[i], continues, context, settings) && good;
   }
   return good;
 }
@@ -237,7 +540,7 @@ SlotTest Checker::LiteralTest(int symbol) {
   return test;
 }
 
-std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& literal) {
+std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& literal, bool* is_long) {
   if (literal.spelled) {
     Error(Kind::kNotSupportedYet, literal.span, "spelled forms ⟨..⟩ are not supported by this release",
           "write the symbols: /../");
@@ -254,13 +557,18 @@ std::optional<std::vector<int>> Checker::SymbolsOf(const syntax::FormText& liter
       continue;
     }
     const NormalText::Unit& unit = text.units[i];
+    if (is_long != nullptr && !*is_long && unit.code == kLengthSign && symbols.size() == 1) {
+      *is_long = true;
+      ++i;
+      continue;
+    }
     Span span = literal.span;
     span.begin += unit.begin;
     span.end = literal.span.begin + unit.end;
     const std::string shown = literal.raw.substr(unit.begin, unit.end - unit.begin);
     if (unit.code == kLengthSign && !symbols.empty()) {
       Error(Kind::kBadRule, span, "a literal stands for one slot each symbol; ː writes a second slot of the same root",
-            "write two items, or test length with other means; a literal accepts a root however long it is");
+            "ask for length in a bundle: {/a/ and [long]}; a literal accepts a root however long it is");
     } else if (shown == "-" || shown == "=" || shown == "#" || shown == " " || shown == "‖") {
       Error(Kind::kBadRule, span, "a boundary does not stand inside a literal",
             "write it as an item of its own: /a/ - /b/");
@@ -309,10 +617,47 @@ std::optional<SlotTest> Checker::ResolveClass(const syntax::Name& name) {
   return test;
 }
 
-std::optional<SlotTest> Checker::ResolveSet(const syntax::Set& set) {
+namespace {
+
+// Does it ask what only a slot of a form can answer?
+bool AsksForm(const SlotTest& test) {
+  return std::any_of(test.args.begin(), test.args.end(), AsksForm) ||
+         std::any_of(test.bundle.begin(), test.bundle.end(), [](const FeatureTest& feature) {
+           switch (feature.kind) {
+             case Test::kBears:
+             case Test::kLacks:
+             case Test::kHasValue:
+             case Test::kLacksValue:
+               return feature.part != FeatureTest::Part::kAny;
+             case Test::kAgrees:
+             case Test::kDiffers:
+             case Test::kShared:
+             case Test::kUnshared:
+             case Test::kLong:
+             case Test::kShort:
+             case Test::kHalfFirst:
+             case Test::kHalfSecond:
+               return true;
+           }
+           return false;
+         });
+}
+
+}  // namespace
+
+std::optional<SlotTest> Checker::ResolveSymbolSet(const syntax::Set& set) {
+  std::optional<SlotTest> test = ResolveSet(set);
+  if (!test || !AsksForm(*test)) return test;
+  Error(Kind::kBadValue, set.span,
+        "a symbol is neither long nor shared, and is told by all of a contour: only rules can ask this",
+        "name features that it bears or lacks");
+  return std::nullopt;
+}
+
+std::optional<SlotTest> Checker::ResolveSet(const syntax::Set& set, RuleContext* context) {
   switch (set.kind) {
     case syntax::Set::Kind::kBundle:
-      return ResolveBundle(set.bundle);
+      return ResolveBundle(set.bundle, context);
     case syntax::Set::Kind::kLiteral: {
       const std::optional<std::vector<int>> symbols = SymbolsOf(set.literal);
       if (!symbols) return std::nullopt;
@@ -340,7 +685,10 @@ std::optional<SlotTest> Checker::ResolveSet(const syntax::Set& set) {
   std::vector<SlotTest> args;
   bool good = true;
   for (const syntax::Set& arg : set.args) {
-    std::optional<SlotTest> test = ResolveSet(arg);
+    // `A and B`, `A but not B`: all of A must hold.
+    const bool must_hold =
+        set.kind == syntax::Set::Kind::kAnd || (set.kind == syntax::Set::Kind::kButNot && &arg == &set.args.front());
+    std::optional<SlotTest> test = ResolveSet(arg, must_hold ? context : nullptr);
     good = good && test;
     if (test) args.push_back(std::move(*test));
   }

@@ -252,7 +252,7 @@ void Checker::CheckRooms() {
             "write a bundle: `in [-son]`");
       continue;
     }
-    const std::optional<SlotTest> test = ResolveSet(*set);
+    const std::optional<SlotTest> test = ResolveSymbolSet(*set);
     if (!test) continue;
     grammar_.tree.nodes[node].room = test;
   }

@@ -104,6 +104,15 @@ bool Passes(const SlotTest& test, const FeatureTree& root, const std::function<b
             return BearsValue(root, feature.node, feature.value);
           case FeatureTest::Kind::kLacksValue:
             return !BearsValue(root, feature.node, feature.value);
+          case FeatureTest::Kind::kAgrees:
+          case FeatureTest::Kind::kDiffers:
+          case FeatureTest::Kind::kShared:
+          case FeatureTest::Kind::kUnshared:
+          case FeatureTest::Kind::kLong:
+          case FeatureTest::Kind::kShort:
+          case FeatureTest::Kind::kHalfFirst:
+          case FeatureTest::Kind::kHalfSecond:
+            break;  // asked only of slots of a form
         }
         return false;
       });

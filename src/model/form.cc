@@ -276,6 +276,15 @@ class DefectFinder {
         return Bears(slot, feature.node, &feature.value);
       case FeatureTest::Kind::kLacksValue:
         return !Bears(slot, feature.node, &feature.value);
+      case FeatureTest::Kind::kAgrees:
+      case FeatureTest::Kind::kDiffers:
+      case FeatureTest::Kind::kShared:
+      case FeatureTest::Kind::kUnshared:
+      case FeatureTest::Kind::kLong:
+      case FeatureTest::Kind::kShort:
+      case FeatureTest::Kind::kHalfFirst:
+      case FeatureTest::Kind::kHalfSecond:
+        break;  // who has the room is never told by these
     }
     return true;
   }

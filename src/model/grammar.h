@@ -28,6 +28,7 @@ struct PatternItem {
                                         // a group whose quantity is not exactly one
   int min = 1;                          // kGroup
   int max = 1;                          // kGroup; -1: no bound
+  Span span;
 };
 struct Pattern {
   std::vector<PatternItem> items;
@@ -117,7 +118,7 @@ struct Clause {
 
   LabelKind KindOf(int label) const {
     return static_cast<std::size_t>(label) < label_kinds.size() ? label_kinds[static_cast<std::size_t>(label)]
-                                                                  : LabelKind::kSlot;
+                                                                : LabelKind::kSlot;
   }
 };
 
@@ -180,12 +181,17 @@ bool LeaveOutRule(const std::string& name, Grammar* grammar);
 // executable (../rulesets, ../share/tiersmith/rulesets). Empty if there is none.
 std::string FindLibrary();
 
+// How much of the notation a loaded grammar may use. kWhole is for tests of the checker and the interpreter: what the
+// compiler does not run yet (model/not_run_yet.h) is an error otherwise.
+enum class Reach { kRunnable, kWhole };
+
 // Reads, parses and checks a grammar file. Returns null (and errors) if any error was found; warnings do not stop it.
 std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_ptr<SourceMap>& sources,
-                                     Diagnostics& diagnostics);
+                                     Diagnostics& diagnostics, Reach reach = Reach::kRunnable);
 // The same for a grammar held in memory under the name `path` (relative files are sought beside it).
 std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
-                                         const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics);
+                                         const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics,
+                                         Reach reach = Reach::kRunnable);
 // Reads rows of a TSV with heading (columns underlying, surface, gloss, source by name, any order).
 std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics);
 

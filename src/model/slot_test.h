@@ -17,7 +17,8 @@ struct FeatureTest {
     kLacks,
     kHasValue,
     kLacksValue,
-    kAgrees,      // its value of `node` (bare: there or not; class node: its content) is that of the variable
+    kAgrees,      // its value of `node` (two-valued: - is 0, + is 1; bare: not there is 0, there is 1; class node: its
+                  // content) is that of the variable; where it bears none (bare aside), it fails
     kDiffers,     // its value of the two-valued `node` is the other one
     kShared,      // an N that it bears is borne by another slot too, by its own line or through a node above
     kUnshared,    // it bears N, and none of them is borne by another slot

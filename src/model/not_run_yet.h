@@ -1,0 +1,30 @@
+// What the notation has and the interpreter and the compiler together do not run yet: the one place that says so.
+//
+// The checker resolves all of it, and refuses what is listed here at its place, unless a grammar is loaded with
+// Reach::kWhole. A construct that the compiler has learned is struck out here and nowhere else.
+// Tested by tests/unit/model/check_test.cc.
+#pragma once
+
+#include <string>
+#include <vector>
+
+#include "grammar/syntax.h"
+#include "model/grammar.h"
+
+namespace tiersmith {
+
+struct NotYet {
+  Span span;
+  std::string what;  // "`prefer` is"
+  std::string remedy;
+};
+
+// FeatureTest::part. Until it is read, items beside a changed one are matched by any part of a contour.
+inline constexpr bool kPartsRun = false;
+
+// `name`: the place for what is said of a rule as a whole.
+std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree);
+std::vector<NotYet> NotRunYet(const syntax::Strict& strict);
+std::vector<NotYet> NotRunYet(const syntax::Fuse& fuse);
+
+}  // namespace tiersmith
