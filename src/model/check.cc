@@ -132,6 +132,7 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   const int before = errors(), hard_before = hard();
   const syntax::File parsed = Parse(*sources, file, diagnostics);
   PassOnUnsupported(parsed, diagnostics);
+  NotCheckedYet(&diagnostics).Visit(parsed);
   // Names declared in what did not parse would all be unknown: such a file is checked no further.
   if (hard() > hard_before) return nullptr;
   auto grammar = std::make_unique<Grammar>();

@@ -72,10 +72,8 @@ class Lister {
 
   void VisitChange(const Change& change) {
     switch (change.op) {
-      case Change::Op::kDelink:
-        if (change.node == kRootNode) Add(change.span, "`delink` of a root is", "delete the slot: delete X");
-        break;
       case Change::Op::kSpread:
+      case Change::Op::kDelink:
       case Change::Op::kSet:
       case Change::Op::kFill:
       case Change::Op::kInsert:

@@ -187,8 +187,7 @@ TEST_CASE("check: rules", "[unit]") {
           {"rule \"r\" { where X:V insert E:/pt/ before X }", Kind::kBadRule, "pt", "no single symbol"},
           {"rule \"r\" { where X:V insert E:/q/ before X }", Kind::kUnknownSymbol, "q", "no symbol of the grammar"},
           {"rule \"r\" { where X:V insert X:/p/ before X }", Kind::kBadRule, "X", "used twice"},
-          {"rule \"r\" { where X:V insert E:/p/ before X delete E }", Kind::kNotSupportedYet, "E",
-           "is inserted by this rule"},
+          {"rule \"r\" { where X:V insert E:/p/ before X delete E }", Kind::kBadRule, "E", "is inserted by this rule"},
           {"rule \"r\" { where X:/pt/ delete X }", Kind::kBadRule, "X", "takes no label"},
           {"rule \"r\" { where X:/pː/ delete X }", Kind::kBadRule, "ː", "one slot each symbol"},
           {"pattern P = [-syll] X:[+syll] rule \"r\" { where Y:V P delete Y }", Kind::kBadRule, "X",
@@ -204,9 +203,10 @@ TEST_CASE("check: rules", "[unit]") {
   CheckRows(
       "tree { root > ±son A ×2\n A > f ±g\n slot > Tone: H L }\nsegments { a [+son f]  p [-son f] }\n",
       {
-          {"rule \"r\" { where X:[+son] delink X.f }", Kind::kNotSupportedYet, "f", "may hold several of 'A'"},
-          {"rule \"r\" { where X:[+son] delink X.Tone }", Kind::kNotSupportedYet, "Tone", "borne by the slot"},
-          {"rule \"r\" { where X:[+son] set X [Tone:H] }", Kind::kNotSupportedYet, "Tone:H", "hangs from the slot"},
+          {"rule \"r\" { where X:[+son] delink X.f }", Kind::kNotSupportedYet, "delink X.f", "may hold several of 'A'"},
+          {"rule \"r\" { where X:[+son] delink X.Tone }", Kind::kNotSupportedYet, "delink X.Tone", "borne by the slot"},
+          {"rule \"r\" { where X:[+son] set X [Tone:H] }", Kind::kNotSupportedYet, "set X [Tone:H]",
+           "borne by the slot"},
       });
   CheckRows(
       "tree { root > ±son f floating }\nsegments { a [+son f]  p [-son] }\n",
