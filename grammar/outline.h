@@ -17,6 +17,8 @@ namespace tiersmith::outline {
 
 enum class SectionKind {
   kLanguage,
+  kInclude,
+  kStrict,
   kTree,
   kSegments,
   kArchisegments,
@@ -25,7 +27,10 @@ enum class SectionKind {
   kOmit,
   kClass,
   kPattern,
+  kFuse,
+  kSharing,
   kRule,
+  kComplete,
   kLexicon,
   kParadigm,
   kSpelling,

@@ -14,6 +14,8 @@
 #include <boost/spirit/home/x3.hpp>
 
 #include <algorithm>
+#include <charconv>
+#include <set>
 #include <stdexcept>
 #include <string>
 #include <utility>
@@ -33,7 +35,8 @@ struct Scene {
   const char* origin = nullptr;
   std::uint32_t file = 0;
   std::vector<syntax::Unsupported> later;
-  int later_changes = 0;  // in the clause being read
+  int later_changes = 0;       // in the clause being read
+  std::set<std::string> said;  // modifiers of the rule being read
 
   Span Between(Iterator begin, Iterator end) const {
     return {file, static_cast<std::uint32_t>(begin.base() - origin), static_cast<std::uint32_t>(end.base() - origin)};
@@ -197,10 +200,10 @@ struct NameToken : Token<NameToken> {
     syntax::Name name;
     if (!MatchString(i, last, name.text)) {
       name.text = PeekBare(i, last);
-      if (name.text.empty() || notation::IsReserved(name.text)) return false;
-      if (in_bundle && notation::IsBundleWord(name.text)) return false;
+      if (notation::IsReserved(name.text) || (in_bundle && notation::IsBundleWord(name.text))) return false;
       while (i.base() != first.base() + name.text.size()) ++i;
     }
+    if (name.text.empty()) return false;
     name.span = SceneOf(context).Between(first, i);
     place = i;
     x3::traits::move_to(std::move(name), attribute);
@@ -440,7 +443,12 @@ struct DecimalToken : Token<DecimalToken> {
     const Iterator whole = i;
     if (!MatchText(i, last, U".") || !digits()) i = whole;
     place = i;
-    x3::traits::move_to(std::stod(Bytes(first, i)), attribute);
+    const std::string digits_read = Bytes(first, i);
+    double value = 0;
+    if (std::from_chars(digits_read.data(), digits_read.data() + digits_read.size(), value).ec != std::errc())
+      throw Refusal{SceneOf(context).Between(first, i), "this number is too large or too small",
+                    "write a number with fewer digits"};
+    x3::traits::move_to(double(value), attribute);
     return true;
   }
 };
@@ -503,16 +511,19 @@ struct TimesToken : Token<TimesToken> {
   }
 };
 
-// A variable of agreement before its feature: αback, alpha back.
-struct VariableToken : x3::parser<VariableToken> {
-  using attribute_type = x3::unused_type;
-  static bool const has_attribute = false;
+// A variable of agreement, the letter before αback.
+struct VariableToken : Token<VariableToken> {
+  using attribute_type = syntax::Name;
   template <class Context, class RContext, class Attribute>
-  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute&) const {
+  bool parse(Iterator& place, const Iterator& last, const Context& context, RContext&, Attribute& attribute) const {
     Iterator first = place;
     x3::skip_over(first, last, context);
     if (first == last || !notation::IsGreekVariable(*first)) return false;
-    place = ++first;
+    Iterator i = first;
+    ++i;
+    syntax::Name variable{Bytes(first, i), SceneOf(context).Between(first, i)};
+    place = i;
+    x3::traits::move_to(std::move(variable), attribute);
     return true;
   }
 };
@@ -710,6 +721,12 @@ template <class M, class V>
 auto Let(M member, V value) {
   return [member, value](auto& context) { x3::_val(context).*member = value; };
 }
+// The word a stretch begins with, or all of it if it begins with a sign.
+std::string FirstWord(Iterator begin, const Iterator& end) {
+  Iterator word = begin;
+  while (word != end && notation::IsNameCharacter(*word)) ++word;
+  return Bytes(begin, word == begin ? end : word);
+}
 // Notes a construct of a later release; used on raw[..].
 auto NotYet(const char* construct) {
   return [construct](auto& context) {
@@ -721,9 +738,7 @@ auto NotYet(const char* construct) {
 const auto kNotYetWord = [](auto& context) {
   Scene& scene = SceneOf(context);
   const Iterator begin = x3::_attr(context).begin(), end = x3::_attr(context).end();
-  Iterator word = begin;
-  while (word != end && notation::IsNameCharacter(*word)) ++word;
-  scene.Later(Bytes(begin, word == begin ? end : word), scene.Between(begin, end));
+  scene.Later(FirstWord(begin, end), scene.Between(begin, end));
 };
 const auto kWhole = [](auto& context) { x3::_val(context) = std::move(x3::_attr(context)); };
 
@@ -792,45 +807,64 @@ template <class Parser>
 auto Glued(const Parser& parser) {
   return x3::no_skip[parser];
 }
-const auto direction = Word(U"rightward") | Word(U"leftward") | Wanted("rightward or leftward");
 const auto minus_sign = Sign(U"-") | Sign(U"\u2212") | Sign(U"\u2013");
 const auto plus_minus = Sign(U"±") | Sign(U"+/-");
-const auto agreement = (VariableToken{} >> Glued(name)) | (Word(U"alpha") > name);
 const auto value = name | (Sign(U"(") > +name > Sign(U")"));
 
 const auto prosodic_word = Word(U"onset") | Word(U"peak") | Word(U"coda") | Word(U"appendix") | Word(U"stray") |
                            Word(U"open") | Word(U"closed") | Word(U"light") | Word(U"heavy") | Word(U"main");
 const auto prosodic_word_2 =
     Word(U"stressed") | Word(U"unstressed") | Word(U"head") | Word(U"footed") | Word(U"unfooted");
+constexpr const char* kDomains = "a domain: syllable, foot, morpheme, stem, host, word or phrase";
 const auto a_domain = Word(U"morpheme") | Word(U"stem") | Word(U"host") | Word(U"word") | Word(U"phrase") |
-                      Word(U"syllable") | Word(U"foot") |
-                      Wanted("a domain: syllable, foot, morpheme, stem, host, word or phrase");
+                      Word(U"syllable") | Word(U"foot") | Wanted(kDomains);
 
-const auto later_feat_def =
-    raw[-(Sign(U"+") | minus_sign) >> agreement][NotYet("agreement by α β γ δ")] |
-    raw[(Word(U"shared") | Word(U"unshared")) > name >> -(Word(U"rightward") | Word(U"leftward"))][kNotYetWord] |
-    (raw[Word(U"begins") | Word(U"ends")][kNotYetWord] > feat) | raw[Word(U"floating")][NotYet("a floating item")] |
-    raw[Word(U"linked")][kNotYetWord] | (raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
-    raw[Word(U"long") | Word(U"short")][kNotYetWord] |
-    raw[Word(U"half") > (Word(U"first") | Word(U"second") | Wanted("first or second"))][kNotYetWord] |
-    raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
-    raw[prosodic_word | prosodic_word_2][kNotYetWord];
+const auto later_feat_def = raw[Word(U"floating")][NotYet("a floating item")] | raw[Word(U"linked")][kNotYetWord] |
+                            (raw[Word(U"held") > Word(U"by")][kNotYetWord] > set) |
+                            raw[(Word(U"first") | Word(U"last")) > Word(U"in") > a_domain][kNotYetWord] |
+                            raw[prosodic_word | prosodic_word_2][kNotYetWord];
 
+auto IsKind(syntax::Feat::Kind kind) { return Let(&syntax::Feat::kind, kind); }
 auto Named(syntax::Feat::Kind kind) {
   return [kind](auto& context) {
     x3::_val(context).kind = kind;
     x3::_val(context).name = std::move(x3::_attr(context));
   };
 }
+const auto kFeatName = To(&syntax::Feat::name);
 const auto a_value = name[Push(&syntax::Feat::values)] |
                      (Sign(U"(") > +name[Push(&syntax::Feat::values)] > Sign(U")")) |
                      Wanted("@a value, or several in ( )");
-const auto feat_def = Spanned(
+// What `begins` and `ends` may ask of one edge, and any bundle of the whole.
+const auto borne =
     (Sign(U"+") > feature[Named(syntax::Feat::Kind::kPlus)]) |
     (minus_sign > feature[Named(syntax::Feat::Kind::kMinus)]) |
+    (bundle_name[Named(syntax::Feat::Kind::kBears)] >> -(Sign(U":")[IsKind(syntax::Feat::Kind::kValue)] > a_value));
+const auto one_edge = Word(U"begins")[Let(&syntax::Feat::edge, syntax::Feat::Edge::kBegins)] |
+                      Word(U"ends")[Let(&syntax::Feat::edge, syntax::Feat::Edge::kEnds)];
+
+const auto kAlpha = [](auto& context) {
+  x3::_val(context).variable = {"α", SceneOf(context).Between(x3::_attr(context).begin(), x3::_attr(context).end())};
+};
+const auto agreeing = (VariableToken{}[To(&syntax::Feat::variable)] >
+                       (Glued(name)[kFeatName] | Wanted("@a feature right after its variable"))) |
+                      (raw[Word(U"alpha")][kAlpha] > feature[kFeatName]);
+const auto agreement = (x3::eps[IsKind(syntax::Feat::Kind::kAgrees)] >> agreeing) |
+                       (minus_sign[IsKind(syntax::Feat::Kind::kDiffers)] >> agreeing);
+
+const auto shared_node = (Word(U"shared")[IsKind(syntax::Feat::Kind::kShared)] |
+                          Word(U"unshared")[IsKind(syntax::Feat::Kind::kUnshared)]) > feature[kFeatName] >>
+                         -(Word(U"rightward")[Let(&syntax::Feat::side, syntax::Feat::Side::kRightward)] |
+                           Word(U"leftward")[Let(&syntax::Feat::side, syntax::Feat::Side::kLeftward)]);
+const auto root_length =
+    Word(U"long")[IsKind(syntax::Feat::Kind::kLong)] | Word(U"short")[IsKind(syntax::Feat::Kind::kShort)] |
+    (Word(U"half") > (Word(U"first")[IsKind(syntax::Feat::Kind::kHalfFirst)] |
+                      Word(U"second")[IsKind(syntax::Feat::Kind::kHalfSecond)] | Wanted("first or second")));
+const auto feat_def = Spanned(
+    (one_edge > (borne | Wanted("what an edge bears: +f, -f, a feature or a value"))) | agreement | shared_node |
+    root_length |
     (Word(U"no") > feature[Named(syntax::Feat::Kind::kNo)] >> -(raw[Sign(U":") > value][NotYet("'no' with a value")])) |
-    (bundle_name[Named(syntax::Feat::Kind::kBears)] >>
-     -(Sign(U":")[Let(&syntax::Feat::kind, syntax::Feat::Kind::kValue)] > a_value)));
+    borne);
 
 const auto bundle_def = Spanned(Sign(U"[") > *(-Sign(U",") >> (later_feat | feat[Push(&syntax::Bundle::feats)])) >
                                 (Sign(U"]") | Wanted("@a feature or ']'")));
@@ -903,6 +937,7 @@ BOOST_SPIRIT_DEFINE(feat, later_feat, bundle, set, atom, set_tail, open_set)
 struct ItemRule;
 struct PatternRule;
 const x3::rule<ItemRule, syntax::Item> item("@an item");
+const x3::rule<struct SameMorphemeRule, syntax::Item> same_morpheme("'&'");
 const x3::rule<struct LaterItemRule> later_item("an item");
 const x3::rule<PatternRule, syntax::Pattern> pattern("@a pattern");
 const x3::rule<struct LabelledRule, syntax::Item> labelled("a labelled item");
@@ -945,6 +980,10 @@ const auto kQuantify = [](auto& context) {
   x3::_val(context).min = x3::_attr(context).min;
   x3::_val(context).max = x3::_attr(context).max;
 };
+const auto kItemBoundary = [](auto& context) {
+  x3::_val(context).kind = syntax::Item::Kind::kBoundary;
+  x3::_val(context).boundary = x3::_attr(context);
+};
 const auto kItemSet = [](auto& context) {
   x3::_val(context).kind = syntax::Item::Kind::kSet;
   x3::_val(context).set = std::move(x3::_attr(context));
@@ -985,7 +1024,7 @@ const auto gap_def = gap_sign[Let(&syntax::Item::kind, syntax::Item::Kind::kGap)
                      -Glued(name[To(&syntax::Item::tier)]);
 
 const auto labelled_def = &(name >> Glued(Sign(U":"))) >> name[To(&syntax::Item::label)] >> Glued(Sign(U":")) >>
-                          (raw[BoundaryToken{}][NotYet("a labelled boundary")] | set[kItemSet] |
+                          (BoundaryToken{}[kItemBoundary] | set[kItemSet] |
                            Wanted("@a set: a bundle, a literal or a class")) >>
                           -Glued(raw[quantity][kLabelCount]);
 
@@ -1003,77 +1042,102 @@ const auto brace_body_def = Spanned(Sign(U"{") > pattern[Push(&syntax::Item::alt
                                     (Sign(U"}") | Wanted("@an item, '|' or '}'")));
 const auto braced_def = brace_body[kJoin] >> -(x3::eps[kIsSet] >> more_set[kMoreSet]) >> -Glued(quantity[kQuantify]);
 
-const auto later_item_def = ((!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")]) |
-                            raw[Sign(U"&")][NotYet("'&'")];
+const auto same_morpheme_def = Spanned(Sign(U"&")[Let(&syntax::Item::kind, syntax::Item::Kind::kSameMorpheme)]);
+const auto later_item_def = (!gap_sign) >> raw[Sign(U".") >> !Glued(PathAhead{})][NotYet("'.' in a pattern")];
 
-const auto item_def = Spanned(BoundaryToken{}[([](auto& context) {
-                                x3::_val(context).kind = syntax::Item::Kind::kBoundary;
-                                x3::_val(context).boundary = x3::_attr(context);
-                              })] |
-                              gap[kWhole] | bracketed[kWhole] | braced[kWhole] | labelled[kWhole] |
-                              (open_set[kPlainItem] >> -Glued(quantity[kQuantify])));
+const auto item_def = Spanned(BoundaryToken{}[kItemBoundary] | gap[kWhole] | bracketed[kWhole] | braced[kWhole] |
+                              labelled[kWhole] | (open_set[kPlainItem] >> -Glued(quantity[kQuantify])));
 
-const auto pattern_def = Spanned(+(item[Push(&syntax::Pattern::items)] | later_item));
+const auto one_item = item[Push(&syntax::Pattern::items)] | later_item;
+const auto pattern_def = Spanned(one_item >> *((same_morpheme[Push(&syntax::Pattern::items)] > one_item) | one_item));
 
-BOOST_SPIRIT_DEFINE(item, later_item, pattern, labelled, braced, brace_body, more_set, bracketed, gap)
+BOOST_SPIRIT_DEFINE(item, same_morpheme, later_item, pattern, labelled, braced, brace_body, more_set, bracketed, gap)
 
 // ---- rules ----------------------------------------------------------------------------------------
 
 struct PathRule;
 struct ChangeRule;
 const x3::rule<PathRule, syntax::Path> path("@a path such as X.Place");
-const x3::rule<struct LaterTestRule> later_test("a test");
+const x3::rule<struct TestRule, syntax::Condition> test("@a path such as X.Place");
+const x3::rule<struct TagTestRule, syntax::TagTest> tag_test("only or except");
 const x3::rule<ChangeRule, syntax::Change> change("a change");
 const x3::rule<struct LaterChangeRule> later_change("a change");
 const x3::rule<struct LaterModifierRule> later_modifier("a modifier");
-struct ModeAt {
-  syntax::Rule::Mode mode = syntax::Rule::Mode::kAtOnce;
-  Span span;
-};
-const x3::rule<struct ModeRule, ModeAt> mode("iterate");
-const x3::rule<struct ClauseRule, syntax::Rule> clause("'where'");
 const x3::rule<struct BodyRule, syntax::Rule> body("a rule");
 const x3::rule<struct ChangeSpreadRule, syntax::Change> spread("spread");
 const x3::rule<struct ChangeDelinkRule, syntax::Change> delink("delink");
 const x3::rule<struct ChangeSetRule, syntax::Change> set_fill("set or fill");
 const x3::rule<struct ChangeDeleteRule, syntax::Change> delete_("delete");
 const x3::rule<struct ChangeInsertRule, syntax::Change> insert("insert");
+const x3::rule<struct ChangeLengthRule, syntax::Change> lengthen("lengthen or shorten");
+const x3::rule<struct ChangeMergeRule, syntax::Change> merge("merge");
 
 const Sign kDot(U".");
 const auto path_ahead = &(name >> Glued(kDot >> !kDot));
-const auto member = (Sign(U"+") | minus_sign) >> name;
-const auto path_def = Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
-                              (Glued(raw[member][NotYet("one member of a contour")]) |
-                               Glued(node)[To(&syntax::Path::node)] | Wanted("@the name of a node")) >>
-                              -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
-                              -(Glued(&Sign(U":")) >> raw[Sign(U":") > value][NotYet("one member of a contour")]) >>
-                              -raw[Word(U"first") | Word(U"last")][NotYet("one member of a contour")]);
+// A label where no path can stand, so that `delete X.N` is told from `delete X`.
+const auto label_alone = label >> !Glued(kDot >> PathAhead{});
+const auto kNarrow = [](syntax::Path::Member member) { return Let(&syntax::Path::member, member); };
+const auto path_def =
+    Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
+            ((Glued(Sign(U"+")[kNarrow(syntax::Path::Member::kPlus)] |
+                    minus_sign[kNarrow(syntax::Path::Member::kMinus)]) > Glued(node)[To(&syntax::Path::node)]) |
+             (Glued(node)[To(&syntax::Path::node)] >>
+              -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
+              -((Glued(Sign(U":"))[kNarrow(syntax::Path::Member::kValue)] > name[To(&syntax::Path::value)]) |
+                (Word(U"first")[kNarrow(syntax::Path::Member::kFirst)] >> !Glued(kDot)) |
+                (Word(U"last")[kNarrow(syntax::Path::Member::kLast)] >> !Glued(kDot)))) |
+             Wanted("@the name of a node")));
 
+const auto kTest = [](syntax::Condition::Test kind) { return Let(&syntax::Condition::test, kind); };
 const auto test_sign =
-    Sign(U"=") | Sign(U"≠") | Sign(U"!=") | (Word(U"is") >> -Word(U"not")) | Wanted("=, ≠, is or is not");
-const auto later_test_def = path > test_sign > path;
+    Sign(U"=")[kTest(syntax::Condition::Test::kEqual)] |
+    (Sign(U"≠") | Sign(U"!="))[kTest(syntax::Condition::Test::kUnequal)] |
+    (Word(U"is")[kTest(syntax::Condition::Test::kIs)] >> -Word(U"not")[kTest(syntax::Condition::Test::kIsNot)]) |
+    Wanted("=, ≠, is or is not");
+const auto test_def = Spanned(path[To(&syntax::Condition::left)] > test_sign > path[To(&syntax::Condition::right)]);
 
-const auto kPaths = path[Push(&syntax::Change::paths)] > *(Sign(U",") > path[Push(&syntax::Change::paths)]);
-const auto spread_def = Word(U"spread")[Let(&syntax::Change::kind, syntax::Change::Kind::kSpread)] >
-                        ((path_ahead >> kPaths > Word(U"to") > label[To(&syntax::Change::label)]) |
+// A tag is any name, and `stem` without quotes.
+const auto kStem = [](auto& context) {
+  x3::_val(context).tag = {"stem", SceneOf(context).Between(x3::_attr(context).begin(), x3::_attr(context).end())};
+};
+const auto named_tag = name[To(&syntax::TagTest::tag)];
+const auto other_tag = raw[Word(U"stem")][kStem] | Wanted("@a tag");
+const auto asked_tag = named_tag | other_tag;
+const auto kTagOfLabel = [](auto& context) {
+  syntax::TagTest& it = x3::_val(context);
+  it.scope = syntax::TagTest::Scope::kLabel;
+  it.label = std::move(it.tag);
+};
+const auto tag_test_def =
+    Spanned((Word(U"only") | Word(U"except")[Let(&syntax::TagTest::only, false)]) >
+            ((Word(U"word")[Let(&syntax::TagTest::scope, syntax::TagTest::Scope::kWord)] > asked_tag) |
+             (named_tag >> -(Word(U"in")[kTagOfLabel] > asked_tag)) | other_tag));
+
+auto IsChange(syntax::Change::Kind kind) { return Let(&syntax::Change::kind, kind); }
+const auto kChangeLabel = To(&syntax::Change::label);
+const auto a_path = path[Push(&syntax::Change::paths)];
+const auto kPaths = a_path > *(Sign(U",") > a_path);
+const auto spread_def = Word(U"spread")[IsChange(syntax::Change::Kind::kSpread)] >
+                        ((path_ahead >> kPaths > Word(U"to") > label_alone[kChangeLabel]) |
                          (label >> raw[Word(U"rightward") | Word(U"leftward")][NotYet("'spread' along a tier")]) |
                          Wanted("@a path such as X.Place"));
-const auto delink_def = Word(U"delink")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelink)] >
+const auto delink_def = Word(U"delink")[IsChange(syntax::Change::Kind::kDelink)] >
                         ((path_ahead >> kPaths) |
                          (label >> raw[Word(U"first") | Word(U"last") | Word(U"all")][NotYet("'delink' on a tier")]) |
                          Wanted("@a path such as X.Place"));
-const auto as_other = raw[Word(U"as") > (path | label | Wanted("@a label or a path"))][NotYet("a change with 'as'")];
-const auto set_fill_def = (Word(U"set")[Let(&syntax::Change::kind, syntax::Change::Kind::kSet)] |
-                           Word(U"fill")[Let(&syntax::Change::kind, syntax::Change::Kind::kFill)]) >
-                          ((path_ahead >> path > as_other) |
-                           (label[To(&syntax::Change::label)] >
-                            (bundle[To(&syntax::Change::bundle)] | raw[literal][NotYet("'set' to a literal")] |
-                             as_other | Wanted("a bundle such as [+nasal]"))) |
-                           Wanted("@a label"));
-const auto delete__def = Word(U"delete")[Let(&syntax::Change::kind, syntax::Change::Kind::kDelete)] >
-                         ((path_ahead >> raw[path][NotYet("'delete' of a node")]) |
-                          (label[To(&syntax::Change::label)] >> -raw[Word(U"wholly")][kNotYetWord]) |
-                          Wanted("@a label"));
+
+const auto kWholeItem = [](auto& context) {
+  syntax::Path whole;
+  whole.label = std::move(x3::_attr(context));
+  whole.span = whole.label.span;
+  x3::_val(context).paths.push_back(std::move(whole));
+};
+// An equal node of its own, X.N as Y.N, or a whole equal item, X as Y.
+auto As(syntax::Change::Kind kind) {
+  const auto as = Word(U"as")[IsChange(kind)];
+  return (path_ahead >> a_path > as > a_path) |
+         (&(label >> Word(U"as")) >> label[kWholeItem] >> as > (label_alone[kWholeItem] | Wanted("@a label")));
+}
 const auto kContentSet = [](auto& context) {
   x3::_val(context).content.kind = syntax::Set::Kind::kBundle;
   x3::_val(context).content.bundle = std::move(x3::_attr(context));
@@ -1084,75 +1148,112 @@ const auto kContentLiteral = [](auto& context) {
   x3::_val(context).content.literal = std::move(x3::_attr(context));
   x3::_val(context).content.span = x3::_val(context).content.literal.span;
 };
+const auto kSetLiteral = [](auto& context) {
+  x3::_val(context).kind = syntax::Change::Kind::kSetLiteral;
+  kContentLiteral(context);
+};
+const auto a_bundle = bundle[To(&syntax::Change::bundle)];
+const auto set_fill_def =
+    (Word(U"set")[IsChange(syntax::Change::Kind::kSet)] >
+     (As(syntax::Change::Kind::kSetAs) |
+      (label[kChangeLabel] > (a_bundle | literal[kSetLiteral] | Wanted("a bundle, a literal or 'as'"))) |
+      Wanted("@a label"))) |
+    (Word(U"fill")[IsChange(syntax::Change::Kind::kFill)] >
+     (As(syntax::Change::Kind::kFillAs) | (label[kChangeLabel] > (a_bundle | Wanted("a bundle or 'as'"))) |
+      Wanted("@a label")));
+const auto delete__def = Word(U"delete")[IsChange(syntax::Change::Kind::kDelete)] >
+                         ((path_ahead >> raw[path][NotYet("'delete' of a node")]) |
+                          (label[kChangeLabel] > -raw[Word(U"wholly")][kNotYetWord]) | Wanted("@a label"));
 const auto floating_value = Sign(U"{") > -(Sign(U"+") | minus_sign) > name > -(Sign(U":") > name) > Sign(U"}");
-const auto insert_def = Word(U"insert")[Let(&syntax::Change::kind, syntax::Change::Kind::kInsert)] >
+const auto insert_def = Word(U"insert")[IsChange(syntax::Change::Kind::kInsert)] >
                         ((&(name >> Glued(Sign(U":"))) >> label[To(&syntax::Change::inserted)] >> Glued(Sign(U":")) >>
                           (literal[kContentLiteral] | bundle[kContentSet] |
                            raw[floating_value][NotYet("'insert' of a floating instance")] |
                            Wanted("a literal or a bundle"))) |
                          raw[bundle][NotYet("'insert' on a tier")] | Wanted("@a label and what it stands for, E:/i/")) >
                         (Word(U"before") | Word(U"after")[Let(&syntax::Change::before, false)] |
-                         Wanted("before or after")) > label[To(&syntax::Change::label)];
-const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole]);
+                         Wanted("before or after")) > label_alone[kChangeLabel];
+const auto lengthen_def = (Word(U"lengthen")[IsChange(syntax::Change::Kind::kLengthen)] |
+                           Word(U"shorten")[IsChange(syntax::Change::Kind::kShorten)]) > label_alone[kChangeLabel];
+const auto merge_def = Word(U"merge")[IsChange(syntax::Change::Kind::kMerge)] >
+                       ((path_ahead >> a_path > a_path) | raw[label > label][NotYet("'merge' on a tier")] |
+                        Wanted("@a path such as X.Place"));
+const auto change_def = Spanned(spread[kWhole] | delink[kWhole] | set_fill[kWhole] | delete_[kWhole] | insert[kWhole] |
+                                lengthen[kWhole] | merge[kWhole]);
 
-const auto later_change_def = (raw[Word(U"lengthen")][kNotYetWord] > label) |
-                              (raw[Word(U"shorten")][kNotYetWord] > label) |
-                              (raw[Word(U"merge")][kNotYetWord] >
-                               ((path_ahead >> path > path) | (label > label) | Wanted("@a label or a path"))) |
-                              (raw[Word(U"swap")][kNotYetWord] > label > label) |
+const auto later_change_def = (raw[Word(U"swap")][kNotYetWord] > label > label) |
                               (raw[Word(U"link")][kNotYetWord] > label > Word(U"to") > label) |
                               (raw[Word(U"copy")][kNotYetWord] > pattern >
                                (Word(U"before") | Word(U"after") | Wanted("before or after")) > label);
 
-const auto mode_def =
-    Spanned(Word(U"iterate") >
-            (Word(U"rightward")[Let(&ModeAt::mode, syntax::Rule::Mode::kRightward)] |
-             Word(U"leftward")[Let(&ModeAt::mode, syntax::Rule::Mode::kLeftward)] | Wanted("rightward or leftward")));
+// What is said of the rule as a whole, each once.
+const auto kOnce = [](auto& context) {
+  Scene& scene = SceneOf(context);
+  const Iterator begin = x3::_attr(context).begin(), end = x3::_attr(context).end();
+  const std::string word = FirstWord(begin, end);
+  if (!scene.said.insert(word).second)
+    throw Refusal{scene.Between(begin, end), "'" + word + "' stands twice in this rule", "keep one of them"};
+};
+const auto kProbability = [](auto& context) {
+  const double probability = *x3::_val(context).probability;
+  if (probability > 0 && probability <= 1) return;
+  throw Refusal{SceneOf(context).Between(x3::_attr(context).begin(), x3::_attr(context).end()),
+                "a rule applies with a probability above 0 and at most 1",
+                "write the share of the cases in which it applies: optional 0.3"};
+};
+auto Within(syntax::Domain domain) { return Let(&syntax::Rule::within, domain); }
+const auto modifier =
+    raw[(Word(U"iterate") > (Word(U"rightward")[Let(&syntax::Rule::mode, syntax::Rule::Mode::kRightward)] |
+                             Word(U"leftward")[Let(&syntax::Rule::mode, syntax::Rule::Mode::kLeftward)] |
+                             Wanted("rightward or leftward"))) |
+        (Word(U"within") >
+         (Word(U"morpheme")[Within(syntax::Domain::kMorpheme)] | Word(U"stem")[Within(syntax::Domain::kStem)] |
+          Word(U"host")[Within(syntax::Domain::kHost)] | Word(U"word")[Within(syntax::Domain::kWord)] |
+          Word(U"phrase")[Within(syntax::Domain::kPhrase)] |
+          raw[Word(U"syllable") | Word(U"foot")][NotYet("'within' of a syllable or foot")] | Wanted(kDomains))) |
+        (Word(U"sharing") >
+         (Word(U"blocked")[Let(&syntax::Rule::sharing, syntax::Rule::Sharing::kBlocked)] |
+          Word(U"free")[Let(&syntax::Rule::sharing, syntax::Rule::Sharing::kFree)] | Wanted("blocked or free"))) |
+        (Word(U"prefer") >
+         (Word(U"left")[Let(&syntax::Rule::prefer, syntax::Rule::Prefer::kLeft)] |
+          Word(U"right")[Let(&syntax::Rule::prefer, syntax::Rule::Prefer::kRight)] | Wanted("left or right"))) |
+        (Word(U"optional") > raw[DecimalToken{}[To(&syntax::Rule::probability)]][kProbability] >
+         -(Word(U"by")[Let(&syntax::Rule::by_word, true)] > Word(U"word"))) |
+        Word(U"preserving")[Let(&syntax::Rule::preserving, true)]][kOnce];
 const auto tier_or_level =
     name | Word(U"syllable") | Word(U"foot") | Word(U"mora") | Wanted("@a node, syllable or foot");
-const auto later_modifier_def =
-    (raw[Word(U"on") > tier_or_level][kNotYetWord] >> -(Word(U"over") > set)) |
-    (Word(U"within") > (Word(U"word") | raw[a_domain][NotYet("'within' of a domain other than the word")])) |
-    raw[Word(U"repeat") > number][kNotYetWord] | raw[Word(U"preserving")][kNotYetWord] |
-    raw[Word(U"cutting")][kNotYetWord] | raw[Word(U"derived")][kNotYetWord] |
-    raw[Word(U"sharing") > (Word(U"blocked") | Word(U"free") | Wanted("blocked or free"))][kNotYetWord] |
-    raw[Word(U"prefer") > (Word(U"left") | Word(U"right") | Wanted("left or right"))][kNotYetWord] |
-    raw[Word(U"optional") > number >> -Glued(Sign(U".") >> number) >> -(Word(U"by") > Word(U"word"))][kNotYetWord] |
-    raw[(Word(U"only") | Word(U"except")) >
-        ((Word(U"word") > name) | (name >> -(Word(U"in") > name)) | Wanted("@a tag"))][kNotYetWord];
+const auto later_modifier_def = (raw[Word(U"on") > tier_or_level][kNotYetWord] >> -(Word(U"over") > set)) |
+                                raw[Word(U"repeat") > number][kNotYetWord] | raw[Word(U"cutting")][kNotYetWord] |
+                                raw[Word(U"derived")][kNotYetWord];
 
-const auto kSetMode = [](auto& context) {
-  syntax::Rule& rule = x3::_val(context);
-  if (rule.mode != syntax::Rule::Mode::kAtOnce)
-    throw Refusal{x3::_attr(context).span, "'iterate' stands twice in this rule", "keep one of them"};
-  rule.mode = x3::_attr(context).mode;
-};
-const auto kTakeClause = [](auto& context) {
-  syntax::Rule& rule = x3::_val(context);
-  const syntax::Rule::Mode before = rule.mode;
-  rule = std::move(x3::_attr(context));
-  if (before != syntax::Rule::Mode::kAtOnce) rule.mode = before;
-};
+// The clause being read: the rule's own, or the last one behind an `otherwise`.
+syntax::Clause& Current(syntax::Rule& rule) { return rule.otherwise.empty() ? rule : rule.otherwise.back(); }
+template <class M>
+auto PushIn(M member) {
+  return [member](auto& context) { (Current(x3::_val(context)).*member).push_back(std::move(x3::_attr(context))); };
+}
+const auto kWhere = [](auto& context) { Current(x3::_val(context)).where = std::move(x3::_attr(context)); };
+const auto kOtherwise = [](auto& context) { x3::_val(context).otherwise.emplace_back(); };
 const auto kCountChange = [](auto& context) { ++SceneOf(context).later_changes; };
 const auto kHasChange = [](auto& context) {
   int& later_changes = SceneOf(context).later_changes;
-  x3::_pass(context) = !x3::_val(context).changes.empty() || later_changes > 0;
+  x3::_pass(context) = !Current(x3::_val(context)).changes.empty() || later_changes > 0;
   later_changes = 0;
 };
-const auto clause_def = Word(U"where") > pattern[To(&syntax::Rule::where)] >
-                        *(change[Push(&syntax::Rule::changes)] | later_change[kCountChange] |
-                          (raw[Word(U"if")][kNotYetWord] > later_test) |
-                          (Word(U"unless") > ((path_ahead >> raw[later_test][NotYet("'unless' with a test")]) |
-                                              pattern[Push(&syntax::Rule::unless)])) |
-                          mode[kSetMode] | later_modifier) >
-                        (x3::eps[kHasChange] |
-                         Wanted("@an item or a change: spread, delink, set, fill, insert or delete"));
-const auto body_def = *(mode[kSetMode] | later_modifier) >> (clause[kTakeClause] | Wanted("'where'")) >
-                      *(raw[Word(U"otherwise")][kNotYetWord] > clause) >
-                      End("@an item, a condition, a change or a modifier");
+const auto clause =
+    Word(U"where") > pattern[kWhere] >
+    *(change[PushIn(&syntax::Clause::changes)] | later_change[kCountChange] |
+      (Word(U"if") > test[PushIn(&syntax::Clause::conditions)]) |
+      (Word(U"unless") >
+       ((path_ahead >> test[PushIn(&syntax::Clause::unless_conditions)]) | pattern[PushIn(&syntax::Clause::unless)])) |
+      tag_test[PushIn(&syntax::Clause::tags)] | modifier | later_modifier) >
+    (x3::eps[kHasChange] | (&Word(U"otherwise") >> Wanted("a change before 'otherwise'")) |
+     Wanted("@an item or a change: spread, delink, set, fill, insert, delete, lengthen, shorten or merge"));
+const auto body_def = *(modifier | later_modifier) >> (clause | Wanted("'where'")) >
+                      *(Word(U"otherwise")[kOtherwise] > clause) > End("@an item, a condition, a change or a modifier");
 
-BOOST_SPIRIT_DEFINE(path, later_test, change, later_change, later_modifier, mode, clause, body, spread, delink,
-                    set_fill, delete_, insert)
+BOOST_SPIRIT_DEFINE(path, test, tag_test, change, later_change, later_modifier, body, spread, delink, set_fill, delete_,
+                    insert, lengthen, merge)
 
 // ---- declarations ---------------------------------------------------------------------------------
 
@@ -1176,6 +1277,10 @@ const x3::rule<struct OmitEntryRule, syntax::Omit> omit_entry("@a feature");
 const x3::rule<struct ClassRule, syntax::Class> class_("@a name");
 const x3::rule<struct NamedPatternRule, syntax::NamedPattern> named_pattern("@a name");
 const x3::rule<struct LanguageRule, syntax::Language> language("the language's name in double quotes");
+const x3::rule<struct IncludeRule, syntax::Include> include("the name of a file in double quotes");
+const x3::rule<struct SharingRule, syntax::Sharing> sharing("blocked or free");
+const x3::rule<struct FuseRule, syntax::Fuse> fuse("@the name of a node");
+const x3::rule<struct WordAloneRule> word_alone("nothing more");
 const x3::rule<struct RuleHeadRule, syntax::Rule> rule_head("the rule's name in double quotes");
 const x3::rule<struct TreeHeadRule> tree_head("tree");
 const x3::rule<struct EmptyHeadRule> empty_head("'{'");
@@ -1255,12 +1360,19 @@ const auto named_pattern_def = name[To(&syntax::NamedPattern::name)] >
                                End("@an item or the end of the pattern");
 const auto language_def = StringToken("the language's name in double quotes")[To(&syntax::Language::name)] >
                           End("nothing more");
+const auto include_def = StringToken("the name of a file in double quotes")[To(&syntax::Include::path)] >
+                         End("nothing more");
+const auto sharing_def = (Word(U"blocked") | Word(U"free")[Let(&syntax::Sharing::blocked, false)] |
+                          Wanted("blocked or free")) > End("nothing more");
+const auto fuse_def = node[To(&syntax::Fuse::node)] > Word(U"within") > Word(U"morpheme") >
+                      -(Word(U"in") > pattern[To(&syntax::Fuse::in)]) > End("@an item or the end of the line");
+const auto word_alone_def = x3::eps > End("nothing more");
 const auto rule_head_def = StringToken("the rule's name in double quotes")[To(&syntax::Rule::name)] > End("'{'");
 const auto empty_head_def = x3::eps > End("'{'");
 
 BOOST_SPIRIT_DEFINE(daughter, tree_line, tree_entry, tree_head, value_ref, listed_name, segment, without, omit_value,
                     diacritic, segments_head, segments_entry, diacritics_entry, omit_entry, class_, named_pattern,
-                    language, rule_head, empty_head)
+                    language, include, sharing, fuse, word_alone, rule_head, empty_head)
 
 // ---- words ----------------------------------------------------------------------------------------
 
@@ -1453,11 +1565,11 @@ class Reader {
                          "put it in double quotes: \"" + bare + "\"");
       return;
     }
-    if (!bare.empty() && MatchText(end, last, U".") && end != last && notation::IsNameStart(*end))
-      remedy = "a path such as X.Place follows spread or delink: is the word before it one of these?";
-    end = Iterator(where);
-    while (end.base() != text_.data() + span.end) ++end;
     const std::string found = where == last ? "the end" : "'" + Bytes(where, end) + "'";
+    if (!bare.empty() && MatchText(end, last, U".") && end != last && notation::IsNameStart(*end))
+      remedy = wanted == "a label"
+                   ? "this speaks of the whole item: write its label alone"
+                   : "a path such as X.Place follows spread or delink: is the word before it one of these?";
     diagnostics_.Error(Kind::kSyntax, span, "expected " + wanted + ", found " + found, remedy);
   }
 
@@ -1486,6 +1598,10 @@ class Reader {
     switch (section.kind) {
       case outline::SectionKind::kLanguage:
         return ReadLine(section, language, syntax::Language(), "write: language \"Velmari\"");
+      case outline::SectionKind::kInclude:
+        return ReadInclude(section);
+      case outline::SectionKind::kStrict:
+        return ReadWord<syntax::Strict>(section);
       case outline::SectionKind::kTree:
         return ReadTree(section);
       case outline::SectionKind::kSegments:
@@ -1502,8 +1618,14 @@ class Reader {
         return ReadLine(section, class_, syntax::Class(), "write: class V = [+syll]");
       case outline::SectionKind::kPattern:
         return ReadLine(section, named_pattern, syntax::NamedPattern(), "write: pattern Coda = [-syll] #");
+      case outline::SectionKind::kFuse:
+        return ReadLine(section, fuse, syntax::Fuse(), "write: fuse Place within morpheme");
+      case outline::SectionKind::kSharing:
+        return ReadLine(section, sharing, syntax::Sharing(), "write: sharing blocked");
       case outline::SectionKind::kRule:
         return ReadRule(section);
+      case outline::SectionKind::kComplete:
+        return ReadWord<syntax::Complete>(section);
       case outline::SectionKind::kLexicon:
         return ReadLexicon(section);
       case outline::SectionKind::kParadigm:
@@ -1533,6 +1655,26 @@ class Reader {
     if (!whole && result_.unsupported.size() == before) return;
     built.span = section.whole;
     result_.tops.push_back(std::move(built));
+  }
+
+  // A declaration that is one word.
+  template <class Built>
+  void ReadWord(const outline::Section& section) {
+    x3::unused_type nothing;
+    const std::string remedy = "'" + section.word + "' stands alone; what follows begins a line of its own";
+    if (Run(section.head, word_alone, nothing, remedy.c_str())) result_.tops.push_back(Built{section.whole});
+  }
+
+  // Names of the other file stand before those of this one.
+  void ReadInclude(const outline::Section& section) {
+    const auto may_precede = [](const syntax::Top& top) {
+      return std::holds_alternative<syntax::Language>(top) || std::holds_alternative<syntax::Include>(top) ||
+             std::holds_alternative<syntax::Strict>(top);
+    };
+    if (!std::all_of(result_.tops.begin(), result_.tops.end(), may_precede))
+      diagnostics_.Error(Kind::kSyntax, section.keyword, "'include' stands at the top of a file",
+                         "move it up, before the first section other than 'language'");
+    ReadLine(section, include, syntax::Include(), "write: include \"base.tier\"");
   }
 
   template <class Rule, class Built>

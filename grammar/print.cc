@@ -1,6 +1,7 @@
 // The syntax tree in the notation again: the dump of this stage. [+nasal -cont] prints as `[+nasal -cont]`.
 // What a later release brings prints as a comment. Tested by tests/unit/grammar/print_test.cc (round trips).
-#include <algorithm>
+#include <array>
+#include <charconv>
 #include <sstream>
 
 #include "grammar/parse.h"
@@ -33,22 +34,66 @@ std::string PrintForm(const syntax::FormText& form) {
   return form.spelled ? "⟨" + form.raw + "⟩" : "/" + form.raw + "/";
 }
 
+std::string PrintSide(syntax::Feat::Side side) {
+  switch (side) {
+    case syntax::Feat::Side::kEither:
+      return {};
+    case syntax::Feat::Side::kLeftward:
+      return " leftward";
+    case syntax::Feat::Side::kRightward:
+      return " rightward";
+  }
+  return {};
+}
+
+std::string PrintEdge(syntax::Feat::Edge edge) {
+  switch (edge) {
+    case syntax::Feat::Edge::kUnsaid:
+      return {};
+    case syntax::Feat::Edge::kBegins:
+      return "begins ";
+    case syntax::Feat::Edge::kEnds:
+      return "ends ";
+  }
+  return {};
+}
+
+std::string PrintValue(const syntax::Feat& feat) {
+  if (feat.values.size() == 1) return ":" + PrintName(feat.values.front());
+  return ":(" + Joined(feat.values, " ", PrintName) + ")";
+}
+
 std::string PrintFeat(const syntax::Feat& feat) {
-  const std::string name = PrintName(feat.name);
+  const std::string name = PrintName(feat.name), edge = PrintEdge(feat.edge);
   switch (feat.kind) {
     case syntax::Feat::Kind::kPlus:
-      return "+" + name;
+      return edge + "+" + name;
     case syntax::Feat::Kind::kMinus:
-      return "-" + name;
+      return edge + "-" + name;
     case syntax::Feat::Kind::kBears:
-      return name;
+      return edge + name;
     case syntax::Feat::Kind::kNo:
       return "no " + name;
     case syntax::Feat::Kind::kValue:
-      break;
+      return edge + name + PrintValue(feat);
+    case syntax::Feat::Kind::kAgrees:
+      return feat.variable.text + name;
+    case syntax::Feat::Kind::kDiffers:
+      return "-" + feat.variable.text + name;
+    case syntax::Feat::Kind::kShared:
+      return "shared " + name + PrintSide(feat.side);
+    case syntax::Feat::Kind::kUnshared:
+      return "unshared " + name + PrintSide(feat.side);
+    case syntax::Feat::Kind::kLong:
+      return "long";
+    case syntax::Feat::Kind::kShort:
+      return "short";
+    case syntax::Feat::Kind::kHalfFirst:
+      return "half first";
+    case syntax::Feat::Kind::kHalfSecond:
+      return "half second";
   }
-  if (feat.values.size() == 1) return name + ":" + PrintName(feat.values.front());
-  return name + ":(" + Joined(feat.values, " ", PrintName) + ")";
+  return {};
 }
 
 std::string PrintBundle(const syntax::Bundle& bundle) { return "[" + Joined(bundle.feats, " ", PrintFeat) + "]"; }
@@ -107,28 +152,17 @@ std::string PrintGroup(const Item& item) {
   return "{" + inside + "}" + PrintQuantity(item, 1);
 }
 
+std::string PrintLabel(const Item& item) { return item.label ? PrintName(*item.label) + ":" : std::string(); }
+
 std::string PrintItemSet(const Item& item) {
-  const std::string label = item.label ? PrintName(*item.label) + ":" : "";
   const std::string quantity = PrintQuantity(item, 1);
   const bool braces = IsOperator(item.set) ? !quantity.empty() : !item.label && item.set.kind == Set::Kind::kClass;
   const std::string set = PrintSet(item.set);
-  return label + (braces ? "{" + set + "}" : set) + quantity;
+  return PrintLabel(item) + (braces ? "{" + set + "}" : set) + quantity;
 }
 
-std::string PrintItem(const Item& item) {
-  switch (item.kind) {
-    case Item::Kind::kSet:
-      return PrintItemSet(item);
-    case Item::Kind::kName:
-      return PrintName(item.name) + PrintQuantity(item, 1);
-    case Item::Kind::kBoundary:
-      break;
-    case Item::Kind::kGap:
-      return "..." + (item.tier ? PrintName(*item.tier) : std::string());
-    case Item::Kind::kGroup:
-      return PrintGroup(item);
-  }
-  switch (item.boundary) {
+std::string PrintBoundary(Item::Boundary boundary) {
+  switch (boundary) {
     case Item::Boundary::kMorpheme:
       return "-";
     case Item::Boundary::kClitic:
@@ -141,9 +175,78 @@ std::string PrintItem(const Item& item) {
   return {};
 }
 
+std::string PrintItem(const Item& item) {
+  switch (item.kind) {
+    case Item::Kind::kSet:
+      return PrintItemSet(item);
+    case Item::Kind::kName:
+      return PrintName(item.name) + PrintQuantity(item, 1);
+    case Item::Kind::kBoundary:
+      return PrintLabel(item) + PrintBoundary(item.boundary);
+    case Item::Kind::kGap:
+      return "..." + (item.tier ? PrintName(*item.tier) : std::string());
+    case Item::Kind::kGroup:
+      return PrintGroup(item);
+    case Item::Kind::kSameMorpheme:
+      return "&";
+  }
+  return {};
+}
+
 std::string PrintPattern(const syntax::Pattern& pattern) { return Joined(pattern.items, " ", PrintItem); }
 
-std::string PrintPath(const syntax::Path& path) { return PrintName(path.label) + "." + PrintName(path.node); }
+std::string PrintPath(const syntax::Path& path) {
+  const std::string item = PrintName(path.label), node = PrintName(path.node);
+  if (path.node.text.empty()) return item;  // `set X as Y`
+  switch (path.member) {
+    case syntax::Path::Member::kFacing:
+      return item + "." + node;
+    case syntax::Path::Member::kPlus:
+      return item + ".+" + node;
+    case syntax::Path::Member::kMinus:
+      return item + ".-" + node;
+    case syntax::Path::Member::kValue:
+      return item + "." + node + ":" + PrintName(path.value);
+    case syntax::Path::Member::kFirst:
+      return item + "." + node + " first";
+    case syntax::Path::Member::kLast:
+      return item + "." + node + " last";
+  }
+  return {};
+}
+
+std::string PrintCondition(const syntax::Condition& condition) {
+  const auto sign = [&] {
+    switch (condition.test) {
+      case syntax::Condition::Test::kEqual:
+        return " = ";
+      case syntax::Condition::Test::kUnequal:
+        return " ≠ ";
+      case syntax::Condition::Test::kIs:
+        return " is ";
+      case syntax::Condition::Test::kIsNot:
+        return " is not ";
+    }
+    return "";
+  };
+  return PrintPath(condition.left) + sign() + PrintPath(condition.right);
+}
+
+std::string PrintTagTest(const syntax::TagTest& test) {
+  const auto scope = [&]() -> std::string {
+    switch (test.scope) {
+      case syntax::TagTest::Scope::kChanged:
+        return {};
+      case syntax::TagTest::Scope::kLabel:
+        return PrintName(test.label) + " in ";
+      case syntax::TagTest::Scope::kWord:
+        return "word ";
+    }
+    return {};
+  };
+  // `stem` is a tag like any other, though a word of the notation elsewhere.
+  return (test.only ? "only " : "except ") + scope() + (test.tag.text == "stem" ? "stem" : PrintName(test.tag));
+}
 
 std::string PrintChange(const syntax::Change& change) {
   const std::string label = PrintName(change.label);
@@ -156,13 +259,52 @@ std::string PrintChange(const syntax::Change& change) {
       return "set " + label + " " + PrintBundle(change.bundle);
     case syntax::Change::Kind::kFill:
       return "fill " + label + " " + PrintBundle(change.bundle);
+    case syntax::Change::Kind::kSetLiteral:
+      return "set " + label + " " + PrintSet(change.content);
+    case syntax::Change::Kind::kSetAs:
+      return "set " + Joined(change.paths, " as ", PrintPath);
+    case syntax::Change::Kind::kFillAs:
+      return "fill " + Joined(change.paths, " as ", PrintPath);
     case syntax::Change::Kind::kDelete:
       return "delete " + label;
     case syntax::Change::Kind::kInsert:
-      break;
+      return "insert " + PrintName(change.inserted) + ":" + PrintSet(change.content) +
+             (change.before ? " before " : " after ") + label;
+    case syntax::Change::Kind::kLengthen:
+      return "lengthen " + label;
+    case syntax::Change::Kind::kShorten:
+      return "shorten " + label;
+    case syntax::Change::Kind::kMerge:
+      return "merge " + Joined(change.paths, " ", PrintPath);
   }
-  return "insert " + PrintName(change.inserted) + ":" + PrintSet(change.content) +
-         (change.before ? " before " : " after ") + label;
+  return {};
+}
+
+std::string Line(const std::string& text) { return text.empty() ? text : "  " + text + "\n"; }
+
+std::string PrintClause(const char* where, const syntax::Clause& clause) {
+  const auto each = [](const char* word, const auto& list, const auto& print) {
+    return Joined(list, "", [&](const auto& one) { return Line(word + print(one)); });
+  };
+  return Line(where + PrintPattern(clause.where)) + each("if ", clause.conditions, PrintCondition) +
+         each("unless ", clause.unless, PrintPattern) + each("unless ", clause.unless_conditions, PrintCondition) +
+         each("", clause.tags, PrintTagTest) + each("", clause.changes, PrintChange);
+}
+
+std::string PrintDomain(syntax::Domain domain) {
+  switch (domain) {
+    case syntax::Domain::kMorpheme:
+      return "within morpheme";
+    case syntax::Domain::kStem:
+      return "within stem";
+    case syntax::Domain::kHost:
+      return "within host";
+    case syntax::Domain::kWord:
+      return {};
+    case syntax::Domain::kPhrase:
+      return "within phrase";
+  }
+  return {};
 }
 
 std::string PrintMode(syntax::Rule::Mode mode) {
@@ -170,11 +312,54 @@ std::string PrintMode(syntax::Rule::Mode mode) {
     case syntax::Rule::Mode::kAtOnce:
       return {};
     case syntax::Rule::Mode::kRightward:
-      return "  iterate rightward\n";
+      return "iterate rightward";
     case syntax::Rule::Mode::kLeftward:
-      return "  iterate leftward\n";
+      return "iterate leftward";
   }
   return {};
+}
+
+std::string PrintPrefer(syntax::Rule::Prefer prefer) {
+  switch (prefer) {
+    case syntax::Rule::Prefer::kNone:
+      return {};
+    case syntax::Rule::Prefer::kLeft:
+      return "prefer left";
+    case syntax::Rule::Prefer::kRight:
+      return "prefer right";
+  }
+  return {};
+}
+
+std::string PrintSharing(syntax::Rule::Sharing sharing) {
+  switch (sharing) {
+    case syntax::Rule::Sharing::kUnsaid:
+      return {};
+    case syntax::Rule::Sharing::kFree:
+      return "sharing free";
+    case syntax::Rule::Sharing::kBlocked:
+      return "sharing blocked";
+  }
+  return {};
+}
+
+// The shortest decimal fraction that reads as this number.
+std::string PrintOptional(const syntax::Rule& rule) {
+  if (!rule.probability) return {};
+  std::array<char, 400> digits{};
+  const auto end =
+      std::to_chars(digits.data(), digits.data() + digits.size(), *rule.probability, std::chars_format::fixed);
+  return "optional " + std::string(digits.data(), end.ptr) + (rule.by_word ? " by word" : "");
+}
+
+std::string PrintRule(const syntax::Rule& rule) {
+  std::string out =
+      "rule " + Quoted(rule.name.text) + " {\n" + Line(PrintDomain(rule.within)) + PrintClause("where ", rule);
+  for (const syntax::Clause& clause : rule.otherwise) out += PrintClause("otherwise where ", clause);
+  for (const std::string& said : {PrintMode(rule.mode), PrintPrefer(rule.prefer), PrintSharing(rule.sharing),
+                                  std::string(rule.preserving ? "preserving" : ""), PrintOptional(rule)})
+    out += Line(said);
+  return out + "}\n";
 }
 
 std::string PrintDaughter(const syntax::Daughter& daughter) {
@@ -361,12 +546,7 @@ struct TopPrinter {
   std::string operator()(const syntax::NamedPattern& top) const {
     return "pattern " + PrintName(top.name) + " = " + PrintPattern(top.pattern) + "\n";
   }
-  std::string operator()(const syntax::Rule& top) const {
-    std::string out = "rule " + Quoted(top.name.text) + " {\n  where " + PrintPattern(top.where) + "\n";
-    for (const auto& pattern : top.unless) out += "  unless " + PrintPattern(pattern) + "\n";
-    for (const auto& change : top.changes) out += "  " + PrintChange(change) + "\n";
-    return out + PrintMode(top.mode) + "}\n";
-  }
+  std::string operator()(const syntax::Rule& top) const { return PrintRule(top); }
   std::string operator()(const syntax::Lexicon& top) const { return Block("lexicon", top.entries, PrintLexiconEntry); }
   std::string operator()(const syntax::LexiconFrom& top) const {
     return "lexicon from " + Quoted(top.path.text) + "\n";

@@ -36,6 +36,7 @@ class Maker {
 
   syntax::File File() {
     syntax::File file;
+    if (Chance(10)) file.tops.push_back(syntax::Include{{"base.tier", {}}, {}});  // at the top only
     const int tops = 1 + Below(4);
     for (int i = 0; i < tops; ++i) file.tops.push_back(Top());
     return file;
@@ -60,8 +61,8 @@ class Maker {
 
   syntax::Name Name() {
     static const std::vector<std::string> names = {
-        "V", "Place", "back", "N1", "Tóne", "stem",   "where", "long", "x2",  "C_0", "a b",   "αx", "low_",
-        "",  "one",   "on",   "ŋã", "V1α",  "\u00A0", "first", "-",    "a.b", "x",   "empty", "a{", "leftward"};
+        "V",  "Place", "back", "N1", "Tóne", "stem",   "where", "long", "x2",  "C_0", "a b",   "αx", "low_",
+        "by", "one",   "on",   "ŋã", "V1α",  "\u00A0", "first", "-",    "a.b", "x",   "empty", "a{", "leftward"};
     return {names[static_cast<std::size_t>(Below(static_cast<int>(names.size())))], {}};
   }
   syntax::Name Symbol() {
@@ -74,10 +75,16 @@ class Maker {
     return {forms[static_cast<std::size_t>(Below(static_cast<int>(forms.size())))], false, {}};
   }
   syntax::Feat Feat() {
+    using Kind = syntax::Feat::Kind;
     syntax::Feat feat;
-    feat.kind = static_cast<syntax::Feat::Kind>(Below(5));
-    feat.name = Name();
-    if (feat.kind == syntax::Feat::Kind::kValue) feat.values = Several(1, 3, [&] { return Name(); });
+    feat.kind = static_cast<Kind>(Below(13));
+    if (feat.kind < Kind::kLong) feat.name = Name();
+    if (feat.kind == Kind::kValue) feat.values = Several(1, 3, [&] { return Name(); });
+    if (feat.kind == Kind::kAgrees || feat.kind == Kind::kDiffers)
+      feat.variable.text = std::vector<std::string>{"α", "β", "γ", "δ"}[static_cast<std::size_t>(Below(4))];
+    if (feat.kind == Kind::kShared || feat.kind == Kind::kUnshared)
+      feat.side = static_cast<syntax::Feat::Side>(Below(3));
+    if (feat.kind < Kind::kNo || feat.kind == Kind::kValue) feat.edge = static_cast<syntax::Feat::Edge>(Below(3));
     return feat;
   }
   syntax::Bundle Bundle() {
@@ -137,6 +144,7 @@ class Maker {
         break;
       case syntax::Item::Kind::kBoundary:
         item.boundary = static_cast<syntax::Item::Boundary>(Below(4));
+        item.label = Perhaps([&] { return Name(); });
         break;
       case syntax::Item::Kind::kGap:
         item.tier = Perhaps([&] { return Name(); });
@@ -158,27 +166,93 @@ class Maker {
         }
         break;
       }
+      case syntax::Item::Kind::kSameMorpheme:  // stands between items
+        break;
     }
     return item;
   }
   syntax::Pattern Pattern(int depth) {
-    return {Several(1, 4, [&] { return Item(depth); }), {}};
+    syntax::Pattern pattern;
+    const int items = 1 + Below(4);
+    for (int i = 0; i < items; ++i) {
+      if (i > 0 && Chance(20)) {
+        pattern.items.emplace_back();
+        pattern.items.back().kind = syntax::Item::Kind::kSameMorpheme;
+      }
+      pattern.items.push_back(Item(depth));
+    }
+    return pattern;
   }
-  syntax::Path Path() { return {Name(), Name(), {}}; }
+  syntax::Path Path() {
+    syntax::Path path;
+    path.label = Name();
+    path.node = Name();
+    path.member = static_cast<syntax::Path::Member>(Below(6));
+    if (path.member == syntax::Path::Member::kValue) path.value = Name();
+    return path;
+  }
+  syntax::Path WholeItem() {
+    syntax::Path path;
+    path.label = Name();
+    return path;
+  }
+  syntax::Condition Condition() { return {Path(), static_cast<syntax::Condition::Test>(Below(4)), Path(), {}}; }
+  syntax::TagTest TagTest() {
+    syntax::TagTest test;
+    test.only = Chance(50);
+    test.scope = static_cast<syntax::TagTest::Scope>(Below(3));
+    if (test.scope == syntax::TagTest::Scope::kLabel) test.label = Name();
+    test.tag = Name();
+    return test;
+  }
+  void Literal(syntax::Set* content) {
+    content->kind = syntax::Set::Kind::kLiteral;
+    content->literal = Form();
+  }
   syntax::Change Change() {
     syntax::Change change;
-    change.kind = static_cast<syntax::Change::Kind>(Below(6));
-    const bool paths = change.kind == syntax::Change::Kind::kSpread || change.kind == syntax::Change::Kind::kDelink;
-    if (paths) change.paths = Several(1, 3, [&] { return Path(); });
-    if (change.kind != syntax::Change::Kind::kDelink) change.label = Name();
-    if (change.kind == syntax::Change::Kind::kSet || change.kind == syntax::Change::Kind::kFill)
-      change.bundle = Bundle();
-    if (change.kind == syntax::Change::Kind::kInsert) {
-      change.inserted = Name();
-      change.content.kind = Chance(50) ? syntax::Set::Kind::kBundle : syntax::Set::Kind::kLiteral;
-      if (change.content.kind == syntax::Set::Kind::kBundle) change.content.bundle = Bundle();
-      if (change.content.kind == syntax::Set::Kind::kLiteral) change.content.literal = Form();
-      change.before = Chance(50);
+    change.kind = static_cast<syntax::Change::Kind>(Below(12));
+    switch (change.kind) {
+      case syntax::Change::Kind::kSpread:
+        change.paths = Several(1, 3, [&] { return Path(); });
+        change.label = Name();
+        break;
+      case syntax::Change::Kind::kDelink:
+        change.paths = Several(1, 3, [&] { return Path(); });
+        break;
+      case syntax::Change::Kind::kSet:
+      case syntax::Change::Kind::kFill:
+        change.label = Name();
+        change.bundle = Bundle();
+        break;
+      case syntax::Change::Kind::kSetLiteral:
+        change.label = Name();
+        Literal(&change.content);
+        break;
+      case syntax::Change::Kind::kSetAs:
+      case syntax::Change::Kind::kFillAs: {
+        const bool whole = Chance(50);
+        change.paths = Several(2, 2, [&] { return whole ? WholeItem() : Path(); });
+        break;
+      }
+      case syntax::Change::Kind::kMerge:
+        change.paths = Several(2, 2, [&] { return Path(); });
+        break;
+      case syntax::Change::Kind::kDelete:
+      case syntax::Change::Kind::kLengthen:
+      case syntax::Change::Kind::kShorten:
+        change.label = Name();
+        break;
+      case syntax::Change::Kind::kInsert:
+        change.label = Name();
+        change.inserted = Name();
+        if (Chance(50)) {
+          change.content.bundle = Bundle();
+        } else {
+          Literal(&change.content);
+        }
+        change.before = Chance(50);
+        break;
     }
     return change;
   }
@@ -222,13 +296,30 @@ class Maker {
     segments.without = Several(0, 2, [&] { return Values(); });
     return segments;
   }
+  syntax::Clause Clause() {
+    syntax::Clause clause;
+    clause.where = Pattern(2);
+    clause.conditions = Several(0, 2, [&] { return Condition(); });
+    clause.unless = Several(0, 2, [&] { return Pattern(2); });
+    clause.unless_conditions = Several(0, 2, [&] { return Condition(); });
+    clause.tags = Several(0, 2, [&] { return TagTest(); });
+    clause.changes = Several(1, 3, [&] { return Change(); });
+    return clause;
+  }
   syntax::Rule Rule() {
     syntax::Rule rule;
+    static_cast<syntax::Clause&>(rule) = Clause();
     rule.name = {"spread -- it {", {}};
-    rule.where = Pattern(2);
-    rule.unless = Several(0, 2, [&] { return Pattern(2); });
-    rule.changes = Several(1, 3, [&] { return Change(); });
+    rule.otherwise = Several(0, 2, [&] { return Clause(); });
     rule.mode = static_cast<syntax::Rule::Mode>(Below(3));
+    rule.within = static_cast<syntax::Domain>(Below(5));
+    rule.prefer = static_cast<syntax::Rule::Prefer>(Below(3));
+    rule.sharing = static_cast<syntax::Rule::Sharing>(Below(3));
+    rule.preserving = Chance(30);
+    if (Chance(40)) {
+      rule.probability = (1 + Below(1000)) / 1000.0;
+      rule.by_word = Chance(50);
+    }
     return rule;
   }
   syntax::FormText Surface() { return {Chance(50) ? "" : "pul{H} 'lar", false, {}}; }
@@ -310,7 +401,7 @@ class Maker {
     return datum;
   }
   syntax::Top Top() {
-    switch (Below(15)) {
+    switch (Below(19)) {
       case 0:
         return syntax::Language{{"Velmari -- north", {}}, {}};
       case 1:
@@ -344,6 +435,14 @@ class Maker {
         return syntax::Spelling{Several(0, 4, [&] { return SpellingLine(); }), {}};
       case 13:
         return syntax::LengthDoubled{Perhaps([&] { return Set(2); }), {}};
+      case 14:
+        return syntax::Strict{};
+      case 15:
+        return syntax::Complete{};
+      case 16:
+        return syntax::Sharing{Chance(50), {}};
+      case 17:
+        return syntax::Fuse{Name(), Perhaps([&] { return Pattern(2); }), {}};
       default:
         return Rule();
     }
@@ -392,6 +491,30 @@ TEST_CASE("print: rows", "[unit]") {
        "}",
        "rule \"r\" {\n  where A:V\n  insert E:/i/ before A\n  insert D:[+syll] after A\n  delete A\n  set A "
        "[-a]\n  fill A [b]\n}\n"},
+      {"class V = [-αback, alpha Place βhigh −αlow]", "class V = [-αback αPlace βhigh -αlow]\n"},
+      {"class V = [shared Place unshared Place, shared root rightward]",
+       "class V = [shared Place unshared Place shared root rightward]\n"},
+      {"class V = [begins -cont, ends +cont ends Tone:H begins round]",
+       "class V = [begins -cont ends +cont ends Tone:H begins round]\n"},
+      {"class V = [long short half first, half second]", "class V = [long short half first half second]\n"},
+      {"pattern P = B:# X:-Y:[] A&B", "pattern P = B:# X:- Y:[] A & B\n"},
+      {"rule \"r\" { within phrase where A:V B:V if A.Place=B.Place if A.x != B.x unless A.Tone is not B.Tone:H "
+       "unless A.y is B.y last only loan except B in \"stem\" only word stem delete A }",
+       "rule \"r\" {\n  within phrase\n  where A:V B:V\n  if A.Place = B.Place\n  if A.x ≠ B.x\n  unless A.Tone is "
+       "not B.Tone:H\n  unless A.y is B.y last\n  only loan\n  except B in stem\n  only word stem\n  delete A\n}\n"},
+      {"rule \"r\" { optional 0.30 by word where A:V set A /k/ set A as B set A.N as B.N fill A as B fill A.N as B.N "
+       "lengthen A shorten B merge A.Place B.Place delink A.-cont, A.+cont, A.Tone first spread A.Tone:H, A.root to B}",
+       "rule \"r\" {\n  where A:V\n  set A /k/\n  set A as B\n  set A.N as B.N\n  fill A as B\n  fill A.N as B.N\n  "
+       "lengthen A\n  shorten B\n  merge A.Place B.Place\n  delink A.-cont, A.+cont, A.Tone first\n  spread A.Tone:H, "
+       "A.root to B\n  optional 0.3 by word\n}\n"},
+      {"rule \"r\" { where A:V # delete A prefer left otherwise where A:V if A.x = A.y delete A preserving otherwise "
+       "where A delete A only loan sharing free optional 1 }",
+       "rule \"r\" {\n  where A:V #\n  delete A\n  otherwise where A:V\n  if A.x = A.y\n  delete A\n  otherwise where "
+       "A\n  only loan\n  delete A\n  prefer left\n  sharing free\n  preserving\n  optional 1\n}\n"},
+      {"language \"V\" include \"base.tier\" strict complete sharing blocked sharing free",
+       "language \"V\"\ninclude \"base.tier\"\nstrict\ncomplete\nsharing blocked\nsharing free\n"},
+      {"fuse Place within morpheme in A:[-son] {/a/ | /b/}; fuse root within morpheme",
+       "fuse Place within morpheme in A:[-son] /a/ or /b/\nfuse root within morpheme\n"},
       {"data { /a -- b/ [c}] 'the dog''s' // []; /x/ [y] }",
        "data {\n  /a -- b/ [c}] 'the dog''s'\n  // []\n  /x/ [y]\n}\n"},
       {"data from \"forms.tsv\"", "data from \"forms.tsv\"\n"},

@@ -29,7 +29,10 @@ std::string Number(E e) {
   return std::to_string(static_cast<int>(e));
 }
 
-inline std::string Shape(const Feat& f) { return "(feat " + Number(f.kind) + Shape(f.name) + ShapeAll(f.values) + ")"; }
+inline std::string Shape(const Feat& f) {
+  return "(feat " + Number(f.kind) + Shape(f.name) + ShapeAll(f.values) + Shape(f.variable) + Number(f.edge) +
+         Number(f.side) + ")";
+}
 inline std::string Shape(const Bundle& b) { return "(bundle " + ShapeAll(b.feats) + ")"; }
 inline std::string Shape(const Set& s) {
   return "(set " + Number(s.kind) + Shape(s.bundle) + Shape(s.literal) + Shape(s.name) + ShapeAll(s.args) + ")";
@@ -39,10 +42,22 @@ inline std::string Shape(const Item& i) {
          ShapeMaybe(i.tier) + ShapeAll(i.alternatives) + std::to_string(i.min) + ".." + std::to_string(i.max) + ")";
 }
 inline std::string Shape(const Pattern& p) { return ShapeAll(p.items); }
-inline std::string Shape(const Path& p) { return "(path " + Shape(p.label) + Shape(p.node) + ")"; }
+inline std::string Shape(const Path& p) {
+  return "(path " + Shape(p.label) + Shape(p.node) + Number(p.member) + Shape(p.value) + ")";
+}
+inline std::string Shape(const Condition& c) {
+  return "(test " + Shape(c.left) + Number(c.test) + Shape(c.right) + ")";
+}
+inline std::string Shape(const TagTest& t) {
+  return "(tag " + Number(t.only) + Number(t.scope) + Shape(t.label) + Shape(t.tag) + ")";
+}
 inline std::string Shape(const Change& c) {
   return "(change " + Number(c.kind) + ShapeAll(c.paths) + Shape(c.label) + Shape(c.bundle) + Shape(c.inserted) +
          Shape(c.content) + Number(c.before) + ")";
+}
+inline std::string Shape(const Clause& c) {
+  return "(clause " + Shape(c.where) + ShapeAll(c.conditions) + ShapeAll(c.unless) + ShapeAll(c.unless_conditions) +
+         ShapeAll(c.tags) + ShapeAll(c.changes) + ")";
 }
 inline std::string Shape(const Daughter& d) {
   return "(daughter " + Number(d.kind) + Shape(d.name) + ShapeAll(d.values) + Number(d.max) + ShapeMaybe(d.room) +
@@ -92,7 +107,9 @@ struct ShapeTop {
   std::string operator()(const Class& t) const { return "(class " + Shape(t.name) + Shape(t.set) + ")"; }
   std::string operator()(const NamedPattern& t) const { return "(pattern " + Shape(t.name) + Shape(t.pattern) + ")"; }
   std::string operator()(const Rule& t) const {
-    return "(rule " + Shape(t.name) + Shape(t.where) + ShapeAll(t.unless) + ShapeAll(t.changes) + Number(t.mode) + ")";
+    return "(rule " + Shape(t.name) + Shape(static_cast<const Clause&>(t)) + ShapeAll(t.otherwise) + Number(t.mode) +
+           Number(t.within) + Number(t.prefer) + Number(t.sharing) + Number(t.preserving) +
+           (t.probability ? std::to_string(*t.probability) : "always") + Number(t.by_word) + ")";
   }
   std::string operator()(const Lexicon& t) const { return "(lexicon " + ShapeAll(t.entries) + ")"; }
   std::string operator()(const LexiconFrom& t) const { return "(lexicon-from " + Shape(t.path) + ")"; }
