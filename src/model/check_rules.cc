@@ -173,14 +173,7 @@ void Checker::CheckRule(const syntax::Rule& written) {
                              : written.sharing == syntax::Rule::Sharing::kBlocked;
   rule.probability = written.probability.value_or(1);
   rule.by_word = written.by_word;
-  bool good = true;
-  if (!(rule.probability > 0 && rule.probability <= 1)) {
-    Error(Kind::kBadValue, written.name.span,
-          "rule \"" + rule.name + "\" applies with a probability that is not above 0 and at most 1",
-          "write a number like 0.3; a rule that never applies is left out");
-    good = false;
-  }
-  good = CheckClause(written, written, rule, &rule) && good;
+  bool good = CheckClause(written, written, rule, &rule);
   for (const syntax::Clause& further : written.otherwise) {
     Clause clause;
     good = CheckClause(further, written, rule, &clause) && good;
@@ -205,18 +198,10 @@ bool Checker::CheckClause(const syntax::Clause& written, const syntax::Rule& who
   if (good) good = CheckShape(clause->where, written.where, context);
   context.broken = !good;
   for (const syntax::Pattern& unless : written.unless) good = ResolveUnless(unless, context, clause) && good;
+  good = AddInsertedLabels(written, &context) && good;
   for (const syntax::Condition& test : written.conditions) good = ResolveCondition(test, false, &context) && good;
   for (const syntax::Condition& test : written.unless_conditions) good = ResolveCondition(test, true, &context) && good;
   for (const syntax::TagTest& tag : written.tags) good = ResolveTag(tag, &context) && good;
-  if (written.changes.empty()) {
-    const bool first = &written == &whole;
-    Error(Kind::kBadRule, first ? whole.name.span : written.where.span,
-          first ? "rule \"" + rule.name + "\" changes nothing"
-                : "this clause of rule \"" + rule.name + "\" changes nothing",
-          "say what it does: spread, delink, set, fill, insert or delete");
-    good = false;
-  }
-  good = AddInsertedLabels(written, &context) && good;
   for (const syntax::Change& change : written.changes) good = ResolveChange(change, &context) && good;
   if (!good) return false;
   clause->variables = static_cast<int>(variables.size());

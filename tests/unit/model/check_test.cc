@@ -7,30 +7,7 @@
 namespace tiersmith::testing {
 namespace {
 
-const std::string kHead = std::string(kSmallTree) + "segments from \"ipa\" { p t n s i u a }\n";
-
-struct Row {
-  const char* text;
-  Kind kind;
-  const char* covered;  // the text under the caret
-  const char* says;     // a part of message and remedy
-};
-
-void CheckRows(const std::string& head, std::initializer_list<Row> rows, Severity severity = Severity::kError) {
-  for (const Row& row : rows) {
-    const Loaded loaded = Load(head + row.text);
-    CAPTURE(row.text);
-    INFO(loaded.Messages());
-    CHECK((loaded.grammar == nullptr) == (severity == Severity::kError));
-    REQUIRE(loaded.diagnostics.all().size() == 1);  // one mistake, one message
-    const Diagnostic& d = loaded.diagnostics.all()[0];
-    CHECK(d.kind == row.kind);
-    CHECK(d.severity == severity);
-    CHECK(loaded.Covered(d) == row.covered);
-    CHECK((d.message + " | " + d.remedy).find(row.says) != std::string::npos);
-    CHECK_FALSE(d.remedy.empty());
-  }
-}
+const std::string kHead = kSmallHead;
 
 TEST_CASE("check: the tree", "[unit]") {
   CheckRows(

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <catch2/catch.hpp>
+#include <initializer_list>
 #include <memory>
 #include <sstream>
 #include <string>
@@ -36,6 +37,8 @@ tree {
 }
 )";
 
+inline const std::string kSmallHead = std::string(kSmallTree) + "segments from \"ipa\" { p t n s i u a }\n";
+
 struct Loaded {
   std::shared_ptr<SourceMap> sources = std::make_shared<SourceMap>();
   Diagnostics diagnostics;
@@ -53,17 +56,42 @@ struct Loaded {
   }
 };
 
-inline Loaded Load(const std::string& text) {
+inline Loaded Load(const std::string& text, Reach reach = Reach::kRunnable) {
   Loaded loaded;
-  loaded.grammar = LoadGrammarText("t.tier", text, loaded.sources, loaded.diagnostics);
+  loaded.grammar = LoadGrammarText("t.tier", text, loaded.sources, loaded.diagnostics, reach);
   return loaded;
 }
 
-inline Loaded LoadOrFail(const std::string& text) {
-  Loaded loaded = Load(text);
+inline Loaded LoadOrFail(const std::string& text, Reach reach = Reach::kRunnable) {
+  Loaded loaded = Load(text, reach);
   INFO(loaded.Messages());
   REQUIRE(loaded.grammar != nullptr);
   return loaded;
+}
+
+// One mistake in a grammar, and what is said of it.
+struct Mistake {
+  const char* text;
+  Kind kind;
+  const char* covered;  // the text under the caret
+  const char* says;     // a part of message and remedy
+};
+
+inline void CheckRows(const std::string& head, std::initializer_list<Mistake> rows,
+                      Severity severity = Severity::kError, Reach reach = Reach::kRunnable) {
+  for (const Mistake& row : rows) {
+    const Loaded loaded = Load(head + row.text, reach);
+    CAPTURE(row.text);
+    INFO(loaded.Messages());
+    CHECK((loaded.grammar == nullptr) == (severity == Severity::kError));
+    REQUIRE(loaded.diagnostics.all().size() == 1);  // one mistake, one message
+    const Diagnostic& d = loaded.diagnostics.all()[0];
+    CHECK(d.kind == row.kind);
+    CHECK(d.severity == severity);
+    CHECK(loaded.Covered(d) == row.covered);
+    CHECK((d.message + " | " + d.remedy).find(row.says) != std::string::npos);
+    CHECK_FALSE(d.remedy.empty());
+  }
 }
 
 // "root[+son Place[•Dorsal[+high]]]"
