@@ -9,6 +9,16 @@ const char* KindName(Kind kind) {
       return "missing-file";
     case Kind::kNotUtf8:
       return "not-utf8";
+    case Kind::kForeignFile:
+      return "foreign-file";
+    case Kind::kTruncatedFile:
+      return "truncated-file";
+    case Kind::kAlteredFile:
+      return "altered-file";
+    case Kind::kNewerFile:
+      return "newer-file";
+    case Kind::kOtherLayout:
+      return "other-layout";
     case Kind::kSyntax:
       return "syntax";
     case Kind::kUnclosedBlock:

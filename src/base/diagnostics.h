@@ -27,6 +27,11 @@ enum class Kind {
   // reading files
   kMissingFile,
   kNotUtf8,
+  kForeignFile,
+  kTruncatedFile,
+  kAlteredFile,
+  kNewerFile,
+  kOtherLayout,
   // notation
   kSyntax,
   kUnclosedBlock,

@@ -13,6 +13,7 @@
 
 #include "base/render_diagnostics.h"
 #include "base/utf8.h"
+#include "model/names.h"
 
 namespace tiersmith::cli {
 namespace {
@@ -26,19 +27,24 @@ bool ColorOnStderr() {
   return isatty(STDERR_FILENO) != 0 && terminal != nullptr && std::strcmp(terminal, "dumb") != 0;
 }
 
-// True, or false after saying which name is no rule of the grammar.
-bool LeaveOut(const std::vector<std::string>& names, Grammar& grammar) {
+// True, or false after saying which name is no rule of the grammar. The machines of a machine file are those of all its
+// rules: without one of them they are compiled anew.
+bool LeaveOut(const std::vector<std::string>& names, CompiledGrammar& compiled) {
   for (const std::string& name : names) {
-    const auto first = std::remove_if(grammar.rules.begin(), grammar.rules.end(),
-                                      [&](const Rule& rule) { return ToNfc(rule.name) == ToNfc(name); });
-    if (first == grammar.rules.end()) {
-      PrintError(fmt::format("--without '{}': the grammar has no such rule", name));
-      std::string rules;
-      for (const Rule& rule : grammar.rules) rules += (rules.empty() ? "'" : ", '") + rule.name + "'";
-      PrintHelp(rules.empty() ? "it has no rules" : "its rules are " + rules);
-      return false;
+    if (LeaveOutRule(name, compiled.grammar.get())) {
+      compiled.left_out.push_back(name);
+      compiled.cascade = nullptr;
+      continue;
     }
-    grammar.rules.erase(first, grammar.rules.end());
+    PrintError(fmt::format("--without '{}': the grammar has no such rule", name));
+    std::vector<std::string> rules;
+    std::string list;
+    for (const Rule& rule : compiled.grammar->rules) {
+      rules.push_back(rule.name);
+      list += (list.empty() ? "'" : ", '") + rule.name + "'";
+    }
+    PrintHelp(DidYouMean(name, rules) + (list.empty() ? "it has no rules" : "its rules are " + list));
+    return false;
   }
   return true;
 }
@@ -46,7 +52,7 @@ bool LeaveOut(const std::vector<std::string>& names, Grammar& grammar) {
 }  // namespace
 
 void AddCommonOptions(CLI::App& verb, CommonOptions& options) {
-  verb.add_option("GRAMMAR", options.grammar, "a .tier file; - is standard input")->required();
+  verb.add_option("GRAMMAR", options.grammar, "a .tier file or a machine file; - is standard input")->required();
   verb.add_option("--without", options.without, "leave a rule out (may be given several times)")
       ->type_name("RULE")
       ->allow_extra_args(false);
@@ -70,7 +76,18 @@ void PrintHelp(const std::string& message) {
 
 int CodeFor(const Diagnostics& diagnostics) {
   for (const Diagnostic& diagnostic : diagnostics.all()) {
-    if (diagnostic.severity == Severity::kError && diagnostic.kind == Kind::kMissingFile) return kFiles;
+    if (diagnostic.severity != Severity::kError) continue;
+    switch (diagnostic.kind) {
+      case Kind::kMissingFile:
+      case Kind::kForeignFile:
+      case Kind::kTruncatedFile:
+      case Kind::kAlteredFile:
+      case Kind::kNewerFile:
+      case Kind::kOtherLayout:
+        return kFiles;
+      default:
+        break;
+    }
   }
   return kUsage;
 }
@@ -86,11 +103,11 @@ Loaded LoadOnly(const CommonOptions& options) {
   }
   loaded.sources = std::make_shared<SourceMap>();
   Diagnostics diagnostics;
-  loaded.grammar = LoadGrammar(options.grammar, loaded.sources, diagnostics);
+  static_cast<CompiledGrammar&>(loaded) = OpenGrammar(options.grammar, loaded.sources, diagnostics);
   PrintDiagnostics(diagnostics, *loaded.sources, options.json());
   if (loaded.grammar == nullptr) {
     loaded.code = CodeFor(diagnostics);
-  } else if (LeaveOut(options.without, *loaded.grammar)) {
+  } else if (LeaveOut(options.without, loaded)) {
     loaded.code = kFine;
   }
   return loaded;
@@ -99,10 +116,12 @@ Loaded LoadOnly(const CommonOptions& options) {
 Loaded LoadAndCompile(const CommonOptions& options) {
   Loaded loaded = LoadOnly(options);
   if (loaded.code != kFine) return loaded;
-  Diagnostics diagnostics;
-  loaded.cascade = Compile(*loaded.grammar, Limits{}, diagnostics);
-  PrintDiagnostics(diagnostics, *loaded.sources, options.json());
-  if (loaded.cascade == nullptr) loaded.code = CodeFor(diagnostics);
+  if (loaded.cascade == nullptr) {
+    loaded.warnings = {};
+    loaded.cascade = Compile(*loaded.grammar, Limits{}, loaded.warnings);
+  }
+  PrintDiagnostics(loaded.warnings, *loaded.sources, options.json());
+  if (loaded.cascade == nullptr) loaded.code = CodeFor(loaded.warnings);
   return loaded;
 }
 

@@ -10,9 +10,8 @@
 
 #include "base/diagnostics.h"
 #include "base/source_map.h"
-#include "compile/cascade.h"
-#include "model/grammar.h"
 #include "model/text.h"
+#include "run/machine_file.h"
 
 namespace tiersmith::cli {
 
@@ -40,15 +39,13 @@ void PrintError(const std::string& message);
 void PrintHelp(const std::string& message);
 
 // A grammar ready for a verb. `code` is kFine, or the exit code after the diagnostics were printed.
-struct Loaded {
+struct Loaded : CompiledGrammar {
   int code = kFine;
   std::shared_ptr<SourceMap> sources;
-  std::unique_ptr<Grammar> grammar;
-  std::unique_ptr<Cascade> cascade;
 };
-// Reads and checks the grammar and leaves out the rules named by --without.
+// Reads and checks the grammar, or opens a machine file, and leaves out the rules named by --without.
 Loaded LoadOnly(const CommonOptions& options);
-// The same, compiled.
+// The same, with its machines: those of the machine file, or compiled.
 Loaded LoadAndCompile(const CommonOptions& options);
 // kFiles if a file could not be read, else kUsage.
 int CodeFor(const Diagnostics& diagnostics);

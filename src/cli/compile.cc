@@ -1,5 +1,5 @@
-// tiersmith compile: compiles a grammar and says how large the machine is. Writing the machine file comes with a
-// later release. Tested by tests/cli/compile.sh.
+// tiersmith compile: compiles a grammar, writes the machine file, says how large the machine is. Tested by
+// tests/cli/compile.sh and tests/cli/machine.sh.
 #include <fmt/format.h>
 
 #include <nlohmann/json.hpp>
@@ -52,20 +52,28 @@ std::string Json(const std::vector<SegmentStats>& stats) {
 }
 
 int RunCompile(const CompileOptions& options) {
-  if (!options.output.empty()) {
-    PrintError("writing the machine file comes with a later release");
-    PrintHelp("--stats shows how large the machine is; the other verbs compile the .tier file themselves");
+  const bool told = options.stats || options.format != "text";
+  if (told && options.output == "-") {
+    PrintError("the machine file and the statistics cannot both be written to standard output");
+    PrintHelp("name a file: -o FILE");
     return kUsage;
   }
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
   const std::vector<SegmentStats> stats = loaded.cascade->Stats();
+  if (!options.output.empty()) {
+    Output machine(options.output);
+    if (!machine.good()) return kFiles;
+    machine.Write(WriteMachine(loaded));
+    const int code = machine.Finish();
+    if (code != kFine || !told) return code;
+  }
   Output output("");
   if (options.json()) {
     output.Write(Json(stats));
   } else if (options.format == "tsv") {
     output.Write(Tsv(StatsRows(stats)));
-  } else if (options.stats) {
+  } else if (told) {
     output.Write(Table(StatsRows(stats), std::vector<bool>(8, true)));
   } else {
     output.Write(fmt::format("{}: compiles; {} rules\n", options.grammar, loaded.grammar->rules.size()));
@@ -77,13 +85,13 @@ int RunCompile(const CompileOptions& options) {
 
 void AddCompile(CLI::App& app, int& code) {
   auto options = std::make_shared<CompileOptions>();
-  CLI::App* verb = app.add_subcommand("compile", "compile a grammar and show statistics");
+  CLI::App* verb = app.add_subcommand("compile", "compile a grammar into a machine file, or show statistics");
   AddCommonOptions(*verb, *options);
-  verb->get_option("--output")->group("");  // refused with a reason, and so not offered
+  verb->get_option("--output")->description("write the machine file: every verb takes it in place of the grammar");
   verb->add_flag("--stats", options->stats, "segments, rules, states, arcs, classes, letters, bytes, seconds");
   verb->footer(
-      "\nWriting the machine to a file comes with a later release.\n\nExample:\n  tiersmith compile velmari.tier "
-      "--stats");
+      "\nA machine file holds the text of all it was made from, and needs no other file.\n"
+      "\nExample:\n  tiersmith compile velmari.tier -o velmari.machine\n  tiersmith derive velmari.machine in-kat");
   verb->callback([options, &code] { code = RunCompile(*options); });
 }
 

@@ -104,8 +104,8 @@ bool Passes(const LetterPart& slot, const FeatureTest& test) {
 }  // namespace
 
 LetterClasses::LetterClasses(const Grammar& grammar, NodeSet visible, std::set<int> literals)
-    : grammar_(grammar), visible_(std::move(visible)) {
-  for (int literal : literals) {
+    : grammar_(grammar), visible_(std::move(visible)), literals_(std::move(literals)) {
+  for (int literal : literals_) {
     const Symbol& symbol = grammar.inventory.symbols[grammar.inventory.literals[literal].symbol];
     for (const FeatureTree* content : {&symbol.full, &symbol.underlying}) {
       LetterPart slot, seen, rest;
@@ -114,6 +114,26 @@ LetterClasses::LetterClasses(const Grammar& grammar, NodeSet visible, std::set<i
       literal_rests_.push_back(std::move(rest));
     }
   }
+}
+
+LetterClasses::Contents LetterClasses::Save() const {
+  Contents contents{{}, {literals_.begin(), literals_.end()}, rests_, classes_};
+  for (std::size_t node = 0; node < visible_.size(); ++node) {
+    if (visible_[node]) contents.visible.push_back(static_cast<NodeId>(node));
+  }
+  return contents;
+}
+
+std::unique_ptr<LetterClasses> LetterClasses::Restore(const Grammar& grammar, const Contents& contents) {
+  NodeSet visible(grammar.tree.nodes.size(), false);
+  for (NodeId node : contents.visible) visible[node] = true;
+  auto classes = std::make_unique<LetterClasses>(grammar, std::move(visible),
+                                                 std::set<int>(contents.literals.begin(), contents.literals.end()));
+  for (const LetterPart& rest : contents.rests) classes->InternRest(rest);
+  for (const ClassLetter& letter : contents.classes) classes->InternClass(letter.visible, letter.rest);
+  const bool whole =
+      classes->rests_.size() == contents.rests.size() && classes->classes_.size() == contents.classes.size();
+  return whole ? std::move(classes) : nullptr;
 }
 
 bool LetterClasses::SomeLiteralMayMatch(const LetterPart& rest) const {

@@ -11,6 +11,7 @@
 #pragma once
 
 #include <map>
+#include <memory>
 #include <set>
 #include <unordered_map>
 #include <vector>
@@ -37,6 +38,17 @@ class LetterClasses {
 
   LetterClasses(const Grammar& grammar, NodeSet visible, std::set<int> literals);
 
+  // All there is to know of the classes besides the grammar, as a plain value; classes and rests by their numbers.
+  struct Contents {
+    std::vector<NodeId> visible;
+    std::vector<int> literals;
+    std::vector<LetterPart> rests;
+    std::vector<ClassLetter> classes;
+  };
+  Contents Save() const;
+  // Null if some class or rest is there twice.
+  static std::unique_ptr<LetterClasses> Restore(const Grammar& grammar, const Contents& contents);
+
   // Cuts a letter; interns what is new.
   Parts Classify(const Letter& letter);
   // The letter again.
@@ -56,6 +68,7 @@ class LetterClasses {
 
   const Grammar& grammar_;
   NodeSet visible_;
+  std::set<int> literals_;
   std::vector<LetterPart> literal_rests_;
   std::vector<ClassLetter> classes_;
   std::vector<std::unordered_map<int, int>> by_letter_;  // letter id -> rest key -> class
