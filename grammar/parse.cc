@@ -1076,23 +1076,23 @@ const Sign kDot(U".");
 const auto path_ahead = &(name >> Glued(kDot >> !kDot));
 // A label where no path can stand, so that `delete X.N` is told from `delete X`.
 const auto label_alone = label >> !Glued(kDot >> PathAhead{});
-const auto kNarrow = [](syntax::Path::Member member) { return Let(&syntax::Path::member, member); };
+auto Narrowed(syntax::Path::Member member) { return Let(&syntax::Path::member, member); }
 const auto path_def =
     Spanned(path_ahead >> label[To(&syntax::Path::label)] >> Glued(kDot) >>
-            ((Glued(Sign(U"+")[kNarrow(syntax::Path::Member::kPlus)] |
-                    minus_sign[kNarrow(syntax::Path::Member::kMinus)]) > Glued(node)[To(&syntax::Path::node)]) |
+            ((Glued(Sign(U"+")[Narrowed(syntax::Path::Member::kPlus)] |
+                    minus_sign[Narrowed(syntax::Path::Member::kMinus)]) > Glued(node)[To(&syntax::Path::node)]) |
              (Glued(node)[To(&syntax::Path::node)] >>
               -Glued(raw[+(kDot >> name)][NotYet("a path through more than one node")]) >>
-              -((Glued(Sign(U":"))[kNarrow(syntax::Path::Member::kValue)] > name[To(&syntax::Path::value)]) |
-                (Word(U"first")[kNarrow(syntax::Path::Member::kFirst)] >> !Glued(kDot)) |
-                (Word(U"last")[kNarrow(syntax::Path::Member::kLast)] >> !Glued(kDot)))) |
+              -((Glued(Sign(U":"))[Narrowed(syntax::Path::Member::kValue)] > name[To(&syntax::Path::value)]) |
+                (Word(U"first")[Narrowed(syntax::Path::Member::kFirst)] >> !Glued(kDot)) |
+                (Word(U"last")[Narrowed(syntax::Path::Member::kLast)] >> !Glued(kDot)))) |
              Wanted("@the name of a node")));
 
-const auto kTest = [](syntax::Condition::Test kind) { return Let(&syntax::Condition::test, kind); };
+auto IsTest(syntax::Condition::Test kind) { return Let(&syntax::Condition::test, kind); }
 const auto test_sign =
-    Sign(U"=")[kTest(syntax::Condition::Test::kEqual)] |
-    (Sign(U"≠") | Sign(U"!="))[kTest(syntax::Condition::Test::kUnequal)] |
-    (Word(U"is")[kTest(syntax::Condition::Test::kIs)] >> -Word(U"not")[kTest(syntax::Condition::Test::kIsNot)]) |
+    Sign(U"=")[IsTest(syntax::Condition::Test::kEqual)] |
+    (Sign(U"≠") | Sign(U"!="))[IsTest(syntax::Condition::Test::kUnequal)] |
+    (Word(U"is")[IsTest(syntax::Condition::Test::kIs)] >> -Word(U"not")[IsTest(syntax::Condition::Test::kIsNot)]) |
     Wanted("=, ≠, is or is not");
 const auto test_def = Spanned(path[To(&syntax::Condition::left)] > test_sign > path[To(&syntax::Condition::right)]);
 
@@ -1552,25 +1552,60 @@ class Reader {
     const bool name_fits = !wanted.empty() && wanted[0] == '@';
     if (name_fits) wanted.erase(0, 1);
     const std::string bare = PeekBare(where, last);
-    Iterator end = where;
-    if (bare.empty()) {
-      if (end != last) ++end;
-    } else {
-      while (end.base() != where.base() + bare.size()) ++end;
-    }
-    const Span span = scene.Between(where, end);
     if (name_fits && notation::IsReserved(bare)) {
-      diagnostics_.Error(Kind::kReservedWord, span,
+      diagnostics_.Error(Kind::kReservedWord, scene.Between(where, TokenEnd(where, last)),
                          "'" + bare + "' is a word of the notation and cannot be a name here",
                          "put it in double quotes: \"" + bare + "\"");
       return;
     }
+    const Iterator node = PathNode(where, last);
+    const Iterator end = TokenEnd(node == last ? where : node, last);
     const std::string found = where == last ? "the end" : "'" + Bytes(where, end) + "'";
-    if (!bare.empty() && MatchText(end, last, U".") && end != last && notation::IsNameStart(*end))
-      remedy = wanted == "a label"
-                   ? "this speaks of the whole item: write its label alone"
-                   : "a path such as X.Place follows spread or delink: is the word before it one of these?";
-    diagnostics_.Error(Kind::kSyntax, span, "expected " + wanted + ", found " + found, remedy);
+    if (const char* better = BetterRemedy(wanted, where, last)) remedy = better;
+    diagnostics_.Error(Kind::kSyntax, scene.Between(where, end), "expected " + wanted + ", found " + found, remedy);
+  }
+
+  // Behind the name or the one character that stands here.
+  static Iterator TokenEnd(Iterator where, const Iterator& last) {
+    const std::string bare = PeekBare(where, last);
+    if (bare.empty()) return where == last ? last : ++where;
+    Iterator end = where;
+    while (end.base() != where.base() + bare.size()) ++end;
+    return end;
+  }
+  // The node of a path that stands here, or the end.
+  static Iterator PathNode(Iterator where, const Iterator& last) {
+    Iterator i = TokenEnd(where, last);
+    const bool named = !PeekBare(where, last).empty();
+    return named && MatchText(i, last, U".") && i != last && notation::IsNameStart(*i) ? i : last;
+  }
+
+  // What to write where this was wanted, if there is more to say than how the section reads.
+  static const char* BetterRemedy(const std::string& wanted, Iterator where, const Iterator& last) {
+    static constexpr std::pair<std::string_view, const char*> kRemedies[] = {
+        {"'where'", "a clause begins with its pattern, where X:[+voice] Y:[-son]; conditions and changes follow"},
+        {"a path such as X.Place", "write an item's label and a node, glued: X.Place"},
+        {"=, ≠, is or is not", "a test reads: if X.Place = Y.Place, or with ≠, is, is not"},
+        {"a tag", "write: only loan, only X in loan or only word loan"},
+        {"a feature right after its variable", "glue the two, αback, or write alpha back"},
+        {"what an edge bears: +f, -f, a feature or a value", "write: begins -cont"},
+        {"first or second", "write: half first"},
+        {"left or right", "write: prefer left"},
+        {"blocked or free", "write: sharing blocked"},
+        {kDomains, "write: within phrase"},
+        {"'as'", "write: set X.Place as Y.Place; values are given to an item, set X [+round]"},
+        {"a bundle or 'as'", "write: fill X [-back], fill X as Y or fill X.Place as Y.Place"},
+        {"a bundle, a literal or 'as'", "write: set X [-back], set X /k/, set X as Y or set X.Place as Y.Place"},
+        {"a change before 'otherwise'", "say what the clause does, for instance: set X [-voice]"}};
+    for (const auto& [what, remedy] : kRemedies)
+      if (what == wanted) return remedy;
+    if (PathNode(where, last) != last)
+      return wanted == "a label"
+                 ? "this speaks of the whole item: write its label alone"
+                 : "a path such as X.Place follows spread or delink: is the word before it one of these?";
+    if (where != last && notation::IsGreekVariable(*where))
+      return "a variable stands right before its feature, αback, and -αback asks for the other value";
+    return nullptr;
   }
 
   void Later(const std::string& construct, Span span) {

@@ -102,7 +102,7 @@ TEST_CASE("errors: one mistake, one message, the right place", "[unit]") {
       {"rule \"r\" where A:V delete A", Kind::kSyntax, "where"},
       {"rule \"r\" { A:V delete A }", Kind::kSyntax, "A"},
       {"rule \"r\" { where A:V }", Kind::kSyntax, ""},
-      {"rule \"r\" { where A:V spraed A.b to A }", Kind::kSyntax, "A"},
+      {"rule \"r\" { where A:V spraed A.b to A }", Kind::kSyntax, "A.b"},
       {"rule \"r\" { where A:V spread A.b }", Kind::kSyntax, ""},
       {"rule \"r\" { where A:V spread A to A }", Kind::kSyntax, "A"},
       {"rule \"r\" { where A:V set A }", Kind::kSyntax, ""},
@@ -127,7 +127,7 @@ TEST_CASE("errors: one mistake, one message, the right place", "[unit]") {
       {"pattern P = B:#₀", Kind::kSyntax, "₀"},
       // tests and tags
       {"rule \"r\" { where A:V B:V delete A if A = B }", Kind::kSyntax, "A"},
-      {"rule \"r\" { where A:V B:V delete A if A.a B.a }", Kind::kSyntax, "B"},
+      {"rule \"r\" { where A:V B:V delete A if A.a B.a }", Kind::kSyntax, "B.a"},
       {"rule \"r\" { where A:V B:V delete A unless A.a is B }", Kind::kSyntax, "B"},
       {"rule \"r\" { where A:V delete A only }", Kind::kSyntax, ""},
       {"rule \"r\" { where A:V delete A except A in }", Kind::kSyntax, ""},
@@ -135,12 +135,12 @@ TEST_CASE("errors: one mistake, one message, the right place", "[unit]") {
       // paths and changes
       {"rule \"r\" { where A:V delink A.- }", Kind::kSyntax, ""},
       {"rule \"r\" { where A:V delink A.Tone:(H L) }", Kind::kSyntax, "("},
-      {"rule \"r\" { where A:V spread A.x to A.y }", Kind::kSyntax, "A"},
+      {"rule \"r\" { where A:V spread A.x to A.y }", Kind::kSyntax, "A.y"},
       {"rule \"r\" { where A:V B:V set A.N as B }", Kind::kSyntax, "B"},
-      {"rule \"r\" { where A:V B:V set A as B.N }", Kind::kSyntax, "B"},
+      {"rule \"r\" { where A:V B:V set A as B.N }", Kind::kSyntax, "B.N"},
       {"rule \"r\" { where A:V set A.N [-a] }", Kind::kSyntax, "["},
       {"rule \"r\" { where A:V fill A /k/ }", Kind::kSyntax, "/"},
-      {"rule \"r\" { where A:V lengthen A.root }", Kind::kSyntax, "A"},
+      {"rule \"r\" { where A:V lengthen A.root }", Kind::kSyntax, "A.root"},
       {"rule \"r\" { where A:V shorten }", Kind::kSyntax, ""},
       {"rule \"r\" { where A:V B:V merge A.N, B.N }", Kind::kSyntax, ","},
       {"rule \"r\" { where A:V B:V merge A.N B }", Kind::kSyntax, "B"},
@@ -394,6 +394,40 @@ TEST_CASE("errors: what was expected is said in words", "[unit]") {
     INFO(row.text << "\n" << Names(found));
     REQUIRE(!found.errors.empty());
     CHECK(found.errors[0].message == row.expected);
+  }
+}
+
+TEST_CASE("errors: the remedy is about what stands there", "[unit]") {
+  const struct {
+    const char* text;
+    const char* remedy;
+  } rows[] = {
+      {"rule \"r\" { only noun where A:V delete A }", "a clause begins with its pattern"},
+      {"rule \"r\" { where A:V B:V delete A if A = B }", "X.Place"},
+      {"rule \"r\" { where A:V B:V delete A if A.a B.a }", "a test reads"},
+      {"rule \"r\" { where A:V delete A only }", "only X in loan"},
+      {"rule \"r\" { where A:V delete A prefer rightward }", "prefer left"},
+      {"rule \"r\" { where A:V delete A sharing }", "sharing blocked"},
+      {"rule \"r\" { where A:V delete A within clause }", "within phrase"},
+      {"rule \"r\" { where A:V set A.N [-a] }", "set X.Place as Y.Place"},
+      {"rule \"r\" { where A:V fill A /k/ }", "fill X [-back]"},
+      {"rule \"r\" { where A:V set A }", "set X /k/"},
+      {"rule \"r\" { where A:V lengthen A.root }", "write its label alone"},
+      {"rule \"r\" { where A:V spraed A.b to A }", "follows spread or delink"},
+      {"rule \"r\" { where A:V otherwise where A:C delete A }", "say what the clause does"},
+      {"rule \"r\" { where A:V delete A optional 30 }", "optional 0.3"},
+      {"class V = [α back]", "glue the two"},
+      {"class V = [+αback]", "right before its feature"},
+      {"class V = [ends no cont]", "begins -cont"},
+      {"class V = [half third]", "half first"},
+      {"class V = [+syll]\ninclude \"base.tier\"", "before the first section"},
+      {"fuse Place within word", "fuse Place within morpheme"},
+  };
+  for (const auto& row : rows) {
+    const Found found = Read(row.text);
+    INFO(row.text << "\n" << Names(found));
+    REQUIRE(found.errors.size() == 1);
+    CHECK_THAT(found.errors[0].remedy, Catch::Contains(row.remedy));
   }
 }
 
