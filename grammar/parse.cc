@@ -1558,8 +1558,8 @@ class Reader {
                          "put it in double quotes: \"" + bare + "\"");
       return;
     }
-    const Iterator node = PathNode(where, last);
-    const Iterator end = TokenEnd(node == last ? where : node, last);
+    const Iterator path_node = PathNode(where, last);
+    const Iterator end = TokenEnd(path_node == last ? where : path_node, last);
     const std::string found = where == last ? "the end" : "'" + Bytes(where, end) + "'";
     if (const char* better = BetterRemedy(wanted, where, last)) remedy = better;
     diagnostics_.Error(Kind::kSyntax, scene.Between(where, end), "expected " + wanted + ", found " + found, remedy);
