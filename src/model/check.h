@@ -103,6 +103,7 @@ class Checker {
   void AddCompositesOf(std::string_view text, const SymbolTrie& listed);
   void CheckOmit();
   void CheckFallTogether();
+  void CheckAbstract();
   void CheckUnspecified();
   void RebuildTrie();
   std::vector<std::string> SymbolNames() const;
@@ -222,8 +223,6 @@ class Checker {
   std::map<std::string, const syntax::NamedPattern*> patterns_;
   std::set<std::string> failed_patterns_;
   bool sharing_blocked_ = false;  // for the whole grammar
-  // Tags that rules ask for, where each is mentioned first: beside Grammar::tags from the fifth on.
-  std::vector<syntax::Name> tags_asked_;
   std::vector<std::pair<NodeId, const syntax::Set*>> rooms_;
   std::vector<Entry> entries_;  // beside Inventory::symbols
   std::vector<Sign> signs_;     // beside Inventory::marks

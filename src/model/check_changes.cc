@@ -426,7 +426,7 @@ bool Checker::CheckBesideReplaced(const Clause& clause, const Change& replacing)
   for (const NodeId replaced : ReplacedNodes(replacing)) {
     const bool gives = std::none_of(replacing.settings.begin(), replacing.settings.end(), TakesAway);
     const std::string what =
-        gives ? "gives '" + tree[replaced].name + "' as a whole" : "takes '" + tree[replaced].name + "' away";
+        gives ? "gives '" + tree[replaced].name + "' anew" : "takes '" + tree[replaced].name + "' away";
     for (const Change& other : clause.changes) {
       if (&other == &replacing || (replaced == kRootNode && !OfOneItem(replacing, other))) continue;
       for (const NodeId node : ChangedNodes(other)) {
@@ -445,16 +445,18 @@ bool Checker::CheckBesideReplaced(const Clause& clause, const Change& replacing)
 
 // A root made longer or shorter, and the same rule at work on which root that is.
 bool Checker::CheckBesideLength(const Clause& clause, const Change& change) {
-  const std::string verb = change.op == Change::Op::kLengthen ? "lengthen" : "shorten";
+  const bool lengthen = change.op == Change::Op::kLengthen;
+  const std::string asks = "this rule asks to " + std::string(lengthen ? "lengthen" : "shorten") + " '" +
+                           LabelName(clause, change.target) + "' and ";
   for (const Change& other : clause.changes) {
     if (&other == &change || !OfOneItem(change, other)) continue;
+    if (ChangesLength(other) && other.op != change.op) {
+      return RefuseBeside(change, other, asks + (lengthen ? "to shorten it" : "to lengthen it"),
+                          "its length is changed here");
+    }
     const std::vector<NodeId> nodes = ChangedNodes(other);
-    const bool other_root = std::find(nodes.begin(), nodes.end(), kRootNode) != nodes.end();
-    if (!other_root && !(ChangesLength(other) && other.op != change.op)) continue;
-    return RefuseBeside(change, other,
-                        "this rule asks to " + verb + " '" + LabelName(clause, change.target) +
-                            (other_root ? "' and gives it another root" : "' and asks for the opposite as well"),
-                        "its length is changed here");
+    if (std::find(nodes.begin(), nodes.end(), kRootNode) == nodes.end()) continue;
+    return RefuseBeside(change, other, asks + "moves or replaces its root", "its length is changed here");
   }
   return true;
 }

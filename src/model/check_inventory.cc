@@ -624,6 +624,28 @@ void Checker::CheckFallTogether() {
   }
 }
 
+// No output may bear an abstract node: archisegments may, but no symbol that a form could come out as.
+void Checker::CheckAbstract() {
+  const Tree& tree = grammar_.tree;
+  for (std::size_t i = kRootNode + 1; i < tree.nodes.size(); ++i) {
+    const NodeId node = static_cast<NodeId>(i);
+    if (!tree[node].abstract_) continue;
+    for (Symbol& symbol : grammar_.inventory.symbols) {
+      if (!Bears(symbol.full, node)) continue;
+      if (symbol.kind == Symbol::Kind::kComposite) symbol.completes = false;
+      if (symbol.kind != Symbol::Kind::kSegment && symbol.kind != Symbol::Kind::kAllophone) continue;
+      diagnostics_.Add(
+          {Kind::kBadValue,
+           Severity::kError,
+           symbol.span,
+           "'" + symbol.text + "' bears '" + tree[node].name + "', which is abstract: no output may bear it",
+           "take it away, `" + symbol.text + " = " + symbol.text + " [no " + tree[node].name +
+               "]`, or list the symbol in `archisegments`",
+           {{tree[node].span, "'" + tree[node].name + "' is abstract here"}}});
+    }
+  }
+}
+
 void Checker::CheckUnspecified() {
   if (!from_library_ || diagnostics_.HasErrors()) return;  // a tree with errors is not the one that was meant
   const Tree& tree = grammar_.tree;
@@ -654,6 +676,7 @@ void Checker::CheckInventory() {
   RebuildTrie();
   CheckOmit();
   CheckFallTogether();
+  CheckAbstract();
   CheckUnspecified();
 }
 

@@ -325,7 +325,6 @@ bool Checker::ResolveTag(const syntax::TagTest& written, RuleContext* context) {
       return false;
     }
     tags.push_back(written.tag.text);
-    tags_asked_.push_back(written.tag);
   }
   context->clause->tags.push_back(test);
   return true;

@@ -249,7 +249,7 @@ std::optional<int> Checker::VariableOf(const syntax::Feat& feat, NodeId node, Ru
     return std::nullopt;
   };
   if (context == nullptr || context->variables == nullptr || context->alternative) {
-    return bad(Kind::kBadRule, "'" + name + "' has no meaning here: items of a rule agree, each taken as a whole",
+    return bad(Kind::kBadRule, "'" + name + "' means nothing here: by it the items of a rule agree",
                "write it in a bundle of the rule that is not under `or`, `not` or alternatives");
   }
   if (node == kSlotNode)
@@ -275,7 +275,7 @@ std::optional<int> Checker::VariableOf(const syntax::Feat& feat, NodeId node, Ru
          feat.span,
          "'" + name + "' cannot be a value of both '" + grammar_.tree[found->node].name + "' and '" + kind.name + "'",
          "use another of α β γ δ for one of them",
-         {{found->span, "it is one of '" + grammar_.tree[found->node].name + "' here"}}});
+         {{found->span, "it is a value of '" + grammar_.tree[found->node].name + "' here"}}});
     return std::nullopt;
   }
   ++found->places;

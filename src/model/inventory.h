@@ -18,13 +18,13 @@ struct Symbol {
   enum class Kind { kSegment, kArchisegment, kAllophone, kComposite };  // kComposite: base with diacritics
   std::string text;                                                     // NFC
   Kind kind = Kind::kSegment;
-  FeatureTree full;                     // as declared
-  FeatureTree underlying;               // full, less what `omit` takes: what the symbol means in a form
-  bool in_underlying = true;            // may stand in underlying forms
-  int diacritics = 0;                   // how many beyond the base
-  bool completes = true;                // may be chosen by Completion: not archisegments, nor what is made from them
-  int base = -1;                        // kComposite: the listed symbol under the diacritics
-  std::vector<int> marks;               // kComposite: indices into Inventory::marks, ascending
+  FeatureTree full;           // as declared
+  FeatureTree underlying;     // full, less what `omit` takes: what the symbol means in a form
+  bool in_underlying = true;  // may stand in underlying forms
+  int diacritics = 0;         // how many beyond the base
+  bool completes = true;      // may be chosen by Completion: not archisegments and what bears an abstract node
+  int base = -1;              // kComposite: the listed symbol under the diacritics
+  std::vector<int> marks;     // kComposite: indices into Inventory::marks, ascending
   std::vector<FeatureTree> slot_borne;  // instances on the slot (tones), written by diacritics
   Span span;
 };

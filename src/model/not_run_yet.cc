@@ -1,6 +1,8 @@
 // See not_run_yet.h.
 #include "model/not_run_yet.h"
 
+#include <algorithm>
+
 namespace tiersmith {
 namespace {
 
@@ -30,7 +32,10 @@ class Lister {
 
  private:
   void Add(Span span, std::string what, std::string remedy = "take it out, or state the analysis without it") {
-    found_.push_back({span, std::move(what), std::move(remedy)});
+    const bool said = std::any_of(found_.begin(), found_.end(), [&](const NotYet& construct) {
+      return construct.what == what && construct.span.begin == span.begin && construct.span.file == span.file;
+    });
+    if (!said) found_.push_back({span, std::move(what), std::move(remedy)});
   }
 
   void VisitPattern(const Pattern& pattern) {

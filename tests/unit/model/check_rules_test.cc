@@ -92,7 +92,7 @@ TEST_CASE("check rules: mistakes in agreement", "[unit]") {
       kHead,
       {
           {"rule \"r\" { where A:[αbakc] B:[αback] delete A }", Kind::kUnknownFeature, "bakc", "did you mean 'back'?"},
-          {"class X = [αback]", Kind::kBadRule, "αback", "items of a rule agree"},
+          {"class X = [αback]", Kind::kBadRule, "αback", "by it the items of a rule agree"},
           {"rule \"r\" { where A:[αback] B:[] but not [αback] delete A }", Kind::kBadRule, "αback", "not under `or`"},
           {"rule \"r\" { where A:[αback] B:{[αback] | C} delete A }", Kind::kBadRule, "αback", "not under `or`"},
           {"rule \"r\" { where A:[αback] B:{[+syll] or [αback]} delete A }", Kind::kBadRule, "αback", "not under `or`"},
@@ -108,7 +108,7 @@ TEST_CASE("check rules: mistakes in agreement", "[unit]") {
           {"rule \"r\" { where A:[αPlace] B:C set B [αPlace +back] }", Kind::kBadRule, "[αPlace +back]",
            "replaces 'Place' and says something of 'back'"},
           {"segments { b = p [αvoice] }", Kind::kBadValue, "αvoice", "gives no content here"},
-          {"omit { -voice in [αback] }", Kind::kBadRule, "αback", "items of a rule agree"},
+          {"omit { -voice in [αback] }", Kind::kBadRule, "αback", "by it the items of a rule agree"},
       });
   CheckRows(kHead,
             {
@@ -437,11 +437,11 @@ TEST_CASE("check rules: changes that cannot stand beside each other", "[unit]") 
       kHead,
       {
           {"rule \"r\" { where X:C Y:C set X /t/ spread Y.Place to X }", Kind::kBadRule, "spread Y.Place to X",
-           "gives 'root' as a whole and changes 'Place' under it"},
+           "gives 'root' anew and changes 'Place' under it"},
           {"rule \"r\" { where X:C Y:C set X as Y set X [+voice] }", Kind::kBadRule, "set X [+voice]",
-           "gives 'root' as a whole and changes 'voice' under it"},
+           "gives 'root' anew and changes 'voice' under it"},
           {"rule \"r\" { where X:C Y:C set X.Place as Y.Place set Y [+back] }", Kind::kBadRule, "set Y [+back]",
-           "gives 'Place' as a whole and changes 'back' under it"},
+           "gives 'Place' anew and changes 'back' under it"},
           {"rule \"r\" { where X:C Y:C set X.back as Y.back set X [+back] }", Kind::kBadRule, "set X [+back]",
            "changes it once more"},
           {"rule \"r\" { where X:C Y:C set X /t/ delink X.root }", Kind::kBadRule, "delink X.root",
@@ -452,10 +452,11 @@ TEST_CASE("check rules: changes that cannot stand beside each other", "[unit]") 
            "merges 'Place' of an item and moves its lines"},
           {"rule \"r\" { where X:C Y:C merge X.voice Y.voice set Y [+voice] }", Kind::kBadRule, "set Y [+voice]",
            "a line and a content of 'voice' on 'Y'"},
-          {"rule \"r\" { where X:C lengthen X set X /t/ }", Kind::kBadRule, "set X /t/", "gives it another root"},
-          {"rule \"r\" { where X:C lengthen X shorten X }", Kind::kBadRule, "shorten X", "the opposite"},
+          {"rule \"r\" { where X:C lengthen X set X /t/ }", Kind::kBadRule, "set X /t/", "moves or replaces its root"},
+          {"rule \"r\" { where X:C lengthen X shorten X }", Kind::kBadRule, "shorten X",
+           "to lengthen 'X' and to shorten it"},
           {"rule \"r\" { where X:C delink X.root shorten X }", Kind::kBadRule, "delink X.root",
-           "gives it another root"},
+           "moves or replaces its root"},
           {"rule \"r\" { where X:C Y:C merge X.Place Y.Place iterate leftward }", Kind::kBadRule,
            "merge X.Place Y.Place", "changes one item"},
           {"rule \"r\" { where X:C delete X otherwise where X:V Y:V delete X delete Y iterate leftward }",
@@ -506,7 +507,7 @@ rule "b" { where X:V  delete X  sharing free  prefer right }
                            {"fuse Plaec within morpheme", Kind::kUnknownNode, "Plaec", "did you mean 'Place'?"},
                            {"fuse slot within morpheme", Kind::kBadRule, "slot", "not read as one"},
                            {"fuse Place within morpheme in X:C C", Kind::kBadRule, "X:C C", "means nothing here"},
-                           {"fuse Place within morpheme in C [αback]", Kind::kBadRule, "αback", "items of a rule"},
+                           {"fuse Place within morpheme in C [αback]", Kind::kBadRule, "αback", "by it the items"},
                            {"sharing blocked sharing free", Kind::kDuplicate, "sharing free", "declared twice"},
                        });
 }

@@ -118,6 +118,15 @@ TEST_CASE("check: the inventory", "[unit]") {
                 {"segments { b = p }", Kind::kSymbolsFallTogether, "b", "'p' and 'b' fall together"},
             });
   CheckRows(kHead, {{"segments from \"ipa\" { p }", Kind::kDuplicate, "p", "listed twice"}}, Severity::kWarning);
+  // No output may bear an abstract node, so no symbol that spells one does.
+  const std::string weak = "tree { root > ±syll weak abstract }\nsegments { a [+syll] }\n";
+  CheckRows(weak, {
+                      {"segments { e [+syll weak] }", Kind::kBadValue, "e", "'weak', which is abstract"},
+                      {"allophones { e [+syll weak] }", Kind::kBadValue, "e", "'weak', which is abstract"},
+                  });
+  const Loaded abstract = LoadOrFail(weak + "archisegments { A [+syll weak] } diacritics { ◌̆ [weak] }");
+  CHECK_FALSE(SymbolNamed(*abstract.grammar, "A").completes);
+  CHECK_FALSE(SymbolNamed(*abstract.grammar, "ă").completes);
 }
 
 TEST_CASE("check: rules", "[unit]") {
