@@ -37,6 +37,10 @@ bool Checker::AddInsertedLabels(const syntax::Clause& written, RuleContext* cont
       Error(Kind::kBadRule, change.inserted.span, "label '" + name + "' is used twice",
             "give what is inserted a label of its own");
       good = false;
+    } else if (classes_.count(name) != 0) {
+      Error(Kind::kBadRule, change.inserted.span, "label '" + name + "' is the name of a class",
+            "choose a label that no class has");
+      good = false;
     } else if (context->used.count(name) != 0) {
       context->inserted[name] = AddClauseLabel(name, Clause::LabelKind::kInserted, context->clause);
     }

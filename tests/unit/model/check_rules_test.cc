@@ -429,6 +429,7 @@ rule "h" { where X:C  insert E:/i/ after X }
           {"rule \"r\" { where X:V insert E:/i/ after X insert F:/a/ after E }", Kind::kBadRule, "E",
            "is inserted by this rule"},
           {"rule \"r\" { where X:V insert E:/i/ after X insert E:/a/ before X }", Kind::kBadRule, "E", "used twice"},
+          {"rule \"r\" { where X:V insert C:/i/ after X }", Kind::kBadRule, "C", "the name of a class"},
       });
 }
 
@@ -510,6 +511,28 @@ rule "b" { where X:V  delete X  sharing free  prefer right }
                            {"fuse Place within morpheme in C [αback]", Kind::kBadRule, "αback", "by it the items"},
                            {"sharing blocked sharing free", Kind::kDuplicate, "sharing free", "declared twice"},
                        });
+}
+
+TEST_CASE("check rules: the examples of the reference stand", "[unit]") {
+  const Loaded loaded = Whole(R"(
+rule "clusters agree" { where X:[-son] Y:[-son αvoice]      set X [αvoice] }
+rule "affricates"     { where X:/t/ Y:[-cont]               delink X.-cont }
+rule "echo"           { where X:V C₁ E:[+syll, no Place]    set E.Place as X.Place }
+rule "one nasal"      { where N:[+nasal] & M:[+nasal]       merge N.Place M.Place }
+rule "long by loss"   { where X:V H:/s/ C                   lengthen X   delete H }
+rule "one word"       { within phrase   where C B:# C       delete B }
+rule "no twins"       { where X:C Y:C   if X.root = Y.root   if X.root is not Y.root   except Y in loan   delete X }
+rule "own labels"     { where V C   if V.Place = C.Place   delete C   only V in stem }
+rule "final vowels" {
+  where X:[+syll long] #        shorten X   except loan
+  otherwise where X:[+syll] #   delete X    only X in suffix
+  preserving
+  optional 0.25 by word
+}
+)");
+  CHECK(loaded.diagnostics.all().empty());
+  CHECK(loaded.grammar->rules[7].labels == std::vector<std::string>{"V", "C"});
+  CHECK(loaded.grammar->rules[8].otherwise[0].tags[0].label == 0);
 }
 
 // Each is answered at its place as long as compiler and interpreter together do not run it.
