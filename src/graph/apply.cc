@@ -1,207 +1,227 @@
-// One application of a rule, at once or in a sweep, and a derivation.
+// One application of a rule, at once or in a sweep.
 //
-// Ways of matching are found by trying (matching.h), each match is judged alone on the form before (requests.h), gaps
-// keep only the nearest, and what is left is carried out together. With `delink N.Place spread C.Place to N` on /anpa/:
+// Ways of matching are found by trying (matching.h), each match is judged alone on the form before (matches.h), and
+// what stands is carried out together (requests.h). With `delink N.Place spread C.Place to N` on /anpa/:
 // one match, n's Place cut and p's Place drawn to n, /ampa/ with one Place under two roots.
-// An iterative rule does the same at each root in turn, on the form as the sweep has left it.
-// Not here: optional rules, cyclic application, prosody.
+// An iterative rule does the same at each root in turn, on the form as the sweep has left it. An optional rule comes
+// out in a way for each draw at each site: with `optional 0.3` on two sites, both 0.09, one 0.21 each, none 0.49.
+// Not here: cyclic application, prosody.
 // Tested by tests/unit/graph/, and against the compiler by tests/agreement/.
+#include "graph/apply.h"
+
 #include <algorithm>
 #include <memory>
+#include <numeric>
+#include <unordered_map>
 
-#include "graph/interpreter.h"
-#include "graph/matching.h"
+#include "base/limits.h"
+#include "graph/matches.h"
 #include "graph/notes.h"
 #include "graph/requests.h"
 
-namespace tiersmith {
-namespace graph {
+namespace tiersmith::graph {
 namespace {
 
-enum class Failure { kNone, kCapacity, kCrossing };
-
-const char* NameOf(Failure failure) {
-  switch (failure) {
-    case Failure::kNone:
-      return "";
-    case Failure::kCapacity:
-      return "capacity";
-    case Failure::kCrossing:
-      return "crossing";
-  }
-  return "";
-}
-
-// Two ways with the same slots for the labels are one match.
-struct Match {
-  LabelSlots labels;
-  bool judged = false;  // the rest is known; judging costs, and a sweep asks for few
-  Failure failure = Failure::kNone;
-  bool changes = false;  // alone, does it change anything
-};
-
-class Matches {
- public:
-  Matches(const View& view, const Rule& rule) : view_(view), rule_(rule) {
-    const std::vector<Way> ways = FindWays(view, rule);
-    boost::container::small_vector<int, 16> match_of;
-    for (const Way& way : ways) match_of.push_back(Find(way.labels));
-    // A match stands if some way of it has no nearer slot in any of its gaps.
-    boost::container::small_vector<char, 16> nearest(matches_.size(), 0);
-    for (std::size_t i = 0; i < ways.size(); ++i) {
-      if (!nearest[match_of[i]]) nearest[match_of[i]] = !HasNearer(ways, match_of, ways[i]);
-    }
-    std::size_t kept = 0;
-    for (std::size_t i = 0; i < matches_.size(); ++i) {
-      if (!nearest[i]) continue;
-      if (kept != i) matches_[kept] = matches_[i];
-      ++kept;
-    }
-    matches_.resize(kept);
-  }
-
-  std::size_t size() const { return matches_.size(); }
-  const LabelSlots& labels(std::size_t i) const { return matches_[i].labels; }
-  const Match& Judged(std::size_t i) {
-    Match& match = matches_[i];
-    if (!match.judged) Judge(&match);
-    return match;
-  }
-
- private:
-  int Find(const LabelSlots& labels) {
-    if (matches_.empty() || matches_.back().labels != labels) {  // the ways of one match stand together
-      matches_.emplace_back();
-      matches_.back().labels = labels;
-    }
-    return static_cast<int>(matches_.size()) - 1;
-  }
-
-  void Judge(Match* match) const {
-    match->judged = true;
-    if (WithoutRoom(view_, rule_, match->labels) != nullptr) {
-      match->failure = Failure::kCapacity;
-      return;
-    }
-    Requests alone(view_, rule_);
-    alone.Add(match->labels);
-    match->changes = alone.Changes();
-    if (match->changes && alone.CrossesAlone()) match->failure = Failure::kCrossing;
-  }
-
-  // In some gap with a changed end: would the rule apply at a slot nearer to the other end?
-  bool HasNearer(const std::vector<Way>& ways, const boost::container::small_vector<int, 16>& match_of,
-                 const Way& way) {
-    for (const Way::Gap& gap : way.gaps) {
-      if (gap.item->tier || (!gap.left_changes && !gap.right_changes)) continue;
-      for (std::size_t i = 0; i < ways.size(); ++i) {
-        const auto nearer = [&](const Way::Gap& other) { return IsNearer(other, gap); };
-        if (std::any_of(ways[i].gaps.begin(), ways[i].gaps.end(), nearer) &&
-            Judged(match_of[i]).failure == Failure::kNone) {
-          return true;
-        }
-      }
-    }
-    return false;
-  }
-
-  static bool IsNearer(const Way::Gap& other, const Way::Gap& gap) {
-    if (other.item != gap.item) return false;
-    const auto inside = [&](int slot) { return slot > gap.left && slot < gap.right; };
-    return (gap.left_changes && other.right == gap.right && inside(other.left)) ||
-           (gap.right_changes && other.left == gap.left && inside(other.right));
-  }
-
-  const View& view_;
-  const Rule& rule_;
-  std::vector<Match> matches_;
-};
+using Indices = std::vector<std::size_t>;
 
 class Run {
  public:
   Run(const Grammar& grammar, const Rule& rule, const Form& form, bool notes)
-      : grammar_(grammar), rule_(rule), form_(form), notes_(notes), graph_(form, grammar.tree) {}
+      : grammar_(grammar), rule_(rule), form_(form), notes_(notes), start_{Graph(form, grammar.tree)} {}
 
-  Application AtOnce() {
-    const View view(grammar_, graph_);
+  Results AtOnce() {
+    const View view(grammar_, start_.graph);
     Matches matches(view, rule_);
-    Apply(view, matches, nullptr);
+    Indices all(matches.size());
+    std::iota(all.begin(), all.end(), 0);
+    const Indices standing = Standing(view, matches, all, &start_);
+    if (rule_.probability < 1) {
+      DrawAtEachSite(view, matches, standing);
+    } else {
+      Branch branch = start_;
+      Carry(view, matches, standing, nullptr, &branch);
+      End(std::move(branch));
+    }
     return Finished();
   }
 
-  Application Sweep(bool rightward) {
-    for (const Visit& visit : Visits(rightward)) {
-      if (!Problem().empty()) break;
-      if (view_ == nullptr) {
-        view_ = std::make_unique<View>(grammar_, graph_);
-        matches_ = std::make_unique<Matches>(*view_, rule_);
-      }
-      if (matches_->size() == 0) break;  // and so it will stay
-      if (Apply(*view_, *matches_, &visit)) {
-        matches_.reset();
-        view_.reset();
-      }
+  Results Sweep(bool rightward) {
+    const std::vector<Visit> visits = Visits(rightward);
+    open_.push_back(start_);
+    while (!open_.empty() && !results_.HasProblem()) {
+      Branch branch = std::move(open_.back());
+      open_.pop_back();
+      GoOn(visits, &branch);
+      End(std::move(branch));
     }
     return Finished();
   }
 
  private:
+  // How far one way of applying has come.
+  struct Branch {
+    Graph graph;
+    std::size_t next = 0;  // visit
+    double probability = 1;
+    std::vector<std::pair<int, bool>> words;  // drawn for already
+    int changed = 0;
+    std::map<std::string, int> blocked;
+    StepNotes notes;
+  };
   // A root with its slots, or one slot without a root.
   struct Visit {
     InstanceId root = kNone;
     InstanceId slot = kNone;
   };
 
+  // ---- at once ------------------------------------------------------------------------------------
+
+  void DrawAtEachSite(const View& view, const Matches& matches, const Indices& standing) {
+    Indices always;
+    std::vector<Indices> drawn;
+    for (Indices& site : Sites(view, matches, standing)) {
+      Requests requests(view);
+      for (std::size_t i : site) requests.Add(matches[i]);
+      if (requests.Changes()) {
+        drawn.push_back(std::move(site));
+      } else {
+        always.insert(always.end(), site.begin(), site.end());
+      }
+    }
+    if (drawn.size() > 30 || (std::size_t{1} << drawn.size()) > Limits().outcomes) {
+      SayTooMany();
+      return;
+    }
+    for (std::size_t left_out = 0; left_out < (std::size_t{1} << drawn.size()); ++left_out) {
+      Branch branch = start_;
+      Indices applying = always;
+      for (std::size_t site = 0; site < drawn.size(); ++site) {
+        const bool applies = ((left_out >> site) & 1) == 0;
+        branch.probability *= applies ? rule_.probability : 1 - rule_.probability;
+        if (applies) applying.insert(applying.end(), drawn[site].begin(), drawn[site].end());
+      }
+      Carry(view, matches, applying, nullptr, &branch);
+      End(std::move(branch));
+    }
+  }
+
+  // Matches linked by a common change; `by word`, all of one word.
+  std::vector<Indices> Sites(const View& view, const Matches& matches, const Indices& standing) const {
+    Requests all(view);
+    std::unordered_map<int, std::size_t> site_of_request, site_of_word;
+    std::vector<Indices> sites;
+    const auto join = [&](std::size_t from, std::size_t to) {
+      if (from == to) return;
+      sites[to].insert(sites[to].end(), sites[from].begin(), sites[from].end());
+      sites[from].clear();
+      for (auto* table : {&site_of_request, &site_of_word}) {
+        for (auto& entry : *table) entry.second = entry.second == from ? to : entry.second;
+      }
+    };
+    for (std::size_t i : standing) {
+      std::size_t mine = sites.size();
+      sites.push_back({i});
+      std::vector<int> asked;
+      all.Add(matches[i], &asked);
+      const auto link = [&](std::unordered_map<int, std::size_t>* table, int key) {
+        const auto [known, fresh] = table->insert({key, mine});
+        if (fresh) return;
+        const std::size_t theirs = known->second;
+        join(mine, theirs);
+        mine = theirs;
+      };
+      for (int request : asked) link(&site_of_request, request);
+      if (rule_.by_word) link(&site_of_word, WordOf(view, matches.FirstSlot(i)));
+    }
+    sites.erase(std::remove_if(sites.begin(), sites.end(), [](const Indices& site) { return site.empty(); }),
+                sites.end());
+    return sites;
+  }
+
+  // What one draw `by word` is for: the phrase, if the rule is within it.
+  int WordOf(const View& view, int slot) const {
+    return view.StretchOf(slot, rule_.within == Domain::kPhrase ? Boundary::kPhrase : Boundary::kWord);
+  }
+
+  // ---- in a sweep ---------------------------------------------------------------------------------
+
   std::vector<Visit> Visits(bool rightward) const {
     std::vector<Visit> visits;
+    const Graph& graph = start_.graph;
     const auto add = [&](const FormItem& item) {
       if (item.kind != FormItem::Kind::kSlot) return;
-      const InstanceId root = graph_.FindUnder(item.instance, kRootNode);
+      const InstanceId root = graph.FindUnder(item.instance, kRootNode);
       const bool known = root != kNone && std::any_of(visits.begin(), visits.end(),
                                                       [&](const Visit& visit) { return visit.root == root; });
       if (!known) visits.push_back({root, item.instance});
     };
     if (rightward) {
-      std::for_each(graph_.items.begin(), graph_.items.end(), add);
+      std::for_each(graph.items.begin(), graph.items.end(), add);
     } else {
-      std::for_each(graph_.items.rbegin(), graph_.items.rend(), add);
+      std::for_each(graph.items.rbegin(), graph.items.rend(), add);
     }
     return visits;
   }
 
-  bool IsAt(const View& view, const LabelSlots& labels, const Visit& visit) const {
-    const int slot = labels[rule_.changes.front().target];
-    if (slot < 0) return false;
-    return visit.root == kNone ? view.slot(slot) == visit.slot : view.root(slot) == visit.root;
+  void GoOn(const std::vector<Visit>& visits, Branch* branch) {
+    std::unique_ptr<View> view;        // of the form as it is now
+    std::unique_ptr<Matches> matches;  // on it
+    while (branch->next < visits.size() && !results_.HasProblem()) {
+      const Visit& visit = visits[branch->next++];
+      if (view == nullptr) {
+        view = std::make_unique<View>(grammar_, branch->graph);
+        matches = std::make_unique<Matches>(*view, rule_);
+      }
+      if (matches->size() == 0) break;  // and so it will stay
+      Indices here;
+      for (std::size_t i = 0; i < matches->size(); ++i) {
+        if (IsAt(*view, (*matches)[i], visit)) here.push_back(i);
+      }
+      if (here.empty()) continue;
+      const Indices standing = Standing(*view, *matches, here, branch);
+      if (rule_.probability < 1 && !Drawn(*view, *matches, standing, branch)) continue;
+      if (Carry(*view, *matches, standing, &visit, branch)) {
+        matches.reset();
+        view.reset();
+      }
+    }
   }
 
-  // Carries out the matches together (those at the visit, if there is one). True if the form changed.
-  bool Apply(const View& view, Matches& matches, const Visit* visit) {
-    Requests requests(view, rule_);
-    std::vector<const Match*> changing;
-    for (std::size_t i = 0; i < matches.size(); ++i) {
-      if (visit != nullptr && !IsAt(view, matches.labels(i), *visit)) continue;
-      const Match& match = matches.Judged(i);
-      if (match.failure != Failure::kNone) {
-        ++result_.blocked[NameOf(match.failure)];
-        if (notes_) NoteBlocked(view, rule_, match.labels, NameOf(match.failure), &result_.notes);
-        continue;
+  // Does the rule apply at this visit? If that is to be drawn, it does, and another branch goes on where it does not.
+  bool Drawn(const View& view, const Matches& matches, const Indices& standing, Branch* branch) {
+    Requests requests(view);
+    for (std::size_t i : standing) requests.Add(matches[i]);
+    if (!requests.Changes()) return false;
+    int word = 0;
+    if (rule_.by_word) {
+      word = WordOf(view, matches[standing.front()].labels[VisitedLabel(*matches[standing.front()].clause)]);
+      for (const auto& [known, applies] : branch->words) {
+        if (known == word) return applies;
       }
-      requests.Add(match.labels);
-      if (match.changes) changing.push_back(&match);
     }
-    // One may undo another: what one match cuts, another may ask for.
-    if (changing.empty() || !requests.Changes()) return false;
-    result_.changed += static_cast<int>(changing.size());
-    if (notes_) {
-      for (const Match* match : changing) NoteChanges(view, rule_, match->labels, &result_.notes);
-    }
-    result_.ambiguous = requests.Ambiguity();
-    if (visit != nullptr) result_.reaches = Reached(view, requests, *visit);
-    if (!Problem().empty()) return false;
-    Graph after = requests.Result();
-    graph_ = std::move(after);
+    Branch other = *branch;
+    branch->probability *= rule_.probability;
+    other.probability *= 1 - rule_.probability;
+    branch->words.push_back({word, true});
+    other.words.push_back({word, false});
+    open_.push_back(std::move(other));
+    if (open_.size() + results_.results.size() >= Limits().outcomes) SayTooMany();
     return true;
+  }
+
+  // The one label that an iterative rule changes.
+  static int VisitedLabel(const Clause& clause) {
+    for (int label : ChangedLabels(clause)) {
+      if (clause.KindOf(label) == Clause::LabelKind::kSlot) return label;
+    }
+    return -1;
+  }
+
+  static bool IsAt(const View& view, const Match& match, const Visit& visit) {
+    const int label = VisitedLabel(*match.clause);
+    const int slot = label < 0 ? -1 : match.labels[label];
+    if (slot < 0) return false;
+    return visit.root == kNone ? view.slot(slot) == visit.slot : view.root(slot) == visit.root;
   }
 
   // Another root that holds, directly or from above, a mother that something happens to.
@@ -219,43 +239,113 @@ class Run {
     return "";
   }
 
-  std::string Problem() const { return result_.ambiguous.empty() ? result_.reaches : result_.ambiguous; }
+  // ---- both ---------------------------------------------------------------------------------------
 
-  Application Finished() {
-    if (!Problem().empty()) {
-      result_.form = form_;
-      result_.changed = 0;
-    } else {
-      result_.form = graph_.ToForm();
+  Indices Standing(const View& view, Matches& matches, const Indices& among, Branch* branch) const {
+    return matches.Standing(among, [&](std::size_t i, Failure failure) {
+      ++branch->blocked[NameOf(failure)];
+      if (notes_) NoteBlocked(view, matches[i], failure, &branch->notes);
+    });
+  }
+
+  // Carries out the matches together. True if the form changed.
+  bool Carry(const View& view, const Matches& matches, const Indices& applying, const Visit* visit, Branch* branch) {
+    Requests requests(view);
+    int changing = 0;
+    for (std::size_t i : applying) {
+      requests.Add(matches[i]);
+      changing += matches.Changes(i) ? 1 : 0;
     }
-    return std::move(result_);
+    // One may undo another: what one match cuts, another may ask for.
+    if (changing == 0 || !requests.Changes()) return false;
+    branch->changed += changing;
+    for (std::size_t i : applying) {
+      if (notes_ && matches.Changes(i)) NoteChanges(view, matches[i], &branch->notes);
+    }
+    results_.ambiguous = requests.Ambiguity();
+    if (visit != nullptr) results_.reaches = Reached(view, requests, *visit);
+    if (results_.HasProblem()) return false;
+    Graph after = requests.Result();
+    branch->graph = std::move(after);
+    return true;
+  }
+
+  void End(Branch branch) {
+    if (branch.probability <= 0) return;
+    results_.results.push_back({branch.graph.ToForm(), branch.probability, branch.probability, 0, branch.changed,
+                                std::move(branch.blocked), std::move(branch.notes)});
+  }
+
+  void SayTooMany() {
+    results_.too_many = "it is optional and may come out in more than " + std::to_string(Limits().outcomes) + " ways";
+  }
+
+  Results Finished() {
+    if (results_.HasProblem()) {
+      results_.results.resize(1);
+      Result& result = results_.results.front();
+      result.form = form_;
+      result.probability = result.likeliest = 1;
+      result.changed = 0;
+    } else if (results_.results.size() > 1) {
+      SumEqualForms(&results_.results);
+    }
+    return std::move(results_);
   }
 
   const Grammar& grammar_;
   const Rule& rule_;
   const Form& form_;
   const bool notes_;
-  Graph graph_;
-  std::unique_ptr<View> view_;        // of the form as it is now
-  std::unique_ptr<Matches> matches_;  // on it
-  Application result_;
+  Branch start_;
+  std::vector<Branch> open_;
+  Results results_;
 };
 
-Form WithoutEmptySlots(const Form& form) {
-  Form kept = form;
-  kept.items.erase(std::remove_if(kept.items.begin(), kept.items.end(),
-                                  [&](const FormItem& item) {
-                                    return item.kind == FormItem::Kind::kSlot && RootOf(form, item) < 0;
-                                  }),
-                   kept.items.end());
-  return Canonical(kept);
+std::size_t HashOf(const Form& form) {
+  std::size_t hash = form.items.size();
+  const auto mix = [&](std::size_t part) { hash = hash * 1099511628211u + part + 1; };
+  for (const Instance& instance : form.instances) {
+    mix(instance.node);
+    mix(instance.value);
+    for (InstanceId daughter : instance.daughters) mix(daughter);
+  }
+  for (const FormItem& item : form.items) mix(static_cast<std::size_t>(item.boundary));
+  return hash;
 }
 
 }  // namespace
-}  // namespace graph
 
-Application ApplyRule(const Grammar& grammar, const Rule& rule, const Form& form, bool notes) {
-  graph::Run run(grammar, rule, form, notes);
+void SumEqualForms(std::vector<Result>* results) {
+  std::unordered_multimap<std::size_t, std::size_t> known;
+  std::vector<Result> sums;
+  for (Result& result : *results) {
+    const std::size_t hash = HashOf(result.form);
+    const auto [begin, end] = known.equal_range(hash);
+    const auto same =
+        std::find_if(begin, end, [&](const auto& entry) { return sums[entry.second].form == result.form; });
+    if (same == end) {
+      known.insert({hash, sums.size()});
+      sums.push_back(std::move(result));
+      continue;
+    }
+    Result& sum = sums[same->second];
+    const double probability = sum.probability + result.probability;
+    if (result.likeliest > sum.likeliest) sum = std::move(result);
+    sum.probability = probability;
+  }
+  std::stable_sort(sums.begin(), sums.end(),
+                   [](const Result& a, const Result& b) { return a.probability > b.probability; });
+  *results = std::move(sums);
+}
+
+Results ApplyAllWays(const Grammar& grammar, const Rule& rule, const Form& form, bool notes) {
+  if (rule.kind == Rule::Kind::kComplete) {
+    Results results;
+    results.results.push_back(Completed(grammar, form, notes));
+    return results;
+  }
+  Run run(grammar, rule, form, notes);
   switch (rule.mode) {
     case Rule::Mode::kAtOnce:
       return run.AtOnce();
@@ -267,30 +357,4 @@ Application ApplyRule(const Grammar& grammar, const Rule& rule, const Form& form
   return {};
 }
 
-Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes) {
-  Derivation derivation;
-  derivation.underlying = Canonical(underlying);
-  const Form* current = &derivation.underlying;
-  derivation.steps.reserve(grammar.rules.size());
-  for (std::size_t i = 0; i < grammar.rules.size(); ++i) {
-    const Rule& rule = grammar.rules[i];
-    Application application = ApplyRule(grammar, rule, *current, notes);
-    if (!application.ambiguous.empty()) {
-      derivation.problem = "rule '" + rule.name + "' is ambiguous here: " + application.ambiguous;
-    } else if (!application.reaches.empty()) {
-      derivation.problem = "rule '" + rule.name + "' changes one root at a time: " + application.reaches;
-    }
-    Step step;
-    step.rule = static_cast<int>(i);
-    step.after = std::move(application.form);
-    step.applied = application.changed > 0;
-    step.notes = std::move(application.notes);
-    derivation.steps.push_back(std::move(step));
-    current = &derivation.steps.back().after;
-    if (!derivation.problem.empty()) break;
-  }
-  derivation.surface = graph::WithoutEmptySlots(*current);
-  return derivation;
-}
-
-}  // namespace tiersmith
+}  // namespace tiersmith::graph

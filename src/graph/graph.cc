@@ -106,6 +106,14 @@ class Numbering {
   Form form_;
 };
 
+void CollectTier(const Graph& graph, InstanceId id, NodeId node, std::vector<InstanceId>* tier) {
+  if (graph[id].node == node) {
+    if (tier->empty() || tier->back() != id) tier->push_back(id);
+    return;
+  }
+  for (InstanceId daughter : graph[id].daughters) CollectTier(graph, daughter, node, tier);
+}
+
 int RankUnder(const Tree& tree, NodeId mother, NodeId node) {
   const std::vector<NodeId>& daughters = tree[mother].daughters;
   return static_cast<int>(std::find(daughters.begin(), daughters.end(), node) - daughters.begin());
@@ -141,6 +149,17 @@ InstanceId Graph::FindUnder(InstanceId slot, NodeId node) const {
     if (nodes[daughter].node == node) return daughter;
   }
   return kNone;
+}
+
+IdList Graph::AllUnder(InstanceId slot, NodeId node) const {
+  if (node == kSlotNode) return {slot};
+  IdList list;
+  for (InstanceId mother : AllUnder(slot, (*tree_)[node].mother)) {
+    for (InstanceId daughter : nodes[mother].daughters) {
+      if (nodes[daughter].node == node) list.push_back(daughter);
+    }
+  }
+  return list;
 }
 
 bool Graph::Holds(InstanceId above, InstanceId id) const {
@@ -197,6 +216,21 @@ void Graph::SetList(InstanceId mother, NodeId node, const IdList& list) {
   auto place = std::find_if(daughters.begin(), daughters.end(),
                             [&](InstanceId d) { return RankUnder(*tree_, kind, nodes[d].node) > rank; });
   daughters.insert(place, list.begin(), list.end());
+}
+
+void Graph::Merge(InstanceId kept, InstanceId gone) {
+  for (Node& node : nodes) {
+    std::replace(node.daughters.begin(), node.daughters.end(), gone, kept);
+    node.daughters.erase(std::unique(node.daughters.begin(), node.daughters.end()), node.daughters.end());
+  }
+}
+
+std::vector<InstanceId> Graph::TierOf(NodeId node) const {
+  std::vector<InstanceId> tier;
+  for (const FormItem& item : items) {
+    if (item.kind != FormItem::Kind::kBoundary) CollectTier(*this, item.instance, node, &tier);
+  }
+  return tier;
 }
 
 std::optional<NodeId> Graph::CrossedTier() const { return CrossingWalk(*this).Run(); }

@@ -40,6 +40,8 @@ class Graph {
   IdList ListOf(InstanceId mother, NodeId node) const;
   // The one of `node` that `slot` bears, or kNone (of several: the first). The slot itself for node 0.
   InstanceId FindUnder(InstanceId slot, NodeId node) const;
+  // All of `node` that `slot` bears, in order.
+  IdList AllUnder(InstanceId slot, NodeId node) const;
   // Is `id` the instance `above` or anywhere under it?
   bool Holds(InstanceId above, InstanceId id) const;
   // Equal value and equal content below.
@@ -50,6 +52,11 @@ class Graph {
   InstanceId AddContent(const FeatureTree& content);
   // Replaces what `mother` bears of `node`.
   void SetList(InstanceId mother, NodeId node, const IdList& list);
+
+  // All holders of `gone` hold `kept`.
+  void Merge(InstanceId kept, InstanceId gone);
+  // The instances of `node` from left to right, each stretch once; floats stand where they are.
+  std::vector<InstanceId> TierOf(NodeId node) const;
 
   // Do lines cross? On each tier the mothers' lists are written one after the other, each mother once; an
   // instance must stand in one unbroken stretch.

@@ -28,11 +28,16 @@ struct Application {
   Form form;                           // the result (the input if there is a problem); optional: of the likeliest way
   std::vector<Outcome> outcomes;       // each form once, likeliest first; one of probability 1 unless the rule is optional
   int changed = 0;                     // matches that changed something
-  std::map<std::string, int> blocked;  // matches that failed, by reason: "capacity", "crossing"
+  std::map<std::string, int> blocked;  // matches that failed, by reason: "capacity", "crossing", "sharing",
+                                       // "preserving"; "prefer": gave way to another
   std::string ambiguous;               // not empty: two matches ask for different things; says what
   std::string reaches;                 // not empty: an iterative change reached another root
+  std::string too_many;                // not empty: more outcomes than Limits::outcomes; says so
   StepNotes notes;                     // filled when asked for
 };
+
+// The form as it is read before the first rule: Grammar::fusions carried out, in order.
+Form Fused(const Grammar& grammar, const Form& typed);
 
 // Applies one rule once (one sweep if it iterates). Pure.
 Application ApplyRule(const Grammar& grammar, const Rule& rule, const Form& form, bool notes = false);
@@ -44,11 +49,12 @@ struct Step {
   StepNotes notes;
 };
 struct Derivation {
-  Form underlying;
+  Form underlying;  // fused
   std::vector<Step> steps;
   Form surface;         // empty slots erased; where rules are optional, the likeliest (and `steps` lead to it)
   std::vector<Outcome> outcomes;  // all surfaces, each once, likeliest first
-  std::string problem;  // not empty: ambiguous or reaching another root, names the rule; surface is then not valid
+  std::string problem;  // not empty: ambiguous, reaching another root, or too many outcomes; names the rule; surface is
+                        // then not valid
 };
 Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes = false);
 

@@ -5,8 +5,7 @@
 #include <string>
 
 #include "graph/interpreter.h"
-#include "graph/matching.h"
-#include "graph/requests.h"
+#include "graph/matches.h"
 
 namespace tiersmith::graph {
 
@@ -14,10 +13,9 @@ namespace tiersmith::graph {
 std::string NameOfSlot(const View& view, int slot);
 
 // Adds what this match alone changes: "t's Place spread to n", "n: Place cut", "s deleted".
-void NoteChanges(const View& view, const Rule& rule, const LabelSlots& match, StepNotes* notes);
+void NoteChanges(const View& view, const Match& match, StepNotes* notes);
 
 // Adds why this match failed: "blocked at a: no room for Place".
-void NoteBlocked(const View& view, const Rule& rule, const LabelSlots& match, const std::string& reason,
-                 StepNotes* notes);
+void NoteBlocked(const View& view, const Match& match, Failure failure, StepNotes* notes);
 
 }  // namespace tiersmith::graph
