@@ -10,6 +10,7 @@
 #include "graph/apply.h"
 
 #include <algorithm>
+#include <cmath>
 #include <memory>
 #include <numeric>
 #include <unordered_map>
@@ -92,11 +93,12 @@ class Run {
       SayTooMany();
       return;
     }
+    // First where all apply, last where none does; the sites on the left apply longest.
     for (std::size_t left_out = 0; left_out < (std::size_t{1} << drawn.size()); ++left_out) {
       Branch branch = start_;
       Indices applying = always;
       for (std::size_t site = 0; site < drawn.size(); ++site) {
-        const bool applies = ((left_out >> site) & 1) == 0;
+        const bool applies = ((left_out >> (drawn.size() - 1 - site)) & 1) == 0;
         branch.probability *= applies ? rule_.probability : 1 - rule_.probability;
         if (applies) applying.insert(applying.end(), drawn[site].begin(), drawn[site].end());
       }
@@ -334,8 +336,10 @@ void SumEqualForms(std::vector<Result>* results) {
     if (result.likeliest > sum.likeliest) sum = std::move(result);
     sum.probability = probability;
   }
+  // Sums of the same products in another order differ in their last digits.
+  const auto rounded = [](double probability) { return std::llround(probability * 1e12); };
   std::stable_sort(sums.begin(), sums.end(),
-                   [](const Result& a, const Result& b) { return a.probability > b.probability; });
+                   [&](const Result& a, const Result& b) { return rounded(a.probability) > rounded(b.probability); });
   *results = std::move(sums);
 }
 

@@ -37,8 +37,7 @@ class Completing {
     if (root == kNone || full_.count(root) != 0) return;
     FeatureTree tree = before_.Content(root);
     const int symbol = grammar_.inventory.Spell(tree).symbol;
-    const FeatureTree* full =
-        symbol < 0 ? nullptr : &grammar_.inventory.symbols[static_cast<std::size_t>(symbol)].full;
+    const FeatureTree* full = symbol < 0 ? nullptr : &grammar_.inventory.symbols[static_cast<std::size_t>(symbol)].full;
     if (full == nullptr || *full == tree) {
       full_.emplace(root, std::move(tree));
       return;
@@ -111,8 +110,8 @@ class Completing {
   const Graph before_;
   const View view_;
   Graph after_;
-  std::map<InstanceId, FeatureTree> full_;                                     // per root
-  std::map<InstanceId, std::pair<const FeatureTree*, InstanceId>> last_;       // what stands for it on the left
+  std::map<InstanceId, FeatureTree> full_;                                // per root
+  std::map<InstanceId, std::pair<const FeatureTree*, InstanceId>> last_;  // what stands for it on the left
   Result result_;
 };
 

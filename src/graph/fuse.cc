@@ -45,15 +45,16 @@ void Fuse(const Grammar& grammar, const Fusion& fusion, Graph* graph) {
   const std::vector<Way> ways = MatchesOf(view, fusion);
   const auto inside = [&](const Stretch& a, const Stretch& b) {
     return !fusion.in || std::any_of(ways.begin(), ways.end(), [&](const Way& way) {
-             return way.slots.front() <= a.last && way.slots.back() >= b.first;
-           });
+      return way.slots.front() <= a.last && way.slots.back() >= b.first;
+    });
   };
   const std::vector<Stretch> stretches = StretchesOf(view, fusion.node);
   InstanceId kept = stretches.empty() ? kNone : stretches.front().id;
   for (std::size_t i = 1; i < stretches.size(); ++i) {
     const Stretch &a = stretches[i - 1], &b = stretches[i];
-    const bool one_morpheme = a.last >= 0 && b.first >= 0 &&
-                              view.StretchOf(a.last, Boundary::kMorpheme) == view.StretchOf(b.first, Boundary::kMorpheme);
+    const bool one_morpheme =
+        a.last >= 0 && b.first >= 0 &&
+        view.StretchOf(a.last, Boundary::kMorpheme) == view.StretchOf(b.first, Boundary::kMorpheme);
     if (one_morpheme && before.Equal(a.id, b.id) && inside(a, b)) {
       graph->Merge(kept, b.id);
     } else {

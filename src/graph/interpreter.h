@@ -25,9 +25,9 @@ struct Outcome {
 };
 
 struct Application {
-  Form form;                           // the result (the input if there is a problem); optional: of the likeliest way
-  std::vector<Outcome> outcomes;       // each form once, likeliest first; one of probability 1 unless the rule is optional
-  int changed = 0;                     // matches that changed something
+  Form form;                      // the result (the input if there is a problem); optional: of the likeliest way
+  std::vector<Outcome> outcomes;  // each form once, likeliest first; one of probability 1 unless the rule is optional
+  int changed = 0;                // matches that changed something
   std::map<std::string, int> blocked;  // matches that failed, by reason: "capacity", "crossing", "sharing",
                                        // "preserving"; "prefer": gave way to another
   std::string ambiguous;               // not empty: two matches ask for different things; says what
@@ -51,7 +51,7 @@ struct Step {
 struct Derivation {
   Form underlying;  // fused
   std::vector<Step> steps;
-  Form surface;         // empty slots erased; where rules are optional, the likeliest (and `steps` lead to it)
+  Form surface;  // empty slots erased; where rules are optional, the likeliest (and `steps` lead to it)
   std::vector<Outcome> outcomes;  // all surfaces, each once, likeliest first
   std::string problem;  // not empty: ambiguous, reaching another root, or too many outcomes; names the rule; surface is
                         // then not valid

@@ -244,8 +244,8 @@ std::vector<std::size_t> Matches::Standing(const std::vector<std::size_t>& among
   std::vector<std::size_t> able, standing, applying;
   for (std::size_t i : among) {
     const Candidate& candidate = Judged(i);
-    const Failure failure = candidate.failure == Failure::kNone && candidate.shared_outside ? Failure::kSharing
-                                                                                            : candidate.failure;
+    const Failure failure =
+        candidate.failure == Failure::kNone && candidate.shared_outside ? Failure::kSharing : candidate.failure;
     if (failure == Failure::kNone) {
       able.push_back(i);
     } else {

@@ -250,15 +250,12 @@ class Search {
     return false;
   }
 
-  bool InSomeDomain(int at) const {
-    return rule_.within != Domain::kStem || view_.StemOf(track_.slots[at]) != 0;
-  }
+  bool InSomeDomain(int at) const { return rule_.within != Domain::kStem || view_.StemOf(track_.slots[at]) != 0; }
   // May a match go on from the seen slot before this one?
   bool InsideDomain(int at) const {
     const Boundary run = track_.runs[at];
     if (run >= edge_ || (place_.joined && run != Boundary::kNone)) return false;
-    return rule_.within != Domain::kStem ||
-           view_.StemOf(track_.slots[at - 1]) == view_.StemOf(track_.slots[at]);
+    return rule_.within != Domain::kStem || view_.StemOf(track_.slots[at - 1]) == view_.StemOf(track_.slots[at]);
   }
   bool MayFollow(int at) const {
     const Boundary run = track_.runs[at];
@@ -280,8 +277,7 @@ class Search {
     const int label_before = item.label >= 0 ? labels_[item.label] : -1;
     if (item.label >= 0) labels_[item.label] = ordinal;
     if (keeps_slots_) matched_.push_back(ordinal);
-    const bool end =
-        clause_.variables == 0 ? Continue(after) : Bind(with_variables_[RowOf(item)], 0, ordinal, after);
+    const bool end = clause_.variables == 0 ? Continue(after) : Bind(with_variables_[RowOf(item)], 0, ordinal, after);
     if (keeps_slots_) matched_.pop_back();
     if (item.label >= 0) labels_[item.label] = label_before;
     place_ = before;
@@ -295,8 +291,7 @@ class Search {
     InstanceId& variable = variables_[static_cast<std::size_t>(tests[next]->variable)];
     const IdList values = view_.ValuesFor(*tests[next], ordinal);
     if (variable != kNone) {
-      return std::find(values.begin(), values.end(), variable) != values.end() &&
-             Bind(tests, next + 1, ordinal, after);
+      return std::find(values.begin(), values.end(), variable) != values.end() && Bind(tests, next + 1, ordinal, after);
     }
     bool end = false;
     for (InstanceId value : values) {
@@ -376,7 +371,7 @@ class Search {
   const boost::container::small_vector<int, 4> changed_;
   const bool keeps_slots_;
   boost::container::small_vector<const PatternItem*, 8> slot_items_;
-  std::vector<Tests> with_variables_;                       // per slot item, where the clause has variables
+  std::vector<Tests> with_variables_;                      // per slot item, where the clause has variables
   boost::container::small_vector<signed char, 96> known_;  // per slot item and slot: 0 not tested yet
   Place place_;
   LabelSlots labels_;
@@ -435,13 +430,13 @@ bool Holds(const View& view, const TagTest& test, const Match& match) {
 
 bool Discarded(const View& view, const Rule& rule, const Match& match) {
   const Clause& clause = *match.clause;
-  return !std::all_of(clause.conditions.begin(), clause.conditions.end(),
-                      [&](const Condition& condition) { return Holds(view, condition, match.labels); }) ||
-         !std::all_of(clause.tags.begin(), clause.tags.end(),
-                      [&](const TagTest& test) { return Holds(view, test, match); }) ||
-         std::any_of(clause.unless.begin(), clause.unless.end(), [&](const Pattern& pattern) {
-           return Search(view, rule, clause, pattern, &match).Any();
-         });
+  return !std::all_of(clause.conditions.begin(), clause.conditions.end(), [&](const Condition& condition) {
+    return Holds(view, condition, match.labels);
+  }) || !std::all_of(clause.tags.begin(), clause.tags.end(), [&](const TagTest& test) {
+    return Holds(view, test, match);
+  }) || std::any_of(clause.unless.begin(), clause.unless.end(), [&](const Pattern& pattern) {
+    return Search(view, rule, clause, pattern, &match).Any();
+  });
 }
 
 Boundary RunAfter(const Graph& graph, int item) {
@@ -560,9 +555,7 @@ bool View::Passes(const FeatureTest& test, int ordinal) const {
     any |= last;
     bears = true;
   }
-  const bool value = test.part == FeatureTest::Part::kAny     ? any
-                     : test.part == FeatureTest::Part::kFirst ? first
-                                                              : last;
+  const bool value = test.part == FeatureTest::Part::kAny ? any : test.part == FeatureTest::Part::kFirst ? first : last;
   const auto shared = [&] {
     return std::any_of(borne_.begin() + slot.begin, borne_.begin() + slot.end, [&](const Borne& borne) {
       return borne.node == test.node && BorneByAnother(borne.id, ordinal, test.side);
@@ -643,9 +636,8 @@ std::uint64_t View::WordTags(int ordinal) const {
 }
 
 int View::StretchOf(int ordinal, Boundary strength) const {
-  return static_cast<int>(
-      std::count_if(graph_.items.begin(), graph_.items.begin() + item(ordinal),
-                    [&](const FormItem& other) { return other.boundary >= strength; }));
+  return static_cast<int>(std::count_if(graph_.items.begin(), graph_.items.begin() + item(ordinal),
+                                        [&](const FormItem& other) { return other.boundary >= strength; }));
 }
 
 int View::StemOf(int ordinal) const {
@@ -733,8 +725,7 @@ bool AsksForSlots(const Rule& rule) {
 std::vector<Way> FindWays(const View& view, const Rule& rule, const Clause& clause, bool with_slots) {
   std::vector<Way> ways = Search(view, rule, clause, clause.where, nullptr, with_slots).All();
   if (ways.empty() || (clause.conditions.empty() && clause.tags.empty() && clause.unless.empty())) return ways;
-  ways.erase(std::remove_if(ways.begin(), ways.end(),
-                            [&](const Way& way) { return Discarded(view, rule, way.match); }),
+  ways.erase(std::remove_if(ways.begin(), ways.end(), [&](const Way& way) { return Discarded(view, rule, way.match); }),
              ways.end());
   return ways;
 }

@@ -108,9 +108,8 @@ std::string SettingsNote(const View& view, const Match& match, const Change& cha
   std::string values;
   for (const Setting& setting : change.settings) {
     const IdList mothers = alone.MothersOf(slot, setting.node);
-    const bool asked = std::any_of(mothers.begin(), mothers.end(), [&](InstanceId mother) {
-      return alone.ContentAsked(mother, setting.node);
-    });
+    const bool asked = std::any_of(mothers.begin(), mothers.end(),
+                                   [&](InstanceId mother) { return alone.ContentAsked(mother, setting.node); });
     if (asked) values += (values.empty() ? "" : ", ") + ValuesOf(view, setting, match);
   }
   const char* verb = change.op == Change::Op::kSet ? " set to [" : " filled with [";
@@ -123,8 +122,8 @@ std::string SpreadNote(const View& view, const Match& match, const Change& chang
   if (carried == kNone) return "";
   for (InstanceId mother : alone.MothersOf(slot, change.node)) {
     if (!alone.LineAdded(mother, change.node, carried)) continue;
-    return NameOfLabel(view, match, change.source) + "'s " + NameOfMember(view.graph().tree(), change) +
-           " spread to " + NameOfLabel(view, match, change.target) + HeldToo(view, slot, mother);
+    return NameOfLabel(view, match, change.source) + "'s " + NameOfMember(view.graph().tree(), change) + " spread to " +
+           NameOfLabel(view, match, change.target) + HeldToo(view, slot, mother);
   }
   return "";
 }
@@ -174,8 +173,7 @@ std::string NoteOf(const View& view, const Match& match, const Change& change, c
       return alone.DeletesSlot() ? name + " made shorter" : "";
     case Change::Op::kMerge:
       if (!alone.Merges()) return "";
-      return NameOfLabel(view, match, change.source) + "'s and " + name + "'s " + tree[change.node].name +
-             " made one";
+      return NameOfLabel(view, match, change.source) + "'s and " + name + "'s " + tree[change.node].name + " made one";
   }
   return "";
 }

@@ -33,8 +33,7 @@ Requests::Requests(const View& view) : view_(view), made_graph_(view.graph()) {}
 // ---- the form before ------------------------------------------------------------------------------
 
 bool Requests::IsMade(InstanceId id) const {
-  return !IsOld(id) &&
-         std::any_of(made_.begin(), made_.end(), [&](const Made& made) { return made.made == id; });
+  return !IsOld(id) && std::any_of(made_.begin(), made_.end(), [&](const Made& made) { return made.made == id; });
 }
 
 IdList Requests::OldList(InstanceId mother, NodeId node) const {
@@ -144,8 +143,7 @@ bool Requests::SpreadHasRoom(const Change& spread, const Match& match) const {
   const InstanceId carried = Carried(spread, match);
   if (carried == kNone) return true;
   const Item source = ItemOf(match, spread.source), target = ItemOf(match, spread.target);
-  const InstanceId mother =
-      Facing(MothersOf(target.slot, spread.node), /*right=*/source.position > target.position);
+  const InstanceId mother = Facing(MothersOf(target.slot, spread.node), /*right=*/source.position > target.position);
   const IdList old = mother == kNone ? IdList() : OldList(mother, spread.node);
   if (Has(old, carried)) return true;
   IdList stays = old;
@@ -254,11 +252,9 @@ void Requests::AddChange(const Change& change, const Match& match) {
 void Requests::AddInsertion(const Change& change, const Match& match) {
   const int host = match.labels[change.target];
   if (host < 0) return;
-  Note(Ask::kInsert, static_cast<InstanceId>(host), 0,
-       static_cast<InstanceId>(&change - match.clause->changes.data()));
-  const bool known = std::any_of(insertions_.begin(), insertions_.end(), [&](const Insertion& other) {
-    return other.host == host && other.change == &change;
-  });
+  Note(Ask::kInsert, static_cast<InstanceId>(host), 0, static_cast<InstanceId>(&change - match.clause->changes.data()));
+  const bool known = std::any_of(insertions_.begin(), insertions_.end(),
+                                 [&](const Insertion& other) { return other.host == host && other.change == &change; });
   if (!known) insertions_.push_back({host, &change, AddInserted(made_graph_, change)});
 }
 
@@ -376,8 +372,8 @@ void Requests::AddDeletion(const Change& change, const Match& match) {
   }
   for (int item : view_.RunBefore(at, match.clause->where.names_empty)) {
     Note(Ask::kDeleteBoundary, static_cast<InstanceId>(item), 0, 0);
-    const bool known = std::find(boundary_deletions_.begin(), boundary_deletions_.end(), item) !=
-                       boundary_deletions_.end();
+    const bool known =
+        std::find(boundary_deletions_.begin(), boundary_deletions_.end(), item) != boundary_deletions_.end();
     if (!known) boundary_deletions_.push_back(item);
   }
 }
@@ -516,8 +512,8 @@ std::string Requests::LineConflict(const Lines& lines) const {
 }
 
 bool Requests::Changes() const {
-  if (!insertions_.empty() || !deletions_.empty() || !contents_.empty() || !merges_.empty() ||
-      !lengthened_.empty() || !boundary_deletions_.empty()) {
+  if (!insertions_.empty() || !deletions_.empty() || !contents_.empty() || !merges_.empty() || !lengthened_.empty() ||
+      !boundary_deletions_.empty()) {
     return true;
   }
   return std::any_of(lines_.begin(), lines_.end(),
@@ -682,8 +678,8 @@ void Requests::SetItems(Graph& graph, const IdList& inserted, const Longers& lon
   for (int i = 0; i < static_cast<int>(graph.items.size()); ++i) {
     FormItem item = graph.items[static_cast<std::size_t>(i)];
     insert(i, true);
-    const bool deleted = std::find(boundary_deletions_.begin(), boundary_deletions_.end(), i) !=
-                         boundary_deletions_.end();
+    const bool deleted =
+        std::find(boundary_deletions_.begin(), boundary_deletions_.end(), i) != boundary_deletions_.end();
     // A stronger boundary leaves the morphemes apart.
     const bool weakened = deleted && item.boundary > Boundary::kMorpheme;
     if (weakened) item.boundary = Boundary::kMorpheme;

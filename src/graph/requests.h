@@ -176,7 +176,7 @@ class Requests {
   boost::container::small_vector<int, 2> boundary_deletions_;  // by item
   InstanceId disputed_ = kNone;                                // a mother asked for two contents
   NodeId disputed_node_ = 0;
-  std::vector<Asked> asked_;          // each request once, where they are numbered
+  std::vector<Asked> asked_;            // each request once, where they are numbered
   std::vector<int>* asking_ = nullptr;  // of the match being added
 };
 

@@ -161,12 +161,19 @@ void AddSymbols(Grammar* grammar) {
 
 // ---- forms --------------------------------------------------------------------------------------
 
-Boundary BoundaryOf(const std::string& word) {
+Boundary BoundaryOf(const std::string& text) {
+  const std::string word = text.substr(0, text.find('@'));
   if (word == "-") return Boundary::kMorpheme;
   if (word == "=") return Boundary::kClitic;
   if (word == "#") return Boundary::kWord;
   if (word == "‖") return Boundary::kPhrase;
   return Boundary::kNone;
+}
+
+int TagOf(const Grammar& grammar, const std::string& name) {
+  const auto at = std::find(grammar.tags.begin(), grammar.tags.end(), name);
+  if (at == grammar.tags.end()) throw std::runtime_error("no tag " + name);
+  return static_cast<int>(at - grammar.tags.begin());
 }
 
 InstanceId* Find(Form* form, InstanceId mother, NodeId node, int count) {
@@ -187,7 +194,7 @@ class FormReader {
     for (const std::string& word : Words(text)) {
       const Boundary boundary = BoundaryOf(word);
       if (boundary != Boundary::kNone) {
-        form_.items.push_back({FormItem::Kind::kBoundary, boundary, 0});
+        form_.items.push_back({FormItem::Kind::kBoundary, boundary, 0, TagsOf(word)});
       } else {
         Slot(word);
       }
@@ -199,6 +206,14 @@ class FormReader {
   }
 
  private:
+  std::uint64_t TagsOf(const std::string& word) const {
+    std::uint64_t tags = 0;
+    for (std::size_t at = word.find('@'); at != std::string::npos; at = word.find('@', at + 1)) {
+      tags |= std::uint64_t{1} << TagOf(grammar_, word.substr(at + 1, word.find('@', at + 1) - at - 1));
+    }
+    return tags;
+  }
+
   void Slot(const std::string& word) {
     const InstanceId slot = static_cast<InstanceId>(form_.instances.size());
     form_.instances.push_back({kSlotNode, 0, {}});
@@ -238,6 +253,45 @@ class FormReader {
   std::vector<std::tuple<InstanceId, NodeId, int, std::string>> shares_;
   std::map<std::pair<NodeId, std::string>, InstanceId> marked_;
 };
+
+// "αback", "-βback".
+bool VariableTest(const Grammar& grammar, const std::string& word, FeatureTest* test) {
+  const bool minus = word[0] == '-';
+  const std::string rest = word.substr(minus ? 1 : 0);
+  const int variable = rest.compare(0, 2, "α") == 0 ? 0 : rest.compare(0, 2, "β") == 0 ? 1 : -1;
+  if (variable < 0) return false;
+  test->kind = minus ? FeatureTest::Kind::kDiffers : FeatureTest::Kind::kAgrees;
+  test->node = NodeOf(grammar, rest.substr(2));
+  test->variable = variable;
+  return true;
+}
+
+// What is no value and no node; `next` is taken by "shared" and the like, for any node but the root.
+bool SpecialTest(const Grammar& grammar, const std::string& word, const std::string& next, FeatureTest* test) {
+  using Kind = FeatureTest::Kind;
+  if (VariableTest(grammar, word, test)) return true;
+  const std::map<std::string, Kind> of_root = {
+      {"long", Kind::kLong}, {"short", Kind::kShort}, {"half1", Kind::kHalfFirst}, {"half2", Kind::kHalfSecond}};
+  if (const auto found = of_root.find(word); found != of_root.end()) {
+    test->kind = found->second;
+    test->node = kRootNode;
+    return true;
+  }
+  if (word == "begins" || word == "ends") {
+    test->kind = Kind::kHasValue;
+    test->node = NodeOf(grammar, next.substr(1));
+    test->value = next[0] == '+';
+    test->part = word == "begins" ? FeatureTest::Part::kFirst : FeatureTest::Part::kLast;
+    return true;
+  }
+  const std::string name = word.substr(0, word.find_first_of("<>"));
+  if (name != "shared" && name != "unshared") return false;
+  test->kind = name == "shared" ? Kind::kShared : Kind::kUnshared;
+  test->node = NodeOf(grammar, next);
+  if (word.back() == '<') test->side = FeatureTest::Side::kLeft;
+  if (word.back() == '>') test->side = FeatureTest::Side::kRight;
+  return true;
+}
 
 SlotTest TestOf(const Grammar& grammar, const std::string& text) {
   SlotTest test;
@@ -304,7 +358,18 @@ SlotTest BundleOf(const Grammar& grammar, const std::string& text) {
   SlotTest test;
   if (text.empty()) return test;
   test.op = SlotTest::Op::kBundle;
-  for (const Said& said : Read(grammar.tree, text)) {
+  std::string plain;
+  const std::vector<std::string> words = Words(text);
+  for (std::size_t i = 0; i < words.size(); ++i) {
+    FeatureTest feature;
+    if (SpecialTest(grammar, words[i], i + 1 < words.size() ? words[i + 1] : "", &feature)) {
+      test.bundle.push_back(feature);
+      i += feature.variable < 0 && feature.node != kRootNode ? 1 : 0;
+    } else {
+      plain += words[i] + " ";
+    }
+  }
+  for (const Said& said : Read(grammar.tree, plain)) {
     if (said.no) {
       test.bundle.push_back({FeatureTest::Kind::kLacks, said.node, 0});
     } else if (said.bare) {
@@ -318,7 +383,16 @@ SlotTest BundleOf(const Grammar& grammar, const std::string& text) {
 
 std::vector<Setting> SettingsOf(const Grammar& grammar, const std::string& text) {
   std::vector<Setting> settings;
-  for (const Said& said : Read(grammar.tree, text)) settings.push_back({said.node, said.values});
+  std::string plain;
+  for (const std::string& word : Words(text)) {
+    FeatureTest variable;
+    if (!VariableTest(grammar, word, &variable)) {
+      plain += word + " ";
+      continue;
+    }
+    settings.push_back({variable.node, {}, variable.variable, variable.kind == FeatureTest::Kind::kDiffers});
+  }
+  for (const Said& said : Read(grammar.tree, plain)) settings.push_back({said.node, said.values});
   return settings;
 }
 
@@ -337,18 +411,45 @@ RuleBuilder::RuleBuilder(const Grammar& grammar, const std::string& where) : gra
   rule_.where = PatternOf(where);
 }
 
-int RuleBuilder::LabelOf(const std::string& name) {
-  const auto at = std::find(rule_.labels.begin(), rule_.labels.end(), name);
-  const int label = static_cast<int>(at - rule_.labels.begin());
-  if (at == rule_.labels.end()) rule_.labels.push_back(name);
+RuleBuilder& RuleBuilder::Otherwise(const std::string& where) {
+  rule_.otherwise.emplace_back();
+  rule_.name += " otherwise " + where;
+  clause().where = PatternOf(where);
+  return *this;
+}
+
+int RuleBuilder::LabelOf(const std::string& name, Clause::LabelKind kind) {
+  std::vector<std::string>& labels = clause().labels;
+  const auto at = std::find(labels.begin(), labels.end(), name);
+  const int label = static_cast<int>(at - labels.begin());
+  if (at == labels.end()) {
+    labels.push_back(name);
+    clause().label_kinds.push_back(kind);
+  }
   return label;
+}
+
+RuleBuilder::Path RuleBuilder::PathOf(const std::string& text) {
+  const std::size_t dot = text.find('.');
+  Path path{LabelOf(text.substr(0, dot)), 0, {}};
+  std::string name = text.substr(dot + 1);
+  if (name[0] == '+' || name[0] == '-') {
+    path.member = {Member::Which::kValue, static_cast<Value>(name[0] == '+')};
+    name = name.substr(1);
+  } else if (const std::size_t stroke = name.find('/'); stroke != std::string::npos) {
+    path.member.which = name.substr(stroke) == "/first" ? Member::Which::kFirst : Member::Which::kLast;
+    name = name.substr(0, stroke);
+  }
+  path.node = NodeOf(grammar_, name);
+  return path;
 }
 
 Pattern RuleBuilder::PatternOf(const std::string& text) {
   std::vector<Pattern> open(1);  // the pattern and the groups that are open in it
   for (const std::string& word : Words(text)) {
     PatternItem item;
-    const Boundary boundary = BoundaryOf(word);
+    const std::size_t sign = word.find(':');
+    const Boundary boundary = BoundaryOf(sign == std::string::npos ? word : word.substr(sign + 1));
     if (word == "(") {
       open.emplace_back();
       continue;
@@ -367,6 +468,9 @@ Pattern RuleBuilder::PatternOf(const std::string& text) {
     } else if (boundary != Boundary::kNone) {
       item.kind = PatternItem::Kind::kBoundary;
       item.boundary = boundary;
+      if (sign != std::string::npos) item.label = LabelOf(word.substr(0, sign), Clause::LabelKind::kBoundary);
+    } else if (word == "&") {
+      item.kind = PatternItem::Kind::kSameMorpheme;
     } else if (word.compare(0, 3, "...") == 0) {
       item.kind = PatternItem::Kind::kGap;
       if (word.size() > 3) item.tier = NodeOf(grammar_, word.substr(3));
@@ -376,6 +480,9 @@ Pattern RuleBuilder::PatternOf(const std::string& text) {
       const bool bare = !labelled && word.find('[') == std::string::npos && word != "empty";
       if (labelled || bare) item.label = LabelOf(word.substr(0, colon));
       if (!bare) item.test = TestOf(grammar_, labelled ? word.substr(colon + 1) : word);
+      for (const FeatureTest& test : item.test.bundle) {
+        clause().variables = std::max(clause().variables, test.variable + 1);
+      }
     }
     open.back().items.push_back(item);
   }
@@ -387,24 +494,100 @@ Change& RuleBuilder::Add(Change::Op op, const std::string& target) {
   Change change;
   change.op = op;
   change.target = LabelOf(target);
-  rule_.changes.push_back(change);
-  return rule_.changes.back();
+  clause().changes.push_back(change);
+  return clause().changes.back();
 }
 
 RuleBuilder& RuleBuilder::Unless(const std::string& pattern) {
-  rule_.unless.push_back(PatternOf(pattern));
+  const Pattern read = PatternOf(pattern);
+  clause().unless.push_back(read);
   return *this;
 }
+RuleBuilder& RuleBuilder::If(const std::string& condition) {
+  const std::vector<std::string> words = Words(condition);
+  const Path left = PathOf(words[0]), right = PathOf(words[2]);
+  const std::map<std::string, Condition::Test> tests = {{"=", Condition::Test::kEqual},
+                                                        {"≠", Condition::Test::kUnequal},
+                                                        {"is", Condition::Test::kSame},
+                                                        {"isnot", Condition::Test::kNotSame}};
+  Condition read;
+  read.test = tests.at(words[1]);
+  read.left = left.label;
+  read.right = right.label;
+  read.node = left.node;
+  read.left_member = left.member;
+  read.right_member = right.member;
+  clause().conditions.push_back(read);
+  return *this;
+}
+RuleBuilder& RuleBuilder::Only(const std::string& tag) {
+  AddTag(tag, true);
+  return *this;
+}
+RuleBuilder& RuleBuilder::Except(const std::string& tag) {
+  AddTag(tag, false);
+  return *this;
+}
+void RuleBuilder::AddTag(const std::string& text, bool only) {
+  const std::vector<std::string> words = Words(text);
+  TagTest test;
+  test.only = only;
+  test.tag = TagOf(grammar_, words.back());
+  if (words.size() == 2) test.scope = TagTest::Scope::kWord;
+  if (words.size() == 3) {
+    test.scope = TagTest::Scope::kLabel;
+    test.label = LabelOf(words[0]);
+  }
+  clause().tags.push_back(test);
+}
 RuleBuilder& RuleBuilder::Spread(const std::string& path, const std::string& target) {
-  const std::size_t dot = path.find('.');
+  const Path source = PathOf(path);
   Change& change = Add(Change::Op::kSpread, target);
-  change.source = LabelOf(path.substr(0, dot));
-  change.node = NodeOf(grammar_, path.substr(dot + 1));
+  change.source = source.label;
+  change.node = source.node;
+  change.member = source.member;
   return *this;
 }
 RuleBuilder& RuleBuilder::Delink(const std::string& path) {
-  const std::size_t dot = path.find('.');
-  Add(Change::Op::kDelink, path.substr(0, dot)).node = NodeOf(grammar_, path.substr(dot + 1));
+  const Path target = PathOf(path);
+  Change& change = Add(Change::Op::kDelink, path.substr(0, path.find('.')));
+  change.node = target.node;
+  change.member = target.member;
+  return *this;
+}
+RuleBuilder& RuleBuilder::SetAs(const std::string& target, const std::string& source) {
+  const Path from = PathOf(source);
+  Change& change = Add(Change::Op::kSetAs, target.substr(0, target.find('.')));
+  change.source = from.label;
+  change.node = from.node;
+  change.member = from.member;
+  return *this;
+}
+RuleBuilder& RuleBuilder::FillAs(const std::string& target, const std::string& source) {
+  SetAs(target, source);
+  clause().changes.back().op = Change::Op::kFillAs;
+  return *this;
+}
+RuleBuilder& RuleBuilder::Merge(const std::string& source, const std::string& target) {
+  SetAs(target, source);
+  clause().changes.back().op = Change::Op::kMerge;
+  return *this;
+}
+RuleBuilder& RuleBuilder::SetLiteral(const std::string& label, const std::string& symbol) {
+  Literal(symbol, &Add(Change::Op::kSetLiteral, label));
+  return *this;
+}
+void RuleBuilder::Literal(const std::string& symbol, Change* change) {
+  const std::size_t sign = symbol.find("ː");
+  change->inserted = ContentOfSymbol(grammar_, symbol.substr(0, sign));
+  change->is_long = sign != std::string::npos;
+}
+RuleBuilder& RuleBuilder::Lengthen(const std::string& label) {
+  Add(Change::Op::kLengthen, label);
+  return *this;
+}
+RuleBuilder& RuleBuilder::Shorten(const std::string& label) {
+  Add(Change::Op::kShorten, label);
   return *this;
 }
 RuleBuilder& RuleBuilder::Set(const std::string& label, const std::string& bundle) {
@@ -415,10 +598,13 @@ RuleBuilder& RuleBuilder::Fill(const std::string& label, const std::string& bund
   Add(Change::Op::kFill, label).settings = SettingsOf(grammar_, bundle);
   return *this;
 }
-RuleBuilder& RuleBuilder::Insert(const std::string& symbol, bool before, const std::string& host) {
+RuleBuilder& RuleBuilder::Insert(const std::string& symbol, bool before, const std::string& host,
+                                 const std::string& label) {
+  const int inserted = label.empty() ? -1 : LabelOf(label, Clause::LabelKind::kInserted);
   Change& change = Add(Change::Op::kInsert, host);
-  change.inserted = ContentOfSymbol(grammar_, symbol);
+  Literal(symbol, &change);
   change.before = before;
+  change.inserted_label = inserted;
   return *this;
 }
 RuleBuilder& RuleBuilder::Delete(const std::string& label) {
@@ -427,6 +613,27 @@ RuleBuilder& RuleBuilder::Delete(const std::string& label) {
 }
 RuleBuilder& RuleBuilder::Mode(Rule::Mode mode) {
   rule_.mode = mode;
+  return *this;
+}
+RuleBuilder& RuleBuilder::Within(Domain domain) {
+  rule_.within = domain;
+  return *this;
+}
+RuleBuilder& RuleBuilder::Prefer(Rule::Prefer side) {
+  rule_.prefer = side;
+  return *this;
+}
+RuleBuilder& RuleBuilder::Preserving() {
+  rule_.preserving = true;
+  return *this;
+}
+RuleBuilder& RuleBuilder::SharingBlocked() {
+  rule_.sharing_blocked = true;
+  return *this;
+}
+RuleBuilder& RuleBuilder::Optional(double probability, bool by_word) {
+  rule_.probability = probability;
+  rule_.by_word = by_word;
   return *this;
 }
 
