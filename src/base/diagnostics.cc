@@ -9,6 +9,8 @@ const char* KindName(Kind kind) {
       return "missing-file";
     case Kind::kNotUtf8:
       return "not-utf8";
+    case Kind::kIncludeCircle:
+      return "include-circle";
     case Kind::kForeignFile:
       return "foreign-file";
     case Kind::kTruncatedFile:

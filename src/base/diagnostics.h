@@ -27,6 +27,7 @@ enum class Kind {
   // reading files
   kMissingFile,
   kNotUtf8,
+  kIncludeCircle,
   kForeignFile,
   kTruncatedFile,
   kAlteredFile,

@@ -110,6 +110,7 @@ void AddDerive(CLI::App& app, int& code);
 void AddRecover(CLI::App& app, int& code);
 void AddCheck(CLI::App& app, int& code);
 void AddCompile(CLI::App& app, int& code);
+void AddNew(CLI::App& app, int& code);
 void AddLaterVerbs(CLI::App& app, int& code);
 
 }  // namespace tiersmith::cli

@@ -16,7 +16,6 @@ void AddLaterVerbs(CLI::App& app, int& code) {
       {"weigh", "probabilities of optional rules from data"},
       {"report", "the analysis written up"},
       {"draw", "figures of trees, forms and rules"},
-      {"new", "a commented starter grammar"},
       {"words", "the words of a lexicon"},
       {"emit", "machines for other programs"},
   };
@@ -27,7 +26,7 @@ void AddLaterVerbs(CLI::App& app, int& code) {
     const std::string name = verb.name;
     sub->callback([name, &code] {
       PrintError("'" + name + "' is not supported yet");
-      PrintHelp("this release has derive, recover, check and compile");
+      PrintHelp("this release has derive, recover, check, compile and new");
       code = kUsage;
     });
   }

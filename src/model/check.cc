@@ -5,7 +5,7 @@
 #include <filesystem>
 
 #include "base/utf8.h"
-#include "grammar/parse.h"
+#include "model/includes.h"
 
 namespace tiersmith {
 
@@ -89,7 +89,6 @@ class NotCheckedYet {
 
   void Visit(const syntax::File& file) {
     for (const syntax::Top& top : file.tops) {
-      if (const auto* include = std::get_if<syntax::Include>(&top)) Refuse(include->span, "include");
       if (const auto* lexicon = std::get_if<syntax::Lexicon>(&top)) Refuse(lexicon->span, "lexicon");
       if (const auto* lexicon = std::get_if<syntax::LexiconFrom>(&top)) Refuse(lexicon->span, "lexicon");
       if (const auto* paradigm = std::get_if<syntax::Paradigm>(&top)) Refuse(paradigm->span, "paradigm");
@@ -130,7 +129,7 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
     return count;
   };
   const int before = errors(), hard_before = hard();
-  const syntax::File parsed = Parse(*sources, file, diagnostics);
+  const syntax::File parsed = ParseWithIncludes(file, *sources, diagnostics);
   PassOnUnsupported(parsed, diagnostics);
   NotCheckedYet(&diagnostics).Visit(parsed);
   // Names declared in what did not parse would all be unknown: such a file is checked no further.

@@ -40,7 +40,8 @@ struct Preface {
   std::vector<Diagnostic> warnings;
 };
 
-// The fields of everything that is written, in order: one list for writing and reading.
+// The fields of everything that is written, in order: one list for writing and reading. Each value is taken apart into
+// names for all its members, so that a member added elsewhere does not compile before it is listed here.
 template <class File>
 class Fields {
  public:
@@ -50,29 +51,33 @@ class Fields {
   explicit Fields(File& file) : file_(file) {}
 
   void One(Of<Preface>& preface) {
-    List(preface.sources);
-    List(preface.left_out);
-    List(preface.warnings);
+    auto& [sources, left_out, warnings] = preface;
+    List(sources);
+    List(left_out);
+    List(warnings);
   }
-  void One(Of<LetterClasses::Contents>& classes) {
-    List(classes.visible);
-    List(classes.literals);
-    List(classes.rests);
-    List(classes.classes);
+  void One(Of<LetterClasses::Contents>& contents) {
+    auto& [visible, literals, rests, classes] = contents;
+    List(visible);
+    List(literals);
+    List(rests);
+    List(classes);
   }
   void One(Of<InputLetter>& input) {
-    One(input.parts);
-    file_.Number(input.symbol);
-    file_.Number(input.boundary);
-    file_.Number(input.linked);
+    auto& [parts, symbol, boundary, linked] = input;
+    One(parts);
+    file_.Number(symbol);
+    file_.Number(boundary);
+    file_.Number(linked);
   }
   // Not how long it took to make: the same grammar makes the same bytes.
   void One(Of<Segment>& segment) {
-    List(segment.rules);
-    One(segment.machine);
-    file_.Number(segment.classes);
-    file_.Number(segment.letters);
-    file_.Number(segment.exact);
+    auto& [rules, machine, classes, letters, seconds, exact] = segment;
+    List(rules);
+    One(machine);
+    file_.Number(classes);
+    file_.Number(letters);
+    file_.Number(exact);
   }
   template <class T>
   void List(T& list) {
@@ -88,59 +93,69 @@ class Fields {
   void One(Of<NodeId>& number) { file_.Number(number); }
   void One(Of<std::string>& text) { file_.Text(text); }
   void One(Of<Source>& source) {
-    file_.Text(source.name);
-    file_.Text(source.text);
+    auto& [name, text] = source;
+    file_.Text(name);
+    file_.Text(text);
   }
   void One(Of<Span>& span) {
-    file_.Number(span.file);
-    file_.Number(span.begin);
-    file_.Number(span.end);
+    auto& [file, begin, end] = span;
+    file_.Number(file);
+    file_.Number(begin);
+    file_.Number(end);
   }
   void One(Of<std::pair<Span, std::string>>& note) {
-    One(note.first);
-    file_.Text(note.second);
+    auto& [span, text] = note;
+    One(span);
+    file_.Text(text);
   }
   void One(Of<Diagnostic>& warning) {
-    file_.Number(warning.kind);
-    file_.Number(warning.severity);
-    One(warning.span);
-    file_.Text(warning.message);
-    file_.Text(warning.remedy);
-    List(warning.also);
+    auto& [kind, severity, span, message, remedy, also] = warning;
+    file_.Number(kind);
+    file_.Number(severity);
+    One(span);
+    file_.Text(message);
+    file_.Text(remedy);
+    List(also);
   }
   void One(Of<LetterPart>& part) {
+    auto& [node, value, links, daughters] = part;
     file_.Require(++depth_ < kDeepest);
-    file_.Number(part.node);
-    file_.Number(part.value);
-    file_.Number(part.links);
-    List(part.daughters);
+    file_.Number(node);
+    file_.Number(value);
+    file_.Number(links);
+    List(daughters);
     --depth_;
   }
   void One(Of<Letter>& letter) {
-    file_.Number(letter.kind);
-    file_.Number(letter.boundary);
-    One(letter.part);
+    auto& [kind, boundary, part] = letter;
+    file_.Number(kind);
+    file_.Number(boundary);
+    One(part);
   }
   void One(Of<ClassLetter>& letter) {
-    One(letter.visible);
-    file_.Number(letter.rest);
+    auto& [visible, rest] = letter;
+    One(visible);
+    file_.Number(rest);
   }
   void One(Of<LetterClasses::Parts>& parts) {
-    file_.Number(parts.class_id);
-    file_.Number(parts.rest);
+    auto& [class_id, rest] = parts;
+    file_.Number(class_id);
+    file_.Number(rest);
   }
   void One(Of<TapeArc>& arc) {
-    file_.Number(arc.in);
-    file_.Number(arc.out);
-    file_.Number(arc.next);
-    file_.Real(arc.weight);
+    auto& [in, out, next, weight] = arc;
+    file_.Number(in);
+    file_.Number(out);
+    file_.Number(next);
+    file_.Real(weight);
   }
   void One(Of<std::vector<TapeArc>>& arcs) { List(arcs); }
   void One(Of<Tape>& tape) {
-    List(tape.arcs);
-    List(tape.starts);
-    List(tape.ends);
-    One(tape.symbols);
+    auto& [arcs, starts, ends, symbols] = tape;
+    List(arcs);
+    List(starts);
+    List(ends);
+    One(symbols);
   }
   void One(Of<KeyPool>& pool) {
     std::size_t size = static_cast<std::size_t>(pool.size());
@@ -340,7 +355,7 @@ CompiledGrammar ReadMachine(std::string_view bytes, const std::string& path, con
   }
   for (const std::string& rule : preface.left_out) LeaveOutRule(rule, compiled.grammar.get());
   if (LayoutOf(*compiled.grammar) != header.layout) {
-    RefuseLayout(path, "which numbers segments, nodes or rules otherwise", diagnostics);
+    RefuseLayout(path, "which numbers segments, rules or messages otherwise", diagnostics);
     return {};
   }
   compiled.cascade = ReadCascade(file, *compiled.grammar);
@@ -391,14 +406,14 @@ std::string WriteMachine(const CompiledGrammar& compiled) {
   }
   preface.left_out = compiled.left_out;
   preface.warnings = compiled.warnings.all();
-  const CascadeData& data = compiled.cascade->data();
+  const auto& [grammar, classes, inputs, segments] = compiled.cascade->data();
   ByteWriter file;
   Fields<ByteWriter> fields(file);
   fields.One(preface);
-  fields.One(data.classes->Save());
-  fields.List(data.inputs);
-  fields.List(data.segments);
-  return WithHeader(file.bytes(), kMachineFormat, LayoutOf(*compiled.grammar));
+  fields.One(classes->Save());
+  fields.List(inputs);
+  fields.List(segments);
+  return WithHeader(file.bytes(), kMachineFormat, LayoutOf(*grammar));
 }
 
 std::uint32_t LayoutOf(const Grammar& grammar) {
@@ -416,6 +431,7 @@ std::uint32_t LayoutOf(const Grammar& grammar) {
   for (const Literal& literal : grammar.inventory.literals) numbering.Number(literal.symbol);
   for (const std::string& tag : grammar.tags) numbering.Text(tag);
   for (const Rule& rule : grammar.rules) numbering.Text(rule.name);
+  for (Kind kind : AllKinds()) numbering.Text(KindName(kind));
   return Checksum(numbering.bytes());
 }
 

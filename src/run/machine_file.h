@@ -6,7 +6,7 @@
 //
 // The file: 32 bytes (magic, format, length and checksum of what follows, layout, checksum of these), then the sources,
 // the rules that were left out, what the compiler warned of, and the cascade. The *layout* is a checksum of how the checked grammar
-// numbers nodes, symbols and rules: where a build numbers them otherwise, the machines would mean something else.
+// numbers nodes, symbols and rules, and of the kinds of messages: where a build numbers them otherwise, the machines would mean something else.
 // Tested by tests/unit/run/machine_file_test.cc (damage at every place) and tests/cli/machine.sh.
 #pragma once
 
@@ -39,7 +39,7 @@ CompiledGrammar OpenGrammar(const std::string& path, const std::shared_ptr<Sourc
 // Requires: the grammar was read by OpenGrammar (its sources are parts) and has its cascade.
 std::string WriteMachine(const CompiledGrammar& compiled);
 
-// A checksum of how the grammar numbers what machines refer to.
+// A checksum of how grammar and build number what machines and their warnings refer to.
 std::uint32_t LayoutOf(const Grammar& grammar);
 // `body` with the 32 bytes before it.
 std::string WithHeader(std::string_view body, std::uint32_t format, std::uint32_t layout);

@@ -1,32 +1,12 @@
 // Places in source texts: lines, columns in code points, carets in cells; loading files that are missing or not UTF-8.
 #include "base/source_map.h"
 
-#include <unistd.h>
-
 #include <catch2/catch.hpp>
-#include <cstdio>
 #include <filesystem>
-#include <fstream>
+
+#include "support/folder.h"
 
 using namespace tiersmith;
-
-namespace {
-
-// A file that is gone at the end of the test.
-class TemporaryFile {
- public:
-  explicit TemporaryFile(const std::string& content)
-      : path_(std::filesystem::temp_directory_path() / ("tiersmith-" + std::to_string(getpid()) + ".txt")) {
-    std::ofstream(path_, std::ios::binary) << content;
-  }
-  ~TemporaryFile() { std::filesystem::remove(path_); }
-  std::string path() const { return path_.string(); }
-
- private:
-  std::filesystem::path path_;
-};
-
-}  // namespace
 
 TEST_CASE("lines and columns", "[base]") {
   SourceMap sources;
@@ -56,18 +36,19 @@ TEST_CASE("spans at and past the ends", "[base]") {
 }
 
 TEST_CASE("loading", "[base]") {
+  const testing::Folder folder;
   SourceMap sources;
   Diagnostics diagnostics;
   std::uint32_t id = 99;
   SECTION("a byte order mark is dropped") {
-    const TemporaryFile file("\xEF\xBB\xBFtree");
-    REQUIRE(sources.Load(file.path(), {kNoFile, 0, 0}, diagnostics, &id));
+    const std::string path = folder.Write("t", "\xEF\xBB\xBFtree");
+    REQUIRE(sources.Load(path, {kNoFile, 0, 0}, diagnostics, &id));
     CHECK(sources.text(id) == "tree");
     CHECK_FALSE(diagnostics.HasErrors());
   }
   SECTION("Latin-1 is refused where it stands") {
-    const TemporaryFile file("a\nse\xF1or\n");
-    REQUIRE_FALSE(sources.Load(file.path(), {kNoFile, 0, 0}, diagnostics, &id));
+    const std::string path = folder.Write("t", "a\nse\xF1or\n");
+    REQUIRE_FALSE(sources.Load(path, {kNoFile, 0, 0}, diagnostics, &id));
     REQUIRE(diagnostics.all().size() == 1);
     CHECK(diagnostics.all()[0].kind == Kind::kNotUtf8);
     const SourceMap::Place place = sources.Find(diagnostics.all()[0].span);
@@ -85,23 +66,21 @@ TEST_CASE("loading", "[base]") {
 }
 
 TEST_CASE("parts of a grammar: named by where they lie beside it, read once", "[base]") {
-  const std::filesystem::path folder = std::filesystem::temp_directory_path() / ("parts-" + std::to_string(getpid()));
-  std::filesystem::create_directories(folder / "data");
-  std::ofstream(folder / "g.tier") << "main";
-  std::ofstream(folder / "data/a.tsv") << "rows";
+  const testing::Folder folder;
+  folder.Write("g.tier", "main");
+  folder.Write("data/a.tsv", "rows");
   SourceMap sources;
   Diagnostics diagnostics;
   std::uint32_t main = 0, table = 0, again = 0;
-  REQUIRE(sources.LoadPart((folder / "g.tier").string(), "g.tier", {kNoFile, 0, 0}, diagnostics, &main));
+  REQUIRE(sources.LoadPart(folder.Path("g.tier"), "g.tier", {kNoFile, 0, 0}, diagnostics, &main));
   REQUIRE(sources.LoadBeside("data/a.tsv", {main, 0, 0}, diagnostics, &table));
   CHECK(sources.name(table) == "data/a.tsv");
-  CHECK(sources.path(table) == (folder / "data/a.tsv").string());
+  CHECK(sources.path(table) == folder.Path("data/a.tsv"));
   REQUIRE(sources.LoadBeside("../g.tier", {table, 0, 0}, diagnostics, &again));
   CHECK(again == main);
   CHECK_FALSE(sources.LoadBeside("b.tsv", {table, 0, 0}, diagnostics, &again));
   REQUIRE(diagnostics.all().size() == 1);
   CHECK(diagnostics.all()[0].span.file == table);
-  std::filesystem::remove_all(folder);
 }
 
 TEST_CASE("a sealed map reads no file", "[base]") {

@@ -1,12 +1,10 @@
 // Machine files: they answer as their grammar does, and damage of any kind is refused, never followed.
 #include "run/machine_file.h"
 
-#include <unistd.h>
-
 #include <filesystem>
-#include <fstream>
 #include <random>
 
+#include "support/folder.h"
 #include "unit/run/compiled_case.h"
 
 using namespace tiersmith;
@@ -16,22 +14,6 @@ namespace fs = std::filesystem;
 namespace {
 
 constexpr std::size_t kHeaderSize = 32;
-
-// A folder of its own, gone at the end.
-class Folder {
- public:
-  Folder() : path_(fs::temp_directory_path() / ("machine-" + std::to_string(getpid()))) {
-    fs::create_directories(path_);
-  }
-  ~Folder() { fs::remove_all(path_); }
-  std::string Write(const std::string& name, const std::string& content) const {
-    std::ofstream(path_ / name, std::ios::binary) << content;
-    return (path_ / name).string();
-  }
-
- private:
-  fs::path path_;
-};
 
 struct Opened : CompiledGrammar {
   std::shared_ptr<SourceMap> sources = std::make_shared<SourceMap>();
@@ -94,7 +76,7 @@ TEST_CASE("a machine file answers as its grammar does, with none of its files at
   const Case made;
   const std::string machine = made.folder.Write("m", made.bytes);
   fs::remove(made.grammar);
-  fs::remove(fs::path(made.grammar).parent_path() / "rows.tsv");
+  fs::remove(made.folder.Path("rows.tsv"));
   Opened opened = Open(machine);
   INFO(opened.Messages());
   REQUIRE(opened.cascade != nullptr);
@@ -128,11 +110,9 @@ TEST_CASE("the same grammar makes the same bytes, also from its own machine file
   Opened opened = made.Reopen(made.bytes);
   REQUIRE(opened.cascade != nullptr);
   CHECK(WriteMachine(opened) == made.bytes);
-  const Folder elsewhere;
-  fs::create_directories(fs::path(made.grammar).parent_path() / "deeper");
   made.folder.Write("deeper/rows.tsv", "underlying\tsurface\nanpa\tampa\nahna\tana\n");
   CHECK(MachineOf(made.folder.Write("deeper/g.tier", std::string(kSmallInventory) + kRules)) == made.bytes);
-  CHECK(made.bytes.find(fs::path(made.grammar).parent_path().string()) == std::string::npos);
+  CHECK(made.bytes.find(made.folder.Path("")) == std::string::npos);
 }
 
 TEST_CASE("rules left out stay out of the machine file", "[run]") {
