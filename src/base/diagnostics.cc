@@ -61,6 +61,16 @@ const char* KindName(Kind kind) {
       return "ambiguous-rule";
     case Kind::kReachesOtherRoot:
       return "reaches-other-root";
+    case Kind::kBadLexicon:
+      return "bad-lexicon";
+    case Kind::kBadParadigm:
+      return "bad-paradigm";
+    case Kind::kBadSpelling:
+      return "bad-spelling";
+    case Kind::kUnknownTag:
+      return "unknown-tag";
+    case Kind::kSeveralReadings:
+      return "several-readings";
     case Kind::kUnknownCharacter:
       return "unknown-character";
     case Kind::kBadForm:

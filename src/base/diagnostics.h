@@ -57,6 +57,12 @@ enum class Kind {
   kNoSymbol,
   kAmbiguousRule,
   kReachesOtherRoot,
+  // words
+  kBadLexicon,
+  kBadParadigm,
+  kBadSpelling,
+  kUnknownTag,
+  kSeveralReadings,
   // forms and data
   kUnknownCharacter,
   kBadForm,

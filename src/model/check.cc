@@ -53,12 +53,16 @@ void Checker::Run() {
   CheckTree();
   if (grammar_.tree.nodes.size() <= kRootNode + 1) return;  // said; everything else would be unknown
   LoadDataFiles();
+  LoadLexicons();
   CheckRooms();
   CheckInventory();
   // Symbols missing for an error above would be unknown in every row.
   const bool readable = !diagnostics_.HasErrors() && !grammar_.inventory.symbols.empty();
   CheckClasses();
+  if (readable) CheckSpelling();
+  if (readable) CheckWords();
   CheckRules();
+  CheckTags();
   if (readable) CheckData();
 }
 
@@ -82,39 +86,6 @@ void PassOnUnsupported(const syntax::File& file, Diagnostics& diagnostics) {
   for (const syntax::Unsupported& construct : file.unsupported) pass(construct);
 }
 
-// What the parser reads and this checker does not carry out yet: each is an error at its place.
-class NotCheckedYet {
- public:
-  explicit NotCheckedYet(Diagnostics* diagnostics) : diagnostics_(*diagnostics) {}
-
-  void Visit(const syntax::File& file) {
-    for (const syntax::Top& top : file.tops) {
-      if (const auto* lexicon = std::get_if<syntax::Lexicon>(&top)) Refuse(lexicon->span, "lexicon");
-      if (const auto* lexicon = std::get_if<syntax::LexiconFrom>(&top)) Refuse(lexicon->span, "lexicon");
-      if (const auto* paradigm = std::get_if<syntax::Paradigm>(&top)) Refuse(paradigm->span, "paradigm");
-      if (const auto* spelling = std::get_if<syntax::Spelling>(&top)) Refuse(spelling->span, "spelling");
-      if (const auto* length = std::get_if<syntax::LengthDoubled>(&top)) Refuse(length->span, "length doubled");
-      if (const auto* data = std::get_if<syntax::Data>(&top)) VisitData(*data);
-      if (const auto* from = std::get_if<syntax::DataFrom>(&top); from != nullptr && !from->columns.empty())
-        Refuse(from->span, "columns of data");
-    }
-  }
-
- private:
-  void Refuse(Span span, const std::string& construct) {
-    diagnostics_.Error(Kind::kNotSupportedYet, span, "`" + construct + "` is not supported by this release",
-                       "take it out, or state the analysis without it");
-  }
-  void VisitData(const syntax::Data& data) {
-    if (data.comparing_length) Refuse(data.span, "comparing length");
-    for (const syntax::Datum& row : data.rows) {
-      if (!row.starred.empty()) Refuse(row.span, "*");
-    }
-  }
-
-  Diagnostics& diagnostics_;
-};
-
 std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics,
                               Reach reach) {
   const auto errors = [&] {
@@ -131,7 +102,6 @@ std::unique_ptr<Grammar> Load(std::uint32_t file, const std::shared_ptr<SourceMa
   const int before = errors(), hard_before = hard();
   const syntax::File parsed = ParseWithIncludes(file, *sources, diagnostics);
   PassOnUnsupported(parsed, diagnostics);
-  NotCheckedYet(&diagnostics).Visit(parsed);
   // Names declared in what did not parse would all be unknown: such a file is checked no further.
   if (hard() > hard_before) return nullptr;
   auto grammar = std::make_unique<Grammar>();

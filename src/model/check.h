@@ -1,11 +1,12 @@
 // Syntax tree -> checked grammar. Inner header of src/model/check_*.cc: nothing outside includes it.
 //
-// Order: tree, classes, symbols, diacritics, omit, rules, data; each looks up names only in what stands
+// Order: tree, classes, symbols, diacritics, omit, spelling, words, rules, data; each looks up names only in what stands
 // before it here, so that declarations may stand in any order in the file. Tested by
 // tests/unit/model/check_test.cc.
 #pragma once
 
 #include <map>
+#include <memory>
 #include <optional>
 #include <set>
 #include <string>
@@ -18,7 +19,9 @@
 #include "model/library.h"
 #include "model/names.h"
 #include "model/not_run_yet.h"
+#include "model/speller.h"
 #include "model/symbol_trie.h"
+#include "model/text.h"
 
 namespace tiersmith {
 
@@ -193,15 +196,46 @@ class Checker {
   bool CheckBesideLength(const Clause& clause, const Change& change);
   bool CheckOneChanged(const syntax::Rule& written, const Clause& clause);
 
+  // ---- check_words.cc
+  struct WrittenEntry {  // of the grammar or of a table
+    syntax::LexiconEntry entry;
+    std::string id;
+  };
+  void LoadLexicons();
+  void LoadLexiconTable(std::uint32_t file);
+  void CheckWords();
+  void AddLexiconEntry(const WrittenEntry& written);
+  bool CheckBoundaries(const Morph& morph, MorphemeKind kind);
+  std::vector<Morph> MorphsOf(const syntax::FormText& form, bool several);
+  bool SayReadings(const syntax::FormText& form, const std::vector<std::string>& texts, bool several);
+  void ReportForm(Span span, const TextError& error, bool whole);
+  void CheckParadigm(const syntax::Paradigm& written);
+  bool CheckSlots(const syntax::Paradigm& written, Paradigm* paradigm);
+  bool CheckOverride(const syntax::CellOverride& written, Paradigm* paradigm);
+  bool CheckAllomorphs(const std::vector<syntax::Allomorph>& written, SlotValue* value);
+  std::optional<MorphemeKind> AffixKind(const Morph& morph);
+  void CheckTags();
+  // A set that is asked of one segment beside a form or a letter.
+  std::optional<SlotTest> ResolveContext(const syntax::Set& set);
+  // Requires: the inventory is complete; of letters: the spelling too.
+  const Reader& FormTexts();
+  const Speller& Letters();
+
+  // ---- check_spelling.cc
+  void CheckSpelling();
+  void CheckSpellingLine(const syntax::SpellingLine& written);
+  void CheckDoubled(const syntax::LengthDoubled& written);
+  std::optional<std::vector<Token>> MeaningOf(const syntax::Name& means);
+
   // ---- check_data.cc
   void LoadDataFiles();
+  void LoadDataTable(const syntax::DataFrom& from, std::uint32_t file);
   void CheckData();
   struct Unread {  // an error of a form, and how many further forms have the same
     Diagnostic diagnostic;
     int further = 0;
   };
-  void CheckForm(std::string_view text, Span span, bool underlying, const class Reader& reader,
-                 std::vector<Unread>* unread);
+  void NoteUnread(const TextError& error, Span span, std::vector<Unread>* unread);
 
   // One mistake in a declaration makes every use of the name an error: after a few of them the rest is not
   // said.
@@ -233,6 +267,9 @@ class Checker {
   bool from_library_ = false;
   std::map<std::string, int> said_;
   SymbolTrie trie_;
+  std::vector<WrittenEntry> written_entries_;
+  std::unique_ptr<Reader> reader_;
+  std::unique_ptr<Speller> speller_;
 };
 
 }  // namespace tiersmith

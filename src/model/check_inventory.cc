@@ -511,11 +511,24 @@ void Checker::AddWrittenComposites() {
       in_set(in_set, declared->set);
     } else if (const auto* pattern = std::get_if<syntax::NamedPattern>(&top)) {
       in_pattern(in_pattern, pattern->pattern);
+    } else if (const auto* paradigm = std::get_if<syntax::Paradigm>(&top)) {
+      const auto add = [&](const std::vector<syntax::Allomorph>& allomorphs) {
+        for (const syntax::Allomorph& allomorph : allomorphs) AddCompositesOf(allomorph.form.raw, listed);
+      };
+      for (const syntax::ParadigmSlot& slot : paradigm->slots) {
+        for (const syntax::SlotValue& value : slot.values) add(value.allomorphs);
+      }
+      for (const syntax::CellOverride& cell : paradigm->overrides) add(cell.allomorphs);
     }
   }
   for (const DataRow& row : grammar_.data) {
     AddCompositesOf(row.underlying, listed);
     for (const std::string& surface : row.surfaces) AddCompositesOf(surface, listed);
+    for (const std::string& surface : row.starred) AddCompositesOf(surface, listed);
+  }
+  for (const WrittenEntry& written : written_entries_) {
+    AddCompositesOf(written.entry.form.raw, listed);
+    for (const syntax::Suppletion& other : written.entry.suppletive) AddCompositesOf(other.form.raw, listed);
   }
 }
 

@@ -11,6 +11,9 @@
 #include "base/source_map.h"
 #include "model/form.h"
 #include "model/inventory.h"
+#include "model/lexicon.h"
+#include "model/paradigm.h"
+#include "model/spelling.h"
 #include "model/tree.h"
 
 namespace tiersmith {
@@ -153,12 +156,21 @@ struct Fusion {
 
 // ---- data -----------------------------------------------------------------------------------------
 struct DataRow {
-  std::string underlying;
+  std::string id;
+  std::string underlying;             // may hold tags: sake@noun-lAn
+  std::vector<std::string> also;      // other readings of an underlying form that was spelled
   std::vector<std::string> surfaces;  // any one passes
+  std::vector<std::string> starred;   // none may come out
   std::string gloss;
+  std::vector<std::string> tags;  // of its stem
   std::string source;
+  std::string comment;
+  bool comparing_length = false;    // Xː is not XX
+  bool underlying_spelled = false;  // in letters of the spelling, until ReadSpelled
+  bool surface_spelled = false;
   Span span;                        // of the underlying form, in the grammar or the TSV
   std::vector<Span> surface_spans;  // beside surfaces
+  std::vector<Span> starred_spans;  // beside starred
 };
 
 struct Grammar {
@@ -169,8 +181,18 @@ struct Grammar {
   std::vector<Fusion> fusions;
   // Tags of morphemes that some rule asks for; FormItem::tags has a bit for each. The four kinds come first.
   std::vector<std::string> tags = {"stem", "prefix", "suffix", "clitic"};
+  // Some rule asks for tags or for the stem: forms begin with a ‖ that opens the first morpheme.
+  bool tagged = false;
   std::vector<Rule> rules;  // in order
+  Lexicon lexicon;
+  std::vector<Paradigm> paradigms;
+  Spelling spelling;
+  std::vector<bool> doubled;  // `length doubled`, per symbol; none without it
   std::vector<DataRow> data;
+
+  bool Doubles(int symbol) const {
+    return symbol >= 0 && !doubled.empty() && doubled[static_cast<std::size_t>(symbol)];
+  }
   std::shared_ptr<SourceMap> sources;  // what the spans point into
 };
 
@@ -192,7 +214,7 @@ std::unique_ptr<Grammar> LoadGrammar(const std::string& path, const std::shared_
 std::unique_ptr<Grammar> LoadGrammarText(const std::string& path, const std::string& text,
                                          const std::shared_ptr<SourceMap>& sources, Diagnostics& diagnostics,
                                          Reach reach = Reach::kRunnable);
-// Reads rows of a TSV with heading (columns underlying, surface, gloss, source by name, any order).
+// Reads rows of a TSV with heading (columns id, underlying, surface, gloss, tags, source, comment by name, any order).
 std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span from, Diagnostics& diagnostics);
 
 }  // namespace tiersmith

@@ -1,7 +1,7 @@
 // Reading and writing forms. See text.h.
 //
 // Example: "ba:t-a" over p t b a is b, a, length, t, boundary, a; its form has one root on the second and
-// third slot. Does not handle: floats, tags, marks of prosody and tone, spelling rules (an error says so).
+// third slot. Does not handle: floats, marks of prosody and tone, spelling rules (speller.h).
 // Tested by tests/unit/model/text_test.cc.
 #include "model/text.h"
 
@@ -14,6 +14,7 @@
 #include <utility>
 
 #include "base/utf8.h"
+#include "grammar/words.h"
 #include "model/character_names.h"
 #include "model/library.h"
 #include "model/normal_text.h"
@@ -94,7 +95,11 @@ struct Reader::Impl {
   const Inventory& inventory() const { return grammar->inventory; }
   const Symbol& symbol(int id) const { return grammar->inventory.symbols[static_cast<std::size_t>(id)]; }
 
-  bool Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const;
+  bool Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error,
+            std::vector<TypedTag>* tags) const;
+  void AddSymbol(int symbol, std::vector<Token>* tokens) const;
+  bool AddTag(std::string_view typed, std::size_t* unit, const std::vector<Token>& tokens, std::vector<TypedTag>* tags,
+              TextError* error) const;
   bool Allowed(int symbol, Side side) const;
   int WithMarksAfterLength(int symbol, std::size_t* position) const;
   const std::pair<std::u32string, int>* MarkAt(std::size_t position) const;
@@ -128,8 +133,9 @@ Reader::Reader(const Grammar& grammar) : impl_(new Impl) {
 
 Reader::~Reader() { delete impl_; }
 
-bool Reader::Read(std::string_view text, Side side, std::vector<Token>* tokens, TextError* error) const {
-  return impl_->Read(text, side, tokens, error);
+bool Reader::Read(std::string_view text, Side side, std::vector<Token>* tokens, TextError* error,
+                  std::vector<TypedTag>* tags) const {
+  return impl_->Read(text, side, tokens, error, tags);
 }
 
 bool Reader::Impl::Allowed(int id, Side side) const {
@@ -137,8 +143,36 @@ bool Reader::Impl::Allowed(int id, Side side) const {
   return side == Side::kUnderlying ? s.in_underlying : s.completes;
 }
 
-bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error) const {
+// The same letter twice is long where `length doubled` says so; a third begins anew.
+void Reader::Impl::AddSymbol(int id, std::vector<Token>* tokens) const {
+  const bool doubles = grammar->Doubles(id) && !tokens->empty() && tokens->back().kind == Token::Kind::kSymbol &&
+                       tokens->back().symbol == id;
+  tokens->push_back(doubles ? Token{Token::Kind::kLength, -1, Boundary::kNone}
+                            : Token{Token::Kind::kSymbol, id, Boundary::kNone});
+}
+
+bool Reader::Impl::AddTag(std::string_view typed, std::size_t* unit, const std::vector<Token>& tokens,
+                          std::vector<TypedTag>* tags, TextError* error) const {
+  TypedTag tag;
+  std::size_t position = text.units[*unit].begin;
+  if (!ReadTag(typed, &position, &tag, error)) return false;
+  const bool opens = tokens.empty() || tokens.back().kind == Token::Kind::kBoundary;
+  if (opens != (typed[tag.offset] != '@')) {
+    return opens ? Fail(*unit, Kind::kBadForm, "no morpheme stands before this tag",
+                        "write a tag behind its morpheme: sake@noun", error)
+                 : Fail(*unit, Kind::kBadForm, "√ stands inside a morpheme", "write it before the morpheme: √sake",
+                        error);
+  }
+  tag.token = tokens.size();
+  tags->push_back(std::move(tag));
+  while (*unit < text.units.size() && text.units[*unit].begin < position) ++*unit;
+  return true;
+}
+
+bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* tokens, TextError* error,
+                        std::vector<TypedTag>* tags) const {
   tokens->clear();
+  if (tags != nullptr) tags->clear();
   text.Assign(typed);
   const NormalText::Unit* units = text.units.data();
   const std::size_t size = text.units.size();
@@ -147,11 +181,20 @@ bool Reader::Impl::Read(std::string_view typed, Side side, std::vector<Token>* t
     const SymbolTrie::Match match = trie.Longest(units, i, size);
     if (match.symbol >= 0) {
       if (!Allowed(match.symbol, side)) return FailSymbol(match.symbol, i, match.end, side, error);
-      tokens->push_back({Token::Kind::kSymbol, match.symbol, Boundary::kNone});
+      if (tags != nullptr && !tags->empty() && tags->back().token == tokens->size() &&
+          tags->back().name != MorphemeKindName(MorphemeKind::kStem)) {
+        return Fail(i, Kind::kBadForm, "a symbol stands behind the tag of its morpheme",
+                    "write tags behind the whole morpheme, or a boundary between: sake@noun-lAn", error);
+      }
+      AddSymbol(match.symbol, tokens);
       i = match.end;
       continue;
     }
     const char32_t code = units[i].code;
+    if (tags != nullptr && (code == U'@' || code == U'\u221A')) {
+      if (!AddTag(typed, &i, *tokens, tags, error)) return false;
+      continue;
+    }
     if (code == kLengthSign) {
       if (tokens->empty() || tokens->back().kind == Token::Kind::kBoundary) {
         return Fail(i, Kind::kBadForm, "ː lengthens nothing here", "write it after the symbol that is long", error);
@@ -265,8 +308,8 @@ bool Reader::Impl::FailUnknown(std::size_t unit, TextError* error) const {
                   "leave the float out", error);
     case U'@':
     case U'\u221A':
-      return Fail(unit, Kind::kNotSupportedYet, "tags on typed forms are not read by this release", "leave the tag out",
-                  error);
+      return Fail(unit, Kind::kBadForm, "a tag stands in underlying forms that are typed or listed as data",
+                  "leave the tag out here", error);
     default:
       break;
   }
@@ -365,6 +408,42 @@ std::string Reader::Impl::NearestByShape(char32_t code) const {
   return best;
 }
 
+// ---- tags -------------------------------------------------------------------------------------------
+
+bool ReadTag(std::string_view text, std::size_t* position, TypedTag* tag, TextError* error) {
+  tag->offset = *position;
+  const std::string_view root = "√";
+  if (text.substr(*position, root.size()) == root) {
+    tag->name = MorphemeKindName(MorphemeKind::kStem);
+    *position += root.size();
+    tag->length = root.size();
+    return true;
+  }
+  if (*position >= text.size() || text[*position] != '@') return false;
+  std::size_t end = *position + 1;
+  if (end < text.size() && text[end] == '"') {
+    const std::size_t close = text.find('"', end + 1);
+    tag->name = close == std::string_view::npos ? "" : std::string(text.substr(end + 1, close - end - 1));
+    end = close == std::string_view::npos ? end : close + 1;
+  } else {
+    const std::size_t begin = end;
+    while (end < text.size()) {
+      const notation::CodePoint c = notation::CodePointAt(text, end);
+      if (!notation::IsNameCharacter(c.value)) break;
+      end += c.length;
+    }
+    tag->name = std::string(text.substr(begin, end - begin));
+  }
+  tag->length = end - tag->offset;
+  if (!tag->name.empty()) {
+    *position = end;
+    return true;
+  }
+  *error = {Kind::kBadForm, tag->offset, 1, "a tag has no name here",
+            "write it behind its morpheme, as in sake@noun, or sake@\"loan word\""};
+  return false;
+}
+
 // ---- tokens to forms --------------------------------------------------------------------------------
 
 Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
@@ -400,12 +479,19 @@ Form Reader::FormOf(const std::vector<Token>& tokens, Side side) const {
 // ---- forms to text ----------------------------------------------------------------------------------
 namespace {
 
+// What stands for the second slot of a long one.
+std::string_view LengthOf(const Grammar& grammar, int symbol) {
+  return grammar.Doubles(symbol) ? std::string_view(grammar.inventory.symbols[static_cast<std::size_t>(symbol)].text)
+                                 : std::string_view("ː");
+}
+
 // Writes symbols, ː for further slots of a root that stand directly after it. `boundaries`: those with a sign
-// of their own in `sign`. Returns false at the first root `spell` gives nothing for.
-template <typename Spell, typename Sign>
-bool Write(const Form& form, Spell spell, Sign sign, std::string* text) {
+// of their own in `sign`. `tagged`: the ‖ that a form begins with is there for its tags alone. Returns false at the first root `spell` gives nothing for.
+template <typename Spell, typename Length, typename Sign>
+bool Write(const Form& form, bool tagged, Spell spell, Length length, Sign sign, std::string* text) {
   std::int64_t before = -1;
   for (const FormItem& item : form.items) {
+    if (tagged && &item == form.items.data() && item.kind == FormItem::Kind::kBoundary) continue;
     switch (item.kind) {
       case FormItem::Kind::kFloat:
         break;
@@ -419,7 +505,7 @@ bool Write(const Form& form, Spell spell, Sign sign, std::string* text) {
         const std::int64_t root = RootOf(form, item);
         if (root < 0) break;
         if (root == before) {
-          *text += "ː";
+          *text += length(static_cast<InstanceId>(root));
         } else if (!spell(static_cast<InstanceId>(root))) {
           return false;
         }
@@ -449,6 +535,9 @@ const char* SurfaceSign(Boundary boundary) {
 
 bool WriteForm(const Grammar& grammar, const Form& form, std::string* text, FeatureTree* no_symbol) {
   text->clear();
+  const auto length = [&](InstanceId root) {
+    return LengthOf(grammar, grammar.inventory.Spell(ContentOf(form, root)).symbol);
+  };
   const auto spell = [&](InstanceId root) {
     FeatureTree content = ContentOf(form, root);
     const int symbol = grammar.inventory.Spell(content).symbol;
@@ -459,7 +548,7 @@ bool WriteForm(const Grammar& grammar, const Form& form, std::string* text, Feat
     *text += grammar.inventory.symbols[static_cast<std::size_t>(symbol)].text;
     return true;
   };
-  return Write(form, spell, SurfaceSign, text);
+  return Write(form, grammar.tagged, spell, length, SurfaceSign, text);
 }
 
 std::string DescribeForm(const Grammar& grammar, const Form& form) {
@@ -468,13 +557,36 @@ std::string DescribeForm(const Grammar& grammar, const Form& form) {
     text += grammar.inventory.Describe(ContentOf(form, root), grammar.tree);
     return true;
   };
-  Write(form, describe, BoundarySign, &text);
+  const auto length = [&](InstanceId root) {
+    return LengthOf(grammar, grammar.inventory.Spell(ContentOf(form, root)).symbol);
+  };
+  Write(form, grammar.tagged, describe, length, BoundarySign, &text);
+  return text;
+}
+
+std::string TextOf(const Grammar& grammar, const std::vector<Token>& tokens) {
+  std::string text;
+  int last = -1;
+  for (const Token& token : tokens) {
+    switch (token.kind) {
+      case Token::Kind::kSymbol:
+        last = token.symbol;
+        text += grammar.inventory.symbols[static_cast<std::size_t>(last)].text;
+        break;
+      case Token::Kind::kLength:
+        text += LengthOf(grammar, last);
+        break;
+      case Token::Kind::kBoundary:
+        text += BoundarySign(token.boundary);
+        break;
+    }
+  }
   return text;
 }
 
 // ---- comparison -------------------------------------------------------------------------------------
 
-std::string ComparisonKey(std::string_view surface) {
+std::string ComparisonKey(std::string_view surface, bool comparing_length) {
   NormalText text;
   text.Assign(surface);
   std::u32string result, cluster;
@@ -489,7 +601,7 @@ std::string ComparisonKey(std::string_view surface) {
   const auto close = [&] {
     if (cluster.empty()) return;
     flush();
-    for (; length > 0; --length) result += std::u32string(cluster);
+    for (; length > 0; --length) result += comparing_length ? std::u32string(1, kLengthSign) : cluster;
     cluster.clear();
   };
   const auto is_prefix = [](char32_t code) { return code == 0x207F || code == 0x1D50 || code == 0x1D51; };  // ⁿ ᵐ ᵑ
