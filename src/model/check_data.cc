@@ -145,7 +145,7 @@ std::optional<Columns> ByBraces(const syntax::DataFrom& from, const Table& table
       std::vector<std::string> names;
       for (const Cell& heading : table.heading) names.push_back(heading.text);
       diagnostics.Error(Kind::kBadData, column.span, "the table has no column '" + name + "'",
-                        column.number ? "it has " + std::to_string(table.heading.size()) + " columns"
+                        column.number ? "number the columns from 1 to " + std::to_string(table.heading.size())
                                       : Or(DidYouMean(name, names), "its first line names the columns"));
       return std::nullopt;
     }

@@ -455,6 +455,12 @@ void Checker::CheckParadigm(const syntax::Paradigm& written) {
 
 // Forms bear tags where rules ask for them. A tag that only typed forms could bear is perhaps misspelled.
 void Checker::CheckTags() {
+  for (const Rule& rule : grammar_.rules) {
+    grammar_.tagged = grammar_.tagged || rule.within == Domain::kStem || !rule.tags.empty() ||
+                      std::any_of(rule.otherwise.begin(), rule.otherwise.end(),
+                                  [](const Clause& clause) { return !clause.tags.empty(); });
+  }
+  if (diagnostics_.HasErrors()) return;  // an entry may be missing for one
   std::vector<std::string> given(grammar_.tags.begin(), grammar_.tags.begin() + 4);
   for (const LexiconEntry& entry : grammar_.lexicon.entries)
     given.insert(given.end(), entry.tags.begin(), entry.tags.end());
@@ -471,22 +477,12 @@ void Checker::CheckTags() {
       if (row.underlying[i] == '@' && ReadTag(row.underlying, &i, &tag, &error)) given.push_back(tag.name);
     }
   }
-  std::set<int> said;
-  const auto visit = [&](const Clause& clause) {
-    for (const TagTest& test : clause.tags) {
-      grammar_.tagged = true;
-      const std::string& tag = grammar_.tags[static_cast<std::size_t>(test.tag)];
-      if (std::find(given.begin(), given.end(), tag) != given.end() || !said.insert(test.tag).second) continue;
-      diagnostics_.Warning(
-          Kind::kUnknownTag, test.span,
-          "no entry and no row of the data has the tag '" + tag + "': only forms typed with @" + tag + " would bear it",
-          Or(DidYouMean(tag, given), "give it to the entries that are meant"));
-    }
-  };
-  for (const Rule& rule : grammar_.rules) {
-    grammar_.tagged = grammar_.tagged || rule.within == Domain::kStem;
-    visit(rule);
-    for (const Clause& clause : rule.otherwise) visit(clause);
+  for (const syntax::Name& tag : tags_asked_) {
+    if (std::find(given.begin(), given.end(), tag.text) != given.end()) continue;
+    diagnostics_.Warning(Kind::kUnknownTag, tag.span,
+                         "no entry and no row of the data has the tag '" + tag.text + "': only forms typed with @" +
+                             tag.text + " would bear it",
+                         Or(DidYouMean(tag.text, given), "give it to the entries that are meant"));
   }
 }
 

@@ -64,11 +64,15 @@ struct Speller::Impl {
 
   // ---- writing
   const SpellingLine* LineFor(const std::vector<Token>& tokens, std::size_t place) const {
+    // A line with a context is there for just this place.
+    const auto rank = [](const SpellingLine& line) {
+      return std::make_pair(line.means.size(), line.before || line.after || line.between);
+    };
     const SpellingLine* best = nullptr;
     for (const SpellingLine& line : grammar.spelling.lines) {
       const std::size_t size = line.means.size();
       if (!line.writes || size == 0 || size > tokens.size() - place) continue;
-      if (best != nullptr && best->means.size() >= size) continue;
+      if (best != nullptr && rank(*best) >= rank(line)) continue;
       if (!std::equal(line.means.begin(), line.means.end(), tokens.begin() + static_cast<std::ptrdiff_t>(place)))
         continue;
       if (Holds(line, tokens, place, place + size)) best = &line;

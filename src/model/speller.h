@@ -4,8 +4,8 @@
 // Reading: at each place the longest letters that some line names (or that are a symbol themselves) and with which the
 // rest can be read; of equally long ones each. So "ng" is ŋ and never n with ɡ, unless a line parts the two (`n'g = nɡ`). Of
 // several readings those that would not be written as typed are left out, but for lines that are read only.
-// Writing: the longest right side that fits, of equally long ones the first written; what no line writes stands for
-// itself. Contexts look at the neighbouring segments inside the word, over `-` and `=`.
+// Writing: the longest right side that fits; of equally long ones one with a context goes first, then the first written;
+// what no line writes stands for itself. Contexts look at the neighbouring segments inside the word, over `-` and `=`.
 //
 // Not here: `length doubled`, which holds for symbols too (text.h). Tested by tests/unit/model/spelling_test.cc.
 #pragma once

@@ -61,7 +61,9 @@ TEST_CASE("data: tables", "[unit]") {
       {"form\tsurface\nta\tta\n", "error 1: the heading names no column 'underlying' @ form\tsurface"},
       {"underlying\tsurface\tsurface\n", "error 1: two columns are called 'surface' @ surface"},
       {"", "error 1: the table is empty @ "},
-      {"underlying\tsurface\nta\t*na\n", "error 2: starred surface forms are not supported by this release @ *na"},
+      {"underlying\tsurface\nta\t*na\n", "ta>*na '' ;"},
+      {"underlying\tsurface\nta\tta ~ tat * na *nat\n", "ta>ta|tat*na*nat '' ;"},
+      {"id\tunderlying\tsurface\ttags\tcomment\n7\tta\tta\tloan  new\tas heard\n", "ta>ta '' ; 7 loan+new+ as heard"},
   };
   for (const Row& row : rows) {
     CAPTURE(row.table);
@@ -72,7 +74,11 @@ TEST_CASE("data: tables", "[unit]") {
     for (const DataRow& r : data) {
       got += r.underlying + ">";
       for (std::size_t i = 0; i < r.surfaces.size(); ++i) got += (i > 0 ? "|" : "") + r.surfaces[i];
+      for (const std::string& starred : r.starred) got += "*" + starred;
       got += " '" + r.gloss + "' " + r.source + ";";
+      if (!r.id.empty()) got += " " + r.id + " ";
+      for (const std::string& tag : r.tags) got += tag + "+";
+      if (!r.comment.empty()) got += " " + r.comment;
     }
     for (const Diagnostic& d : diagnostics.all()) {
       const SourceMap::Place place = sources.Find(d.span);

@@ -118,7 +118,7 @@ TEST_CASE("text: reading", "[unit]") {
       {"t\u0303", kUnderlying, "error at 1+2: 't̃' is no symbol: ◌̃ may not stand on that base"},
       {"ˈpa", kSurface, "error at 0+2: marks of stress and syllables (ˈ ˌ .) are not read by this release"},
       {"pa{H}", kUnderlying, "error at 2+1: floating instances {..} are not read by this release"},
-      {"pa@noun", kUnderlying, "error at 2+1: tags on typed forms are not read by this release"},
+      {"pa@noun", kUnderlying, "error at 2+1: a tag stands in underlying forms that are typed or listed as data"},
       {"p|a", kUnderlying, "error at 1+1: '|' (U+007C, VERTICAL LINE) is in no symbol of the grammar"},
   };
   for (const Row& row : rows) {
