@@ -477,12 +477,21 @@ void Checker::CheckTags() {
       if (row.underlying[i] == '@' && ReadTag(row.underlying, &i, &tag, &error)) given.push_back(tag.name);
     }
   }
-  for (const syntax::Name& tag : tags_asked_) {
-    if (std::find(given.begin(), given.end(), tag.text) != given.end()) continue;
-    diagnostics_.Warning(Kind::kUnknownTag, tag.span,
-                         "no entry and no row of the data has the tag '" + tag.text + "': only forms typed with @" +
-                             tag.text + " would bear it",
-                         Or(DidYouMean(tag.text, given), "give it to the entries that are meant"));
+  if (given.size() == 4) return;  // all tags are typed
+  std::set<int> said;
+  const auto visit = [&](const Clause& clause) {
+    for (const TagTest& test : clause.tags) {
+      const std::string& tag = grammar_.tags[static_cast<std::size_t>(test.tag)];
+      if (std::find(given.begin(), given.end(), tag) != given.end() || !said.insert(test.tag).second) continue;
+      diagnostics_.Warning(Kind::kUnknownTag, test.span,
+                           "no entry and no row of the data has the tag '" + tag + "': only forms typed with @" + tag +
+                               " would bear it",
+                           Or(DidYouMean(tag, given), "give it to the entries that are meant"));
+    }
+  };
+  for (const Rule& rule : grammar_.rules) {
+    visit(rule);
+    for (const Clause& clause : rule.otherwise) visit(clause);
   }
 }
 

@@ -123,7 +123,7 @@ TEST_CASE("tags: one that only typed forms would bear is a warning", "[unit]") {
   const Diagnostic& d = loaded.diagnostics.all()[0];
   CHECK(d.kind == Kind::kUnknownTag);
   CHECK(d.severity == Severity::kWarning);
-  CHECK(loaded.Covered(d) == "laon");
+  CHECK(loaded.Covered(d) == "only laon");
   CHECK(d.remedy.find("'loan'") != std::string::npos);
 }
 
