@@ -58,6 +58,20 @@ code=0
 out="$(tiersmith derive - un-koɡ <x.tier 2>"$t/.err")" || code=$?
 is_code 0; is_out 'uŋkok'
 
+# Files that are included, and tables beside them, are in it too; messages name them as they lay beside the grammar.
+mkdir -p "$t/parts/common"
+sed '/^rule "nasal place"/d; /^data {/,$d' "$velmari" >"$t/parts/common/base.tier"
+printf 'data from "rows.tsv"\n' >>"$t/parts/common/base.tier"
+printf 'underlying\tsurface\nun-koɡ\tuŋkok\n' >"$t/parts/common/rows.tsv"
+printf 'include "common/base.tier"\n%s\n' "$(grep '^rule "nasal place"' "$velmari")" >"$t/parts/g.tier"
+run compile "$t/parts/g.tier" -o parts.machine
+is_code 0
+rm -r "$t/parts"
+run check parts.machine
+is_code 0; has_out '1 of 1 rows derived, 0 failed'
+run check parts.machine --without 'nasal place'
+is_code 1; has_out 'common/rows.tsv:2: /un-koɡ/'
+
 # Rules left out when it was made stay out.
 run compile "$velmari" --without 'h loss' -o h.machine
 run derive h.machine mohl
