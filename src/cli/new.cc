@@ -49,6 +49,18 @@ rule "epenthesis"      { where C X:C #   insert E:/i/ before X }
 -- This one changes a value, and must come after "epenthesis": see /lamb/.
 rule "final devoicing" { where X:Obs #   set X [-voice] }
 
+-- The words: underlying form, gloss, tags to choose them by. Entries of longer lists: lexicon from "lexicon.tsv".
+lexicon {
+  stem /pika/ 'house' noun   stem /ɡulu/ 'field' noun   stem /isu/ 'water' noun   stem /tad/ 'stone' noun
+  stem /kisl/ 'bird' noun    stem /lamb/ 'river' noun   prefix /aN-/ 'in'         suffix /-u/ 'plural'
+}
+-- The forms each of them has: one of the affixes of each line; // is none.
+paradigm noun {
+  stem noun
+  place  : BARE //   IN /aN-/
+  number : SG //   PL /-u/
+}
+
 -- What the rules should derive: underlying form, surface form, gloss. Tables may be read too: data from "words.tsv".
 data {
   /aN-pika/ [ampika] 'in the house'    /aN-ɡulu/ [aŋɡulu] 'in the field'    /aN-isu/ [anisu] 'in the water'

@@ -10,14 +10,14 @@ is_code 0; no_err; is_out 'ampika\naŋɡulu\nanisu\ntat\nlamip\nlambu\nkisil'
 run derive olmet.tier --trace aN-pika
 is_code 0; has_out "p's Place spread to N"
 run recover olmet.tier tat
-is_code 0; has_out 'tad   0'
+is_code 0; [[ "$out" =~ tad\ +0 ]] || fail 'tad expected'
 # Each rule is needed: without it some row fails, or has no symbol for N.
 while IFS= read -r rule; do
   run check olmet.tier --without "$rule"
   [[ "$code" -ne 0 && ( "$out" == *' 2 failed' || "$err" == *'no symbol spells N'* ) ]] || fail "without $rule: a failure expected"
 done < <(sed -nE 's/^rule "([^"]*)".*/\1/p' olmet.tier)
 # Every section has a comment over it.
-for section in tree segments omit class rule data; do
+for section in tree segments omit class rule lexicon paradigm data; do
   grep -B1 -E "^$section " olmet.tier | head -1 | grep -q '^--' || fail "a comment expected over $section"
 done
 
