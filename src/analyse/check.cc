@@ -21,13 +21,15 @@ std::string Quoted(const std::string& name) { return "'" + name + "'"; }
 
 Walk Derivation(const Grammar& grammar, const Form& underlying) {
   Walk walk;
-  walk.forms.push_back(underlying);
+  walk.forms.push_back(grammar.fusions.empty() ? underlying : Fused(grammar, underlying));
   for (const Rule& rule : grammar.rules) {
     Application application = ApplyRule(grammar, rule, walk.forms.back(), true);
     if (!application.ambiguous.empty()) {
       walk.problem = "rule " + Quoted(rule.name) + " is ambiguous here: " + application.ambiguous;
     } else if (!application.reaches.empty()) {
       walk.problem = "rule " + Quoted(rule.name) + " reaches another segment: " + application.reaches;
+    } else if (!application.too_many.empty()) {
+      walk.problem = "rule " + Quoted(rule.name) + ": " + application.too_many;
     }
     walk.forms.push_back(application.form);
     walk.applications.push_back(std::move(application));

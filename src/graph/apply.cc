@@ -39,16 +39,15 @@ class Run {
     if (rule_.probability < 1) {
       DrawAtEachSite(view, matches, standing);
     } else {
-      Branch branch = start_;
-      Carry(view, matches, standing, nullptr, &branch);
-      End(std::move(branch));
+      Carry(view, matches, standing, nullptr, &start_);
+      End(std::move(start_));
     }
     return Finished();
   }
 
   Results Sweep(bool rightward) {
     const std::vector<Visit> visits = Visits(rightward);
-    open_.push_back(start_);
+    open_.push_back(std::move(start_));
     while (!open_.empty() && !results_.HasProblem()) {
       Branch branch = std::move(open_.back());
       open_.pop_back();

@@ -246,5 +246,82 @@ TEST_CASE("graph: fuse", "[unit]") {
   CHECK(Dump(Derive(g, FormOf(g, "n t")).surface, g.tree) == graph("n{-ant Place:1} t{-ant Place:1}"));
 }
 
+TEST_CASE("graph: a nearer slot counts only where the whole rule would apply", "[unit]") {
+  Grammar g = SmallGrammar();
+  g.tags.push_back("weak");
+  const auto drop = [&](const char* where) { return RuleBuilder(g, where).Delete("B"); };
+  const char* gap = "A:[+nasal] ... B:[-son]";
+  CheckRows(g, {
+                   {drop(gap), "n t a p", "n a p"},
+                   {drop(gap).If("A.Place ≠ B.Place"), "n t a p", "n t a"},
+                   {drop(gap).Except("weak"), "‖ n -@weak t a -@stem p", "‖ n -@weak t a -@stem"},
+                   {drop("A:[+nasal αback] ... B:[-son αback]"), "ŋ t a k", "ŋ t a"},
+                   {RuleBuilder(g, gap).Set("B", "round").Preserving(), "n p a t", "n p a t", "", "preserving"},
+                   // A match on half of a long one is blocked and so nothing nearer.
+                   {drop("A:[+nasal] ... B:[-son -voice]").SharingBlocked(), "n t{root:1} t{root:1} a k",
+                    "n t{root:1} t{root:1} a", "", "sharing"},
+                   // One that gives way to an earlier clause is nearer all the same.
+                   {RuleBuilder(g, "B:[-son Labial]").Set("B", "+nasal").Otherwise(gap).Delete("B"), "n p a t",
+                    "n p{+nasal} a t"},
+               });
+}
+
+TEST_CASE("graph: clauses, preference and draws in a sweep", "[unit]") {
+  const Grammar g = SmallGrammar();
+  // A vowel without back takes that of the vowel before; where none is before, of the one behind.
+  const Rule harmony = RuleBuilder(g, "A:[+syll back] ( [-syll] )0- B:[+syll no back]")
+                           .SetAs("B.back", "A.back")
+                           .Otherwise("B:[+syll no back] ( [-syll] )0- A:[+syll back]")
+                           .SetAs("B.back", "A.back")
+                           .Mode(kRightward);
+  const auto either = [&](Rule::Prefer prefer) {
+    return RuleBuilder(g, "[-syll] B:[+syll no back] ( [-syll] )0-1 ( [+syll] )0-1 A:[+syll back]")
+        .SetAs("B.back", "A.back")
+        .Prefer(prefer)
+        .Mode(kRightward)
+        .rule();
+  };
+  CheckRows(g, {
+                   {harmony, "i t a{no back} t u", "i t a{-back} t u"},
+                   {harmony, "a{no back} t u", "a t u"},
+                   // The first has been given one when the second is visited.
+                   {harmony, "a{no back} a{no back} t i", "a{no back} a{-back} t i"},
+                   {either(kPreferLeft), "t a{no back} i u", "t a{-back} i u", "", "prefer"},
+                   {either(kPreferRight), "t a{no back} i u", "t a i u", "", "prefer"},
+                   {either(Rule::Prefer::kNone), "t a{no back} i u", "", "ambiguous"},
+               });
+}
+
+TEST_CASE("graph: notes of the further changes and failures", "[unit]") {
+  const Grammar g = SmallGrammar();
+  const auto notes = [&](const Rule& rule, const char* form) {
+    return ApplyRule(g, rule, FormOf(g, form), true).notes;
+  };
+  using Lines = std::vector<std::string>;
+  CHECK(notes(RuleBuilder(g, "A:[+nasal] B:[-son]").SetAs("A.Place", "B.Place"), "n k").changes ==
+        Lines{"n's Place set as k's"});
+  CHECK(notes(RuleBuilder(g, "A:[+nasal] B:[-son]").FillAs("A.Place", "B.Place"), "N k").changes ==
+        Lines{"N's Place filled as k's"});
+  CHECK(notes(RuleBuilder(g, "A:[+nasal]").SetLiteral("A", "kː"), "n").changes == Lines{"n set to kː"});
+  CHECK(notes(RuleBuilder(g, "A:[+syll]").Lengthen("A"), "t a").changes == Lines{"a made longer"});
+  CHECK(notes(RuleBuilder(g, "A:[half1]").Shorten("A"), "t a{root:1} a{root:1}").changes ==
+        Lines{"a (slot 2) made shorter"});
+  CHECK(notes(RuleBuilder(g, "A:[-syll] B:[-syll]").Merge("A.Place", "B.Place"), "n t").changes ==
+        Lines{"n's and t's Place made one"});
+  CHECK(notes(RuleBuilder(g, "A:[] B:- C:[]").Delete("B"), "n - t").changes == Lines{"- deleted"});
+  CHECK(notes(RuleBuilder(g, "A:[+syll αback] B:[+syll]").Set("B", "-αback"), "i i").changes ==
+        Lines{"i (slot 2) set to [+back]"});
+  CHECK(notes(RuleBuilder(g, "A:[-syll] B:[-syll]").Insert("E", true, "B", "N").Set("N", "+nasal"), "t p").changes ==
+        Lines{"E inserted before p", "E set to [+nasal]"});
+  CHECK(notes(RuleBuilder(g, "A:[-son]").Delink("A.-cont"), "c").changes == Lines{"c's -cont cut"});
+
+  CHECK(notes(RuleBuilder(g, "A:[-son]").Set("A", "round").Preserving(), "p").blocked ==
+        Lines{"blocked at p: preserving (the result is no symbol of `segments`)"});
+  CHECK(notes(RuleBuilder(g, "A:[half1 -cont]|[-cont]").Set("A", "+cont").SharingBlocked(), "t{cont:1} p{cont:1}")
+            .blocked.front() == "blocked at t: sharing (a node that the rule mentions is held outside the match)");
+  CHECK(notes(RuleBuilder(g, "( [] )0-1 A:[back] B:[+syll no back] ( [] )0-1").SetAs("B.back", "A.back"), "a E")
+            .blocked.empty());
+}
+
 }  // namespace
 }  // namespace tiersmith::testing
