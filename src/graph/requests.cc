@@ -628,12 +628,15 @@ void Requests::SetRoots(Graph& graph, Longers* longer) const {
   };
   if (std::none_of(contents_.begin(), contents_.end(), [](const Content& c) { return c.node == kRootNode; })) return;
   const Content* before = nullptr;
-  InstanceId fresh = kNone;
+  InstanceId root_before = kNone, fresh = kNone;
   for (int slot = 0; slot < view_.size(); ++slot) {
     const Content* asked = asked_of(slot);
-    const bool of_one_root = slot > 0 && view_.root(slot) != kNone && view_.root(slot) == view_.root(slot - 1);
+    const InstanceId root = view_.root(slot);
+    if (asked == nullptr && root == kNone) continue;  // lines of a root pass over slots without one
+    const bool of_one_root = root != kNone && root == root_before;
     const bool goes_on = asked != nullptr && before != nullptr && of_one_root && SameContent(*asked, *before);
     before = asked;
+    root_before = root;
     if (asked == nullptr) continue;
     if (!goes_on) fresh = graph.AddContent(asked->trees.front());
     graph.SetList(asked->mother, kRootNode, {fresh});
