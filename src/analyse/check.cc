@@ -231,50 +231,90 @@ int LastRuleToChange(const Grammar& grammar, const Walk& walk, Difference differ
 // ---- explaining -----------------------------------------------------------------------------------------
 class Checker {
  public:
-  explicit Checker(const Grammar& grammar, Runner* runner) : grammar_(grammar), reader_(grammar), runner_(runner) {}
+  explicit Checker(const Grammar& grammar, Runner* runner)
+      : grammar_(grammar), forms_(grammar), reader_(forms_.reader()), runner_(runner) {
+    for (const Rule& rule : grammar.rules) optional_ = optional_ || rule.probability < 1;
+  }
 
   CheckedRow CheckRow(const DataRow& row, CheckResult& result) {
     CheckedRow checked;
-    std::vector<Token> tokens;
     TextError error;
-    if (!reader_.Read(row.underlying, Reader::Side::kUnderlying, &tokens, &error)) {
-      checked.unreadable = error;
-      return checked;
+    std::vector<Reading> readings;
+    std::vector<std::string> texts = row.also;
+    texts.insert(texts.begin(), row.underlying);
+    for (const std::string& text : texts) {
+      std::vector<Reading> some;
+      if (!forms_.Read(text, row.tags, &some, &error)) {
+        checked.unreadable = error;
+        return checked;
+      }
+      readings.insert(readings.end(), some.begin(), some.end());
     }
-    const Walk walk = Derivation(grammar_, reader_.FormOf(tokens, Reader::Side::kUnderlying));
+    // The first reading that passes, else the first.
+    std::vector<CheckedRow> all;
+    for (const Reading& reading : readings) {
+      all.push_back(CheckReading(row, reading));
+      if (all.back().passed) break;
+    }
+    const std::size_t chosen = all.back().passed ? all.size() - 1 : 0;
+    checked = std::move(all[chosen]);
+    if (readings.size() > 1) checked.reading = grammar_.tagged ? readings[chosen].described : readings[chosen].text;
+    const Walk walk = Derivation(grammar_, readings[chosen].form);
     for (std::size_t k = 0; k < walk.applications.size(); ++k) {
       for (const auto& [reason, count] : walk.applications[k].blocked)
         result.blocked[static_cast<int>(k)][reason] += count;
     }
-    std::string problem = walk.problem;
-    if (problem.empty()) {
-      FeatureTree no_symbol;
-      std::string surface;
-      if (WriteForm(grammar_, walk.forms.back(), &surface, &no_symbol)) {
-        checked.derived = surface;
-      } else {
-        problem = "no symbol spells " + grammar_.inventory.Describe(no_symbol, grammar_.tree) + " at the end";
-      }
-    }
-    checked.engines_differ = Disagreement(row, checked.derived);
-    checked.passed = checked.derived && checked.engines_differ.empty() && Expected(row, *checked.derived);
-    if (!checked.passed) checked.explanation = Explain(row, walk, problem);
+    if (!checked.passed) checked.explanation = Explain(row, walk, checked.explanation.problem);
     return checked;
   }
 
  private:
-  static bool Expected(const DataRow& row, const std::string& surface) {
-    const std::string key = ComparisonKey(surface);
-    return std::any_of(row.surfaces.begin(), row.surfaces.end(),
-                       [&](const std::string& expected) { return ComparisonKey(expected) == key; });
+  // All but the explanation; its problem, if there is no result.
+  CheckedRow CheckReading(const DataRow& row, const Reading& reading) {
+    CheckedRow checked;
+    const Outputs outputs = OutputsOf(grammar_, reading.form);
+    if (!outputs.all.empty()) checked.derived = outputs.all.front().surface;
+    if (!checked.derived) checked.explanation.problem = outputs.problem;
+    checked.engines_differ = Disagreement(reading, checked.derived);
+    bool starred = false;
+    std::optional<double> passes;
+    for (const Outputs::Output& output : outputs.all) {
+      starred = starred || IsOneOf(row, row.starred, output.surface);
+      if (!passes && (row.surfaces.empty() || IsOneOf(row, row.surfaces, output.surface))) passes = output.probability;
+    }
+    checked.passed = passes && !starred && checked.engines_differ.empty();
+    if (checked.passed && !Expected(row, *checked.derived)) checked.less_likely = passes;
+    return checked;
   }
 
-  // The machine's result where it is another than the interpreter's; "" where they agree.
-  std::string Disagreement(const DataRow& row, const std::optional<std::string>& derived) {
-    if (runner_ == nullptr) return "";
+  std::string Key(const DataRow& row, const std::string& surface) const {
+    if (!row.comparing_length || grammar_.doubled.empty()) return ComparisonKey(surface, row.comparing_length);
+    std::vector<Token> tokens;  // with `length doubled` tt and tː are two ways of writing one thing
+    TextError error;
+    const bool read = reader_.Read(surface, Reader::Side::kSurface, &tokens, &error);
+    return ComparisonKey(read ? TextOf(grammar_, tokens) : surface, true);
+  }
+  bool IsOneOf(const DataRow& row, const std::vector<std::string>& forms, const std::string& surface) const {
+    const std::string key = Key(row, surface);
+    return std::any_of(forms.begin(), forms.end(), [&](const std::string& form) { return Key(row, form) == key; });
+  }
+  bool Expected(const DataRow& row, const std::string& surface) const {
+    return (row.surfaces.empty() || IsOneOf(row, row.surfaces, surface)) && !IsOneOf(row, row.starred, surface);
+  }
+
+  // The machine's result where it is another than the interpreter's; "" where they agree. Of optional rules only the
+  // likeliest of many ways could be asked for, and ties may fall out either way.
+  std::string Disagreement(const Reading& reading, const std::optional<std::string>& derived) {
+    if (runner_ == nullptr || optional_) return "";
     std::string machine;
     TextError error;
-    const bool ran = runner_->Derive(row.underlying, &machine, &error);
+    bool ran = false;
+    if (grammar_.tagged) {
+      const Runner::Answer answer = runner_->Apply(reading.form);
+      ran = answer.form && WriteForm(grammar_, *answer.form, &machine, nullptr);
+    } else {
+      ran = runner_->Derive(reading.text, &machine, &error);
+    }
     if (ran == derived.has_value() && (!ran || machine == *derived)) return "";
     return ran ? machine : "no result: " + error.message;
   }
@@ -286,7 +326,11 @@ class Checker {
       explanation.problem = problem;
       return explanation;
     }
-    const Difference difference = NearestDifference(row, walk.forms.back());
+    std::string surface;
+    if (WriteForm(grammar_, walk.forms.back(), &surface, nullptr) && IsOneOf(row, row.starred, surface))
+      explanation.starred = surface;
+    Difference difference;
+    if (explanation.starred.empty() && !row.surfaces.empty()) difference = NearestDifference(row, walk.forms.back());
     explanation.difference = difference.words;
     const std::vector<int> mending = MendingRules(row, walk);
     if (!mending.empty()) {
@@ -351,8 +395,10 @@ class Checker {
   }
 
   const Grammar& grammar_;
-  Reader reader_;
+  FormReader forms_;
+  const Reader& reader_;
   Runner* runner_;
+  bool optional_ = false;
 };
 
 }  // namespace
@@ -370,6 +416,8 @@ CheckResult Check(const Grammar& grammar, const std::vector<DataRow>& rows, Runn
 
 std::string Describe(const Explanation& explanation, const Grammar& grammar) {
   const auto name = [&](int rule) { return Quoted(grammar.rules[static_cast<std::size_t>(rule)].name); };
+  if (!explanation.starred.empty() && explanation.which != Explanation::Case::kOneRule)
+    return "[" + explanation.starred + "] must not come out; leaving out no single rule keeps it away";
   switch (explanation.which) {
     case Explanation::Case::kNoResult:
       return "no result: " + explanation.problem;

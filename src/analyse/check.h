@@ -15,7 +15,11 @@
 //                   blocked in this derivation, and why, is quoted.
 // Cases 2 and 3 are evidence, not proof: the error may be in the data, in the underlying form or in an earlier rule.
 //
-// Not here: rows with optional rules and probabilities, orders of rules. Tested by tests/unit/analyse/check_rows_test.cc.
+// Where rules are optional a row passes if some way of applying them gives one of its surfaces, and the likeliest is
+// explained where none does. A form with several readings (model/readings.h, model/speller.h) passes by one of them. A
+// starred form must come out in no way.
+//
+// Not here: orders of rules. Tested by tests/unit/analyse/check_rows_test.cc.
 #pragma once
 
 #include <map>
@@ -23,7 +27,9 @@
 #include <string>
 #include <vector>
 
+#include "analyse/paradigm.h"
 #include "model/grammar.h"
+#include "model/readings.h"
 #include "model/text.h"
 #include "run/run.h"
 
@@ -38,12 +44,15 @@ struct Explanation {
   std::string problem;               // kNoResult: why there is none
   std::vector<std::string> changes;  // what the named rule did, in words
   std::vector<std::string> blocked;  // kNoRule: "'nasal place': blocked at n: ..."
+  std::string starred;               // not empty: this form came out, and must not
   std::string expected_note;         // not empty: the expected form cannot be a form of this grammar, and why
 };
 
 struct CheckedRow {
   bool passed = false;
-  std::optional<std::string> derived;   // none if there is no result
+  std::optional<std::string> derived;   // the likeliest surface; none if there is no result
+  std::optional<double> less_likely;    // it passes only by a surface less likely than that, with this probability
+  std::string reading;                  // of several readings, the one that is told of
   std::optional<TextError> unreadable;  // the underlying form could not be read; no derivation then
   std::string engines_differ;           // not empty: the machine's result, where it is not the interpreter's
   Explanation explanation;              // of a row that fails and was read
@@ -58,7 +67,8 @@ struct CheckResult {
 };
 
 // Derives every row by the graph interpreter, and by the machine too if one is given: where the two differ the row
-// says so and counts as failed. A row passes if what is derived is one of its surfaces, up to ComparisonKey().
+// says so and counts as failed. A row passes if what is derived is one of its surfaces, up to ComparisonKey(). Requires: no
+// row is spelled (ReadSpelled).
 CheckResult Check(const Grammar& grammar, const std::vector<DataRow>& rows, Runner* runner);
 
 // "went wrong at rule 'x': ..." in one line; the details are in the explanation.

@@ -7,7 +7,7 @@
 #include <algorithm>
 #include <nlohmann/json.hpp>
 
-#include "cli/command.h"
+#include "cli/lettering.h"
 #include "run/run.h"
 
 namespace tiersmith::cli {
@@ -41,6 +41,14 @@ std::string Joined(const std::vector<std::string>& parts, const char* between) {
 std::string Expected(const DataRow& row) {
   std::string out;
   for (const std::string& surface : row.surfaces) out += (out.empty() ? "[" : " ~ [") + surface + "]";
+  for (const std::string& surface : row.starred) out += (out.empty() ? "* [" : " * [") + surface + "]";
+  return out;
+}
+
+// As a cell of a table lists them: a ~ b * c.
+std::string Listed(const DataRow& row) {
+  std::string out = Joined(row.surfaces, " ~ ");
+  for (const std::string& starred : row.starred) out += (out.empty() ? "*" : " *") + starred;
   return out;
 }
 
@@ -77,6 +85,7 @@ std::string FailureText(const Report& report, std::size_t index) {
   const CheckedRow& checked = report.result.rows[index];
   std::string out = fmt::format("{}: /{}/{}\n", PlaceOf(report, row.span), row.underlying,
                                 row.gloss.empty() ? "" : " '" + row.gloss + "'");
+  if (!checked.reading.empty()) out += "  read as   " + checked.reading + "\n";
   out += "  expected  " + Expected(row) + "\n";
   if (!checked.unreadable) out += "  derived   " + (checked.derived ? "[" + *checked.derived + "]" : "∅") + "\n";
   out += "  " + Why(report, checked) + "\n";
@@ -98,6 +107,18 @@ std::string BlockedText(const Report& report) {
   return out;
 }
 
+// Rows that pass, but not by the likeliest surface.
+std::string LessLikelyText(const Report& report) {
+  std::string out;
+  for (std::size_t i = 0; i < report.rows.size(); ++i) {
+    const CheckedRow& checked = report.result.rows[i];
+    if (!checked.less_likely) continue;
+    out += fmt::format("passes as the less likely output ({:.3g}): /{}/ {}, likeliest [{}]\n", *checked.less_likely,
+                       report.rows[i].underlying, Expected(report.rows[i]), *checked.derived);
+  }
+  return out;
+}
+
 std::string AsText(const Report& report) {
   std::string out;
   for (std::size_t i = 0; i < report.rows.size(); ++i) {
@@ -106,7 +127,7 @@ std::string AsText(const Report& report) {
   const std::size_t all = report.rows.size();
   out += fmt::format("{} of {} rows derived, {} failed\n", all - static_cast<std::size_t>(report.result.failed), all,
                      report.result.failed);
-  return out + BlockedText(report);
+  return out + LessLikelyText(report) + BlockedText(report);
 }
 
 // ---- tsv and json -----------------------------------------------------------------------------------------
@@ -116,11 +137,10 @@ std::string AsTsv(const Report& report) {
     const DataRow& row = report.rows[i];
     const CheckedRow& checked = report.result.rows[i];
     const bool explained = !checked.passed && !checked.unreadable;
-    out +=
-        fmt::format("{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\n", Field(row.underlying), Field(Joined(row.surfaces, " ~ ")),
-                    checked.derived ? Field(*checked.derived) : "∅", checked.passed ? "pass" : "fail",
-                    explained ? CaseName(checked.explanation.which) : "", RuleName(report, checked),
-                    checked.passed ? "" : Field(Why(report, checked)), Field(row.gloss), PlaceOf(report, row.span));
+    out += fmt::format("{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\t{}\n", Field(row.underlying), Field(Listed(row)),
+                       checked.derived ? Field(*checked.derived) : "∅", checked.passed ? "pass" : "fail",
+                       explained ? CaseName(checked.explanation.which) : "", RuleName(report, checked),
+                       checked.passed ? "" : Field(Why(report, checked)), Field(row.gloss), PlaceOf(report, row.span));
   }
   return out;
 }
@@ -131,7 +151,11 @@ ordered_json RowJson(const Report& report, std::size_t index) {
   ordered_json json = {{"underlying", row.underlying}, {"expected", row.surfaces},
                        {"derived", nullptr},           {"passed", checked.passed},
                        {"gloss", row.gloss},           {"place", PlaceOf(report, row.span)}};
+  if (!row.starred.empty()) json["starred"] = row.starred;
+  if (!row.id.empty()) json["id"] = row.id;
   if (checked.derived) json["derived"] = *checked.derived;
+  if (checked.less_likely) json["less_likely"] = *checked.less_likely;
+  if (!checked.reading.empty()) json["reading"] = checked.reading;
   if (checked.passed) return json;
   json["why"] = Why(report, checked);
   if (checked.unreadable) return json;
@@ -174,6 +198,8 @@ bool ReadRows(const CheckOptions& options, const Loaded& loaded, std::vector<Dat
   } else {
     Diagnostics diagnostics;
     *rows = LoadData(options.data, *loaded.sources, Span{kNoFile, 0, 0}, diagnostics);
+    for (DataRow& row : *rows) row.underlying_spelled = row.surface_spelled = options.spelled;
+    if (options.spelled) ReadSpelled(Speller(*loaded.grammar), rows, diagnostics);
     PrintDiagnostics(diagnostics, *loaded.sources, options.json());
     if (diagnostics.HasErrors()) {
       *code = CodeFor(diagnostics);
@@ -207,15 +233,32 @@ void PrintUnreadable(const Report& report, bool json) {
   PrintDiagnostics(diagnostics, report.sources, json);
 }
 
+// The rows and what came out of them in letters, if they are asked for.
+CheckResult Spelled(const Lettering& lettering, CheckResult result, std::vector<DataRow>* rows) {
+  if (!lettering.spelled()) return result;
+  for (std::size_t i = 0; i < rows->size(); ++i) {
+    DataRow& row = (*rows)[i];
+    if (result.rows[i].unreadable) continue;  // the error points into the form as it stands
+    row.underlying = lettering.Write(row.underlying, Reader::Side::kUnderlying);
+    for (std::string& surface : row.surfaces) surface = lettering.Write(surface, Reader::Side::kSurface);
+    for (std::string& surface : row.starred) surface = lettering.Write(surface, Reader::Side::kSurface);
+    std::optional<std::string>& derived = result.rows[i].derived;
+    if (derived) derived = lettering.Write(*derived, Reader::Side::kSurface);
+  }
+  return result;
+}
+
 int RunCheck(const CheckOptions& options) {
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
+  if (SpellsNothing(options, *loaded.grammar)) return kUsage;
   std::vector<DataRow> rows;
   int code = kFine;
   if (!ReadRows(options, loaded, &rows, &code)) return code;
   Runner runner(*loaded.grammar, *loaded.cascade);
   const CheckResult result = Check(*loaded.grammar, rows, &runner);
-  const Report report{*loaded.grammar, *loaded.sources, rows, result};
+  const CheckResult shown = Spelled(Lettering(*loaded.grammar, options.spelled), result, &rows);
+  const Report report{*loaded.grammar, *loaded.sources, rows, shown};
   Output output(options.output);
   if (!output.good()) return kFiles;
   PrintUnreadable(report, options.json());
@@ -230,8 +273,10 @@ void AddCheck(CLI::App& app, int& code) {
   auto options = std::make_shared<CheckOptions>();
   CLI::App* verb = app.add_subcommand("check", "data against the grammar");
   AddCommonOptions(*verb, *options);
-  verb->add_option("DATA", options->data,
-                   "a TSV with a heading (underlying, surface, gloss, source); none: the grammar's data");
+  AddSpelledOption(*verb, *options);
+  verb->add_option(
+      "DATA", options->data,
+      "a TSV with a heading (underlying, surface, id, gloss, tags, source, comment); none: the grammar's data");
   verb->footer(
       "\nA failing row is explained by the first rule where it went wrong: the first whose leaving out gives the\n"
       "expected form; failing that, the last that changed the first segment that differs; failing that, none did.\n"

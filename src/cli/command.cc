@@ -49,6 +49,13 @@ bool LeaveOut(const std::vector<std::string>& names, CompiledGrammar& compiled) 
   return true;
 }
 
+// "text, tsv or json".
+std::string ListOf(const std::vector<std::string>& names, const char* last) {
+  std::string list;
+  for (std::size_t i = 0; i < names.size(); ++i) list += (i == 0 ? "" : i + 1 == names.size() ? last : ", ") + names[i];
+  return list;
+}
+
 }  // namespace
 
 void AddCommonOptions(CLI::App& verb, CommonOptions& options) {
@@ -56,7 +63,7 @@ void AddCommonOptions(CLI::App& verb, CommonOptions& options) {
   verb.add_option("--without", options.without, "leave a rule out (may be given several times)")
       ->type_name("RULE")
       ->allow_extra_args(false);
-  verb.add_option("--format", options.format, "text, tsv or json")->type_name("FORMAT");
+  verb.add_option("--format", options.format, ListOf(options.formats, " or "))->type_name("FORMAT");
   verb.add_option("-o,--output", options.output, "write to this file")->type_name("FILE");
 }
 
@@ -92,13 +99,15 @@ int CodeFor(const Diagnostics& diagnostics) {
   return kUsage;
 }
 
+void PrintNote(const std::string& message) { std::cerr << "tiersmith: note: " << message << '\n'; }
+
 Loaded LoadOnly(const CommonOptions& options) {
   Loaded loaded;
   loaded.code = kUsage;
-  if (options.format != "text" && options.format != "tsv" && options.format != "json") {
+  if (std::find(options.formats.begin(), options.formats.end(), options.format) == options.formats.end()) {
     const bool later = options.format == "md" || options.format == "latex" || options.format == "html";
     PrintError(fmt::format("--format {}: {}", options.format, later ? "not supported yet" : "no such format"));
-    PrintHelp("the formats are text, tsv and json");
+    PrintHelp("the formats are " + ListOf(options.formats, " and "));
     return loaded;
   }
   loaded.sources = std::make_shared<SourceMap>();

@@ -26,6 +26,8 @@ struct CommonOptions {
   std::vector<std::string> without;
   std::string format = "text";
   std::string output;
+  bool spelled = false;
+  std::vector<std::string> formats = {"text", "tsv", "json"};  // those the verb writes
 
   bool json() const { return format == "json"; }
 };
@@ -37,6 +39,7 @@ void AddCommonOptions(CLI::App& verb, CommonOptions& options);
 void PrintDiagnostics(const Diagnostics& diagnostics, const SourceMap& sources, bool json);
 void PrintError(const std::string& message);
 void PrintHelp(const std::string& message);
+void PrintNote(const std::string& message);
 
 // A grammar ready for a verb. `code` is kFine, or the exit code after the diagnostics were printed.
 struct Loaded : CompiledGrammar {
@@ -111,6 +114,8 @@ void AddRecover(CLI::App& app, int& code);
 void AddCheck(CLI::App& app, int& code);
 void AddCompile(CLI::App& app, int& code);
 void AddNew(CLI::App& app, int& code);
+void AddParadigm(CLI::App& app, int& code);
+void AddWords(CLI::App& app, int& code);
 void AddLaterVerbs(CLI::App& app, int& code);
 
 }  // namespace tiersmith::cli

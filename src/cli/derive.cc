@@ -1,11 +1,13 @@
 // tiersmith derive: underlying forms to surface forms, one line out a line in; or derivations rule by rule.
-// /in-posible/ gives imposible. Tested by tests/cli/derive.sh.
+// /in-posible/ gives imposible. A form that can be read in several ways (tags, spelling) is derived in each. Tested by tests/cli/derive.sh.
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <nlohmann/json.hpp>
 
-#include "cli/command.h"
+#include "cli/lettering.h"
 #include "graph/interpreter.h"
+#include "model/readings.h"
 #include "run/run.h"
 
 namespace tiersmith::cli {
@@ -44,6 +46,33 @@ class ResultWriter {
     output_.Write("\n");
   }
 
+  // The results of a form that was read in several ways, or with tags: each surface once, with its reading where they differ.
+  struct Read {
+    std::string reading;
+    std::optional<std::string> surface;  // none: no result
+  };
+  void Readings(const std::string& underlying, const std::vector<Read>& readings) {
+    if (options_.json()) {
+      const auto value = [](const Read& read) { return read.surface ? JsonString(*read.surface) : "null"; };
+      std::string list;
+      for (const Read& read : readings) {
+        list += (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) +
+                ", \"surface\": " + value(read) + "}";
+      }
+      return Json("{\"underlying\": " + JsonString(underlying) + ", \"surface\": " + value(readings.front()) +
+                  ", \"readings\": [" + list + "]}");
+    }
+    const bool differ = std::any_of(readings.begin(), readings.end(),
+                                    [&](const Read& read) { return read.surface != readings.front().surface; });
+    std::string surfaces;
+    for (const Read& read : readings) {
+      surfaces += (surfaces.empty() ? "" : "\t") + read.surface.value_or(kNoOutput);
+      if (!differ) break;
+      surfaces += " (" + read.reading + ")";
+    }
+    Surface(underlying, &surfaces);
+  }
+
   void Json(const std::string& element) {
     output_.Write(first_ ? "\n" : ",\n");
     output_.Write(element);
@@ -70,14 +99,7 @@ class ResultWriter {
 // What a derivation is shown as: rows of name and form, with what happened under each.
 class Tracer {
  public:
-  explicit Tracer(const Grammar& grammar) : grammar_(grammar), reader_(grammar) {}
-
-  bool Trace(const std::string& form, Derivation* derivation, TextError* error) const {
-    std::vector<Token> tokens;
-    if (!reader_.Read(form, Reader::Side::kUnderlying, &tokens, error)) return false;
-    *derivation = Derive(grammar_, reader_.FormOf(tokens, Reader::Side::kUnderlying), true);
-    return true;
-  }
+  Tracer(const Grammar& grammar, const Lettering& lettering) : grammar_(grammar), lettering_(lettering) {}
 
   // The surface, or why there is none.
   bool Surface(const Derivation& derivation, std::string* surface, std::string* why) const {
@@ -86,7 +108,10 @@ class Tracer {
       return false;
     }
     FeatureTree no_symbol;
-    if (WriteForm(grammar_, derivation.surface, surface, &no_symbol)) return true;
+    if (WriteForm(grammar_, derivation.surface, surface, &no_symbol)) {
+      *surface = lettering_.Write(*surface, Reader::Side::kSurface);
+      return true;
+    }
     *why = "no symbol spells " + grammar_.inventory.Describe(no_symbol, grammar_.tree);
     return false;
   }
@@ -146,7 +171,43 @@ class Tracer {
   }
 
   const Grammar& grammar_;
-  Reader reader_;
+  const Lettering& lettering_;
+};
+
+// The readings of a typed form, said if there are several.
+class TypedForms {
+ public:
+  TypedForms(const Grammar& grammar, const Lettering& lettering)
+      : grammar_(grammar), reader_(grammar), lettering_(lettering) {}
+
+  // Is there more to read in the form than its symbols?
+  bool Plain(const std::string& form) const {
+    return !lettering_.spelled() && !grammar_.tagged && form.find('@') == std::string::npos &&
+           form.find("√") == std::string::npos;
+  }
+
+  bool Read(const std::string& form, std::vector<Reading>* readings, TextError* error) const {
+    readings->clear();
+    std::vector<std::string> texts;
+    if (!lettering_.Read(form, Reader::Side::kUnderlying, &texts, error)) return false;
+    for (const std::string& text : texts) {
+      std::vector<Reading> some;
+      if (!reader_.Read(text, {}, &some, error)) return false;
+      if (some.size() > 1) {
+        std::string list;
+        for (const Reading& reading : some) list += (list.empty() ? "" : ", ") + reading.described;
+        PrintNote(fmt::format("/{}/ has {} readings: {}", text, some.size(), list));
+      }
+      for (Reading& reading : some) readings->push_back(std::move(reading));
+    }
+    return true;
+  }
+  std::string NameOf(const Reading& reading) const { return grammar_.tagged ? reading.described : reading.text; }
+
+ private:
+  const Grammar& grammar_;
+  FormReader reader_;
+  const Lettering& lettering_;
 };
 
 // Goes through the forms; `one(form, &error)` writes a form's result or says why it has none.
@@ -180,7 +241,10 @@ int ForEachForm(const DeriveOptions& options, Output& output, ResultWriter& writ
 int RunTrace(const DeriveOptions& options) {
   const Loaded loaded = LoadOnly(options);
   if (loaded.code != kFine) return loaded.code;
-  const Tracer tracer(*loaded.grammar);
+  if (SpellsNothing(options, *loaded.grammar)) return kUsage;
+  const Lettering lettering(*loaded.grammar, options.spelled);
+  const TypedForms forms(*loaded.grammar, lettering);
+  const Tracer tracer(*loaded.grammar, lettering);
   Output output(options.output);
   if (!output.good()) return kFiles;
   if (options.format == "tsv") {
@@ -190,18 +254,35 @@ int RunTrace(const DeriveOptions& options) {
   ResultWriter writer(options, output);
   bool all_have_results = true;
   const int code = ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
-    Derivation derivation;
-    if (!tracer.Trace(form, &derivation, error)) return false;
-    std::string surface, why;
-    all_have_results = tracer.Surface(derivation, &surface, &why) && all_have_results;
-    if (options.json()) {
-      writer.Json(tracer.Json(form, derivation).dump(2, ' ', false, ordered_json::error_handler_t::replace));
-    } else {
-      writer.Text(tracer.Text(derivation));
+    std::vector<Reading> readings;
+    if (!forms.Read(form, &readings, error)) return false;
+    for (const Reading& reading : readings) {
+      const Derivation derivation = Derive(*loaded.grammar, reading.form, true);
+      std::string surface, why;
+      all_have_results = tracer.Surface(derivation, &surface, &why) && all_have_results;
+      const bool named = readings.size() > 1 || loaded.grammar->tagged;
+      if (options.json()) {
+        ordered_json json = tracer.Json(form, derivation);
+        if (named) json["reading"] = forms.NameOf(reading);
+        writer.Json(json.dump(2, ' ', false, ordered_json::error_handler_t::replace));
+      } else {
+        writer.Text((named ? "reading " + forms.NameOf(reading) + "\n" : "") + tracer.Text(derivation));
+      }
     }
     return true;
   });
   return code == kFine && !all_have_results ? kDisagree : code;
+}
+
+// What the machine makes of one reading.
+bool DeriveReading(const Grammar& grammar, Runner& runner, const Reading& reading, std::string* surface,
+                   TextError* error) {
+  if (!grammar.tagged) return runner.Derive(reading.text, surface, error);
+  const Runner::Answer answer = runner.Apply(reading.form);
+  if (answer.form && WriteForm(grammar, *answer.form, surface, nullptr)) return true;
+  *error = {Kind::kBadForm, 0, reading.text.size(), fmt::format("the grammar has no result for {}", reading.described),
+            "see `derive --trace` for what happens to it"};
+  return false;
 }
 
 int RunDerive(const DeriveOptions& options) {
@@ -209,6 +290,9 @@ int RunDerive(const DeriveOptions& options) {
   if (options.trace) return RunTrace(options);
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
+  if (SpellsNothing(options, *loaded.grammar)) return kUsage;
+  const Lettering lettering(*loaded.grammar, options.spelled);
+  const TypedForms forms(*loaded.grammar, lettering);
   Runner runner(*loaded.grammar, *loaded.cascade);
   Output output(options.output);
   if (!output.good()) return kFiles;
@@ -216,9 +300,23 @@ int RunDerive(const DeriveOptions& options) {
   std::string surface;
   return ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
     surface.clear();
-    if (!runner.Derive(form, &surface, error)) return false;
-    writer.Surface(form, &surface);
-    return true;
+    if (forms.Plain(form)) {
+      if (!runner.Derive(form, &surface, error)) return false;
+      writer.Surface(form, &surface);
+      return true;
+    }
+    std::vector<Reading> readings;
+    if (!forms.Read(form, &readings, error)) return false;
+    std::vector<ResultWriter::Read> results;
+    bool any = false;
+    for (const Reading& reading : readings) {
+      results.push_back({forms.NameOf(reading), std::nullopt});
+      if (!DeriveReading(*loaded.grammar, runner, reading, &surface, error)) continue;
+      results.back().surface = lettering.Write(surface, Reader::Side::kSurface);
+      any = true;
+    }
+    if (any) writer.Readings(form, results);
+    return any;
   });
 }
 
@@ -228,6 +326,7 @@ void AddDerive(CLI::App& app, int& code) {
   auto options = std::make_shared<DeriveOptions>();
   CLI::App* verb = app.add_subcommand("derive", "underlying forms to surface forms");
   AddCommonOptions(*verb, *options);
+  AddSpelledOption(*verb, *options);
   verb->add_option("FORMS", options->forms, "underlying forms; none, or -: one a line on standard input");
   verb->add_flag("--trace", options->trace, "the derivation, rule by rule");
   verb->add_flag("--pairs", options->pairs, "underlying and surface form, tab-separated");

@@ -9,14 +9,12 @@ void AddLaterVerbs(CLI::App& app, int& code) {
     const char* does;
   };
   static constexpr Verb kVerbs[] = {
-      {"paradigm", "all cells of a paradigm"},
       {"audit", "what the analysis leaves unused or undecided"},
       {"order", "which rule orders the data allow"},
       {"compare", "where two grammars differ"},
       {"weigh", "probabilities of optional rules from data"},
       {"report", "the analysis written up"},
       {"draw", "figures of trees, forms and rules"},
-      {"words", "the words of a lexicon"},
       {"emit", "machines for other programs"},
   };
   for (const Verb& verb : kVerbs) {
@@ -26,7 +24,7 @@ void AddLaterVerbs(CLI::App& app, int& code) {
     const std::string name = verb.name;
     sub->callback([name, &code] {
       PrintError("'" + name + "' is not supported yet");
-      PrintHelp("this release has derive, recover, check, compile and new");
+      PrintHelp("this release has derive, recover, check, compile, new, paradigm and words");
       code = kUsage;
     });
   }

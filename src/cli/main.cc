@@ -29,6 +29,8 @@ int Run(int argc, char** argv) {
   AddCheck(app, code);
   AddCompile(app, code);
   AddNew(app, code);
+  AddParadigm(app, code);
+  AddWords(app, code);
   AddLaterVerbs(app, code);
   try {
     app.parse(argc, argv);
@@ -36,7 +38,7 @@ int Run(int argc, char** argv) {
     if (error.get_exit_code() == static_cast<int>(CLI::ExitCodes::Success)) return app.exit(error);
     const bool no_verb = argc < 2 || app.get_subcommands().empty();
     PrintError(no_verb && argc >= 2 && argv[1][0] != '-' ? "no verb '" + std::string(argv[1]) + "'" : error.what());
-    PrintHelp(no_verb ? "the verbs are derive, recover, check, compile, new; see tiersmith --help"
+    PrintHelp(no_verb ? "the verbs are derive, recover, check, compile, new, paradigm, words; see tiersmith --help"
                       : "see tiersmith " + app.get_subcommands().front()->get_name() + " --help");
     return kUsage;
   }

@@ -8,7 +8,7 @@
 #include <nlohmann/json.hpp>
 #include <tuple>
 
-#include "cli/command.h"
+#include "cli/lettering.h"
 #include "run/run.h"
 
 namespace tiersmith::cli {
@@ -75,6 +75,28 @@ ordered_json AsJson(const std::string& form, const Runner::Candidates& candidate
   return json;
 }
 
+// The candidates of each reading of the form, in letters if they are asked for.
+bool Recover(Runner& runner, const Lettering& lettering, const std::string& form, std::size_t best,
+             Runner::Candidates* candidates, TextError* error) {
+  std::vector<std::string> readings;
+  if (!lettering.Read(form, Reader::Side::kSurface, &readings, error)) return false;
+  for (const std::string& reading : readings) {
+    Runner::Candidates some;
+    if (!runner.Recover(reading, best, &some, error)) return false;
+    candidates->best.insert(candidates->best.end(), some.best.begin(), some.best.end());
+    if (some.infinite) candidates->infinite_why = some.infinite_why;
+    candidates->infinite = candidates->infinite || some.infinite;
+    candidates->more = candidates->more || some.more;
+  }
+  for (Runner::Candidate& candidate : candidates->best)
+    candidate.form = lettering.Write(candidate.form, Reader::Side::kUnderlying);
+  Sort(*candidates);
+  if (candidates->best.size() <= best) return true;
+  candidates->best.resize(best);
+  candidates->more = true;
+  return true;
+}
+
 int RunRecover(const RecoverOptions& options) {
   if (BothFromStdin(options, options.forms)) return kUsage;
   if (options.best == 0 || options.best > Limits{}.candidates) {
@@ -83,6 +105,8 @@ int RunRecover(const RecoverOptions& options) {
   }
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
+  if (SpellsNothing(options, *loaded.grammar)) return kUsage;
+  const Lettering lettering(*loaded.grammar, options.spelled);
   Runner runner(*loaded.grammar, *loaded.cascade);
   Output output(options.output);
   if (!output.good()) return kFiles;
@@ -98,7 +122,7 @@ int RunRecover(const RecoverOptions& options) {
     if (!source.Next(&form, &number)) break;
     Runner::Candidates candidates;
     TextError error;
-    if (!runner.Recover(form, options.best, &candidates, &error)) {
+    if (!Recover(runner, lettering, form, options.best, &candidates, &error)) {
       PrintTextError(source, form, number, error, options.json());
       if (!options.keep_going) {
         if (options.json() && options.output.empty()) output.Write(first ? "]\n" : "\n]\n");
@@ -106,7 +130,6 @@ int RunRecover(const RecoverOptions& options) {
       }
       candidates = {};
     }
-    Sort(candidates);
     none = none || candidates.best.empty();
     if (options.json()) {
       output.Write(first ? "\n" : ",\n");
@@ -136,6 +159,7 @@ void AddRecover(CLI::App& app, int& code) {
   auto options = std::make_shared<RecoverOptions>();
   CLI::App* verb = app.add_subcommand("recover", "surface forms to candidate underlying forms");
   AddCommonOptions(*verb, *options);
+  AddSpelledOption(*verb, *options);
   verb->add_option("FORMS", options->forms, "surface forms; none, or -: one a line on standard input");
   verb->add_option("--best", options->best, "how many candidates (10)")->type_name("N");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");

@@ -173,7 +173,7 @@ class Speller::Impl::Search {
     std::map<std::size_t, std::vector<int>, std::greater<>> by_length;  // lines, and -1 for what stands for itself
     for (std::size_t line = 0; line < impl_.letters.size(); ++line) {
       const std::u32string& letters = impl_.letters[line];
-      if (!impl_.Line(line).reads || letters.size() > size() - unit) continue;
+      if (!Reads(impl_.Line(line)) || letters.size() > size() - unit) continue;
       bool here = true;
       for (std::size_t k = 0; here && k < letters.size(); ++k) here = text_.units[unit + k].code == letters[k];
       if (here) by_length[letters.size()].push_back(static_cast<int>(line));
@@ -188,6 +188,13 @@ class Speller::Impl::Search {
       if (any) return true;
     }
     return false;
+  }
+
+  // A line may be read, and all it means may stand on this side.
+  bool Reads(const SpellingLine& line) const {
+    return line.reads && std::all_of(line.means.begin(), line.means.end(), [&](const Token& token) {
+             return token.kind != Token::Kind::kSymbol || Stands(token.symbol);
+           });
   }
 
   bool BySelf(const Token& token, std::size_t next) {
@@ -364,7 +371,7 @@ std::string Speller::Write(std::string_view text, Reader::Side side) const {
   std::vector<Token> tokens;
   TextError error;
   if (!impl_->reader.Read(text, side, &tokens, &error)) return std::string(text);
-  return impl_->Write(tokens, false);
+  return impl_->Write(tokens, side == Reader::Side::kUnderlying);
 }
 
 }  // namespace tiersmith

@@ -30,7 +30,8 @@ class Speller {
   // most `kMostReadings`, further ones are an error.
   static constexpr std::size_t kMostReadings = 16;
   bool Read(std::string_view letters, Reader::Side side, std::vector<std::string>* readings, TextError* error) const;
-  // A form in symbols -> letters. `-` and `=` are not written unless a line says so. Text that cannot be read (∅) stays.
+  // A form in symbols -> letters. In surface forms `-` and `=` are not written unless a line says so; underlying forms keep
+  // them, since they would fall together without. Text that cannot be read (∅) stays.
   std::string Write(std::string_view text, Reader::Side side) const;
 
  private:

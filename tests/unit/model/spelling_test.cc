@@ -97,6 +97,14 @@ TEST_CASE("spelling: length doubled holds for symbols too", "[unit]") {
   CHECK(ReadAll(speller, "acca", Reader::Side::kSurface) == "akka");
 }
 
+TEST_CASE("spelling: a line is read where all it means may stand", "[unit]") {
+  const Loaded loaded = LoadOrFail(
+      std::string(kSmallTree) + "segments from \"ipa\" { t k n a }\nallophones { ŋ }\nspelling { n = ŋ before /k/ }");
+  const Speller speller(*loaded.grammar);
+  CHECK(ReadAll(speller, "tanka", Reader::Side::kUnderlying) == "tanka");
+  CHECK(ReadAll(speller, "tanka", Reader::Side::kSurface) == "tanka or taŋka");
+}
+
 TEST_CASE("spelling: rows of data come to symbols", "[unit]") {
   const Loaded loaded = LoadOrFail(kHead + R"(
     spelling { ng = ŋ; n = ŋ before /k/ }
