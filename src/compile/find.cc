@@ -2,6 +2,7 @@
 
 #include <algorithm>
 
+#include "compile/choose.h"
 #include "compile/sides.h"
 
 namespace tiersmith {
@@ -170,6 +171,11 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
         return step;
       },
       max_states);
+  if (requests.rule().probability < 1) {
+    Found chosen = Choose({std::move(tape), false}, requests, max_states);
+    if (chosen.over_budget) return chosen;
+    tape = std::move(chosen.tape);
+  }
   const LetterBuilder builder(requests, pool);
   const SpanPass spans(requests, builder);
   tape = PassRightward(
@@ -194,6 +200,9 @@ struct Direction {
 // What the letters behind say to the next: by live node, is the last bearer linked ahead (1), and its near object mark (2).
 constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
 
+// What a draw said.
+constexpr std::int32_t kDrawnApply = 1, kDrawnLeave = 2;
+
 void DropLinks(WorkPart* part) {
   part->links = 0;
   for (WorkPart& daughter : part->daughters) DropLinks(&daughter);
@@ -203,13 +212,14 @@ void DropLinks(WorkPart* part) {
 struct SweepState {
   std::int32_t near = 0;     // subset behind, of the output
   std::int32_t visit = -1;   // subset behind of the form at the visit of the root we are in, or -1
+  std::int32_t drawn = 0;    // optional: what the draw of this visit said (of this word, if it draws by word); 0: none yet
   Key requests;              // of that visit, on the root and below
   Key behind, behind_visit;  // what the letters behind say
   Key contents;              // by request node: content behind (+1)
   Key visit_contents;        // the same as it was at the visit
 
   Key Pack() const {
-    Key key{near, visit};
+    Key key{near, visit, drawn};
     for (const Key* part : {&requests, &behind, &behind_visit, &contents, &visit_contents}) Append(&key, *part);
     return key;
   }
@@ -225,6 +235,7 @@ class Sweep {
         direction_(direction),
         builder_(requests, pool),
         pool_(pool),
+        draw_(requests.rule().probability),
         machine_(direction.rightward ? machine : Reversed(machine)),
         known_profiles_(known_profiles),
         near_(SubsetsOf(machine_, known_profiles, max_states)),
@@ -280,16 +291,16 @@ class Sweep {
     return state.Pack();
   }
 
-  PassStep Near(const Key& packed, const Key& symbol) {
+  std::vector<PassStep> Near(const Key& packed, const Key& symbol) {
     SweepState state = Unpack(packed);
     const Key input = Annotated(symbol, space_);
     const std::int32_t far = symbol[space_.AnnotatedSize()], ahead = symbol[space_.AnnotatedSize() + 1];
-    const std::int32_t* far_contents = &symbol[space_.AnnotatedSize() + 2];
     if (!space_.IsSlot(input[0])) {
       const int profile = Known(input);
       if (state.visit >= 0) state.visit = StepOn(state.visit, profile);
       state.near = StepOn(state.near, profile);
-      return {state.Pack(), Written(input, requests_.None(), Key(nodes(), 0), Key(nodes(), -1).data())};
+      if (EndsDraw(input[0])) state.drawn = 0;
+      return {{state.Pack(), Written(input, requests_.None(), Key(nodes(), 0), Key(nodes(), -1).data())}};
     }
     const bool first = state.visit < 0;
     if (first) {
@@ -299,6 +310,29 @@ class Sweep {
     }
     const Key at_visit = Current(input, state.behind_visit);
     const Key request = Decide(&state, at_visit, far, ahead, first);
+    const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
+    if (!asked || requests_.rule().probability >= 1) return {Went(std::move(state), symbol, at_visit, request)};
+    std::vector<PassStep> steps;
+    for (std::int32_t drawn : {kDrawnApply, kDrawnLeave}) {
+      if (state.drawn != 0 && state.drawn != drawn) continue;
+      SweepState after = state;
+      after.drawn = drawn;
+      if (drawn == kDrawnLeave) after.requests.assign(nodes(), 0);
+      steps.push_back(Went(std::move(after), symbol, at_visit, drawn == kDrawnLeave ? requests_.None() : request));
+      if (state.drawn == 0) steps.back().weight = drawn == kDrawnApply ? draw_.apply : draw_.leave;
+    }
+    return steps;
+  }
+
+ private:
+  struct Arc {
+    int from, role, to;
+  };
+
+  // Past a slot of which this is asked.
+  PassStep Went(SweepState state, const Key& symbol, const Key& at_visit, const Key& request) {
+    const Key input = Annotated(symbol, space_);
+    const std::int32_t* far_contents = &symbol[space_.AnnotatedSize() + 2];
     const Key now = Current(input, state.behind);
     const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
     if (!asked) {
@@ -320,16 +354,18 @@ class Sweep {
     return {state.Pack(), written};
   }
 
- private:
-  struct Arc {
-    int from, role, to;
-  };
+  // Is a boundary the end of what one draw is for?
+  bool EndsDraw(int boundary_class) const {
+    const Boundary end = requests_.rule().within == Domain::kPhrase ? Boundary::kPhrase : Boundary::kWord;
+    return requests_.rule().by_word && space_.classes()[boundary_class].visible.boundary >= end;
+  }
 
   SweepState Unpack(const Key& key) const {
     SweepState state;
     state.near = key[0];
     state.visit = key[1];
-    auto at = key.begin() + 2;
+    state.drawn = key[2];
+    auto at = key.begin() + 3;
     const auto take = [&at](std::size_t n) {
       Key part(at, at + static_cast<std::ptrdiff_t>(n));
       at += static_cast<std::ptrdiff_t>(n);
@@ -389,6 +425,7 @@ class Sweep {
       return;
     }
     state->visit = -1;
+    if (!requests_.rule().by_word) state->drawn = 0;
     state->requests.assign(nodes(), 0);
     state->behind_visit.assign(space_.live().size(), 0);
     state->visit_contents.assign(nodes(), 0);
@@ -442,7 +479,7 @@ class Sweep {
   // What the last pass reads: links as they were in the input, spans over the letter as they are now.
   Key InputWithOver(const Key& input, const Key& now) const {
     Key letter = input;
-    for (std::size_t i = 1; i < letter.size(); ++i) letter[i] = (letter[i] & ~kOver) | (now[i] & kOver);
+    for (std::size_t i = 1; i <= space_.live().size(); ++i) letter[i] = (letter[i] & ~kOver) | (now[i] & kOver);
     return letter;
   }
 
@@ -587,7 +624,7 @@ class Sweep {
         const std::size_t i = direction_.rightward ? k : changes.size() - 1 - k;
         if (changes[i].op != Change::Op::kInsert || changes[i].before != before) continue;
         if (!(request[0] >> (kInsertShift + i) & 1)) continue;
-        LeaveInserted(state, changes[i].inserted);
+        LeaveInserted(state, now, changes[i].inserted);
       }
     };
     insertions(direction_.rightward);
@@ -608,11 +645,12 @@ class Sweep {
            space_.Of(now[0], space_.live()[live]).count == 1;
   }
 
-  void LeaveInserted(SweepState* state, const FeatureTree& content) {
+  void LeaveInserted(SweepState* state, const Key& host, const FeatureTree& content) {
     Letter letter;
     letter.part.daughters.push_back(PartOf(content));
     Key annotated(space_.AnnotatedSize(), 0);
     annotated[0] = space_.classes().Classify(letter).class_id;
+    space_.SetAround(&annotated, space_.Around(host));
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       if (space_.Of(annotated[0], space_.live()[i]).count > 0) {
         state->behind[i] = 0;
@@ -631,6 +669,7 @@ class Sweep {
   void LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
     Key letter(space_.AnnotatedSize(), 0);
     letter[0] = builder_.ClassOf(built.slot, now[0]);
+    space_.SetAround(&letter, space_.Around(now));
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       if (space_.Watched(i)) LeaveNode(state, now, built.slot, i, &letter);
     }
@@ -734,6 +773,7 @@ class Sweep {
   Direction direction_;
   LetterBuilder builder_;
   ContentPool& pool_;
+  Draw draw_;
   PatternMachine machine_;
   int known_profiles_;
   std::vector<std::vector<Arc>> by_profile_;
@@ -756,12 +796,12 @@ Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const Reque
     Sweep sweep(requests, pattern, machine, pool, direction, profiles, limits.side_states);
     if (machine.over_budget || sweep.over_budget()) return {Tape{}, true};
     const PassFunction far = [&sweep](const Key& state, const Key& symbol) { return sweep.Far(state, symbol); };
-    const PassFunction near = [&sweep](const Key& state, const Key& symbol) { return sweep.Near(state, symbol); };
+    const PassChoice near = [&sweep](const Key& state, const Key& symbol) { return sweep.Near(state, symbol); };
     Tape tape = direction.rightward ? PassLeftward(annotated, sweep.FarStart(), far, max_states)
                                     : PassRightward(annotated, sweep.FarStart(), far, max_states);
     if (tape.starts.empty()) return {Tape{}, true};
-    tape = direction.rightward ? PassRightward(tape, sweep.NearStart(), near, max_states)
-                               : PassLeftward(tape, sweep.NearStart(), near, max_states);
+    tape = direction.rightward ? ChooseRightward(tape, sweep.NearStart(), near, max_states)
+                               : ChooseLeftward(tape, sweep.NearStart(), near, max_states);
     // Letters that only the changes make ask things of the pattern that it was not built for: once more with them.
     if (sweep.saw_new_profile()) continue;
     const bool over_budget = tape.starts.empty();

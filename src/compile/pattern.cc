@@ -1,17 +1,18 @@
 #include "compile/pattern.h"
 
-#include "compile/requests.h"
-
 #include <algorithm>
 #include <set>
 #include <unordered_map>
+
+#include "compile/flatten.h"
+#include "compile/requests.h"
 
 namespace tiersmith {
 namespace {
 
 // ---- the pattern as a program -----------------------------------------------------------------
 struct Instruction {
-  enum class Op { kSlot, kBoundary, kGap, kSplit, kAccept };
+  enum class Op { kSlot, kBoundary, kSameMorpheme, kGap, kSplit, kAccept };
   Op op = Op::kAccept;
   int test = -1;  // kSlot: index into the list of tests
   int mark = -1;  // kSlot: label, or the number of an unlabelled end of a gap
@@ -48,13 +49,21 @@ enum Zone : std::int32_t {
   kDone = 4,
 };
 
-// [pc, phase, need, seen, mask, zone of spread 0, ...]; two states that loop have a pc of their own.
+// [pc, phase, need, seen, mask, zone of spread 0, ..., variable 0, ..., condition 0, ...]; two states that loop have a pc of
+// their own. A variable: 1 + its value once it is met. A condition: what its first item told (ConditionState).
 enum Field { kPc, kPhase, kNeed, kSeen, kMask, kZones };
 constexpr std::int32_t kPrefix = -1, kSuffix = -2;
+
+// Needs of a boundary: of a strength, or none at all (`&`).
+constexpr std::int32_t kNoBoundary = -1;
+
+// A condition that asks for the very instance, between its two items; one that compares contents keeps 1 + the content.
+enum ConditionState : std::int32_t { kLacks = -1, kNotMet = 0, kStillHeld = 1, kLost = 2 };
 
 // Profile layout: kind, then one field each.
 constexpr int kProfileKind = 0;
 constexpr int kSlotKind = 0, kEmptyKind = 1, kBoundaryKind = 10;
+constexpr int kOutsideStem = 8;  // added to the kind of a boundary across which no stem goes on
 
 struct MarkedArc {
   int profile = 0;
@@ -173,6 +182,30 @@ bool Uses(const SlotTest& test, SlotTest::Op op) {
          std::any_of(test.args.begin(), test.args.end(), [op](const SlotTest& t) { return Uses(t, op); });
 }
 
+// The tests of agreement in a test, all of which must hold.
+void CollectAgreeing(const SlotTest& test, std::vector<const FeatureTest*>* agreeing) {
+  for (const FeatureTest& feature : test.bundle) {
+    if (feature.variable >= 0) agreeing->push_back(&feature);
+  }
+  for (const SlotTest& inner : test.args) CollectAgreeing(inner, agreeing);
+}
+
+// The strength of boundary from which on a domain ends. (Stems have more to them: Builder::Inside.)
+std::int32_t EdgeOf(Domain domain) {
+  switch (domain) {
+    case Domain::kMorpheme:
+      return static_cast<std::int32_t>(Boundary::kMorpheme);
+    case Domain::kStem:
+    case Domain::kHost:
+      return static_cast<std::int32_t>(Boundary::kClitic);
+    case Domain::kWord:
+      return static_cast<std::int32_t>(Boundary::kWord);
+    case Domain::kPhrase:
+      return static_cast<std::int32_t>(Boundary::kPhrase);
+  }
+  return 0;
+}
+
 bool Contains(const FeatureTree& tree, NodeId node) {
   return tree.node == node || std::any_of(tree.daughters.begin(), tree.daughters.end(),
                                           [node](const FeatureTree& d) { return Contains(d, node); });
@@ -188,28 +221,90 @@ void KindsIn(const FeatureTree& tree, std::set<NodeId>* kinds) {
 struct PatternCompiler::Impl {
   const Rule& rule;
   const RuleSpace& space;
-  std::vector<const SlotTest*> tests;
+  // A test of a slot: what one letter tells, and where its tests of agreement stand in `agreeing`.
+  struct Asked {
+    const SlotTest* test;
+    std::size_t agreeing_begin, agreeing_end;
+  };
+  // A condition, its items as they stand.
+  struct Compared {
+    Condition::Test test;
+    NodeId node;
+    int left, right;  // labels
+    Member left_member, right_member;
+
+    bool OfInstance() const { return test == Condition::Test::kSame || test == Condition::Test::kNotSame; }
+  };
+  struct ClausePrograms {
+    const Clause* clause;
+    std::set<int> labels;
+    Program where;
+    std::vector<Program> unless;
+    std::int32_t spreads = 0;                  // bit j: spread j is of this clause
+    std::vector<Compared> conditions;
+  };
+  // A setting whose content is that of a variable.
+  struct Borrowed {
+    int label;
+    const Setting* setting;
+    bool fill;
+  };
+  std::vector<Asked> tests;
+  std::vector<const FeatureTest*> agreeing;
+  std::vector<Borrowed> borrowed;
   std::vector<GapInfo> gaps;
   std::vector<Spread> spreads;
   std::vector<char> changed;                  // by label
   std::vector<std::vector<NodeId>> inserted;  // by change: kinds that an insertion brings
-  Program where;
-  std::vector<Program> unless;
+  std::vector<ClausePrograms> clauses;
   int mark_count = 0;
   std::vector<int> where_order;  // labels in the order of the pattern
   KeyPool profile_keys;
   std::unordered_map<Key, int, KeyHash> profile_of;
+  KeyPool value_sets;          // sets of values that a test of agreement allows
+  mutable Alphabet contents;  // of class nodes that are compared
 
   Impl(const Rule& r, const RuleSpace& s) : rule(r), space(s) {
     mark_count = static_cast<int>(rule.labels.size());
-    Order(rule.where);
+    for (const Clause* clause : ClausesOf(rule)) Order(clause->where);
     changed.assign(rule.labels.size(), 0);
     for (const Change& change : rule.changes) {
       if (change.target >= 0) changed[change.target] = 1;
     }
     CollectSpreads();
-    where = Compile(rule.where, /*main=*/true);
-    for (const Pattern& pattern : rule.unless) unless.push_back(Compile(pattern, /*main=*/false));
+    for (const Clause* clause : ClausesOf(rule)) AddClause(*clause);
+    for (const Change& change : rule.changes) {
+      for (const Setting& setting : change.settings) {
+        if (setting.variable >= 0) borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
+      }
+    }
+  }
+
+  void AddClause(const Clause& clause) {
+    ClausePrograms programs;
+    programs.clause = &clause;
+    std::set<int>& labels = programs.labels;
+    const auto note = [&labels](const auto& self, const Pattern& pattern) -> void {
+      for (const PatternItem& item : pattern.items) {
+        if (item.label >= 0) labels.insert(item.label);
+        for (const Pattern& alternative : item.alternatives) self(self, alternative);
+      }
+    };
+    note(note, clause.where);
+    for (std::size_t j = 0; j < spreads.size(); ++j) {
+      if (labels.count(spreads[j].target) > 0) programs.spreads |= 1 << j;
+    }
+    for (const Condition& c : clause.conditions) {
+      Compared compared{c.test, c.node, c.left, c.right, c.left_member, c.right_member};
+      if (Position(c.left) > Position(c.right)) {
+        std::swap(compared.left, compared.right);
+        std::swap(compared.left_member, compared.right_member);
+      }
+      programs.conditions.push_back(compared);
+    }
+    programs.where = Compile(clause.where, /*main=*/true);
+    for (const Pattern& pattern : clause.unless) programs.unless.push_back(Compile(pattern, /*main=*/false));
+    clauses.push_back(std::move(programs));
   }
 
   void Order(const Pattern& pattern) {
@@ -284,7 +379,9 @@ struct PatternCompiler::Impl {
         case PatternItem::Kind::kSlot: {
           instruction.op = Instruction::Op::kSlot;
           instruction.test = static_cast<int>(tests.size());
-          tests.push_back(&item.test);
+          tests.push_back({&item.test, agreeing.size(), 0});
+          CollectAgreeing(item.test, &agreeing);
+          tests.back().agreeing_end = agreeing.size();
           instruction.mark = item.label;
           // An end of a gap is marked even without a label.
           if (main && instruction.mark < 0) {
@@ -303,6 +400,10 @@ struct PatternCompiler::Impl {
         case PatternItem::Kind::kBoundary:
           instruction.op = Instruction::Op::kBoundary;
           instruction.boundary = item.boundary;
+          next = Emit(program, instruction);
+          break;
+        case PatternItem::Kind::kSameMorpheme:
+          instruction.op = Instruction::Op::kSameMorpheme;
           next = Emit(program, instruction);
           break;
         case PatternItem::Kind::kGap:
@@ -432,6 +533,16 @@ struct PatternCompiler::Impl {
   int GapField(int gap) const { return 1 + static_cast<int>(tests.size()) + gap; }
   int SpreadField(int spread) const { return GapField(static_cast<int>(gaps.size())) + spread * kSpreadFields; }
   int LabelField(int label) const { return SpreadField(static_cast<int>(spreads.size())) + label; }
+  int AgreeingField(std::size_t i) const { return LabelField(static_cast<int>(rule.labels.size() + i)); }
+  int BorrowedField(std::size_t i) const { return AgreeingField(agreeing.size() + i); }
+  enum ConditionAnswer { kAtLeft, kAtRight, kBetween, kConditionFields };
+  int ConditionField(std::size_t clause, std::size_t condition) const {
+    std::size_t before = condition;
+    for (std::size_t c = 0; c < clause; ++c) before += clauses[c].conditions.size();
+    return BorrowedField(borrowed.size() + kConditionFields * before);
+  }
+  int DomainField() const { return ConditionField(clauses.size(), 0); }
+  int ProfileSize() const { return DomainField() + 1; }
 
   // What a letter says to one spread.
   enum SpreadAnswer {
@@ -455,16 +566,17 @@ struct PatternCompiler::Impl {
     return id;
   }
 
-  Key Describe(const Key& letter) const {
+  Key Describe(const Key& letter) {
     const int class_id = letter[0];
     const Letter& visible = space.classes()[class_id].visible;
     if (visible.kind == FormItem::Kind::kBoundary) {
-      return Key{kBoundaryKind + static_cast<int>(visible.boundary)};
+      const bool outside = rule.within == Domain::kStem && !(space.Around(letter) & kInStem);
+      return Key{kBoundaryKind + static_cast<int>(visible.boundary) + (outside ? kOutsideStem : 0)};
     }
-    Key profile(LabelField(static_cast<int>(rule.labels.size())), 0);
+    Key profile(ProfileSize(), 0);
     const bool empty = space.Of(class_id, kRootNode).count == 0;
     profile[kProfileKind] = empty ? kEmptyKind : kSlotKind;
-    for (std::size_t i = 0; i < tests.size(); ++i) profile[1 + i] = space.classes().Matches(class_id, *tests[i]);
+    for (std::size_t i = 0; i < tests.size(); ++i) profile[1 + i] = space.Matches(letter, *tests[i].test);
     for (std::size_t i = 0; i < gaps.size(); ++i) {
       profile[GapField(static_cast<int>(i))] = std::none_of(gaps[i].nodes.begin(), gaps[i].nodes.end(),
                                                             [&](NodeId n) { return space.Of(class_id, n).count > 0; });
@@ -473,9 +585,109 @@ struct PatternCompiler::Impl {
       DescribeSpread(letter, spreads[i], &profile[SpreadField(static_cast<int>(i))]);
     }
     for (std::size_t i = 0; i < rule.labels.size(); ++i) {
-      profile[LabelField(static_cast<int>(i))] = changed[i] ? Changeable(letter, static_cast<int>(i)) : 1;
+      const int label = static_cast<int>(i);
+      profile[LabelField(label)] = TagsAllow(letter, label) && (!changed[i] || Changeable(letter, label));
+    }
+    profile[DomainField()] = rule.within != Domain::kStem || (space.Around(letter) & kInStem);
+    for (std::size_t i = 0; i < agreeing.size(); ++i) {
+      profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
+    }
+    for (std::size_t i = 0; i < borrowed.size(); ++i) profile[BorrowedField(i)] = ValuesThatFit(letter, borrowed[i]);
+    for (std::size_t c = 0; c < clauses.size(); ++c) {
+      for (std::size_t i = 0; i < clauses[c].conditions.size(); ++i) {
+        std::int32_t* answers = &profile[ConditionField(c, i)];
+        answers[kAtLeft] = Answer(letter, clauses[c].conditions[i], /*left=*/true);
+        answers[kAtRight] = Answer(letter, clauses[c].conditions[i], /*left=*/false);
+        answers[kBetween] = HoldsOn(letter, clauses[c].conditions[i].node);
+      }
     }
     return profile;
+  }
+
+  // ---- what must agree --------------------------------------------------------------------------
+  bool IsClassNode(NodeId node) const { return space.tree()[node].type == TreeNode::Type::kClass; }
+  bool IsBare(NodeId node) const { return space.tree()[node].type == TreeNode::Type::kBare; }
+
+  int ContentId(const LetterPart& part) const {
+    Letter letter;
+    letter.part = PartOf(ContentOf(part));  // without its links
+    return contents.Intern(letter);
+  }
+
+  static void Parts(const LetterPart& part, NodeId node, std::vector<const LetterPart*>* found) {
+    for (const LetterPart& daughter : part.daughters) {
+      if (daughter.node == node) found->push_back(&daughter);
+      Parts(daughter, node, found);
+    }
+  }
+
+  // The values of its variable under which the test of agreement holds.
+  Key ValuesAllowed(const LetterPart& slot, const FeatureTest& test) const {
+    const std::vector<Value> values = ValuesFacing(slot, test.node, test.part);
+    std::set<std::int32_t> allowed;
+    if (IsBare(test.node)) {
+      allowed.insert(values.empty() ? 0 : 1);
+    } else if (IsClassNode(test.node)) {
+      std::vector<const LetterPart*> parts;
+      Parts(slot, test.node, &parts);
+      if (!parts.empty() && test.part == FeatureTest::Part::kFirst) parts.resize(1);
+      if (!parts.empty() && test.part == FeatureTest::Part::kLast) parts.erase(parts.begin(), parts.end() - 1);
+      for (const LetterPart* part : parts) allowed.insert(ContentId(*part));
+    } else {
+      allowed.insert(values.begin(), values.end());
+    }
+    Key key;
+    const bool differs = test.kind == FeatureTest::Kind::kDiffers;
+    for (std::int32_t value : allowed) key.push_back(differs ? 1 - value : value);
+    std::sort(key.begin(), key.end());
+    return key;
+  }
+
+  // Bit v: the setting crosses no line if its variable has value v.
+  std::int32_t ValuesThatFit(const Key& letter, const Borrowed& setting) const {
+    std::int32_t fits = 0;
+    for (int value = 0; value < ValueCount(*setting.setting); ++value) {
+      Setting with{setting.setting->node, BorrowedValues(space.tree(), *setting.setting, value), -1, false};
+      if (SettingFits(letter, with, setting.fill)) fits |= 1 << value;
+    }
+    return fits;
+  }
+  int ValueCount(const Setting& setting) const {
+    return std::max<int>(2, static_cast<int>(space.tree()[setting.node].values.size()));
+  }
+
+  // What a letter says to a condition as its left or its right item: 1 + its content, 0 if it bears none; where the very
+  // instance is asked for, the ConditionState after it (left), or whether the instance goes on into it (right).
+  std::int32_t Answer(const Key& letter, const Compared& condition, bool left) const {
+    std::vector<const LetterPart*> parts;
+    Parts(space.classes()[letter[0]].visible.part, condition.node, &parts);
+    const Member& member = left ? condition.left_member : condition.right_member;
+    const std::size_t all = parts.size();
+    std::size_t at = left && all > 0 ? all - 1 : 0;  // the facing one
+    if (member.which == Member::Which::kFirst) at = 0;
+    if (member.which == Member::Which::kLast && all > 0) at = all - 1;
+    if (member.which == Member::Which::kValue) {
+      const auto found =
+          std::find_if(parts.begin(), parts.end(), [&](const LetterPart* p) { return p->value == member.value; });
+      at = static_cast<std::size_t>(found - parts.begin());
+    }
+    if (at >= all) return 0;
+    if (condition.OfInstance()) {
+      if (left) return at + 1 == all ? kStillHeld : kLost;
+      return at == 0 && (space.Marks(letter, condition.node) & kFromLeft);
+    }
+    Letter content;
+    for (std::size_t i = 0; i < all; ++i) {
+      const bool counts = member.which == Member::Which::kWhole || i == at;
+      if (counts) content.part.daughters.push_back(PartOf(ContentOf(*parts[i])));
+    }
+    return 1 + contents.Intern(content);
+  }
+
+  // After a letter between, is the N that was the last one still the last one?
+  bool HoldsOn(const Key& letter, NodeId node) const {
+    const int count = space.Of(letter[0], node).count;
+    return count == 0 || (count == 1 && (space.Marks(letter, node) & kFromLeft));
   }
 
   void DescribeSpread(const Key& letter, const Spread& spread, std::int32_t* answers) const {
@@ -503,6 +715,18 @@ struct PatternCompiler::Impl {
     return true;
   }
 
+  // The tag tests of the label's clause.
+  bool TagsAllow(const Key& letter, int label) const {
+    for (const ClausePrograms& programs : clauses) {
+      if (programs.labels.count(label) == 0) continue;
+      for (const TagTest& test : programs.clause->tags) {
+        const bool concerned = test.scope == TagTest::Scope::kLabel ? test.label == label : changed[label] != 0;
+        if (concerned && !space.Allows(letter, test)) return false;
+      }
+    }
+    return true;
+  }
+
   // Set, fill and insert at this label cross no line.
   bool Changeable(const Key& letter, int label) const {
     for (std::size_t i = 0; i < rule.changes.size(); ++i) {
@@ -510,7 +734,7 @@ struct PatternCompiler::Impl {
       if (change.target != label) continue;
       if (change.op == Change::Op::kSet || change.op == Change::Op::kFill) {
         for (const Setting& setting : change.settings) {
-          if (!SettingFits(letter, setting, change.op == Change::Op::kFill)) return false;
+          if (setting.variable < 0 && !SettingFits(letter, setting, change.op == Change::Op::kFill)) return false;
         }
       } else if (change.op == Change::Op::kInsert) {
         for (NodeId node : inserted[i]) {
@@ -527,8 +751,9 @@ struct PatternCompiler::Impl {
 
   // ---- the automaton --------------------------------------------------------------------------
   struct Builder;
-  MarkedMachine BuildMain(std::size_t max_states, KeyPool* roles) const;
+  MarkedMachine BuildMain(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
   MarkedMachine BuildUnless(const Program& program, std::size_t max_states) const;
+  MarkedMachine BuildClause(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
 };
 
 bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& setting, bool fill) const {
@@ -550,23 +775,35 @@ bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& settin
 struct PatternCompiler::Impl::Builder {
   const Impl& impl;
   const Program& program;
+  const ClausePrograms* clause;  // null: an unless-pattern
+  std::size_t clause_number;
   bool main;
+  std::int32_t edge;
   std::set<int> own_marks;  // unless: the labels it shares
   KeyPool configs;
   KeyPool* roles;
   MarkedMachine machine;
 
-  Builder(const Impl& i, const Program& p, bool is_main, KeyPool* role_pool)
-      : impl(i), program(p), main(is_main), roles(role_pool) {
+  Builder(const Impl& i, const Program& p, const ClausePrograms* of_clause, std::size_t number, KeyPool* role_pool)
+      : impl(i),
+        program(p),
+        clause(of_clause),
+        clause_number(number),
+        main(of_clause != nullptr),
+        edge(EdgeOf(i.rule.within)),
+        roles(role_pool) {
     for (const Instruction& instruction : program.code) {
       if (instruction.op == Instruction::Op::kSlot && instruction.mark >= 0) own_marks.insert(instruction.mark);
     }
   }
 
   std::size_t SpreadCount() const { return main ? impl.spreads.size() : 0; }
+  std::size_t VariableAt(int variable) const { return kZones + SpreadCount() + static_cast<std::size_t>(variable); }
+  std::size_t ConditionAt(std::size_t i) const { return VariableAt(main ? impl.rule.variables : 0) + i; }
+  std::size_t ConfigSize() const { return ConditionAt(main ? clause->conditions.size() : 0); }
 
   Key Start(std::int32_t mask) const {
-    Key config(kZones + SpreadCount(), 0);
+    Key config(ConfigSize(), 0);
     config[kPc] = kPrefix;
     config[kMask] = mask;
     return config;
@@ -584,7 +821,11 @@ struct PatternCompiler::Impl::Builder {
         result->emplace_back(pc, need);
         break;
       case Instruction::Op::kBoundary:
+        if (need == kNoBoundary) break;
         Close(at.next, std::max(need, static_cast<std::int32_t>(at.boundary)), seen, result);
+        break;
+      case Instruction::Op::kSameMorpheme:
+        if (need <= 0) Close(at.next, kNoBoundary, seen, result);
         break;
       case Instruction::Op::kSplit:
         for (int branch : at.branches) Close(branch, need, seen, result);
@@ -636,7 +877,7 @@ struct PatternCompiler::Impl::Builder {
   }
 
   Key Suffix() const {
-    Key config(kZones + SpreadCount(), 0);
+    Key config(ConfigSize(), 0);
     config[kPc] = kSuffix;
     return config;
   }
@@ -660,6 +901,7 @@ struct PatternCompiler::Impl::Builder {
     if (program.too_long) return OverBudget();
     const std::int32_t masks = 1 << SpreadCount();
     for (std::int32_t mask = 0; mask < masks; ++mask) {
+      if (main && (mask & ~clause->spreads)) continue;
       machine.initial.push_back(Intern(Start(mask)));
       std::vector<Key> starts;
       After(Start(mask), program.start, /*first=*/true, &starts);
@@ -677,7 +919,8 @@ struct PatternCompiler::Impl::Builder {
 
   void Expand(int at, const Key& config, int profile, const Key& letter) {
     const std::int32_t kind = letter[kProfileKind];
-    const std::int32_t boundary = kind >= kBoundaryKind ? kind - kBoundaryKind : 0;
+    const std::int32_t boundary = kind >= kBoundaryKind ? (kind - kBoundaryKind) % kOutsideStem : 0;
+    const bool outside = kind >= kBoundaryKind + kOutsideStem;
     if (config[kPc] == kSuffix) {
       Add(at, profile, -1, -1, config);
       return;
@@ -687,13 +930,13 @@ struct PatternCompiler::Impl::Builder {
       std::vector<Key> starts;
       After(config, program.start, /*first=*/true, &starts);
       for (const Key& start : starts) {
-        if (start[kNeed] == 0 || boundary >= start[kNeed]) Add(at, profile, -1, -1, start);
+        if (start[kNeed] <= 0 || boundary >= start[kNeed]) Add(at, profile, -1, -1, start);
       }
       return;
     }
     const Instruction& instruction = program.code[config[kPc]];
     if (boundary > 0) {
-      SkipBoundary(at, config, profile, boundary, instruction);
+      SkipBoundary(at, config, profile, boundary, outside || boundary >= edge, instruction);
       return;
     }
     const bool visible = kind == kSlotKind || program.sees_empty;
@@ -712,7 +955,8 @@ struct PatternCompiler::Impl::Builder {
     }
   }
 
-  void SkipBoundary(int at, const Key& config, int profile, std::int32_t boundary, const Instruction& instruction) {
+  void SkipBoundary(int at, const Key& config, int profile, std::int32_t boundary, bool outside,
+                    const Instruction& instruction) {
     Key next = config;
     if (config[kPhase] == 0) {
       if (config[kNeed] > 0) Add(at, profile, -1, -1, next);  // more of the leading run
@@ -723,7 +967,7 @@ struct PatternCompiler::Impl::Builder {
       Add(at, profile, -1, -1, next);
       return;
     }
-    if (boundary >= static_cast<std::int32_t>(Boundary::kWord)) return;
+    if (outside || config[kNeed] == kNoBoundary) return;
     if (config[kNeed] > 0) {
       if (boundary > config[kNeed]) return;
       if (boundary == config[kNeed]) next[kSeen] = 1;
@@ -749,6 +993,7 @@ struct PatternCompiler::Impl::Builder {
   // All zones after a letter that stands between (or outside) the ends of the spreads.
   std::vector<Key> Walk(const Key& config, const Key& letter) const {
     std::vector<Key> result{config};
+    PassConditions(letter, &result[0]);
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       const std::int32_t zone = config[kZones + j];
       if (zone == kBefore || zone == kDone) continue;
@@ -757,6 +1002,91 @@ struct PatternCompiler::Impl::Builder {
       result = std::move(next);
     }
     return result;
+  }
+
+  const std::int32_t* ConditionAnswers(const Key& letter, std::size_t i) const {
+    return &letter[impl.ConditionField(clause_number, i)];
+  }
+  std::size_t ConditionCount() const { return main ? clause->conditions.size() : 0; }
+
+  // A letter that is not an item of a condition that asks for the very instance: is the last one still the same?
+  void PassConditions(const Key& letter, Key* config) const {
+    for (std::size_t i = 0; i < ConditionCount(); ++i) {
+      std::int32_t& state = (*config)[ConditionAt(i)];
+      if (!clause->conditions[i].OfInstance() || state != kStillHeld) continue;
+      if (!ConditionAnswers(letter, i)[kBetween]) state = kLost;
+    }
+  }
+
+  // The slot under `label`: conditions begin or are settled. False: one does not hold.
+  bool MeetConditions(const Key& letter, int label, Key* config) const {
+    Key after = *config;
+    PassConditions(letter, &after);
+    for (std::size_t i = 0; i < ConditionCount(); ++i) {
+      const Compared& condition = clause->conditions[i];
+      const std::int32_t* answers = ConditionAnswers(letter, i);
+      const std::int32_t state = (*config)[ConditionAt(i)];
+      std::int32_t& next = after[ConditionAt(i)];
+      if (label == condition.left) {
+        next = condition.OfInstance() || answers[kAtLeft] != 0 ? answers[kAtLeft] : kLacks;
+        if (condition.OfInstance() && next == kNotMet) next = kLost;
+      } else if (label == condition.right) {
+        bool holds = false;
+        switch (condition.test) {
+          case Condition::Test::kEqual:
+            holds = state > 0 && state == answers[kAtRight];
+            break;
+          case Condition::Test::kUnequal:
+            holds = state != answers[kAtRight] || state <= 0;
+            break;
+          case Condition::Test::kSame:
+            holds = state == kStillHeld && answers[kAtRight];
+            break;
+          case Condition::Test::kNotSame:
+            holds = !(state == kStillHeld && answers[kAtRight]);
+            break;
+        }
+        if (!holds) return false;
+        next = kNotMet;
+      }
+    }
+    *config = std::move(after);
+    return true;
+  }
+
+  // All ways to meet the tests of agreement of a slot, and to tell a role the values that its changes borrow.
+  void MeetVariables(const Key& letter, int test, int label, std::vector<std::pair<Key, Key>>* ways) const {
+    if (!main || impl.rule.variables == 0) return;
+    const Asked& asked = impl.tests[static_cast<std::size_t>(test)];
+    for (std::size_t i = asked.agreeing_begin; i < asked.agreeing_end; ++i) {
+      const std::size_t at = VariableAt(impl.agreeing[i]->variable);
+      const Key& allowed = impl.value_sets[letter[impl.AgreeingField(i)]];
+      Bind(at, allowed, ways, [](std::int32_t, Key*) { return true; });
+    }
+    for (std::size_t i = 0; i < impl.borrowed.size(); ++i) {
+      if (label < 0 || impl.borrowed[i].label != label) continue;
+      const int variable = impl.borrowed[i].setting->variable;
+      Key all;
+      for (int value = 0; value < impl.ValueCount(*impl.borrowed[i].setting); ++value) all.push_back(value);
+      Bind(VariableAt(variable), all, ways, [&](std::int32_t value, Key* role) {
+        (*role)[1 + SpreadCount() + static_cast<std::size_t>(variable)] = 1 + value;
+        return (letter[impl.BorrowedField(i)] >> value & 1) != 0;
+      });
+    }
+  }
+
+  template <class Accept>
+  static void Bind(std::size_t at, const Key& allowed, std::vector<std::pair<Key, Key>>* ways, const Accept& accept) {
+    std::vector<std::pair<Key, Key>> next;
+    for (const auto& [config, role] : *ways) {
+      for (std::int32_t value : allowed) {
+        if (config[at] != 0 && config[at] != 1 + value) continue;
+        std::pair<Key, Key> way{config, role};
+        way.first[at] = 1 + value;
+        if (accept(value, &way.second)) next.push_back(std::move(way));
+      }
+    }
+    *ways = std::move(next);
   }
 
   void StepZone(const Key& key, std::size_t j, const std::int32_t* answers, std::vector<Key>* next) const {
@@ -779,16 +1109,18 @@ struct PatternCompiler::Impl::Builder {
   void Consume(int at, const Key& config, int profile, const Key& letter, int pc) {
     const Instruction& slot = program.code[pc];
     if (config[kNeed] > 0 && !config[kSeen]) return;
-    if (!letter[1 + slot.test]) return;
+    if (!letter[1 + slot.test] || !letter[impl.DomainField()]) return;
     const int label = main && slot.mark >= 0 && slot.mark < static_cast<int>(impl.rule.labels.size()) ? slot.mark : -1;
     if (label >= 0 && !letter[impl.LabelField(label)]) return;
     std::vector<std::pair<Key, Key>> ways;  // configuration, role
-    Key role;
+    Key role, start = config;
     if (label >= 0 && impl.changed[label]) {
-      role.assign(1 + SpreadCount(), 0);
+      role.assign(1 + SpreadCount() + static_cast<std::size_t>(impl.rule.variables), 0);
       role[0] = label;
     }
-    ways.emplace_back(config, role);
+    if (!MeetConditions(letter, label, &start)) return;
+    ways.emplace_back(std::move(start), role);
+    MeetVariables(letter, slot.test, label, &ways);
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       std::vector<std::pair<Key, Key>> next;
       for (const auto& [key, asks] : ways) MeetSpread(key, asks, j, label, Answers(letter, j), &next);
@@ -852,12 +1184,12 @@ struct PatternCompiler::Impl::Builder {
   }
 };
 
-MarkedMachine PatternCompiler::Impl::BuildMain(std::size_t max_states, KeyPool* roles) const {
-  return Builder(*this, where, /*is_main=*/true, roles).Run(max_states);
+MarkedMachine PatternCompiler::Impl::BuildMain(std::size_t clause, std::size_t max_states, KeyPool* roles) const {
+  return Builder(*this, clauses[clause].where, &clauses[clause], clause, roles).Run(max_states);
 }
 
 MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program, std::size_t max_states) const {
-  return Builder(*this, program, /*is_main=*/false, nullptr).Run(max_states);
+  return Builder(*this, program, nullptr, 0, nullptr).Run(max_states);
 }
 
 PatternCompiler::PatternCompiler(const Rule& rule, const RuleSpace& space) : impl_(new Impl(rule, space)) {}
@@ -918,39 +1250,79 @@ Subsets NearerBan(const MarkedMachine& machine, int left, int right, bool left_m
                  });
 }
 
+// Strings marked as a match of a later clause that changes a slot which a match of an earlier one changes as well. State:
+// 2 * run of the earlier one + has it met such a slot.
+Subsets ForestalledBan(const MarkedMachine& earlier, const std::vector<char>& changed) {
+  std::vector<int> initial;
+  std::vector<char> final(earlier.arcs.size() * 2, 0);
+  for (int s : earlier.initial) initial.push_back(2 * s);
+  for (std::size_t s = 0; s < earlier.arcs.size(); ++s) final[2 * s + 1] = earlier.final[s];
+  return Subsets(initial, final, [earlier, changed](int state, int profile, int mark, std::vector<int>* next) {
+    const bool changes = mark >= 0 && mark < static_cast<int>(changed.size()) && changed[static_cast<std::size_t>(mark)];
+    for (const MarkedArc& arc : earlier.arcs[state / 2]) {
+      if (arc.profile != profile) continue;
+      next->push_back(2 * arc.next + (state % 2 == 1 || (changes && arc.role >= 0) ? 1 : 0));
+    }
+  });
+}
+
 }  // namespace
 
-PatternMachine PatternCompiler::Build(std::size_t max_states) const {
-  KeyPool roles;
-  MarkedMachine machine = impl_->BuildMain(max_states, &roles);
-  for (const Program& program : impl_->unless) {
+// One clause: its pattern, less what `unless` and nearer slots bar.
+MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t max_states, KeyPool* roles) const {
+  MarkedMachine machine = BuildMain(clause, max_states, roles);
+  for (const Program& program : clauses[clause].unless) {
     std::set<int> labels;
     for (const Instruction& instruction : program.code) {
       if (instruction.op == Instruction::Op::kSlot && instruction.mark >= 0) labels.insert(instruction.mark);
     }
-    const MarkedMachine unless = impl_->BuildUnless(program, max_states);
+    const MarkedMachine unless = BuildUnless(program, max_states);
     if (unless.over_budget) machine = unless;
     machine = Minus(machine, UnlessBan(unless, labels), max_states);
   }
   const MarkedMachine whole = machine;
-  for (const GapInfo& gap : impl_->gaps) {
+  std::set<int> own;
+  for (const Instruction& instruction : clauses[clause].where.code) {
+    if (instruction.op == Instruction::Op::kGap) own.insert(instruction.gap);
+  }
+  for (int i : own) {
+    const GapInfo& gap = gaps[static_cast<std::size_t>(i)];
     if (gap.nearest_left) machine = Minus(machine, NearerBan(whole, gap.left_mark, gap.right_mark, true), max_states);
     if (gap.nearest_right) machine = Minus(machine, NearerBan(whole, gap.left_mark, gap.right_mark, false), max_states);
   }
-  PatternMachine result;
-  result.over_budget = machine.over_budget;
-  result.states = static_cast<int>(machine.arcs.size());
-  result.initial = machine.initial;
-  result.final = machine.final;
-  result.underway = machine.underway;
-  result.arcs.resize(machine.arcs.size());
-  for (std::size_t s = 0; s < machine.arcs.size(); ++s) {
-    for (const MarkedArc& arc : machine.arcs[s]) result.arcs[s].push_back({arc.profile, arc.role, arc.next});
+  return machine;
+}
+
+PatternMachine PatternCompiler::Build(std::size_t max_states) const {
+  KeyPool roles;
+  std::vector<MarkedMachine> machines;
+  for (std::size_t c = 0; c < impl_->clauses.size(); ++c) {
+    MarkedMachine machine = impl_->BuildClause(c, max_states, &roles);
+    for (const MarkedMachine& earlier : machines) {
+      if (earlier.over_budget) machine = OverBudget();
+      if (!earlier.initial.empty()) machine = Minus(machine, ForestalledBan(earlier, impl_->changed), max_states);
+    }
+    machines.push_back(std::move(machine));
   }
+  PatternMachine result;
+  for (const MarkedMachine& machine : machines) {
+    const int first = result.states;
+    result.over_budget = result.over_budget || machine.over_budget;
+    result.states += static_cast<int>(machine.arcs.size());
+    for (int state : machine.initial) result.initial.push_back(first + state);
+    result.final.insert(result.final.end(), machine.final.begin(), machine.final.end());
+    result.underway.insert(result.underway.end(), machine.underway.begin(), machine.underway.end());
+    for (const auto& arcs : machine.arcs) {
+      result.arcs.emplace_back();
+      for (const MarkedArc& arc : arcs) result.arcs.back().push_back({arc.profile, arc.role, first + arc.next});
+    }
+  }
+  const std::size_t spread_count = impl_->spreads.size();
   for (int i = 0; i < roles.size(); ++i) {
     Role role;
     role.label = roles[i][0];
-    for (std::size_t j = 1; j < roles[i].size(); ++j) role.asks.push_back(static_cast<Role::Ask>(roles[i][j]));
+    for (std::size_t j = 0; j < spread_count; ++j) role.asks.push_back(static_cast<Role::Ask>(roles[i][1 + j]));
+    role.values.assign(roles[i].begin() + 1 + static_cast<std::ptrdiff_t>(spread_count), roles[i].end());
     result.roles.push_back(std::move(role));
   }
   return result;

@@ -3,6 +3,10 @@
 // Example: where N:[+nasal] C:[+cons Place] -- on /n k/ the automaton has one accepting run, which
 // consumes n with the role "N, source bears Place" and k without one.
 //
+// Of a rule with several clauses the machine is the union of theirs, the later ones without the matches that an earlier
+// one forestalls. What must agree across a match (α, the nodes an `if` compares) is kept in the states from where it is
+// first met.
+//
 // Method, after Kaplan & Kay 1994 (rules as regular relations) with marked strings for what one run cannot see:
 //   1. the where-pattern as an automaton whose states remember the place in the pattern, the
 //      boundaries still to be met, which spreads have a source that bears their node, and for each such
@@ -39,6 +43,7 @@ struct Role {
   int label = 0;
   enum Ask : char { kNothing, kAsk, kAskOwnMother };  // the last: source and target share the mother
   std::vector<Ask> asks;                              // by spread
+  std::vector<int> values;  // by variable: 1 + its value where a change to the label asks for it, else 0
 };
 
 struct PatternArc {
@@ -57,7 +62,7 @@ struct PatternMachine {
   std::vector<std::int32_t> underway;  // by state: bit j, it stands between source and target of spread j
 };
 
-// Asks of letters what the pattern needs, and builds the machine.
+// Asks of letters what the pattern needs, and builds the machine. The rule is Flattened.
 class PatternCompiler {
  public:
   PatternCompiler(const Rule& rule, const RuleSpace& space);

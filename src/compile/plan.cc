@@ -1,5 +1,7 @@
 #include "compile/plan.h"
 
+#include "compile/flatten.h"
+
 namespace tiersmith {
 namespace {
 
@@ -13,7 +15,10 @@ void AddDownward(const Tree& tree, NodeId node, NodeSet* set) {
 }
 
 void AddTest(const Tree& tree, const SlotTest& test, Plan* plan) {
-  for (const FeatureTest& feature : test.bundle) AddUpward(tree, feature.node, &plan->visible);
+  for (const FeatureTest& feature : test.bundle) {
+    AddUpward(tree, feature.node, &plan->visible);
+    if (feature.kind == FeatureTest::Kind::kAgrees) AddDownward(tree, feature.node, &plan->visible);  // its content
+  }
   if (test.op == SlotTest::Op::kLiteral) plan->literals.insert(test.literal);
   for (const SlotTest& inner : test.args) AddTest(tree, inner, plan);
 }
@@ -26,9 +31,48 @@ void AddPattern(const Tree& tree, const Pattern& pattern, Plan* plan) {
   }
 }
 
+// The nodes whose links a test asks for.
+void AddLinksRead(const Tree& tree, const SlotTest& test, NodeSet* read) {
+  for (const FeatureTest& feature : test.bundle) {
+    const bool links = feature.kind == FeatureTest::Kind::kShared || feature.kind == FeatureTest::Kind::kUnshared;
+    if (links) AddUpward(tree, feature.node, read);
+  }
+  for (const SlotTest& inner : test.args) AddLinksRead(tree, inner, read);
+}
+
+void AddLinksRead(const Tree& tree, const Pattern& pattern, NodeSet* read) {
+  for (const PatternItem& item : pattern.items) {
+    AddLinksRead(tree, item.test, read);
+    for (const Pattern& alternative : item.alternatives) AddLinksRead(tree, alternative, read);
+  }
+}
+
 void AddContent(const FeatureTree& content, NodeSet* set) {
   (*set)[content.node] = true;
   for (const FeatureTree& daughter : content.daughters) AddContent(daughter, set);
+}
+
+bool AsksOfInstance(const Condition& condition) {
+  return condition.test == Condition::Test::kSame || condition.test == Condition::Test::kNotSame;
+}
+
+// The nodes whose links a change asks for.
+void AddLinksRead(const Tree& tree, const Change& change, NodeSet* read) {
+  switch (change.op) {
+    case Change::Op::kSpread:
+    case Change::Op::kDelink:
+      AddUpward(tree, change.node, read);
+      break;
+    case Change::Op::kSet:
+    case Change::Op::kFill:
+      for (const Setting& setting : change.settings) AddUpward(tree, setting.node, read);
+      break;
+    case Change::Op::kInsert:
+      AddContent(change.inserted, read);
+      break;
+    case Change::Op::kDelete:
+      break;
+  }
 }
 
 void AddVisible(const Tree& tree, const Change& change, NodeSet* visible) {
@@ -36,26 +80,27 @@ void AddVisible(const Tree& tree, const Change& change, NodeSet* visible) {
   for (const Setting& setting : change.settings) AddDownward(tree, setting.node, visible);
 }
 
+void AddClause(const Tree& tree, const Clause& clause, Plan* plan) {
+  AddPattern(tree, clause.where, plan);
+  for (const Pattern& pattern : clause.unless) AddPattern(tree, pattern, plan);
+  for (const Condition& condition : clause.conditions) {
+    AddUpward(tree, condition.node, &plan->visible);
+    AddDownward(tree, condition.node, &plan->visible);
+  }
+  for (const Change& change : clause.changes) AddVisible(tree, change, &plan->visible);
+}
+
 }  // namespace
 
 NodeSet NodesRead(const Rule& rule, const Tree& tree) {
   NodeSet read(tree.nodes.size(), false);
-  for (const Change& change : rule.changes) {
-    switch (change.op) {
-      case Change::Op::kSpread:
-      case Change::Op::kDelink:
-        AddUpward(tree, change.node, &read);
-        break;
-      case Change::Op::kSet:
-      case Change::Op::kFill:
-        for (const Setting& setting : change.settings) AddUpward(tree, setting.node, &read);
-        break;
-      case Change::Op::kInsert:
-        AddContent(change.inserted, &read);
-        break;
-      case Change::Op::kDelete:
-        break;
+  for (const Clause* clause : ClausesOf(rule)) {
+    AddLinksRead(tree, clause->where, &read);
+    for (const Pattern& pattern : clause->unless) AddLinksRead(tree, pattern, &read);
+    for (const Condition& condition : clause->conditions) {
+      if (AsksOfInstance(condition)) AddUpward(tree, condition.node, &read);
     }
+    for (const Change& change : clause->changes) AddLinksRead(tree, change, &read);
   }
   return read;
 }
@@ -67,9 +112,7 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   plan.visible[kSlotNode] = plan.visible[kRootNode] = true;
   std::vector<NodeSet> reads;
   for (const Rule& rule : grammar.rules) {
-    AddPattern(tree, rule.where, &plan);
-    for (const Pattern& pattern : rule.unless) AddPattern(tree, pattern, &plan);
-    for (const Change& change : rule.changes) AddVisible(tree, change, &plan.visible);
+    for (const Clause* clause : ClausesOf(rule)) AddClause(tree, *clause, &plan);
     reads.push_back(NodesRead(rule, tree));
   }
   NodeSet live(tree.nodes.size(), keep_all_links);

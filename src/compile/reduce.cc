@@ -8,6 +8,8 @@
 #include <fst/rmepsilon.h>
 #include <fst/vector-fst.h>
 
+#include <algorithm>
+#include <cmath>
 #include <map>
 #include <tuple>
 
@@ -71,11 +73,69 @@ std::size_t Arcs(const Acceptor& acceptor) {
   return count;
 }
 
+bool HasWeights(const Tape& tape) {
+  return std::any_of(tape.arcs.begin(), tape.arcs.end(), [](const std::vector<TapeArc>& arcs) {
+    return std::any_of(arcs.begin(), arcs.end(), [](const TapeArc& arc) { return arc.weight != 0; });
+  });
+}
+
+// States are merged that write the same, with the same probability, on every continuation: the coarsest partition in which
+// all states of a block have the same total weight of arcs to each block (lumping of weighted automata: Buchholz 2008).
+// Several ways of writing the same become one arc with the sum of their probabilities.
+Tape Lumped(Tape tape) {
+  const std::size_t n = tape.arcs.size();
+  std::vector<int> block(n);
+  for (std::size_t s = 0; s < n; ++s) block[s] = tape.ends[s];
+  std::size_t count = 1 + static_cast<std::size_t>(std::count(tape.ends.begin(), tape.ends.end(), 1) > 0);
+  using Sums = std::map<std::tuple<int, int, int>, double>;  // read, written, block -> probability
+  const auto sums_of = [&](std::size_t s) {
+    Sums sums;
+    for (const TapeArc& arc : tape.arcs[s]) sums[{arc.in, arc.out, block[arc.next]}] += std::exp(-double{arc.weight});
+    return sums;
+  };
+  while (true) {
+    // Rounded: sums of the same terms in another order differ in their last digits.
+    std::map<std::pair<int, std::vector<std::int64_t>>, int> signatures;
+    std::vector<int> refined(n);
+    for (std::size_t s = 0; s < n; ++s) {
+      std::pair<int, std::vector<std::int64_t>> signature{block[s], {}};
+      for (const auto& [key, sum] : sums_of(s)) {
+        signature.second.insert(signature.second.end(), {std::get<0>(key), std::get<1>(key), std::get<2>(key),
+                                                         std::llround(-std::log(sum) * 1e6)});
+      }
+      refined[s] = signatures.emplace(std::move(signature), static_cast<int>(signatures.size())).first->second;
+    }
+    block = std::move(refined);
+    if (signatures.size() == count) break;
+    count = signatures.size();
+  }
+  Tape result;
+  result.symbols = std::move(tape.symbols);
+  result.arcs.resize(count);
+  result.ends.resize(count);
+  std::vector<char> done(count, 0);
+  for (std::size_t s = 0; s < n; ++s) {
+    if (done[block[s]]) continue;
+    done[block[s]] = 1;
+    result.ends[block[s]] = tape.ends[s];
+    for (const auto& [key, sum] : sums_of(s)) {
+      const double weight = -std::log(sum);
+      result.arcs[block[s]].push_back({std::get<0>(key), std::get<1>(key), std::get<2>(key),
+                                       std::abs(weight) < 1e-9 ? 0.0F : static_cast<float>(weight)});
+    }
+  }
+  // Of several starts, those in one block count together: each is kept, for they accept different strings, or the same
+  // with probabilities that add up.
+  for (int s : tape.starts) result.starts.push_back(block[s]);
+  return result;
+}
+
 }  // namespace
 
 Tape Reduce(Tape tape) {
   FLAGS_fst_error_fatal = false;
   if (tape.starts.empty()) return tape;
+  if (HasWeights(tape)) return Lumped(std::move(tape));
   std::vector<ArcLabel> labels;
   Acceptor small = ToAcceptor(tape, &labels);
   Acceptor determined;

@@ -5,14 +5,10 @@
 
 namespace tiersmith {
 
-std::vector<Value> ValuesOf(const LetterPart& part, NodeId node) {
-  std::vector<Value> values;
-  for (const LetterPart& daughter : part.daughters) {
-    if (daughter.node == node) values.push_back(daughter.value);
-    const std::vector<Value> below = ValuesOf(daughter, node);
-    values.insert(values.end(), below.begin(), below.end());
-  }
-  return values;
+std::vector<Value> BorrowedValues(const Tree& tree, const Setting& setting, int value) {
+  if (setting.differs) value = 1 - value;
+  if (tree[setting.node].type == TreeNode::Type::kBare) return std::vector<Value>(value == 0 ? 0 : 1, Value{0});
+  return {static_cast<Value>(value)};
 }
 
 RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const std::vector<Spread>& spreads)
@@ -22,10 +18,19 @@ RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const std::
     if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) nodes.insert(change.node);
     for (const Setting& setting : change.settings) {
       nodes.insert(setting.node);
-      if (ContentIndex(setting.values) < 0) contents_.push_back(setting.values);
+      AddContents(setting);
     }
   }
   nodes_.assign(nodes.begin(), nodes.end());
+}
+
+void RequestSpace::AddContents(const Setting& setting) {
+  const Tree& tree = space_.tree();
+  const int count = setting.variable < 0 ? 1 : std::max<int>(2, static_cast<int>(tree[setting.node].values.size()));
+  for (int value = 0; value < count; ++value) {
+    const std::vector<Value> values = setting.variable < 0 ? setting.values : BorrowedValues(tree, setting, value);
+    if (ContentIndex(values) < 0) contents_.push_back(values);
+  }
 }
 
 int RequestSpace::IndexOf(NodeId node) const {
@@ -62,7 +67,7 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
           break;
         case Change::Op::kSet:
         case Change::Op::kFill:
-          AskSettings(change, annotated, &request);
+          AskSettings(change, *role, annotated, &request);
           break;
         case Change::Op::kInsert:
           request[0] |= 1 << (kInsertShift + i);
@@ -101,17 +106,21 @@ std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const K
   return all & ~held;
 }
 
-void RequestSpace::AskSettings(const Change& change, const Key& annotated, Key* request) const {
+void RequestSpace::AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const {
   for (const Setting& setting : change.settings) {
+    const std::vector<Value> values =
+        setting.variable < 0
+            ? setting.values
+            : BorrowedValues(space_.tree(), setting, role.values[static_cast<std::size_t>(setting.variable)] - 1);
     const int count = space_.Of(annotated[0], setting.node).count;
     if (change.op == Change::Op::kFill && count > 0) continue;
-    if (setting.values.empty() && count == 0) continue;
-    if (count > 0 && !setting.values.empty()) {
+    if (values.empty() && count == 0) continue;
+    if (count > 0 && !values.empty()) {
       if (space_.tree()[setting.node].type == TreeNode::Type::kClass) continue;
-      if (ValuesOf(space_.classes()[annotated[0]].visible.part, setting.node) == setting.values) continue;
+      if (ValuesOf(space_.classes()[annotated[0]].visible.part, setting.node) == values) continue;
     }
     std::int32_t& at = (*request)[1 + IndexOf(setting.node)];
-    at = Combine(at, (1 + ContentIndex(setting.values)) << kValuesShift);
+    at = Combine(at, (1 + ContentIndex(values)) << kValuesShift);
   }
 }
 

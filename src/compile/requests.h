@@ -52,7 +52,8 @@ class RequestSpace {
  private:
   std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
-  void AskSettings(const Change& change, const Key& annotated, Key* request) const;
+  void AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const;
+  void AddContents(const Setting& setting);
   int ContentIndex(const std::vector<Value>& values) const;
 
   const Rule& rule_;
@@ -61,6 +62,9 @@ class RequestSpace {
   std::vector<NodeId> nodes_;
   std::vector<std::vector<Value>> contents_;
 };
+
+// What a setting whose variable has this value puts there.
+std::vector<Value> BorrowedValues(const Tree& tree, const Setting& setting, int value);
 
 // Carries requests along the spans of shared mothers, in one direction: a request made of one holder is made of all. State of
 // one request node: the request carried for each of its ancestors below the slot.
@@ -77,8 +81,5 @@ class RequestCarrier {
   std::int32_t from_, onward_;  // marks of a line to the holder before, and to the next
   std::vector<std::vector<NodeId>> ancestors_;
 };
-
-// The values a letter's part bears of `node`, in order.
-std::vector<Value> ValuesOf(const LetterPart& part, NodeId node);
 
 }  // namespace tiersmith

@@ -4,6 +4,7 @@
 
 #include "compile/build_letter.h"
 #include "compile/find.h"
+#include "compile/flatten.h"
 #include "compile/pattern.h"
 #include "compile/repair.h"
 #include "compile/requests.h"
@@ -209,8 +210,9 @@ Tape FormsOver(const std::vector<int>& classes, const LetterClasses& letters, co
 
 }  // namespace
 
-RuleMachine CompileRule(const Rule& rule, LetterClasses& classes, const std::vector<int>& classes_in,
+RuleMachine CompileRule(const Rule& written, LetterClasses& classes, const std::vector<int>& classes_in,
                         const std::vector<NodeId>& live_in, const std::vector<NodeId>& live_out, const Limits& limits) {
+  const Rule rule = Flattened(written);
   const RuleSpace space(classes, rule, live_in);
   PatternCompiler pattern(rule, space);
   const RequestSpace requests(rule, space, pattern.spreads());

@@ -8,7 +8,8 @@
 //   kObjectLeft  the same two of the mother as an object: of its first and last holder
 //   kObjectRight
 //   kOver        it bears no N, but one N is held on both sides of it
-// An annotated letter is the key [class, marks of live node 0, marks of live node 1, ...].
+// An annotated letter is the key [class, marks of live node 0, marks of live node 1, ..., surroundings]; the last says
+// what the rule asks of the morpheme and the word around the letter (0 where it asks nothing).
 #pragma once
 
 #include <vector>
@@ -18,6 +19,11 @@
 #include "model/grammar.h"
 
 namespace tiersmith {
+
+// Surroundings of a slot: bit i for the i-th tag that the rule asks for, of its morpheme; and of some morpheme of its word;
+// whether it stands in a stem. Of a boundary: does the stem go on across it.
+enum Surroundings : std::int32_t { kMorphemeTags = 1, kWordTags = 1 << 12, kInStem = 1 << 24 };
+constexpr std::size_t kMostTagsOfARule = 12;
 
 enum LinkMark : std::int32_t { kFromLeft = 1, kToRight = 2, kObjectLeft = 4, kObjectRight = 8, kOver = 16 };
 
@@ -49,26 +55,40 @@ class RuleSpace {
   }
   // The lowest proper ancestor of `node` that the letter bears (slot at the highest).
   NodeId LowestAncestor(int class_id, NodeId node) const;
+  // Does an annotated letter pass? Agreement (α) counts as passed: it is no question to one letter.
+  bool Matches(const Key& annotated, const SlotTest& test) const;
   // How many of `node` a mother in this letter may hold.
   int Room(int class_id, NodeId node) const;
-  std::size_t AnnotatedSize() const { return 1 + live_.size(); }
+  std::size_t AnnotatedSize() const { return 2 + live_.size(); }
+  std::int32_t Around(const Key& annotated) const { return annotated[1 + live_.size()]; }
+  void SetAround(Key* annotated, std::int32_t around) const { (*annotated)[1 + live_.size()] = around; }
+  // Does a slot so surrounded pass a tag test of the rule?
+  bool Allows(const Key& annotated, const TagTest& test) const;
 
   // Tape whose symbols are [class] -> tape whose symbols are annotated letters.
   Tape Annotate(const Tape& tape, std::size_t max_states) const;
 
   // The left half of the annotation, one letter at a time. A key of the pass holds per live node whether the last bearer
   // is linked to the right, and its kObjectLeft.
-  Key LeftStart() const { return Key(live_.size(), 0); }
+  // Last comes what is known of the morpheme and the word (Surroundings).
+  Key LeftStart() const { return Key(live_.size() + 1, 0); }
   // Marks of the letter's left side (kFromLeft, kObjectLeft, kOver), from the state before it.
   Key LeftMarks(const Key& state, int class_id) const;
   // The mirror image for the right side; the state holds the same of the next bearer.
   Key RightMarks(const Key& state, const Key& annotated) const;
 
  private:
+  bool Passes(const Key& annotated, const FeatureTest& test) const;
+  std::int32_t TagsOf(int class_id) const;  // of a boundary, as the rule numbers them
+  std::int32_t AroundAfter(std::int32_t state, int class_id) const;
+  std::int32_t StemGoesOn(std::int32_t state, int class_id) const;
+
   LetterClasses& classes_;
   std::vector<NodeId> live_;
   std::vector<int> live_index_;
   std::vector<char> watched_;                           // by live node
+  std::vector<int> tags_;                               // those the rule asks for
+  bool stems_;                                          // does it ask where stems are
   mutable std::vector<std::vector<Bearing>> bearings_;  // by class, by node
 };
 

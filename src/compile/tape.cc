@@ -6,28 +6,38 @@ namespace {
 // Remembers what a pass did with a (state, symbol) pair: arcs repeat, pairs do not.
 class Stepper {
  public:
-  Stepper(const Tape& tape, const PassFunction& step, KeyPool* out) : tape_(tape), step_(step), out_(out) {}
+  struct Way {
+    int state;
+    int symbol;
+    float weight;
+  };
+  Stepper(const Tape& tape, const PassChoice& step, KeyPool* out) : tape_(tape), step_(step), out_(out) {}
 
   int State(const Key& key) { return states_.Intern(key); }
 
-  std::pair<int, int> Step(int state, int symbol) {
+  const std::vector<Way>& Step(int state, int symbol) {
     const std::uint64_t key =
         (static_cast<std::uint64_t>(static_cast<std::uint32_t>(state)) << 32) | static_cast<std::uint32_t>(symbol);
     const auto it = memo_.find(key);
     if (it != memo_.end()) return it->second;
-    PassStep done = step_(states_[state], tape_.symbols[symbol]);
-    const std::pair<int, int> result{states_.Intern(done.state), out_->Intern(done.symbol)};
-    memo_.emplace(key, result);
-    return result;
+    std::vector<Way> ways;
+    for (const PassStep& done : step_(states_[state], tape_.symbols[symbol])) {
+      ways.push_back({states_.Intern(done.state), out_->Intern(done.symbol), done.weight});
+    }
+    return memo_.emplace(key, std::move(ways)).first->second;
   }
 
  private:
   const Tape& tape_;
-  const PassFunction& step_;
+  const PassChoice& step_;
   KeyPool states_;
   KeyPool* out_;
-  std::unordered_map<std::uint64_t, std::pair<int, int>> memo_;
+  std::unordered_map<std::uint64_t, std::vector<Way>> memo_;
 };
+
+PassChoice OnlyOne(const PassFunction& step) {
+  return [&step](const Key& state, const Key& symbol) { return std::vector<PassStep>{step(state, symbol)}; };
+}
 
 // States of the result: pairs (state of the tape, state of the pass).
 class Pairs {
@@ -56,6 +66,14 @@ std::size_t Tape::ArcCount() const {
 }
 
 Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states) {
+  return ChooseRightward(tape, initial, OnlyOne(step), max_states);
+}
+
+Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states) {
+  return ChooseLeftward(tape, initial, OnlyOne(step), max_states);
+}
+
+Tape ChooseRightward(const Tape& tape, const Key& initial, const PassChoice& step, std::size_t max_states) {
   Tape result;
   Stepper stepper(tape, step, &result.symbols);
   Pairs pairs;
@@ -66,8 +84,8 @@ Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& ste
     std::vector<TapeArc> arcs;
     arcs.reserve(tape.arcs[state].size());
     for (const TapeArc& arc : tape.arcs[state]) {
-      const auto [next, symbol] = stepper.Step(pass, arc.out);
-      arcs.push_back({arc.in, symbol, pairs.Intern(arc.next, next), arc.weight});
+      for (const Stepper::Way& way : stepper.Step(pass, arc.out))
+        arcs.push_back({arc.in, way.symbol, pairs.Intern(arc.next, way.state), arc.weight + way.weight});
     }
     result.arcs.push_back(std::move(arcs));
     result.ends.push_back(tape.ends[state]);
@@ -75,7 +93,7 @@ Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& ste
   return result;
 }
 
-Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states) {
+Tape ChooseLeftward(const Tape& tape, const Key& initial, const PassChoice& step, std::size_t max_states) {
   Tape result;
   Stepper stepper(tape, step, &result.symbols);
   Pairs pairs;
@@ -94,10 +112,11 @@ Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step
     const auto [state, pass] = pairs[static_cast<int>(at)];
     if (result.arcs.size() < pairs.size()) result.arcs.resize(pairs.size());
     for (const TapeArc& arc : into[state]) {
-      const auto [before, symbol] = stepper.Step(pass, arc.out);
-      const int source = pairs.Intern(arc.next, before);
-      if (result.arcs.size() < pairs.size()) result.arcs.resize(pairs.size());
-      result.arcs[source].push_back({arc.in, symbol, static_cast<int>(at), arc.weight});
+      for (const Stepper::Way& way : stepper.Step(pass, arc.out)) {
+        const int source = pairs.Intern(arc.next, way.state);
+        if (result.arcs.size() < pairs.size()) result.arcs.resize(pairs.size());
+        result.arcs[source].push_back({arc.in, way.symbol, static_cast<int>(at), arc.weight + way.weight});
+      }
     }
   }
   result.ends.assign(pairs.size(), 0);

@@ -68,12 +68,17 @@ struct Tape {
 struct PassStep {
   Key state;
   Key symbol;
+  float weight = 0;  // added to that of the arc
 };
 using PassFunction = std::function<PassStep(const Key& state, const Key& symbol)>;
+// A pass with a choice: all ways to go on; none, and the string is not accepted.
+using PassChoice = std::function<std::vector<PassStep>(const Key& state, const Key& symbol)>;
 
-// Both return an empty tape (no starts) if more than `max_states` states arise.
+// All return an empty tape (no starts) if more than `max_states` states arise.
 Tape PassRightward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
 Tape PassLeftward(const Tape& tape, const Key& initial, const PassFunction& step, std::size_t max_states);
+Tape ChooseRightward(const Tape& tape, const Key& initial, const PassChoice& step, std::size_t max_states);
+Tape ChooseLeftward(const Tape& tape, const Key& initial, const PassChoice& step, std::size_t max_states);
 
 // Which states a string can end from; arcs of any kind that has a `next`.
 template <class Arc>
@@ -103,7 +108,8 @@ std::vector<char> CanEnd(const std::vector<std::vector<Arc>>& arcs, const std::v
 // letter an arc: the domain of a further machine. No starts if it needs more than `max_states`.
 Tape OutputsOf(const Tape& tape, std::size_t max_states);
 
-// Merges states with equal futures, exactly (arcs as labels of an acceptor; OpenFst).
+// Merges states with equal futures, exactly: without weights by OpenFst (arcs as labels of an acceptor), with weights so that
+// ways of writing the same count together.
 Tape Reduce(Tape tape);
 
 }  // namespace tiersmith

@@ -81,10 +81,17 @@ bool Bears(const LetterPart& part, NodeId node) {
                      [node](const LetterPart& d) { return d.node == node || Bears(d, node); });
 }
 
-bool BearsValue(const LetterPart& part, NodeId node, Value value) {
-  return std::any_of(part.daughters.begin(), part.daughters.end(), [=](const LetterPart& d) {
-    return (d.node == node && d.value == value) || BearsValue(d, node, value);
-  });
+// The values of `node`, left to right.
+void CollectValues(const LetterPart& part, NodeId node, std::vector<Value>* values) {
+  for (const LetterPart& daughter : part.daughters) {
+    if (daughter.node == node) values->push_back(daughter.value);
+    CollectValues(daughter, node, values);
+  }
+}
+
+bool HasValue(const LetterPart& slot, const FeatureTest& test) {
+  const std::vector<Value> values = ValuesFacing(slot, test.node, test.part);
+  return std::find(values.begin(), values.end(), test.value) != values.end();
 }
 
 bool Passes(const LetterPart& slot, const FeatureTest& test) {
@@ -94,14 +101,35 @@ bool Passes(const LetterPart& slot, const FeatureTest& test) {
     case FeatureTest::Kind::kLacks:
       return !Bears(slot, test.node);
     case FeatureTest::Kind::kHasValue:
-      return BearsValue(slot, test.node, test.value);
+      return HasValue(slot, test);
     case FeatureTest::Kind::kLacksValue:
-      return !BearsValue(slot, test.node, test.value);
+      return !HasValue(slot, test);
+    case FeatureTest::Kind::kAgrees:
+    case FeatureTest::Kind::kDiffers:
+    case FeatureTest::Kind::kShared:
+    case FeatureTest::Kind::kUnshared:
+    case FeatureTest::Kind::kLong:
+    case FeatureTest::Kind::kShort:
+    case FeatureTest::Kind::kHalfFirst:
+    case FeatureTest::Kind::kHalfSecond:
+      return true;  // no question to one letter: RuleSpace::Matches and the pattern ask further
   }
   return false;
 }
 
 }  // namespace
+
+std::vector<Value> ValuesOf(const LetterPart& part, NodeId node) {
+  std::vector<Value> values;
+  CollectValues(part, node, &values);
+  return values;
+}
+
+std::vector<Value> ValuesFacing(const LetterPart& part, NodeId node, FeatureTest::Part which) {
+  std::vector<Value> values = ValuesOf(part, node);
+  if (values.empty() || which == FeatureTest::Part::kAny) return values;
+  return {which == FeatureTest::Part::kFirst ? values.front() : values.back()};
+}
 
 LetterClasses::LetterClasses(const Grammar& grammar, NodeSet visible, std::set<int> literals)
     : grammar_(grammar), visible_(std::move(visible)), literals_(std::move(literals)) {

@@ -29,6 +29,10 @@ struct ClassLetter {
   int rest = -1;   // the rest itself where some literal may match it, else -1
 };
 
+// The values of `node` in a letter's part, left to right; those of the part of a contour that a test asks for.
+std::vector<Value> ValuesOf(const LetterPart& part, NodeId node);
+std::vector<Value> ValuesFacing(const LetterPart& part, NodeId node, FeatureTest::Part which);
+
 class LetterClasses {
  public:
   struct Parts {
@@ -58,6 +62,7 @@ class LetterClasses {
 
   const ClassLetter& operator[](int class_id) const { return classes_[class_id]; }
   int size() const { return static_cast<int>(classes_.size()); }
+  // Does the letter pass, as far as it alone can tell: tests of sharing, length and agreement count as passed.
   bool Matches(int class_id, const SlotTest& test) const;
   const Grammar& grammar() const { return grammar_; }
 

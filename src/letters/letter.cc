@@ -159,6 +159,7 @@ class Decoder {
       FormItem item;
       item.kind = letter.kind;
       item.boundary = letter.boundary;
+      item.tags = letter.tags;
       if (letter.kind != FormItem::Kind::kBoundary) item.instance = Emit(&form, tops_[top++]);
       form.items.push_back(item);
     }
@@ -182,7 +183,8 @@ std::size_t Hash(const LetterPart& part) {
 }
 
 std::size_t Hash(const Letter& letter) {
-  return Mix(Mix(static_cast<std::size_t>(letter.kind), static_cast<std::size_t>(letter.boundary)), Hash(letter.part));
+  const std::size_t kind = Mix(static_cast<std::size_t>(letter.kind), static_cast<std::size_t>(letter.boundary));
+  return Mix(Mix(kind, static_cast<std::size_t>(letter.tags)), Hash(letter.part));
 }
 
 int LinkBit(const Tree& tree, NodeId node) {
@@ -200,6 +202,7 @@ std::vector<Letter> Encode(const Form& form, const Tree& tree) {
     Letter letter;
     letter.kind = item.kind;
     letter.boundary = item.boundary;
+    letter.tags = item.tags;
     if (item.kind != FormItem::Kind::kBoundary) letter.part = BuildPart(form, item.instance);
     letters.push_back(std::move(letter));
   }

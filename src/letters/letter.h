@@ -36,10 +36,11 @@ struct LetterPart {
 struct Letter {
   FormItem::Kind kind = FormItem::Kind::kSlot;
   Boundary boundary = Boundary::kNone;
-  LetterPart part;  // kSlot: of node 0; kFloat: of the floating node
+  std::uint64_t tags = 0;  // kBoundary: of the morpheme it opens (FormItem::tags)
+  LetterPart part;         // kSlot: of node 0; kFloat: of the floating node
 
   friend bool operator==(const Letter& a, const Letter& b) {
-    return a.kind == b.kind && a.boundary == b.boundary && a.part == b.part;
+    return a.kind == b.kind && a.boundary == b.boundary && a.tags == b.tags && a.part == b.part;
   }
 };
 

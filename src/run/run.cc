@@ -2,10 +2,12 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <array>
 
 #include "compile/cascade_data.h"
 #include "compile/rule_machine.h"
+#include "run/lattice.h"
 #include "run/recovery.h"
 #include "run/walker.h"
 
@@ -30,9 +32,13 @@ struct Runner::Impl {
   std::vector<Token> tokens;
   std::vector<LetterClasses::Parts> letters;
   std::unique_ptr<Recovery> recovery;
+  bool weighted = false;
+  LetterNumbers numbers;
+  std::vector<std::string> texts;  // that labels of a written lattice stand for
 
   Impl(const Grammar& g, const Cascade& c) : grammar(g), cascade(c) {
     for (const Segment& segment : cascade.data().segments) walkers.emplace_back(segment);
+    for (const Rule& rule : g.rules) weighted = weighted || rule.probability < 1;
     of_symbol.assign(g.inventory.symbols.size(), {LetterClasses::Parts{-1, 0}, LetterClasses::Parts{-1, 0}});
     for (const InputLetter& input : cascade.data().inputs) {
       if (input.symbol >= 0) {
@@ -102,18 +108,100 @@ struct Runner::Impl {
     return true;
   }
   int last_symbol_ = -1;
+
+  // All ways through the grammar.
+  Lattice Ways(const std::vector<LetterClasses::Parts>& in, std::int32_t* flags) {
+    std::vector<int> labels;
+    for (const LetterClasses::Parts& letter : in) labels.push_back(numbers.Number(letter));
+    Lattice lattice = Lattice::Of(labels);
+    for (const Segment& segment : cascade.data().segments) lattice = Through(lattice, segment, &numbers, flags);
+    return lattice;
+  }
+
+  // The letters of a lattice as text. State: does the last root go on. False if one has no symbol; it is then `unspelled`.
+  bool Written(const Lattice& lattice, Lattice* written, std::string* unspelled) {
+    bool good = true;
+    *written = Relabelled(lattice, [&](int linked, int label) {
+      const Spelled& spelled = Spell(numbers[label]);
+      if (spelled.kind == Spelled::Kind::kNoSymbol) {
+        good = false;
+        *unspelled = spelled.text;
+      }
+      if (spelled.kind != Spelled::Kind::kText) return std::make_pair(linked, Lattice::kNothing);
+      const int text = Text(spelled.slot && linked != 0 ? "ː" : spelled.text);
+      return std::make_pair(spelled.slot ? static_cast<int>(spelled.linked) : linked, text);
+    });
+    return good;
+  }
+
+  int Text(const std::string& text) {
+    const auto found = std::find(texts.begin(), texts.end(), text);
+    if (found != texts.end()) return static_cast<int>(found - texts.begin());
+    texts.push_back(text);
+    return static_cast<int>(texts.size()) - 1;
+  }
+
+  static TextError Unspelled(std::string_view underlying, const std::string& tree) {
+    return {Kind::kNoSymbol, 0, underlying.size(),
+            fmt::format("/{}/ comes to a tree that no symbol spells: {}", underlying, tree),
+            "declare it, let `omit` restore what is missing, or add a rule that sets it; `derive --trace` shows how it "
+            "came about"};
+  }
+
+  static TextError NoDerivation(std::string_view underlying) {
+    return {Kind::kBadForm, 0, underlying.size(), fmt::format("the grammar has no derivation for /{}/", underlying),
+            "see `derive --trace` for what happens to it"};
+  }
 };
 
 Runner::Runner(const Grammar& grammar, const Cascade& cascade) : impl_(std::make_unique<Impl>(grammar, cascade)) {}
 Runner::~Runner() = default;
 
+bool Runner::weighted() const { return impl_->weighted; }
+
+bool Runner::DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+                       TextError* error) {
+  outputs->clear();
+  *more = false;
+  if (!impl_->weighted) {
+    outputs->emplace_back();
+    return Derive(underlying, &outputs->back().surface, error);
+  }
+  if (!impl_->ToLetters(underlying, error)) return false;
+  std::int32_t flags = 0;
+  const Lattice ways = impl_->Ways(impl_->letters, &flags);
+  if (ways.arcs.empty()) {
+    *error = Impl::NoDerivation(underlying);
+    return false;
+  }
+  Lattice written;
+  std::string unspelled;
+  if (!impl_->Written(ways, &written, &unspelled)) {
+    *error = Impl::Unspelled(underlying, unspelled);
+    return false;
+  }
+  for (const Likely& likely : Likeliest(written, best, more)) {
+    Output output;
+    for (int label : likely.labels) output.surface += impl_->texts[static_cast<std::size_t>(label)];
+    output.probability = likely.probability;
+    outputs->push_back(std::move(output));
+  }
+  return true;
+}
+
 bool Runner::Derive(std::string_view underlying, std::string* surface, TextError* error) {
+  if (impl_->weighted) {
+    std::vector<Output> outputs;
+    bool more = false;
+    if (!DeriveAll(underlying, 1, &outputs, &more, error)) return false;
+    *surface = outputs.front().surface;
+    return true;
+  }
   if (!impl_->ToLetters(underlying, error)) return false;
   std::int32_t flags = 0;
   for (Walker& walker : impl_->walkers) {
     if (walker.Run(&impl_->letters, &flags)) continue;
-    *error = {Kind::kBadForm, 0, underlying.size(), fmt::format("the grammar has no derivation for /{}/", underlying),
-              "see `derive --trace` for what happens to it"};
+    *error = Impl::NoDerivation(underlying);
     return false;
   }
   surface->clear();
@@ -129,10 +217,7 @@ bool Runner::Derive(std::string_view underlying, std::string* surface, TextError
         if (spelled.slot) linked = spelled.linked;
         break;
       case Impl::Spelled::Kind::kNoSymbol:
-        *error = {Kind::kNoSymbol, 0, underlying.size(),
-                  fmt::format("/{}/ comes to a tree that no symbol spells: {}", underlying, spelled.text),
-                  "declare it, let `omit` restore what is missing, or add a rule that sets it; `derive --trace` shows "
-                  "how it came about"};
+        *error = Impl::Unspelled(underlying, spelled.text);
         return false;
     }
   }
@@ -146,17 +231,32 @@ Runner::Answer Runner::Apply(const Form& underlying) {
   for (const Letter& letter : Encode(underlying, impl_->grammar.tree))
     letters.push_back(data.classes->Classify(letter));
   std::int32_t flags = 0;
-  for (Walker& walker : impl_->walkers) {
-    if (!walker.Run(&letters, &flags)) return answer;
+  std::vector<Likely> all;
+  if (impl_->weighted) {
+    bool more = false;
+    all = Likeliest(impl_->Ways(letters, &flags), static_cast<std::size_t>(-1), &more);
+  } else {
+    for (Walker& walker : impl_->walkers) {
+      if (!walker.Run(&letters, &flags)) return answer;
+    }
+    all.emplace_back();
+    for (const LetterClasses::Parts& letter : letters) all.back().labels.push_back(impl_->numbers.Number(letter));
   }
   answer.ambiguous = flags & kFlagAmbiguous;
   answer.reaches = flags & kFlagReaches;
   answer.unsure = flags & kFlagUnsure;
   if (answer.ambiguous || answer.reaches) return answer;
-  std::vector<Letter> written;
-  for (const LetterClasses::Parts& letter : letters)
-    written.push_back(data.classes->Join(letter.class_id, letter.rest));
-  answer.form = Decode(written, impl_->grammar.tree);
+  for (const Likely& likely : all) {
+    std::vector<Letter> written;
+    for (int label : likely.labels) {
+      const LetterClasses::Parts& letter = impl_->numbers[label];
+      written.push_back(data.classes->Join(letter.class_id, letter.rest));
+    }
+    const std::optional<Form> form = Decode(written, impl_->grammar.tree);
+    if (!form.has_value()) return Answer{};
+    answer.outcomes.emplace_back(*form, likely.probability);
+  }
+  if (!answer.outcomes.empty()) answer.form = answer.outcomes.front().first;
   return answer;
 }
 

@@ -19,12 +19,25 @@ class Runner {
 
   // Underlying text -> surface text. Errors: an unknown character, a symbol that may not stand there, a form
   // whose result no symbol spells. Not thread-safe.
+  // Where rules are optional, the likeliest surface.
   bool Derive(std::string_view underlying, std::string* surface, TextError* error);
+
+  // The same with all ways that optional rules leave open: the `best` likeliest surfaces, likeliest first, those that are
+  // written alike summed. `more`: there are others.
+  struct Output {
+    std::string surface;
+    double probability = 1;
+  };
+  bool DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+                 TextError* error);
+  // Has the grammar optional rules?
+  bool weighted() const;
 
   // The machine's answer on a form, for agreement tests. `form` is none if the form is outside the machine's domain; the
   // flags are raised only by machines compiled for testing.
   struct Answer {
-    std::optional<Form> form;
+    std::optional<Form> form;                      // the likeliest
+    std::vector<std::pair<Form, double>> outcomes;  // all, each once, with their probabilities
     bool ambiguous = false;
     bool reaches = false;
     bool unsure = false;

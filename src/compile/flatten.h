@@ -1,0 +1,20 @@
+// A rule with all its clauses on one list of labels and one of changes.
+//
+// The compiler asks of a letter what all clauses ask; which clause a label belongs to is told by its number. With
+// `where X:[+a] .. otherwise where Y:[+b] ..` the labels are X, Y, the changes those of both clauses in order, and
+// `otherwise` keeps the patterns, conditions and tag tests of the second.
+#pragma once
+
+#include <vector>
+
+#include "model/grammar.h"
+
+namespace tiersmith {
+
+// Labels and variables renumbered; `changes` holds those of all clauses, in order.
+Rule Flattened(const Rule& rule);
+
+// The first clause and those after `otherwise`, in order.
+std::vector<const Clause*> ClausesOf(const Rule& rule);
+
+}  // namespace tiersmith
