@@ -40,6 +40,11 @@ void MarkLinks(WorkPart* part, const Key& annotated, const RuleSpace& space) {
 
 }  // namespace
 
+void Freshen(WorkPart* part) {
+  part->origin = Origin::kFresh;
+  for (WorkPart& daughter : part->daughters) Freshen(&daughter);
+}
+
 const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last) {
   const WorkPart* found = nullptr;
   for (const WorkPart& daughter : part.daughters) {
@@ -169,15 +174,12 @@ void LetterBuilder::Relist(WorkPart* mother, NodeId node, std::int32_t request, 
     if (effective) built->clash = true;  // a line and a content
     effective = true;
     list.clear();
-    for (Value value : requests_.contents()[values - 1]) {
-      WorkPart fresh;
-      fresh.node = node;
-      fresh.value = value;
-      fresh.origin = Origin::kFresh;
-      list.push_back(fresh);
+    for (const FeatureTree& content : requests_.contents()[values - 1]) {
+      list.push_back(Work(PartOf(content), Origin::kFresh, -1));
+      Freshen(&list.back());
     }
   }
-  built->effective[index] = effective;
+  built->effective[index] = effective || (request & kMergeLeft);
   const std::vector<NodeId>& order = space.tree()[mother->node].daughters;
   const auto rank = [&order](NodeId n) { return std::find(order.begin(), order.end(), n) - order.begin(); };
   mother->daughters = std::move(others);

@@ -18,6 +18,7 @@ enum class Origin : std::uint8_t {
   kNewLeft,  // the last N on the left as it is after the rule (iterative)
   kNewRight,
   kFresh,
+  kFreshJoined,  // a new root that is also that of the slot on the right
 };
 
 struct WorkPart {
@@ -28,6 +29,9 @@ struct WorkPart {
   std::uint32_t links = 0;  // for each daughter kind: is the last one linked to the right, as an object (kObjectRight)
   std::vector<WorkPart> daughters;
 };
+
+// It and all under it are new.
+void Freshen(WorkPart* part);
 
 // The first or last part of a node under `part`, or null.
 const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last);

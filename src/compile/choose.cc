@@ -11,14 +11,17 @@ namespace {
 
 enum Choice : std::int32_t { kOpen = 0, kApply = 1, kLeave = 2 };
 
+// What is asked of the whole root, at whichever of its slots.
+constexpr std::int32_t kLength = kLengthen | kShorten;
+
 // What an object that goes on was asked: [ask, site]; site 0: nothing.
 struct Carried {
   std::int32_t ask = 0;
   std::int32_t site = 0;
 };
 
-// State: by request node, for each of its ancestors below the slot, [ask, site]; then the choice of each site; last the
-// choice of the word.
+// State: by request node, for each of its ancestors below the slot, [ask, site]; the same of the root's length; then the
+// choice of each site; last the choice of the word.
 class ChoosePass {
  public:
   explicit ChoosePass(const RequestSpace& requests) : requests_(requests), draw_(requests.rule().probability) {
@@ -29,6 +32,7 @@ class ChoosePass {
       entries_ += ancestors.size();
       ancestors_.push_back(std::move(ancestors));
     }
+    ++entries_;  // the length of the root
   }
 
   Key Start() const { return Pack(std::vector<Carried>(entries_), {kOpen}, kOpen); }
@@ -74,6 +78,11 @@ class ChoosePass {
         if (same) sites.emplace(on.site, choices[static_cast<std::size_t>(on.site)]);
       }
     }
+    const Carried& length = carried.back();
+    if (length.site > 0 && length.ask == (*request & kLength) && length.ask != 0 &&
+        (space.Marks(Key(symbol.begin(), request), kRootNode) & kFromLeft)) {
+      sites.emplace(length.site, choices[static_cast<std::size_t>(length.site)]);
+    }
     for (std::int32_t choice : {kApply, kLeave}) {
       const bool fits = std::all_of(sites.begin(), sites.end(), [&](const auto& s) { return s.second == choice; });
       if (!fits) continue;
@@ -105,6 +114,13 @@ class ChoosePass {
         if (asked && symbol[request_at + 1 + i] != 0) on = {symbol[request_at + 1 + i], site};
         if (!(marks & kToRight)) on = Carried();
       }
+    }
+    if (space.Of(letter[0], kRootNode).count > 0) {
+      Carried& length = carried.back();
+      const std::int32_t marks = space.Marks(letter, kRootNode);
+      if (!(marks & kFromLeft)) length = Carried();
+      if (asked && (symbol[request_at] & kLength)) length = {symbol[request_at] & kLength, site};
+      if (!(marks & kToRight)) length = Carried();
     }
     PassStep step{Pack(carried, choices, word), symbol};
     if (asked && choice == kLeave) {

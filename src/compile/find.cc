@@ -79,6 +79,8 @@ class SpanPass {
       offsets_.push_back(size_);
       size_ += carrier_.StateSize(i) + 3;
     }
+    root_at_ = size_;
+    size_ += 2;
   }
 
   Key Start() const { return Key(size_, 0); }
@@ -88,6 +90,7 @@ class SpanPass {
     PassStep step{state, symbol};
     if (!space.IsSlot(symbol[0])) return step;
     const std::size_t request_at = space.AnnotatedSize();
+    CarryLength(Annotated(symbol, space), &step.symbol[request_at], &step.state[root_at_]);
     const std::size_t left_at = request_at + requests_.size();
     const std::size_t right_at = left_at + requests_.nodes().size();
     for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
@@ -113,10 +116,28 @@ class SpanPass {
   }
 
  private:
+  // What is asked of the length of a root is done at its last slot; new roots of one old root are joined if they are equal.
+  void CarryLength(const Key& letter, std::int32_t* request, std::int32_t* state) const {
+    const RuleSpace& space = requests_.space();
+    if (space.Of(letter[0], kRootNode).count == 0) return;
+    constexpr std::int32_t kLength = kLengthen | kShorten;
+    const std::int32_t marks = space.Marks(letter, kRootNode);
+    const int index = requests_.IndexOf(kRootNode);
+    const std::int32_t content = index < 0 ? 0 : request[1 + index] >> kValuesShift;
+    if (marks & kFromLeft) {
+      request[0] |= state[0];
+      if (content != 0 && content == state[1]) request[0] |= kJoined;
+    }
+    state[0] = marks & kToRight ? request[0] & kLength : 0;
+    state[1] = marks & kToRight ? content : 0;
+    if (marks & kToRight) request[0] &= ~kLength;
+  }
+
   const RequestSpace& requests_;
   const LetterBuilder& builder_;
   RequestCarrier carrier_;
   std::vector<std::size_t> offsets_;
+  std::size_t root_at_ = 0;  // of the root that goes on: asked of its length, and its new content
   std::size_t size_ = 0;
 };
 
@@ -624,7 +645,7 @@ class Sweep {
         const std::size_t i = direction_.rightward ? k : changes.size() - 1 - k;
         if (changes[i].op != Change::Op::kInsert || changes[i].before != before) continue;
         if (!(request[0] >> (kInsertShift + i) & 1)) continue;
-        LeaveInserted(state, now, changes[i].inserted);
+        LeaveInserted(state, now, changes[i]);
       }
     };
     insertions(direction_.rightward);
@@ -645,9 +666,9 @@ class Sweep {
            space_.Of(now[0], space_.live()[live]).count == 1;
   }
 
-  void LeaveInserted(SweepState* state, const Key& host, const FeatureTree& content) {
+  void LeaveInserted(SweepState* state, const Key& host, const Change& change) {
     Letter letter;
-    letter.part.daughters.push_back(PartOf(content));
+    letter.part.daughters.push_back(PartOf(change.inserted));
     Key annotated(space_.AnnotatedSize(), 0);
     annotated[0] = space_.classes().Classify(letter).class_id;
     space_.SetAround(&annotated, space_.Around(host));
@@ -663,7 +684,20 @@ class Sweep {
         state->contents[i] = builder_.ContentOf(annotated, requests_.nodes()[i], direction_.rightward) + 1;
       }
     }
-    state->near = StepOn(state->near, Known(annotated));
+    if (!change.is_long) {
+      state->near = StepOn(state->near, Known(annotated));
+      return;
+    }
+    // Two slots of one root.
+    for (const bool first : {true, false}) {
+      Key half = annotated;
+      for (std::size_t i = 0; i < space_.live().size(); ++i) {
+        if (space_.Of(half[0], space_.live()[i]).count == 0) continue;
+        half[1 + i] |= first ? direction_.far_line() : direction_.near_line();
+        if (space_.live()[i] == kRootNode) half[1 + i] |= first ? direction_.far_object() : direction_.near_object();
+      }
+      state->near = StepOn(state->near, Known(half));
+    }
   }
 
   void LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {

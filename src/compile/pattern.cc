@@ -49,9 +49,11 @@ enum Zone : std::int32_t {
   kDone = 4,
 };
 
-// [pc, phase, need, seen, mask, zone of spread 0, ..., variable 0, ..., condition 0, ...]; two states that loop have a pc of
-// their own. A variable: 1 + its value once it is met. A condition: what its first item told (ConditionState).
-enum Field { kPc, kPhase, kNeed, kSeen, kMask, kZones };
+// [pc, phase, need, label of the boundary needed (+1), seen, mask, zone of spread 0, ..., variable 0, ..., condition 0, ...]; two states that loop have a pc of
+// their own. A variable: 1 + its value once it is met. A condition: what its first item told (ConditionState). Last, for
+// each merge, 1 + the content of its left item while that is the last one. The mask says which spreads have a source that
+// bears the node, and which merges make one of two.
+enum Field { kPc, kPhase, kNeed, kNeedLabel, kSeen, kMask, kZones };
 constexpr std::int32_t kPrefix = -1, kSuffix = -2;
 
 // Needs of a boundary: of a strength, or none at all (`&`).
@@ -240,8 +242,23 @@ struct PatternCompiler::Impl {
     std::set<int> labels;
     Program where;
     std::vector<Program> unless;
-    std::int32_t spreads = 0;                  // bit j: spread j is of this clause
+    std::int32_t spreads = 0;                  // bits of the mask: spreads of this clause, then its merges
     std::vector<Compared> conditions;
+  };
+  // A change that gives its target what the source bears.
+  struct Copy {
+    std::size_t change;
+    int source, target;
+    NodeId node;
+    Member member;
+    bool fill;
+    int variable;
+    std::set<std::int32_t> known;  // values met so far: 0 for nothing, else 1 + the content
+  };
+  struct Merge {
+    std::size_t change;
+    int left, right;  // labels
+    NodeId node;
   };
   // A setting whose content is that of a variable.
   struct Borrowed {
@@ -252,6 +269,9 @@ struct PatternCompiler::Impl {
   std::vector<Asked> tests;
   std::vector<const FeatureTest*> agreeing;
   std::vector<Borrowed> borrowed;
+  std::vector<Copy> copies;
+  std::vector<Merge> merges;
+  int variables = 0;  // those of the rule, then one for each copy
   std::vector<GapInfo> gaps;
   std::vector<Spread> spreads;
   std::vector<char> changed;                  // by label
@@ -262,7 +282,9 @@ struct PatternCompiler::Impl {
   KeyPool profile_keys;
   std::unordered_map<Key, int, KeyHash> profile_of;
   KeyPool value_sets;          // sets of values that a test of agreement allows
-  mutable Alphabet contents;  // of class nodes that are compared
+  Alphabet contents;           // that are compared or copied
+  std::vector<Content> lists;  // by content: the same as trees
+  KeyPool letters;             // where what is asked cannot be told before: all of an annotated letter
 
   Impl(const Rule& r, const RuleSpace& s) : rule(r), space(s) {
     mark_count = static_cast<int>(rule.labels.size());
@@ -272,10 +294,26 @@ struct PatternCompiler::Impl {
       if (change.target >= 0) changed[change.target] = 1;
     }
     CollectSpreads();
+    CollectCopies();
     for (const Clause* clause : ClausesOf(rule)) AddClause(*clause);
     for (const Change& change : rule.changes) {
       for (const Setting& setting : change.settings) {
         if (setting.variable >= 0) borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
+      }
+    }
+  }
+
+  void CollectCopies() {
+    variables = rule.variables;
+    for (std::size_t i = 0; i < rule.changes.size(); ++i) {
+      const Change& change = rule.changes[i];
+      if (change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs) {
+        copies.push_back({i, change.source, change.target, change.node, change.member,
+                          change.op == Change::Op::kFillAs, variables++, {}});
+      } else if (change.op == Change::Op::kMerge) {
+        const bool forward = Position(change.source) < Position(change.target);
+        merges.push_back({i, forward ? change.source : change.target, forward ? change.target : change.source, change.node});
+        changed[static_cast<std::size_t>(change.source)] = 1;
       }
     }
   }
@@ -293,6 +331,9 @@ struct PatternCompiler::Impl {
     note(note, clause.where);
     for (std::size_t j = 0; j < spreads.size(); ++j) {
       if (labels.count(spreads[j].target) > 0) programs.spreads |= 1 << j;
+    }
+    for (std::size_t j = 0; j < merges.size(); ++j) {
+      if (labels.count(merges[j].left) > 0) programs.spreads |= 1 << (spreads.size() + j);
     }
     for (const Condition& c : clause.conditions) {
       Compared compared{c.test, c.node, c.left, c.right, c.left_member, c.right_member};
@@ -400,6 +441,7 @@ struct PatternCompiler::Impl {
         case PatternItem::Kind::kBoundary:
           instruction.op = Instruction::Op::kBoundary;
           instruction.boundary = item.boundary;
+          if (main) instruction.mark = item.label;
           next = Emit(program, instruction);
           break;
         case PatternItem::Kind::kSameMorpheme:
@@ -475,14 +517,27 @@ struct PatternCompiler::Impl {
         case Change::Op::kDelink:
           if (at_end) at_ends.insert(change.node);
           break;
+        case Change::Op::kMerge: {
+          const bool source_left = static_cast<std::size_t>(Position(change.source)) < split;
+          const bool target_left = static_cast<std::size_t>(Position(change.target)) < split;
+          if (source_left != target_left) across.insert(change.node);
+          break;
+        }
+        case Change::Op::kSetAs:
+        case Change::Op::kFillAs:
+          if (at_end) at_ends.insert(change.node);
+          break;
         case Change::Op::kSet:
         case Change::Op::kFill:
           for (const Setting& setting : change.settings) {
             if (at_end) at_ends.insert(setting.node);
           }
           break;
+        case Change::Op::kSetLiteral:
         case Change::Op::kInsert:
         case Change::Op::kDelete:
+        case Change::Op::kLengthen:
+        case Change::Op::kShorten:
           break;
       }
     }
@@ -542,7 +597,11 @@ struct PatternCompiler::Impl {
     return BorrowedField(borrowed.size() + kConditionFields * before);
   }
   int DomainField() const { return ConditionField(clauses.size(), 0); }
-  int ProfileSize() const { return DomainField() + 1; }
+  int CopyField(std::size_t i) const { return DomainField() + 1 + static_cast<int>(i); }  // as its source
+  enum MergeAnswer { kLastContent, kFirstContent, kGoesOn, kFirstIsHeldLeft, kMergeFields };
+  int MergeField(std::size_t i) const { return CopyField(copies.size()) + kMergeFields * static_cast<int>(i); }
+  int LetterField() const { return MergeField(merges.size()); }  // number of the letter, where copies ask of all of it
+  int ProfileSize() const { return LetterField() + 1; }
 
   // What a letter says to one spread.
   enum SpreadAnswer {
@@ -588,6 +647,20 @@ struct PatternCompiler::Impl {
       const int label = static_cast<int>(i);
       profile[LabelField(label)] = TagsAllow(letter, label) && (!changed[i] || Changeable(letter, label));
     }
+    for (std::size_t i = 0; i < copies.size(); ++i) {
+      const std::int32_t source = ContentNumber(visible.part, copies[i].node, copies[i].member);
+      profile[CopyField(i)] = source;
+      copies[i].known.insert(source);
+    }
+    for (std::size_t i = 0; i < merges.size(); ++i) {
+      std::int32_t* answers = &profile[MergeField(i)];
+      const NodeId node = merges[i].node;
+      answers[kLastContent] = ContentNumber(visible.part, node, {Member::Which::kLast, 0});
+      answers[kFirstContent] = ContentNumber(visible.part, node, {Member::Which::kFirst, 0});
+      answers[kGoesOn] = HoldsOn(letter, node);
+      answers[kFirstIsHeldLeft] = (space.Marks(letter, node) & kFromLeft) != 0;
+    }
+    if (!copies.empty()) profile[LetterField()] = letters.Intern(letter);
     profile[DomainField()] = rule.within != Domain::kStem || (space.Around(letter) & kInStem);
     for (std::size_t i = 0; i < agreeing.size(); ++i) {
       profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
@@ -608,10 +681,45 @@ struct PatternCompiler::Impl {
   bool IsClassNode(NodeId node) const { return space.tree()[node].type == TreeNode::Type::kClass; }
   bool IsBare(NodeId node) const { return space.tree()[node].type == TreeNode::Type::kBare; }
 
-  int ContentId(const LetterPart& part) const {
+  // The number of a list of parts, links aside.
+  std::int32_t ContentId(const std::vector<const LetterPart*>& parts) {
     Letter letter;
-    letter.part = PartOf(ContentOf(part));  // without its links
-    return contents.Intern(letter);
+    Content list;
+    for (const LetterPart* part : parts) {
+      list.push_back(tiersmith::ContentOf(*part));
+      letter.part.daughters.push_back(PartOf(list.back()));
+    }
+    const int id = contents.Intern(letter);
+    if (id == static_cast<int>(lists.size())) lists.push_back(std::move(list));
+    return id;
+  }
+
+  // 1 + the number of what a letter bears of a node, 0 if it bears none.
+  std::int32_t ContentNumber(const LetterPart& slot, NodeId node, const Member& member) {
+    std::vector<const LetterPart*> parts = Chosen(slot, node, member);
+    return parts.empty() ? 0 : 1 + ContentId(parts);
+  }
+
+  static std::vector<const LetterPart*> Chosen(const LetterPart& slot, NodeId node, const Member& member) {
+    std::vector<const LetterPart*> parts;
+    Parts(slot, node, &parts);
+    if (parts.empty()) return parts;
+    switch (member.which) {
+      case Member::Which::kWhole:
+        break;
+      case Member::Which::kFirst:
+        parts.resize(1);
+        break;
+      case Member::Which::kLast:
+        parts.erase(parts.begin(), parts.end() - 1);
+        break;
+      case Member::Which::kValue:
+        parts.erase(std::remove_if(parts.begin(), parts.end(),
+                                   [&](const LetterPart* part) { return part->value != member.value; }),
+                    parts.end());
+        break;
+    }
+    return parts;
   }
 
   static void Parts(const LetterPart& part, NodeId node, std::vector<const LetterPart*>* found) {
@@ -622,7 +730,7 @@ struct PatternCompiler::Impl {
   }
 
   // The values of its variable under which the test of agreement holds.
-  Key ValuesAllowed(const LetterPart& slot, const FeatureTest& test) const {
+  Key ValuesAllowed(const LetterPart& slot, const FeatureTest& test) {
     const std::vector<Value> values = ValuesFacing(slot, test.node, test.part);
     std::set<std::int32_t> allowed;
     if (IsBare(test.node)) {
@@ -632,7 +740,7 @@ struct PatternCompiler::Impl {
       Parts(slot, test.node, &parts);
       if (!parts.empty() && test.part == FeatureTest::Part::kFirst) parts.resize(1);
       if (!parts.empty() && test.part == FeatureTest::Part::kLast) parts.erase(parts.begin(), parts.end() - 1);
-      for (const LetterPart* part : parts) allowed.insert(ContentId(*part));
+      for (const LetterPart* part : parts) allowed.insert(ContentId({part}));
     } else {
       allowed.insert(values.begin(), values.end());
     }
@@ -658,30 +766,16 @@ struct PatternCompiler::Impl {
 
   // What a letter says to a condition as its left or its right item: 1 + its content, 0 if it bears none; where the very
   // instance is asked for, the ConditionState after it (left), or whether the instance goes on into it (right).
-  std::int32_t Answer(const Key& letter, const Compared& condition, bool left) const {
-    std::vector<const LetterPart*> parts;
-    Parts(space.classes()[letter[0]].visible.part, condition.node, &parts);
+  std::int32_t Answer(const Key& letter, const Compared& condition, bool left) {
+    const LetterPart& slot = space.classes()[letter[0]].visible.part;
     const Member& member = left ? condition.left_member : condition.right_member;
-    const std::size_t all = parts.size();
-    std::size_t at = left && all > 0 ? all - 1 : 0;  // the facing one
-    if (member.which == Member::Which::kFirst) at = 0;
-    if (member.which == Member::Which::kLast && all > 0) at = all - 1;
-    if (member.which == Member::Which::kValue) {
-      const auto found =
-          std::find_if(parts.begin(), parts.end(), [&](const LetterPart* p) { return p->value == member.value; });
-      at = static_cast<std::size_t>(found - parts.begin());
-    }
-    if (at >= all) return 0;
-    if (condition.OfInstance()) {
-      if (left) return at + 1 == all ? kStillHeld : kLost;
-      return at == 0 && (space.Marks(letter, condition.node) & kFromLeft);
-    }
-    Letter content;
-    for (std::size_t i = 0; i < all; ++i) {
-      const bool counts = member.which == Member::Which::kWhole || i == at;
-      if (counts) content.part.daughters.push_back(PartOf(ContentOf(*parts[i])));
-    }
-    return 1 + contents.Intern(content);
+    if (!condition.OfInstance()) return ContentNumber(slot, condition.node, member);
+    std::vector<const LetterPart*> all;
+    Parts(slot, condition.node, &all);
+    const std::vector<const LetterPart*> chosen = Chosen(slot, condition.node, member);
+    if (chosen.empty()) return 0;
+    if (left) return chosen.back() == all.back() ? kStillHeld : kLost;
+    return chosen.front() == all.front() && (space.Marks(letter, condition.node) & kFromLeft);
   }
 
   // After a letter between, is the N that was the last one still the last one?
@@ -736,6 +830,8 @@ struct PatternCompiler::Impl {
         for (const Setting& setting : change.settings) {
           if (setting.variable < 0 && !SettingFits(letter, setting, change.op == Change::Op::kFill)) return false;
         }
+      } else if (change.op == Change::Op::kSetLiteral) {
+        if (!ContentFits(letter, kRootNode, {change.inserted})) return false;
       } else if (change.op == Change::Op::kInsert) {
         for (NodeId node : inserted[i]) {
           const std::int32_t marks = space.Marks(letter, node);
@@ -748,6 +844,8 @@ struct PatternCompiler::Impl {
   }
 
   bool SettingFits(const Key& letter, const Setting& setting, bool fill) const;
+  bool ContentFits(const Key& letter, NodeId node, const Content& content) const;
+  bool SubtreeFits(const Key& letter, const FeatureTree& tree, bool held_left, bool held_right) const;
 
   // ---- the automaton --------------------------------------------------------------------------
   struct Builder;
@@ -769,6 +867,33 @@ bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& settin
     return false;
   if (bearing.count == 0) return !(marks & kOver) && MothersFit(letter, setting.node);
   return !(bearing.count == 1 && (marks & kObjectLeft) && (marks & kObjectRight));
+}
+
+// New instances of a node in place of what the letter bears: is there room, and would no line to what is held on both
+// sides cross theirs?
+bool PatternCompiler::Impl::ContentFits(const Key& letter, NodeId node, const Content& content) const {
+  if (content.empty() || ContentUnder(space.classes()[letter[0]].visible.part, node) == content) return true;
+  if (content.size() > 1 && static_cast<int>(content.size()) > space.Room(letter[0], node)) return false;
+  if (space.Of(letter[0], node).count == 0 && !MothersFit(letter, node)) return false;
+  return std::all_of(content.begin(), content.end(),
+                     [&](const FeatureTree& tree) { return SubtreeFits(letter, tree, false, false); });
+}
+
+// `held_left`: the mother is held on the left as well, so what hangs from it is too.
+bool PatternCompiler::Impl::SubtreeFits(const Key& letter, const FeatureTree& tree, bool held_left,
+                                        bool held_right) const {
+  const int count = space.Of(letter[0], tree.node).count;
+  const std::int32_t marks = space.Marks(letter, tree.node);
+  if (count == 0) {
+    if (marks & kOver) return false;
+  } else {
+    held_left = held_left || (marks & kObjectLeft);
+    held_right = held_right || (marks & kObjectRight);
+    if (count == 1 && held_left && held_right) return false;
+  }
+  return std::all_of(tree.daughters.begin(), tree.daughters.end(), [&](const FeatureTree& daughter) {
+    return SubtreeFits(letter, daughter, held_left, held_right);
+  });
 }
 
 // Explores the configurations of one program.
@@ -799,8 +924,11 @@ struct PatternCompiler::Impl::Builder {
 
   std::size_t SpreadCount() const { return main ? impl.spreads.size() : 0; }
   std::size_t VariableAt(int variable) const { return kZones + SpreadCount() + static_cast<std::size_t>(variable); }
-  std::size_t ConditionAt(std::size_t i) const { return VariableAt(main ? impl.rule.variables : 0) + i; }
-  std::size_t ConfigSize() const { return ConditionAt(main ? clause->conditions.size() : 0); }
+  std::size_t ConditionAt(std::size_t i) const { return VariableAt(main ? impl.variables : 0) + i; }
+  std::size_t MergeAt(std::size_t i) const { return ConditionAt(ConditionCount()) + i; }
+  std::size_t ConfigSize() const { return MergeAt(MergeCount()); }
+  std::size_t MergeCount() const { return main ? impl.merges.size() : 0; }
+  bool Merges(const Key& config, std::size_t i) const { return config[kMask] >> (SpreadCount() + i) & 1; }
 
   Key Start(std::int32_t mask) const {
     Key config(ConfigSize(), 0);
@@ -809,33 +937,42 @@ struct PatternCompiler::Impl::Builder {
     return config;
   }
 
-  // Where the program can stand before its next slot, gap or end, and the strongest boundary named on the way.
-  void Close(int pc, std::int32_t need, std::set<std::pair<int, int>>* seen,
-             std::vector<std::pair<int, int>>* result) const {
-    if (!seen->emplace(pc, need).second) return;
-    const Instruction& at = program.code[pc];
+  // Where the program can stand before its next slot, gap or end, with the strongest boundary named on the way and the
+  // label of one (+1).
+  struct Stand {
+    int pc;
+    std::int32_t need, label;
+    friend bool operator<(const Stand& a, const Stand& b) {
+      return std::tie(a.pc, a.need, a.label) < std::tie(b.pc, b.need, b.label);
+    }
+  };
+  void Close(const Stand& from, std::set<Stand>* seen, std::vector<Stand>* result) const {
+    if (!seen->insert(from).second) return;
+    const Instruction& at = program.code[from.pc];
     switch (at.op) {
       case Instruction::Op::kSlot:
       case Instruction::Op::kGap:
       case Instruction::Op::kAccept:
-        result->emplace_back(pc, need);
+        result->push_back(from);
         break;
       case Instruction::Op::kBoundary:
-        if (need == kNoBoundary) break;
-        Close(at.next, std::max(need, static_cast<std::int32_t>(at.boundary)), seen, result);
+        if (from.need == kNoBoundary) break;
+        Close({at.next, std::max(from.need, static_cast<std::int32_t>(at.boundary)),
+               at.mark >= 0 ? at.mark + 1 : from.label},
+              seen, result);
         break;
       case Instruction::Op::kSameMorpheme:
-        if (need <= 0) Close(at.next, kNoBoundary, seen, result);
+        if (from.need <= 0) Close({at.next, kNoBoundary, from.label}, seen, result);
         break;
       case Instruction::Op::kSplit:
-        for (int branch : at.branches) Close(branch, need, seen, result);
+        for (int branch : at.branches) Close({branch, from.need, from.label}, seen, result);
         break;
     }
   }
-  std::vector<std::pair<int, int>> Close(int pc) const {
-    std::set<std::pair<int, int>> seen;
-    std::vector<std::pair<int, int>> result;
-    Close(pc, 0, &seen, &result);
+  std::vector<Stand> Close(int pc) const {
+    std::set<Stand> seen;
+    std::vector<Stand> result;
+    Close({pc, 0, 0}, &seen, &result);
     return result;
   }
 
@@ -861,10 +998,11 @@ struct PatternCompiler::Impl::Builder {
 
   // Configurations after the program consumed a slot (or, with `first`, before its first one).
   void After(const Key& base, int pc, bool first, std::vector<Key>* result) const {
-    for (const auto& [at, need] : Close(pc)) {
+    for (const auto& [at, need, label] : Close(pc)) {
       Key config = base;
       config[kPc] = at;
       config[kNeed] = need;
+      config[kNeedLabel] = label;
       config[kSeen] = first;
       const bool accept = program.code[at].op == Instruction::Op::kAccept;
       config[kPhase] = accept ? 2 : first ? 0 : 1;
@@ -899,7 +1037,7 @@ struct PatternCompiler::Impl::Builder {
 
   MarkedMachine Run(std::size_t max_states) {
     if (program.too_long) return OverBudget();
-    const std::int32_t masks = 1 << SpreadCount();
+    const std::int32_t masks = 1 << (SpreadCount() + MergeCount());
     for (std::int32_t mask = 0; mask < masks; ++mask) {
       if (main && (mask & ~clause->spreads)) continue;
       machine.initial.push_back(Intern(Start(mask)));
@@ -949,10 +1087,17 @@ struct PatternCompiler::Impl::Builder {
     if (instruction.op == Instruction::Op::kSlot) {
       Consume(at, config, profile, letter, config[kPc]);
     } else if (instruction.op == Instruction::Op::kGap) {
-      for (const auto& [pc, need] : Close(instruction.next)) {
+      for (const auto& [pc, need, named] : Close(instruction.next)) {
         if (need == 0 && program.code[pc].op == Instruction::Op::kSlot) Consume(at, config, profile, letter, pc);
       }
     }
+  }
+
+  // The role of a boundary that is deleted.
+  int RoleOf(int label) const {
+    Key role(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
+    role[0] = label;
+    return roles->Intern(role);
   }
 
   void SkipBoundary(int at, const Key& config, int profile, std::int32_t boundary, bool outside,
@@ -972,7 +1117,9 @@ struct PatternCompiler::Impl::Builder {
       if (boundary > config[kNeed]) return;
       if (boundary == config[kNeed]) next[kSeen] = 1;
     }
-    Add(at, profile, -1, -1, next);
+    const int label = config[kNeedLabel] - 1;
+    const bool labelled = main && label >= 0 && boundary == config[kNeed];
+    Add(at, profile, labelled ? label : -1, labelled && impl.changed[label] ? RoleOf(label) : -1, next);
   }
 
   const std::int32_t* Answers(const Key& letter, std::size_t spread) const {
@@ -994,6 +1141,7 @@ struct PatternCompiler::Impl::Builder {
   std::vector<Key> Walk(const Key& config, const Key& letter) const {
     std::vector<Key> result{config};
     PassConditions(letter, &result[0]);
+    if (!PassMerges(letter, -1, &result[0])) return {};
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       const std::int32_t zone = config[kZones + j];
       if (zone == kBefore || zone == kDone) continue;
@@ -1016,6 +1164,26 @@ struct PatternCompiler::Impl::Builder {
       if (!clause->conditions[i].OfInstance() || state != kStillHeld) continue;
       if (!ConditionAnswers(letter, i)[kBetween]) state = kLost;
     }
+  }
+
+  // Merges under way: the left item's N must be the last one until the right item is met. False: it is not.
+  bool PassMerges(const Key& letter, int label, Key* config) const {
+    for (std::size_t i = 0; i < MergeCount(); ++i) {
+      const Merge& merge = impl.merges[i];
+      if (!Merges(*config, i)) continue;
+      const std::int32_t* answers = &letter[impl.MergeField(i)];
+      std::int32_t& state = (*config)[MergeAt(i)];
+      if (label == merge.left) {
+        state = answers[kLastContent];
+        if (state == 0) return false;
+      } else if (label == merge.right) {
+        if (state != answers[kFirstContent] || answers[kFirstIsHeldLeft]) return false;
+        state = 0;
+      } else if (state != 0 && !answers[kGoesOn]) {
+        return false;
+      }
+    }
+    return true;
   }
 
   // The slot under `label`: conditions begin or are settled. False: one does not hold.
@@ -1056,7 +1224,7 @@ struct PatternCompiler::Impl::Builder {
 
   // All ways to meet the tests of agreement of a slot, and to tell a role the values that its changes borrow.
   void MeetVariables(const Key& letter, int test, int label, std::vector<std::pair<Key, Key>>* ways) const {
-    if (!main || impl.rule.variables == 0) return;
+    if (!main || impl.variables == 0) return;
     const Asked& asked = impl.tests[static_cast<std::size_t>(test)];
     for (std::size_t i = asked.agreeing_begin; i < asked.agreeing_end; ++i) {
       const std::size_t at = VariableAt(impl.agreeing[i]->variable);
@@ -1072,6 +1240,20 @@ struct PatternCompiler::Impl::Builder {
         (*role)[1 + SpreadCount() + static_cast<std::size_t>(variable)] = 1 + value;
         return (letter[impl.BorrowedField(i)] >> value & 1) != 0;
       });
+    }
+    for (std::size_t i = 0; label >= 0 && i < impl.copies.size(); ++i) {
+      const Copy& copy = impl.copies[i];
+      const std::size_t at = VariableAt(copy.variable);
+      if (copy.source == label) {
+        Bind(at, Key{letter[impl.CopyField(i)]}, ways, [](std::int32_t, Key*) { return true; });
+      } else if (copy.target == label) {
+        Bind(at, Key(copy.known.begin(), copy.known.end()), ways, [&](std::int32_t value, Key* role) {
+          (*role)[1 + SpreadCount() + static_cast<std::size_t>(copy.variable)] = 1 + value;
+          const Key& annotated = impl.letters[letter[impl.LetterField()]];
+          if (copy.fill && (value == 0 || impl.space.Of(annotated[0], copy.node).count > 0)) return true;
+          return value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
+        });
+      }
     }
   }
 
@@ -1115,10 +1297,14 @@ struct PatternCompiler::Impl::Builder {
     std::vector<std::pair<Key, Key>> ways;  // configuration, role
     Key role, start = config;
     if (label >= 0 && impl.changed[label]) {
-      role.assign(1 + SpreadCount() + static_cast<std::size_t>(impl.rule.variables), 0);
+      role.assign(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
       role[0] = label;
+      for (std::size_t i = 0; i < MergeCount(); ++i) {
+        if (Merges(config, i) && impl.merges[i].right == label)
+          role.back() |= 1 << impl.merges[i].change;
+      }
     }
-    if (!MeetConditions(letter, label, &start)) return;
+    if (!MeetConditions(letter, label, &start) || !PassMerges(letter, label, &start)) return;
     ways.emplace_back(std::move(start), role);
     MeetVariables(letter, slot.test, label, &ways);
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
@@ -1197,6 +1383,15 @@ PatternCompiler::~PatternCompiler() = default;
 int PatternCompiler::Profile(const Key& annotated) { return impl_->Profile(annotated); }
 int PatternCompiler::profiles() const { return impl_->profile_keys.size(); }
 const std::vector<Spread>& PatternCompiler::spreads() const { return impl_->spreads; }
+std::size_t PatternCompiler::VariableOf(std::size_t change) const {
+  const auto copy = std::find_if(impl_->copies.begin(), impl_->copies.end(),
+                                 [change](const Impl::Copy& c) { return c.change == change; });
+  return static_cast<std::size_t>(copy->variable);
+}
+const Content& PatternCompiler::ContentOf(int value) const {
+  static const Content kNone;
+  return value <= 1 ? kNone : impl_->lists[static_cast<std::size_t>(value - 2)];
+}
 bool PatternCompiler::AsksOfSlotsBehind(bool rightward) const {
   return std::any_of(impl_->gaps.begin(), impl_->gaps.end(), [rightward](const GapInfo& gap) {
     return rightward ? gap.nearest_right : gap.nearest_left;  // the changed end is met last
@@ -1295,12 +1490,14 @@ MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t
 
 PatternMachine PatternCompiler::Build(std::size_t max_states) const {
   KeyPool roles;
-  std::vector<MarkedMachine> machines;
+  std::vector<MarkedMachine> able, machines;
   for (std::size_t c = 0; c < impl_->clauses.size(); ++c) {
     MarkedMachine machine = impl_->BuildClause(c, max_states, &roles);
-    for (const MarkedMachine& earlier : machines) {
-      if (earlier.over_budget) machine = OverBudget();
-      if (!earlier.initial.empty()) machine = Minus(machine, ForestalledBan(earlier, impl_->changed), max_states);
+    able.push_back(machine);
+    for (std::size_t earlier = 0; earlier < c; ++earlier) {
+      if (able[earlier].over_budget) machine = OverBudget();
+      if (able[earlier].initial.empty()) continue;
+      machine = Minus(machine, ForestalledBan(able[earlier], impl_->changed), max_states);
     }
     machines.push_back(std::move(machine));
   }
@@ -1322,7 +1519,8 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
     Role role;
     role.label = roles[i][0];
     for (std::size_t j = 0; j < spread_count; ++j) role.asks.push_back(static_cast<Role::Ask>(roles[i][1 + j]));
-    role.values.assign(roles[i].begin() + 1 + static_cast<std::ptrdiff_t>(spread_count), roles[i].end());
+    role.values.assign(roles[i].begin() + 1 + static_cast<std::ptrdiff_t>(spread_count), roles[i].end() - 1);
+    role.merges = roles[i].back();
     result.roles.push_back(std::move(role));
   }
   return result;

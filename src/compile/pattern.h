@@ -44,7 +44,10 @@ struct Role {
   enum Ask : char { kNothing, kAsk, kAskOwnMother };  // the last: source and target share the mother
   std::vector<Ask> asks;                              // by spread
   std::vector<int> values;  // by variable: 1 + its value where a change to the label asks for it, else 0
+  std::int32_t merges = 0;  // bit i: change i makes this item's N and the one on its left one
 };
+
+using Content = std::vector<FeatureTree>;  // a list of instances with all under them
 
 struct PatternArc {
   int profile = 0;
@@ -72,6 +75,9 @@ class PatternCompiler {
   int Profile(const Key& annotated);
   int profiles() const;
   const std::vector<Spread>& spreads() const;
+  // A change that copies has a variable of its own in Role::values; this is the content that a value of it stands for.
+  std::size_t VariableOf(std::size_t change) const;
+  const Content& ContentOf(int value) const;
   // Does some gap ask of slots that a sweep has passed whether one of them would do, being nearer?
   bool AsksOfSlotsBehind(bool rightward) const;
 

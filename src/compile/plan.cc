@@ -70,14 +70,44 @@ void AddLinksRead(const Tree& tree, const Change& change, NodeSet* read) {
     case Change::Op::kInsert:
       AddContent(change.inserted, read);
       break;
+    case Change::Op::kSetAs:
+    case Change::Op::kFillAs:
+    case Change::Op::kMerge:
+      AddUpward(tree, change.node, read);
+      AddDownward(tree, change.node, read);
+      break;
+    case Change::Op::kSetLiteral:
+      AddDownward(tree, kRootNode, read);
+      break;
     case Change::Op::kDelete:
+    case Change::Op::kLengthen:
+    case Change::Op::kShorten:
       break;
   }
 }
 
 void AddVisible(const Tree& tree, const Change& change, NodeSet* visible) {
-  if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) AddDownward(tree, change.node, visible);
-  for (const Setting& setting : change.settings) AddDownward(tree, setting.node, visible);
+  switch (change.op) {
+    case Change::Op::kSpread:
+    case Change::Op::kDelink:
+    case Change::Op::kSetAs:
+    case Change::Op::kFillAs:
+    case Change::Op::kMerge:
+      AddDownward(tree, change.node, visible);
+      break;
+    case Change::Op::kSetLiteral:
+      AddDownward(tree, kRootNode, visible);
+      break;
+    case Change::Op::kSet:
+    case Change::Op::kFill:
+      for (const Setting& setting : change.settings) AddDownward(tree, setting.node, visible);
+      break;
+    case Change::Op::kInsert:
+    case Change::Op::kDelete:
+    case Change::Op::kLengthen:
+    case Change::Op::kShorten:
+      break;
+  }
 }
 
 void AddClause(const Tree& tree, const Clause& clause, Plan* plan) {

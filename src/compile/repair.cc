@@ -16,6 +16,7 @@ struct NodeState {
 };
 
 bool FromRight(Origin origin) { return origin == Origin::kOldRight || origin == Origin::kNewRight; }
+bool IsFresh(Origin origin) { return origin == Origin::kFresh || origin == Origin::kFreshJoined; }
 bool FromLeft(Origin origin) { return origin == Origin::kOldLeft || origin == Origin::kNewLeft; }
 
 // The memory of one node while one letter's entries go by.
@@ -81,7 +82,7 @@ bool Repair::BearsMother(int class_id, NodeId node) const {
   return mother != kSlotNode && space_.Of(class_id, mother).count > 0;
 }
 
-bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) const {
+bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, const NodeSet* merges) const {
   const Tree& tree = space_.tree();
   std::vector<NodeState> states(space_.live().size());
   std::vector<std::pair<WorkPart*, std::uint32_t>> links;
@@ -114,8 +115,9 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
     }
     // The entries of a mother that is one object with the next bearer's are settled at its right end.
     const bool settled = mother.raw;
-    const bool mother_moved = mother.part != nullptr && mother.from != Origin::kOwn && mother.from != Origin::kFresh;
+    const bool mother_moved = mother.part != nullptr && mother.from != Origin::kOwn && !IsFresh(mother.from);
 
+    const auto merged = [&](NodeId of) { return merges != nullptr && (*merges)[of]; };
     const auto moved_entries = [&] {  // under a mother that moved here they keep their links
       for (std::size_t k = list.size(); k-- > 0;) {
         walker.Kept(k + 1 == list.size() && (mother.part->links >> bit_index & 1u));
@@ -168,12 +170,14 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory) co
             const bool bit = k + 1 == old_count && old_bit;
             kept[k] ? walker.Kept(bit) : walker.GivenUp(bit);
           }
+          if (merged(node)) walker.next = kOldToTheLeft;
           state.old = Old::kInPlace;
           walker.alive = kept[0] != 0;
         }
       }
       for (std::size_t k = list.size(); k-- > 0;) {
         if (list[k]->origin == Origin::kFresh) walker.Fresh();
+        if (list[k]->origin == Origin::kFreshJoined) walker.New(true, kBehindFresh);
       }
       for (std::size_t k = list.size(); k-- > 0;) {
         if (!FromLeft(list[k]->origin)) continue;

@@ -46,8 +46,9 @@ class Repair {
 
   // Takes the letter as annotated before the change and its parts after it (null: the slot is deleted). Writes the stored link
   // bits into `after` (only for nodes with kept_links) and updates `memory`. False: lines would cross.
-  // An inserted letter has nothing before: `before` is then an empty slot, and all parts are fresh.
-  bool Letter(const Key& before, WorkPart* after, std::int32_t* memory) const;
+  // An inserted letter has nothing before: `before` is then an empty slot, and all parts are fresh. `merges`: the nodes of
+  // which the letter's first instance and the nearest one on the left become one.
+  bool Letter(const Key& before, WorkPart* after, std::int32_t* memory, const NodeSet* merges = nullptr) const;
 
  private:
   bool BearsMother(int class_id, NodeId node) const;

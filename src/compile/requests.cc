@@ -5,32 +5,48 @@
 
 namespace tiersmith {
 
+Content ContentUnder(const LetterPart& part, NodeId node) {
+  Content content;
+  for (const LetterPart& daughter : part.daughters) {
+    if (daughter.node == node) content.push_back(ContentOf(daughter));
+    const Content below = ContentUnder(daughter, node);
+    content.insert(content.end(), below.begin(), below.end());
+  }
+  return content;
+}
+
 std::vector<Value> BorrowedValues(const Tree& tree, const Setting& setting, int value) {
   if (setting.differs) value = 1 - value;
   if (tree[setting.node].type == TreeNode::Type::kBare) return std::vector<Value>(value == 0 ? 0 : 1, Value{0});
   return {static_cast<Value>(value)};
 }
 
-RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const std::vector<Spread>& spreads)
-    : rule_(rule), space_(space), spreads_(spreads) {
+RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const PatternCompiler& pattern)
+    : rule_(rule), space_(space), pattern_(pattern), spreads_(pattern.spreads()) {
   std::set<NodeId> nodes;  // mothers have smaller numbers
   for (const Change& change : rule.changes) {
-    if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) nodes.insert(change.node);
-    for (const Setting& setting : change.settings) {
-      nodes.insert(setting.node);
-      AddContents(setting);
+    for (const Setting& setting : change.settings) nodes.insert(setting.node);
+    switch (change.op) {
+      case Change::Op::kSpread:
+      case Change::Op::kDelink:
+      case Change::Op::kSetAs:
+      case Change::Op::kFillAs:
+      case Change::Op::kMerge:
+        nodes.insert(change.node);
+        break;
+      case Change::Op::kSetLiteral:
+        nodes.insert(kRootNode);
+        break;
+      case Change::Op::kSet:
+      case Change::Op::kFill:
+      case Change::Op::kInsert:
+      case Change::Op::kDelete:
+      case Change::Op::kLengthen:
+      case Change::Op::kShorten:
+        break;
     }
   }
   nodes_.assign(nodes.begin(), nodes.end());
-}
-
-void RequestSpace::AddContents(const Setting& setting) {
-  const Tree& tree = space_.tree();
-  const int count = setting.variable < 0 ? 1 : std::max<int>(2, static_cast<int>(tree[setting.node].values.size()));
-  for (int value = 0; value < count; ++value) {
-    const std::vector<Value> values = setting.variable < 0 ? setting.values : BorrowedValues(tree, setting, value);
-    if (ContentIndex(values) < 0) contents_.push_back(values);
-  }
 }
 
 int RequestSpace::IndexOf(NodeId node) const {
@@ -38,9 +54,10 @@ int RequestSpace::IndexOf(NodeId node) const {
   return it == nodes_.end() ? -1 : static_cast<int>(it - nodes_.begin());
 }
 
-int RequestSpace::ContentIndex(const std::vector<Value>& values) const {
-  const auto it = std::find(contents_.begin(), contents_.end(), values);
-  return it == contents_.end() ? -1 : static_cast<int>(it - contents_.begin());
+int RequestSpace::ContentIndex(const Content& content) const {
+  const auto it = std::find(contents_.begin(), contents_.end(), content);
+  if (it == contents_.end()) contents_.push_back(content);
+  return static_cast<int>(std::find(contents_.begin(), contents_.end(), content) - contents_.begin());
 }
 
 bool RequestSpace::SpreadsFrom(bool left, std::size_t node_index) const {
@@ -58,6 +75,7 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
     }
     for (std::size_t i = 0; i < rule_.changes.size(); ++i) {
       const Change& change = rule_.changes[i];
+      if (role->merges >> i & 1) request[1 + IndexOf(change.node)] |= kMergeLeft;
       if (change.target != role->label) continue;
       switch (change.op) {
         case Change::Op::kSpread:
@@ -69,6 +87,25 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
         case Change::Op::kFill:
           AskSettings(change, *role, annotated, &request);
           break;
+        case Change::Op::kSetAs:
+        case Change::Op::kFillAs:
+          AskCopy(i, *role, annotated, &request);
+          break;
+        case Change::Op::kSetLiteral:
+          AskContent(kRootNode, {change.inserted}, annotated, &request);
+          if (change.is_long && ContentUnder(space_.classes()[annotated[0]].visible.part, kRootNode) == Content{change.inserted} &&
+              !(space_.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) {
+            request[0] |= kLengthen;
+          }
+          break;
+        case Change::Op::kLengthen:
+          if (space_.Of(annotated[0], kRootNode).count > 0) request[0] |= kLengthen;
+          break;
+        case Change::Op::kShorten:
+          if (space_.Marks(annotated, kRootNode) & (kFromLeft | kToRight)) request[0] |= kShorten;
+          break;
+        case Change::Op::kMerge:
+          break;  // below: it depends on both items
         case Change::Op::kInsert:
           request[0] |= 1 << (kInsertShift + i);
           break;
@@ -114,14 +151,27 @@ void RequestSpace::AskSettings(const Change& change, const Role& role, const Key
             : BorrowedValues(space_.tree(), setting, role.values[static_cast<std::size_t>(setting.variable)] - 1);
     const int count = space_.Of(annotated[0], setting.node).count;
     if (change.op == Change::Op::kFill && count > 0) continue;
-    if (values.empty() && count == 0) continue;
-    if (count > 0 && !values.empty()) {
-      if (space_.tree()[setting.node].type == TreeNode::Type::kClass) continue;
-      if (ValuesOf(space_.classes()[annotated[0]].visible.part, setting.node) == values) continue;
-    }
-    std::int32_t& at = (*request)[1 + IndexOf(setting.node)];
-    at = Combine(at, (1 + ContentIndex(values)) << kValuesShift);
+    const bool is_class = space_.tree()[setting.node].type == TreeNode::Type::kClass;
+    if (count > 0 && !values.empty() && is_class) continue;
+    Content content;
+    for (Value value : values) content.push_back({setting.node, value, {}});
+    AskContent(setting.node, content, annotated, request);
   }
+}
+
+// The content that the source of a copy bears.
+void RequestSpace::AskCopy(std::size_t change, const Role& role, const Key& annotated, Key* request) const {
+  const Change& copy = rule_.changes[change];
+  const Content& content = pattern_.ContentOf(role.values[pattern_.VariableOf(change)]);
+  if (copy.op == Change::Op::kFillAs && (content.empty() || space_.Of(annotated[0], copy.node).count > 0)) return;
+  AskContent(copy.node, content, annotated, request);
+}
+
+// Asks for nothing if just this is there.
+void RequestSpace::AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const {
+  if (ContentUnder(space_.classes()[annotated[0]].visible.part, node) == content) return;
+  std::int32_t& at = (*request)[1 + IndexOf(node)];
+  at = Combine(at, (1 + ContentIndex(content)) << kValuesShift);
 }
 
 std::int32_t RequestSpace::Combine(std::int32_t a, std::int32_t b) {

@@ -21,24 +21,28 @@ enum RequestBit : std::int32_t {
   kLineLeft = 8,  // a line to the nearest N on the left
   kLineRight = 16,
   kClash = 32,      // two contents asked for
-  kValuesShift = 6  // from here up: 1 + index into RequestSpace::contents, or 0
+  kMergeLeft = 64,  // its first N and the nearest one on the left become one
+  kValuesShift = 7  // from here up: 1 + index into RequestSpace::contents, or 0
 };
 enum SlotBit : std::int32_t {
   kDeleteSlot = 1,
   kReaches = 2,      // an iterative change that reaches another root
   kUnsure = 4,       // an iterative change that may free a nearer target behind it (compile/find.h)
-  kInsertShift = 3,  // from here up: one bit for each change of the rule
+  kLengthen = 8,     // the root gets one slot more, behind its last one
+  kShorten = 16,     // the root loses its last slot
+  kJoined = 32,      // its new root is that of the slot on its left as well
+  kInsertShift = 6,  // from here up: one bit for each change of the rule
 };
+
 
 class RequestSpace {
  public:
-  RequestSpace(const Rule& rule, const RuleSpace& space, const std::vector<Spread>& spreads);
+  RequestSpace(const Rule& rule, const RuleSpace& space, const PatternCompiler& pattern);
 
   const std::vector<NodeId>& nodes() const { return nodes_; }
-  const std::vector<std::vector<Value>>& contents() const { return contents_; }
+  const std::vector<Content>& contents() const { return contents_; }
   std::size_t size() const { return 1 + nodes_.size(); }
   Key None() const { return Key(size(), 0); }
-  // The lists of values that set and fill of `node` put there; -1 if there is none.
   int IndexOf(NodeId node) const;
   bool SpreadsFrom(bool left, std::size_t node_index) const;
 
@@ -53,15 +57,20 @@ class RequestSpace {
   std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
   void AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const;
-  void AddContents(const Setting& setting);
-  int ContentIndex(const std::vector<Value>& values) const;
+  void AskCopy(std::size_t change, const Role& role, const Key& annotated, Key* request) const;
+  void AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const;
+  int ContentIndex(const Content& content) const;
 
   const Rule& rule_;
   const RuleSpace& space_;
+  const PatternCompiler& pattern_;
   const std::vector<Spread>& spreads_;
   std::vector<NodeId> nodes_;
-  std::vector<std::vector<Value>> contents_;
+  mutable std::vector<Content> contents_;  // grows as roles ask for more
 };
+
+// What a letter's part bears of `node`, in order.
+Content ContentUnder(const LetterPart& part, NodeId node);
 
 // What a setting whose variable has this value puts there.
 std::vector<Value> BorrowedValues(const Tree& tree, const Setting& setting, int value);

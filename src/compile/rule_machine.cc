@@ -24,7 +24,9 @@ class ApplyPass {
         builder_(requests, pool),
         at_once_(rule.mode == Rule::Mode::kAtOnce),
         deletes_(std::any_of(rule.changes.begin(), rule.changes.end(),
-                             [](const Change& c) { return c.op == Change::Op::kDelete; })),
+                             [](const Change& c) {
+                               return c.op == Change::Op::kDelete || c.op == Change::Op::kShorten;
+                             })),
         draw_(space_, deletes_ ? all_links : kept_links, rule.mode == Rule::Mode::kLeftward),
         erase_(space_, kept_links, false),
         carrier_(requests, /*rightward=*/false) {
@@ -43,7 +45,8 @@ class ApplyPass {
     draw_at_ = size_;
     erase_at_ = draw_at_ + Repair::kEntries * space_.live().size();
     objects_at_ = erase_at_ + Repair::kEntries * space_.live().size();
-    size_ = objects_at_ + space_.live().size();
+    joined_at_ = objects_at_ + space_.live().size();
+    size_ = joined_at_ + 1;
   }
 
   // With nothing to the right, all is as if an unlinked bearer stood there: memories that no change stirs stay as they are.
@@ -57,7 +60,7 @@ class ApplyPass {
     PassStep step;
     step.state = state;
     if (!space_.IsSlot(symbol[0])) {
-      step.symbol = Key{0, symbol[0], -1};
+      step.symbol = BoundaryAfter(symbol[0], symbol[space_.AnnotatedSize()] & kDeleteSlot);
       return step;
     }
     const Key letter(symbol.begin(), symbol.begin() + static_cast<std::ptrdiff_t>(space_.AnnotatedSize()));
@@ -76,6 +79,7 @@ class ApplyPass {
       }
       right = contents.data();
     }
+    if ((request[0] & kShorten) && (space_.Marks(letter, kRootNode) & kFromLeft)) request[0] |= kDeleteSlot;
     LetterBuilder::Lines lines;
     lines.left = left;
     lines.right = right;
@@ -83,6 +87,7 @@ class ApplyPass {
     lines.right_origin = rule_.mode == Rule::Mode::kLeftward ? Origin::kNewRight : Origin::kOldRight;
     BuiltLetter built = builder_.Build(letter, request, lines);
     bool ambiguous = built.clash;
+    if (step.state[joined_at_] != 0) Join(&built.slot);
 
     std::vector<std::pair<int, int>> output;  // from right to left
     Insert(request, /*before=*/false, &step.state, &output, &ambiguous);
@@ -90,7 +95,7 @@ class ApplyPass {
     Insert(request, /*before=*/true, &step.state, &output, &ambiguous);
 
     const bool changed = std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end() ||
-                         (request[0] & kDeleteSlot) || (request[0] >> kInsertShift) != 0;
+                         (request[0] & (kDeleteSlot | kLengthen)) || (request[0] >> kInsertShift) != 0;
     step.symbol.push_back((changed ? kFlagChanged : 0) | (ambiguous ? kFlagAmbiguous : 0) |
                           (request[0] & kReaches ? kFlagReaches : 0) | (request[0] & kUnsure ? kFlagUnsure : 0));
     for (std::size_t k = output.size(); k-- > 0;) {
@@ -101,6 +106,22 @@ class ApplyPass {
   }
 
  private:
+  // A boundary after the rule; a deleted one that parts words leaves their morphemes apart.
+  Key BoundaryAfter(int class_id, bool deleted) const {
+    if (!deleted) return Key{0, class_id, -1};
+    tiersmith::Letter letter = space_.classes()[class_id].visible;
+    if (letter.boundary == Boundary::kMorpheme) return Key{kFlagChanged};
+    letter.boundary = Boundary::kMorpheme;
+    return Key{kFlagChanged, space_.classes().ClassWithRestOf(class_id, letter), -1};
+  }
+
+  // The slot's new root is that of the next slot.
+  static void Join(WorkPart* slot) {
+    for (WorkPart& daughter : slot->daughters) {
+      if (daughter.node == kRootNode && daughter.origin == Origin::kFresh) daughter.origin = Origin::kFreshJoined;
+    }
+  }
+
   void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output,
               bool* ambiguous) const {
     for (std::size_t i = rule_.changes.size(); i-- > 0;) {
@@ -113,23 +134,51 @@ class ApplyPass {
       slot.origin = Origin::kOwn;
       if (!draw_.Letter(no_letter_, &slot, &(*state)[draw_at_])) *ambiguous = true;
       output->emplace_back(AfterDeletions(slot, plain[0], state), inserted_[i].rest);
+      if (rule_.changes[i].is_long) output->emplace_back(SlotBefore(slot, plain[0], state), inserted_[i].rest);
     }
   }
 
-  static void Freshen(WorkPart* part) {
-    part->origin = Origin::kFresh;
-    for (WorkPart& daughter : part->daughters) Freshen(&daughter);
+  // One more slot of the same root, on the left of one: only the root's line leads on, all others lead from the last slot.
+  int SlotBefore(WorkPart slot, int like, Key* state) const {
+    const auto drop = [](const auto& self, WorkPart* part) -> void {
+      part->links = 0;
+      for (WorkPart& daughter : part->daughters) self(self, &daughter);
+    };
+    drop(drop, &slot);
+    slot.links = 1u << LinkBit(space_.tree(), kRootNode);
+    return AfterDeletions(slot, like, state);
   }
 
   void Slot(const Key& letter, const Key& request, BuiltLetter* built, Key* state,
             std::vector<std::pair<int, int>>* output, bool* ambiguous) const {
-    if (!draw_.Letter(letter, &built->slot, &(*state)[draw_at_])) *ambiguous = true;
+    NodeSet merges;
+    for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+      if (!(request[1 + i] & kMergeLeft)) continue;
+      merges.resize(space_.tree().nodes.size(), false);
+      merges[requests_.nodes()[i]] = true;
+    }
+    if (!draw_.Letter(letter, &built->slot, &(*state)[draw_at_], merges.empty() ? nullptr : &merges)) *ambiguous = true;
+    const bool joined_right = (*state)[joined_at_] != 0;
+    (*state)[joined_at_] = request[0] & kJoined ? 1 : 0;
     if (!(request[0] & kDeleteSlot)) {
       output->emplace_back(AfterDeletions(built->slot, letter[0], state), -1);
+      const bool joined = joined_right || (request[0] & kJoined);
+      if ((request[0] & kLengthen) || (LongLiteral(request) && !joined))
+        output->emplace_back(SlotBefore(built->slot, letter[0], state), -1);
       return;
     }
     const Key between = Between(ClassWithLinks(built->slot, letter[0]), state);
     erase_.Letter(between, nullptr, &(*state)[erase_at_]);
+  }
+
+  // Is the slot given a new root that is long?
+  bool LongLiteral(const Key& request) const {
+    const int index = requests_.IndexOf(kRootNode);
+    if (index < 0 || request[1 + index] >> kValuesShift == 0) return false;
+    const Content& content = requests_.contents()[static_cast<std::size_t>(request[1 + index] >> kValuesShift) - 1];
+    return std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& change) {
+      return change.op == Change::Op::kSetLiteral && change.is_long && Content{change.inserted} == content;
+    });
   }
 
   int ClassWithLinks(const WorkPart& slot, int like) const {
@@ -142,7 +191,8 @@ class ApplyPass {
   Key Between(int class_id, Key* state) const {
     Key annotated = no_letter_;
     annotated[0] = class_id;
-    const Key objects(state->begin() + static_cast<std::ptrdiff_t>(objects_at_), state->end());
+    const Key objects(state->begin() + static_cast<std::ptrdiff_t>(objects_at_),
+                      state->begin() + static_cast<std::ptrdiff_t>(joined_at_));
     const Key marks = space_.RightMarks(objects, annotated);
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       annotated[1 + i] = marks[i];
@@ -169,7 +219,7 @@ class ApplyPass {
   Repair draw_, erase_;
   RequestCarrier carrier_;
   std::vector<std::size_t> offsets_;
-  std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0;
+  std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0, joined_at_ = 0;
   Key no_letter_;
   std::vector<LetterClasses::Parts> inserted_;
 };
@@ -215,7 +265,7 @@ RuleMachine CompileRule(const Rule& written, LetterClasses& classes, const std::
   const Rule rule = Flattened(written);
   const RuleSpace space(classes, rule, live_in);
   PatternCompiler pattern(rule, space);
-  const RequestSpace requests(rule, space, pattern.spreads());
+  const RequestSpace requests(rule, space, pattern);
   ContentPool pool;
   const std::size_t most = limits.step_states;
   const Tape annotated = space.Annotate(FormsOver(classes_in, classes, space.tree()), most);
