@@ -50,28 +50,6 @@ void CompareGrammars(std::uint64_t seed, std::uint64_t wanted, std::size_t forms
             << " refused (ambiguous, reaching another root, or no symbol for the datum); " << tally->Report();
 }
 
-// Nodes to share: the root, and a few that have to do with the rule.
-std::vector<NodeId> SharingFor(Rng& rng, const Tree& tree, const Rule& rule) {
-  std::vector<NodeId> near;
-  for (const Change& change : rule.changes) {
-    std::vector<NodeId> nodes;
-    if (change.op == Change::Op::kSpread || change.op == Change::Op::kDelink) nodes.push_back(change.node);
-    for (const Setting& setting : change.settings) nodes.push_back(setting.node);
-    for (NodeId node : nodes) {
-      for (NodeId other = kRootNode + 1; other < tree.nodes.size(); ++other) {
-        if (tree.Dominates(node, other) || tree.Dominates(other, node)) near.push_back(other);
-      }
-    }
-  }
-  const int count = static_cast<int>(tree.nodes.size());
-  for (int i = 0; i < 2; ++i) near.push_back(static_cast<NodeId>(kRootNode + 1 + Below(rng, count - kRootNode - 1)));
-  std::vector<NodeId> sharing{kRootNode};
-  for (int i = 0; i < 2; ++i) sharing.push_back(near[Below(rng, static_cast<int>(near.size()))]);
-  std::sort(sharing.begin(), sharing.end());
-  sharing.erase(std::unique(sharing.begin(), sharing.end()), sharing.end());
-  return sharing;
-}
-
 void CompareRandomRules(std::uint64_t seed, int rules, int forms_each, bool sharing, Tally* tally) {
   std::cout << "random rules: seed " << seed << "\n";
   Rng rng(seed);

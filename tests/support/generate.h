@@ -73,6 +73,51 @@ Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& 
 Rule RandomRule(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
                 const std::vector<FeatureTree>& letters, Change::Op op, Rule::Mode mode);
 
+// Nodes to share: the root, and a few that have to do with the rule.
+std::vector<NodeId> SharingFor(Rng& rng, const Tree& tree, const Rule& rule);
+
+// ---- the whole notation -----------------------------------------------------------------------------
+
+// What a rule of RandomRuleWith has beyond the first release.
+enum class Construct {
+  kAgreement,
+  kAgreeingNode,
+  kShared,
+  kLength,
+  kPart,
+  kEqual,
+  kSame,
+  kSameMorpheme,
+  kDomain,
+  kStem,
+  kTags,
+  kOtherwise,
+  kOptional,
+  kByWord,
+  kPrefer,
+  kPreserving,
+  kSharingBlocked,
+  kNewRoot,
+  kCopy,
+  kLengthen,
+  kShorten,
+  kMerge,
+  kBoundary,
+  kLongInsertion,
+  kMember
+};
+const std::vector<Construct>& AllConstructs();
+const char* NameOf(Construct construct);
+// A random rule of any shape with this construct.
+Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+                    const std::vector<FeatureTree>& letters, Construct construct);
+// Adds the construct to a rule; false where its shape has no place for it.
+bool Decorate(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, Construct construct,
+              Rule* rule);
+bool AsksForTags(const Rule& rule);
+// The form with a kind and some of two tags on each morpheme, as forms are where rules ask for tags.
+Form WithTags(Rng& rng, const Form& form);
+
 // What a rule does to a sample of forms.
 struct Effect {
   int forms = 0, changed = 0, ambiguous = 0, reaching = 0, blocked = 0;

@@ -1,0 +1,64 @@
+// Every construct of the whole segmental notation: random rules that use it, on forms with any sharing, judged with all their
+// sharing and, where rules are optional, with all outcomes and their probabilities.
+#include <catch2/catch.hpp>
+
+#include <algorithm>
+#include <iostream>
+
+#include "support/agree.h"
+#include "support/generate.h"
+#include "support/small_grammar.h"
+
+using namespace tiersmith;
+using namespace tiersmith::testing;
+
+namespace {
+
+void CompareConstruct(Construct construct, std::uint64_t seed, int rules, int forms_each, Tally* tally) {
+  Rng rng(seed + 1000 * static_cast<std::uint64_t>(construct));
+  Grammar grammar = SmallGrammar();
+  grammar.tags = {"stem", "prefix", "suffix", "clitic", "loan", "verb"};
+  const std::vector<NamedTest> tests = NamedTests(grammar);
+  const std::vector<FeatureTree> letters = LettersOf(grammar);
+  for (int i = 0; i < rules; ++i) {
+    std::vector<FeatureTree> few;
+    for (int k = 0; k < 4; ++k) few.push_back(letters[Below(rng, static_cast<int>(letters.size()))]);
+    const Rule rule = RandomRuleWith(rng, grammar, tests, few, construct);
+    FormOptions options;
+    options.max_items = 6;
+    options.again = 0.45;
+    options.sharing = SharingFor(rng, grammar.tree, rule);
+    if (construct == Construct::kDomain || construct == Construct::kStem || construct == Construct::kTags ||
+        construct == Construct::kSameMorpheme || construct == Construct::kBoundary) {
+      options.boundary = 0.3;
+    }
+    std::vector<Form> forms;
+    for (int k = 0; k < forms_each; ++k) {
+      const Form form = RandomForm(rng, grammar, few, options);
+      forms.push_back(Canonical(AsksForTags(rule) ? WithTags(rng, form) : form));
+    }
+    grammar.rules = {rule};
+    const std::optional<std::string> failure = CompareRule(grammar, forms, 5, tally);
+    if (failure.has_value()) FAIL(NameOf(construct) << ", rule " << i << " of seed " << seed << ": " << *failure);
+  }
+}
+
+}  // namespace
+
+TEST_CASE("random rules with each construct of the notation", "[agreement]") {
+  const std::uint64_t seed = SeedOr(20261208);
+  std::cout << "constructs: seed " << seed << "\n";
+  const char* only = std::getenv("TIERSMITH_CONSTRUCT");
+  Tally all;
+  for (Construct construct : AllConstructs()) {
+    if (only != nullptr && std::string(NameOf(construct)).find(only) == std::string::npos) continue;
+    Tally tally;
+    CompareConstruct(construct, seed, 120, 120, &tally);
+    std::cout << NameOf(construct) << ": " << tally.rules << " rules, " << tally.pairs << " pairs, "
+              << tally.changed << " changed, " << tally.ambiguous + tally.reaching << " refused by both, "
+              << tally.over_budget << " over budget, " << tally.too_many << " with too many outcomes, "
+              << tally.unsure << " not compilable, sums within " << tally.worst_sum << "\n";
+    CHECK(tally.changed >= 500);
+    CHECK(tally.worst_sum < 1e-6);
+  }
+}

@@ -1,0 +1,398 @@
+// Random rules with one construct of the whole notation each (generate.h): what agrees, conditions, sharing, domains, tags,
+// further clauses, optional rules, the further changes.
+#include <algorithm>
+
+#include "support/generate.h"
+#include "support/small_grammar.h"
+
+namespace tiersmith::testing {
+namespace {
+
+using Op = Change::Op;
+using Kind = PatternItem::Kind;
+
+class Decorator {
+ public:
+  Decorator(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, Rule* rule)
+      : rng_(rng), grammar_(grammar), tree_(grammar.tree), letters_(letters), rule_(rule) {}
+
+  bool Add(Construct construct) {
+    switch (construct) {
+      case Construct::kAgreement:
+        return Agreement();
+      case Construct::kAgreeingNode:
+        return AgreeingNode();
+      case Construct::kShared:
+        return AddTest(Random({FeatureTest::Kind::kShared, FeatureTest::Kind::kShared, FeatureTest::Kind::kUnshared}));
+      case Construct::kLength:
+        return AddTest(Random({FeatureTest::Kind::kLong, FeatureTest::Kind::kShort, FeatureTest::Kind::kHalfFirst,
+                               FeatureTest::Kind::kHalfSecond}));
+      case Construct::kPart:
+        return Part();
+      case Construct::kEqual:
+        return Compare(Random({Condition::Test::kEqual, Condition::Test::kUnequal}));
+      case Construct::kSame:
+        return Compare(Random({Condition::Test::kSame, Condition::Test::kNotSame}));
+      case Construct::kSameMorpheme:
+        return SameMorpheme();
+      case Construct::kDomain:
+        rule_->within = Random({Domain::kMorpheme, Domain::kHost, Domain::kPhrase});
+        return true;
+      case Construct::kStem:
+        rule_->within = Domain::kStem;
+        return true;
+      case Construct::kTags:
+        return Tags();
+      case Construct::kOtherwise:
+        return true;  // Otherwise adds the clause
+      case Construct::kOptional:
+        rule_->probability = Random({0.3, 0.5, 0.75});
+        return true;
+      case Construct::kByWord:
+        rule_->probability = Random({0.3, 0.5, 0.75});
+        rule_->by_word = true;
+        return true;
+      case Construct::kPrefer:
+        rule_->prefer = Random({Rule::Prefer::kLeft, Rule::Prefer::kRight});
+        return true;
+      case Construct::kPreserving:
+        rule_->preserving = true;
+        return true;
+      case Construct::kSharingBlocked:
+        rule_->sharing_blocked = true;
+        return true;
+      case Construct::kNewRoot:
+        return NewRoot();
+      case Construct::kCopy:
+        return Copy();
+      case Construct::kLengthen:
+        return Only(Op::kLengthen);
+      case Construct::kShorten:
+        return Only(Op::kShorten);
+      case Construct::kMerge:
+        return Merge();
+      case Construct::kBoundary:
+        return DeleteBoundary();
+      case Construct::kLongInsertion:
+        return Only(Op::kInsert);
+      case Construct::kMember:
+        return Member();
+    }
+    return false;
+  }
+
+ private:
+  template <class T>
+  T Random(std::initializer_list<T> list) {
+    return list.begin()[Below(rng_, static_cast<int>(list.size()))];
+  }
+  NodeId Node() { return static_cast<NodeId>(kRootNode + 1 + Below(rng_, static_cast<int>(tree_.nodes.size()) - 2)); }
+
+  std::vector<PatternItem*> Slots() {
+    std::vector<PatternItem*> slots;
+    for (PatternItem& item : rule_->where.items) {
+      if (item.kind == Kind::kSlot && item.test.op != SlotTest::Op::kEmpty) slots.push_back(&item);
+    }
+    return slots;
+  }
+  static void Require(PatternItem* item, FeatureTest test) {
+    if (item->test.op != SlotTest::Op::kBundle) item->test = SlotTest();
+    item->test.op = SlotTest::Op::kBundle;
+    item->test.bundle.push_back(test);
+  }
+
+  bool AddTest(FeatureTest::Kind kind) {
+    std::vector<PatternItem*> slots = Slots();
+    if (slots.empty()) return false;
+    FeatureTest test;
+    test.kind = kind;
+    test.node = kind == FeatureTest::Kind::kShared || kind == FeatureTest::Kind::kUnshared ? Node() : kRootNode;
+    test.side = Random({FeatureTest::Side::kEither, FeatureTest::Side::kLeft, FeatureTest::Side::kRight});
+    if (test.node == kRootNode) test.side = FeatureTest::Side::kEither;
+    Require(slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))], test);
+    return true;
+  }
+
+  bool Agreement() {
+    std::vector<PatternItem*> slots = Slots();
+    if (slots.size() < 2) return false;
+    NodeId node = Node();
+    while (tree_[node].type == TreeNode::Type::kClass) node = Node();
+    const bool binary = tree_[node].type == TreeNode::Type::kBinary;
+    std::shuffle(slots.begin(), slots.end(), rng_);
+    rule_->variables = 1;
+    const std::size_t tests = Chance(rng_, 0.5) ? 2 : 1;
+    for (std::size_t i = 0; i < tests; ++i) {
+      FeatureTest test;
+      test.kind = binary && Chance(rng_, 0.3) ? FeatureTest::Kind::kDiffers : FeatureTest::Kind::kAgrees;
+      test.node = node;
+      test.variable = 0;
+      Require(slots[i], test);
+    }
+    if (tests == 2 && Chance(rng_, 0.5)) return true;
+    Change change;
+    change.op = Random({Op::kSet, Op::kFill});
+    change.target = slots[1]->label;
+    if (change.target < 0) return tests == 2;
+    Setting setting{node, {}, 0, binary && Chance(rng_, 0.3)};
+    change.settings = {setting};
+    rule_->changes = {change};
+    return true;
+  }
+
+  bool AgreeingNode() {
+    std::vector<PatternItem*> slots = Slots();
+    if (slots.size() < 2) return false;
+    NodeId node = Node();
+    while (tree_[node].type != TreeNode::Type::kClass) node = Node();
+    rule_->variables = 1;
+    std::shuffle(slots.begin(), slots.end(), rng_);
+    for (std::size_t i = 0; i < 2; ++i) {
+      FeatureTest test;
+      test.kind = FeatureTest::Kind::kAgrees;
+      test.node = node;
+      test.variable = 0;
+      Require(slots[i], test);
+    }
+    return true;
+  }
+
+  bool Part() {
+    std::vector<PatternItem*> slots = Slots();
+    if (slots.empty()) return false;
+    FeatureTest test;
+    test.kind = Random({FeatureTest::Kind::kHasValue, FeatureTest::Kind::kLacksValue});
+    test.node = NodeOf(grammar_, "cont");
+    test.value = static_cast<Value>(Below(rng_, 2));
+    test.part = Random({FeatureTest::Part::kFirst, FeatureTest::Part::kLast});
+    Require(slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))], test);
+    return true;
+  }
+
+  bool TwoLabels(int* a, int* b) {
+    std::vector<int> labels;
+    for (PatternItem* slot : Slots()) {
+      if (slot->label >= 0) labels.push_back(slot->label);
+    }
+    if (labels.size() < 2) return false;
+    std::shuffle(labels.begin(), labels.end(), rng_);
+    *a = labels[0];
+    *b = labels[1];
+    return true;
+  }
+
+  bool Compare(Condition::Test kind) {
+    Condition condition;
+    condition.test = kind;
+    if (!TwoLabels(&condition.left, &condition.right)) return false;
+    condition.node = Chance(rng_, 0.2) ? kRootNode : Node();
+    rule_->conditions.push_back(condition);
+    return true;
+  }
+
+  bool SameMorpheme() {
+    std::vector<PatternItem>& items = rule_->where.items;
+    for (std::size_t i = 1; i < items.size(); ++i) {
+      if (items[i - 1].kind != Kind::kSlot || items[i].kind != Kind::kSlot) continue;
+      PatternItem same;
+      same.kind = Kind::kSameMorpheme;
+      items.insert(items.begin() + static_cast<std::ptrdiff_t>(i), same);
+      return true;
+    }
+    return false;
+  }
+
+  bool Tags() {
+    const int tests = Chance(rng_, 0.3) ? 2 : 1;
+    for (int i = 0; i < tests; ++i) {
+      TagTest test;
+      test.only = Chance(rng_, 0.5);
+      test.scope = Random({TagTest::Scope::kChanged, TagTest::Scope::kLabel, TagTest::Scope::kWord});
+      test.label = test.scope == TagTest::Scope::kLabel ? Below(rng_, static_cast<int>(rule_->labels.size())) : -1;
+      test.tag = Below(rng_, 6);
+      rule_->tags.push_back(test);
+    }
+    return true;
+  }
+
+  bool Only(Op op) {
+    Change change;
+    change.op = op;
+    change.target = Below(rng_, static_cast<int>(rule_->labels.size()));
+    change.before = Chance(rng_, 0.5);
+    if (op == Op::kInsert) {
+      change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
+      change.is_long = true;
+    } else {
+      rule_->mode = Rule::Mode::kAtOnce;
+    }
+    rule_->changes = {change};
+    return true;
+  }
+
+  bool NewRoot() {
+    Only(Op::kSetLiteral);
+    Change& change = rule_->changes.front();
+    change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
+    change.is_long = Chance(rng_, 0.25);
+    return true;
+  }
+
+  bool Copy() {
+    Change change;
+    change.op = Random({Op::kSetAs, Op::kFillAs});
+    if (!TwoLabels(&change.source, &change.target)) return false;
+    change.node = Chance(rng_, 0.2) ? kRootNode : Node();
+    rule_->changes = {change};
+    rule_->mode = Rule::Mode::kAtOnce;
+    return true;
+  }
+
+  bool Merge() {
+    Change change;
+    change.op = Op::kMerge;
+    if (!TwoLabels(&change.source, &change.target)) return false;
+    change.node = Chance(rng_, 0.2) ? kRootNode : Node();
+    rule_->changes = {change};
+    rule_->mode = Rule::Mode::kAtOnce;
+    return true;
+  }
+
+  bool DeleteBoundary() {
+    std::vector<PatternItem>& items = rule_->where.items;
+    for (std::size_t i = 1; i < items.size(); ++i) {
+      if (items[i - 1].kind != Kind::kSlot || items[i].kind != Kind::kSlot) continue;
+      PatternItem boundary;
+      boundary.kind = Kind::kBoundary;
+      boundary.boundary = Random({Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kClitic, Boundary::kWord});
+      boundary.label = static_cast<int>(rule_->labels.size());
+      items.insert(items.begin() + static_cast<std::ptrdiff_t>(i), boundary);
+      rule_->label_kinds.resize(rule_->labels.size(), Clause::LabelKind::kSlot);
+      rule_->labels.push_back("B");
+      rule_->label_kinds.push_back(Clause::LabelKind::kBoundary);
+      Change change;
+      change.op = Op::kDelete;
+      change.target = boundary.label;
+      rule_->changes = {change};
+      rule_->mode = Rule::Mode::kAtOnce;
+      rule_->within = Domain::kPhrase;
+      return true;
+    }
+    return false;
+  }
+
+  bool Member() {
+    Change change;
+    change.op = Op::kDelink;
+    change.target = Below(rng_, static_cast<int>(rule_->labels.size()));
+    change.node = NodeOf(grammar_, "cont");
+    change.member.which =
+        Random({tiersmith::Member::Which::kFirst, tiersmith::Member::Which::kLast, tiersmith::Member::Which::kValue});
+    change.member.value = static_cast<Value>(Below(rng_, 2));
+    rule_->changes = {change};
+    return true;
+  }
+
+  Rng& rng_;
+  const Grammar& grammar_;
+  const Tree& tree_;
+  const std::vector<FeatureTree>& letters_;
+  Rule* rule_;
+};
+
+}  // namespace
+
+const std::vector<Construct>& AllConstructs() {
+  static const std::vector<Construct> all = {
+      Construct::kAgreement,    Construct::kAgreeingNode,   Construct::kShared,       Construct::kLength,
+      Construct::kPart,         Construct::kEqual,          Construct::kSame,         Construct::kSameMorpheme,
+      Construct::kDomain,       Construct::kStem,           Construct::kTags,         Construct::kOtherwise,
+      Construct::kOptional,     Construct::kByWord,         Construct::kPrefer,       Construct::kPreserving,
+      Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,         Construct::kLengthen,
+      Construct::kShorten,      Construct::kMerge,          Construct::kBoundary,     Construct::kLongInsertion,
+      Construct::kMember};
+  return all;
+}
+
+const char* NameOf(Construct construct) {
+  static const char* const names[] = {
+      "agreement (αf)",  "agreement (αNode)", "shared, unshared", "long, short, half", "facing parts",  "if = ≠",
+      "if is, is not",   "&",                 "within",           "within stem",       "only, except",  "otherwise",
+      "optional",        "optional by word",  "prefer",           "preserving",        "sharing blocked", "set /k/",
+      "set, fill .. as", "lengthen",          "shorten",          "merge",             "delete boundary", "insert long",
+      "delink a member"};
+  return names[static_cast<int>(construct)];
+}
+
+std::vector<NodeId> SharingFor(Rng& rng, const Tree& tree, const Rule& rule) {
+  std::vector<NodeId> near;
+  for (const Condition& condition : rule.conditions) near.push_back(condition.node);
+  const auto note = [&](const auto& self, const Pattern& pattern) -> void {
+    for (const PatternItem& item : pattern.items) {
+      for (const FeatureTest& test : item.test.bundle) {
+        if (test.kind == FeatureTest::Kind::kShared || test.kind == FeatureTest::Kind::kUnshared) near.push_back(test.node);
+      }
+      for (const Pattern& alternative : item.alternatives) self(self, alternative);
+    }
+  };
+  note(note, rule.where);
+  for (const Change& change : rule.changes) {
+    std::vector<NodeId> nodes;
+    if (change.node > kRootNode) nodes.push_back(change.node);
+    for (const Setting& setting : change.settings) nodes.push_back(setting.node);
+    for (NodeId node : nodes) {
+      for (NodeId other = kRootNode + 1; other < tree.nodes.size(); ++other) {
+        if (tree.Dominates(node, other) || tree.Dominates(other, node)) near.push_back(other);
+      }
+    }
+  }
+  const int count = static_cast<int>(tree.nodes.size());
+  for (int i = 0; i < 2; ++i) near.push_back(static_cast<NodeId>(kRootNode + 1 + Below(rng, count - kRootNode - 1)));
+  std::vector<NodeId> sharing{kRootNode};
+  for (int i = 0; i < 2; ++i) sharing.push_back(near[Below(rng, static_cast<int>(near.size()))]);
+  std::sort(sharing.begin(), sharing.end());
+  sharing.erase(std::unique(sharing.begin(), sharing.end()), sharing.end());
+  return sharing;
+}
+
+bool AsksForTags(const Rule& rule) {
+  const auto asks = [](const Clause& clause) { return !clause.tags.empty(); };
+  return rule.within == Domain::kStem || asks(rule) || std::any_of(rule.otherwise.begin(), rule.otherwise.end(), asks);
+}
+
+Form WithTags(Rng& rng, const Form& form) {
+  Form tagged = form;
+  tagged.items.insert(tagged.items.begin(), {FormItem::Kind::kBoundary, Boundary::kPhrase, 0, 0});
+  for (FormItem& item : tagged.items) {
+    if (item.kind != FormItem::Kind::kBoundary) continue;
+    item.tags = std::uint64_t{1} << Below(rng, 4);  // a kind
+    for (int tag = 4; tag < 6; ++tag) {
+      if (Chance(rng, 0.4)) item.tags |= std::uint64_t{1} << tag;
+    }
+  }
+  return tagged;
+}
+
+bool Decorate(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, Construct construct,
+              Rule* rule) {
+  return Decorator(rng, grammar, letters, rule).Add(construct);
+}
+
+Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+                    const std::vector<FeatureTree>& letters, Construct construct) {
+  for (;;) {
+    Rule rule = RandomRule(rng, grammar, tests, letters);
+    if (!Decorate(rng, grammar, letters, construct, &rule)) continue;
+    if (construct == Construct::kOtherwise) {
+      const int further = Chance(rng, 0.3) ? 2 : 1;
+      for (int i = 0; i < further; ++i) {
+        Rule other = RandomRule(rng, grammar, tests, letters);
+        rule.otherwise.push_back(other);
+      }
+    }
+    NoteEmpty(&rule.where);
+    if (!Refused(grammar.tree, rule)) return rule;
+  }
+}
+
+}  // namespace tiersmith::testing
