@@ -127,9 +127,10 @@ class Fields {
     --depth_;
   }
   void One(Of<Letter>& letter) {
-    auto& [kind, boundary, part] = letter;
+    auto& [kind, boundary, tags, part] = letter;
     file_.Number(kind);
     file_.Number(boundary);
+    file_.Long(tags);
     One(part);
   }
   void One(Of<ClassLetter>& letter) {
@@ -209,7 +210,7 @@ class Soundness {
     }
     const auto sound = [&](const TapeArc& arc) {
       return Class(arc.in) && Below(arc.out, static_cast<std::size_t>(tape.symbols.size())) &&
-             Below(arc.next, states) && arc.weight >= 0 && std::isfinite(arc.weight);  // of a probability
+             Below(arc.next, states) && std::isfinite(arc.weight);
     };
     return std::all_of(tape.arcs.begin(), tape.arcs.end(),
                        [&](const auto& arcs) { return std::all_of(arcs.begin(), arcs.end(), sound); });
