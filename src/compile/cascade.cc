@@ -8,7 +8,9 @@
 #include <set>
 
 #include "compile/cascade_data.h"
+#include "compile/choose.h"
 #include "compile/compose.h"
+#include "compile/flatten.h"
 #include "compile/plan.h"
 #include "compile/rule_machine.h"
 #include "graph/interpreter.h"
@@ -200,6 +202,14 @@ class CascadeCompiler {
 
   bool AddRule(int index) {
     const Rule& rule = grammar_.rules[index];
+    if (rule.probability < 1 && !DrawsLocally(rule)) {
+      diagnostics_.Error(Kind::kNotSupportedYet, rule.span,
+                         fmt::format("rule \"{}\" is optional at each site and changes several items of a match at once: "
+                                     "this is not supported by this release",
+                                     rule.name),
+                         "draw `by word`, or let one rule mark what a second one changes");
+      return false;
+    }
     const std::vector<int> classes_in = ClassesWritten(current_);
     const std::vector<NodeId> live = LinksIn(classes_in, rule, plan_.live[index]);
     RuleMachine machine = CompileRule(rule, *data_->classes, classes_in, live, plan_.live[index + 1], limits_);
@@ -254,8 +264,10 @@ class CascadeCompiler {
       for (const LetterPart& daughter : part.daughters) self(self, daughter);
     };
     for (int c : classes) note(note, (*data_->classes)[c].visible.part);
-    for (const Change& change : rule.changes) {
-      if (change.op == Change::Op::kSpread) linked[change.node] = true;
+    for (const Clause* clause : ClausesOf(rule)) {
+      for (const Change& change : clause->changes) {
+        if (change.op == Change::Op::kSpread || change.op == Change::Op::kMerge) linked[change.node] = true;
+      }
     }
     for (NodeId node = static_cast<NodeId>(linked.size()); node-- > kRootNode;) {  // mothers have smaller numbers
       if (linked[node]) linked[grammar_.tree[node].mother] = true;

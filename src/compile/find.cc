@@ -223,6 +223,7 @@ constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
 
 // What a draw said.
 constexpr std::int32_t kDrawnApply = 1, kDrawnLeave = 2;
+constexpr std::int32_t kDrawnBefore = 4;  // in the word before, where the root we are in begins
 
 void DropLinks(WorkPart* part) {
   part->links = 0;
@@ -320,7 +321,7 @@ class Sweep {
       const int profile = Known(input);
       if (state.visit >= 0) state.visit = StepOn(state.visit, profile);
       state.near = StepOn(state.near, profile);
-      if (EndsDraw(input[0])) state.drawn = 0;
+      if (EndsDraw(input[0])) state.drawn = state.visit < 0 ? 0 : state.drawn | kDrawnBefore;
       return {{state.Pack(), Written(input, requests_.None(), Key(nodes(), 0), Key(nodes(), -1).data())}};
     }
     const bool first = state.visit < 0;
@@ -334,13 +335,14 @@ class Sweep {
     const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
     if (!asked || requests_.rule().probability >= 1) return {Went(std::move(state), symbol, at_visit, request)};
     std::vector<PassStep> steps;
+    const std::int32_t known = state.drawn & (kDrawnApply | kDrawnLeave);
     for (std::int32_t drawn : {kDrawnApply, kDrawnLeave}) {
-      if (state.drawn != 0 && state.drawn != drawn) continue;
+      if (known != 0 && known != drawn) continue;
       SweepState after = state;
-      after.drawn = drawn;
+      after.drawn = drawn | (state.drawn & kDrawnBefore);
       if (drawn == kDrawnLeave) after.requests.assign(nodes(), 0);
       steps.push_back(Went(std::move(after), symbol, at_visit, drawn == kDrawnLeave ? requests_.None() : request));
-      if (state.drawn == 0) steps.back().weight = drawn == kDrawnApply ? draw_.apply : draw_.leave;
+      if (known == 0) steps.back().weight = drawn == kDrawnApply ? draw_.apply : draw_.leave;
     }
     return steps;
   }
@@ -446,7 +448,7 @@ class Sweep {
       return;
     }
     state->visit = -1;
-    if (!requests_.rule().by_word) state->drawn = 0;
+    if (!requests_.rule().by_word || (state->drawn & kDrawnBefore)) state->drawn = 0;
     state->requests.assign(nodes(), 0);
     state->behind_visit.assign(space_.live().size(), 0);
     state->visit_contents.assign(nodes(), 0);

@@ -1081,7 +1081,8 @@ struct PatternCompiler::Impl::Builder {
     const bool through = visible && instruction.op == Instruction::Op::kGap && letter[impl.GapField(instruction.gap)];
     const bool before_first = config[kPhase] == 0 && config[kNeed] == 0;
     if (!before_first && (!visible || through)) {
-      for (const Key& next : Walk(config, letter)) Add(at, profile, -1, -1, next);
+      std::int32_t merging = 0;
+      for (const Key& next : Walk(config, letter, &merging)) Add(at, profile, -1, MergingRole(merging), next);
     }
     if (!visible) return;
     if (instruction.op == Instruction::Op::kSlot) {
@@ -1091,6 +1092,15 @@ struct PatternCompiler::Impl::Builder {
         if (need == 0 && program.code[pc].op == Instruction::Op::kSlot) Consume(at, config, profile, letter, pc);
       }
     }
+  }
+
+  // The role of a slot that is no changed item, but the first holder of what is merged.
+  int MergingRole(std::int32_t merging) const {
+    if (merging == 0) return -1;
+    Key role(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
+    role[0] = -1;
+    role.back() = merging;
+    return roles->Intern(role);
   }
 
   // The role of a boundary that is deleted.
@@ -1138,10 +1148,10 @@ struct PatternCompiler::Impl::Builder {
   }
 
   // All zones after a letter that stands between (or outside) the ends of the spreads.
-  std::vector<Key> Walk(const Key& config, const Key& letter) const {
+  std::vector<Key> Walk(const Key& config, const Key& letter, std::int32_t* merging) const {
     std::vector<Key> result{config};
     PassConditions(letter, &result[0]);
-    if (!PassMerges(letter, -1, &result[0])) return {};
+    if (!PassMerges(letter, -1, &result[0], merging)) return {};
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       const std::int32_t zone = config[kZones + j];
       if (zone == kBefore || zone == kDone) continue;
@@ -1166,8 +1176,9 @@ struct PatternCompiler::Impl::Builder {
     }
   }
 
-  // Merges under way: the left item's N must be the last one until the right item is met. False: it is not.
-  bool PassMerges(const Key& letter, int label, Key* config) const {
+  // Merges under way: nothing but the left item's N may stand before the right item's, whose first holder is told that it
+  // merges. False: it does not.
+  bool PassMerges(const Key& letter, int label, Key* config, std::int32_t* merging) const {
     for (std::size_t i = 0; i < MergeCount(); ++i) {
       const Merge& merge = impl.merges[i];
       if (!Merges(*config, i)) continue;
@@ -1176,10 +1187,23 @@ struct PatternCompiler::Impl::Builder {
       if (label == merge.left) {
         state = answers[kLastContent];
         if (state == 0) return false;
-      } else if (label == merge.right) {
-        if (state != answers[kFirstContent] || answers[kFirstIsHeldLeft]) return false;
+        continue;
+      }
+      if (state == 0) continue;  // before the left item, or behind the right one
+      const bool bears = answers[kFirstContent] != 0;
+      if (state > 0 && bears && !answers[kFirstIsHeldLeft]) {  // another one: it must be the right item's
+        if (answers[kFirstContent] != state) return false;
+        *merging |= 1 << merge.change;
+        state = -state;
+      } else if (state < 0 && bears && !answers[kFirstIsHeldLeft]) {
+        return false;
+      }
+      if (label == merge.right) {
+        if (state > 0 || !bears) return false;  // one with the left item's, or none
         state = 0;
-      } else if (state != 0 && !answers[kGoesOn]) {
+      } else if (bears && answers[kFirstContent] != answers[kLastContent]) {
+        return false;  // one more behind it
+      } else if (bears && !answers[kGoesOn] && state > 0) {
         return false;
       }
     }
@@ -1299,12 +1323,10 @@ struct PatternCompiler::Impl::Builder {
     if (label >= 0 && impl.changed[label]) {
       role.assign(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
       role[0] = label;
-      for (std::size_t i = 0; i < MergeCount(); ++i) {
-        if (Merges(config, i) && impl.merges[i].right == label)
-          role.back() |= 1 << impl.merges[i].change;
-      }
     }
-    if (!MeetConditions(letter, label, &start) || !PassMerges(letter, label, &start)) return;
+    std::int32_t merging = 0;
+    if (!MeetConditions(letter, label, &start) || !PassMerges(letter, label, &start, &merging)) return;
+    if (!role.empty()) role.back() |= merging;
     ways.emplace_back(std::move(start), role);
     MeetVariables(letter, slot.test, label, &ways);
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
@@ -1315,7 +1337,7 @@ struct PatternCompiler::Impl::Builder {
     for (const auto& [key, asks] : ways) {
       std::vector<Key> after;
       After(key, slot.next, /*first=*/false, &after);
-      const int role_id = asks.empty() ? -1 : roles->Intern(asks);
+      const int role_id = asks.empty() ? MergingRole(merging) : roles->Intern(asks);
       for (const Key& next : after) Add(at, profile, slot.mark, role_id, next);
     }
   }
@@ -1456,7 +1478,8 @@ Subsets ForestalledBan(const MarkedMachine& earlier, const std::vector<char>& ch
     const bool changes = mark >= 0 && mark < static_cast<int>(changed.size()) && changed[static_cast<std::size_t>(mark)];
     for (const MarkedArc& arc : earlier.arcs[state / 2]) {
       if (arc.profile != profile) continue;
-      next->push_back(2 * arc.next + (state % 2 == 1 || (changes && arc.role >= 0) ? 1 : 0));
+      const bool theirs = arc.mark >= 0 && arc.role >= 0;  // a role without a label changes no item
+      next->push_back(2 * arc.next + (state % 2 == 1 || (changes && theirs) ? 1 : 0));
     }
   });
 }

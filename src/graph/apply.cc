@@ -180,7 +180,7 @@ class Run {
       }
       if (here.empty()) continue;
       const Indices standing = Standing(*view, *matches, here, branch);
-      if (rule_.probability < 1 && !Drawn(*view, *matches, standing, branch)) continue;
+      if (rule_.probability < 1 && !Drawn(*view, *matches, standing, visit, branch)) continue;
       if (Carry(*view, *matches, standing, &visit, branch)) {
         matches.reset();
         view.reset();
@@ -189,13 +189,13 @@ class Run {
   }
 
   // Does the rule apply at this visit? If that is to be drawn, it does, and another branch goes on where it does not.
-  bool Drawn(const View& view, const Matches& matches, const Indices& standing, Branch* branch) {
+  bool Drawn(const View& view, const Matches& matches, const Indices& standing, const Visit& visit, Branch* branch) {
     Requests requests(view);
     for (std::size_t i : standing) requests.Add(matches[i]);
     if (!requests.Changes()) return false;
     int word = 0;
     if (rule_.by_word) {
-      word = WordOf(view, matches[standing.front()].labels[VisitedLabel(*matches[standing.front()].clause)]);
+      word = WordOf(view, FirstMet(view, visit));
       for (const auto& [known, applies] : branch->words) {
         if (known == word) return applies;
       }
@@ -208,6 +208,16 @@ class Run {
     open_.push_back(std::move(other));
     if (open_.size() + results_.results.size() >= Limits().outcomes) SayTooMany();
     return true;
+  }
+
+  // The slot of a visit that the sweep meets first.
+  int FirstMet(const View& view, const Visit& visit) const {
+    int met = -1;
+    for (int slot = 0; slot < view.size(); ++slot) {
+      const bool here = visit.root == kNone ? view.slot(slot) == visit.slot : view.root(slot) == visit.root;
+      if (here && (met < 0 || rule_.mode == Rule::Mode::kLeftward)) met = slot;
+    }
+    return met;
   }
 
   // The one label that an iterative rule changes.

@@ -218,7 +218,11 @@ void Graph::SetList(InstanceId mother, NodeId node, const IdList& list) {
   daughters.insert(place, list.begin(), list.end());
 }
 
+// Of equal content: what hangs under them is one, pair by pair.
 void Graph::Merge(InstanceId kept, InstanceId gone) {
+  if (kept == gone) return;
+  const IdList under_kept = nodes[kept].daughters, under_gone = nodes[gone].daughters;
+  for (std::size_t i = 0; i < under_gone.size(); ++i) Merge(under_kept[i], under_gone[i]);
   for (Node& node : nodes) {
     std::replace(node.daughters.begin(), node.daughters.end(), gone, kept);
     node.daughters.erase(std::unique(node.daughters.begin(), node.daughters.end()), node.daughters.end());

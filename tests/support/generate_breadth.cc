@@ -46,6 +46,9 @@ class Decorator {
       case Construct::kOtherwise:
         return true;  // Otherwise adds the clause
       case Construct::kOptional:
+        for (const Change& change : rule_->changes) {
+          if (rule_->mode == Rule::Mode::kAtOnce && change.target != rule_->changes.front().target) return false;
+        }
         rule_->probability = Random({0.3, 0.5, 0.75});
         return true;
       case Construct::kByWord:

@@ -12,16 +12,45 @@ std::string Joined(const std::vector<std::string>& parts, const std::string& bet
   return text;
 }
 
+std::string VariableText(int variable) { return std::vector<std::string>{"α", "β", "γ", "δ"}[variable % 4]; }
+
+std::string SideText(FeatureTest::Side side) {
+  if (side == FeatureTest::Side::kEither) return "";
+  return side == FeatureTest::Side::kLeft ? " leftward" : " rightward";
+}
+
+std::string PartText(FeatureTest::Part part) {
+  if (part == FeatureTest::Part::kAny) return "";
+  return part == FeatureTest::Part::kFirst ? "begins " : "ends ";
+}
+
 std::string Feature(const Tree& tree, const FeatureTest& test) {
+  const std::string& name = tree[test.node].name;
   switch (test.kind) {
     case FeatureTest::Kind::kBears:
-      return tree[test.node].name;
+      return name;
     case FeatureTest::Kind::kLacks:
-      return "no " + tree[test.node].name;
+      return "no " + name;
     case FeatureTest::Kind::kHasValue:
-      return tree.ValueName(test.node, test.value);
+      return PartText(test.part) + tree.ValueName(test.node, test.value);
     case FeatureTest::Kind::kLacksValue:
-      return "no " + tree.ValueName(test.node, test.value);
+      return "no " + PartText(test.part) + tree.ValueName(test.node, test.value);
+    case FeatureTest::Kind::kAgrees:
+      return PartText(test.part) + VariableText(test.variable) + name;
+    case FeatureTest::Kind::kDiffers:
+      return PartText(test.part) + "-" + VariableText(test.variable) + name;
+    case FeatureTest::Kind::kShared:
+      return "shared " + name + SideText(test.side);
+    case FeatureTest::Kind::kUnshared:
+      return "unshared " + name + SideText(test.side);
+    case FeatureTest::Kind::kLong:
+      return "long";
+    case FeatureTest::Kind::kShort:
+      return "short";
+    case FeatureTest::Kind::kHalfFirst:
+      return "half first";
+    case FeatureTest::Kind::kHalfSecond:
+      return "half second";
   }
   return "";
 }
@@ -29,10 +58,31 @@ std::string Feature(const Tree& tree, const FeatureTest& test) {
 std::string SettingsText(const Tree& tree, const std::vector<Setting>& settings) {
   std::vector<std::string> parts;
   for (const Setting& setting : settings) {
-    if (setting.values.empty()) parts.push_back("no " + tree[setting.node].name);
+    const std::string& name = tree[setting.node].name;
+    if (setting.variable >= 0) {
+      parts.push_back((setting.differs ? "-" : "") + VariableText(setting.variable) + name);
+    } else if (setting.values.empty()) {
+      parts.push_back("no " + name);
+    }
     for (Value value : setting.values) parts.push_back(tree.ValueName(setting.node, value));
   }
   return "[" + Joined(parts, ", ") + "]";
+}
+
+std::string DomainText(Domain domain) {
+  switch (domain) {
+    case Domain::kMorpheme:
+      return "morpheme";
+    case Domain::kStem:
+      return "stem";
+    case Domain::kHost:
+      return "host";
+    case Domain::kWord:
+      return "word";
+    case Domain::kPhrase:
+      return "phrase";
+  }
+  return "";
 }
 
 // Everything a root bears and lacks: nothing is left to what a library says of the symbol.
@@ -68,12 +118,17 @@ const Symbol* SymbolOf(const Grammar& grammar, const FeatureTree& root) {
 
 class RulePrinter {
  public:
-  RulePrinter(const Grammar& grammar, const Rule& rule) : grammar_(grammar), tree_(grammar.tree), rule_(rule) {}
+  RulePrinter(const Grammar& grammar, const Rule& rule)
+      : grammar_(grammar), tree_(grammar.tree), rule_(rule), clause_(&rule) {}
 
   std::string Run() {
-    std::string text = "rule \"" + rule_.name + "\" { where " + PatternText(rule_.where, false);
-    for (const Pattern& pattern : rule_.unless) text += "  unless " + PatternText(pattern, true);
-    for (const Change& change : rule_.changes) text += "  " + ChangeText(change);
+    std::string text = "rule \"" + rule_.name + "\" {";
+    if (rule_.within != Domain::kWord) text += " within " + DomainText(rule_.within);
+    text += ClauseText();
+    for (const Clause& clause : rule_.otherwise) {
+      clause_ = &clause;
+      text += "  otherwise" + ClauseText();
+    }
     switch (rule_.mode) {
       case Rule::Mode::kAtOnce:
         break;
@@ -84,10 +139,49 @@ class RulePrinter {
         text += "  iterate leftward";
         break;
     }
+    if (rule_.prefer != Rule::Prefer::kNone) text += rule_.prefer == Rule::Prefer::kLeft ? "  prefer left" : "  prefer right";
+    if (rule_.preserving) text += "  preserving";
+    if (rule_.sharing_blocked) text += "  sharing blocked";
+    if (rule_.probability < 1) text += "  optional " + std::to_string(rule_.probability) + (rule_.by_word ? " by word" : "");
     return text + " }";
   }
 
  private:
+  std::string ClauseText() {
+    std::string text = " where " + PatternText(clause_->where, false);
+    for (const Condition& condition : clause_->conditions) {
+      static const char* const signs[] = {" = ", " ≠ ", " is ", " is not "};
+      text += "  if " + PathText(condition.left, condition.node, condition.left_member) +
+              signs[static_cast<int>(condition.test)] +
+              PathText(condition.right, condition.node, condition.right_member);
+    }
+    for (const Pattern& pattern : clause_->unless) text += "  unless " + PatternText(pattern, true);
+    for (const TagTest& test : clause_->tags) {
+      text += test.only ? "  only " : "  except ";
+      if (test.scope == TagTest::Scope::kLabel) text += clause_->labels[test.label] + " in ";
+      if (test.scope == TagTest::Scope::kWord) text += "word ";
+      text += grammar_.tags[test.tag];
+    }
+    for (const Change& change : clause_->changes) text += "  " + ChangeText(change);
+    return text;
+  }
+
+  std::string PathText(int label, NodeId node, const Member& member) const {
+    const std::string path = clause_->labels[label] + ".";
+    const std::string& name = tree_[node].name;
+    switch (member.which) {
+      case Member::Which::kWhole:
+        return path + name;
+      case Member::Which::kFirst:
+        return path + name + " first";
+      case Member::Which::kLast:
+        return path + name + " last";
+      case Member::Which::kValue:
+        return path + tree_.ValueName(node, member.value);
+    }
+    return path;
+  }
+
   std::string PatternText(const Pattern& pattern, bool unless) const {
     std::vector<std::string> parts;
     for (const PatternItem& item : pattern.items) parts.push_back(ItemText(item, unless));
@@ -98,10 +192,12 @@ class RulePrinter {
     switch (item.kind) {
       case PatternItem::Kind::kSlot:
         if (item.label < 0) return PrintTest(grammar_, item.test);
-        if (unless && item.test.op == SlotTest::Op::kAny) return rule_.labels[item.label];
-        return rule_.labels[item.label] + ":" + PrintTest(grammar_, item.test);
+        if (unless && item.test.op == SlotTest::Op::kAny) return clause_->labels[item.label];
+        return clause_->labels[item.label] + ":" + PrintTest(grammar_, item.test);
       case PatternItem::Kind::kBoundary:
-        return BoundarySign(item.boundary);
+        return (item.label < 0 ? "" : clause_->labels[item.label] + ":") + BoundarySign(item.boundary);
+      case PatternItem::Kind::kSameMorpheme:
+        return "&";
       case PatternItem::Kind::kGap:
         return "..." + (item.tier ? tree_[*item.tier].name : "");
       case PatternItem::Kind::kGroup: {
@@ -118,25 +214,48 @@ class RulePrinter {
     return "";
   }
 
+  std::string ContentText(const Change& change) const {
+    const Symbol* symbol = SymbolOf(grammar_, change.inserted);
+    if (symbol == nullptr) return RootBundle(tree_, change.inserted);
+    return "/" + symbol->text + (change.is_long ? "ː/" : "/");
+  }
+
+  std::string AsText(const Change& change) const {
+    if (change.node == kRootNode) return clause_->labels[change.target] + " as " + clause_->labels[change.source];
+    return PathText(change.target, change.node, Member()) + " as " + PathText(change.source, change.node, change.member);
+  }
+
   std::string ChangeText(const Change& change) {
-    const std::string& target = rule_.labels[change.target];
+    const std::string& target = clause_->labels[change.target];
     switch (change.op) {
       case Change::Op::kSpread:
-        return "spread " + rule_.labels[change.source] + "." + tree_[change.node].name + " to " + target;
+        return "spread " + PathText(change.source, change.node, change.member) + " to " + target;
       case Change::Op::kDelink:
-        return "delink " + target + "." + tree_[change.node].name;
+        return "delink " + PathText(change.target, change.node, change.member);
       case Change::Op::kSet:
         return "set " + target + " " + SettingsText(tree_, change.settings);
       case Change::Op::kFill:
         return "fill " + target + " " + SettingsText(tree_, change.settings);
+      case Change::Op::kSetAs:
+        return "set " + AsText(change);
+      case Change::Op::kFillAs:
+        return "fill " + AsText(change);
+      case Change::Op::kSetLiteral:
+        return "set " + target + " " + ContentText(change);
       case Change::Op::kInsert: {
-        const Symbol* symbol = SymbolOf(grammar_, change.inserted);
-        const std::string content = symbol != nullptr ? "/" + symbol->text + "/" : RootBundle(tree_, change.inserted);
-        return "insert J" + std::to_string(++inserted_) + ":" + content + (change.before ? " before " : " after ") +
-               target;
+        const std::string label =
+            change.inserted_label >= 0 ? clause_->labels[change.inserted_label] : "J" + std::to_string(++inserted_);
+        return "insert " + label + ":" + ContentText(change) + (change.before ? " before " : " after ") + target;
       }
       case Change::Op::kDelete:
         return "delete " + target;
+      case Change::Op::kLengthen:
+        return "lengthen " + target;
+      case Change::Op::kShorten:
+        return "shorten " + target;
+      case Change::Op::kMerge:
+        return "merge " + PathText(change.source, change.node, Member()) + " " +
+               PathText(change.target, change.node, Member());
     }
     return "";
   }
@@ -144,6 +263,7 @@ class RulePrinter {
   const Grammar& grammar_;
   const Tree& tree_;
   const Rule& rule_;
+  const Clause* clause_;
   int inserted_ = 0;
 };
 
