@@ -14,7 +14,7 @@
 #include "compile/plan.h"
 #include "compile/rule_machine.h"
 #include "graph/interpreter.h"
-#include "model/text.h"
+#include "model/readings.h"
 
 namespace tiersmith {
 namespace {
@@ -38,8 +38,10 @@ class CascadeCompiler {
         diagnostics_(diagnostics),
         testing_(testing != nullptr),
         plan_(MakePlan(grammar, testing_)),
+        forms_(grammar),
         data_(std::make_unique<CascadeData>()) {
     data_->grammar = &grammar;
+    data_->tags_read = testing_ ? ~std::uint64_t{0} : TagsRead(grammar);
     data_->classes = std::make_unique<LetterClasses>(grammar, plan_.visible, plan_.literals);
     if (testing_) {
       for (const Letter& letter : *testing) AddInput(letter, -1);
@@ -68,6 +70,7 @@ class CascadeCompiler {
     input.parts = data_->classes->Classify(letter);
     input.symbol = symbol;
     input.boundary = letter.boundary;
+    input.tags = letter.tags;
     input.linked = RootGoesOn(letter, grammar_.tree);
     data_->inputs.push_back(input);
   }
@@ -85,27 +88,78 @@ class CascadeCompiler {
       AddInput(letter, symbol);
     }
     for (Boundary boundary : {Boundary::kMorpheme, Boundary::kClitic, Boundary::kWord, Boundary::kPhrase}) {
-      Letter letter;
-      letter.kind = FormItem::Kind::kBoundary;
-      letter.boundary = boundary;
-      AddInput(letter, -1);
+      for (std::uint64_t tags : TagSets()) {
+        Letter letter;
+        letter.kind = FormItem::Kind::kBoundary;
+        letter.boundary = boundary;
+        letter.tags = tags;
+        AddInput(letter, -1);
+      }
     }
   }
 
+  // The sets of tags that a morpheme can have, as far as rules ask: any of a few tags; of many, those that entries of the
+  // lexicon have, and each alone. Of the kinds, one.
+  std::set<std::uint64_t> TagSets() const {
+    if (!grammar_.tagged) return {0};
+    constexpr std::uint64_t kKinds = 0xF;
+    constexpr std::size_t kMostFree = 6;
+    std::vector<std::uint64_t> free;
+    for (std::size_t tag = 4; tag < grammar_.tags.size(); ++tag) {
+      if (data_->tags_read >> tag & 1) free.push_back(std::uint64_t{1} << tag);
+    }
+    std::set<std::uint64_t> sets{0};
+    if (free.size() <= kMostFree) {
+      for (std::uint64_t tag : free) {
+        for (std::uint64_t known : std::set<std::uint64_t>(sets)) sets.insert(known | tag);
+      }
+    } else {
+      sets.insert(free.begin(), free.end());
+      for (const LexiconEntry& entry : grammar_.lexicon.entries) sets.insert(BitsOf(entry.tags) & data_->tags_read & ~kKinds);
+    }
+    std::set<std::uint64_t> with_kinds;
+    for (std::uint64_t set : sets) {
+      for (std::uint64_t kind = 1; kind <= kKinds; kind <<= 1) with_kinds.insert(set | (kind & data_->tags_read));
+    }
+    return with_kinds;
+  }
+
+  std::uint64_t BitsOf(const std::vector<std::string>& tags) const {
+    std::uint64_t bits = 0;
+    for (std::size_t tag = 0; tag < grammar_.tags.size(); ++tag) {
+      if (std::find(tags.begin(), tags.end(), grammar_.tags[tag]) != tags.end()) bits |= std::uint64_t{1} << tag;
+    }
+    return bits;
+  }
+
   std::vector<int> SymbolsInData() const {
-    const Reader reader(grammar_);
     std::vector<int> symbols;
     std::vector<Token> tokens;
     TextError error;
-    for (const DataRow& row : grammar_.data) {
-      if (!reader.Read(row.underlying, Reader::Side::kUnderlying, &tokens, &error)) continue;
-      for (const Token& token : tokens) {
+    const auto add = [&symbols](const std::vector<Token>& more) {
+      for (const Token& token : more) {
         if (token.kind == Token::Kind::kSymbol) symbols.push_back(token.symbol);
       }
+    };
+    for (const DataRow& row : grammar_.data) {
+      for (const Reading& reading : Readings(row.underlying)) {
+        if (forms_.reader().Read(reading.text, Reader::Side::kUnderlying, &tokens, &error)) add(tokens);
+      }
+    }
+    for (const LexiconEntry& entry : grammar_.lexicon.entries) {
+      add(entry.form.tokens);
+      for (const Suppletion& other : entry.suppletive) add(other.form.tokens);
     }
     std::sort(symbols.begin(), symbols.end());
     symbols.erase(std::unique(symbols.begin(), symbols.end()), symbols.end());
     return symbols;
+  }
+
+  std::vector<Reading> Readings(const std::string& typed) const {
+    std::vector<Reading> readings;
+    TextError error;
+    if (!forms_.Read(typed, {}, &readings, &error)) readings.clear();
+    return readings;
   }
 
   std::vector<int> InputClasses() const {
@@ -136,6 +190,16 @@ class CascadeCompiler {
     Tape tape = AnyString({});
     tape.arcs.resize(halves.size() + 1);
     tape.ends.resize(halves.size() + 1, 0);
+    if (grammar_.tagged) {  // the ‖ that opens the first morpheme
+      tape.starts = {static_cast<int>(tape.arcs.size())};
+      tape.arcs.emplace_back();
+      tape.ends.push_back(0);
+      for (const InputLetter& input : data_->inputs) {
+        const int c = input.parts.class_id;
+        if (input.boundary == Boundary::kPhrase)
+          tape.arcs.back().push_back({c, tape.symbols.Intern(Key{0, c, -1}), 0});
+      }
+    }
     const auto add = [&tape](int from, int c, int to) {
       tape.arcs[from].push_back({c, tape.symbols.Intern(Key{0, c, -1}), to});
     };
@@ -363,11 +427,9 @@ class CascadeCompiler {
 
   // The form as it is when it comes to a rule.
   std::optional<Form> Before(const Rule& rule, const std::string& text) const {
-    const Reader reader(grammar_);
-    std::vector<Token> tokens;
-    TextError error;
-    if (!reader.Read(text, Reader::Side::kUnderlying, &tokens, &error)) return std::nullopt;
-    Form form = reader.FormOf(tokens, Reader::Side::kUnderlying);
+    const std::vector<Reading> readings = Readings(text);
+    if (readings.empty()) return std::nullopt;
+    Form form = readings.front().form;
     for (const Rule& earlier : grammar_.rules) {
       if (&earlier == &rule) break;
       form = ApplyRule(grammar_, earlier, form).form;
@@ -466,11 +528,9 @@ class CascadeCompiler {
   }
 
   int LastRuleThatChanged(const std::string& text) const {
-    const Reader reader(grammar_);
-    std::vector<Token> tokens;
-    TextError error;
-    if (!reader.Read(text, Reader::Side::kUnderlying, &tokens, &error)) return -1;
-    const Derivation derivation = Derive(grammar_, reader.FormOf(tokens, Reader::Side::kUnderlying));
+    const std::vector<Reading> readings = Readings(text);
+    if (readings.empty()) return -1;
+    const Derivation derivation = Derive(grammar_, readings.front().form);
     int last = -1;
     for (const Step& step : derivation.steps) {
       if (step.applied) last = step.rule;
@@ -483,19 +543,20 @@ class CascadeCompiler {
     if (grammar_.data.empty()) return true;
     if (!data_surfaces_done_) {
       data_surfaces_done_ = true;
-      const Reader reader(grammar_);
-      std::vector<Token> tokens;
-      TextError error;
       for (const DataRow& row : grammar_.data) {
-        if (!reader.Read(row.underlying, Reader::Side::kUnderlying, &tokens, &error)) continue;
-        const Form surface = Derive(grammar_, reader.FormOf(tokens, Reader::Side::kUnderlying)).surface;
-        for (const FormItem& item : surface.items) {
-          if (item.kind != FormItem::Kind::kSlot || RootOf(surface, item) < 0) continue;
-          data_roots_.push_back(ContentOf(surface, static_cast<InstanceId>(RootOf(surface, item))));
+        for (const Reading& reading : Readings(row.underlying)) {
+          for (const Outcome& outcome : Derive(grammar_, reading.form).outcomes) AddRoots(outcome.form);
         }
       }
     }
     return std::find(data_roots_.begin(), data_roots_.end(), tree) != data_roots_.end();
+  }
+
+  void AddRoots(const Form& surface) {
+    for (const FormItem& item : surface.items) {
+      if (item.kind != FormItem::Kind::kSlot || RootOf(surface, item) < 0) continue;
+      data_roots_.push_back(ContentOf(surface, static_cast<InstanceId>(RootOf(surface, item))));
+    }
   }
 
   // A form that goes this path, written with the first symbols that fit; at position `at`, one with the given rest.
@@ -521,6 +582,7 @@ class CascadeCompiler {
   Diagnostics& diagnostics_;
   bool testing_;
   Plan plan_;
+  FormReader forms_;
   std::unique_ptr<CascadeData> data_;
   Tape current_;
   Segment segment_;
@@ -539,20 +601,31 @@ std::unique_ptr<Cascade> CompileWith(const Grammar& grammar, const Limits& limit
 
 }  // namespace
 
+std::vector<Letter> LettersOf(const Form& form, const CascadeData& data) {
+  std::vector<Letter> letters = Encode(form, data.grammar->tree);
+  for (Letter& letter : letters) letter.tags &= data.tags_read;
+  return letters;
+}
+
 std::string WriteInputs(const Grammar& grammar, const std::vector<const InputLetter*>& letters) {
-  std::string text;
+  std::string text, tags;  // the tags of a morpheme are written behind it
   bool linked = false;
   for (const InputLetter* letter : letters) {
     if (letter == nullptr) {
       text += "?";
     } else if (letter->symbol < 0) {
-      text += BoundarySign(letter->boundary);
+      text += tags;
+      tags.clear();
+      for (std::size_t tag = 0; tag < grammar.tags.size(); ++tag) {
+        if (letter->tags >> tag & 1) tags += "@" + grammar.tags[tag];
+      }
+      if (!grammar.tagged || letter != letters.front()) text += BoundarySign(letter->boundary);
     } else {
       text += linked ? "ː" : grammar.inventory.symbols[letter->symbol].text;
     }
     linked = letter != nullptr && letter->linked;
   }
-  return text;
+  return text + tags;
 }
 
 Cascade::Cascade(std::unique_ptr<CascadeData> data) : data_(std::move(data)) {}

@@ -26,7 +26,8 @@ struct InputLetter {
   LetterClasses::Parts parts;
   int symbol = -1;  // -1: a boundary
   Boundary boundary = Boundary::kNone;
-  bool linked = false;  // its root goes on to the next slot
+  std::uint64_t tags = 0;  // of a boundary
+  bool linked = false;     // its root goes on to the next slot
 };
 
 struct CascadeData {
@@ -34,9 +35,13 @@ struct CascadeData {
   std::unique_ptr<LetterClasses> classes;
   std::vector<InputLetter> inputs;
   std::vector<Segment> segments;
+  std::uint64_t tags_read = 0;  // those of FormItem::tags that some rule asks for; the letters have no others
 };
 
-// The form these letters spell; null: a letter that no underlying form has ("?").
+// The letters of a form as a cascade reads them.
+std::vector<Letter> LettersOf(const Form& form, const CascadeData& data);
+
+// The form these letters spell, with tags; null: a letter that no underlying form has ("?").
 std::string WriteInputs(const Grammar& grammar, const std::vector<const InputLetter*>& letters);
 
 // For agreement tests: compiles over given letters (any sharing), keeps all link bits, and leaves ambiguous and far-reaching

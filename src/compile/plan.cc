@@ -135,6 +135,17 @@ NodeSet NodesRead(const Rule& rule, const Tree& tree) {
   return read;
 }
 
+std::uint64_t TagsRead(const Grammar& grammar) {
+  std::uint64_t read = 0;
+  for (const Rule& rule : grammar.rules) {
+    if (rule.within == Domain::kStem) read |= 1 | 4;  // stem, suffix
+    for (const Clause* clause : ClausesOf(rule)) {
+      for (const TagTest& test : clause->tags) read |= std::uint64_t{1} << test.tag;
+    }
+  }
+  return read;
+}
+
 Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   const Tree& tree = grammar.tree;
   Plan plan;

@@ -23,6 +23,9 @@ struct Plan {
 // The nodes whose links the rule reads.
 NodeSet NodesRead(const Rule& rule, const Tree& tree);
 
+// The tags that rules ask for, as bits of FormItem::tags.
+std::uint64_t TagsRead(const Grammar& grammar);
+
 Plan MakePlan(const Grammar& grammar, bool keep_all_links);
 
 }  // namespace tiersmith

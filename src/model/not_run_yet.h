@@ -19,9 +19,6 @@ struct NotYet {
   std::string remedy;
 };
 
-// FeatureTest::part. Until it is read, items beside a changed one are matched by any part of a contour.
-inline constexpr bool kPartsRun = false;
-
 // `name`: the place for what is said of a rule as a whole.
 std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree);
 std::vector<NotYet> NotRunYet(const syntax::Strict& strict);

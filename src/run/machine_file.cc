@@ -13,6 +13,7 @@
 #include "base/bytes.h"
 #include "base/utf8.h"
 #include "compile/cascade_data.h"
+#include "compile/plan.h"
 
 namespace tiersmith {
 namespace {
@@ -64,10 +65,11 @@ class Fields {
     List(classes);
   }
   void One(Of<InputLetter>& input) {
-    auto& [parts, symbol, boundary, linked] = input;
+    auto& [parts, symbol, boundary, tags, linked] = input;
     One(parts);
     file_.Number(symbol);
     file_.Number(boundary);
+    file_.Long(tags);
     file_.Number(linked);
   }
   // Not how long it took to make: the same grammar makes the same bytes.
@@ -255,6 +257,7 @@ std::unique_ptr<Cascade> ReadCascade(ByteReader& file, const Grammar& grammar) {
   fields.One(classes);
   auto data = std::make_unique<CascadeData>();
   data->grammar = &grammar;
+  data->tags_read = TagsRead(grammar);
   fields.List(data->inputs);
   fields.List(data->segments);
   const Soundness sound(grammar, classes);

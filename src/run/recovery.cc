@@ -143,12 +143,27 @@ struct Recovery::Impl {
     }
   }
 
+  // A tag is restored as a boundary is; a kind is no more than a reading.
+  static fst::TropicalWeight TagCost(std::uint64_t tags) {
+    fst::TropicalWeight cost = kFree;
+    for (std::uint64_t rest = tags >> 4; rest != 0; rest &= rest - 1) cost = fst::Times(cost, kRestored);
+    return cost;
+  }
+
   // States: may a boundary come next or not, and for each long letter the wait for its other half.
   Fst UnderlyingForms() const {
     Fst result;
     const int open = result.AddState();     // at the start or after a slot
     const int bounded = result.AddState();  // after a boundary
-    result.SetStart(open);
+    if (grammar.tagged) {
+      result.SetStart(result.AddState());  // before the ‖ that opens the first morpheme
+      for (const auto& [id, input] : input_of) {
+        if (input->boundary == Boundary::kPhrase)
+          result.AddArc(result.Start(), StdArc(id, id, TagCost(input->tags), open));
+      }
+    } else {
+      result.SetStart(open);
+    }
     result.SetFinal(open, kFree);
     result.SetFinal(bounded, kFree);
     std::map<int, int> waiting;  // symbol -> state
@@ -157,7 +172,7 @@ struct Recovery::Impl {
     }
     for (const auto& [id, input] : input_of) {  // a letter is written by one symbol: no two symbols fall together
       if (input->symbol < 0) {
-        result.AddArc(open, StdArc(id, id, kRestored, bounded));
+        result.AddArc(open, StdArc(id, id, fst::Times(kRestored, TagCost(input->tags)), bounded));
         continue;
       }
       const int next = input->linked ? waiting[input->symbol] : open;

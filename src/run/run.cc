@@ -7,6 +7,7 @@
 
 #include "compile/cascade_data.h"
 #include "compile/rule_machine.h"
+#include "model/readings.h"
 #include "run/lattice.h"
 #include "run/recovery.h"
 #include "run/walker.h"
@@ -16,7 +17,7 @@ namespace tiersmith {
 struct Runner::Impl {
   const Grammar& grammar;
   const Cascade& cascade;
-  std::unique_ptr<Reader> reader_made;  // when the first text comes: forms need none
+  std::unique_ptr<FormReader> forms_made;  // when the first text comes: forms need none
   std::vector<Walker> walkers;
   // What a letter that comes out is written as.
   struct Spelled {
@@ -49,10 +50,11 @@ struct Runner::Impl {
     }
   }
 
-  const Reader& reader() {
-    if (reader_made == nullptr) reader_made = std::make_unique<Reader>(grammar);
-    return *reader_made;
+  const FormReader& forms() {
+    if (forms_made == nullptr) forms_made = std::make_unique<FormReader>(grammar);
+    return *forms_made;
   }
+  const Reader& reader() { return forms().reader(); }
 
   const Spelled& Spell(const LetterClasses::Parts& letter) {
     if (static_cast<int>(spelled.size()) <= letter.class_id) spelled.resize(letter.class_id + 1);
@@ -85,6 +87,12 @@ struct Runner::Impl {
 
   // Tokens -> letters; false if a symbol is not one that the machine was compiled for.
   bool ToLetters(std::string_view text, TextError* error) {
+    if (grammar.tagged) {
+      std::vector<Reading> readings;
+      if (!forms().Read(text, {}, &readings, error)) return false;
+      ToLetters(readings.front().form);
+      return true;
+    }
     if (!reader().Read(text, Reader::Side::kUnderlying, &tokens, error)) return false;
     letters.clear();
     for (std::size_t i = 0; i < tokens.size(); ++i) {
@@ -108,6 +116,16 @@ struct Runner::Impl {
     return true;
   }
   int last_symbol_ = -1;
+
+  void ToLetters(const Form& form) {
+    letters.clear();
+    for (const Letter& letter : LettersOf(form, cascade.data()))
+      letters.push_back(cascade.data().classes->Classify(letter));
+  }
+
+  bool Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+               TextError* error);
+  bool Only(std::string_view underlying, std::string* surface, TextError* error);
 
   // All ways through the grammar.
   Lattice Ways(const std::vector<LetterClasses::Parts>& in, std::int32_t* flags) {
@@ -161,28 +179,38 @@ bool Runner::weighted() const { return impl_->weighted; }
 
 bool Runner::DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                        TextError* error) {
+  return impl_->ToLetters(underlying, error) && impl_->Outputs(underlying, best, outputs, more, error);
+}
+
+bool Runner::DeriveAll(const Form& underlying, std::string_view typed, std::size_t best, std::vector<Output>* outputs,
+                       bool* more, TextError* error) {
+  impl_->ToLetters(underlying);
+  return impl_->Outputs(typed, best, outputs, more, error);
+}
+
+bool Runner::Impl::Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+                           TextError* error) {
   outputs->clear();
   *more = false;
-  if (!impl_->weighted) {
+  if (!weighted) {
     outputs->emplace_back();
-    return Derive(underlying, &outputs->back().surface, error);
+    return Only(underlying, &outputs->back().surface, error);
   }
-  if (!impl_->ToLetters(underlying, error)) return false;
   std::int32_t flags = 0;
-  const Lattice ways = impl_->Ways(impl_->letters, &flags);
+  const Lattice ways = Ways(letters, &flags);
   if (ways.arcs.empty()) {
-    *error = Impl::NoDerivation(underlying);
+    *error = NoDerivation(underlying);
     return false;
   }
   Lattice written;
   std::string unspelled;
-  if (!impl_->Written(ways, &written, &unspelled)) {
-    *error = Impl::Unspelled(underlying, unspelled);
+  if (!Written(ways, &written, &unspelled)) {
+    *error = Unspelled(underlying, unspelled);
     return false;
   }
   for (const Likely& likely : Likeliest(written, best, more)) {
     Output output;
-    for (int label : likely.labels) output.surface += impl_->texts[static_cast<std::size_t>(label)];
+    for (int label : likely.labels) output.surface += texts[static_cast<std::size_t>(label)];
     output.probability = likely.probability;
     outputs->push_back(std::move(output));
   }
@@ -190,34 +218,35 @@ bool Runner::DeriveAll(std::string_view underlying, std::size_t best, std::vecto
 }
 
 bool Runner::Derive(std::string_view underlying, std::string* surface, TextError* error) {
-  if (impl_->weighted) {
-    std::vector<Output> outputs;
-    bool more = false;
-    if (!DeriveAll(underlying, 1, &outputs, &more, error)) return false;
-    *surface = outputs.front().surface;
-    return true;
-  }
-  if (!impl_->ToLetters(underlying, error)) return false;
+  std::vector<Output> outputs;
+  bool more = false;
+  if (!DeriveAll(underlying, 1, &outputs, &more, error)) return false;
+  *surface = std::move(outputs.front().surface);
+  return true;
+}
+
+// The one surface of the letters, where no rule is optional.
+bool Runner::Impl::Only(std::string_view underlying, std::string* surface, TextError* error) {
   std::int32_t flags = 0;
-  for (Walker& walker : impl_->walkers) {
-    if (walker.Run(&impl_->letters, &flags)) continue;
-    *error = Impl::NoDerivation(underlying);
+  for (Walker& walker : walkers) {
+    if (walker.Run(&letters, &flags)) continue;
+    *error = NoDerivation(underlying);
     return false;
   }
   surface->clear();
   bool linked = false;
-  for (const LetterClasses::Parts& letter : impl_->letters) {
-    const Impl::Spelled& spelled = impl_->Spell(letter);
+  for (const LetterClasses::Parts& letter : letters) {
+    const Spelled& spelled = Spell(letter);
     switch (spelled.kind) {
-      case Impl::Spelled::Kind::kUnknown:
-      case Impl::Spelled::Kind::kNothing:
+      case Spelled::Kind::kUnknown:
+      case Spelled::Kind::kNothing:
         break;
-      case Impl::Spelled::Kind::kText:
+      case Spelled::Kind::kText:
         *surface += spelled.slot && linked ? "ː" : spelled.text;
         if (spelled.slot) linked = spelled.linked;
         break;
-      case Impl::Spelled::Kind::kNoSymbol:
-        *error = Impl::Unspelled(underlying, spelled.text);
+      case Spelled::Kind::kNoSymbol:
+        *error = Unspelled(underlying, spelled.text);
         return false;
     }
   }
@@ -228,8 +257,7 @@ Runner::Answer Runner::Apply(const Form& underlying) {
   Answer answer;
   const CascadeData& data = impl_->cascade.data();
   std::vector<LetterClasses::Parts> letters;
-  for (const Letter& letter : Encode(underlying, impl_->grammar.tree))
-    letters.push_back(data.classes->Classify(letter));
+  for (const Letter& letter : LettersOf(underlying, data)) letters.push_back(data.classes->Classify(letter));
   std::int32_t flags = 0;
   std::vector<Likely> all;
   if (impl_->weighted) {

@@ -30,6 +30,9 @@ class Runner {
   };
   bool DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                  TextError* error);
+  // The same of a form (with its tags, where rules ask for them); `typed` is what messages call it.
+  bool DeriveAll(const Form& underlying, std::string_view typed, std::size_t best, std::vector<Output>* outputs,
+                 bool* more, TextError* error);
   // Has the grammar optional rules?
   bool weighted() const;
 
