@@ -206,7 +206,7 @@ bool Checker::CheckClause(const syntax::Clause& written, const syntax::Rule& who
   if (!good) return false;
   clause->variables = static_cast<int>(variables.size());
   WarnLonelyVariables(context);
-  if (kPartsRun || reach_ == Reach::kWhole) FaceEdges(clause);
+  FaceEdges(clause);
   return CheckChanges(whole, rule, *clause);
 }
 

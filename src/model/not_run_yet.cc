@@ -14,20 +14,15 @@ class Lister {
 
   void VisitWhole(const Rule& rule, Span name) {
     if (rule.kind == Rule::Kind::kComplete) Add(name, "`complete` is");
-    if (!rule.otherwise.empty()) Add(name, "`otherwise` is", "write a rule of its own for the other sites");
-    if (rule.within != Domain::kWord) Add(name, "`within` of anything but the word is");
     if (rule.prefer != Rule::Prefer::kNone) Add(name, "`prefer` is");
     if (rule.sharing_blocked) Add(name, "`sharing blocked` is");
     if (rule.preserving) Add(name, "`preserving` is");
-    if (rule.probability < 1) Add(name, "`optional` is");
   }
 
-  void VisitClause(const Clause& clause) {
-    VisitPattern(clause.where);
-    for (const Pattern& unless : clause.unless) VisitPattern(unless);
-    for (const Condition& condition : clause.conditions) Add(condition.span, "a comparison of two items is");
-    for (const TagTest& tag : clause.tags) Add(tag.span, tag.only ? "`only` is" : "`except` is");
-    for (const Change& change : clause.changes) VisitChange(change);
+  void VisitClause(const Rule& rule, const Clause& clause) {
+    VisitBoundaries(clause.where);
+    for (const Pattern& unless : clause.unless) VisitUnless(unless);
+    for (const Change& change : clause.changes) VisitChange(rule, change);
   }
 
  private:
@@ -38,44 +33,30 @@ class Lister {
     if (!said) found_.push_back({span, std::move(what), std::move(remedy)});
   }
 
-  void VisitPattern(const Pattern& pattern) {
+  // A deleted boundary stands between two items, whose run it is.
+  void VisitBoundaries(const Pattern& pattern) {
+    for (std::size_t i = 0; i < pattern.items.size(); ++i) {
+      const PatternItem& item = pattern.items[i];
+      const bool edge = i == 0 || i + 1 == pattern.items.size();
+      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0 && edge)
+        Add(item.span, "a labelled boundary at the end of a pattern is", "let the pattern name the item beyond it: [] is any");
+      for (const Pattern& alternative : item.alternatives) VisitBoundaries(alternative);
+    }
+  }
+
+  void VisitUnless(const Pattern& pattern) {
     for (const PatternItem& item : pattern.items) {
-      if (item.kind == PatternItem::Kind::kSameMorpheme) Add(item.span, "`&` is");
-      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0) Add(item.span, "a labelled boundary is");
-      VisitTest(item.test, item.span);
-      for (const Pattern& alternative : item.alternatives) VisitPattern(alternative);
+      if (Agrees(item.test)) Add(item.span, "agreement of items, α β γ δ, in `unless` is", "write one `unless` for each value");
+      for (const Pattern& alternative : item.alternatives) VisitUnless(alternative);
     }
   }
 
-  void VisitTest(const SlotTest& test, Span span) {
-    for (const FeatureTest& feature : test.bundle) {
-      if (feature.part != FeatureTest::Part::kAny) Add(span, "`begins`, `ends` or a list of values in a test is");
-      switch (feature.kind) {
-        case FeatureTest::Kind::kBears:
-        case FeatureTest::Kind::kLacks:
-        case FeatureTest::Kind::kHasValue:
-        case FeatureTest::Kind::kLacksValue:
-          break;
-        case FeatureTest::Kind::kAgrees:
-        case FeatureTest::Kind::kDiffers:
-          Add(span, "agreement of items, α β γ δ, is", "write one rule for each value");
-          break;
-        case FeatureTest::Kind::kShared:
-        case FeatureTest::Kind::kUnshared:
-          Add(span, "`shared` or `unshared` is");
-          break;
-        case FeatureTest::Kind::kLong:
-        case FeatureTest::Kind::kShort:
-        case FeatureTest::Kind::kHalfFirst:
-        case FeatureTest::Kind::kHalfSecond:
-          Add(span, "`long`, `short` or `half` is");
-          break;
-      }
-    }
-    for (const SlotTest& arg : test.args) VisitTest(arg, span);
+  static bool Agrees(const SlotTest& test) {
+    return std::any_of(test.bundle.begin(), test.bundle.end(), [](const FeatureTest& f) { return f.variable >= 0; }) ||
+           std::any_of(test.args.begin(), test.args.end(), Agrees);
   }
 
-  void VisitChange(const Change& change) {
+  void VisitChange(const Rule& rule, const Change& change) {
     switch (change.op) {
       case Change::Op::kSpread:
       case Change::Op::kDelink:
@@ -85,31 +66,27 @@ class Lister {
       case Change::Op::kDelete:
         break;
       case Change::Op::kSetAs:
-        Add(change.span, "`set .. as` is");
-        break;
       case Change::Op::kFillAs:
-        Add(change.span, "`fill .. as` is");
-        break;
       case Change::Op::kSetLiteral:
-        Add(change.span, "`set` with a symbol is", "name the features: set X [..]");
-        break;
       case Change::Op::kLengthen:
-        Add(change.span, "`lengthen` is");
-        break;
       case Change::Op::kShorten:
-        Add(change.span, "`shorten` is");
-        break;
       case Change::Op::kMerge:
-        Add(change.span, "`merge` is");
+        if (rule.mode != Rule::Mode::kAtOnce)
+          Add(change.span, "`set .. as`, `fill .. as`, `set` with a symbol, `lengthen` or `shorten` in a rule that iterates is",
+              "apply the rule at once, or name the features: set X [..]");
         break;
     }
     if (change.inserted_label >= 0) {
       Add(change.span, "an inserted item that other changes go on with is", "insert it with that content");
     }
-    if (change.op == Change::Op::kInsert && change.is_long) Add(change.span, "inserting a long segment is");
-    if (change.member.which != Member::Which::kWhole) Add(change.span, "one member of a contour is");
+    const bool copies = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs;
+    if (change.member.which != Member::Which::kWhole && !copies) Add(change.span, "one member of a contour is");
     VisitNode(change.node, change.span);
-    for (const Setting& setting : change.settings) VisitNode(setting.node, change.span);
+    for (const Setting& setting : change.settings) {
+      VisitNode(setting.node, change.span);
+      if (setting.variable >= 0 && tree_[setting.node].type == TreeNode::Type::kClass)
+        Add(change.span, "giving a class node the content of a variable is", "copy it: set X.N as Y.N");
+    }
   }
 
   // What hangs from the slot, and what one mother may hold several subtrees of.
@@ -138,8 +115,8 @@ class Lister {
 std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree) {
   Lister lister(tree);
   lister.VisitWhole(rule, name);
-  lister.VisitClause(rule);
-  for (const Clause& clause : rule.otherwise) lister.VisitClause(clause);
+  lister.VisitClause(rule, rule);
+  for (const Clause& clause : rule.otherwise) lister.VisitClause(rule, clause);
   return lister.Take();
 }
 

@@ -13,7 +13,6 @@
 #include "base/bytes.h"
 #include "base/utf8.h"
 #include "compile/cascade_data.h"
-#include "compile/plan.h"
 
 namespace tiersmith {
 namespace {
@@ -257,9 +256,9 @@ std::unique_ptr<Cascade> ReadCascade(ByteReader& file, const Grammar& grammar) {
   fields.One(classes);
   auto data = std::make_unique<CascadeData>();
   data->grammar = &grammar;
-  data->tags_read = TagsRead(grammar);
   fields.List(data->inputs);
   fields.List(data->segments);
+  file.Long(data->tags_read);
   const Soundness sound(grammar, classes);
   if (!file.Good() || !file.AtEnd() || data->segments.empty() || !sound.Classes()) return nullptr;
   for (const InputLetter& input : data->inputs) {
@@ -410,13 +409,14 @@ std::string WriteMachine(const CompiledGrammar& compiled) {
   }
   preface.left_out = compiled.left_out;
   preface.warnings = compiled.warnings.all();
-  const auto& [grammar, classes, inputs, segments] = compiled.cascade->data();
+  const auto& [grammar, classes, inputs, segments, tags_read] = compiled.cascade->data();
   ByteWriter file;
   Fields<ByteWriter> fields(file);
   fields.One(preface);
   fields.One(classes->Save());
   fields.List(inputs);
   fields.List(segments);
+  file.Long(tags_read);
   return WithHeader(file.bytes(), kMachineFormat, LayoutOf(*grammar));
 }
 
