@@ -621,7 +621,7 @@ std::string WriteInputs(const Grammar& grammar, const std::vector<const InputLet
       }
       if (!grammar.tagged || letter != letters.front()) text += BoundarySign(letter->boundary);
     } else {
-      text += linked ? "ː" : grammar.inventory.symbols[letter->symbol].text;
+      text += linked && !grammar.Doubles(letter->symbol) ? "ː" : grammar.inventory.symbols[letter->symbol].text;
     }
     linked = letter != nullptr && letter->linked;
   }

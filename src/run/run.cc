@@ -25,6 +25,7 @@ struct Runner::Impl {
     bool slot = false;
     bool linked = false;
     std::string text;
+    std::string again;  // what the further slots of a long one are written as
   };
   std::vector<std::vector<Spelled>> spelled;  // by class, by rest
   // The letters of tokens: by symbol, [not linked, linked]; by boundary.
@@ -82,6 +83,7 @@ struct Runner::Impl {
     const int symbol = grammar.inventory.Spell(*root).symbol;
     result.kind = symbol < 0 ? Spelled::Kind::kNoSymbol : Spelled::Kind::kText;
     result.text = symbol < 0 ? grammar.inventory.Describe(*root, grammar.tree) : grammar.inventory.symbols[symbol].text;
+    result.again = grammar.Doubles(symbol) ? result.text : "ː";
     return result;
   }
 
@@ -146,7 +148,7 @@ struct Runner::Impl {
         *unspelled = spelled.text;
       }
       if (spelled.kind != Spelled::Kind::kText) return std::make_pair(linked, Lattice::kNothing);
-      const int text = Text(spelled.slot && linked != 0 ? "ː" : spelled.text);
+      const int text = Text(spelled.slot && linked != 0 ? spelled.again : spelled.text);
       return std::make_pair(spelled.slot ? static_cast<int>(spelled.linked) : linked, text);
     });
     return good;
@@ -242,7 +244,7 @@ bool Runner::Impl::Only(std::string_view underlying, std::string* surface, TextE
       case Spelled::Kind::kNothing:
         break;
       case Spelled::Kind::kText:
-        *surface += spelled.slot && linked ? "ː" : spelled.text;
+        *surface += spelled.slot && linked ? spelled.again : spelled.text;
         if (spelled.slot) linked = spelled.linked;
         break;
       case Spelled::Kind::kNoSymbol:

@@ -35,6 +35,17 @@ has_out 'ceni-lA  cenilä  stone PL'
 run derive "$velmari" --spelled talu
 is_code 2; has_err 'the grammar has no `spelling`'
 
+# `length doubled` holds for symbols too: machine and interpreter write alike.
+{ cat "$velmari"; echo 'length doubled in C'; echo 'data comparing length { /tallu/ [tallu]  /sonːa/ [sonna]  /keniː/ [keniː] }'; } >"$t/d.tier"
+run derive "$t/d.tier" talːu keːni
+is_code 0; is_out 'tallu\nkeːni'
+run derive "$t/d.tier" --trace tallu
+has_out 'surface          tallu'
+run check "$t/d.tier"
+is_code 0; has_out '8 of 8 rows derived'
+run recover "$t/d.tier" --best 1 tallu
+is_code 0; has_out 'tallu'
+
 # Tags: read, and errors if nobody knows them.
 run derive "$t/v.tier" keni@noun-lA√talu
 is_code 2; has_err '√ stands inside a morpheme'
