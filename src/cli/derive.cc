@@ -177,8 +177,7 @@ class Tracer {
 // The readings of a typed form, said if there are several.
 class TypedForms {
  public:
-  TypedForms(const Grammar& grammar, const Lettering& lettering)
-      : grammar_(grammar), reader_(grammar), lettering_(lettering) {}
+  TypedForms(const Grammar& grammar, const Lettering& lettering) : grammar_(grammar), lettering_(lettering) {}
 
   // Is there more to read in the form than its symbols?
   bool Plain(const std::string& form) const {
@@ -186,13 +185,14 @@ class TypedForms {
            form.find("√") == std::string::npos;
   }
 
-  bool Read(const std::string& form, std::vector<Reading>* readings, TextError* error) const {
+  bool Read(const std::string& form, std::vector<Reading>* readings, TextError* error) {
+    if (reader_ == nullptr) reader_ = std::make_unique<FormReader>(grammar_);
     readings->clear();
     std::vector<std::string> texts;
     if (!lettering_.Read(form, Reader::Side::kUnderlying, &texts, error)) return false;
     for (const std::string& text : texts) {
       std::vector<Reading> some;
-      if (!reader_.Read(text, {}, &some, error)) return false;
+      if (!reader_->Read(text, {}, &some, error)) return false;
       if (some.size() > 1) {
         std::string list;
         for (const Reading& reading : some) list += (list.empty() ? "" : ", ") + reading.described;
@@ -206,7 +206,7 @@ class TypedForms {
 
  private:
   const Grammar& grammar_;
-  FormReader reader_;
+  std::unique_ptr<FormReader> reader_;  // when the first form comes that is not plain
   const Lettering& lettering_;
 };
 
@@ -243,7 +243,7 @@ int RunTrace(const DeriveOptions& options) {
   if (loaded.code != kFine) return loaded.code;
   if (SpellsNothing(options, *loaded.grammar)) return kUsage;
   const Lettering lettering(*loaded.grammar, options.spelled);
-  const TypedForms forms(*loaded.grammar, lettering);
+  TypedForms forms(*loaded.grammar, lettering);
   const Tracer tracer(*loaded.grammar, lettering);
   Output output(options.output);
   if (!output.good()) return kFiles;
@@ -292,7 +292,7 @@ int RunDerive(const DeriveOptions& options) {
   if (loaded.code != kFine) return loaded.code;
   if (SpellsNothing(options, *loaded.grammar)) return kUsage;
   const Lettering lettering(*loaded.grammar, options.spelled);
-  const TypedForms forms(*loaded.grammar, lettering);
+  TypedForms forms(*loaded.grammar, lettering);
   Runner runner(*loaded.grammar, *loaded.cascade);
   Output output(options.output);
   if (!output.good()) return kFiles;

@@ -279,7 +279,9 @@ void Checker::NoteUnread(const TextError& error, Span span, std::vector<Unread>*
 // One character that is not in the inventory may stand in every row: it is said where it stands first, with
 // the number of the others.
 void Checker::CheckData() {
-  ReadSpelled(Letters(), &grammar_.data, diagnostics_);
+  const auto spelled = [](const DataRow& row) { return row.underlying_spelled || row.surface_spelled; };
+  if (std::any_of(grammar_.data.begin(), grammar_.data.end(), spelled))
+    ReadSpelled(Letters(), &grammar_.data, diagnostics_);
   const FormReader forms(grammar_);
   std::vector<Unread> unread;
   TextError error;

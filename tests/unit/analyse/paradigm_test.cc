@@ -80,6 +80,35 @@ TEST_CASE("paradigm: where no allomorph fits the cell and the stem are named", "
   CHECK(loaded.Covered(diagnostics.all()[0]) == "LOC /-tA/ after C, /-sA/ after /i/");
 }
 
+TEST_CASE("outputs: tags reach the rules that ask for them, optional rules give every way", "[unit]") {
+  Loaded loaded;
+  loaded.grammar = LoadGrammarText("t.tier", kHead + R"(
+    lexicon { stem /tan/ loan   stem /pan/   suffix /-ka/ strong }
+    paradigm all { number : SG // PL /-ka/ }
+    rule "loans lose n" { where X:[+nasal] # delete X only loan }
+    rule "strong k"     { where X:/k/ delete X only strong optional 0.25 })",
+                                   loaded.sources, loaded.diagnostics, Reach::kWhole);
+  INFO(loaded.Messages());
+  REQUIRE(loaded.grammar != nullptr);
+  const Grammar& grammar = *loaded.grammar;
+  const FormReader reader(grammar);
+  Diagnostics diagnostics;
+  std::vector<Word> words;
+  REQUIRE(WordList(reader, grammar).First(0, &words, diagnostics));
+  std::string all;
+  for (const Word& word : words) {
+    all += word.form.described + ":";
+    for (const Outputs::Output& output : OutputsOf(grammar, word.form.form).all)
+      all += " " + output.surface + " " + std::to_string(static_cast<int>(output.probability * 100 + 0.5));
+    all += "\n";
+  }
+  CHECK(all ==
+        "tan@stem@loan: ta 100\n"
+        "tan@stem@loan-ka@suffix@PL@strong: tanka 75 tana 25\n"
+        "pan@stem: pan 100\n"
+        "pan@stem-ka@suffix@PL@strong: panka 75 pana 25\n");
+}
+
 TEST_CASE("words: every stem in every cell, and at random by weight", "[unit]") {
   const Loaded loaded = LoadOrFail(kHead + R"(
     lexicon { stem /tilun/ 'rope' noun weight 9   stem /ma/ 'yes'   suffix /-ki/ }
