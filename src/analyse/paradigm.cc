@@ -120,13 +120,21 @@ class CellMaker {
     return false;
   }
 
-  // An affix that the lexicon lists too has the tags of its entry.
+  // An affix that the lexicon lists too has the tags of its entry; of several entries, of those with the value as a tag.
   void AddListedTags(const Allomorph& allomorph, Morpheme* morpheme) const {
+    std::vector<const LexiconEntry*> listed, of_value;
     for (const LexiconEntry& entry : grammar_.lexicon.entries) {
       if (entry.kind != allomorph.kind || entry.form.text != allomorph.form.text ||
           entry.form.before != allomorph.form.before || entry.form.after != allomorph.form.after)
         continue;
-      for (const std::string& tag : entry.tags) {
+      listed.push_back(&entry);
+      const bool named = std::any_of(entry.tags.begin(), entry.tags.end(), [&](const std::string& tag) {
+        return std::find(morpheme->tags.begin(), morpheme->tags.end(), tag) != morpheme->tags.end();
+      });
+      if (named) of_value.push_back(&entry);
+    }
+    for (const LexiconEntry* entry : listed.size() == 1 ? listed : of_value) {
+      for (const std::string& tag : entry->tags) {
         if (std::find(morpheme->tags.begin(), morpheme->tags.end(), tag) == morpheme->tags.end())
           morpheme->tags.push_back(tag);
       }

@@ -69,6 +69,15 @@ TEST_CASE("paradigm: allomorphs, cells of their own, other stems, prefixes", "[u
         std::string::npos);
 }
 
+TEST_CASE("paradigm: of several entries with an affix's form, those with its value lend their tags", "[unit]") {
+  const Loaded loaded = LoadOrFail(kHead + R"(
+    lexicon { stem /ma/ noun  suffix /-ki/ strong PL  suffix /-ki/ weak  suffix /-ta/ strong  suffix /-ta/ weak }
+    paradigm noun { stem noun; number : SG /-ta/ PL /-ki/ })");
+  Diagnostics diagnostics;
+  CHECK(Cells(*loaded.grammar, "noun", "ma", diagnostics) ==
+        "SG: ma@stem@noun-ta@suffix@SG\nPL: ma@stem@noun-ki@suffix@PL@strong\n");
+}
+
 TEST_CASE("paradigm: where no allomorph fits the cell and the stem are named", "[unit]") {
   const Loaded loaded = LoadOrFail(kHead + R"(
     lexicon { stem /ma/ noun }
