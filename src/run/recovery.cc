@@ -189,6 +189,13 @@ struct Recovery::Impl {
     Fst result;
     int state = result.AddState();
     result.SetStart(state);
+    if (grammar.tagged) {  // the ‖ that opens the first morpheme is not written
+      const int opened = result.AddState();
+      for (int id : leaving.back()) {
+        if (facts[id - 1].boundary == Boundary::kPhrase) result.AddArc(state, StdArc(id, id, kFree, opened));
+      }
+      state = opened;
+    }
     AddUnwritten(&result, state);
     for (std::size_t i = 0; i < surface.size(); ++i) {
       const int symbol = SymbolAt(surface, i);

@@ -128,6 +128,7 @@ struct Runner::Impl {
   bool Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                TextError* error);
   bool Only(std::string_view underlying, std::string* surface, TextError* error);
+  void TakeOpening(std::string* surface) const;
 
   // All ways through the grammar.
   Lattice Ways(const std::vector<LetterClasses::Parts>& in, std::int32_t* flags) {
@@ -196,7 +197,9 @@ bool Runner::Impl::Outputs(std::string_view underlying, std::size_t best, std::v
   *more = false;
   if (!weighted) {
     outputs->emplace_back();
-    return Only(underlying, &outputs->back().surface, error);
+    if (!Only(underlying, &outputs->back().surface, error)) return false;
+    TakeOpening(&outputs->back().surface);
+    return true;
   }
   std::int32_t flags = 0;
   const Lattice ways = Ways(letters, &flags);
@@ -214,6 +217,7 @@ bool Runner::Impl::Outputs(std::string_view underlying, std::size_t best, std::v
     Output output;
     for (int label : likely.labels) output.surface += texts[static_cast<std::size_t>(label)];
     output.probability = likely.probability;
+    TakeOpening(&output.surface);
     outputs->push_back(std::move(output));
   }
   return true;
@@ -225,6 +229,12 @@ bool Runner::Derive(std::string_view underlying, std::string* surface, TextError
   if (!DeriveAll(underlying, 1, &outputs, &more, error)) return false;
   *surface = std::move(outputs.front().surface);
   return true;
+}
+
+// The ‖ that opens the first morpheme is there for its tags and not written.
+void Runner::Impl::TakeOpening(std::string* surface) const {
+  const std::string_view sign = BoundarySign(Boundary::kPhrase);
+  if (grammar.tagged && surface->compare(0, sign.size(), sign) == 0) surface->erase(0, sign.size());
 }
 
 // The one surface of the letters, where no rule is optional.

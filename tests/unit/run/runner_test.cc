@@ -118,6 +118,22 @@ TEST_CASE("runner: nothing left, nothing there", "[unit]") {
   CHECK(candidates.more);
 }
 
+TEST_CASE("runner: tags, in and out", "[unit]") {
+  for (const char* optional : {"", " optional 0.5"}) {
+    Compiled grammar = CompileText(std::string(kSmallInventory) + "lexicon { stem /tan/ loan stem /pan/ }\n" +
+                                   "rule \"loans lose n\" { where X:[+nasal] # delete X only loan" + optional + " }");
+    CAPTURE(optional, grammar.Messages());
+    REQUIRE(grammar.runner != nullptr);
+    CHECK(grammar.Derive("pan") == "pan");
+    CHECK(grammar.Derive("‖pan") == "‖pan");
+    if (*optional == '\0') CHECK(grammar.Derive("tan") == "ta");
+    CHECK(grammar.IsCandidate("tan", "ta"));
+    CHECK_FALSE(grammar.IsCandidate("pan", "pa"));
+    CHECK(grammar.IsCandidate("pan@loan", "pa"));
+    CHECK(grammar.Recover("pan", 1).best.at(0).form == "pan");
+  }
+}
+
 TEST_CASE("runner: length and boundaries, in and out", "[unit]") {
   Compiled grammar = CompileText(std::string(kSmallInventory) + R"(
     rule "voice"  { where [+syll] X:[-son no sg] [+syll]   set X [+voice]   unless X:[Dorsal] }
