@@ -45,6 +45,12 @@ void Freshen(WorkPart* part) {
   for (WorkPart& daughter : part->daughters) Freshen(&daughter);
 }
 
+WorkPart FreshPart(const FeatureTree& content) {
+  WorkPart part = Work(PartOf(content), Origin::kFresh, -1);
+  Freshen(&part);
+  return part;
+}
+
 const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last) {
   const WorkPart* found = nullptr;
   for (const WorkPart& daughter : part.daughters) {
@@ -174,10 +180,7 @@ void LetterBuilder::Relist(WorkPart* mother, NodeId node, std::int32_t request, 
     if (effective) built->clash = true;  // a line and a content
     effective = true;
     list.clear();
-    for (const FeatureTree& content : requests_.contents()[values - 1]) {
-      list.push_back(Work(PartOf(content), Origin::kFresh, -1));
-      Freshen(&list.back());
-    }
+    for (const FeatureTree& content : requests_.contents()[values - 1]) list.push_back(FreshPart(content));
   }
   built->effective[index] = effective || (request & kMergeLeft);
   const std::vector<NodeId>& order = space.tree()[mother->node].daughters;

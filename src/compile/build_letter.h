@@ -33,6 +33,9 @@ struct WorkPart {
 // It and all under it are new.
 void Freshen(WorkPart* part);
 
+// A new part of this content.
+WorkPart FreshPart(const FeatureTree& content);
+
 // The first or last part of a node under `part`, or null.
 const WorkPart* FindPart(const WorkPart& part, NodeId node, bool last);
 

@@ -67,6 +67,54 @@ Key Annotated(const Key& symbol, const RuleSpace& space) {
 
 void Append(Key* key, const Key& more) { key->insert(key->end(), more.begin(), more.end()); }
 
+// Is every root that this role alone changes or brings in spelled by a symbol of `segments` afterwards?
+bool Preserves(const Role& role, const Key& annotated, const RequestSpace& requests, const PatternCompiler& pattern,
+               ContentPool& pool) {
+  const RuleSpace& space = requests.space();
+  const Inventory& inventory = space.classes().grammar().inventory;
+  const auto spelled = [&inventory](const FeatureTree& root) {
+    const int symbol = inventory.Spell(root).symbol;
+    return symbol >= 0 && inventory.symbols[static_cast<std::size_t>(symbol)].kind == Symbol::Kind::kSegment;
+  };
+  const std::vector<Change>& changes = requests.rule().changes;
+  Key left(requests.nodes().size(), -1), right = left;
+  for (std::size_t i = 0; i < changes.size(); ++i) {
+    if (changes[i].op == Change::Op::kInsert && changes[i].target == role.label && !spelled(changes[i].inserted))
+      return false;
+    if (changes[i].op != Change::Op::kSpread || changes[i].target != role.label) continue;
+    const Content& content = pattern.ContentOf(role.values[pattern.VariableOf(i)]);
+    if (content.empty()) continue;
+    WorkPart travels;
+    travels.node = changes[i].node;
+    travels.value = content.front().value;
+    for (const FeatureTree& daughter : content.front().daughters) travels.daughters.push_back(FreshPart(daughter));
+    const auto at = static_cast<std::size_t>(requests.IndexOf(changes[i].node));
+    left[at] = right[at] = pool.Intern(travels);
+  }
+  if (!space.IsSlot(annotated[0])) return true;
+  LetterBuilder::Lines lines;
+  lines.left = left.data();
+  lines.right = right.data();
+  const Key request = requests.Of({&role}, annotated);
+  if ((request[0] & kDeleteSlot) && !(space.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) return true;
+  const BuiltLetter built = LetterBuilder(requests, pool).Build(annotated, request, lines);
+  Letter after;
+  after.part = LetterBuilder::Plain(built.slot, /*links=*/false);
+  const std::optional<FeatureTree> root = RootContent(after);
+  return !root.has_value() || root == RootContent(space.classes()[annotated[0]].visible) || spelled(*root);
+}
+
+PatternCompiler::Judge JudgeOf(const RequestSpace& requests, const PatternCompiler& pattern, ContentPool& pool) {
+  PatternCompiler::Judge judge;
+  judge.conflict = [&requests](const Role& a, const Role& b, const Key& annotated) {
+    return requests.InConflict(a, b, annotated);
+  };
+  judge.preserves = [&requests, &pattern, &pool](const Role& role, const Key& annotated) {
+    return Preserves(role, annotated, requests, pattern, pool);
+  };
+  return judge;
+}
+
 // ---- at once ------------------------------------------------------------------------------------
 
 // Carries requests on shared mothers to the right, and contents from the left. State, by request node: the request
@@ -150,7 +198,7 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
   std::vector<int> profile_of(annotated.symbols.size());
   for (int i = 0; i < annotated.symbols.size(); ++i) profile_of[i] = pattern.Profile(annotated.symbols[i]);
   const int profiles = pattern.profiles();
-  const PatternMachine machine = pattern.Build(limits.side_states);
+  const PatternMachine machine = pattern.Build(limits.side_states, JudgeOf(requests, pattern, pool));
   const Side left = SubsetsOf(machine, profiles, limits.side_states);
   const Side right = SubsetsOf(Reversed(machine), profiles, limits.side_states);
   if (machine.over_budget || left.next.empty() || right.next.empty()) return {Tape{}, true};
@@ -828,7 +876,7 @@ Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const Reque
   for (int i = 0; i < annotated.symbols.size(); ++i) pattern.Profile(annotated.symbols[i]);
   while (true) {
     const int profiles = pattern.profiles();
-    const PatternMachine machine = pattern.Build(limits.side_states);
+    const PatternMachine machine = pattern.Build(limits.side_states, JudgeOf(requests, pattern, pool));
     Sweep sweep(requests, pattern, machine, pool, direction, profiles, limits.side_states);
     if (machine.over_budget || sweep.over_budget()) return {Tape{}, true};
     const PassFunction far = [&sweep](const Key& state, const Key& symbol) { return sweep.Far(state, symbol); };

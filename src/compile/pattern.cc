@@ -5,6 +5,7 @@
 #include <unordered_map>
 
 #include "compile/flatten.h"
+#include "compile/plan.h"
 #include "compile/requests.h"
 
 namespace tiersmith {
@@ -51,10 +52,14 @@ enum Zone : std::int32_t {
 
 // [pc, phase, need, label of the boundary needed (+1), seen, mask, zone of spread 0, ..., variable 0, ..., condition 0, ...]; two states that loop have a pc of
 // their own. A variable: 1 + its value once it is met. A condition: what its first item told (ConditionState). Last, for
-// each merge, 1 + the content of its left item while that is the last one. The mask says which spreads have a source that
+// each merge, 1 + the content of its left item while that is the last one, and for each watch its WatchState. The mask says which spreads have a source that
 // bears the node, and which merges make one of two.
 enum Field { kPc, kPhase, kNeed, kNeedLabel, kSeen, kMask, kZones };
 constexpr std::int32_t kPrefix = -1, kSuffix = -2;
+
+// A watched instance. Before the item: does the one that goes on have holders outside the match, and are they all within the
+// instance of the free node that goes on? Behind the item, while it goes on: may holders outside follow, being free?
+enum WatchState : std::int32_t { kUnheld = 0, kFreelyHeld = 1, kHeldOutside = 2, kOwed = 3, kFreelyOwed = 4 };
 
 // Needs of a boundary: of a strength, or none at all (`&`).
 constexpr std::int32_t kNoBoundary = -1;
@@ -72,6 +77,7 @@ struct MarkedArc {
   int mark = -1;
   int role = -1;
   int next = 0;
+  bool first = false;  // it consumes the first slot of the match
 };
 
 struct MarkedMachine {
@@ -119,18 +125,18 @@ MarkedMachine Trim(const MarkedMachine& machine) {
 // A deterministic view of a non-deterministic relation over (profile, mark), built as it is asked.
 class Subsets {
  public:
-  using Step = std::function<void(int state, int profile, int mark, std::vector<int>* next)>;
+  using Step = std::function<void(int state, const MarkedArc& arc, std::vector<int>* next)>;
   Subsets(std::vector<int> initial, std::vector<char> final, Step step)
       : final_(std::move(final)), step_(std::move(step)) {
     start_ = Intern(std::move(initial));
   }
   int start() const { return start_; }
-  int Next(int subset, int profile, int mark) {
-    const auto key = std::make_tuple(subset, profile, mark);
+  int Next(int subset, const MarkedArc& arc) {
+    const auto key = std::make_tuple(subset, arc.profile, arc.mark, arc.role, arc.first);
     const auto it = memo_.find(key);
     if (it != memo_.end()) return it->second;
     std::vector<int> next;
-    for (std::int32_t state : Key(sets_[subset])) step_(state, profile, mark, &next);
+    for (std::int32_t state : Key(sets_[subset])) step_(state, arc, &next);
     const int id = Intern(std::move(next));
     memo_.emplace(key, id);
     return id;
@@ -149,7 +155,7 @@ class Subsets {
   std::vector<char> final_;
   Step step_;
   KeyPool sets_;
-  std::map<std::tuple<int, int, int>, int> memo_;
+  std::map<std::tuple<int, int, int, int, bool>, int> memo_;
   int start_ = 0;
 };
 
@@ -172,7 +178,7 @@ MarkedMachine Minus(const MarkedMachine& machine, Subsets banned, std::size_t ma
     result.final.push_back(machine.final[state] && !banned.Accepts(subset));
     result.underway.push_back(machine.underway[state]);
     for (MarkedArc arc : machine.arcs[state]) {
-      arc.next = intern(arc.next, banned.Next(subset, arc.profile, arc.mark));
+      arc.next = intern(arc.next, banned.Next(subset, arc));
       result.arcs.back().push_back(arc);
     }
   }
@@ -254,11 +260,20 @@ struct PatternCompiler::Impl {
     bool fill;
     int variable;
     std::set<std::int32_t> known;  // values met so far: 0 for nothing, else 1 + the content
+    bool spreads = false;          // a line is drawn: only what `preserving` asks is judged here
   };
   struct Merge {
     std::size_t change;
     int left, right;  // labels
     NodeId node;
+  };
+  // `sharing blocked`: an instance of `node` that the item of `label` bears may have no holder outside the match, but one that
+  // holds it through a node that the item's bundle says is shared (`free`; -1: none says so).
+  struct Watch {
+    int label;
+    NodeId node;
+    int free;
+    std::vector<NodeId> mentioned;  // it is about this node if it is the nearest above one of these that the item bears
   };
   // A setting whose content is that of a variable.
   struct Borrowed {
@@ -271,6 +286,7 @@ struct PatternCompiler::Impl {
   std::vector<Borrowed> borrowed;
   std::vector<Copy> copies;
   std::vector<Merge> merges;
+  std::vector<Watch> watches;
   int variables = 0;  // those of the rule, then one for each copy
   std::vector<GapInfo> gaps;
   std::vector<Spread> spreads;
@@ -285,6 +301,7 @@ struct PatternCompiler::Impl {
   Alphabet contents;           // that are compared or copied
   std::vector<Content> lists;  // by content: the same as trees
   KeyPool letters;             // where what is asked cannot be told before: all of an annotated letter
+  const Judge* judge = nullptr;
 
   Impl(const Rule& r, const RuleSpace& s) : rule(r), space(s) {
     mark_count = static_cast<int>(rule.labels.size());
@@ -296,9 +313,29 @@ struct PatternCompiler::Impl {
     CollectSpreads();
     CollectCopies();
     for (const Clause* clause : ClausesOf(rule)) AddClause(*clause);
+    if (rule.sharing_blocked) CollectWatches();
     for (const Change& change : rule.changes) {
       for (const Setting& setting : change.settings) {
         if (setting.variable >= 0) borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
+      }
+    }
+  }
+
+  void CollectWatches() {
+    for (std::size_t label = 0; label < rule.labels.size(); ++label) {
+      if (!changed[label] || rule.KindOf(static_cast<int>(label)) != Clause::LabelKind::kSlot) continue;
+      std::vector<NodeId> shared;
+      const std::vector<NodeId> mentioned = MentionedFor(rule, static_cast<int>(label), &shared);
+      std::set<NodeId> above;
+      for (NodeId node : mentioned) {
+        for (; node != kSlotNode; node = space.tree()[node].mother) above.insert(node);
+      }
+      for (NodeId node : above) {
+        int free = -1;
+        for (NodeId at = node; at != kSlotNode && free < 0; at = space.tree()[at].mother) {
+          if (std::find(shared.begin(), shared.end(), at) != shared.end()) free = at;
+        }
+        watches.push_back({static_cast<int>(label), node, free, mentioned});
       }
     }
   }
@@ -310,6 +347,13 @@ struct PatternCompiler::Impl {
       if (change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs) {
         copies.push_back({i, change.source, change.target, change.node, change.member,
                           change.op == Change::Op::kFillAs, variables++, {}});
+      } else if (change.op == Change::Op::kSpread && rule.preserving) {
+        // What travels must be known where it is judged.
+        Member facing = change.member;
+        if (facing.which == Member::Which::kWhole) {
+          facing.which = Position(change.source) < Position(change.target) ? Member::Which::kLast : Member::Which::kFirst;
+        }
+        copies.push_back({i, change.source, change.target, change.node, facing, false, variables++, {}, true});
       } else if (change.op == Change::Op::kMerge) {
         const bool forward = Position(change.source) < Position(change.target);
         merges.push_back({i, forward ? change.source : change.target, forward ? change.target : change.source, change.node});
@@ -600,7 +644,9 @@ struct PatternCompiler::Impl {
   int CopyField(std::size_t i) const { return DomainField() + 1 + static_cast<int>(i); }  // as its source
   enum MergeAnswer { kLastContent, kFirstContent, kGoesOn, kFirstIsHeldLeft, kMergeFields };
   int MergeField(std::size_t i) const { return CopyField(copies.size()) + kMergeFields * static_cast<int>(i); }
-  int LetterField() const { return MergeField(merges.size()); }  // number of the letter, where copies ask of all of it
+  enum WatchAnswer { kBears, kHeldFromLeft, kHeldToRight, kSeveral, kFreeBears, kFreeFromLeft, kAsked, kWatchFields };
+  int WatchField(std::size_t i) const { return MergeField(merges.size()) + kWatchFields * static_cast<int>(i); }
+  int LetterField() const { return WatchField(watches.size()); }  // number of the letter, where copies ask of all of it
   int ProfileSize() const { return LetterField() + 1; }
 
   // What a letter says to one spread.
@@ -652,6 +698,7 @@ struct PatternCompiler::Impl {
       profile[CopyField(i)] = source;
       copies[i].known.insert(source);
     }
+    for (std::size_t i = 0; i < watches.size(); ++i) DescribeWatch(letter, watches[i], &profile[WatchField(i)]);
     for (std::size_t i = 0; i < merges.size(); ++i) {
       std::int32_t* answers = &profile[MergeField(i)];
       const NodeId node = merges[i].node;
@@ -660,7 +707,8 @@ struct PatternCompiler::Impl {
       answers[kGoesOn] = HoldsOn(letter, node);
       answers[kFirstIsHeldLeft] = (space.Marks(letter, node) & kFromLeft) != 0;
     }
-    if (!copies.empty()) profile[LetterField()] = letters.Intern(letter);
+    if (!copies.empty() || rule.preserving || rule.prefer != Rule::Prefer::kNone)
+      profile[LetterField()] = letters.Intern(letter);
     profile[DomainField()] = rule.within != Domain::kStem || (space.Around(letter) & kInStem);
     for (std::size_t i = 0; i < agreeing.size(); ++i) {
       profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
@@ -809,6 +857,24 @@ struct PatternCompiler::Impl {
     return true;
   }
 
+  void DescribeWatch(const Key& letter, const Watch& watch, std::int32_t* answers) const {
+    const int count = space.Of(letter[0], watch.node).count;
+    const std::int32_t marks = space.Marks(letter, watch.node);
+    answers[kBears] = count > 0;
+    answers[kHeldFromLeft] = count > 0 && (marks & kFromLeft);
+    answers[kHeldToRight] = count > 0 && (marks & kToRight);
+    answers[kSeveral] = count > 1;
+    if (watch.free >= 0) {
+      const auto free = static_cast<NodeId>(watch.free);
+      answers[kFreeBears] = space.Of(letter[0], free).count > 0;
+      answers[kFreeFromLeft] = answers[kFreeBears] && (space.Marks(letter, free) & kFromLeft);
+    }
+    answers[kAsked] = std::any_of(watch.mentioned.begin(), watch.mentioned.end(), [&](NodeId node) {
+      while (node != kSlotNode && space.Of(letter[0], node).count == 0) node = space.tree()[node].mother;
+      return node == watch.node;
+    });
+  }
+
   // The tag tests of the label's clause.
   bool TagsAllow(const Key& letter, int label) const {
     for (const ClausePrograms& programs : clauses) {
@@ -852,6 +918,9 @@ struct PatternCompiler::Impl {
   MarkedMachine BuildMain(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
   MarkedMachine BuildUnless(const Program& program, std::size_t max_states) const;
   MarkedMachine BuildClause(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
+  std::vector<MarkedMachine> Preferred(const std::vector<MarkedMachine>& standing, const KeyPool& roles,
+                                       std::size_t max_states) const;
+  Role RoleOf(const Key& key) const;
 };
 
 bool PatternCompiler::Impl::SettingFits(const Key& letter, const Setting& setting, bool fill) const {
@@ -926,7 +995,9 @@ struct PatternCompiler::Impl::Builder {
   std::size_t VariableAt(int variable) const { return kZones + SpreadCount() + static_cast<std::size_t>(variable); }
   std::size_t ConditionAt(std::size_t i) const { return VariableAt(main ? impl.variables : 0) + i; }
   std::size_t MergeAt(std::size_t i) const { return ConditionAt(ConditionCount()) + i; }
-  std::size_t ConfigSize() const { return MergeAt(MergeCount()); }
+  std::size_t WatchAt(std::size_t i) const { return MergeAt(MergeCount()) + i; }
+  std::size_t WatchCount() const { return main ? impl.watches.size() : 0; }
+  std::size_t ConfigSize() const { return WatchAt(WatchCount()); }
   std::size_t MergeCount() const { return main ? impl.merges.size() : 0; }
   bool Merges(const Key& config, std::size_t i) const { return config[kMask] >> (SpreadCount() + i) & 1; }
 
@@ -993,7 +1064,7 @@ struct PatternCompiler::Impl::Builder {
   bool IsFinal(const Key& config) const {
     if (config[kPc] == kSuffix) return true;
     if (config[kPc] == kPrefix) return false;
-    return program.code[config[kPc]].op == Instruction::Op::kAccept;  // the end of the form is a boundary
+    return program.code[config[kPc]].op == Instruction::Op::kAccept && Settled(config);  // the end of the form is a boundary
   }
 
   // Configurations after the program consumed a slot (or, with `first`, before its first one).
@@ -1008,10 +1079,18 @@ struct PatternCompiler::Impl::Builder {
       config[kPhase] = accept ? 2 : first ? 0 : 1;
       if (accept) {
         if (first || !Complete(config)) continue;
-        if (need == 0) config = Suffix();
+        if (need == 0) config = Done(config);
       }
       result->push_back(std::move(config));
     }
+  }
+
+  // The pattern is met: what is left is to see that watched instances have no further holders.
+  Key Done(Key config) const {
+    if (Settled(config)) return Suffix();
+    config[kPhase] = 3;
+    config[kNeed] = config[kNeedLabel] = config[kSeen] = 0;
+    return config;
   }
 
   Key Suffix() const {
@@ -1030,9 +1109,9 @@ struct PatternCompiler::Impl::Builder {
   bool MarkAllowed(int mark) const { return main || own_marks.count(mark) == 0; }
 
   // The main machine emits marks itself; an unless machine reads them.
-  void Add(int from, int profile, int mark, int role, const Key& to) {
+  void Add(int from, int profile, int mark, int role, const Key& to, bool first = false) {
     const int next = Intern(to);  // may add a state
-    machine.arcs[from].push_back({profile, mark, role, next});
+    machine.arcs[from].push_back({profile, mark, role, next, first});
   }
 
   MarkedMachine Run(std::size_t max_states) {
@@ -1063,10 +1142,18 @@ struct PatternCompiler::Impl::Builder {
       Add(at, profile, -1, -1, config);
       return;
     }
+    if (config[kPhase] == 3) {
+      Key next = config;
+      if (boundary == 0 && !PassWatches(letter, -1, /*matched=*/false, &next)) return;
+      Add(at, profile, -1, -1, Done(next));
+      return;
+    }
     if (config[kPc] == kPrefix) {
-      Add(at, profile, -1, -1, config);
+      Key base = config;
+      if (boundary == 0 && !PassWatches(letter, -1, /*matched=*/false, &base)) return;
+      Add(at, profile, -1, -1, base);
       std::vector<Key> starts;
-      After(config, program.start, /*first=*/true, &starts);
+      After(base, program.start, /*first=*/true, &starts);
       for (const Key& start : starts) {
         if (start[kNeed] <= 0 || boundary >= start[kNeed]) Add(at, profile, -1, -1, start);
       }
@@ -1104,7 +1191,7 @@ struct PatternCompiler::Impl::Builder {
   }
 
   // The role of a boundary that is deleted.
-  int RoleOf(int label) const {
+  int DeletingRole(int label) const {
     Key role(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
     role[0] = label;
     return roles->Intern(role);
@@ -1118,7 +1205,7 @@ struct PatternCompiler::Impl::Builder {
       return;
     }
     if (instruction.op == Instruction::Op::kAccept) {
-      if (boundary >= config[kNeed]) next = Suffix();
+      if (boundary >= config[kNeed]) next = Done(config);
       Add(at, profile, -1, -1, next);
       return;
     }
@@ -1129,7 +1216,7 @@ struct PatternCompiler::Impl::Builder {
     }
     const int label = config[kNeedLabel] - 1;
     const bool labelled = main && label >= 0 && boundary == config[kNeed];
-    Add(at, profile, labelled ? label : -1, labelled && impl.changed[label] ? RoleOf(label) : -1, next);
+    Add(at, profile, labelled ? label : -1, labelled && impl.changed[label] ? DeletingRole(label) : -1, next);
   }
 
   const std::int32_t* Answers(const Key& letter, std::size_t spread) const {
@@ -1151,7 +1238,7 @@ struct PatternCompiler::Impl::Builder {
   std::vector<Key> Walk(const Key& config, const Key& letter, std::int32_t* merging) const {
     std::vector<Key> result{config};
     PassConditions(letter, &result[0]);
-    if (!PassMerges(letter, -1, &result[0], merging)) return {};
+    if (!PassMerges(letter, -1, &result[0], merging) || !PassWatches(letter, -1, /*matched=*/false, &result[0])) return {};
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       const std::int32_t zone = config[kZones + j];
       if (zone == kBefore || zone == kDone) continue;
@@ -1174,6 +1261,50 @@ struct PatternCompiler::Impl::Builder {
       if (!clause->conditions[i].OfInstance() || state != kStillHeld) continue;
       if (!ConditionAnswers(letter, i)[kBetween]) state = kLost;
     }
+  }
+
+  // Watched instances past one letter. False: one has a holder outside the match.
+  bool PassWatches(const Key& letter, int label, bool matched, Key* config) const {
+    for (std::size_t i = 0; i < WatchCount(); ++i) {
+      const Watch& watch = impl.watches[i];
+      if (clause->labels.count(watch.label) == 0) continue;
+      const std::int32_t* answers = &letter[impl.WatchField(i)];
+      std::int32_t& state = (*config)[WatchAt(i)];
+      const bool free = watch.free >= 0;
+      if (free && answers[kFreeBears] && !answers[kFreeFromLeft]) {  // another free node from here on
+        if (state == kFreelyHeld) state = kHeldOutside;
+        if (state == kFreelyOwed) state = kOwed;
+      }
+      if (label == watch.label) {
+        if (answers[kAsked] && answers[kHeldFromLeft] && state == kHeldOutside) return false;
+        const bool owes = answers[kAsked] && answers[kHeldToRight];
+        state = owes ? (free && answers[kFreeBears] ? kFreelyOwed : kOwed) : kUnheld;
+        continue;
+      }
+      if (!answers[kBears]) continue;
+      if (state == kOwed || state == kFreelyOwed) {
+        if (!answers[kHeldFromLeft]) {
+          state = kUnheld;
+        } else if (!matched && state == kOwed) {
+          return false;
+        } else if (answers[kSeveral] || !answers[kHeldToRight]) {
+          state = kUnheld;
+        }
+        continue;
+      }
+      if (!answers[kHeldFromLeft] || answers[kSeveral]) state = kUnheld;
+      if (!matched) state = std::max<std::int32_t>(state, free && answers[kFreeBears] ? kFreelyHeld : kHeldOutside);
+      if (!answers[kHeldToRight]) state = kUnheld;
+    }
+    return true;
+  }
+
+  // Are all watched instances behind their items done with?
+  bool Settled(const Key& config) const {
+    for (std::size_t i = 0; i < WatchCount(); ++i) {
+      if (config[WatchAt(i)] >= kOwed) return false;
+    }
+    return true;
   }
 
   // Merges under way: nothing but the left item's N may stand before the right item's, whose first holder is told that it
@@ -1273,6 +1404,7 @@ struct PatternCompiler::Impl::Builder {
       } else if (copy.target == label) {
         Bind(at, Key(copy.known.begin(), copy.known.end()), ways, [&](std::int32_t value, Key* role) {
           (*role)[1 + SpreadCount() + static_cast<std::size_t>(copy.variable)] = 1 + value;
+          if (copy.spreads) return true;
           const Key& annotated = impl.letters[letter[impl.LetterField()]];
           if (copy.fill && (value == 0 || impl.space.Of(annotated[0], copy.node).count > 0)) return true;
           return value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
@@ -1326,6 +1458,7 @@ struct PatternCompiler::Impl::Builder {
     }
     std::int32_t merging = 0;
     if (!MeetConditions(letter, label, &start) || !PassMerges(letter, label, &start, &merging)) return;
+    if (!PassWatches(letter, label, /*matched=*/true, &start)) return;
     if (!role.empty()) role.back() |= merging;
     ways.emplace_back(std::move(start), role);
     MeetVariables(letter, slot.test, label, &ways);
@@ -1335,10 +1468,14 @@ struct PatternCompiler::Impl::Builder {
       ways = std::move(next);
     }
     for (const auto& [key, asks] : ways) {
+      if (impl.rule.preserving && !asks.empty() &&
+          !impl.judge->preserves(impl.RoleOf(asks), impl.letters[letter[impl.LetterField()]])) {
+        continue;
+      }
       std::vector<Key> after;
       After(key, slot.next, /*first=*/false, &after);
       const int role_id = asks.empty() ? MergingRole(merging) : roles->Intern(asks);
-      for (const Key& next : after) Add(at, profile, slot.mark, role_id, next);
+      for (const Key& next : after) Add(at, profile, slot.mark, role_id, next, config[kPhase] == 0);
     }
   }
 
@@ -1425,11 +1562,11 @@ namespace {
 // Strings marked as a match of the rule on which an unless-pattern matches the same labelled slots.
 Subsets UnlessBan(const MarkedMachine& unless, std::set<int> labels) {
   return Subsets(unless.initial, unless.final,
-                 [unless, labels](int state, int profile, int mark, std::vector<int>* next) {
-                   const bool bound = labels.count(mark) > 0;
+                 [unless, labels](int state, const MarkedArc& read, std::vector<int>* next) {
+                   const bool bound = labels.count(read.mark) > 0;
                    for (const MarkedArc& arc : unless.arcs[state]) {
-                     if (arc.profile != profile) continue;
-                     if (bound ? arc.mark == mark : arc.mark < 0) next->push_back(arc.next);
+                     if (arc.profile != read.profile) continue;
+                     if (bound ? arc.mark == read.mark : arc.mark < 0) next->push_back(arc.next);
                    }
                  });
 }
@@ -1443,10 +1580,10 @@ Subsets NearerBan(const MarkedMachine& machine, int left, int right, bool left_m
   for (std::size_t s = 0; s < machine.arcs.size(); ++s) final[4 * s + 3] = machine.final[s];
   const int moved = left_moves ? left : right;
   return Subsets(initial, final,
-                 [machine, left, right, left_moves, moved](int state, int profile, int mark, std::vector<int>* next) {
-                   const int progress = state % 4;
+                 [machine, left, right, left_moves, moved](int state, const MarkedArc& read, std::vector<int>* next) {
+                   const int progress = state % 4, mark = read.mark;
                    for (const MarkedArc& arc : machine.arcs[state / 4]) {
-                     if (arc.profile != profile) continue;
+                     if (arc.profile != read.profile) continue;
                      int after = progress;
                      if (mark == left) {
                        if (progress != 0 || (left_moves ? arc.mark == left || arc.mark == right : arc.mark != left))
@@ -1474,14 +1611,74 @@ Subsets ForestalledBan(const MarkedMachine& earlier, const std::vector<char>& ch
   std::vector<char> final(earlier.arcs.size() * 2, 0);
   for (int s : earlier.initial) initial.push_back(2 * s);
   for (std::size_t s = 0; s < earlier.arcs.size(); ++s) final[2 * s + 1] = earlier.final[s];
-  return Subsets(initial, final, [earlier, changed](int state, int profile, int mark, std::vector<int>* next) {
-    const bool changes = mark >= 0 && mark < static_cast<int>(changed.size()) && changed[static_cast<std::size_t>(mark)];
+  return Subsets(initial, final, [earlier, changed](int state, const MarkedArc& read, std::vector<int>* next) {
+    const bool changes = read.mark >= 0 && read.mark < static_cast<int>(changed.size()) &&
+                         changed[static_cast<std::size_t>(read.mark)];
     for (const MarkedArc& arc : earlier.arcs[state / 2]) {
-      if (arc.profile != profile) continue;
+      if (arc.profile != read.profile) continue;
       const bool theirs = arc.mark >= 0 && arc.role >= 0;  // a role without a label changes no item
       next->push_back(2 * arc.next + (state % 2 == 1 || (changes && theirs) ? 1 : 0));
     }
   });
+}
+
+// Strings marked as a match that gives way to another: one in conflict with it whose first slot, or if that is the same
+// whose source, stands further the preferred way. State of the other run: where the first slots stand to each other, where
+// the sources do, and whether both asked one letter for what cannot be met.
+enum Order : int { kNeither = 0, kTheirsFirst = 1, kOursFirst = 2, kTogether = 3 };
+
+int OrderAfter(int order, bool theirs, bool ours) {
+  if (order != kNeither) return order;
+  return theirs ? (ours ? kTogether : kTheirsFirst) : ours ? kOursFirst : kNeither;
+}
+
+struct PreferredBan {
+  const MarkedMachine& theirs;
+  bool left;                        // prefer left, else right
+  int our_source, their_source;     // labels, or -1
+  std::function<bool(int our_role, int their_role, int profile)> conflict;
+
+  bool Beaten(int firsts, int sources) const {
+    if (firsts != kTogether) return firsts == (left ? kTheirsFirst : kOursFirst);
+    // A match without a source counts as standing before all others.
+    if (their_source < 0) return left && our_source >= 0;
+    if (our_source < 0) return !left;
+    return sources == (left ? kTheirsFirst : kOursFirst);
+  }
+
+  Subsets Build() const {
+    constexpr int kStates = 32;  // 4 orders of first slots, 4 of sources, conflict or not
+    std::vector<int> initial;
+    std::vector<char> final(theirs.arcs.size() * kStates, 0);
+    for (int s : theirs.initial) initial.push_back(s * kStates);
+    for (std::size_t s = 0; s < theirs.arcs.size(); ++s) {
+      for (int rest = 0; rest < kStates; ++rest)
+        final[s * kStates + static_cast<std::size_t>(rest)] =
+            theirs.final[s] && (rest & 1) && Beaten(rest / 2 % 4, rest / 8);
+    }
+    const PreferredBan ban = *this;
+    return Subsets(initial, final, [ban](int state, const MarkedArc& ours, std::vector<int>* next) {
+      const int rest = state % kStates;
+      for (const MarkedArc& arc : ban.theirs.arcs[static_cast<std::size_t>(state / kStates)]) {
+        if (arc.profile != ours.profile) continue;
+        const bool their_source = ban.their_source >= 0 && arc.mark == ban.their_source;
+        const bool our_source = ban.our_source >= 0 && ours.mark == ban.our_source;
+        const int firsts = OrderAfter(rest / 2 % 4, arc.first, ours.first);
+        const int sources = OrderAfter(rest / 8, their_source, our_source);
+        const bool conflict =
+            (rest & 1) || (arc.role >= 0 && ours.role >= 0 && ban.conflict(ours.role, arc.role, ours.profile));
+        next->push_back(arc.next * kStates + sources * 8 + firsts * 2 + (conflict ? 1 : 0));
+      }
+    });
+  }
+};
+
+// The source in the first change that has one, as a slot of the pattern.
+int FirstSource(const Rule& rule, const std::set<int>& labels) {
+  for (const Change& change : rule.changes) {
+    if (change.source >= 0 && labels.count(change.source) > 0) return change.source;
+  }
+  return -1;
 }
 
 }  // namespace
@@ -1511,7 +1708,8 @@ MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t
   return machine;
 }
 
-PatternMachine PatternCompiler::Build(std::size_t max_states) const {
+PatternMachine PatternCompiler::Build(std::size_t max_states, const Judge& judge) const {
+  impl_->judge = &judge;
   KeyPool roles;
   std::vector<MarkedMachine> able, machines;
   for (std::size_t c = 0; c < impl_->clauses.size(); ++c) {
@@ -1524,6 +1722,7 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
     }
     machines.push_back(std::move(machine));
   }
+  if (impl_->rule.prefer != Rule::Prefer::kNone) machines = impl_->Preferred(machines, roles, max_states);
   PatternMachine result;
   for (const MarkedMachine& machine : machines) {
     const int first = result.states;
@@ -1537,14 +1736,42 @@ PatternMachine PatternCompiler::Build(std::size_t max_states) const {
       for (const MarkedArc& arc : arcs) result.arcs.back().push_back({arc.profile, arc.role, first + arc.next});
     }
   }
-  const std::size_t spread_count = impl_->spreads.size();
-  for (int i = 0; i < roles.size(); ++i) {
-    Role role;
-    role.label = roles[i][0];
-    for (std::size_t j = 0; j < spread_count; ++j) role.asks.push_back(static_cast<Role::Ask>(roles[i][1 + j]));
-    role.values.assign(roles[i].begin() + 1 + static_cast<std::ptrdiff_t>(spread_count), roles[i].end() - 1);
-    role.merges = roles[i].back();
-    result.roles.push_back(std::move(role));
+  for (int i = 0; i < roles.size(); ++i) result.roles.push_back(impl_->RoleOf(roles[i]));
+  return result;
+}
+
+Role PatternCompiler::Impl::RoleOf(const Key& key) const {
+  Role role;
+  role.label = key[0];
+  for (std::size_t j = 0; j < spreads.size(); ++j) role.asks.push_back(static_cast<Role::Ask>(key[1 + j]));
+  role.values.assign(key.begin() + 1 + static_cast<std::ptrdiff_t>(spreads.size()), key.end() - 1);
+  role.merges = key.back();
+  return role;
+}
+
+// Each clause without the matches that give way to a preferred one. One that is beaten still beats others.
+std::vector<MarkedMachine> PatternCompiler::Impl::Preferred(const std::vector<MarkedMachine>& standing,
+                                                            const KeyPool& roles, std::size_t max_states) const {
+  std::vector<Role> by_number;
+  for (int i = 0; i < roles.size(); ++i) by_number.push_back(RoleOf(roles[i]));
+  std::vector<MarkedMachine> result;
+  for (std::size_t c = 0; c < standing.size(); ++c) {
+    MarkedMachine machine = standing[c];
+    for (std::size_t other = 0; other < standing.size(); ++other) {
+      if (standing[other].over_budget) machine = OverBudget();
+      if (standing[other].initial.empty() || machine.over_budget) continue;
+      const PreferredBan ban{standing[other], rule.prefer == Rule::Prefer::kLeft, FirstSource(rule, clauses[c].labels),
+                             FirstSource(rule, clauses[other].labels),
+                             [&](int ours, int theirs, int profile) {
+                               const Key& described = profile_keys[profile];
+                               if (described[kProfileKind] >= kBoundaryKind) return false;
+                               return judge->conflict(by_number[static_cast<std::size_t>(ours)],
+                                                      by_number[static_cast<std::size_t>(theirs)],
+                                                      letters[described[LetterField()]]);
+                             }};
+      machine = Minus(machine, ban.Build(), max_states);
+    }
+    result.push_back(std::move(machine));
   }
   return result;
 }

@@ -21,6 +21,7 @@
 // Tested by tests/agreement/.
 #pragma once
 
+#include <functional>
 #include <map>
 #include <memory>
 #include <vector>
@@ -76,13 +77,20 @@ class PatternCompiler {
   int profiles() const;
   const std::vector<Spread>& spreads() const;
   // A change that copies has a variable of its own in Role::values; this is the content that a value of it stands for.
-  std::size_t VariableOf(std::size_t change) const;
+  std::size_t VariableOf(std::size_t change) const;  // so has a spread, where the rule is `preserving`
   const Content& ContentOf(int value) const;
   // Does some gap ask of slots that a sweep has passed whether one of them would do, being nearer?
   bool AsksOfSlotsBehind(bool rightward) const;
 
+  // What only the requests can tell (compile/requests.h).
+  struct Judge {
+    // Do two matches with these roles at one letter ask for what cannot both be met? Asked where one is to be preferred.
+    std::function<bool(const Role& a, const Role& b, const Key& annotated)> conflict;
+    // Is the letter spelled by a symbol of `segments` after what this role alone asks? Asked of `preserving` rules.
+    std::function<bool(const Role& role, const Key& annotated)> preserves;
+  };
   // The machine over all profiles seen so far. No states: the pattern never matches.
-  PatternMachine Build(std::size_t max_states) const;
+  PatternMachine Build(std::size_t max_states, const Judge& judge) const;
 
  private:
   struct Impl;

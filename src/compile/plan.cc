@@ -110,6 +110,51 @@ void AddVisible(const Tree& tree, const Change& change, NodeSet* visible) {
   }
 }
 
+// What a set says of nodes: those it mentions, and those it says are shared. `long` is said of the root.
+void Mentioned(const SlotTest& test, bool denied, std::vector<NodeId>* nodes, std::vector<NodeId>* shared) {
+  for (const FeatureTest& feature : test.bundle) {
+    nodes->push_back(feature.node);
+    const bool says_shared = feature.kind == FeatureTest::Kind::kShared || feature.kind == FeatureTest::Kind::kLong ||
+                             feature.kind == FeatureTest::Kind::kHalfFirst ||
+                             feature.kind == FeatureTest::Kind::kHalfSecond;
+    if (says_shared && !denied) shared->push_back(feature.node);
+  }
+  if (test.op == SlotTest::Op::kLiteral) nodes->push_back(kRootNode);
+  for (const SlotTest& arg : test.args) Mentioned(arg, denied || test.op == SlotTest::Op::kNot, nodes, shared);
+}
+
+void MentionedAt(const Pattern& pattern, int label, std::vector<NodeId>* nodes, std::vector<NodeId>* shared) {
+  for (const PatternItem& item : pattern.items) {
+    if (item.kind == PatternItem::Kind::kSlot && item.label == label) Mentioned(item.test, false, nodes, shared);
+    for (const Pattern& alternative : item.alternatives) MentionedAt(alternative, label, nodes, shared);
+  }
+}
+
+void AddMentioned(const Change& change, int label, std::vector<NodeId>* nodes) {
+  if (change.target != label && !(change.op == Change::Op::kMerge && change.source == label)) return;
+  switch (change.op) {
+    case Change::Op::kSpread:
+    case Change::Op::kDelink:
+    case Change::Op::kSetAs:
+    case Change::Op::kFillAs:
+    case Change::Op::kMerge:
+      nodes->push_back(change.node);
+      break;
+    case Change::Op::kSet:
+    case Change::Op::kFill:
+      for (const Setting& setting : change.settings) nodes->push_back(setting.node);
+      break;
+    case Change::Op::kSetLiteral:
+    case Change::Op::kLengthen:
+    case Change::Op::kShorten:
+      nodes->push_back(kRootNode);
+      break;
+    case Change::Op::kInsert:
+    case Change::Op::kDelete:
+      break;
+  }
+}
+
 void AddClause(const Tree& tree, const Clause& clause, Plan* plan) {
   AddPattern(tree, clause.where, plan);
   for (const Pattern& pattern : clause.unless) AddPattern(tree, pattern, plan);
@@ -122,6 +167,18 @@ void AddClause(const Tree& tree, const Clause& clause, Plan* plan) {
 
 }  // namespace
 
+std::vector<NodeId> MentionedFor(const Rule& flattened, int label, std::vector<NodeId>* shared) {
+  std::vector<NodeId> nodes;
+  for (const Clause* clause : ClausesOf(flattened)) {
+    MentionedAt(clause->where, label, &nodes, shared);
+    for (const Condition& condition : clause->conditions) {
+      if (condition.left == label || condition.right == label) nodes.push_back(condition.node);
+    }
+  }
+  for (const Change& change : flattened.changes) AddMentioned(change, label, &nodes);
+  return nodes;
+}
+
 NodeSet NodesRead(const Rule& rule, const Tree& tree) {
   NodeSet read(tree.nodes.size(), false);
   for (const Clause* clause : ClausesOf(rule)) {
@@ -131,6 +188,14 @@ NodeSet NodesRead(const Rule& rule, const Tree& tree) {
       if (AsksOfInstance(condition)) AddUpward(tree, condition.node, &read);
     }
     for (const Change& change : clause->changes) AddLinksRead(tree, change, &read);
+  }
+  if (rule.sharing_blocked) {
+    const Rule flat = Flattened(rule);
+    std::vector<NodeId> shared;
+    for (std::size_t label = 0; label < flat.labels.size(); ++label) {
+      for (NodeId node : MentionedFor(flat, static_cast<int>(label), &shared)) AddUpward(tree, node, &read);
+    }
+    for (NodeId node : shared) AddUpward(tree, node, &read);
   }
   return read;
 }
@@ -154,6 +219,7 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   std::vector<NodeSet> reads;
   for (const Rule& rule : grammar.rules) {
     for (const Clause* clause : ClausesOf(rule)) AddClause(tree, *clause, &plan);
+    if (rule.preserving) AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
     reads.push_back(NodesRead(rule, tree));
   }
   NodeSet live(tree.nodes.size(), keep_all_links);

@@ -115,7 +115,41 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
       }
     }
   }
+  if (rule_.preserving && ReachesFurther(request, annotated)) request[0] |= kUnsure;
   return request;
+}
+
+// Is something asked of a mother that another root holds as well?
+bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) const {
+  for (std::size_t i = 0; i < nodes_.size(); ++i) {
+    if (request[1 + i] == 0) continue;
+    for (NodeId at = space_.LowestAncestor(annotated[0], nodes_[i]); at != kSlotNode && at != kRootNode;
+         at = space_.tree()[at].mother) {
+      if (space_.Marks(annotated, at) & (kObjectLeft | kObjectRight)) return true;
+    }
+  }
+  return false;
+}
+
+bool RequestSpace::InConflict(const Role& a, const Role& b, const Key& annotated) const {
+  return Clashes(Of({&a, &b}, annotated), annotated) && !Clashes(Of({&a}, annotated), annotated) &&
+         !Clashes(Of({&b}, annotated), annotated);
+}
+
+// Two contents, more lines than there is room for, or a line and a content of one node.
+bool RequestSpace::Clashes(const Key& request, const Key& annotated) const {
+  for (std::size_t i = 0; i < nodes_.size(); ++i) {
+    const std::int32_t ask = request[1 + i];
+    if (ask & kClash) return true;
+    const int count = space_.Of(annotated[0], nodes_[i]).count;
+    const int cut = (ask & kCutFirst ? 1 : 0) + (ask & kCutLast ? 1 : 0) + (ask & kCutMiddle ? count - 2 : 0);
+    const bool over = space_.Marks(annotated, nodes_[i]) & kOver;  // one instance on both sides
+    const bool both = (ask & kLineLeft) && (ask & kLineRight) && !over;
+    const int lines = both ? 2 : (ask & (kLineLeft | kLineRight)) ? 1 : 0;
+    if (lines > 0 && count - cut + lines > space_.Room(annotated[0], nodes_[i])) return true;
+    if ((ask >> kValuesShift) != 0 && (lines > 0 || cut > 0)) return true;
+  }
+  return false;
 }
 
 // The line that a spread draws, or none if the mother holds that very instance; then `held` gets its place.

@@ -14,9 +14,6 @@ class Lister {
 
   void VisitWhole(const Rule& rule, Span name) {
     if (rule.kind == Rule::Kind::kComplete) Add(name, "`complete` is");
-    if (rule.prefer != Rule::Prefer::kNone) Add(name, "`prefer` is");
-    if (rule.sharing_blocked) Add(name, "`sharing blocked` is");
-    if (rule.preserving) Add(name, "`preserving` is");
   }
 
   void VisitClause(const Rule& rule, const Clause& clause) {

@@ -139,6 +139,7 @@ std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector
       continue;
     }
     ++tally->pairs;
+    for (const auto& [reason, count] : expected.blocked) tally->blocked[reason] += static_cast<std::uint64_t>(count);
     if (refused) {
       tally->ambiguous += !expected.ambiguous.empty();
       tally->reaching += expected.ambiguous.empty();

@@ -538,9 +538,6 @@ rule "final vowels" {
 // Each is answered at its place as long as compiler and interpreter together do not run it.
 TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
   const Mistake rows[] = {
-      {"rule \"r\" { where X:V delete X prefer left }", Kind::kNotSupportedYet, "\"r\"", "`prefer`"},
-      {"rule \"r\" { where X:V delete X preserving }", Kind::kNotSupportedYet, "\"r\"", "`preserving`"},
-      {"sharing blocked rule \"r\" { where X:V delete X }", Kind::kNotSupportedYet, "\"r\"", "`sharing blocked`"},
       {"rule \"r\" { where X:V set X /p/ iterate rightward }", Kind::kNotSupportedYet, "set X /p/", "iterates"},
       {"rule \"r\" { where X:V delink X.-voice }", Kind::kNotSupportedYet, "delink X.-voice", "one member"},
       {"rule \"r\" { where X:V insert E:/i/ after X spread X.back to E }", Kind::kNotSupportedYet,

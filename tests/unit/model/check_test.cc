@@ -297,7 +297,7 @@ rule "three" { where {/p/ /t/ | /s/} X:[] but not V Y:empty  set X [Labial round
 }
 
 TEST_CASE("check: constructs of later releases are passed on, once each", "[unit]") {
-  for (const char* text : {"rule \"r\" { where X:[+nasal] delete X prefer left }", "syllable { peak [+syll] }",
+  for (const char* text : {"rule \"r\" { where X:[+nasal] delete X repeat 2 }", "syllable { peak [+syll] }",
                            "melody Tone { within word }"}) {
     const Loaded loaded = Load(kHead + text);
     CAPTURE(text, loaded.Messages());
