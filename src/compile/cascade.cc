@@ -375,7 +375,11 @@ class CascadeCompiler {
                         rule.span,
                         fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}",
                                     possibly, rule.name, form, Explained(rule, form)),
-                        "narrow the pattern so that only one of them matches, or let the rule `iterate`",
+                        rule.prefer == Rule::Prefer::kNone
+                            ? "narrow the pattern so that only one of them matches, say which to `prefer`, or let the "
+                              "rule `iterate`"
+                            : "`prefer` decides between matches that meet at one slot; these meet at a node that several "
+                              "slots share: narrow the pattern",
                         {}});
       if (segment_.exact) return false;
     }

@@ -20,6 +20,7 @@ class Lister {
     VisitBoundaries(clause.where);
     for (const Pattern& unless : clause.unless) VisitUnless(unless);
     for (const Change& change : clause.changes) VisitChange(rule, change);
+    VisitGiven(clause);
   }
 
  private:
@@ -51,6 +52,19 @@ class Lister {
   static bool Agrees(const SlotTest& test) {
     return std::any_of(test.bundle.begin(), test.bundle.end(), [](const FeatureTest& f) { return f.variable >= 0; }) ||
            std::any_of(test.args.begin(), test.args.end(), Agrees);
+  }
+
+  // Whether a line crosses then depends on both at once.
+  void VisitGiven(const Clause& clause) {
+    const Change* first = nullptr;
+    for (const Change& change : clause.changes) {
+      const bool gives = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs ||
+                         change.op == Change::Op::kSetLiteral;
+      if (!gives) continue;
+      if (first != nullptr && change.target != first->target)
+        Add(change.span, "giving two items of one match new roots or copies is", "make two rules, one after the other");
+      first = &change;
+    }
   }
 
   void VisitChange(const Rule& rule, const Change& change) {

@@ -56,7 +56,7 @@ class Decorator {
         rule_->by_word = true;
         return true;
       case Construct::kPrefer:
-        if (Chance(rng_, 0.7) && !Contest()) return false;
+        if (Slots().empty() || (Chance(rng_, 0.7) && !Contest())) return false;
         rule_->prefer = Random({Rule::Prefer::kLeft, Rule::Prefer::kRight});
         return true;
       case Construct::kPreserving:
@@ -234,59 +234,30 @@ class Decorator {
     return true;
   }
 
-  // A rule whose matches contend for one slot: it spreads from both sides, or gives what its neighbour has.
+  // A rule whose matches contend for one slot: it may get what any of several others has.
   bool Contest() {
-    NodeId node = Node();
-    while (tree_[node].max > 1) node = Node();
-    std::vector<PatternItem> items(3);
-    for (int i = 0; i < 3; ++i) items[static_cast<std::size_t>(i)].label = i;
-    rule_->labels = {"X", "Y", "Z"};
-    rule_->where.items = items;
+    PatternItem ends[2];
+    for (int i = 0; i < 2; ++i) {
+      ends[i].label = i;
+      if (Chance(rng_, 0.4)) ends[i].test = Slots().front()->test;
+    }
+    PatternItem any, group;
+    any.test = SlotTest();
+    group.kind = Kind::kGroup;
+    group.min = 0;
+    group.max = Random({1, 2, -1});
+    group.alternatives.resize(1);
+    group.alternatives[0].items = {any};
+    rule_->where.items = {ends[0], group, ends[1]};
+    rule_->labels = {"X", "Y"};
     rule_->unless.clear();
     rule_->mode = Rule::Mode::kAtOnce;
-    Change delink;
-    delink.op = Op::kDelink;
-    delink.target = 1;
-    delink.node = node;
-    Change spread = delink;
-    spread.op = Op::kSpread;
-    spread.source = Chance(rng_, 0.5) ? 0 : 2;
-    const bool two = Chance(rng_, 0.5);
-    if (two) {  // one pattern, matched from either side
-      PatternItem group;
-      group.kind = Kind::kGroup;
-      group.min = 0;
-      group.max = -1;
-      Pattern any;
-      any.items.resize(1);
-      group.alternatives = {any};
-      rule_->where.items = {items[static_cast<std::size_t>(spread.source)], items[1]};
-      if (spread.source == 2) std::swap(rule_->where.items[0], rule_->where.items[1]);
-      rule_->where.items.insert(rule_->where.items.begin() + 1, group);
-    }
-    rule_->changes = {delink, spread};
-    FeatureTest bears;
-    bears.node = node;
-    for (PatternItem& item : rule_->where.items) {
-      if (item.label == spread.source) Require(&item, bears);
-    }
-    if (Chance(rng_, 0.5)) return true;
-    // α: what the neighbour has, whichever of two it is.
-    NodeId feature = Node();
-    while (tree_[feature].type != TreeNode::Type::kBinary || tree_[feature].max > 1) feature = Node();
-    FeatureTest agrees;
-    agrees.kind = FeatureTest::Kind::kAgrees;
-    agrees.node = feature;
-    agrees.variable = 0;
-    rule_->variables = 1;
-    for (PatternItem& item : rule_->where.items) {
-      if (item.label == spread.source) Require(&item, agrees);
-    }
-    Change set;
-    set.op = Op::kSet;
-    set.target = 1;
-    set.settings = {{feature, {}, 0, false}};
-    rule_->changes = {set};
+    Change change;
+    change.op = Op::kSetAs;
+    change.node = Chance(rng_, 0.2) ? kRootNode : NodeOf(grammar_, "Place");
+    change.target = Below(rng_, 2);
+    change.source = 1 - change.target;
+    rule_->changes = {change};
     return true;
   }
 
