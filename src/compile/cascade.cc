@@ -34,6 +34,7 @@ class CascadeCompiler {
   CascadeCompiler(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,
                   const std::vector<Letter>* testing)
       : grammar_(grammar),
+        steps_(StepsOf(grammar)),
         limits_(limits),
         diagnostics_(diagnostics),
         testing_(testing != nullptr),
@@ -54,8 +55,8 @@ class CascadeCompiler {
   std::unique_ptr<CascadeData> Run() {
     for (const InputLetter& input : data_->inputs) rests_[input.parts.class_id].insert(input.parts.rest);
     Open(testing_ ? AnyString(InputClasses()) : UnderlyingForms(), /*exact=*/true);
-    for (std::size_t i = 0; i < grammar_.rules.size(); ++i) {
-      if (!AddRule(static_cast<int>(i))) return nullptr;
+    for (std::size_t i = 0; i < steps_.size(); ++i) {
+      if (!AddStep(i)) return nullptr;
     }
     Close();
     if (!testing_) CheckSpelling();
@@ -264,8 +265,8 @@ class CascadeCompiler {
     return letters;
   }
 
-  bool AddRule(int index) {
-    const Rule& rule = grammar_.rules[index];
+  bool AddStep(std::size_t index) {
+    const Rule& rule = steps_[index];
     if (rule.probability < 1 && !DrawsLocally(rule)) {
       diagnostics_.Error(Kind::kNotSupportedYet, rule.span,
                          fmt::format("rule \"{}\" is optional at each site and changes several items of a match at once: "
@@ -294,7 +295,7 @@ class CascadeCompiler {
       over = composed.arcs.size() > limits_.states || composed.ArcCount() > limits_.arcs;
     }
     if (over) {
-      if (segment_.rules.empty()) {
+      if (index == opened_at_) {
         diagnostics_.Error(Kind::kLimit, rule.span,
                            fmt::format("rule \"{}\" alone makes a machine of more than {} states or {} arcs", rule.name,
                                        limits_.states, limits_.arcs),
@@ -307,10 +308,11 @@ class CascadeCompiler {
       if (!exact) outputs = AnyString(ClassesWritten(current_));
       Close();
       Open(std::move(outputs), exact);
-      return AddRule(index);
+      opened_at_ = index;
+      return AddStep(index);
     }
     current_ = std::move(composed);
-    segment_.rules.push_back(index);
+    if (index >= grammar_.fusions.size()) segment_.rules.push_back(static_cast<int>(index - grammar_.fusions.size()));
     return true;
   }
 
@@ -412,6 +414,7 @@ class CascadeCompiler {
            {}});
       if (segment_.exact) return false;
     }
+    if (rule.kind == Rule::Kind::kComplete) return true;  // it need not find anything
     const bool applies = !ShortestThrough(composed, flagged(kFlagChanged), &at).empty();
     if (!applies) {
       diagnostics_.Warning(
@@ -434,7 +437,7 @@ class CascadeCompiler {
     const std::vector<Reading> readings = Readings(text);
     if (readings.empty()) return std::nullopt;
     Form form = readings.front().form;
-    for (const Rule& earlier : grammar_.rules) {
+    for (const Rule& earlier : steps_) {
       if (&earlier == &rule) break;
       form = ApplyRule(grammar_, earlier, form).form;
     }
@@ -515,7 +518,7 @@ class CascadeCompiler {
           Bracketed(tree));
     }
     diagnostics_.Add(
-        {Kind::kNoSymbol, DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
+        {Kind::kNoSymbol, grammar_.strict || DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
   }
 
   std::string Bracketed(const FeatureTree& tree) const {
@@ -582,6 +585,7 @@ class CascadeCompiler {
   }
 
   const Grammar& grammar_;
+  const std::vector<Rule> steps_;
   const Limits& limits_;
   Diagnostics& diagnostics_;
   bool testing_;
@@ -591,6 +595,7 @@ class CascadeCompiler {
   Tape current_;
   Segment segment_;
   std::chrono::steady_clock::time_point opened_;
+  std::size_t opened_at_ = 0;  // the first step of the segment
   std::map<std::pair<int, int>, bool> spelled_;
   std::vector<FeatureTree> data_roots_;
   bool data_surfaces_done_ = false;

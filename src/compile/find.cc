@@ -254,6 +254,82 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
   return {std::move(tape), over_budget};
 }
 
+// ---- complete ---------------------------------------------------------------------------------
+namespace {
+
+class Completing {
+ public:
+  explicit Completing(const RequestSpace& requests) : requests_(requests), space_(requests.space()) {}
+
+  Key Of(const Key& letter) const {
+    Key request = requests_.None();
+    if (!space_.IsSlot(letter[0])) return request;
+    const std::optional<FeatureTree> root = RootContent(space_.classes()[letter[0]].visible);
+    if (!root.has_value()) return request;
+    const Inventory& inventory = space_.classes().grammar().inventory;
+    const int symbol = inventory.Spell(*root).symbol;
+    if (symbol < 0) return request;
+    const FeatureTree& full = inventory.symbols[static_cast<std::size_t>(symbol)].full;
+    if (!Ask(*root, full, letter, &request)) return requests_.None();
+    if (requests_.ReachesFurther(request, letter)) request[0] |= kUnsure;
+    return request;
+  }
+
+ private:
+  // Asks for the kinds of daughters that `full` has and `there` has not. False: one would cross a line.
+  bool Ask(const FeatureTree& there, const FeatureTree& full, const Key& letter, Key* request) const {
+    for (NodeId kind : space_.tree()[full.node].daughters) {
+      const Content wanted = OfKind(full, kind), borne = OfKind(there, kind);
+      if (wanted.empty()) continue;
+      if (borne.empty()) {
+        const bool fits =
+            std::all_of(wanted.begin(), wanted.end(), [&](const FeatureTree& tree) { return Fits(tree, letter); });
+        if (!fits) return false;
+        (*request)[static_cast<std::size_t>(1 + requests_.IndexOf(kind))] = requests_.AskFor(wanted);
+      } else if (borne.size() == 1 && wanted.size() == 1) {
+        if (!Ask(borne.front(), wanted.front(), letter, request)) return false;
+      }
+    }
+    return true;
+  }
+
+  static Content OfKind(const FeatureTree& mother, NodeId kind) {
+    Content content;
+    for (const FeatureTree& daughter : mother.daughters) {
+      if (daughter.node == kind) content.push_back(daughter);
+    }
+    return content;
+  }
+
+  bool Fits(const FeatureTree& tree, const Key& letter) const {
+    if (space_.Marks(letter, tree.node) & kOver) return false;
+    return std::all_of(tree.daughters.begin(), tree.daughters.end(),
+                       [&](const FeatureTree& daughter) { return Fits(daughter, letter); });
+  }
+
+  const RequestSpace& requests_;
+  const RuleSpace& space_;
+};
+
+}  // namespace
+
+Found FindIncomplete(const Tape& annotated, const RequestSpace& requests, const Limits& limits) {
+  const Completing completing(requests);
+  const std::size_t nodes = requests.nodes().size();
+  Tape tape = PassRightward(
+      annotated, Key{},
+      [&](const Key& state, const Key& symbol) {
+        PassStep step{state, symbol};
+        Append(&step.symbol, completing.Of(symbol));
+        Append(&step.symbol, Key(nodes, -1));
+        Append(&step.symbol, Key(nodes, 0));
+        return step;
+      },
+      limits.step_states);
+  const bool over_budget = tape.starts.empty() && !annotated.starts.empty();
+  return {std::move(tape), over_budget};
+}
+
 // ---- iterating ------------------------------------------------------------------------------------
 namespace {
 

@@ -33,4 +33,8 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
 Found FindIterating(const Tape& annotated, PatternCompiler& pattern, const RequestSpace& requests, ContentPool& pool,
                     const Limits& limits);
 
+// `complete`: at each root that one symbol spells, what the symbol's tree has more is asked for. A root that would get a node
+// inside a span of it stays; a node that another root holds as well and that would get something marks the letter kUnsure.
+Found FindIncomplete(const Tape& annotated, const RequestSpace& requests, const Limits& limits);
+
 }  // namespace tiersmith

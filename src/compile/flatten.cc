@@ -61,6 +61,39 @@ Rule Flattened(const Rule& rule) {
   return flat;
 }
 
+Rule FusionAsRule(const Fusion& fusion, const Tree& tree) {
+  Rule rule;
+  rule.name = "fuse " + tree[fusion.node].name;
+  rule.within = Domain::kMorpheme;
+  rule.span = fusion.span;
+  rule.labels = {"X", "Y"};
+  PatternItem item, gap;
+  item.test.op = SlotTest::Op::kBundle;
+  FeatureTest bears;
+  bears.node = fusion.node;
+  item.test.bundle = {bears};
+  item.label = 0;
+  gap.kind = PatternItem::Kind::kGap;
+  gap.tier = fusion.node;
+  rule.where.items = {item, gap, item};
+  rule.where.items.back().label = 1;
+  Change merge;
+  merge.op = Change::Op::kMerge;
+  merge.source = 0;
+  merge.target = 1;
+  merge.node = fusion.node;
+  merge.span = fusion.span;
+  rule.changes = {merge};
+  return rule;
+}
+
+std::vector<Rule> StepsOf(const Grammar& grammar) {
+  std::vector<Rule> steps;
+  for (const Fusion& fusion : grammar.fusions) steps.push_back(FusionAsRule(fusion, grammar.tree));
+  steps.insert(steps.end(), grammar.rules.begin(), grammar.rules.end());
+  return steps;
+}
+
 std::vector<const Clause*> ClausesOf(const Rule& rule) {
   std::vector<const Clause*> clauses{&rule};
   for (const Clause& clause : rule.otherwise) clauses.push_back(&clause);

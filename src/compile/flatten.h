@@ -17,4 +17,10 @@ Rule Flattened(const Rule& rule);
 // The first clause and those after `otherwise`, in order.
 std::vector<const Clause*> ClausesOf(const Rule& rule);
 
+// `fuse N within morpheme` as a rule that comes before the others: neighbours with equal N are merged. Requires: no `in`.
+Rule FusionAsRule(const Fusion& fusion, const Tree& tree);
+
+// What happens to a typed form, in order: fusions, then the grammar's rules.
+std::vector<Rule> StepsOf(const Grammar& grammar);
+
 }  // namespace tiersmith

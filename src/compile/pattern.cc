@@ -426,6 +426,7 @@ struct PatternCompiler::Impl {
         const Change& other = rule.changes[j];
         if (other.op == Change::Op::kDelink && other.target == spread.target && other.node == spread.node) {
           spread.delinks = true;
+          spread.delink = static_cast<int>(j);
         }
         if (other.op == Change::Op::kInsert && Contains(other.inserted, spread.node)) {
           // The place of an insertion among the labels: half a step before or after its host.
@@ -832,11 +833,29 @@ struct PatternCompiler::Impl {
     return count == 0 || (count == 1 && (space.Marks(letter, node) & kFromLeft));
   }
 
+  // What a letter says as the source of a spread: it bears none to spread, one that faces the target, or one that does not.
+  enum Carrying : std::int32_t { kNone = 0, kFacing = 1, kHidden = 2 };
+  std::int32_t Carries(const Key& letter, const Spread& spread) const {
+    const LetterPart& slot = space.classes()[letter[0]].visible.part;
+    std::vector<const LetterPart*> all;
+    Parts(slot, spread.node, &all);
+    const std::vector<const LetterPart*> chosen =
+        Chosen(slot, spread.node, rule.changes[static_cast<std::size_t>(spread.change)].member);
+    if (chosen.empty()) return kNone;
+    const bool faces = spread.from_left ? chosen.back() == all.back() : chosen.front() == all.front();
+    return faces ? kFacing : kHidden;
+  }
+
+  // How many of the letter's own a delink takes.
+  int CutBy(const Change& delink, const Key& letter) const {
+    return static_cast<int>(Chosen(space.classes()[letter[0]].visible.part, delink.node, delink.member).size());
+  }
+
   void DescribeSpread(const Key& letter, const Spread& spread, std::int32_t* answers) const {
     const RuleSpace::Bearing& node = space.Of(letter[0], spread.node);
     const std::int32_t marks = space.Marks(letter, spread.node);
     const std::int32_t mother = space.Marks(letter, spread.mother);
-    answers[kBearsNode] = node.count > 0;
+    answers[kBearsNode] = Carries(letter, spread);
     answers[kBearsMother] = node.mother;
     answers[kLeftLine] = (marks & kFromLeft) && node.count == 1;
     answers[kLeftMother] = (mother & kFromLeft) != 0;
@@ -844,7 +863,7 @@ struct PatternCompiler::Impl {
     answers[kRightMother] = (mother & kToRight) != 0;
     answers[kHeldLeft] = node.count > 0 && (marks & kObjectLeft);
     answers[kHeldRight] = node.count > 0 && (marks & kObjectRight);
-    const int own = spread.delinks ? 0 : node.count;
+    const int own = node.count - (spread.delinks ? CutBy(rule.changes[static_cast<std::size_t>(spread.delink)], letter) : 0);
     answers[kHasRoom] = own + 1 <= space.Room(letter[0], spread.node) && MothersFit(letter, spread.node);
   }
 
@@ -1491,7 +1510,7 @@ struct PatternCompiler::Impl::Builder {
       next->emplace_back(std::move(after), with);
     };
     if (label == spread.source) {
-      if (asked != (answers[kBearsNode] != 0)) return;
+      if (answers[kBearsNode] == kHidden || asked != (answers[kBearsNode] != 0)) return;  // a hidden one would cross
       if (!asked) {
         next->emplace_back(key, role);
       } else if (spread.from_left) {

@@ -36,6 +36,7 @@ struct Spread {
   NodeId node = 0, mother = 0;
   bool from_left = true;         // the source stands left of the target
   bool delinks = false;          // the rule also delinks the target's own
+  int delink = -1;               // that change
   bool inserts_between = false;  // the rule inserts a bearer between source and target
 };
 

@@ -181,6 +181,7 @@ std::vector<NodeId> MentionedFor(const Rule& flattened, int label, std::vector<N
 
 NodeSet NodesRead(const Rule& rule, const Tree& tree) {
   NodeSet read(tree.nodes.size(), false);
+  if (rule.kind == Rule::Kind::kComplete) AddDownward(tree, kRootNode, &read);
   for (const Clause* clause : ClausesOf(rule)) {
     AddLinksRead(tree, clause->where, &read);
     for (const Pattern& pattern : clause->unless) AddLinksRead(tree, pattern, &read);
@@ -217,9 +218,9 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   plan.visible.assign(tree.nodes.size(), false);
   plan.visible[kSlotNode] = plan.visible[kRootNode] = true;
   std::vector<NodeSet> reads;
-  for (const Rule& rule : grammar.rules) {
+  for (const Rule& rule : StepsOf(grammar)) {
     for (const Clause* clause : ClausesOf(rule)) AddClause(tree, *clause, &plan);
-    if (rule.preserving) AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
+    if (rule.preserving || rule.kind == Rule::Kind::kComplete) AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
     reads.push_back(NodesRead(rule, tree));
   }
   NodeSet live(tree.nodes.size(), keep_all_links);

@@ -17,7 +17,7 @@ namespace tiersmith {
 struct Plan {
   NodeSet visible;
   std::set<int> literals;
-  std::vector<std::vector<NodeId>> live;  // before each rule, and after the last; mothers first
+  std::vector<std::vector<NodeId>> live;  // before each step (StepsOf), and after the last; mothers first
 };
 
 // The nodes whose links the rule reads.

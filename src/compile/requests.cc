@@ -24,6 +24,11 @@ std::vector<Value> BorrowedValues(const Tree& tree, const Setting& setting, int 
 RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const PatternCompiler& pattern)
     : rule_(rule), space_(space), pattern_(pattern), spreads_(pattern.spreads()) {
   std::set<NodeId> nodes;  // mothers have smaller numbers
+  if (rule.kind == Rule::Kind::kComplete) {
+    for (std::size_t node = kRootNode + 1; node < space.tree().nodes.size(); ++node) {
+      if (space.tree().Dominates(kRootNode, static_cast<NodeId>(node))) nodes.insert(static_cast<NodeId>(node));
+    }
+  }
   for (const Change& change : rule.changes) {
     for (const Setting& setting : change.settings) nodes.insert(setting.node);
     switch (change.op) {
@@ -119,7 +124,6 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
   return request;
 }
 
-// Is something asked of a mother that another root holds as well?
 bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) const {
   for (std::size_t i = 0; i < nodes_.size(); ++i) {
     if (request[1 + i] == 0) continue;
@@ -173,7 +177,26 @@ std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const K
   for (std::size_t j = 0; j < role.asks.size(); ++j) {
     if (spreads_[j].target == role.label && spreads_[j].node == change.node) AskSpread(role, j, annotated, &held);
   }
-  const std::int32_t all = (count > 0 ? kCutFirst : 0) | (count > 1 ? kCutLast : 0) | (count > 2 ? kCutMiddle : 0);
+  std::int32_t all = 0;
+  const std::vector<Value> values = ValuesOf(space_.classes()[annotated[0]].visible.part, change.node);
+  for (int i = 0; i < count; ++i) {
+    const bool first = i == 0, last = i + 1 == count;
+    bool chosen = true;
+    switch (change.member.which) {
+      case Member::Which::kWhole:
+        break;
+      case Member::Which::kFirst:
+        chosen = first;
+        break;
+      case Member::Which::kLast:
+        chosen = last;
+        break;
+      case Member::Which::kValue:
+        chosen = values[static_cast<std::size_t>(i)] == change.member.value;
+        break;
+    }
+    if (chosen) all |= first ? kCutFirst : last ? kCutLast : kCutMiddle;
+  }
   return all & ~held;
 }
 

@@ -48,6 +48,10 @@ class RequestSpace {
 
   // What the roles at one letter ask.
   Key Of(const std::vector<const Role*>& roles, const Key& annotated) const;
+  // The request for this content.
+  std::int32_t AskFor(const Content& content) const { return (1 + ContentIndex(content)) << kValuesShift; }
+  // Is something asked of a mother that another root holds as well?
+  bool ReachesFurther(const Key& request, const Key& annotated) const;
   // Would what two matches ask of one letter not go together, though each alone does?
   bool InConflict(const Role& a, const Role& b, const Key& annotated) const;
   // Both of one object.
@@ -56,7 +60,6 @@ class RequestSpace {
   const RuleSpace& space() const { return space_; }
 
  private:
-  bool ReachesFurther(const Key& request, const Key& annotated) const;
   bool Clashes(const Key& request, const Key& annotated) const;
   std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;

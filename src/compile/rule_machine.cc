@@ -270,8 +270,9 @@ RuleMachine CompileRule(const Rule& written, LetterClasses& classes, const std::
   const std::size_t most = limits.step_states;
   const Tape annotated = space.Annotate(FormsOver(classes_in, classes, space.tree()), most);
   if (annotated.starts.empty()) return {Tape{}, true};
-  Found found = rule.mode == Rule::Mode::kAtOnce ? FindAtOnce(annotated, pattern, requests, pool, limits)
-                                                 : FindIterating(annotated, pattern, requests, pool, limits);
+  Found found = rule.kind == Rule::Kind::kComplete ? FindIncomplete(annotated, requests, limits)
+                : rule.mode == Rule::Mode::kAtOnce ? FindAtOnce(annotated, pattern, requests, pool, limits)
+                                                   : FindIterating(annotated, pattern, requests, pool, limits);
   if (found.over_budget) return {Tape{}, true};
   std::vector<char> all(live_in.size(), 1), kept(live_in.size(), 0);
   for (std::size_t i = 0; i < live_in.size(); ++i) {

@@ -37,9 +37,8 @@ void Checker::Run() {
       if (!fresh) twice(pattern->name, place->second->name.span, "pattern");
       if (classes_.count(pattern->name.text) != 0)
         twice(pattern->name, classes_[pattern->name.text]->name.span, "name");
-    } else if (const auto* strict = std::get_if<syntax::Strict>(&top)) {
+    } else if (std::holds_alternative<syntax::Strict>(top)) {
       grammar_.strict = true;
-      RefuseNotRun(NotRunYet(*strict));
     } else if (const auto* said = std::get_if<syntax::Sharing>(&top)) {
       if (sharing != nullptr) twice({"sharing", said->span}, sharing->span, "default");
       sharing = said;

@@ -13,7 +13,6 @@ class Lister {
   std::vector<NotYet> Take() { return std::move(found_); }
 
   void VisitWhole(const Rule& rule, Span name) {
-    if (rule.kind == Rule::Kind::kComplete) Add(name, "`complete` is");
   }
 
   void VisitClause(const Rule& rule, const Clause& clause) {
@@ -90,8 +89,8 @@ class Lister {
     if (change.inserted_label >= 0) {
       Add(change.span, "an inserted item that other changes go on with is", "insert it with that content");
     }
-    const bool copies = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs;
-    if (change.member.which != Member::Which::kWhole && !copies) Add(change.span, "one member of a contour is");
+    const bool cuts = change.op == Change::Op::kDelink && change.member.which == Member::Which::kValue;
+    if (cuts && tree_[change.node].max > 3) Add(change.span, "one member of a contour of more than three parts is");
     VisitNode(change.node, change.span);
     for (const Setting& setting : change.settings) {
       VisitNode(setting.node, change.span);
@@ -131,12 +130,9 @@ std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree) {
   return lister.Take();
 }
 
-std::vector<NotYet> NotRunYet(const syntax::Strict& strict) {
-  return {{strict.span, "`strict` is", "take it out: trees without a symbol that data reach are errors all the same"}};
-}
-
 std::vector<NotYet> NotRunYet(const syntax::Fuse& fuse) {
-  return {{fuse.span, "`fuse` is", "take it out, or begin with a rule that spreads"}};
+  if (!fuse.in) return {};
+  return {{fuse.span, "`fuse` inside a pattern is", "take the `in` out, or begin with a rule that merges"}};
 }
 
 }  // namespace tiersmith

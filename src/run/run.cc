@@ -293,7 +293,10 @@ Runner::Answer Runner::Apply(const Form& underlying) {
       written.push_back(data.classes->Join(letter.class_id, letter.rest));
     }
     const std::optional<Form> form = Decode(written, impl_->grammar.tree);
-    if (!form.has_value()) return Answer{};
+    if (!form.has_value()) {
+      answer.outcomes.clear();
+      return answer;
+    }
     answer.outcomes.emplace_back(*form, likely.probability);
   }
   if (!answer.outcomes.empty()) answer.form = answer.outcomes.front().first;

@@ -18,6 +18,7 @@ void CompareConstruct(Construct construct, std::uint64_t seed, int rules, int fo
   Rng rng(seed + 1000 * static_cast<std::uint64_t>(construct));
   Grammar grammar = SmallGrammar();
   grammar.tags = {"stem", "prefix", "suffix", "clitic", "loan", "verb"};
+  if (construct == Construct::kComplete) OmitSome(&grammar);
   const std::vector<NamedTest> tests = NamedTests(grammar);
   const std::vector<FeatureTree> letters = LettersOf(grammar);
   for (int i = 0; i < rules; ++i) {
@@ -45,7 +46,44 @@ void CompareConstruct(Construct construct, std::uint64_t seed, int rules, int fo
   }
 }
 
+// Grammars compiled as users compile them, some of whose tiers are fused when forms are read.
+void CompareFusing(std::uint64_t seed, std::uint64_t wanted, std::size_t forms_each, Tally* tally) {
+  Rng rng(seed);
+  int refused = 0;
+  while (tally->rules < wanted) {
+    Grammar grammar = RandomGrammar(rng, 3);
+    for (const char* node : {"Place", "Laryngeal", "voice", "Coronal"}) {
+      if (Chance(rng, 0.4)) grammar.fusions.push_back({NodeOf(grammar, node), std::nullopt, {}});
+    }
+    if (Chance(rng, 0.2)) grammar.fusions.push_back({kRootNode, std::nullopt, {}});
+    const std::vector<FeatureTree> letters = LettersOf(grammar);
+    FormOptions options;
+    options.max_items = 7;
+    options.share = 0;
+    std::vector<Form> forms;
+    while (forms.size() < forms_each) {
+      Form form = Canonical(RandomForm(rng, grammar, letters, options));
+      if (!PrintForm(grammar, form).empty()) forms.push_back(std::move(form));
+    }
+    DataRow row;
+    row.underlying = PrintForm(grammar, forms[0]);
+    row.surfaces = {row.underlying};
+    grammar.data = {row};
+    bool compiled = false;
+    const std::optional<std::string> failure = CompareGrammar(grammar, forms, tally, &compiled);
+    if (failure.has_value()) FAIL("grammar " << tally->rules << " of seed " << seed << ": " << *failure);
+    REQUIRE((refused += !compiled) < 400);
+  }
+}
+
 }  // namespace
+
+TEST_CASE("random grammars that fuse", "[agreement]") {
+  Tally tally;
+  CompareFusing(SeedOr(20261209), 60, 200, &tally);
+  std::cout << "fuse: " << tally.rules << " grammars, " << tally.pairs << " pairs, " << tally.changed << " changed\n";
+  CHECK(tally.changed >= 1'000);
+}
 
 TEST_CASE("random rules with each construct of the notation", "[agreement]") {
   const std::uint64_t seed = SeedOr(20261208);

@@ -104,10 +104,13 @@ enum class Construct {
   kMerge,
   kBoundary,
   kLongInsertion,
-  kMember
+  kMember,
+  kComplete
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);
+// Takes some values out of what symbols mean in forms, as `omit` does: `complete` then has something to do.
+void OmitSome(Grammar* grammar);
 // A random rule of any shape with this construct.
 Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
                     const std::vector<FeatureTree>& letters, Construct construct);

@@ -2,6 +2,7 @@
 // further clauses, optional rules, the further changes.
 #include <algorithm>
 
+#include "model/content.h"
 #include "support/generate.h"
 #include "support/small_grammar.h"
 
@@ -81,6 +82,11 @@ class Decorator {
         return Only(Op::kInsert);
       case Construct::kMember:
         return Member();
+      case Construct::kComplete:
+        *rule_ = Rule();
+        rule_->kind = Rule::Kind::kComplete;
+        rule_->name = "complete";
+        return true;
     }
     return false;
   }
@@ -341,7 +347,7 @@ const std::vector<Construct>& AllConstructs() {
       Construct::kOptional,     Construct::kByWord,         Construct::kPrefer,       Construct::kPreserving,
       Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,         Construct::kLengthen,
       Construct::kShorten,      Construct::kMerge,          Construct::kBoundary,     Construct::kLongInsertion,
-      Construct::kMember};
+      Construct::kMember,       Construct::kComplete};
   return all;
 }
 
@@ -351,7 +357,7 @@ const char* NameOf(Construct construct) {
       "if is, is not",   "&",                 "within",           "within stem",       "only, except",  "otherwise",
       "optional",        "optional by word",  "prefer",           "preserving",        "sharing blocked", "set /k/",
       "set, fill .. as", "lengthen",          "shorten",          "merge",             "delete boundary", "insert long",
-      "delink a member"};
+      "delink a member", "complete"};
   return names[static_cast<int>(construct)];
 }
 
@@ -404,6 +410,23 @@ Form WithTags(Rng& rng, const Form& form) {
   return tagged;
 }
 
+void OmitSome(Grammar* grammar) {
+  const Tree& tree = grammar->tree;
+  for (const auto& [name, value] : {std::make_pair("voice", Value{0}), std::make_pair("ant", Value{1}),
+                                    std::make_pair("nasal", Value{0}), std::make_pair("back", Value{1})}) {
+    const NodeId node = NodeOf(*grammar, name);
+    Inventory::OmitEntry entry;
+    entry.node = node;
+    entry.value = value;
+    for (Symbol& symbol : grammar->inventory.symbols) {
+      entry.takes.push_back(BearsValue(symbol.full, node, value));
+      if (entry.takes.back()) Remove(&symbol.underlying, node);
+      Prune(tree, &symbol.underlying);
+    }
+    grammar->inventory.omitted.push_back(entry);
+  }
+}
+
 bool Decorate(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, Construct construct,
               Rule* rule) {
   return Decorator(rng, grammar, letters, rule).Add(construct);
@@ -421,6 +444,7 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
         rule.otherwise.push_back(other);
       }
     }
+    if (construct == Construct::kComplete) return rule;
     NoteEmpty(&rule.where);
     if (!Refused(grammar.tree, rule)) return rule;
   }

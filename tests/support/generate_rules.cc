@@ -273,6 +273,12 @@ class RuleMaker {
         change.before = Chance(rng_, 0.5);
         break;
       case Op::kDelete:
+      case Op::kSetAs:  // the others: generate_breadth.cc
+      case Op::kFillAs:
+      case Op::kSetLiteral:
+      case Op::kLengthen:
+      case Op::kShorten:
+      case Op::kMerge:
         break;
     }
     rule->changes.push_back(change);
@@ -322,6 +328,18 @@ const char* NameOf(Op op) {
       return "insert";
     case Op::kDelete:
       return "delete";
+    case Op::kSetAs:
+      return "set as";
+    case Op::kFillAs:
+      return "fill as";
+    case Op::kSetLiteral:
+      return "set a symbol";
+    case Op::kLengthen:
+      return "lengthen";
+    case Op::kShorten:
+      return "shorten";
+    case Op::kMerge:
+      return "merge";
   }
   return "";
 }
