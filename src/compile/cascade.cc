@@ -406,11 +406,16 @@ class CascadeCompiler {
           {Kind::kLimit,
            severity,
            rule.span,
-           fmt::format(
-               "{}rule \"{}\" iterates over a gap, and in /{}/ cuts a line that decides whether a nearer segment "
-               "could change: this cannot be compiled",
-               possibly, rule.name, FormText(unsure)),
-           "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
+           rule.mode == Rule::Mode::kAtOnce
+               ? fmt::format("{}rule \"{}\" in /{}/ changes a node that several segments share, and what becomes of the "
+                             "others would have to be judged as well: this cannot be compiled",
+                             possibly, rule.name, FormText(unsure))
+               : fmt::format("{}rule \"{}\" iterates, and in /{}/ its change decides about a segment that the sweep has "
+                             "passed, or replaces half of a long one: this cannot be compiled",
+                             possibly, rule.name, FormText(unsure)),
+           rule.mode == Rule::Mode::kAtOnce
+               ? "delink or spread what is shared in a rule of its own before this one"
+               : "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
            {}});
       if (segment_.exact) return false;
     }

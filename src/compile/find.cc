@@ -492,13 +492,20 @@ class Sweep {
     const BuiltLetter built = Built(now, request, state, far_contents);
     Key with_flags = request;
     if (Reaches(now, built)) with_flags[0] |= kReaches;
-    if (FreesBehind(now, request, built)) with_flags[0] |= kUnsure;
+    if (FreesBehind(now, request, built) || HalvesRoot(now, request)) with_flags[0] |= kUnsure;
     const Key written = Written(InputWithOver(input, now), with_flags, state.visit_contents, far_contents);
 
     VisitOn(&state, input, at_visit);
     Leave(&state, now, request, built);
     Forget(&state);
     return {state.Pack(), written};
+  }
+
+  // Is a new root asked for at one slot of a long one? Whether the other gets the same is decided there.
+  bool HalvesRoot(const Key& now, const Key& request) const {
+    const int index = requests_.IndexOf(kRootNode);
+    return index >= 0 && request[static_cast<std::size_t>(1 + index)] >> kValuesShift != 0 &&
+           (space_.Marks(now, kRootNode) & (kFromLeft | kToRight));
   }
 
   // Is a boundary the end of what one draw is for?
@@ -755,6 +762,14 @@ class Sweep {
         nodes[setting.node] = true;
         above(setting.node);
       }
+      const bool given = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs ||
+                         change.op == Change::Op::kSetLiteral;
+      if (!given) continue;
+      const NodeId top = change.op == Change::Op::kSetLiteral ? kRootNode : change.node;
+      for (std::size_t node = top; node < nodes.size(); ++node) {
+        if (node == top || space_.tree().Dominates(top, static_cast<NodeId>(node))) nodes[node] = true;
+      }
+      above(top);
     }
     for (const Spread& spread : pattern_.spreads()) {
       above(spread.node);

@@ -77,13 +77,16 @@ class Lister {
         break;
       case Change::Op::kSetAs:
       case Change::Op::kFillAs:
+      case Change::Op::kMerge:
+        break;
       case Change::Op::kSetLiteral:
+        if (rule.mode != Rule::Mode::kAtOnce && change.is_long)
+          Add(change.span, "giving a long segment in a rule that iterates is", "apply the rule at once");
+        break;
       case Change::Op::kLengthen:
       case Change::Op::kShorten:
-      case Change::Op::kMerge:
         if (rule.mode != Rule::Mode::kAtOnce)
-          Add(change.span, "`set .. as`, `fill .. as`, `set` with a symbol, `lengthen` or `shorten` in a rule that iterates is",
-              "apply the rule at once, or name the features: set X [..]");
+          Add(change.span, "`lengthen` or `shorten` in a rule that iterates is", "apply the rule at once");
         break;
     }
     if (change.inserted_label >= 0) {

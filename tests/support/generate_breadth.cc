@@ -233,7 +233,7 @@ class Decorator {
     if (op == Op::kInsert) {
       change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
       change.is_long = true;
-    } else {
+    } else if (op != Op::kSetLiteral) {
       rule_->mode = Rule::Mode::kAtOnce;
     }
     rule_->changes = {change};
@@ -271,7 +271,7 @@ class Decorator {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
     change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
-    change.is_long = Chance(rng_, 0.25);
+    change.is_long = rule_->mode == Rule::Mode::kAtOnce && Chance(rng_, 0.25);
     return true;
   }
 
@@ -281,7 +281,6 @@ class Decorator {
     if (!TwoLabels(&change.source, &change.target)) return false;
     change.node = Chance(rng_, 0.2) ? kRootNode : Node();
     rule_->changes = {change};
-    rule_->mode = Rule::Mode::kAtOnce;
     return true;
   }
 
