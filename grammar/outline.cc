@@ -266,9 +266,11 @@ class Cutter {
     while (end > inside && (text_[end - 1] == ' ' || text_[end - 1] == '\r' || text_[end - 1] == '\t')) --end;
     position_ = end;
     token.broken = true;
+    std::string remedy = "close it with " + closer + " before the end of the line";
+    if (section_ == "rule" && closer == "/")
+      remedy += "; where a rule applies is said in its pattern: where X:[+voice] #";
     diagnostics_.Error(Kind::kUnclosedForm, MakeSpan(token.begin, end),
-                       std::string("this ") + what + " is not closed on its line",
-                       "close it with " + closer + " before the end of the line");
+                       std::string("this ") + what + " is not closed on its line", remedy);
   }
 
   // ---- sections -----------------------------------------------------------------------------

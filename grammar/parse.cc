@@ -853,7 +853,8 @@ const auto agreement = (x3::eps[IsKind(syntax::Feat::Kind::kAgrees)] >> agreeing
                        (minus_sign[IsKind(syntax::Feat::Kind::kDiffers)] >> agreeing);
 
 const auto shared_node = (Word(U"shared")[IsKind(syntax::Feat::Kind::kShared)] |
-                          Word(U"unshared")[IsKind(syntax::Feat::Kind::kUnshared)]) > feature[kFeatName] >>
+                          Word(U"unshared")[IsKind(syntax::Feat::Kind::kUnshared)]) >
+                         (feature[kFeatName] | Wanted("@the node that is shared")) >>
                          -(Word(U"rightward")[Let(&syntax::Feat::side, syntax::Feat::Side::kRightward)] |
                            Word(U"leftward")[Let(&syntax::Feat::side, syntax::Feat::Side::kLeftward)]);
 const auto root_length =
@@ -1217,7 +1218,8 @@ const auto modifier =
         (Word(U"prefer") >
          (Word(U"left")[Let(&syntax::Rule::prefer, syntax::Rule::Prefer::kLeft)] |
           Word(U"right")[Let(&syntax::Rule::prefer, syntax::Rule::Prefer::kRight)] | Wanted("left or right"))) |
-        (Word(U"optional") > raw[DecimalToken{}[To(&syntax::Rule::probability)]][kProbability] >
+        (Word(U"optional") > (raw[DecimalToken{}[To(&syntax::Rule::probability)]][kProbability] |
+                              Wanted("the probability with which it applies")) >
          -(Word(U"by")[Let(&syntax::Rule::by_word, true)] > Word(U"word"))) |
         Word(U"preserving")[Let(&syntax::Rule::preserving, true)]][kOnce];
 const auto tier_or_level =
@@ -1430,7 +1432,8 @@ const auto lexicon_entry_def =
              Word(U"suffix")[Let(&syntax::LexiconEntry::kind, LexiconKind::kSuffix)] |
              Word(U"clitic")[Let(&syntax::LexiconEntry::kind, LexiconKind::kClitic)]) >
             written_form[To(&syntax::LexiconEntry::form)] > -GlossToken{}[To(&syntax::LexiconEntry::gloss)] >
-            *(tag[Push(&syntax::LexiconEntry::tags)] | (Word(U"weight") > DecimalToken{}[kWeight]) |
+            *(raw[tag >> Sign(U":") > value][NotYet("a melody of a morpheme")] |
+              tag[Push(&syntax::LexiconEntry::tags)] | (Word(U"weight") > DecimalToken{}[kWeight]) |
               (Word(U"at") > attach_place[kAttach]) | suppletion[Push(&syntax::LexiconEntry::suppletive)]));
 const auto lexicon_entries_def = (+lexicon_entry[Push(&syntax::Lexicon::entries)] |
                                   Wanted("stem, prefix, suffix or clitic")) >
@@ -1584,13 +1587,17 @@ class Reader {
   static const char* BetterRemedy(const std::string& wanted, Iterator where, const Iterator& last) {
     static constexpr std::pair<std::string_view, const char*> kRemedies[] = {
         {"'where'", "a clause begins with its pattern, where X:[+voice] Y:[-son]; conditions and changes follow"},
-        {"a path such as X.Place", "write an item's label and a node, glued: X.Place"},
+        {"a path such as X.Place", "write an item's label and a node, glued: X.Place; the whole segment is X.root"},
         {"=, ≠, is or is not", "a test reads: if X.Place = Y.Place, or with ≠, is, is not"},
         {"a tag", "write: only loan, only X in loan or only word loan"},
         {"a feature right after its variable", "glue the two, αback, or write alpha back"},
         {"what an edge bears: +f, -f, a feature or a value", "write: begins -cont"},
         {"first or second", "write: half first"},
         {"left or right", "write: prefer left"},
+        {"rightward or leftward", "write: iterate rightward"},
+        {"the probability with which it applies", "write: optional 0.3, and by word behind it for one draw a word"},
+        {"a label and what it stands for, E:/i/", "write: insert E:/i/ before X"},
+        {"the node that is shared", "write its name alone: shared voice"},
         {"blocked or free", "write: sharing blocked"},
         {kDomains, "write: within phrase"},
         {"'as'", "write: set X.Place as Y.Place; values are given to an item, set X [+round]"},
@@ -1599,6 +1606,13 @@ class Reader {
         {"a change before 'otherwise'", "say what the clause does, for instance: set X [-voice]"}};
     for (const auto& [what, remedy] : kRemedies)
       if (what == wanted) return remedy;
+    Iterator next = where;
+    const bool change = wanted.find("a change") != std::string::npos;  // of `->` the - was read as a boundary
+    if (change && (MatchText(next, last, U"→") || MatchText(next, last, U">")))
+      return "changes are said in words, set X [+voice], delete X, insert E:/i/ before X, and where in the pattern";
+    if (MatchText(next, last, U"±")) return "write + or -; a feature that has either value is named alone: voice";
+    if (wanted == "a label" && MatchText(next, last, U"#"))
+      return "label the boundary in the pattern, B:#, and name it: delete B";
     if (PathNode(where, last) != last)
       return wanted == "a label"
                  ? "this speaks of the whole item: write its label alone"

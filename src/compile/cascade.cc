@@ -510,6 +510,9 @@ class CascadeCompiler {
       message += fmt::format(" (rule \"{}\" changed it last)", grammar_.rules[rule].name);
     } else if (whole) {
       message += " (no rule changed it: it is an underlying tree that nothing completes)";
+      for (const Symbol& symbol : grammar_.inventory.symbols) {
+        if (symbol.underlying == tree) span = symbol.span;
+      }
     }
     std::string remedy;
     if (!candidates.empty()) {
@@ -518,9 +521,9 @@ class CascadeCompiler {
       remedy += "; tell them apart with a rule that fills the missing value, or take one out of `omit`";
     } else {
       remedy = fmt::format(
-          "declare it (allophones {{ x = {} }}), let `omit` restore what is missing, or add a rule that sets or fills "
-          "it",
-          Bracketed(tree));
+          "declare it (allophones {{ x = {} }}, with its own sign for x), let `omit` restore what is missing, or add a "
+          "rule that sets or fills it",
+          grammar_.inventory.Declaration(tree, grammar_.tree));
     }
     diagnostics_.Add(
         {Kind::kNoSymbol, grammar_.strict || DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});

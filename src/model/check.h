@@ -210,6 +210,7 @@ class Checker {
   bool SayReadings(const syntax::FormText& form, const std::vector<std::string>& texts, bool several);
   void ReportForm(Span span, const TextError& error, bool whole);
   void CheckParadigm(const syntax::Paradigm& written);
+  void CheckSuppletion();
   bool CheckSlots(const syntax::Paradigm& written, Paradigm* paradigm);
   bool CheckOverride(const syntax::CellOverride& written, Paradigm* paradigm);
   bool CheckAllomorphs(const std::vector<syntax::Allomorph>& written, SlotValue* value);

@@ -500,6 +500,27 @@ void Checker::CheckWords() {
   for (const syntax::Top& top : file_.tops) {
     if (const auto* paradigm = std::get_if<syntax::Paradigm>(&top)) CheckParadigm(*paradigm);
   }
+  if (!grammar_.paradigms.empty() && !diagnostics_.HasErrors()) CheckSuppletion();
+}
+
+// A form for a cell that no paradigm has would never be chosen.
+void Checker::CheckSuppletion() {
+  std::vector<std::string> values;
+  for (const Paradigm& paradigm : grammar_.paradigms) {
+    for (const ParadigmSlot& slot : paradigm.slots) {
+      for (const SlotValue& value : slot.values) values.push_back(value.name);
+    }
+  }
+  for (const WrittenEntry& written : written_entries_) {
+    for (const syntax::Suppletion& other : written.entry.suppletive) {
+      for (const syntax::Name& value : other.in) {
+        if (std::find(values.begin(), values.end(), value.text) != values.end()) continue;
+        diagnostics_.Warning(Kind::kUnknownTag, value.span,
+                             "no paradigm has the value '" + value.text + "': this form is never chosen",
+                             Or(DidYouMean(value.text, values), "name values of one cell"));
+      }
+    }
+  }
 }
 
 }  // namespace tiersmith

@@ -123,6 +123,20 @@ std::string Inventory::Describe(const FeatureTree& root, const Tree& tree) const
   return difference.empty() ? nearest->text : nearest->text + "{" + difference + "}";
 }
 
+std::string Inventory::Declaration(const FeatureTree& root, const Tree& tree) const {
+  std::string declaration;
+  int fewest = 0;
+  for (const Symbol& symbol : symbols) {
+    if (symbol.kind != Symbol::Kind::kSegment) continue;
+    int steps = 0;
+    const std::string difference = Difference(tree, symbol.full, root, &steps);
+    if (!declaration.empty() && steps >= fewest) continue;
+    declaration = symbol.text + " [" + difference + "]";
+    fewest = steps;
+  }
+  return declaration;
+}
+
 std::optional<int> Inventory::Find(std::string_view text) const {
   auto found = by_text.find(std::string(text));
   if (found == by_text.end()) found = by_text.find(SymbolSetKey(text));

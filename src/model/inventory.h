@@ -61,6 +61,8 @@ class Inventory {
 
   // Nearest listed symbols to a tree and their differences, for messages and traces: "i{+back}".
   std::string Describe(const FeatureTree& root, const Tree& tree) const;
+  // The right side of an entry that declares a symbol for a tree, from the nearest segment: "i [+back]".
+  std::string Declaration(const FeatureTree& root, const Tree& tree) const;
   std::optional<int> Find(std::string_view text) const;
 
   // The symbols that may stand in underlying forms, each once, with at most `diacritics` diacritics on one base.

@@ -383,8 +383,10 @@ TEST_CASE("errors: what was expected is said in words", "[unit]") {
     const char* text;
     const char* expected;
   } rows[] = {
-      {"rule \"x\" { where X:[+son] optional }", "expected a number, found the end"},
-      {"rule \"x\" { where H:[+son] optional delete H }", "expected a number, found 'delete'"},
+      {"rule \"x\" { where X:[+son] optional }", "expected the probability with which it applies, found the end"},
+      {"rule \"x\" { where H:[+son] optional delete H }",
+       "expected the probability with which it applies, found 'delete'"},
+      {"lexicon { stem /pat/ noun Tone:(H L) }", "a melody of a morpheme is not supported yet"},
       {"class V = [no within back]", "'within' is a word of the notation and cannot be a name here"},
       {"class V = [no : back]", "expected a feature, found ':'"},
       {"class V = [no Tone:]", "expected a name or '(', found ']'"},
@@ -416,6 +418,15 @@ TEST_CASE("errors: the remedy is about what stands there", "[unit]") {
       {"rule \"r\" { where A:V spraed A.b to A }", "follows spread or delink"},
       {"rule \"r\" { where A:V otherwise where A:C delete A }", "say what the clause does"},
       {"rule \"r\" { where A:V delete A optional 30 }", "optional 0.3"},
+      {"rule \"r\" { where A:V delete A optional by word 0.3 }", "by word behind it"},
+      {"rule \"r\" { where A:V delete A iterate left }", "iterate rightward"},
+      {"rule \"r\" { where A:V insert i before A }", "insert E:/i/ before X"},
+      {"rule \"r\" { where A:C # delete # }", "delete B"},
+      {"rule \"r\" { where A:V A → E }", "changes are said in words"},
+      {"rule \"r\" { where A:V -> E }", "changes are said in words"},
+      {"rule \"r\" { [-son] → [+voice] / C _ }", "where a rule applies is said in its pattern"},
+      {"class V = [±back]", "named alone"},
+      {"class V = [shared +back]", "shared voice"},
       {"class V = [α back]", "glue the two"},
       {"class V = [+αback]", "right before its feature"},
       {"class V = [ends no cont]", "begins -cont"},
