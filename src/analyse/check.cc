@@ -1,6 +1,8 @@
 // Checking data and explaining failures. See check.h for what the explanation means.
 #include "analyse/check.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <set>
 
@@ -264,7 +266,7 @@ class Checker {
       for (const auto& [reason, count] : walk.applications[k].blocked)
         result.blocked[static_cast<int>(k)][reason] += count;
     }
-    if (!checked.passed) checked.explanation = Explain(row, walk, checked.explanation.problem);
+    if (!checked.passed) checked.explanation = Explain(row, walk, checked);
     return checked;
   }
 
@@ -276,13 +278,16 @@ class Checker {
     if (!outputs.all.empty()) checked.derived = outputs.all.front().surface;
     if (!checked.derived) checked.explanation.problem = outputs.problem;
     checked.engines_differ = Disagreement(reading, checked.derived);
-    bool starred = false;
+    Explanation& explanation = checked.explanation;
     std::optional<double> passes;
     for (const Outputs::Output& output : outputs.all) {
-      starred = starred || IsOneOf(row, row.starred, output.surface);
+      if (explanation.starred.empty() && IsOneOf(row, row.starred, output.surface)) {
+        explanation.starred = output.surface;
+        explanation.starred_probability = output.probability;
+      }
       if (!passes && (row.surfaces.empty() || IsOneOf(row, row.surfaces, output.surface))) passes = output.probability;
     }
-    checked.passed = passes && !starred && checked.engines_differ.empty();
+    checked.passed = passes && explanation.starred.empty() && checked.engines_differ.empty();
     if (checked.passed && !Expected(row, *checked.derived)) checked.less_likely = passes;
     return checked;
   }
@@ -319,16 +324,14 @@ class Checker {
     return ran ? machine : "no result: " + error.message;
   }
 
-  Explanation Explain(const DataRow& row, const Walk& walk, const std::string& problem) {
-    Explanation explanation;
+  Explanation Explain(const DataRow& row, const Walk& walk, const CheckedRow& checked) {
+    Explanation explanation = checked.explanation;
     explanation.expected_note = ExpectedNote(row);
-    if (!problem.empty()) {
-      explanation.problem = problem;
+    if (!explanation.problem.empty()) return explanation;
+    if (!explanation.starred.empty() && Expected(row, *checked.derived)) {  // only a less likely form is wrong
+      explanation.which = Explanation::Case::kNoRule;
       return explanation;
     }
-    std::string surface;
-    if (WriteForm(grammar_, walk.forms.back(), &surface, nullptr) && IsOneOf(row, row.starred, surface))
-      explanation.starred = surface;
     Difference difference;
     if (explanation.starred.empty() && !row.surfaces.empty()) difference = NearestDifference(row, walk.forms.back());
     explanation.difference = difference.words;
@@ -416,8 +419,11 @@ CheckResult Check(const Grammar& grammar, const std::vector<DataRow>& rows, Runn
 
 std::string Describe(const Explanation& explanation, const Grammar& grammar) {
   const auto name = [&](int rule) { return Quoted(grammar.rules[static_cast<std::size_t>(rule)].name); };
-  if (!explanation.starred.empty() && explanation.which != Explanation::Case::kOneRule)
-    return "[" + explanation.starred + "] must not come out; leaving out no single rule keeps it away";
+  const bool starred = !explanation.starred.empty() && explanation.which != Explanation::Case::kOneRule;
+  if (starred && explanation.starred_probability < 1)
+    return fmt::format("[{}] must not come out, and does with probability {:.3g}", explanation.starred,
+                       explanation.starred_probability);
+  if (starred) return "[" + explanation.starred + "] must not come out; leaving out no single rule keeps it away";
   switch (explanation.which) {
     case Explanation::Case::kNoResult:
       return "no result: " + explanation.problem;

@@ -504,7 +504,7 @@ class CascadeCompiler {
     const bool whole = data_->segments.size() == 1;  // else the path begins in the middle
     message += whole ? fmt::format(", which /{}/ comes to", form) : ", which some form may come to";
     Span span = grammar_.rules.empty() ? Span{} : grammar_.rules.back().span;
-    const int rule = whole ? LastRuleThatChanged(form) : -1;
+    const int rule = whole ? LastRuleThatChanged(form, tree) : -1;
     if (rule >= 0) {
       span = grammar_.rules[rule].span;
       message += fmt::format(" (rule \"{}\" changed it last)", grammar_.rules[rule].name);
@@ -542,15 +542,26 @@ class CascadeCompiler {
     return "[" + text + "]";
   }
 
-  int LastRuleThatChanged(const std::string& text) const {
+  // Of the ways that optional rules leave open, the first that comes to this tree.
+  int LastRuleThatChanged(const std::string& text, const FeatureTree& tree) const {
     const std::vector<Reading> readings = Readings(text);
     if (readings.empty()) return -1;
-    const Derivation derivation = Derive(grammar_, readings.front().form);
-    int last = -1;
-    for (const Step& step : derivation.steps) {
-      if (step.applied) last = step.rule;
+    std::vector<std::pair<Form, int>> ways{{Fused(grammar_, readings.front().form), -1}};  // with the last rule so far
+    for (std::size_t r = 0; r < grammar_.rules.size(); ++r) {
+      std::vector<std::pair<Form, int>> next;
+      for (const auto& [form, last] : ways) {
+        for (Outcome& outcome : ApplyRule(grammar_, grammar_.rules[r], form).outcomes) {
+          const bool changed = !(Canonical(outcome.form) == Canonical(form));
+          next.emplace_back(std::move(outcome.form), changed ? static_cast<int>(r) : last);
+        }
+      }
+      ways = std::move(next);
     }
-    return last;
+    for (const auto& [form, last] : ways) {
+      const std::vector<FeatureTree> roots = RootsOf(form);
+      if (std::find(roots.begin(), roots.end(), tree) != roots.end()) return last;
+    }
+    return -1;
   }
 
   // Do the data reach this tree (or are there none to ask)?
@@ -560,18 +571,23 @@ class CascadeCompiler {
       data_surfaces_done_ = true;
       for (const DataRow& row : grammar_.data) {
         for (const Reading& reading : Readings(row.underlying)) {
-          for (const Outcome& outcome : Derive(grammar_, reading.form).outcomes) AddRoots(outcome.form);
+          for (const Outcome& outcome : Derive(grammar_, reading.form).outcomes) {
+            const std::vector<FeatureTree> roots = RootsOf(outcome.form);
+            data_roots_.insert(data_roots_.end(), roots.begin(), roots.end());
+          }
         }
       }
     }
     return std::find(data_roots_.begin(), data_roots_.end(), tree) != data_roots_.end();
   }
 
-  void AddRoots(const Form& surface) {
-    for (const FormItem& item : surface.items) {
-      if (item.kind != FormItem::Kind::kSlot || RootOf(surface, item) < 0) continue;
-      data_roots_.push_back(ContentOf(surface, static_cast<InstanceId>(RootOf(surface, item))));
+  static std::vector<FeatureTree> RootsOf(const Form& form) {
+    std::vector<FeatureTree> roots;
+    for (const FormItem& item : form.items) {
+      if (item.kind != FormItem::Kind::kSlot || RootOf(form, item) < 0) continue;
+      roots.push_back(ContentOf(form, static_cast<InstanceId>(RootOf(form, item))));
     }
+    return roots;
   }
 
   // A form that goes this path, written with the first symbols that fit; at position `at`, one with the given rest.

@@ -85,6 +85,13 @@ std::optional<DataRow> RowOf(const Columns& columns, const Table::Line& line, Di
   row.underlying_spelled = columns.underlying_spelled;
   row.surface_spelled = columns.surface_spelled;
   for (Listed& form : FormsListed(*cell("surface"))) {
+    const std::string beside = " " + form.cell.text + " ";
+    if (form.cell.text.empty() || beside.compare(0, 3, " ~ ") == 0 ||
+        beside.compare(beside.size() - 3, 3, " ~ ") == 0) {
+      diagnostics.Error(Kind::kBadData, cell("surface")->span, "beside ~ or * a surface form is missing",
+                        "list them as in: b ~ c *d");
+      return std::nullopt;
+    }
     (form.starred ? row.starred : row.surfaces).push_back(std::move(form.cell.text));
     (form.starred ? row.starred_spans : row.surface_spans).push_back(form.cell.span);
   }

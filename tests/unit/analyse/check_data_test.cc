@@ -33,6 +33,15 @@ TEST_CASE("check: starred forms must not come out", "[check]") {
         "[tat] must not come out; leaving out no single rule keeps it away");
 }
 
+TEST_CASE("check: a starred form must not come out as a less likely one either", "[check]") {
+  // One draw for each vowel: tata .64, tita and tati .16 each, titi .04.
+  const std::string rule = "rule \"raising\" { where X:/a/  set X /i/  optional 0.2 }\n";
+  CHECK(Verdicts(rule + "data { /tata/ [tata] * [tutu] }") == "pass");
+  CHECK(Verdicts(rule + "data { /tata/ [tata] * [tita] }") ==
+        "[tita] must not come out, and does with probability 0.16");
+  CHECK(Verdicts(rule + "data { /tata/ * [tata] }") == "[tata] must not come out, and does with probability 0.64");
+}
+
 TEST_CASE("check: length is compared where the block says so", "[check]") {
   CHECK(Verdicts("data { /taː/ [taa] }") == "pass");
   CHECK(Verdicts("data comparing length { /taː/ [taː] }") == "pass");
