@@ -4,8 +4,10 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 #include <set>
 
+#include "base/limits.h"
 #include "base/utf8.h"
 #include "graph/interpreter.h"
 
@@ -234,9 +236,7 @@ int LastRuleToChange(const Grammar& grammar, const Walk& walk, Difference differ
 class Checker {
  public:
   explicit Checker(const Grammar& grammar, Runner* runner)
-      : grammar_(grammar), forms_(grammar), reader_(forms_.reader()), runner_(runner) {
-    for (const Rule& rule : grammar.rules) optional_ = optional_ || rule.probability < 1;
-  }
+      : grammar_(grammar), forms_(grammar), reader_(forms_.reader()), runner_(runner) {}
 
   CheckedRow CheckRow(const DataRow& row, CheckResult& result) {
     CheckedRow checked;
@@ -277,10 +277,10 @@ class Checker {
     const Outputs outputs = OutputsOf(grammar_, reading.form);
     if (!outputs.all.empty()) checked.derived = outputs.all.front().surface;
     if (!checked.derived) checked.explanation.problem = outputs.problem;
-    checked.engines_differ = Disagreement(reading, checked.derived);
+    checked.engines_differ = Disagreement(reading, outputs);
     Explanation& explanation = checked.explanation;
     std::optional<double> passes;
-    for (const Outputs::Output& output : outputs.all) {
+    for (const Runner::Output& output : outputs.all) {
       if (explanation.starred.empty() && IsOneOf(row, row.starred, output.surface)) {
         explanation.starred = output.surface;
         explanation.starred_probability = output.probability;
@@ -307,21 +307,32 @@ class Checker {
     return (row.surfaces.empty() || IsOneOf(row, row.surfaces, surface)) && !IsOneOf(row, row.starred, surface);
   }
 
-  // The machine's result where it is another than the interpreter's; "" where they agree. Of optional rules only the
-  // likeliest of many ways could be asked for, and ties may fall out either way.
-  std::string Disagreement(const Reading& reading, const std::optional<std::string>& derived) {
-    if (runner_ == nullptr || optional_) return "";
-    std::string machine;
+  // What the machine makes of it where that is not what the interpreter does; "" where they agree, or where the
+  // interpreter has given up. The machine has no result if some way has none.
+  std::string Disagreement(const Reading& reading, const Outputs& outputs) {
+    if (runner_ == nullptr || outputs.too_many) return "";
+    std::vector<Runner::Output> machine;
     TextError error;
-    bool ran = false;
-    if (grammar_.tagged) {
-      const Runner::Answer answer = runner_->Apply(reading.form);
-      ran = answer.form && WriteForm(grammar_, *answer.form, &machine, nullptr);
-    } else {
-      ran = runner_->Derive(reading.text, &machine, &error);
+    bool more = false;
+    if (!runner_->DeriveAll(reading, Limits().outcomes, &machine, &more, &error))
+      return outputs.problem.empty() ? "no result: " + error.message : "";
+    if (outputs.problem.empty() && Agree(outputs.all, machine)) return "";
+    std::string list;
+    for (const Runner::Output& output : machine) {
+      list += (list.empty() ? "" : ", ") + output.surface;
+      if (machine.size() > 1) list += " " + std::to_string(output.probability);
     }
-    if (ran == derived.has_value() && (!ran || machine == *derived)) return "";
-    return ran ? machine : "no result: " + error.message;
+    return list;
+  }
+
+  // The same surfaces with the same probabilities; equally likely ones may stand in any order.
+  static bool Agree(const std::vector<Runner::Output>& a, const std::vector<Runner::Output>& b) {
+    constexpr double kRounding = 1e-6;
+    return a.size() == b.size() && std::all_of(a.begin(), a.end(), [&](const Runner::Output& output) {
+             return std::any_of(b.begin(), b.end(), [&](const Runner::Output& other) {
+               return other.surface == output.surface && std::abs(other.probability - output.probability) < kRounding;
+             });
+           });
   }
 
   Explanation Explain(const DataRow& row, const Walk& walk, const CheckedRow& checked) {
@@ -401,7 +412,6 @@ class Checker {
   FormReader forms_;
   const Reader& reader_;
   Runner* runner_;
-  bool optional_ = false;
 };
 
 }  // namespace

@@ -3,7 +3,6 @@
 
 #include <algorithm>
 
-#include "graph/interpreter.h"
 #include "model/content.h"
 
 namespace tiersmith {
@@ -228,11 +227,13 @@ bool StemsNamed(const FormReader& reader, const Grammar& grammar, const std::str
   return true;
 }
 
-Outputs OutputsOf(const Grammar& grammar, const Form& form) {
+Outputs OutputsOf(const Grammar& grammar, const Form& form) { return OutputsOf(grammar, Derive(grammar, form)); }
+
+Outputs OutputsOf(const Grammar& grammar, const Derivation& derivation) {
   Outputs outputs;
-  const Derivation derivation = Derive(grammar, form);
   if (!derivation.problem.empty()) {
     outputs.problem = derivation.problem;
+    outputs.too_many = derivation.too_many;
     return outputs;
   }
   for (const Outcome& outcome : derivation.outcomes) {
@@ -243,7 +244,7 @@ Outputs OutputsOf(const Grammar& grammar, const Form& form) {
       continue;
     }
     const auto same = std::find_if(outputs.all.begin(), outputs.all.end(),
-                                   [&](const Outputs::Output& output) { return output.surface == surface; });
+                                   [&](const Runner::Output& output) { return output.surface == surface; });
     if (same != outputs.all.end()) {
       same->probability += outcome.probability;
     } else {

@@ -14,8 +14,10 @@
 #include <vector>
 
 #include "base/diagnostics.h"
+#include "graph/interpreter.h"
 #include "model/grammar.h"
 #include "model/readings.h"
+#include "run/run.h"
 
 namespace tiersmith {
 
@@ -39,13 +41,11 @@ bool StemsNamed(const FormReader& reader, const Grammar& grammar, const std::str
 
 // What a form comes out as: several where rules are optional.
 struct Outputs {
-  struct Output {
-    std::string surface;
-    double probability = 1;
-  };
-  std::vector<Output> all;  // each surface once, likeliest first
-  std::string problem;      // why there is none, or why some ways have none
+  std::vector<Runner::Output> all;  // each surface once, likeliest first
+  std::string problem;              // why there is none, or why some ways have none
+  bool too_many = false;            // that is the problem: more ways than Limits::outcomes
 };
 Outputs OutputsOf(const Grammar& grammar, const Form& form);
+Outputs OutputsOf(const Grammar& grammar, const Derivation& derivation);
 
 }  // namespace tiersmith

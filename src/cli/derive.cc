@@ -1,11 +1,14 @@
 // tiersmith derive: underlying forms to surface forms, one line out a line in; or derivations rule by rule.
-// /in-posible/ gives imposible. A form that can be read in several ways (tags, spelling) is derived in each. Tested by tests/cli/derive.sh.
+// /in-posible/ gives imposible. A form that can be read in several ways (tags, spelling) is derived in each; where rules are
+// optional all outputs are printed with their probabilities. Tested by tests/cli/derive.sh, optional.sh.
 #include <fmt/format.h>
 
 #include <algorithm>
 #include <nlohmann/json.hpp>
 
+#include "analyse/paradigm.h"
 #include "cli/lettering.h"
+#include "cli/outputs.h"
 #include "graph/interpreter.h"
 #include "model/readings.h"
 #include "run/run.h"
@@ -15,62 +18,69 @@ namespace {
 
 using nlohmann::ordered_json;
 
-constexpr const char* kNoOutput = "∅";
+constexpr std::size_t kMostOutputs = 20;  // of one form, if --best does not say
 
 struct DeriveOptions : CommonOptions {
   std::vector<std::string> forms;
+  std::optional<std::size_t> best;
   bool trace = false;
   bool pairs = false;
   bool keep_going = false;
+
+  std::size_t most() const { return best.value_or(kMostOutputs); }
 };
+
+bool HasOptionalRules(const Grammar& grammar) {
+  return std::any_of(grammar.rules.begin(), grammar.rules.end(), [](const Rule& rule) { return rule.probability < 1; });
+}
 
 // Writes one form's result in the format asked for. JSON is an array, written element by element.
 class ResultWriter {
  public:
-  ResultWriter(const DeriveOptions& options, Output& output) : options_(options), output_(output) {
-    if (options_.format == "tsv") output_.Write("underlying\tsurface\n");
+  ResultWriter(const DeriveOptions& options, bool weighted, Output& output)
+      : options_(options), weighted_(weighted), output_(output) {
+    if (options_.format == "tsv")
+      output_.Write(weighted_ ? "underlying\tsurface\tprobability\treading\n" : "underlying\tsurface\n");
     if (options_.json()) output_.Write("[");
   }
 
-  void Surface(const std::string& underlying, const std::string* surface) {
-    if (options_.json()) {
-      Json("{\"underlying\": " + JsonString(underlying) +
-           ", \"surface\": " + (surface != nullptr ? JsonString(*surface) : "null") + "}");
-      return;
-    }
-    if (options_.pairs || options_.format == "tsv") {
-      output_.Write(Field(underlying));
-      output_.Write("\t");
-    }
-    output_.Write(surface != nullptr ? *surface : kNoOutput);
-    output_.Write("\n");
-  }
-
-  // The results of a form that was read in several ways, or with tags: each surface once, with its reading where they differ.
+  // What a form, read so, comes out as.
   struct Read {
     std::string reading;
-    std::optional<std::string> surface;  // none: no result
+    std::vector<Runner::Output> outputs;  // none: no result
+    bool more = false;                    // the list was cut
   };
+
+  // A form that can be read in one way.
+  void Result(const std::string& underlying, const Read& read) {
+    if (options_.json()) return Json("{\"underlying\": " + JsonString(underlying) + ResultJson(read) + "}");
+    if (weighted_ && options_.format == "tsv") return Rows(underlying, read);
+    Line(underlying, Listed(read.outputs, "\t"));
+  }
+
+  // A form that was read in several ways, or with tags: its surfaces once, with its reading where they differ.
   void Readings(const std::string& underlying, const std::vector<Read>& readings) {
     if (options_.json()) {
-      const auto value = [](const Read& read) { return read.surface ? JsonString(*read.surface) : "null"; };
       std::string list;
       for (const Read& read : readings) {
-        list += (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) +
-                ", \"surface\": " + value(read) + "}";
+        list += (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) + ResultJson(read) + "}";
       }
-      return Json("{\"underlying\": " + JsonString(underlying) + ", \"surface\": " + value(readings.front()) +
-                  ", \"readings\": [" + list + "]}");
+      return Json("{\"underlying\": " + JsonString(underlying) + ResultJson(readings.front()) + ", \"readings\": [" +
+                  list + "]}");
     }
+    if (weighted_ && options_.format == "tsv") {
+      for (const Read& read : readings) Rows(underlying, read);
+      return;
+    }
+    const std::string first = Listed(readings.front().outputs, "\t");
     const bool differ = std::any_of(readings.begin(), readings.end(),
-                                    [&](const Read& read) { return read.surface != readings.front().surface; });
-    std::string surfaces;
+                                    [&](const Read& read) { return Listed(read.outputs, "\t") != first; });
+    if (!differ) return Line(underlying, first);
+    std::string line;
     for (const Read& read : readings) {
-      surfaces += (surfaces.empty() ? "" : "\t") + read.surface.value_or(kNoOutput);
-      if (!differ) break;
-      surfaces += " (" + read.reading + ")";
+      line += (line.empty() ? "" : "\t") + Listed(read.outputs, " (" + read.reading + ")\t") + " (" + read.reading + ")";
     }
-    Surface(underlying, &surfaces);
+    Line(underlying, line);
   }
 
   void Json(const std::string& element) {
@@ -91,7 +101,33 @@ class ResultWriter {
   }
 
  private:
+  // , "surface": the likeliest; where rules are optional, all of them.
+  std::string ResultJson(const Read& read) const {
+    std::string json = ", \"surface\": " + (read.outputs.empty() ? "null" : JsonString(read.outputs[0].surface));
+    if (!weighted_) return json;
+    json += ", \"outputs\": " + cli::Json(read.outputs).dump(-1, ' ', false, ordered_json::error_handler_t::replace);
+    return read.more ? json + ", \"more\": true" : json;
+  }
+
+  void Rows(const std::string& underlying, const Read& read) {
+    const auto row = [&](const std::string& surface, const std::string& probability) {
+      output_.Write(fmt::format("{}\t{}\t{}\t{}\n", Field(underlying), surface, probability, Field(read.reading)));
+    };
+    if (read.outputs.empty()) row(kNoOutput, "");
+    for (const Runner::Output& output : read.outputs) row(output.surface, fmt::format("{:.4g}", output.probability));
+  }
+
+  void Line(const std::string& underlying, const std::string& line) {
+    if (options_.pairs || options_.format == "tsv") {
+      output_.Write(Field(underlying));
+      output_.Write("\t");
+    }
+    output_.Write(line);
+    output_.Write("\n");
+  }
+
   const DeriveOptions& options_;
+  const bool weighted_;
   Output& output_;
   bool first_ = true;
 };
@@ -99,7 +135,8 @@ class ResultWriter {
 // What a derivation is shown as: rows of name and form, with what happened under each.
 class Tracer {
  public:
-  Tracer(const Grammar& grammar, const Lettering& lettering) : grammar_(grammar), lettering_(lettering) {}
+  Tracer(const Grammar& grammar, const Lettering& lettering, std::size_t most)
+      : grammar_(grammar), weighted_(HasOptionalRules(grammar)), lettering_(lettering), most_(most) {}
 
   // The surface, or why there is none.
   bool Surface(const Derivation& derivation, std::string* surface, std::string* why) const {
@@ -129,6 +166,7 @@ class Tracer {
     const bool result = Surface(derivation, &surface, &why);
     rows.push_back({"surface", result ? surface : std::string(kNoOutput)});
     notes.push_back(result ? std::vector<std::string>{} : std::vector<std::string>{"no result: " + why});
+    if (weighted_ && derivation.problem.empty()) AddWays(derivation, surface, &notes.back());
     return Interleaved(Table(rows, {false, false}), notes);
   }
 
@@ -148,10 +186,38 @@ class Tracer {
       json["surface"] = nullptr;
       json["problem"] = why;
     }
+    if (weighted_ && derivation.problem.empty()) {
+      json["outputs"] = cli::Json(Ways(derivation).all);
+      json["probability"] = derivation.outcomes.front().probability;  // of the form that the steps lead to
+    }
     return json;
   }
 
  private:
+  Outputs Ways(const Derivation& derivation) const {
+    Outputs outputs = OutputsOf(grammar_, derivation);
+    for (Runner::Output& output : outputs.all) output.surface = lettering_.Write(output.surface, Reader::Side::kSurface);
+    return outputs;
+  }
+
+  // That these steps are one way of several, and what the others come to.
+  void AddWays(const Derivation& derivation, const std::string& surface, std::vector<std::string>* notes) const {
+    Outputs outputs = Ways(derivation);
+    if (outputs.all.size() == 1 && outputs.problem.empty()) return;
+    const auto own = std::find_if(outputs.all.begin(), outputs.all.end(),
+                                  [&](const Runner::Output& output) { return output.surface == surface; });
+    const double probability = own != outputs.all.end() ? own->probability : derivation.outcomes.front().probability;
+    notes->push_back(fmt::format("probability {:.3g}; the steps are those of the likeliest way", probability));
+    if (own != outputs.all.end()) outputs.all.erase(own);
+    const std::size_t others = outputs.all.size();
+    outputs.all.resize(std::min(others, most_));
+    if (others > 0) {
+      notes->push_back("other outputs: " + Listed(outputs.all, ", ") +
+                       (others > most_ ? fmt::format(" and {} more", others - most_) : ""));
+    }
+    if (!outputs.problem.empty()) notes->push_back("some ways have no result: " + outputs.problem);
+  }
+
   static std::vector<std::string> NotesOf(const Step& step) {
     std::vector<std::string> notes = step.notes.changes;
     notes.insert(notes.end(), step.notes.blocked.begin(), step.notes.blocked.end());
@@ -171,7 +237,9 @@ class Tracer {
   }
 
   const Grammar& grammar_;
+  const bool weighted_;
   const Lettering& lettering_;
+  const std::size_t most_;
 };
 
 // The readings of a typed form, said if there are several.
@@ -228,7 +296,7 @@ int ForEachForm(const DeriveOptions& options, Output& output, ResultWriter& writ
       if (options.output.empty()) writer.Finish();
       return kUsage;
     }
-    writer.Surface(form, nullptr);
+    writer.Result(form, {});
   }
   if (source.failed()) {
     PrintError("reading standard input failed");
@@ -244,14 +312,14 @@ int RunTrace(const DeriveOptions& options) {
   if (SpellsNothing(options, *loaded.grammar)) return kUsage;
   const Lettering lettering(*loaded.grammar, options.spelled);
   TypedForms forms(*loaded.grammar, lettering);
-  const Tracer tracer(*loaded.grammar, lettering);
+  const Tracer tracer(*loaded.grammar, lettering, options.most());
   Output output(options.output);
   if (!output.good()) return kFiles;
   if (options.format == "tsv") {
     PrintError("--trace writes text or json, not tsv");
     return kUsage;
   }
-  ResultWriter writer(options, output);
+  ResultWriter writer(options, false, output);
   bool all_have_results = true;
   const int code = ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
     std::vector<Reading> readings;
@@ -274,19 +342,18 @@ int RunTrace(const DeriveOptions& options) {
   return code == kFine && !all_have_results ? kDisagree : code;
 }
 
-// What the machine makes of one reading.
-bool DeriveReading(const Grammar& grammar, Runner& runner, const Reading& reading, std::string* surface,
-                   TextError* error) {
-  if (!grammar.tagged) return runner.Derive(reading.text, surface, error);
-  const Runner::Answer answer = runner.Apply(reading.form);
-  if (answer.form && WriteForm(grammar, *answer.form, surface, nullptr)) return true;
-  *error = {Kind::kBadForm, 0, reading.text.size(), fmt::format("the grammar has no result for {}", reading.described),
-            "see `derive --trace` for what happens to it"};
-  return false;
+// Says that the list was cut, unless so many were asked for.
+void SayMore(const DeriveOptions& options, const std::string& form, const ResultWriter::Read& read) {
+  if (!read.more || options.best) return;
+  PrintNote(fmt::format("/{}/ has more outputs; the {} likeliest are shown (--best N)", form, read.outputs.size()));
 }
 
 int RunDerive(const DeriveOptions& options) {
   if (BothFromStdin(options, options.forms)) return kUsage;
+  if (options.most() == 0 || options.most() > Limits{}.outcomes) {
+    PrintError(fmt::format("--best {}: give a number from 1 to {}", options.most(), Limits{}.outcomes));
+    return kUsage;
+  }
   if (options.trace) return RunTrace(options);
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
@@ -296,13 +363,13 @@ int RunDerive(const DeriveOptions& options) {
   Runner runner(*loaded.grammar, *loaded.cascade);
   Output output(options.output);
   if (!output.good()) return kFiles;
-  ResultWriter writer(options, output);
-  std::string surface;
+  ResultWriter writer(options, runner.weighted(), output);
   return ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
-    surface.clear();
     if (forms.Plain(form)) {
-      if (!runner.Derive(form, &surface, error)) return false;
-      writer.Surface(form, &surface);
+      ResultWriter::Read read;
+      if (!runner.DeriveAll(form, options.most(), &read.outputs, &read.more, error)) return false;
+      writer.Result(form, read);
+      SayMore(options, form, read);
       return true;
     }
     std::vector<Reading> readings;
@@ -310,9 +377,14 @@ int RunDerive(const DeriveOptions& options) {
     std::vector<ResultWriter::Read> results;
     bool any = false;
     for (const Reading& reading : readings) {
-      results.push_back({forms.NameOf(reading), std::nullopt});
-      if (!DeriveReading(*loaded.grammar, runner, reading, &surface, error)) continue;
-      results.back().surface = lettering.Write(surface, Reader::Side::kSurface);
+      results.push_back({forms.NameOf(reading), {}, false});
+      ResultWriter::Read& read = results.back();
+      if (!runner.DeriveAll(reading, options.most(), &read.outputs, &read.more, error)) {
+        read.outputs.clear();
+        continue;
+      }
+      for (Runner::Output& each : read.outputs) each.surface = lettering.Write(each.surface, Reader::Side::kSurface);
+      SayMore(options, read.reading, read);
       any = true;
     }
     if (any) writer.Readings(form, results);
@@ -329,11 +401,15 @@ void AddDerive(CLI::App& app, int& code) {
   AddSpelledOption(*verb, *options);
   verb->add_option("FORMS", options->forms, "underlying forms; none, or -: one a line on standard input");
   verb->add_flag("--trace", options->trace, "the derivation, rule by rule");
+  verb->add_option("--best", options->best, "where rules are optional: how many outputs at most, likeliest first (20)")
+      ->type_name("N");
   verb->add_flag("--pairs", options->pairs, "underlying and surface form, tab-separated");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
   verb->footer(
+      "\nWhere rules are optional, a line holds all outputs with their probabilities, tab-separated, likeliest first;\n"
+      "tsv has a line for each. --trace then tells the likeliest way and names the other outputs.\n"
       "\nExample:\n  tiersmith derive velmari.tier --trace in-kat\n  tiersmith derive velmari.tier --pairs < "
-      "words.txt");
+      "words.txt\n  tiersmith derive velmari.tier --best 3 --format json in-kat");
   verb->callback([options, &code] { code = RunDerive(*options); });
 }
 

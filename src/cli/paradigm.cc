@@ -12,13 +12,13 @@
 #include <nlohmann/json.hpp>
 
 #include "cli/lettering.h"
+#include "cli/outputs.h"
 #include "model/names.h"
 
 namespace tiersmith::cli {
 namespace {
 
 using nlohmann::ordered_json;
-constexpr const char* kNoOutput = "∅";
 
 struct ParadigmOptions : CommonOptions {
   std::string name;
@@ -72,20 +72,17 @@ class Writer {
                          Field(row.stem->gloss), Field(row.cell.name), Underlying(row), Field(surface), probability);
     };
     if (row.outputs.all.empty()) line(kNoOutput, "");
-    for (const Outputs::Output& output : row.outputs.all)
-      line(Surface(output.surface), fmt::format("{:.4g}", output.probability));
+    for (const Runner::Output& output : Shown(row)) line(output.surface, fmt::format("{:.4g}", output.probability));
     return out;
   }
 
   ordered_json Json(const Paradigm& paradigm, const Row& row) const {
     ordered_json json = {{"paradigm", paradigm.name}, {"stem", Stem(*row.stem)}, {"gloss", row.stem->gloss},
-                         {"cell", row.cell.values},   {"underlying", nullptr},   {"surfaces", ordered_json::array()}};
+                         {"cell", row.cell.values},   {"underlying", nullptr},   {"surfaces", cli::Json(Shown(row))}};
     if (row.cell.form) {
       json["underlying"] = Underlying(row);
       json["morphemes"] = row.cell.form->described;
     }
-    for (const Outputs::Output& output : row.outputs.all)
-      json["surfaces"].push_back({{"surface", Surface(output.surface)}, {"probability", output.probability}});
     if (!row.outputs.problem.empty()) json["problem"] = row.outputs.problem;
     return json;
   }
@@ -103,7 +100,7 @@ class Writer {
     for (const SlotValue& value : across) grid[0].push_back(value.name);
     for (std::size_t i = 0; i < down.size(); ++i) {
       grid.push_back({down[i].name});
-      for (std::size_t k = 0; k < across.size(); ++k) grid.back().push_back(Surfaces(rows[i * across.size() + k]));
+      for (std::size_t k = 0; k < across.size(); ++k) grid.back().push_back(Listed(Shown(rows[i * across.size() + k]), " ~ "));
     }
     return grid;
   }
@@ -115,7 +112,7 @@ class Writer {
       if (!one_stem) lines.back().insert(lines.back().begin(), {"stem", "gloss"});
     }
     for (const Row& row : rows) {
-      lines.push_back({row.cell.name, Underlying(row), Surfaces(row)});
+      lines.push_back({row.cell.name, Underlying(row), Listed(Shown(row), " ~ ")});
       if (!one_stem) lines.back().insert(lines.back().begin(), {Stem(*row.stem), row.stem->gloss});
     }
     return lines;
@@ -128,16 +125,10 @@ class Writer {
     if (!row.cell.form) return kNoOutput;
     return lettering_.Write(row.cell.form->text, Reader::Side::kUnderlying);
   }
-  std::string Surface(const std::string& surface) const { return lettering_.Write(surface, Reader::Side::kSurface); }
-  // "tanta 0.7 ~ tata 0.3"
-  std::string Surfaces(const Row& row) const {
-    std::string out;
-    const bool certain = row.outputs.all.size() == 1 && row.outputs.problem.empty();
-    for (const Outputs::Output& output : row.outputs.all) {
-      out += (out.empty() ? "" : " ~ ") + Surface(output.surface);
-      if (!certain) out += fmt::format(" {:.3g}", output.probability);
-    }
-    return out.empty() ? kNoOutput : out;
+  std::vector<Runner::Output> Shown(const Row& row) const {
+    std::vector<Runner::Output> shown = row.outputs.all;
+    for (Runner::Output& output : shown) output.surface = lettering_.Write(output.surface, Reader::Side::kSurface);
+    return shown;
   }
 
   const ParadigmOptions& options_;

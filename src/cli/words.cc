@@ -7,12 +7,12 @@
 #include <nlohmann/json.hpp>
 
 #include "cli/lettering.h"
+#include "cli/outputs.h"
 
 namespace tiersmith::cli {
 namespace {
 
 using nlohmann::ordered_json;
-constexpr const char* kNoOutput = "∅";
 constexpr std::size_t kLimit = 1000;
 
 struct WordsOptions : CommonOptions {
@@ -31,7 +31,7 @@ std::vector<Shown> Derived(const Grammar& grammar, const Lettering& lettering, c
   for (const Word& word : words) {
     Shown one{lettering.Write(word.form.text, Reader::Side::kUnderlying), word.gloss,
               OutputsOf(grammar, word.form.form)};
-    for (Outputs::Output& output : one.outputs.all)
+    for (Runner::Output& output : one.outputs.all)
       output.surface = lettering.Write(output.surface, Reader::Side::kSurface);
     if (!one.outputs.problem.empty()) PrintNote(word.form.text + ": " + one.outputs.problem);
     shown.push_back(std::move(one));
@@ -39,28 +39,17 @@ std::vector<Shown> Derived(const Grammar& grammar, const Lettering& lettering, c
   return shown;
 }
 
-// "tanta 0.7 ~ tata 0.3"
-std::string Surfaces(const Outputs& outputs) {
-  std::string out;
-  const bool certain = outputs.all.size() == 1 && outputs.problem.empty();
-  for (const Outputs::Output& output : outputs.all) {
-    out += (out.empty() ? "" : " ~ ") + output.surface;
-    if (!certain) out += fmt::format(" {:.3g}", output.probability);
-  }
-  return out.empty() ? kNoOutput : out;
-}
-
 std::string AsText(const std::vector<Shown>& words) {
   std::vector<std::vector<std::string>> rows;
-  for (const Shown& word : words) rows.push_back({word.underlying, Surfaces(word.outputs), word.gloss});
+  for (const Shown& word : words) rows.push_back({word.underlying, Listed(word.outputs.all, " ~ "), word.gloss});
   return rows.empty() ? "" : Table(rows, {false, false, false});
 }
 
 std::string AsTsv(const std::vector<Shown>& words) {
   std::string out = "underlying\tsurface\tprobability\tgloss\n";
   for (const Shown& word : words) {
-    if (word.outputs.all.empty()) out += Field(word.underlying) + "\t∅\t\t" + Field(word.gloss) + "\n";
-    for (const Outputs::Output& output : word.outputs.all) {
+    if (word.outputs.all.empty()) out += Field(word.underlying) + "\t" + kNoOutput + "\t\t" + Field(word.gloss) + "\n";
+    for (const Runner::Output& output : word.outputs.all) {
       out += fmt::format("{}\t{}\t{:.4g}\t{}\n", Field(word.underlying), Field(output.surface), output.probability,
                          Field(word.gloss));
     }
@@ -71,9 +60,7 @@ std::string AsTsv(const std::vector<Shown>& words) {
 std::string AsJson(const std::vector<Shown>& words) {
   ordered_json json = ordered_json::array();
   for (const Shown& word : words) {
-    ordered_json one = {{"underlying", word.underlying}, {"surfaces", ordered_json::array()}, {"gloss", word.gloss}};
-    for (const Outputs::Output& output : word.outputs.all)
-      one["surfaces"].push_back({{"surface", output.surface}, {"probability", output.probability}});
+    ordered_json one = {{"underlying", word.underlying}, {"surfaces", Json(word.outputs.all)}, {"gloss", word.gloss}};
     if (!word.outputs.problem.empty()) one["problem"] = word.outputs.problem;
     json.push_back(std::move(one));
   }

@@ -68,6 +68,7 @@ class Follower {
       Results results = ApplyAllWays(grammar_, rule, before[from].form, notes_);
       if (results.HasProblem()) {
         derivation_.problem = ProblemOf(rule, results);
+        derivation_.too_many = !results.too_many.empty();
         after.clear();
       }
       for (Result& result : results.results) {
@@ -81,6 +82,7 @@ class Follower {
     if (after.size() > Limits().outcomes) {
       derivation_.problem = "up to rule '" + rule.name + "', optional rules may come out in more than " +
                             std::to_string(Limits().outcomes) + " ways";
+      derivation_.too_many = true;
     }
     levels_.push_back(std::move(after));
   }

@@ -55,6 +55,7 @@ struct Derivation {
   std::vector<Outcome> outcomes;  // all surfaces, each once, likeliest first
   std::string problem;  // not empty: ambiguous, reaching another root, or too many outcomes; names the rule; surface is
                         // then not valid
+  bool too_many = false;  // the problem is that there are more outcomes than Limits::outcomes
 };
 Derivation Derive(const Grammar& grammar, const Form& underlying, bool notes = false);
 

@@ -7,7 +7,6 @@
 
 #include "compile/cascade_data.h"
 #include "compile/rule_machine.h"
-#include "model/readings.h"
 #include "run/lattice.h"
 #include "run/recovery.h"
 #include "run/walker.h"
@@ -185,10 +184,11 @@ bool Runner::DeriveAll(std::string_view underlying, std::size_t best, std::vecto
   return impl_->ToLetters(underlying, error) && impl_->Outputs(underlying, best, outputs, more, error);
 }
 
-bool Runner::DeriveAll(const Form& underlying, std::string_view typed, std::size_t best, std::vector<Output>* outputs,
-                       bool* more, TextError* error) {
-  impl_->ToLetters(underlying);
-  return impl_->Outputs(typed, best, outputs, more, error);
+bool Runner::DeriveAll(const Reading& underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+                       TextError* error) {
+  if (!impl_->grammar.tagged) return DeriveAll(underlying.text, best, outputs, more, error);
+  impl_->ToLetters(underlying.form);
+  return impl_->Outputs(underlying.described, best, outputs, more, error);
 }
 
 bool Runner::Impl::Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,

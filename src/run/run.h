@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "compile/cascade.h"
+#include "model/readings.h"
 #include "model/text.h"
 
 namespace tiersmith {
@@ -30,9 +31,9 @@ class Runner {
   };
   bool DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                  TextError* error);
-  // The same of a form (with its tags, where rules ask for them); `typed` is what messages call it.
-  bool DeriveAll(const Form& underlying, std::string_view typed, std::size_t best, std::vector<Output>* outputs,
-                 bool* more, TextError* error);
+  // The same of a form that was read already (model/readings.h), with the tags of its morphemes.
+  bool DeriveAll(const Reading& underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+                 TextError* error);
   // Has the grammar optional rules?
   bool weighted() const;
 

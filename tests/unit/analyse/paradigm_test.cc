@@ -107,7 +107,7 @@ TEST_CASE("outputs: tags reach the rules that ask for them, optional rules give 
   std::string all;
   for (const Word& word : words) {
     all += word.form.described + ":";
-    for (const Outputs::Output& output : OutputsOf(grammar, word.form.form).all)
+    for (const Runner::Output& output : OutputsOf(grammar, word.form.form).all)
       all += " " + output.surface + " " + std::to_string(static_cast<int>(output.probability * 100 + 0.5));
     all += "\n";
   }
