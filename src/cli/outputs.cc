@@ -2,6 +2,8 @@
 
 #include <fmt/format.h>
 
+#include <string>
+
 namespace tiersmith::cli {
 
 std::string Listed(const std::vector<Runner::Output>& outputs, const std::string& between) {
@@ -18,7 +20,7 @@ std::string Listed(const std::vector<Runner::Output>& outputs, const std::string
 nlohmann::ordered_json Json(const std::vector<Runner::Output>& outputs) {
   nlohmann::ordered_json json = nlohmann::ordered_json::array();
   for (const Runner::Output& output : outputs)
-    json.push_back({{"surface", output.surface}, {"probability", output.probability}});
+    json.push_back({{"surface", output.surface}, {"probability", std::stod(fmt::format("{:.6g}", output.probability))}});
   return json;
 }
 

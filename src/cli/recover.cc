@@ -1,13 +1,16 @@
 // tiersmith recover: surface forms to the underlying forms they may stand for, fewest restorations first.
-// [imposible] gives in-posible among others. Candidates come from segments; there is no lexicon yet, so the column for
-// the gloss is empty. Tested by tests/cli/recover.sh.
+// [imposible] gives in-posible among others. Candidates are words where the lexicon has stems, else anything that segments
+// spell. Tested by tests/cli/recover.sh, lexicon.sh, optional.sh.
 #include <fmt/format.h>
+#include <fmt/ranges.h>
 
 #include <algorithm>
+#include <cmath>
 #include <iostream>
 #include <nlohmann/json.hpp>
 #include <tuple>
 
+#include "analyse/word_graph.h"
 #include "cli/lettering.h"
 #include "run/run.h"
 
@@ -19,6 +22,7 @@ using nlohmann::ordered_json;
 struct RecoverOptions : CommonOptions {
   std::vector<std::string> forms;
   std::size_t best = 10;
+  std::string from;  // "lexicon", "segments"; "": the lexicon where it has stems
   bool keep_going = false;
 };
 
@@ -41,7 +45,7 @@ std::string Bound(const Runner::Candidates& candidates) {
 std::string AsText(const std::string& form, const Runner::Candidates& candidates, bool named) {
   std::vector<std::vector<std::string>> rows;
   for (const Runner::Candidate& candidate : candidates.best) {
-    rows.push_back({candidate.form, std::to_string(candidate.restorations), Weight(candidate.weight), ""});
+    rows.push_back({candidate.form, std::to_string(candidate.restorations), Weight(candidate.weight), candidate.gloss});
   }
   std::string out = named ? "[" + form + "]\n" : "";
   out += rows.empty() ? "∅\n" : Table(rows, {false, true, true, false});
@@ -54,8 +58,8 @@ std::string AsTsv(const std::string& form, const Runner::Candidates& candidates)
   std::string out;
   if (candidates.best.empty()) out += Field(form) + "\t∅\t\t\t\n";
   for (const Runner::Candidate& candidate : candidates.best) {
-    out += fmt::format("{}\t{}\t{}\t{}\t\n", Field(form), candidate.form, candidate.restorations,
-                       Weight(candidate.weight));
+    out += fmt::format("{}\t{}\t{}\t{}\t{}\n", Field(form), candidate.form, candidate.restorations,
+                       Weight(candidate.weight), Field(candidate.gloss));
   }
   return out;
 }
@@ -70,9 +74,24 @@ ordered_json AsJson(const std::string& form, const Runner::Candidates& candidate
     json["candidates"].push_back({{"form", candidate.form},
                                   {"restorations", candidate.restorations},
                                   {"weight", candidate.weight},
-                                  {"gloss", nullptr}});
+                                  {"gloss", candidate.gloss.empty() ? ordered_json(nullptr) : ordered_json(candidate.gloss)}});
   }
   return json;
+}
+
+// Those of several readings of one form: each once, with the probability of all of them.
+void Sum(Runner::Candidates* candidates) {
+  std::vector<Runner::Candidate> each;
+  for (Runner::Candidate& candidate : candidates->best) {
+    const auto same = std::find_if(each.begin(), each.end(), [&](const auto& one) { return one.form == candidate.form; });
+    if (same == each.end()) {
+      each.push_back(std::move(candidate));
+      continue;
+    }
+    same->restorations = std::min(same->restorations, candidate.restorations);
+    same->weight = std::max(0.0, -std::log(std::exp(-same->weight) + std::exp(-candidate.weight)));
+  }
+  candidates->best = std::move(each);
 }
 
 // The candidates of each reading of the form, in letters if they are asked for.
@@ -90,10 +109,33 @@ bool Recover(Runner& runner, const Lettering& lettering, const std::string& form
   }
   for (Runner::Candidate& candidate : candidates->best)
     candidate.form = lettering.Write(candidate.form, Reader::Side::kUnderlying);
+  if (readings.size() > 1) Sum(candidates);
   Sort(*candidates);
   if (candidates->best.size() <= best) return true;
   candidates->best.resize(best);
   candidates->more = true;
+  return true;
+}
+
+// Only words from here on, if they are asked for. False, after saying so, if there are none.
+bool ChooseWords(const RecoverOptions& options, const Loaded& loaded, Runner* runner, bool* words) {
+  const Grammar& grammar = *loaded.grammar;
+  *words = options.from.empty() ? grammar.lexicon.has_stems() : options.from == "lexicon";
+  if (!*words) return true;
+  if (!grammar.lexicon.has_stems()) {
+    PrintError("the lexicon has no stems, so there are no words to recover");
+    PrintHelp("list some, as in: lexicon { stem /tilun/ 'rope' noun }, or give --from segments");
+    return false;
+  }
+  const FormReader reader(grammar);
+  Diagnostics diagnostics;
+  std::vector<std::string> left_out;
+  runner->AllowOnly(WordsAllowed(reader, grammar, diagnostics), &left_out);
+  PrintDiagnostics(diagnostics, *loaded.sources, options.json());
+  if (!left_out.empty()) {
+    PrintNote(fmt::format("left out, for they have letters or tags this grammar was not compiled for: {}",
+                          fmt::join(left_out, ", ")));
+  }
   return true;
 }
 
@@ -103,11 +145,17 @@ int RunRecover(const RecoverOptions& options) {
     PrintError(fmt::format("--best {}: give a number from 1 to {}", options.best, Limits{}.candidates));
     return kUsage;
   }
+  if (!options.from.empty() && options.from != "lexicon" && options.from != "segments") {
+    PrintError(fmt::format("--from {}: candidates come from lexicon or segments", options.from));
+    return kUsage;
+  }
   const Loaded loaded = LoadAndCompile(options);
   if (loaded.code != kFine) return loaded.code;
   if (SpellsNothing(options, *loaded.grammar)) return kUsage;
   const Lettering lettering(*loaded.grammar, options.spelled);
   Runner runner(*loaded.grammar, *loaded.cascade);
+  bool words = false;
+  if (!ChooseWords(options, loaded, &runner, &words)) return kUsage;
   Output output(options.output);
   if (!output.good()) return kFiles;
   FormSource source(options.forms);
@@ -129,6 +177,8 @@ int RunRecover(const RecoverOptions& options) {
         return kUsage;
       }
       candidates = {};
+    } else if (words && candidates.best.empty()) {
+      PrintNote(fmt::format("no word of the lexicon comes out as [{}]; --from segments looks beyond it", form));
     }
     none = none || candidates.best.empty();
     if (options.json()) {
@@ -162,10 +212,15 @@ void AddRecover(CLI::App& app, int& code) {
   AddSpelledOption(*verb, *options);
   verb->add_option("FORMS", options->forms, "surface forms; none, or -: one a line on standard input");
   verb->add_option("--best", options->best, "how many candidates (10)")->type_name("N");
+  verb->add_option("--from", options->from,
+                   "lexicon: words of the lexicon and its paradigms (where it has stems, this is what is done);\n"
+                   "segments: anything the segments spell")
+      ->type_name("SOURCE");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
   verb->footer(
-      "\nColumns: form, restorations (slots and boundaries put back), weight, gloss (empty: no lexicon yet).\n"
-      "\nExample:\n  tiersmith recover velmari.tier --best 5 iŋkat");
+      "\nColumns: form, restorations (slots and boundaries put back), weight (-ln of the probability that the form comes\n"
+      "out so; 0 where no rule is optional), gloss (of words). Fewest restorations first, then likeliest.\n"
+      "\nExample:\n  tiersmith recover velmari.tier --best 5 --from segments iŋkat");
   verb->callback([options, &code] { code = RunRecover(*options); });
 }
 

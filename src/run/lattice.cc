@@ -258,6 +258,23 @@ Lattice Relabelled(const Lattice& in, const std::function<std::pair<int, int>(in
   return result;
 }
 
+double Probability(const Lattice& lattice, const std::function<int(int state, int label)>& step,
+                   const std::function<bool(int state)>& ends) {
+  std::map<std::pair<int, int>, double> known;  // node, state -> the probability from there on
+  const std::function<double(int, int)> from = [&](int node, int state) {
+    const auto found = known.find({node, state});
+    if (found != known.end()) return found->second;
+    double sum = lattice.ends[static_cast<std::size_t>(node)] && ends(state) ? 1 : 0;
+    for (const LatticeArc& arc : lattice.arcs[static_cast<std::size_t>(node)]) {
+      const int after = arc.label == Lattice::kNothing ? state : step(state, arc.label);
+      if (after >= 0) sum += arc.probability * from(arc.next, after);
+    }
+    known[{node, state}] = sum;
+    return sum;
+  };
+  return lattice.arcs.empty() ? 0 : from(0, 0);
+}
+
 std::vector<Likely> Likeliest(const Lattice& lattice, std::size_t most, bool* more) {
   return Search(lattice).Run(most, more);
 }

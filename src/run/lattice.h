@@ -46,6 +46,11 @@ Lattice Through(const Lattice& in, const Segment& segment, LetterNumbers* letter
 // the label to write.
 Lattice Relabelled(const Lattice& in, const std::function<std::pair<int, int>(int state, int label)>& map);
 
+// The probability of all strings that an automaton accepts. `step` is told the state so far (0 at the start) and the label, and
+// gives the state after, or -1.
+double Probability(const Lattice& lattice, const std::function<int(int state, int label)>& step,
+                   const std::function<bool(int state)>& ends);
+
 struct Likely {
   std::vector<int> labels;
   double probability = 1;

@@ -4,18 +4,24 @@
 #include <fst/arcsort.h>
 #include <fst/compose.h>
 #include <fst/connect.h>
+#include <fst/determinize.h>
 #include <fst/flags.h>
 #include <fst/invert.h>
+#include <fst/minimize.h>
 #include <fst/project.h>
 #include <fst/rmepsilon.h>
 #include <fst/shortest-path.h>
 #include <fst/vector-fst.h>
 
 #include <algorithm>
+#include <cmath>
 #include <map>
 #include <set>
+#include <tuple>
 
+#include "base/limits.h"
 #include "compile/cascade_data.h"
+#include "run/lattice.h"
 
 DECLARE_bool(fst_error_fatal);
 
@@ -35,6 +41,11 @@ class RealLetters {
     if (added) parts_.push_back({class_id, rest});
     return it->second;
   }
+  // 0: there is no such letter.
+  int Find(const LetterClasses::Parts& parts) const {
+    const auto found = ids_.find({parts.class_id, parts.rest});
+    return found == ids_.end() ? 0 : found->second;
+  }
   const LetterClasses::Parts& operator[](int id) const { return parts_[id - 1]; }
   int size() const { return static_cast<int>(parts_.size()); }
 
@@ -52,6 +63,106 @@ struct LetterFacts {
   Boundary boundary = Boundary::kNone;
 };
 
+// A word graph letter by letter. `machine` shares the beginnings of pieces; from where a piece is whole an arc without a letter
+// leads on.
+class Words {
+ public:
+  // Adds a piece; its first letter may be `other` (0: none) as well.
+  void Add(const WordGraph::Arc& arc, const std::vector<int>& ids, const std::vector<fst::TropicalWeight>& costs,
+           int other) {
+    int at = Node(arc.from);
+    for (std::size_t i = 0; i < ids.size(); ++i) {
+      const auto [it, added] = begun_.emplace(std::make_pair(at, ids[i]), machine_.NumStates());
+      if (added) {
+        machine_.AddState();
+        machine_.AddArc(at, StdArc(ids[i], ids[i], costs[i], it->second));
+        if (i == 0 && other != 0) {
+          begun_.emplace(std::make_pair(at, other), it->second);
+          machine_.AddArc(at, StdArc(other, other, costs[i], it->second));
+        }
+      }
+      at = it->second;
+    }
+    whole_[at].insert({Node(arc.to), arc.gloss});
+  }
+
+  void Finish(const WordGraph& words) {
+    machine_.SetStart(Node(0));
+    for (const auto& [state, pieces] : whole_) {
+      int last = fst::kNoStateId;
+      for (const auto& [to, gloss] : pieces) {
+        if (to != last) machine_.AddArc(state, StdArc(0, 0, kFree, to));
+        last = to;
+      }
+    }
+    for (int end : words.ends) {
+      machine_.SetFinal(Node(end), kFree);
+      machine_.AddArc(Node(end), StdArc(0, 0, kFree, Node(words.again)));
+      ends_.emplace(Node(end), Node(words.again));
+    }
+  }
+
+  // Without arcs that have no letter, and small.
+  Fst Acceptor() const {
+    Fst epsilon_free = machine_, result;
+    fst::RmEpsilon(&epsilon_free);
+    fst::Determinize(epsilon_free, &result);
+    fst::Minimize(&result);
+    fst::ArcSort(&result, fst::ILabelCompare<StdArc>());
+    return result;
+  }
+
+  // "rope PL LOC"; words parted by #, different analyses by /.
+  std::string GlossOf(const std::vector<int>& ids) const {
+    std::set<std::string> glosses;
+    Gloss(ids, 0, machine_.Start(), "", &glosses);
+    std::string all;
+    for (const std::string& gloss : glosses) all += (all.empty() || gloss.empty() ? "" : " / ") + gloss;
+    return all;
+  }
+
+ private:
+  int Node(int node) {
+    const auto [it, added] = nodes_.emplace(node, machine_.NumStates());
+    if (added) machine_.AddState();
+    return it->second;
+  }
+
+  void Gloss(const std::vector<int>& ids, std::size_t i, int at, const std::string& gloss,
+             std::set<std::string>* glosses) const {
+    const auto end = ends_.find(at);
+    if (end != ends_.end()) {
+      if (i == ids.size()) glosses->insert(gloss);
+      Gloss(ids, i, end->second, gloss + (gloss.empty() ? "#" : " #"), glosses);
+    }
+    const auto pieces = whole_.find(at);
+    if (pieces != whole_.end()) {
+      for (const auto& [to, more] : pieces->second)
+        Gloss(ids, i, to, gloss + (gloss.empty() || more.empty() ? "" : " ") + more, glosses);
+    }
+    if (i == ids.size()) return;
+    const auto next = begun_.find({at, ids[i]});
+    if (next != begun_.end()) Gloss(ids, i + 1, next->second, gloss, glosses);
+  }
+
+  Fst machine_;
+  std::map<int, int> nodes_;                                   // of the graph -> state
+  std::map<std::pair<int, int>, int> begun_;                   // state, letter -> state
+  std::map<int, std::set<std::pair<int, std::string>>> whole_;  // state -> where the pieces that end here lead, their glosses
+  std::map<int, int> ends_;                                    // state where a word ends -> where the next begins
+};
+
+// The arcs of an acceptor without choice, and its one end.
+std::map<std::pair<int, int>, int> ArcsOf(const Fst& acceptor, int* end) {
+  std::map<std::pair<int, int>, int> arcs;
+  for (int s = 0; s < acceptor.NumStates(); ++s) {
+    if (acceptor.Final(s) != fst::TropicalWeight::Zero()) *end = s;
+    for (fst::ArcIterator<Fst> it(acceptor, s); !it.Done(); it.Next())
+      arcs.emplace(std::make_pair(s, it.Value().ilabel), it.Value().nextstate);
+  }
+  return arcs;
+}
+
 }  // namespace
 
 struct Recovery::Impl {
@@ -63,10 +174,15 @@ struct Recovery::Impl {
   std::vector<std::set<int>> leaving;
   std::vector<Fst> inverted;                   // by segment: from what it writes to what it reads
   Fst underlying;                              // acceptor of underlying forms, boundaries costing 1
+  Fst allowed;                                 // the same, or of words
+  std::unique_ptr<Words> words;                // where only words are allowed
+  bool weighted = false;
+  LetterNumbers numbers;
   std::map<int, const InputLetter*> input_of;  // by letter id
   std::map<int, std::vector<int>> spelled_by;  // symbol -> letters that leave the last segment
 
   Impl(const Grammar& g, const CascadeData& d) : grammar(g), data(d) {
+    for (const Rule& rule : g.rules) weighted = weighted || rule.probability < 1;
     FLAGS_fst_error_fatal = false;
     std::set<int> coming;
     for (const InputLetter& input : data.inputs) {
@@ -85,6 +201,7 @@ struct Recovery::Impl {
       if (facts[id - 1].symbol >= 0) spelled_by[facts[id - 1].symbol].push_back(id);
     }
     underlying = UnderlyingForms();
+    allowed = underlying;
   }
 
   LetterFacts FactsOf(const LetterClasses::Parts& parts) const {
@@ -184,8 +301,39 @@ struct Recovery::Impl {
     return result;
   }
 
+  void AllowOnly(const WordGraph& graph, std::vector<std::string>* left_out) {
+    words = std::make_unique<Words>();
+    std::set<std::string> unknown;
+    for (const WordGraph::Arc& arc : graph.arcs) {
+      std::vector<int> ids;
+      std::vector<fst::TropicalWeight> costs;
+      for (const Letter& letter : LettersOf(arc.piece, data)) {
+        const bool opening = grammar.tagged && arc.from == 0 && ids.empty();
+        ids.push_back(letters.Find(data.classes->Classify(letter)));
+        costs.push_back(letter.kind == FormItem::Kind::kBoundary && !opening ? kRestored : kFree);
+      }
+      const bool known = std::all_of(ids.begin(), ids.end(), [&](int id) { return input_of.count(id) > 0; });
+      if (known) {
+        words->Add(arc, ids, costs, arc.from == graph.again ? PhraseFor(ids.front()) : 0);
+      } else {
+        unknown.insert(arc.text);
+      }
+    }
+    left_out->assign(unknown.begin(), unknown.end());
+    words->Finish(graph);
+    allowed = words->Acceptor();
+  }
+
+  // The ‖ that bears the tags of this #.
+  int PhraseFor(int word) const {
+    for (const auto& [id, input] : input_of) {
+      if (input->boundary == Boundary::kPhrase && input->tags == input_of.at(word)->tags) return id;
+    }
+    return 0;
+  }
+
   // All strings of letters that are written so.
-  Fst Lattice(const std::vector<Token>& surface) const {
+  Fst SurfaceForms(const std::vector<Token>& surface) const {
     Fst result;
     int state = result.AddState();
     result.SetStart(state);
@@ -235,9 +383,8 @@ struct Recovery::Impl {
     }
   }
 
-  // Acceptor of the underlying forms of a surface form.
-  Fst Candidates(const std::vector<Token>& surface) const {
-    Fst at = Lattice(surface);
+  // Acceptor of the underlying forms, among those, of a surface form.
+  Fst Candidates(Fst at, const Fst& among) const {
     for (std::size_t k = inverted.size(); k-- > 0;) {
       Fst next;
       fst::Compose(at, inverted[k], &next);
@@ -247,10 +394,71 @@ struct Recovery::Impl {
       at = std::move(next);
     }
     Fst result;
-    fst::Compose(at, underlying, &result);
+    fst::Compose(at, among, &result);
     fst::Connect(&result);
     fst::RmEpsilon(&result);
     return result;
+  }
+
+  // The likelihood that a form comes out so, as Candidate::weight. `surface`: SurfaceForms of it; no state has two arcs for
+  // one letter.
+  double Weight(const std::vector<int>& ids, const std::map<std::pair<int, int>, int>& surface, int end) {
+    std::vector<int> labels;
+    for (int id : ids) labels.push_back(numbers.Number(letters[id]));
+    Lattice lattice = Lattice::Of(labels);
+    std::int32_t flags = 0;
+    for (const Segment& segment : data.segments) lattice = Through(lattice, segment, &numbers, &flags);
+    const double probability = Probability(
+        lattice,
+        [&](int state, int label) {
+          const auto found = surface.find({state, letters.Find(numbers[label])});
+          return found == surface.end() ? -1 : found->second;
+        },
+        [&](int state) { return state == end; });
+    constexpr double kDigits = 1e6;
+    return std::round(std::max(0.0, -std::log(probability)) * kDigits) / kDigits;
+  }
+
+  // The `count` paths with the fewest restorations.
+  struct Path {
+    std::vector<int> ids;
+    int restorations = 0;
+  };
+  std::vector<Path> Shortest(const Fst& machine, std::size_t count) const {
+    std::vector<Path> found;
+    Fst paths;
+    fst::ShortestPath(machine, &paths, static_cast<int>(count), weighted);
+    if (paths.Start() < 0) return found;
+    if (paths.Final(paths.Start()) != fst::TropicalWeight::Zero()) found.emplace_back();
+    // The result is a tree of paths from the start.
+    for (fst::ArcIterator<Fst> first(paths, paths.Start()); !first.Done(); first.Next()) {
+      Path path;
+      float weight = 0;
+      StdArc arc = first.Value();
+      while (true) {
+        if (arc.ilabel != 0) path.ids.push_back(arc.ilabel);
+        weight += arc.weight.Value();
+        if (paths.NumArcs(arc.nextstate) == 0) break;
+        arc = fst::ArcIterator<Fst>(paths, arc.nextstate).Value();
+      }
+      weight += paths.Final(arc.nextstate).Value();
+      path.restorations = static_cast<int>(weight + 0.5F);
+      found.push_back(std::move(path));
+    }
+    std::stable_sort(found.begin(), found.end(),
+                     [](const Path& a, const Path& b) { return a.restorations < b.restorations; });
+    return found;
+  }
+
+  // The paths among which the `best` candidates are, and one more if there is one. Where rules are optional, all that have as
+  // few restorations as the last of them, as far as the limit goes.
+  std::vector<Path> ShortestPaths(const Fst& machine, std::size_t best) const {
+    for (std::size_t count = best + 1;;) {
+      std::vector<Path> paths = Shortest(machine, count);
+      const bool whole = paths.size() < count || paths.back().restorations > paths[best - 1].restorations;
+      if (!weighted || whole || count >= Limits().candidates) return paths;
+      count = std::min(2 * count, Limits().candidates);
+    }
   }
 
   std::string Text(const std::vector<int>& ids) const {
@@ -332,41 +540,34 @@ Recovery::Recovery(const Grammar& grammar, const Cascade& cascade)
     : impl_(std::make_unique<Impl>(grammar, cascade.data())) {}
 Recovery::~Recovery() = default;
 
+void Recovery::AllowOnly(const WordGraph& words, std::vector<std::string>* left_out) {
+  impl_->AllowOnly(words, left_out);
+}
+
 bool Recovery::Recover(const std::vector<Token>& surface, std::size_t best, Runner::Candidates* candidates) {
-  const Fst machine = impl_->Candidates(surface);
+  const Fst forms = impl_->SurfaceForms(surface);
+  const Fst machine = impl_->Candidates(forms, impl_->allowed);
   if (machine.Properties(fst::kError, false) != 0) return false;
   *candidates = {};
   if (machine.Start() == fst::kNoStateId) return true;
   candidates->infinite = machine.Properties(fst::kAcyclic, true) == 0;
   if (candidates->infinite) candidates->infinite_why = impl_->InfiniteWhy(machine);
-  Fst paths;
-  fst::ShortestPath(machine, &paths, static_cast<int>(best) + 1);
+  std::map<std::pair<int, int>, int> surface_arcs;
+  int surface_end = 0;
+  if (impl_->weighted) surface_arcs = ArcsOf(forms, &surface_end);
   std::set<std::string> seen;
-  // The result is a tree of paths from the start.
-  for (fst::ArcIterator<Fst> first(paths, paths.Start() < 0 ? 0 : paths.Start()); paths.Start() >= 0 && !first.Done();
-       first.Next()) {
-    std::vector<int> ids;
-    float weight = 0;
-    StdArc arc = first.Value();
-    while (true) {
-      if (arc.ilabel != 0) ids.push_back(arc.ilabel);
-      weight += arc.weight.Value();
-      if (paths.NumArcs(arc.nextstate) == 0) {
-        weight += paths.Final(arc.nextstate).Value();
-        break;
-      }
-      arc = fst::ArcIterator<Fst>(paths, arc.nextstate).Value();
-    }
+  for (const Impl::Path& path : impl_->ShortestPaths(machine, best)) {
     Runner::Candidate candidate;
-    candidate.form = impl_->Text(ids);
-    candidate.restorations = static_cast<int>(weight + 0.5F);
-    if (seen.insert(candidate.form).second) candidates->best.push_back(std::move(candidate));
+    candidate.form = impl_->Text(path.ids);
+    if (!seen.insert(candidate.form).second) continue;
+    candidate.restorations = path.restorations;
+    if (impl_->weighted) candidate.weight = impl_->Weight(path.ids, surface_arcs, surface_end);
+    if (impl_->words != nullptr) candidate.gloss = impl_->words->GlossOf(path.ids);
+    candidates->best.push_back(std::move(candidate));
   }
-  if (paths.Start() >= 0 && paths.Final(paths.Start()) != fst::TropicalWeight::Zero())
-    candidates->best.insert(candidates->best.begin(), Runner::Candidate{});
-  std::stable_sort(
-      candidates->best.begin(), candidates->best.end(),
-      [](const Runner::Candidate& a, const Runner::Candidate& b) { return a.restorations < b.restorations; });
+  std::stable_sort(candidates->best.begin(), candidates->best.end(), [](const auto& a, const auto& b) {
+    return std::tie(a.restorations, a.weight) < std::tie(b.restorations, b.weight);
+  });
   candidates->more = candidates->best.size() > best || candidates->infinite;
   if (candidates->best.size() > best) candidates->best.resize(best);
   return true;
@@ -384,7 +585,7 @@ bool Recovery::IsCandidate(const std::vector<LetterClasses::Parts>& underlying, 
   }
   form.SetFinal(state, kFree);
   Fst both;
-  fst::Compose(impl_->Candidates(surface), form, &both);
+  fst::Compose(impl_->Candidates(impl_->SurfaceForms(surface), impl_->underlying), form, &both);
   fst::Connect(&both);
   return both.Start() != fst::kNoStateId;
 }

@@ -56,6 +56,11 @@ struct Runner::Impl {
   }
   const Reader& reader() { return forms().reader(); }
 
+  Recovery& Inverse() {
+    if (recovery == nullptr) recovery = std::make_unique<Recovery>(grammar, cascade);
+    return *recovery;
+  }
+
   const Spelled& Spell(const LetterClasses::Parts& letter) {
     if (static_cast<int>(spelled.size()) <= letter.class_id) spelled.resize(letter.class_id + 1);
     auto& row = spelled[letter.class_id];
@@ -304,16 +309,18 @@ Runner::Answer Runner::Apply(const Form& underlying) {
 }
 
 bool Runner::Recover(std::string_view surface, std::size_t best, Candidates* candidates, TextError* error) {
-  if (impl_->recovery == nullptr) impl_->recovery = std::make_unique<Recovery>(impl_->grammar, impl_->cascade);
   if (!impl_->reader().Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
-  return impl_->recovery->Recover(impl_->tokens, best, candidates);
+  return impl_->Inverse().Recover(impl_->tokens, best, candidates);
+}
+
+void Runner::AllowOnly(const WordGraph& words, std::vector<std::string>* left_out) {
+  impl_->Inverse().AllowOnly(words, left_out);
 }
 
 bool Runner::IsCandidate(std::string_view underlying, std::string_view surface, bool* answer, TextError* error) {
-  if (impl_->recovery == nullptr) impl_->recovery = std::make_unique<Recovery>(impl_->grammar, impl_->cascade);
   if (!impl_->ToLetters(underlying, error)) return false;
   if (!impl_->reader().Read(surface, Reader::Side::kSurface, &impl_->tokens, error)) return false;
-  *answer = impl_->recovery->IsCandidate(impl_->letters, impl_->tokens);
+  *answer = impl_->Inverse().IsCandidate(impl_->letters, impl_->tokens);
   return true;
 }
 

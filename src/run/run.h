@@ -10,6 +10,7 @@
 #include "compile/cascade.h"
 #include "model/readings.h"
 #include "model/text.h"
+#include "run/word_graph.h"
 
 namespace tiersmith {
 
@@ -51,16 +52,19 @@ class Runner {
   struct Candidate {
     std::string form;      // "in-posible"
     int restorations = 0;  // slots and boundaries restored
-    double weight = 0;     // negative natural log of the probability; 0 where all rules are obligatory
+    double weight = 0;     // negative natural log of the probability that this form comes out so; 0 if it always does
+    std::string gloss;     // of words, where only words are asked for
   };
   struct Candidates {
-    std::vector<Candidate> best;  // fewest restorations first
+    std::vector<Candidate> best;  // fewest restorations first, then likeliest
     bool infinite = false;
     std::string infinite_why;  // "any number of h (rule 'h deletion')"
     bool more = false;         // the list was cut at the number asked for
   };
   // Surface text -> candidate underlying forms.
   bool Recover(std::string_view surface, std::size_t best, Candidates* candidates, TextError* error);
+  // From here on Recover gives only words of this graph. `left_out`: pieces with letters the grammar was not compiled for.
+  void AllowOnly(const WordGraph& words, std::vector<std::string>* left_out);
   // Is this underlying form among the candidates of this surface form? By composition, not by listing.
   bool IsCandidate(std::string_view underlying, std::string_view surface, bool* answer, TextError* error);
 
