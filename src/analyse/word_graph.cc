@@ -9,9 +9,7 @@
 namespace tiersmith {
 namespace {
 
-bool SameForm(const Morph& a, const Morph& b) {
-  return a.text == b.text && a.before == b.before && a.after == b.after;
-}
+bool SameForm(const Morph& a, const Morph& b) { return a.text == b.text && a.before == b.before && a.after == b.after; }
 
 bool InParadigm(const Grammar& grammar, const LexiconEntry& affix) {
   const auto is = [&](const SlotValue& value) {

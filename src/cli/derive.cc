@@ -63,7 +63,8 @@ class ResultWriter {
     if (options_.json()) {
       std::string list;
       for (const Read& read : readings) {
-        list += (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) + ResultJson(read) + "}";
+        list +=
+            (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) + ResultJson(read) + "}";
       }
       return Json("{\"underlying\": " + JsonString(underlying) + ResultJson(readings.front()) + ", \"readings\": [" +
                   list + "]}");
@@ -78,7 +79,8 @@ class ResultWriter {
     if (!differ) return Line(underlying, first);
     std::string line;
     for (const Read& read : readings) {
-      line += (line.empty() ? "" : "\t") + Listed(read.outputs, " (" + read.reading + ")\t") + " (" + read.reading + ")";
+      line +=
+          (line.empty() ? "" : "\t") + Listed(read.outputs, " (" + read.reading + ")\t") + " (" + read.reading + ")";
     }
     Line(underlying, line);
   }
@@ -196,7 +198,8 @@ class Tracer {
  private:
   Outputs Ways(const Derivation& derivation) const {
     Outputs outputs = OutputsOf(grammar_, derivation);
-    for (Runner::Output& output : outputs.all) output.surface = lettering_.Write(output.surface, Reader::Side::kSurface);
+    for (Runner::Output& output : outputs.all)
+      output.surface = lettering_.Write(output.surface, Reader::Side::kSurface);
     return outputs;
   }
 

@@ -6,13 +6,20 @@
 
 namespace tiersmith::cli {
 
+namespace {
+
+// Machines hold weights as floats: .4375 would be shown as 0.437.
+double Rounded(double probability) { return std::stod(fmt::format("{:.6g}", probability)); }
+
+}  // namespace
+
 std::string Listed(const std::vector<Runner::Output>& outputs, const std::string& between) {
-  constexpr double kRounding = 1e-9;
   std::string out;
   for (const Runner::Output& output : outputs) {
     if (!out.empty()) out += between;
     out += output.surface;
-    if (output.probability < 1 - kRounding) out += fmt::format(" {:.3g}", output.probability);
+    const double probability = Rounded(output.probability);
+    if (probability != 1) out += fmt::format(" {:.3g}", probability);
   }
   return out.empty() ? kNoOutput : out;
 }
@@ -20,7 +27,7 @@ std::string Listed(const std::vector<Runner::Output>& outputs, const std::string
 nlohmann::ordered_json Json(const std::vector<Runner::Output>& outputs) {
   nlohmann::ordered_json json = nlohmann::ordered_json::array();
   for (const Runner::Output& output : outputs)
-    json.push_back({{"surface", output.surface}, {"probability", std::stod(fmt::format("{:.6g}", output.probability))}});
+    json.push_back({{"surface", output.surface}, {"probability", Rounded(output.probability)}});
   return json;
 }
 

@@ -100,7 +100,8 @@ class Writer {
     for (const SlotValue& value : across) grid[0].push_back(value.name);
     for (std::size_t i = 0; i < down.size(); ++i) {
       grid.push_back({down[i].name});
-      for (std::size_t k = 0; k < across.size(); ++k) grid.back().push_back(Listed(Shown(rows[i * across.size() + k]), " ~ "));
+      for (std::size_t k = 0; k < across.size(); ++k)
+        grid.back().push_back(Listed(Shown(rows[i * across.size() + k]), " ~ "));
     }
     return grid;
   }

@@ -71,10 +71,11 @@ ordered_json AsJson(const std::string& form, const Runner::Candidates& candidate
                        {"more", candidates.more},
                        {"candidates", ordered_json::array()}};
   for (const Runner::Candidate& candidate : candidates.best) {
-    json["candidates"].push_back({{"form", candidate.form},
-                                  {"restorations", candidate.restorations},
-                                  {"weight", candidate.weight},
-                                  {"gloss", candidate.gloss.empty() ? ordered_json(nullptr) : ordered_json(candidate.gloss)}});
+    json["candidates"].push_back(
+        {{"form", candidate.form},
+         {"restorations", candidate.restorations},
+         {"weight", candidate.weight},
+         {"gloss", candidate.gloss.empty() ? ordered_json(nullptr) : ordered_json(candidate.gloss)}});
   }
   return json;
 }
@@ -83,7 +84,8 @@ ordered_json AsJson(const std::string& form, const Runner::Candidates& candidate
 void Sum(Runner::Candidates* candidates) {
   std::vector<Runner::Candidate> each;
   for (Runner::Candidate& candidate : candidates->best) {
-    const auto same = std::find_if(each.begin(), each.end(), [&](const auto& one) { return one.form == candidate.form; });
+    const auto same =
+        std::find_if(each.begin(), each.end(), [&](const auto& one) { return one.form == candidate.form; });
     if (same == each.end()) {
       each.push_back(std::move(candidate));
       continue;
@@ -218,7 +220,8 @@ void AddRecover(CLI::App& app, int& code) {
       ->type_name("SOURCE");
   verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
   verb->footer(
-      "\nColumns: form, restorations (slots and boundaries put back), weight (-ln of the probability that the form comes\n"
+      "\nColumns: form, restorations (slots and boundaries put back), weight (-ln of the probability that the form "
+      "comes\n"
       "out so; 0 where no rule is optional), gloss (of words). Fewest restorations first, then likeliest.\n"
       "\nExample:\n  tiersmith recover velmari.tier --best 5 --from segments iŋkat");
   verb->callback([options, &code] { code = RunRecover(*options); });

@@ -103,7 +103,8 @@ class Search {
   // Follows the arcs that write nothing, and puts the prefix among the open ones.
   void Open(Prefix prefix) {
     for (auto it = prefix.reached.begin(); it != prefix.reached.end(); ++it) {  // arcs lead onward in the order
-      for (const LatticeArc& arc : lattice_.arcs[static_cast<std::size_t>(order_[static_cast<std::size_t>(it->first)])]) {
+      for (const LatticeArc& arc :
+           lattice_.arcs[static_cast<std::size_t>(order_[static_cast<std::size_t>(it->first)])]) {
         if (arc.label == Lattice::kNothing)
           prefix.reached[place_[static_cast<std::size_t>(arc.next)]] += it->second * arc.probability;
       }

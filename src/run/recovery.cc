@@ -146,10 +146,11 @@ class Words {
   }
 
   Fst machine_;
-  std::map<int, int> nodes_;                                   // of the graph -> state
-  std::map<std::pair<int, int>, int> begun_;                   // state, letter -> state
-  std::map<int, std::set<std::pair<int, std::string>>> whole_;  // state -> where the pieces that end here lead, their glosses
-  std::map<int, int> ends_;                                    // state where a word ends -> where the next begins
+  std::map<int, int> nodes_;                  // of the graph -> state
+  std::map<std::pair<int, int>, int> begun_;  // state, letter -> state
+  std::map<int, std::set<std::pair<int, std::string>>>
+      whole_;                // state -> where the pieces that end here lead, their glosses
+  std::map<int, int> ends_;  // state where a word ends -> where the next begins
 };
 
 // The arcs of an acceptor without choice, and its one end.
@@ -172,10 +173,10 @@ struct Recovery::Impl {
   std::vector<LetterFacts> facts;       // by letter id - 1
   std::vector<std::set<int>> entering;  // by segment: letters that may come in
   std::vector<std::set<int>> leaving;
-  std::vector<Fst> inverted;                   // by segment: from what it writes to what it reads
-  Fst underlying;                              // acceptor of underlying forms, boundaries costing 1
-  Fst allowed;                                 // the same, or of words
-  std::unique_ptr<Words> words;                // where only words are allowed
+  std::vector<Fst> inverted;     // by segment: from what it writes to what it reads
+  Fst underlying;                // acceptor of underlying forms, boundaries costing 1
+  Fst allowed;                   // the same, or of words
+  std::unique_ptr<Words> words;  // where only words are allowed
   bool weighted = false;
   LetterNumbers numbers;
   std::map<int, const InputLetter*> input_of;  // by letter id

@@ -41,7 +41,7 @@ class Runner {
   // The machine's answer on a form, for agreement tests. `form` is none if the form is outside the machine's domain; the
   // flags are raised only by machines compiled for testing.
   struct Answer {
-    std::optional<Form> form;                      // the likeliest
+    std::optional<Form> form;                       // the likeliest
     std::vector<std::pair<Form, double>> outcomes;  // all, each once, with their probabilities
     bool ambiguous = false;
     bool reaches = false;

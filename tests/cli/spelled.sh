@@ -21,7 +21,7 @@ run derive "$t/v.tier" --spelled --format json ceni
 has_out '"surface": "ceni"'; has_out '"readings": [{"reading": "keni", "surface": "ceni"}]'
 run derive "$t/v.tier" --spelled --trace ceni-lA
 is_code 0; has_out 'surface          cenilä'
-run recover "$t/v.tier" --spelled --best 200 uncoc
+run recover "$t/v.tier" --from segments --spelled --best 200 uncoc
 is_code 0; has_out 'un-coɡ'; has_err '⟨uncoc⟩ may be read unkok or uŋkok'
 run check "$t/v.tier" --spelled
 is_code 0; has_out '6 of 6 rows derived'

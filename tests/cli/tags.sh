@@ -32,6 +32,6 @@ run check "$t/g.tier" --format json
 has_out '"reading": "pan@stem-ka@suffix@strong"'
 run words "$t/g.tier"
 is_code 0; has_out 'tan     ta     rope SG'; has_out 'tan-ka  tanka  rope PL'
-run recover "$t/g.tier" --best 200 pa
+run recover "$t/g.tier" --from segments --best 200 pa
 is_code 0; has_out 'pan@loan'
 done_testing

@@ -5,6 +5,7 @@
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <map>
+#include <set>
 #include <string>
 
 namespace tiersmith::testing {
@@ -190,6 +191,24 @@ TEST_CASE("lattice: through a machine", "[unit]") {
   CHECK(flags == 0);
   through(once, {{1, {0, 1, -1}, 1}, {2, {4, 2, -1}, 1}, {3, {0, 3, -1}, 1}}, &flags);
   CHECK(flags == 4);
+}
+
+TEST_CASE("lattice: the probability of what an automaton accepts, all ways summed", "[unit]") {
+  // 0 -1 .5-> 1, 0 -2 .3-> 1, 0 -nothing .2-> 1; 1 -3-> 2.
+  Lattice lattice;
+  lattice.arcs = {{{1, .5, 1}, {2, .3, 1}, {Lattice::kNothing, .2, 1}}, {{3, 1, 2}}, {}};
+  lattice.ends = {0, 0, 1};
+  const auto accepting = [&](const std::set<int>& labels, int length) {
+    return Probability(
+        lattice, [&](int state, int label) { return labels.count(label) > 0 ? state + 1 : -1; },
+        [&](int state) { return state == length; });
+  };
+  CHECK(accepting({1, 2, 3}, 2) == Approx(.8));  // 13, 23
+  CHECK(accepting({1, 3}, 2) == Approx(.5));
+  CHECK(accepting({1, 2, 3}, 1) == Approx(.2));  // 3
+  CHECK(accepting({1, 2}, 1) == 0);
+  CHECK(Probability(
+            Lattice{}, [](int, int) { return 0; }, [](int) { return true; }) == 0);
 }
 
 }  // namespace tiersmith::testing
