@@ -28,25 +28,25 @@ bool InParadigm(const Grammar& grammar, const LexiconEntry& affix) {
   return false;
 }
 
-// The form behind a boundary. Where rules ask for tags it begins with a ‖ that bears those of its first morpheme, and
-// that one becomes the boundary.
-Form Behind(Boundary boundary, Form form, bool tagged) {
-  if (boundary == Boundary::kNone) return form;
-  if (!tagged) form.items.insert(form.items.begin(), FormItem{FormItem::Kind::kBoundary, Boundary::kNone, 0, 0});
-  form.items.front().boundary = boundary;
-  return form;
-}
-
 class Builder {
  public:
-  Builder(const FormReader& reader, const Grammar& grammar, Diagnostics& diagnostics) : tagged_(grammar.tagged) {
-    WordList(reader, grammar).First(0, &cores_, diagnostics);
+  Builder(const FormReader& reader, const Grammar& grammar, Diagnostics& diagnostics) {
+    std::vector<Word> words;
+    WordList(reader, grammar).First(0, &words, diagnostics);
+    for (Word& word : words) {
+      cores_.push_back(graph_.pieces.size());
+      graph_.pieces.push_back({std::move(word.form.form), std::move(word.form.text), std::move(word.gloss)});
+    }
     for (const LexiconEntry& entry : grammar.lexicon.entries) {
       if (entry.kind == MorphemeKind::kStem || InParadigm(grammar, entry)) continue;
-      Affix affix{&entry, reader.Join(entry.form.text, {{entry.form.text, entry.kind, entry.tags, entry.gloss}})};
       const bool clitic = entry.kind == MorphemeKind::kClitic;
       const bool before = entry.form.after != Boundary::kNone;
-      (before ? clitic ? proclitics_ : prefixes_ : clitic ? enclitics_ : suffixes_).push_back(std::move(affix));
+      (before   ? clitic ? proclitics_ : prefixes_
+       : clitic ? enclitics_
+                : suffixes_)
+          .push_back({&entry.form, graph_.pieces.size()});
+      Reading reading = reader.Join(entry.form.text, {{entry.form.text, entry.kind, entry.tags, entry.gloss}});
+      graph_.pieces.push_back({std::move(reading.form), std::move(reading.text), entry.gloss});
     }
   }
 
@@ -61,18 +61,18 @@ class Builder {
       open_.pop_back();
       AddBefore(phase, boundary);
     }
-    for (const Affix& suffix : suffixes_) Add(suffixes_from_, suffix.entry->form.before, suffix, suffixes_from_);
+    for (const Affix& suffix : suffixes_) Add(suffixes_from_, suffix.form->before, suffix, suffixes_from_);
     for (const Affix& enclitic : enclitics_) {
-      Add(suffixes_from_, enclitic.entry->form.before, enclitic, enclitics_from_);
-      Add(enclitics_from_, enclitic.entry->form.before, enclitic, enclitics_from_);
+      Add(suffixes_from_, enclitic.form->before, enclitic, enclitics_from_);
+      Add(enclitics_from_, enclitic.form->before, enclitic, enclitics_from_);
     }
     return std::move(graph_);
   }
 
  private:
   struct Affix {
-    const LexiconEntry* entry;
-    Reading reading;
+    const Morph* form;
+    std::size_t piece;
   };
   enum class Phase { kProclitics, kPrefixes };  // what may still come before the core
 
@@ -90,21 +90,17 @@ class Builder {
     const int from = At(phase, boundary);
     if (phase == Phase::kProclitics) {
       for (const Affix& proclitic : proclitics_)
-        Add(from, boundary, proclitic, At(Phase::kProclitics, proclitic.entry->form.after));
+        Add(from, boundary, proclitic, At(Phase::kProclitics, proclitic.form->after));
     }
-    for (const Affix& prefix : prefixes_) Add(from, boundary, prefix, At(Phase::kPrefixes, prefix.entry->form.after));
-    for (const Word& core : cores_)
-      graph_.arcs.push_back(
-          {from, suffixes_from_, Behind(boundary, core.form.form, tagged_), core.form.text, core.gloss});
+    for (const Affix& prefix : prefixes_) Add(from, boundary, prefix, At(Phase::kPrefixes, prefix.form->after));
+    for (std::size_t core : cores_) graph_.arcs.push_back({from, suffixes_from_, core, boundary});
   }
 
   void Add(int from, Boundary boundary, const Affix& affix, int to) {
-    graph_.arcs.push_back(
-        {from, to, Behind(boundary, affix.reading.form, tagged_), affix.reading.text, affix.entry->gloss});
+    graph_.arcs.push_back({from, to, affix.piece, boundary});
   }
 
-  const bool tagged_;
-  std::vector<Word> cores_;
+  std::vector<std::size_t> cores_;
   std::vector<Affix> proclitics_, prefixes_, suffixes_, enclitics_;
   WordGraph graph_;
   int nodes_ = 0, suffixes_from_ = 0, enclitics_from_ = 0;

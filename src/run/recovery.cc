@@ -4,10 +4,8 @@
 #include <fst/arcsort.h>
 #include <fst/compose.h>
 #include <fst/connect.h>
-#include <fst/determinize.h>
 #include <fst/flags.h>
 #include <fst/invert.h>
-#include <fst/minimize.h>
 #include <fst/project.h>
 #include <fst/rmepsilon.h>
 #include <fst/shortest-path.h>
@@ -67,23 +65,24 @@ struct LetterFacts {
 // leads on.
 class Words {
  public:
-  // Adds a piece; its first letter may be `other` (0: none) as well.
-  void Add(const WordGraph::Arc& arc, const std::vector<int>& ids, const std::vector<fst::TropicalWeight>& costs,
-           int other) {
+  // Adds a piece; in the place of its first letter each of `others` may stand.
+  void Add(const WordGraph::Arc& arc, const std::string& gloss, const std::vector<int>& ids,
+           const std::vector<fst::TropicalWeight>& costs, const std::vector<int>& others) {
     int at = Node(arc.from);
     for (std::size_t i = 0; i < ids.size(); ++i) {
       const auto [it, added] = begun_.emplace(std::make_pair(at, ids[i]), machine_.NumStates());
+      const int next = it->second;
       if (added) {
         machine_.AddState();
-        machine_.AddArc(at, StdArc(ids[i], ids[i], costs[i], it->second));
-        if (i == 0 && other != 0) {
-          begun_.emplace(std::make_pair(at, other), it->second);
-          machine_.AddArc(at, StdArc(other, other, costs[i], it->second));
+        machine_.AddArc(at, StdArc(ids[i], ids[i], costs[i], next));
+        for (int other : i == 0 ? others : std::vector<int>{}) {
+          begun_.emplace(std::make_pair(at, other), next);
+          machine_.AddArc(at, StdArc(other, other, costs[i], next));
         }
       }
-      at = it->second;
+      at = next;
     }
-    whole_[at].insert({Node(arc.to), arc.gloss});
+    whole_[at].insert({Node(arc.to), gloss});
   }
 
   void Finish(const WordGraph& words) {
@@ -102,12 +101,8 @@ class Words {
     }
   }
 
-  // Without arcs that have no letter, and small.
   Fst Acceptor() const {
-    Fst epsilon_free = machine_, result;
-    fst::RmEpsilon(&epsilon_free);
-    fst::Determinize(epsilon_free, &result);
-    fst::Minimize(&result);
+    Fst result = machine_;
     fst::ArcSort(&result, fst::ILabelCompare<StdArc>());
     return result;
   }
@@ -304,33 +299,43 @@ struct Recovery::Impl {
 
   void AllowOnly(const WordGraph& graph, std::vector<std::string>* left_out) {
     words = std::make_unique<Words>();
-    std::set<std::string> unknown;
-    for (const WordGraph::Arc& arc : graph.arcs) {
-      std::vector<int> ids;
-      std::vector<fst::TropicalWeight> costs;
-      for (const Letter& letter : LettersOf(arc.piece, data)) {
-        const bool opening = grammar.tagged && arc.from == 0 && ids.empty();
-        ids.push_back(letters.Find(data.classes->Classify(letter)));
-        costs.push_back(letter.kind == FormItem::Kind::kBoundary && !opening ? kRestored : kFree);
-      }
-      const bool known = std::all_of(ids.begin(), ids.end(), [&](int id) { return input_of.count(id) > 0; });
-      if (known) {
-        words->Add(arc, ids, costs, arc.from == graph.again ? PhraseFor(ids.front()) : 0);
-      } else {
-        unknown.insert(arc.text);
-      }
+    std::vector<std::vector<int>> pieces;  // none: it has a letter that the cascade does not read
+    for (const WordGraph::Piece& piece : graph.pieces) {
+      pieces.emplace_back();
+      for (const Letter& letter : LettersOf(piece.form, data))
+        pieces.back().push_back(letters.Find(data.classes->Classify(letter)));
+      const auto known = [&](int id) { return input_of.count(id) > 0; };
+      if (std::all_of(pieces.back().begin(), pieces.back().end(), known)) continue;
+      pieces.back().clear();
+      left_out->push_back(piece.text);
     }
-    left_out->assign(unknown.begin(), unknown.end());
+    for (const WordGraph::Arc& arc : graph.arcs) {
+      if (!pieces[arc.piece].empty()) AddPiece(graph, arc, pieces[arc.piece]);
+    }
     words->Finish(graph);
     allowed = words->Acceptor();
   }
 
-  // The ‖ that bears the tags of this #.
-  int PhraseFor(int word) const {
-    for (const auto& [id, input] : input_of) {
-      if (input->boundary == Boundary::kPhrase && input->tags == input_of.at(word)->tags) return id;
+  // A piece behind its boundary. Where rules ask for tags it begins with a ‖ that bears those of its first morpheme, and
+  // that one becomes the boundary.
+  void AddPiece(const WordGraph& graph, const WordGraph::Arc& arc, std::vector<int> ids) {
+    std::vector<int> others;  // that may stand in the place of the first
+    if (arc.behind != Boundary::kNone) {
+      const std::uint64_t tags = grammar.tagged ? input_of.at(ids.front())->tags : 0;
+      if (!grammar.tagged) ids.insert(ids.begin(), 0);
+      ids.front() = BoundaryLetter(arc.behind, tags);
+      if (arc.from == graph.again) others.push_back(BoundaryLetter(Boundary::kPhrase, tags));
     }
-    return 0;
+    std::vector<fst::TropicalWeight> costs;
+    for (int id : ids) costs.push_back(input_of.at(id)->symbol < 0 ? kRestored : kFree);
+    if (grammar.tagged && arc.behind == Boundary::kNone) costs.front() = kFree;
+    words->Add(arc, graph.pieces[arc.piece].gloss, ids, costs, others);
+  }
+
+  // The cascade reads every boundary with every set of tags that it reads.
+  int BoundaryLetter(Boundary boundary, std::uint64_t tags) const {
+    const auto is = [&](const auto& known) { return known.second->boundary == boundary && known.second->tags == tags; };
+    return std::find_if(input_of.begin(), input_of.end(), is)->first;
   }
 
   // All strings of letters that are written so.
@@ -428,7 +433,8 @@ struct Recovery::Impl {
   std::vector<Path> Shortest(const Fst& machine, std::size_t count) const {
     std::vector<Path> found;
     Fst paths;
-    fst::ShortestPath(machine, &paths, static_cast<int>(count), weighted);
+    const bool several = weighted || words != nullptr;  // paths of one form
+    fst::ShortestPath(machine, &paths, static_cast<int>(count), several);
     if (paths.Start() < 0) return found;
     if (paths.Final(paths.Start()) != fst::TropicalWeight::Zero()) found.emplace_back();
     // The result is a tree of paths from the start.

@@ -4,8 +4,8 @@
 // written, XX may be one root or two), composed with each segment inverted, from the last to the first, and with the acceptor
 // of underlying forms, which may be that of the words of a lexicon. Each restored slot or boundary costs 1, so every cycle has
 // positive weight and the n best paths are the forms with the fewest restorations. Where rules are obligatory the machines are
-// unambiguous, so distinct paths are distinct forms; optional rules give one form several paths, of which one is kept, and
-// its probability is that of all ways from the form to this surface (run/lattice.h).
+// unambiguous, so distinct paths are distinct forms; optional rules, and words with several analyses, give one form several
+// paths, of which one is kept. Its probability is that of all ways from the form to this surface (run/lattice.h).
 // Example: [impaɾable] -> in-paɾable, im-paɾable, impaɾable, ...
 // Tested by tests/published/ (each row is a candidate of its own surface form) and tests/unit/run/.
 #pragma once
