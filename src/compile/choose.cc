@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 #include <map>
+#include <set>
 
 #include "compile/flatten.h"
 
@@ -20,8 +21,8 @@ struct Carried {
   std::int32_t site = 0;
 };
 
-// State: by request node, for each of its ancestors below the slot, [ask, site]; the same of the root's length; then the
-// choice of each site; last the choice of the word.
+// State: by request node, for each of its ancestors below the slot, [ask, site]; the same of the root's length; the site of
+// the word we are in, if it draws by word; then the choice of each site.
 class ChoosePass {
  public:
   explicit ChoosePass(const RequestSpace& requests) : requests_(requests), draw_(requests.rule().probability) {
@@ -32,61 +33,49 @@ class ChoosePass {
       entries_ += ancestors.size();
       ancestors_.push_back(std::move(ancestors));
     }
-    ++entries_;  // the length of the root
+    length_at_ = entries_++;
+    word_at_ = entries_++;
   }
 
-  Key Start() const { return Pack(std::vector<Carried>(entries_), {kOpen}, kOpen); }
+  Key Start() const { return Pack(std::vector<Carried>(entries_), {kOpen}); }
 
   std::vector<PassStep> Step(const Key& state, const Key& symbol) const {
     const RuleSpace& space = requests_.space();
     std::vector<Carried> carried;
     std::vector<std::int32_t> choices;
-    std::int32_t word = kOpen;
-    Unpack(state, &carried, &choices, &word);
+    Unpack(state, &carried, &choices);
     if (!space.IsSlot(symbol[0])) {
       const Boundary end = requests_.rule().within == Domain::kPhrase ? Boundary::kPhrase : Boundary::kWord;
-      if (space.classes()[symbol[0]].visible.boundary >= end) word = kOpen;
-      return {{Pack(carried, choices, word), symbol}};
+      if (space.classes()[symbol[0]].visible.boundary >= end) carried[word_at_] = Carried();
+      return {{Pack(carried, choices), symbol}};
     }
     const auto request = symbol.begin() + static_cast<std::ptrdiff_t>(space.AnnotatedSize());
     const bool asked = std::any_of(request, request + static_cast<std::ptrdiff_t>(requests_.size()),
                                    [](std::int32_t ask) { return ask != 0; });
-    std::vector<PassStep> steps;
-    if (!asked) {
-      Go(symbol, false, 0, carried, choices, word, &steps);
-      return steps;
-    }
-    if (requests_.rule().by_word) {
-      for (std::int32_t choice : {kApply, kLeave}) {
-        if (word != kOpen && word != choice) continue;
-        const bool drawn = word != kOpen;
-        Go(symbol, true, choice, carried, choices, choice, &steps);
-        if (!drawn) steps.back().weight = choice == kApply ? draw_.apply : draw_.leave;
-      }
-      return steps;
-    }
-    // Sites that this letter is part of already: it asks the same of an object that one of them goes on to.
-    std::map<std::int32_t, std::int32_t> sites;  // number -> choice
+    if (!asked) return {Went(symbol, kOpen, {}, carried, choices)};
+    // Sites that this letter is part of already: it asks the same of an object that one of them goes on to; and its word's.
+    std::set<std::int32_t> sites;
+    const Key letter(symbol.begin(), request);
     std::size_t at = 0;
     for (std::size_t i = 0; i < ancestors_.size(); ++i) {
       const NodeId anchor = space.LowestAncestor(symbol[0], requests_.nodes()[i]);
-      const Key letter(symbol.begin(), request);
       for (NodeId ancestor : ancestors_[i]) {
         const Carried& on = carried[at++];
-        const bool same = ancestor == anchor && (space.Marks(letter, ancestor) & kFromLeft) && on.site > 0 &&
-                          on.ask != 0 && on.ask == request[static_cast<std::ptrdiff_t>(1 + i)];
-        if (same) sites.emplace(on.site, choices[static_cast<std::size_t>(on.site)]);
+        const bool same = ancestor == anchor && (space.Marks(letter, ancestor) & kFromLeft) && on.ask != 0 &&
+                          on.ask == request[static_cast<std::ptrdiff_t>(1 + i)];
+        if (same) sites.insert(on.site);
       }
     }
-    const Carried& length = carried.back();
-    if (length.site > 0 && length.ask == (*request & kLength) && length.ask != 0 &&
-        (space.Marks(Key(symbol.begin(), request), kRootNode) & kFromLeft)) {
-      sites.emplace(length.site, choices[static_cast<std::size_t>(length.site)]);
-    }
+    const Carried& length = carried[length_at_];
+    if (length.ask != 0 && length.ask == (*request & kLength) && (space.Marks(letter, kRootNode) & kFromLeft))
+      sites.insert(length.site);
+    if (carried[word_at_].site > 0) sites.insert(carried[word_at_].site);
+    std::vector<PassStep> steps;
     for (std::int32_t choice : {kApply, kLeave}) {
-      const bool fits = std::all_of(sites.begin(), sites.end(), [&](const auto& s) { return s.second == choice; });
+      const bool fits = std::all_of(sites.begin(), sites.end(),
+                                    [&](std::int32_t site) { return choices[static_cast<std::size_t>(site)] == choice; });
       if (!fits) continue;
-      Go(symbol, true, choice, carried, choices, word, &steps);
+      steps.push_back(Went(symbol, choice, sites, carried, choices));
       // One draw for all of them: two that turn out to be one were drawn twice.
       const float weight = choice == kApply ? draw_.apply : draw_.leave;
       steps.back().weight = weight * (1 - static_cast<float>(sites.size()));
@@ -95,42 +84,41 @@ class ChoosePass {
   }
 
  private:
-  // On to the next letter, with the choice of this one. A choice of 0: nothing was asked.
-  void Go(const Key& symbol, bool asked, std::int32_t choice, std::vector<Carried> carried,
-          std::vector<std::int32_t> choices, std::int32_t word, std::vector<PassStep>* steps) const {
+  // On to the next letter. With a choice: the sites that the letter is part of are one from here on.
+  PassStep Went(const Key& symbol, std::int32_t choice, const std::set<std::int32_t>& sites, std::vector<Carried> carried,
+                std::vector<std::int32_t> choices) const {
     const RuleSpace& space = requests_.space();
     const std::size_t request_at = space.AnnotatedSize();
     const Key letter(symbol.begin(), symbol.begin() + static_cast<std::ptrdiff_t>(request_at));
+    const bool asked = choice != kOpen;
     const std::int32_t site = static_cast<std::int32_t>(choices.size());
     choices.push_back(choice);
+    for (Carried& on : carried) {
+      if (sites.count(on.site) > 0) on.site = site;
+    }
+    if (asked && requests_.rule().by_word) carried[word_at_].site = site;
+    const auto carry = [&](NodeId holder, bool own, std::int32_t ask, Carried* on) {
+      if (space.Of(letter[0], holder).count == 0) return;  // goes by
+      const std::int32_t marks = own ? space.Marks(letter, holder) : 0;
+      if (!(marks & kFromLeft)) *on = Carried();
+      if (asked && ask != 0) *on = {ask, site};
+      if (!(marks & kToRight)) *on = Carried();
+    };
     std::size_t at = 0;
     for (std::size_t i = 0; i < ancestors_.size(); ++i) {
       const NodeId anchor = space.LowestAncestor(letter[0], requests_.nodes()[i]);
-      for (NodeId ancestor : ancestors_[i]) {
-        Carried& on = carried[at++];
-        if (space.Of(letter[0], ancestor).count == 0) continue;  // goes by
-        const std::int32_t marks = ancestor == anchor ? space.Marks(letter, ancestor) : 0;
-        if (!(marks & kFromLeft)) on = Carried();
-        if (asked && symbol[request_at + 1 + i] != 0) on = {symbol[request_at + 1 + i], site};
-        if (!(marks & kToRight)) on = Carried();
-      }
+      for (NodeId ancestor : ancestors_[i])
+        carry(ancestor, ancestor == anchor, symbol[request_at + 1 + i], &carried[at++]);
     }
-    if (space.Of(letter[0], kRootNode).count > 0) {
-      Carried& length = carried.back();
-      const std::int32_t marks = space.Marks(letter, kRootNode);
-      if (!(marks & kFromLeft)) length = Carried();
-      if (asked && (symbol[request_at] & kLength)) length = {symbol[request_at] & kLength, site};
-      if (!(marks & kToRight)) length = Carried();
-    }
-    PassStep step{Pack(carried, choices, word), symbol};
-    if (asked && choice == kLeave) {
+    carry(kRootNode, true, symbol[request_at] & kLength, &carried[length_at_]);
+    PassStep step{Pack(carried, choices), symbol};
+    if (choice == kLeave)
       std::fill_n(step.symbol.begin() + static_cast<std::ptrdiff_t>(request_at), requests_.size(), 0);
-    }
-    steps->push_back(std::move(step));
+    return step;
   }
 
   // Sites numbered in order of mention, those that nothing mentions forgotten.
-  Key Pack(const std::vector<Carried>& carried, const std::vector<std::int32_t>& choices, std::int32_t word) const {
+  static Key Pack(const std::vector<Carried>& carried, const std::vector<std::int32_t>& choices) {
     Key key;
     std::map<std::int32_t, std::int32_t> number;
     Key kept;
@@ -145,22 +133,19 @@ class ChoosePass {
       key.push_back(site);
     }
     key.insert(key.end(), kept.begin(), kept.end());
-    key.push_back(word);
     return key;
   }
 
-  void Unpack(const Key& key, std::vector<Carried>* carried, std::vector<std::int32_t>* choices,
-              std::int32_t* word) const {
+  void Unpack(const Key& key, std::vector<Carried>* carried, std::vector<std::int32_t>* choices) const {
     for (std::size_t i = 0; i < entries_; ++i) carried->push_back({key[2 * i], key[2 * i + 1]});
     choices->push_back(kOpen);
-    choices->insert(choices->end(), key.begin() + static_cast<std::ptrdiff_t>(2 * entries_), key.end() - 1);
-    *word = key.back();
+    choices->insert(choices->end(), key.begin() + static_cast<std::ptrdiff_t>(2 * entries_), key.end());
   }
 
   const RequestSpace& requests_;
   Draw draw_;
   std::vector<std::vector<NodeId>> ancestors_;  // by request node
-  std::size_t entries_ = 0;
+  std::size_t entries_ = 0, length_at_ = 0, word_at_ = 0;
 };
 
 }  // namespace

@@ -3,6 +3,7 @@
 #include <algorithm>
 
 #include "compile/choose.h"
+#include "compile/plan.h"
 #include "compile/sides.h"
 
 namespace tiersmith {
@@ -391,6 +392,7 @@ class Sweep {
       for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
     }
     deciding_ = Deciding();
+    asked_ = LinksAsked(requests.rule(), space_.tree());
   }
 
   bool over_budget() const { return near_.next.empty() || far_.next.empty(); }
@@ -492,13 +494,12 @@ class Sweep {
     const BuiltLetter built = Built(now, request, state, far_contents);
     Key with_flags = request;
     if (Reaches(now, built)) with_flags[0] |= kReaches;
-    if (FreesBehind(now, request, built) || HalvesRoot(now, request)) with_flags[0] |= kUnsure;
-    const Key written = Written(InputWithOver(input, now), with_flags, state.visit_contents, far_contents);
-
+    const SweepState before = state;
     VisitOn(&state, input, at_visit);
-    Leave(&state, now, request, built);
+    const bool relinked = Leave(&state, now, request, built);
     Forget(&state);
-    return {state.Pack(), written};
+    if (FreesBehind(now, request, built) || HalvesRoot(now, request) || relinked) with_flags[0] |= kUnsure;
+    return {state.Pack(), Written(InputWithOver(input, now), with_flags, before.visit_contents, far_contents)};
   }
 
   // Is a new root asked for at one slot of a long one? Whether the other gets the same is decided there.
@@ -778,8 +779,11 @@ class Sweep {
     return nodes;
   }
 
-  // Steps over what the visit made of this slot: insertions, and the slot unless it went.
-  void Leave(SweepState* state, const Key& now, const Key& request, const BuiltLetter& built) {
+  // Steps over what the visit made of this slot: insertions, and the slot unless it went. True: a line between it and what
+  // is behind came or went of which the pattern asks; what was read there would read otherwise now.
+  bool Leave(SweepState* state, const Key& now, const Key& request, const BuiltLetter& built) {
+    const Key behind_before = state->behind;
+    bool relinked = false;
     const std::vector<Change>& changes = requests_.rule().changes;
     const auto insertions = [&](bool before) {
       for (std::size_t k = 0; k < changes.size(); ++k) {
@@ -792,12 +796,19 @@ class Sweep {
     insertions(direction_.rightward);
     if (request[0] & kDeleteSlot) {
       for (std::size_t i = 0; i < space_.live().size(); ++i) {
-        if (space_.Of(now[0], space_.live()[i]).count > 0 && !LinkGoesOn(now, i)) state->behind[i] &= ~kLinkedAhead;
+        if (space_.Of(now[0], space_.live()[i]).count == 0 || LinkGoesOn(now, i)) continue;
+        relinked = relinked || (asked_[space_.live()[i]] && (behind_before[i] & kLinkedAhead));
+        state->behind[i] &= ~kLinkedAhead;
       }
     } else {
-      LeaveSlot(state, now, built);
+      const Key after = LeaveSlot(state, now, built);
+      for (std::size_t i = 0; i < space_.live().size(); ++i) {
+        const std::int32_t lines = direction_.near_line() | kOver;
+        relinked = relinked || (asked_[space_.live()[i]] && ((now[1 + i] ^ after[1 + i]) & lines));
+      }
     }
     insertions(!direction_.rightward);
+    return relinked;
   }
 
   // With this letter's own N gone: is the N behind linked to the next one ahead?
@@ -841,7 +852,8 @@ class Sweep {
     }
   }
 
-  void LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
+  // The letter as it is now.
+  Key LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
     Key letter(space_.AnnotatedSize(), 0);
     letter[0] = builder_.ClassOf(built.slot, now[0]);
     space_.SetAround(&letter, space_.Around(now));
@@ -857,6 +869,7 @@ class Sweep {
       Remember(state, i, std::move(content));
     }
     state->near = StepOn(state->near, Known(letter));
+    return letter;
   }
 
   // A content that moves past this slot loses the links that led to what the slot gave up.
@@ -954,6 +967,7 @@ class Sweep {
   std::vector<std::vector<Arc>> by_profile_;
   Side near_, far_;
   NodeSet deciding_;
+  NodeSet asked_;  // nodes of whose lines the pattern asks
   KeyPool aheads_;
   bool saw_new_profile_ = false;
 };

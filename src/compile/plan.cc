@@ -34,7 +34,9 @@ void AddPattern(const Tree& tree, const Pattern& pattern, Plan* plan) {
 // The nodes whose links a test asks for.
 void AddLinksRead(const Tree& tree, const SlotTest& test, NodeSet* read) {
   for (const FeatureTest& feature : test.bundle) {
-    const bool links = feature.kind == FeatureTest::Kind::kShared || feature.kind == FeatureTest::Kind::kUnshared;
+    const bool links = feature.kind == FeatureTest::Kind::kShared || feature.kind == FeatureTest::Kind::kUnshared ||
+                       feature.kind == FeatureTest::Kind::kLong || feature.kind == FeatureTest::Kind::kShort ||
+                       feature.kind == FeatureTest::Kind::kHalfFirst || feature.kind == FeatureTest::Kind::kHalfSecond;
     if (links) AddUpward(tree, feature.node, read);
   }
   for (const SlotTest& inner : test.args) AddLinksRead(tree, inner, read);
@@ -179,24 +181,30 @@ std::vector<NodeId> MentionedFor(const Rule& flattened, int label, std::vector<N
   return nodes;
 }
 
+NodeSet LinksAsked(const Rule& rule, const Tree& tree) {
+  NodeSet asked(tree.nodes.size(), false);
+  for (const Clause* clause : ClausesOf(rule)) {
+    AddLinksRead(tree, clause->where, &asked);
+    for (const Pattern& pattern : clause->unless) AddLinksRead(tree, pattern, &asked);
+    for (const Condition& condition : clause->conditions) {
+      if (AsksOfInstance(condition)) AddUpward(tree, condition.node, &asked);
+    }
+  }
+  if (!rule.sharing_blocked) return asked;
+  const Rule flat = Flattened(rule);
+  std::vector<NodeId> nodes;
+  for (std::size_t label = 0; label < flat.labels.size(); ++label) {
+    for (NodeId node : MentionedFor(flat, static_cast<int>(label), &nodes)) AddUpward(tree, node, &asked);
+  }
+  for (NodeId node : nodes) AddUpward(tree, node, &asked);
+  return asked;
+}
+
 NodeSet NodesRead(const Rule& rule, const Tree& tree) {
-  NodeSet read(tree.nodes.size(), false);
+  NodeSet read = LinksAsked(rule, tree);
   if (rule.kind == Rule::Kind::kComplete) AddDownward(tree, kRootNode, &read);
   for (const Clause* clause : ClausesOf(rule)) {
-    AddLinksRead(tree, clause->where, &read);
-    for (const Pattern& pattern : clause->unless) AddLinksRead(tree, pattern, &read);
-    for (const Condition& condition : clause->conditions) {
-      if (AsksOfInstance(condition)) AddUpward(tree, condition.node, &read);
-    }
     for (const Change& change : clause->changes) AddLinksRead(tree, change, &read);
-  }
-  if (rule.sharing_blocked) {
-    const Rule flat = Flattened(rule);
-    std::vector<NodeId> shared;
-    for (std::size_t label = 0; label < flat.labels.size(); ++label) {
-      for (NodeId node : MentionedFor(flat, static_cast<int>(label), &shared)) AddUpward(tree, node, &read);
-    }
-    for (NodeId node : shared) AddUpward(tree, node, &read);
   }
   return read;
 }

@@ -23,6 +23,9 @@ struct Plan {
 // The nodes whose links the rule reads.
 NodeSet NodesRead(const Rule& rule, const Tree& tree);
 
+// The nodes of whose lines its patterns ask, in tests, conditions or for `sharing blocked`, and all above them.
+NodeSet LinksAsked(const Rule& rule, const Tree& tree);
+
 // `sharing blocked`: the nodes that a rule mentions for an item it changes, in its bundle, conditions and changes; and those
 // of which the bundle says that they are shared.
 std::vector<NodeId> MentionedFor(const Rule& flattened, int label, std::vector<NodeId>* shared);

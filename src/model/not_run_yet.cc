@@ -15,6 +15,19 @@ class Lister {
   void VisitWhole(const Rule& rule, Span name) {
   }
 
+  // What a sweep has deleted would still stand where lines are drawn.
+  void VisitClausesTogether(const Rule& rule, Span name) {
+    if (rule.mode == Rule::Mode::kAtOnce || rule.otherwise.empty()) return;
+    const auto does = [&](Change::Op op) {
+      const auto in = [op](const Clause& clause) {
+        return std::any_of(clause.changes.begin(), clause.changes.end(), [op](const Change& c) { return c.op == op; });
+      };
+      return in(rule) || std::any_of(rule.otherwise.begin(), rule.otherwise.end(), in);
+    };
+    if (does(Change::Op::kDelete) && does(Change::Op::kSpread))
+      Add(name, "deleting in one clause and spreading in another of a rule that iterates is", "write two rules");
+  }
+
   void VisitClause(const Rule& rule, const Clause& clause) {
     VisitBoundaries(clause.where);
     for (const Pattern& unless : clause.unless) VisitUnless(unless);
@@ -130,6 +143,7 @@ std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree) {
   lister.VisitWhole(rule, name);
   lister.VisitClause(rule, rule);
   for (const Clause& clause : rule.otherwise) lister.VisitClause(rule, clause);
+  lister.VisitClausesTogether(rule, name);
   return lister.Take();
 }
 

@@ -3,6 +3,7 @@
 #include <algorithm>
 
 #include "model/content.h"
+#include "model/not_run_yet.h"
 #include "support/generate.h"
 #include "support/small_grammar.h"
 
@@ -251,7 +252,7 @@ class Decorator {
     any.test = SlotTest();
     group.kind = Kind::kGroup;
     group.min = 0;
-    group.max = Random({1, 2, -1});
+    group.max = 1;
     group.alternatives.resize(1);
     group.alternatives[0].items = {any};
     rule_->where.items = {ends[0], group, ends[1]};
@@ -440,10 +441,16 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
       const int further = Chance(rng, 0.3) ? 2 : 1;
       for (int i = 0; i < further; ++i) {
         Rule other = RandomRule(rng, grammar, tests, letters);
+        other.mode = rule.mode;
+        while (Refused(grammar.tree, other)) {
+          other = RandomRule(rng, grammar, tests, letters);
+          other.mode = rule.mode;
+        }
         rule.otherwise.push_back(other);
       }
     }
     if (construct == Construct::kComplete) return rule;
+    if (construct == Construct::kOtherwise && !NotRunYet(rule, {}, grammar.tree).empty()) continue;
     NoteEmpty(&rule.where);
     if (!Refused(grammar.tree, rule)) return rule;
   }
