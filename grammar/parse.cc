@@ -1607,8 +1607,8 @@ class Reader {
     for (const auto& [what, remedy] : kRemedies)
       if (what == wanted) return remedy;
     Iterator next = where;
-    const bool change = wanted.find("a change") != std::string::npos;  // of `->` the - was read as a boundary
-    if (change && (MatchText(next, last, U"→") || MatchText(next, last, U">")))
+    const bool change_wanted = wanted.find("a change") != std::string::npos;  // of `->` the - was read as a boundary
+    if (change_wanted && (MatchText(next, last, U"→") || MatchText(next, last, U">")))
       return "changes are said in words, set X [+voice], delete X, insert E:/i/ before X, and where in the pattern";
     if (MatchText(next, last, U"±")) return "write + or -; a feature that has either value is named alone: voice";
     if (wanted == "a label" && MatchText(next, last, U"#"))

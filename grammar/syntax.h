@@ -89,7 +89,7 @@ struct Pattern {
 };
 
 // ---- rules --------------------------------------------------------------------------------------
-struct Path {  // X.Place, X.-cont, X.Tone:H, X.Tone first
+struct Path {                                                           // X.Place, X.-cont, X.Tone:H, X.Tone first
   enum class Member { kFacing, kPlus, kMinus, kValue, kFirst, kLast };  // kFacing: not narrowed
   Name label;
   Name node;
@@ -362,9 +362,9 @@ struct Unsupported {
   Span span;
 };
 
-using Top = std::variant<Language, Include, Strict, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Fuse,
-                         Sharing, Rule, Complete, Lexicon, LexiconFrom, Paradigm, Spelling, LengthDoubled, Print, Data,
-                         DataFrom, Unsupported>;
+using Top =
+    std::variant<Language, Include, Strict, Tree, Segments, Diacritics, Omit, Class, NamedPattern, Fuse, Sharing, Rule,
+                 Complete, Lexicon, LexiconFrom, Paradigm, Spelling, LengthDoubled, Print, Data, DataFrom, Unsupported>;
 struct File {
   std::vector<Top> tops;
   // Constructs found inside rules and blocks that this release does not run.

@@ -46,7 +46,7 @@ struct Explanation {
   std::vector<std::string> blocked;  // kNoRule: "'nasal place': blocked at n: ..."
   std::string starred;               // not empty: this form came out, and must not
   double starred_probability = 1;
-  std::string expected_note;         // not empty: the expected form cannot be a form of this grammar, and why
+  std::string expected_note;  // not empty: the expected form cannot be a form of this grammar, and why
 };
 
 struct CheckedRow {

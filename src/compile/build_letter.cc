@@ -144,9 +144,13 @@ BuiltLetter LetterBuilder::Build(const Key& annotated, const Key& request, const
   built.slot = Before(annotated);
   built.effective.assign(requests_.nodes().size(), 0);
   bool any = false;
+  const int root = requests_.IndexOf(kRootNode);
+  const bool new_root = root >= 0 && request[static_cast<std::size_t>(1 + root)] >> kValuesShift != 0;
   for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
     const std::int32_t ask = request[1 + i];
     if (ask == 0) continue;
+    // What is asked of nodes under the root was asked of the old one; its other slots see to that.
+    if (new_root && requests_.nodes()[i] != kRootNode) continue;
     if (ask & kClash) built.clash = true;
     const bool gives = (ask & (kLineLeft | kLineRight)) ||
                        ((ask >> kValuesShift) > 0 && !requests_.contents()[(ask >> kValuesShift) - 1].empty());

@@ -116,7 +116,8 @@ class CascadeCompiler {
       }
     } else {
       sets.insert(free.begin(), free.end());
-      for (const LexiconEntry& entry : grammar_.lexicon.entries) sets.insert(BitsOf(entry.tags) & data_->tags_read & ~kKinds);
+      for (const LexiconEntry& entry : grammar_.lexicon.entries)
+        sets.insert(BitsOf(entry.tags) & data_->tags_read & ~kKinds);
     }
     std::set<std::uint64_t> with_kinds;
     for (std::uint64_t set : sets) {
@@ -197,8 +198,7 @@ class CascadeCompiler {
       tape.ends.push_back(0);
       for (const InputLetter& input : data_->inputs) {
         const int c = input.parts.class_id;
-        if (input.boundary == Boundary::kPhrase)
-          tape.arcs.back().push_back({c, tape.symbols.Intern(Key{0, c, -1}), 0});
+        if (input.boundary == Boundary::kPhrase) tape.arcs.back().push_back({c, tape.symbols.Intern(Key{0, c, -1}), 0});
       }
     }
     const auto add = [&tape](int from, int c, int to) {
@@ -268,11 +268,12 @@ class CascadeCompiler {
   bool AddStep(std::size_t index) {
     const Rule& rule = steps_[index];
     if (rule.probability < 1 && !DrawsLocally(rule)) {
-      diagnostics_.Error(Kind::kNotSupportedYet, rule.span,
-                         fmt::format("rule \"{}\" is optional at each site and changes several items of a match at once: "
-                                     "this is not supported by this release",
-                                     rule.name),
-                         "draw `by word`, or let one rule mark what a second one changes");
+      diagnostics_.Error(
+          Kind::kNotSupportedYet, rule.span,
+          fmt::format("rule \"{}\" is optional at each site and changes several items of a match at once: "
+                      "this is not supported by this release",
+                      rule.name),
+          "draw `by word`, or let one rule mark what a second one changes");
       return false;
     }
     const std::vector<int> classes_in = ClassesWritten(current_);
@@ -372,17 +373,18 @@ class CascadeCompiler {
     const std::vector<TapeArc> ambiguous = ShortestThrough(composed, flagged(kFlagAmbiguous), &at);
     if (!ambiguous.empty()) {
       const std::string form = FormText(ambiguous);
-      diagnostics_.Add({Kind::kAmbiguousRule,
-                        severity,
-                        rule.span,
-                        fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}",
-                                    possibly, rule.name, form, Explained(rule, form)),
-                        rule.prefer == Rule::Prefer::kNone
-                            ? "narrow the pattern so that only one of them matches, say which to `prefer`, or let the "
-                              "rule `iterate`"
-                            : "`prefer` decides between matches that meet at one slot; these meet at a node that several "
-                              "slots share: narrow the pattern",
-                        {}});
+      diagnostics_.Add(
+          {Kind::kAmbiguousRule,
+           severity,
+           rule.span,
+           fmt::format("{}rule \"{}\" is ambiguous: in /{}/ two of its matches ask for different things{}", possibly,
+                       rule.name, form, Explained(rule, form)),
+           rule.prefer == Rule::Prefer::kNone
+               ? "narrow the pattern so that only one of them matches, say which to `prefer`, or let the "
+                 "rule `iterate`"
+               : "`prefer` decides between matches that meet at one slot; these meet at a node that several "
+                 "slots share: narrow the pattern",
+           {}});
       if (segment_.exact) return false;
     }
     const std::vector<TapeArc> reaches = ShortestThrough(composed, flagged(kFlagReaches), &at);
@@ -407,12 +409,14 @@ class CascadeCompiler {
            severity,
            rule.span,
            rule.mode == Rule::Mode::kAtOnce
-               ? fmt::format("{}rule \"{}\" in /{}/ changes a node that several segments share, and what becomes of the "
-                             "others would have to be judged as well: this cannot be compiled",
-                             possibly, rule.name, FormText(unsure))
-               : fmt::format("{}rule \"{}\" iterates, and in /{}/ its change decides about a segment that the sweep has "
-                             "passed, or replaces half of a long one: this cannot be compiled",
-                             possibly, rule.name, FormText(unsure)),
+               ? fmt::format(
+                     "{}rule \"{}\" in /{}/ changes a node that several segments share, and what becomes of the "
+                     "others would have to be judged as well: this cannot be compiled",
+                     possibly, rule.name, FormText(unsure))
+               : fmt::format(
+                     "{}rule \"{}\" iterates, and in /{}/ its change decides about a segment that the sweep has "
+                     "passed, or replaces half of a long one: this cannot be compiled",
+                     possibly, rule.name, FormText(unsure)),
            rule.mode == Rule::Mode::kAtOnce
                ? "delink or spread what is shared in a rule of its own before this one"
                : "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
@@ -525,8 +529,12 @@ class CascadeCompiler {
           "rule that sets or fills it",
           grammar_.inventory.Declaration(tree, grammar_.tree));
     }
-    diagnostics_.Add(
-        {Kind::kNoSymbol, grammar_.strict || DataReach(tree) ? Severity::kError : Severity::kWarning, span, message, remedy, {}});
+    diagnostics_.Add({Kind::kNoSymbol,
+                      grammar_.strict || DataReach(tree) ? Severity::kError : Severity::kWarning,
+                      span,
+                      message,
+                      remedy,
+                      {}});
   }
 
   std::string Bracketed(const FeatureTree& tree) const {

@@ -72,8 +72,9 @@ class ChoosePass {
     if (carried[word_at_].site > 0) sites.insert(carried[word_at_].site);
     std::vector<PassStep> steps;
     for (std::int32_t choice : {kApply, kLeave}) {
-      const bool fits = std::all_of(sites.begin(), sites.end(),
-                                    [&](std::int32_t site) { return choices[static_cast<std::size_t>(site)] == choice; });
+      const bool fits = std::all_of(sites.begin(), sites.end(), [&](std::int32_t site) {
+        return choices[static_cast<std::size_t>(site)] == choice;
+      });
       if (!fits) continue;
       steps.push_back(Went(symbol, choice, sites, carried, choices));
       // One draw for all of them: two that turn out to be one were drawn twice.
@@ -85,8 +86,8 @@ class ChoosePass {
 
  private:
   // On to the next letter. With a choice: the sites that the letter is part of are one from here on.
-  PassStep Went(const Key& symbol, std::int32_t choice, const std::set<std::int32_t>& sites, std::vector<Carried> carried,
-                std::vector<std::int32_t> choices) const {
+  PassStep Went(const Key& symbol, std::int32_t choice, const std::set<std::int32_t>& sites,
+                std::vector<Carried> carried, std::vector<std::int32_t> choices) const {
     const RuleSpace& space = requests_.space();
     const std::size_t request_at = space.AnnotatedSize();
     const Key letter(symbol.begin(), symbol.begin() + static_cast<std::ptrdiff_t>(request_at));

@@ -357,10 +357,11 @@ void DropLinks(WorkPart* part) {
 
 // Everything a sweep carries.
 struct SweepState {
-  std::int32_t near = 0;     // subset behind, of the output
-  std::int32_t visit = -1;   // subset behind of the form at the visit of the root we are in, or -1
-  std::int32_t drawn = 0;    // optional: what the draw of this visit said (of this word, if it draws by word); 0: none yet
-  Key requests;              // of that visit, on the root and below
+  std::int32_t near = 0;    // subset behind, of the output
+  std::int32_t visit = -1;  // subset behind of the form at the visit of the root we are in, or -1
+  std::int32_t drawn =
+      0;         // optional: what the draw of this visit said (of this word, if it draws by word); 0: none yet
+  Key requests;  // of that visit, on the root and below
   Key behind, behind_visit;  // what the letters behind say
   Key contents;              // by request node: content behind (+1)
   Key visit_contents;        // the same as it was at the visit
@@ -763,8 +764,8 @@ class Sweep {
         nodes[setting.node] = true;
         above(setting.node);
       }
-      const bool given = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs ||
-                         change.op == Change::Op::kSetLiteral;
+      const bool given =
+          change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs || change.op == Change::Op::kSetLiteral;
       if (!given) continue;
       const NodeId top = change.op == Change::Op::kSetLiteral ? kRootNode : change.node;
       for (std::size_t node = top; node < nodes.size(); ++node) {

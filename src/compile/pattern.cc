@@ -61,6 +61,9 @@ constexpr std::int32_t kPrefix = -1, kSuffix = -2;
 // instance of the free node that goes on? Behind the item, while it goes on: may holders outside follow, being free?
 enum WatchState : std::int32_t { kUnheld = 0, kFreelyHeld = 1, kHeldOutside = 2, kOwed = 3, kFreelyOwed = 4 };
 
+// In the last entry of a role, beside the merges: whether the change crosses a line is not known.
+constexpr std::int32_t kDoubtful = 1 << 30;
+
 // Needs of a boundary: of a strength, or none at all (`&`).
 constexpr std::int32_t kNoBoundary = -1;
 
@@ -248,7 +251,7 @@ struct PatternCompiler::Impl {
     std::set<int> labels;
     Program where;
     std::vector<Program> unless;
-    std::int32_t spreads = 0;                  // bits of the mask: spreads of this clause, then its merges
+    std::int32_t spreads = 0;  // bits of the mask: spreads of this clause, then its merges
     std::vector<Compared> conditions;
   };
   // A change that gives its target what the source bears.
@@ -345,18 +348,26 @@ struct PatternCompiler::Impl {
     for (std::size_t i = 0; i < rule.changes.size(); ++i) {
       const Change& change = rule.changes[i];
       if (change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs) {
-        copies.push_back({i, change.source, change.target, change.node, change.member,
-                          change.op == Change::Op::kFillAs, variables++, {}});
+        copies.push_back({i,
+                          change.source,
+                          change.target,
+                          change.node,
+                          change.member,
+                          change.op == Change::Op::kFillAs,
+                          variables++,
+                          {}});
       } else if (change.op == Change::Op::kSpread && rule.preserving) {
         // What travels must be known where it is judged.
         Member facing = change.member;
         if (facing.which == Member::Which::kWhole) {
-          facing.which = Position(change.source) < Position(change.target) ? Member::Which::kLast : Member::Which::kFirst;
+          facing.which =
+              Position(change.source) < Position(change.target) ? Member::Which::kLast : Member::Which::kFirst;
         }
         copies.push_back({i, change.source, change.target, change.node, facing, false, variables++, {}, true});
       } else if (change.op == Change::Op::kMerge) {
         const bool forward = Position(change.source) < Position(change.target);
-        merges.push_back({i, forward ? change.source : change.target, forward ? change.target : change.source, change.node});
+        merges.push_back(
+            {i, forward ? change.source : change.target, forward ? change.target : change.source, change.node});
         changed[static_cast<std::size_t>(change.source)] = 1;
       }
     }
@@ -692,7 +703,9 @@ struct PatternCompiler::Impl {
     }
     for (std::size_t i = 0; i < rule.labels.size(); ++i) {
       const int label = static_cast<int>(i);
-      profile[LabelField(label)] = TagsAllow(letter, label) && (!changed[i] || Changeable(letter, label));
+      profile[LabelField(label)] = !TagsAllow(letter, label) ? kBarred
+                                   : changed[i]              ? Changeable(letter, label)
+                                                             : kAllowed;
     }
     for (std::size_t i = 0; i < copies.size(); ++i) {
       const std::int32_t source = ContentNumber(visible.part, copies[i].node, copies[i].member);
@@ -714,7 +727,16 @@ struct PatternCompiler::Impl {
     for (std::size_t i = 0; i < agreeing.size(); ++i) {
       profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
     }
-    for (std::size_t i = 0; i < borrowed.size(); ++i) profile[BorrowedField(i)] = ValuesThatFit(letter, borrowed[i]);
+    for (std::size_t i = 0; i < borrowed.size(); ++i) {
+      std::int32_t fits = ValuesThatFit(letter, borrowed[i]);
+      const std::int32_t all = (1 << ValueCount(*borrowed[i].setting)) - 1;
+      std::int32_t& allowance = profile[LabelField(borrowed[i].label)];
+      if (fits != all && GivenElsewhere(borrowed[i].label, borrowed[i].setting->node)) {
+        fits = all;
+        if (allowance == kAllowed) allowance = kInDoubt;
+      }
+      profile[BorrowedField(i)] = fits;
+    }
     for (std::size_t c = 0; c < clauses.size(); ++c) {
       for (std::size_t i = 0; i < clauses[c].conditions.size(); ++i) {
         std::int32_t* answers = &profile[ConditionField(c, i)];
@@ -863,7 +885,8 @@ struct PatternCompiler::Impl {
     answers[kRightMother] = (mother & kToRight) != 0;
     answers[kHeldLeft] = node.count > 0 && (marks & kObjectLeft);
     answers[kHeldRight] = node.count > 0 && (marks & kObjectRight);
-    const int own = node.count - (spread.delinks ? CutBy(rule.changes[static_cast<std::size_t>(spread.delink)], letter) : 0);
+    const int own =
+        node.count - (spread.delinks ? CutBy(rule.changes[static_cast<std::size_t>(spread.delink)], letter) : 0);
     answers[kHasRoom] = own + 1 <= space.Room(letter[0], spread.node) && MothersFit(letter, spread.node);
   }
 
@@ -906,26 +929,49 @@ struct PatternCompiler::Impl {
     return true;
   }
 
-  // Set, fill and insert at this label cross no line.
-  bool Changeable(const Key& letter, int label) const {
+  // Do set, fill and insert at this label cross no line? In doubt: where another item of the match is given the same node, the
+  // line may be gone by that.
+  enum Allowance : std::int32_t { kBarred = 0, kAllowed = 1, kInDoubt = 2 };
+  Allowance Changeable(const Key& letter, int label) const {
+    Allowance allowed = kAllowed;
     for (std::size_t i = 0; i < rule.changes.size(); ++i) {
       const Change& change = rule.changes[i];
       if (change.target != label) continue;
       if (change.op == Change::Op::kSet || change.op == Change::Op::kFill) {
         for (const Setting& setting : change.settings) {
-          if (setting.variable < 0 && !SettingFits(letter, setting, change.op == Change::Op::kFill)) return false;
+          if (setting.variable >= 0 || SettingFits(letter, setting, change.op == Change::Op::kFill)) continue;
+          if (!GivenElsewhere(label, setting.node)) return kBarred;
+          allowed = kInDoubt;
         }
       } else if (change.op == Change::Op::kSetLiteral) {
-        if (!ContentFits(letter, kRootNode, {change.inserted})) return false;
+        if (ContentFits(letter, kRootNode, {change.inserted})) continue;
+        if (!GivenElsewhere(label, kRootNode)) return kBarred;
+        allowed = kInDoubt;
       } else if (change.op == Change::Op::kInsert) {
         for (NodeId node : inserted[i]) {
           const std::int32_t marks = space.Marks(letter, node);
           const std::int32_t side = change.before ? kFromLeft : kToRight;
-          if (marks & (space.Of(letter[0], node).count > 0 ? side : kOver)) return false;
+          if (marks & (space.Of(letter[0], node).count > 0 ? side : kOver)) return kBarred;
         }
       }
     }
-    return true;
+    return allowed;
+  }
+
+  // Is an item of the same match given contents of this node, or of one above or under it?
+  bool GivenElsewhere(int label, NodeId node) const {
+    const auto own = std::find_if(clauses.begin(), clauses.end(),
+                                  [label](const ClausePrograms& programs) { return programs.labels.count(label) > 0; });
+    return std::any_of(rule.changes.begin(), rule.changes.end(), [&](const Change& other) {
+      if (other.target == label || own->labels.count(other.target) == 0) return false;
+      const auto meets = [&](NodeId given) {
+        return given == node || space.tree().Dominates(given, node) || space.tree().Dominates(node, given);
+      };
+      if (other.op == Change::Op::kSetLiteral) return meets(kRootNode);
+      if (other.op == Change::Op::kSetAs || other.op == Change::Op::kFillAs) return meets(other.node);
+      return std::any_of(other.settings.begin(), other.settings.end(),
+                         [&](const Setting& setting) { return meets(setting.node); });
+    });
   }
 
   bool SettingFits(const Key& letter, const Setting& setting, bool fill) const;
@@ -979,9 +1025,8 @@ bool PatternCompiler::Impl::SubtreeFits(const Key& letter, const FeatureTree& tr
     held_right = held_right || (marks & kObjectRight);
     if (count == 1 && held_left && held_right) return false;
   }
-  return std::all_of(tree.daughters.begin(), tree.daughters.end(), [&](const FeatureTree& daughter) {
-    return SubtreeFits(letter, daughter, held_left, held_right);
-  });
+  return std::all_of(tree.daughters.begin(), tree.daughters.end(),
+                     [&](const FeatureTree& daughter) { return SubtreeFits(letter, daughter, held_left, held_right); });
 }
 
 // Explores the configurations of one program.
@@ -1083,7 +1128,8 @@ struct PatternCompiler::Impl::Builder {
   bool IsFinal(const Key& config) const {
     if (config[kPc] == kSuffix) return true;
     if (config[kPc] == kPrefix) return false;
-    return program.code[config[kPc]].op == Instruction::Op::kAccept && Settled(config);  // the end of the form is a boundary
+    return program.code[config[kPc]].op == Instruction::Op::kAccept &&
+           Settled(config);  // the end of the form is a boundary
   }
 
   // Configurations after the program consumed a slot (or, with `first`, before its first one).
@@ -1257,7 +1303,8 @@ struct PatternCompiler::Impl::Builder {
   std::vector<Key> Walk(const Key& config, const Key& letter, std::int32_t* merging) const {
     std::vector<Key> result{config};
     PassConditions(letter, &result[0]);
-    if (!PassMerges(letter, -1, &result[0], merging) || !PassWatches(letter, -1, /*matched=*/false, &result[0])) return {};
+    if (!PassMerges(letter, -1, &result[0], merging) || !PassWatches(letter, -1, /*matched=*/false, &result[0]))
+      return {};
     for (std::size_t j = 0; j < SpreadCount(); ++j) {
       const std::int32_t zone = config[kZones + j];
       if (zone == kBefore || zone == kDone) continue;
@@ -1426,7 +1473,10 @@ struct PatternCompiler::Impl::Builder {
           if (copy.spreads) return true;
           const Key& annotated = impl.letters[letter[impl.LetterField()]];
           if (copy.fill && (value == 0 || impl.space.Of(annotated[0], copy.node).count > 0)) return true;
-          return value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
+          const bool fits =
+              value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
+          if (!fits && impl.GivenElsewhere(label, copy.node)) role->back() |= kDoubtful;
+          return fits || (role->back() & kDoubtful) != 0;
         });
       }
     }
@@ -1474,6 +1524,7 @@ struct PatternCompiler::Impl::Builder {
     if (label >= 0 && impl.changed[label]) {
       role.assign(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
       role[0] = label;
+      if (letter[impl.LabelField(label)] == kInDoubt) role.back() = kDoubtful;
     }
     std::int32_t merging = 0;
     if (!MeetConditions(letter, label, &start) || !PassMerges(letter, label, &start, &merging)) return;
@@ -1631,8 +1682,8 @@ Subsets ForestalledBan(const MarkedMachine& earlier, const std::vector<char>& ch
   for (int s : earlier.initial) initial.push_back(2 * s);
   for (std::size_t s = 0; s < earlier.arcs.size(); ++s) final[2 * s + 1] = earlier.final[s];
   return Subsets(initial, final, [earlier, changed](int state, const MarkedArc& read, std::vector<int>* next) {
-    const bool changes = read.mark >= 0 && read.mark < static_cast<int>(changed.size()) &&
-                         changed[static_cast<std::size_t>(read.mark)];
+    const bool changes =
+        read.mark >= 0 && read.mark < static_cast<int>(changed.size()) && changed[static_cast<std::size_t>(read.mark)];
     for (const MarkedArc& arc : earlier.arcs[state / 2]) {
       if (arc.profile != read.profile) continue;
       const bool theirs = arc.mark >= 0 && arc.role >= 0;  // a role without a label changes no item
@@ -1653,8 +1704,8 @@ int OrderAfter(int order, bool theirs, bool ours) {
 
 struct PreferredBan {
   const MarkedMachine& theirs;
-  bool left;                        // prefer left, else right
-  int our_source, their_source;     // labels, or -1
+  bool left;                     // prefer left, else right
+  int our_source, their_source;  // labels, or -1
   std::function<bool(int our_role, int their_role, int profile)> conflict;
 
   bool Beaten(int firsts, int sources) const {
@@ -1680,13 +1731,13 @@ struct PreferredBan {
       const int rest = state % kStates;
       for (const MarkedArc& arc : ban.theirs.arcs[static_cast<std::size_t>(state / kStates)]) {
         if (arc.profile != ours.profile) continue;
-        const bool their_source = ban.their_source >= 0 && arc.mark == ban.their_source;
-        const bool our_source = ban.our_source >= 0 && ours.mark == ban.our_source;
+        const bool at_theirs = ban.their_source >= 0 && arc.mark == ban.their_source;
+        const bool at_ours = ban.our_source >= 0 && ours.mark == ban.our_source;
         const int firsts = OrderAfter(rest / 2 % 4, arc.first, ours.first);
-        const int sources = OrderAfter(rest / 8, their_source, our_source);
-        const bool conflict =
+        const int sources = OrderAfter(rest / 8, at_theirs, at_ours);
+        const bool contend =
             (rest & 1) || (arc.role >= 0 && ours.role >= 0 && ban.conflict(ours.role, arc.role, ours.profile));
-        next->push_back(arc.next * kStates + sources * 8 + firsts * 2 + (conflict ? 1 : 0));
+        next->push_back(arc.next * kStates + sources * 8 + firsts * 2 + (contend ? 1 : 0));
       }
     });
   }
@@ -1764,7 +1815,8 @@ Role PatternCompiler::Impl::RoleOf(const Key& key) const {
   role.label = key[0];
   for (std::size_t j = 0; j < spreads.size(); ++j) role.asks.push_back(static_cast<Role::Ask>(key[1 + j]));
   role.values.assign(key.begin() + 1 + static_cast<std::ptrdiff_t>(spreads.size()), key.end() - 1);
-  role.merges = key.back();
+  role.merges = key.back() & ~kDoubtful;
+  role.doubtful = key.back() & kDoubtful;
   return role;
 }
 
@@ -1780,8 +1832,7 @@ std::vector<MarkedMachine> PatternCompiler::Impl::Preferred(const std::vector<Ma
       if (standing[other].over_budget) machine = OverBudget();
       if (standing[other].initial.empty() || machine.over_budget) continue;
       const PreferredBan ban{standing[other], rule.prefer == Rule::Prefer::kLeft, FirstSource(rule, clauses[c].labels),
-                             FirstSource(rule, clauses[other].labels),
-                             [&](int ours, int theirs, int profile) {
+                             FirstSource(rule, clauses[other].labels), [&](int ours, int theirs, int profile) {
                                const Key& described = profile_keys[profile];
                                if (described[kProfileKind] >= kBoundaryKind) return false;
                                return judge->conflict(by_number[static_cast<std::size_t>(ours)],

@@ -46,6 +46,7 @@ struct Role {
   enum Ask : char { kNothing, kAsk, kAskOwnMother };  // the last: source and target share the mother
   std::vector<Ask> asks;                              // by spread
   std::vector<int> values;  // by variable: 1 + its value where a change to the label asks for it, else 0
+  bool doubtful = false;    // whether the change crosses a line depends on what another item of the match is given
   std::int32_t merges = 0;  // bit i: change i makes this item's N and the one on its left one
 };
 

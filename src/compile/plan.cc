@@ -228,7 +228,8 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   std::vector<NodeSet> reads;
   for (const Rule& rule : StepsOf(grammar)) {
     for (const Clause* clause : ClausesOf(rule)) AddClause(tree, *clause, &plan);
-    if (rule.preserving || rule.kind == Rule::Kind::kComplete) AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
+    if (rule.preserving || rule.kind == Rule::Kind::kComplete)
+      AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
     reads.push_back(NodesRead(rule, tree));
   }
   NodeSet live(tree.nodes.size(), keep_all_links);

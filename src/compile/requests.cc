@@ -73,6 +73,7 @@ bool RequestSpace::SpreadsFrom(bool left, std::size_t node_index) const {
 Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated) const {
   Key request = None();
   for (const Role* role : roles) {
+    if (role->doubtful) request[0] |= kUnsure;
     for (std::size_t j = 0; j < role->asks.size(); ++j) {
       if (spreads_[j].target != role->label) continue;
       std::int32_t held = 0;
@@ -98,7 +99,8 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
           break;
         case Change::Op::kSetLiteral:
           AskContent(kRootNode, {change.inserted}, annotated, &request);
-          if (change.is_long && ContentUnder(space_.classes()[annotated[0]].visible.part, kRootNode) == Content{change.inserted} &&
+          if (change.is_long &&
+              ContentUnder(space_.classes()[annotated[0]].visible.part, kRootNode) == Content{change.inserted} &&
               !(space_.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) {
             request[0] |= kLengthen;
           }

@@ -34,7 +34,6 @@ enum SlotBit : std::int32_t {
   kInsertShift = 6,  // from here up: one bit for each change of the rule
 };
 
-
 class RequestSpace {
  public:
   RequestSpace(const Rule& rule, const RuleSpace& space, const PatternCompiler& pattern);

@@ -23,10 +23,9 @@ class ApplyPass {
         space_(requests.space()),
         builder_(requests, pool),
         at_once_(rule.mode == Rule::Mode::kAtOnce),
-        deletes_(std::any_of(rule.changes.begin(), rule.changes.end(),
-                             [](const Change& c) {
-                               return c.op == Change::Op::kDelete || c.op == Change::Op::kShorten;
-                             })),
+        deletes_(
+            std::any_of(rule.changes.begin(), rule.changes.end(),
+                        [](const Change& c) { return c.op == Change::Op::kDelete || c.op == Change::Op::kShorten; })),
         draw_(space_, deletes_ ? all_links : kept_links, rule.mode == Rule::Mode::kLeftward),
         erase_(space_, kept_links, false),
         carrier_(requests, /*rightward=*/false) {

@@ -28,7 +28,11 @@ using Indices = std::vector<std::size_t>;
 class Run {
  public:
   Run(const Grammar& grammar, const Rule& rule, const Form& form, bool notes)
-      : grammar_(grammar), rule_(rule), form_(form), notes_(notes), start_{Graph(form, grammar.tree)} {}
+      : grammar_(grammar),
+        rule_(rule),
+        form_(form),
+        notes_(notes),
+        start_{Graph(form, grammar.tree), 0, 1, {}, 0, {}, {}} {}
 
   Results AtOnce() {
     const View view(grammar_, start_.graph);

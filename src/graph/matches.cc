@@ -81,7 +81,7 @@ bool Reaches(const Graph& graph, InstanceId above, const IdList& sought, const I
 
 const char* NameOf(Failure failure) {
   switch (failure) {
-    case Failure::kNone:
+    case Failure::kStands:
       return "";
     case Failure::kCapacity:
       return "capacity";
@@ -151,7 +151,7 @@ bool Matches::HasNearer(const Ways& ways, const MatchOf& match_of, const Way& wa
       const auto nearer = [&](const Way::Gap& other) { return IsNearer(other, gap); };
       if (!std::any_of(ways[i].gaps.begin(), ways[i].gaps.end(), nearer)) continue;
       if (rule_.sharing_blocked && SharedOutside(ways[i])) continue;
-      if (Judged(static_cast<std::size_t>(match_of[i])).failure == Failure::kNone) return true;
+      if (Judged(static_cast<std::size_t>(match_of[i])).failure == Failure::kStands) return true;
     }
   }
   return false;
@@ -245,8 +245,8 @@ std::vector<std::size_t> Matches::Standing(const std::vector<std::size_t>& among
   for (std::size_t i : among) {
     const Candidate& candidate = Judged(i);
     const Failure failure =
-        candidate.failure == Failure::kNone && candidate.shared_outside ? Failure::kSharing : candidate.failure;
-    if (failure == Failure::kNone) {
+        candidate.failure == Failure::kStands && candidate.shared_outside ? Failure::kSharing : candidate.failure;
+    if (failure == Failure::kStands) {
       able.push_back(i);
     } else {
       failed(i, failure);

@@ -15,7 +15,7 @@
 
 namespace tiersmith::graph {
 
-enum class Failure { kNone, kCapacity, kCrossing, kSharing, kPreserving, kPreferred };
+enum class Failure { kStands, kCapacity, kCrossing, kSharing, kPreserving, kPreferred };
 const char* NameOf(Failure failure);
 
 class Matches {
@@ -42,7 +42,7 @@ class Matches {
     int first = -1;
     bool shared_outside = false;  // in every way of matching
     bool judged = false;          // the rest is known; judging costs, and a sweep asks for few
-    Failure failure = Failure::kNone;
+    Failure failure = Failure::kStands;
     bool changes = false;
   };
   using Ways = std::vector<Way>;

@@ -207,7 +207,7 @@ void NoteBlocked(const View& view, const Match& match, Failure failure, StepNote
   const auto at = [&](int label) { return "blocked at " + NameOfLabel(view, match, label) + ": "; };
   std::string note = at(match.clause->changes.front().target);
   switch (failure) {
-    case Failure::kNone:
+    case Failure::kStands:
       return;
     case Failure::kCapacity: {
       const Change& change = *alone.WithoutRoom(match);

@@ -483,10 +483,10 @@ void Checker::CheckTags() {
     for (const TagTest& test : clause.tags) {
       const std::string& tag = grammar_.tags[static_cast<std::size_t>(test.tag)];
       if (std::find(given.begin(), given.end(), tag) != given.end() || !said.insert(test.tag).second) continue;
-      diagnostics_.Warning(Kind::kUnknownTag, test.span,
-                           "no entry and no row of the data has the tag '" + tag + "': only forms typed with @" + tag +
-                               " would bear it",
-                           Or(DidYouMean(tag, given), "give it to the entries that are meant"));
+      diagnostics_.Warning(
+          Kind::kUnknownTag, test.span,
+          "no entry and no row of the data has the tag '" + tag + "': only forms typed with @" + tag + " would bear it",
+          Or(DidYouMean(tag, given), "give it to the entries that are meant"));
     }
   };
   for (const Rule& rule : grammar_.rules) {

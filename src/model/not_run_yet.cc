@@ -12,8 +12,7 @@ class Lister {
 
   std::vector<NotYet> Take() { return std::move(found_); }
 
-  void VisitWhole(const Rule& rule, Span name) {
-  }
+  void VisitWhole(const Rule& rule, Span name) {}
 
   // What a sweep has deleted would still stand where lines are drawn.
   void VisitClausesTogether(const Rule& rule, Span name) {
@@ -32,7 +31,6 @@ class Lister {
     VisitBoundaries(clause.where);
     for (const Pattern& unless : clause.unless) VisitUnless(unless);
     for (const Change& change : clause.changes) VisitChange(rule, change);
-    VisitGiven(clause);
   }
 
  private:
@@ -49,14 +47,16 @@ class Lister {
       const PatternItem& item = pattern.items[i];
       const bool edge = i == 0 || i + 1 == pattern.items.size();
       if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0 && edge)
-        Add(item.span, "a labelled boundary at the end of a pattern is", "let the pattern name the item beyond it: [] is any");
+        Add(item.span, "a labelled boundary at the end of a pattern is",
+            "let the pattern name the item beyond it: [] is any");
       for (const Pattern& alternative : item.alternatives) VisitBoundaries(alternative);
     }
   }
 
   void VisitUnless(const Pattern& pattern) {
     for (const PatternItem& item : pattern.items) {
-      if (Agrees(item.test)) Add(item.span, "agreement of items, α β γ δ, in `unless` is", "write one `unless` for each value");
+      if (Agrees(item.test))
+        Add(item.span, "agreement of items, α β γ δ, in `unless` is", "write one `unless` for each value");
       for (const Pattern& alternative : item.alternatives) VisitUnless(alternative);
     }
   }
@@ -64,19 +64,6 @@ class Lister {
   static bool Agrees(const SlotTest& test) {
     return std::any_of(test.bundle.begin(), test.bundle.end(), [](const FeatureTest& f) { return f.variable >= 0; }) ||
            std::any_of(test.args.begin(), test.args.end(), Agrees);
-  }
-
-  // Whether a line crosses then depends on both at once.
-  void VisitGiven(const Clause& clause) {
-    const Change* first = nullptr;
-    for (const Change& change : clause.changes) {
-      const bool gives = change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs ||
-                         change.op == Change::Op::kSetLiteral;
-      if (!gives) continue;
-      if (first != nullptr && change.target != first->target)
-        Add(change.span, "giving two items of one match new roots or copies is", "make two rules, one after the other");
-      first = &change;
-    }
   }
 
   void VisitChange(const Rule& rule, const Change& change) {

@@ -55,7 +55,8 @@ Form WithoutEmpty(const Form& form) {
 
 std::string OutcomesText(const Grammar& grammar, const std::vector<std::pair<Form, double>>& outcomes) {
   std::string text;
-  for (const auto& [form, probability] : outcomes) text += fmt::format("\n  {:.6f} {}", probability, Dump(form, grammar.tree));
+  for (const auto& [form, probability] : outcomes)
+    text += fmt::format("\n  {:.6f} {}", probability, Dump(form, grammar.tree));
   return text;
 }
 

@@ -15,10 +15,10 @@ struct Tally {
   std::uint64_t pairs = 0;                    // (rules, form) compared
   std::uint64_t changed = 0;                  // of these, the form changed
   std::uint64_t ambiguous = 0, reaching = 0;  // both engines refuse
-  std::uint64_t unsure = 0;  // forms on which the machine refuses a sweep over a gap (compile/find.h): not compared
+  std::uint64_t unsure = 0;    // forms on which the machine refuses a sweep over a gap (compile/find.h): not compared
   std::uint64_t too_many = 0;  // forms with more outcomes than the interpreter follows: not compared
   std::map<std::string, std::uint64_t> blocked;  // by reason: matches that failed
-  double worst_sum = 0;        // of the probabilities of one form's outcomes, the largest distance from 1
+  double worst_sum = 0;  // of the probabilities of one form's outcomes, the largest distance from 1
   std::uint64_t rules = 0;
   std::uint64_t over_budget = 0;                 // rules whose machine passes the limits: not compared
   std::map<std::string, std::uint64_t> applied;  // by shape of the rule: forms that it changed

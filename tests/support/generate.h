@@ -105,6 +105,7 @@ enum class Construct {
   kBoundary,
   kLongInsertion,
   kMember,
+  kTwoContents,
   kComplete
 };
 const std::vector<Construct>& AllConstructs();

@@ -83,6 +83,8 @@ class Decorator {
         return Only(Op::kInsert);
       case Construct::kMember:
         return Member();
+      case Construct::kTwoContents:
+        return TwoContents();
       case Construct::kComplete:
         *rule_ = Rule();
         rule_->kind = Rule::Kind::kComplete;
@@ -268,6 +270,36 @@ class Decorator {
     return true;
   }
 
+  // One node given on two items of a match.
+  bool TwoContents() {
+    int a = 0, b = 0;
+    if (!TwoLabels(&a, &b)) return false;
+    NodeId node = Node();
+    while (tree_[node].type == TreeNode::Type::kClass) node = Node();
+    rule_->mode = Rule::Mode::kAtOnce;
+    rule_->changes.clear();
+    for (int label : {a, b}) {
+      Change change;
+      change.op = Random({Op::kSet, Op::kSet, Op::kFill});
+      change.target = label;
+      const bool bare = tree_[node].type == TreeNode::Type::kBare;
+      change.settings = {{node, {static_cast<Value>(bare ? 0 : Below(rng_, 2))}, -1, false}};
+      if (change.op == Op::kSet && Chance(rng_, 0.2)) change.settings[0].values.clear();
+      if (Chance(rng_, 0.2)) {
+        change.settings.clear();
+        change.op = Op::kSetLiteral;
+        change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
+      } else if (Chance(rng_, 0.2)) {
+        change.settings.clear();
+        change.op = Op::kSetAs;
+        change.node = Chance(rng_, 0.3) ? kRootNode : node;
+        change.source = label == a ? b : a;
+      }
+      rule_->changes.push_back(change);
+    }
+    return true;
+  }
+
   bool NewRoot() {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
@@ -341,23 +373,31 @@ class Decorator {
 
 const std::vector<Construct>& AllConstructs() {
   static const std::vector<Construct> all = {
-      Construct::kAgreement,    Construct::kAgreeingNode,   Construct::kShared,       Construct::kLength,
-      Construct::kPart,         Construct::kEqual,          Construct::kSame,         Construct::kSameMorpheme,
-      Construct::kDomain,       Construct::kStem,           Construct::kTags,         Construct::kOtherwise,
-      Construct::kOptional,     Construct::kByWord,         Construct::kPrefer,       Construct::kPreserving,
-      Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,         Construct::kLengthen,
-      Construct::kShorten,      Construct::kMerge,          Construct::kBoundary,     Construct::kLongInsertion,
-      Construct::kMember,       Construct::kComplete};
+      Construct::kAgreement,      Construct::kAgreeingNode, Construct::kShared,   Construct::kLength,
+      Construct::kPart,           Construct::kEqual,        Construct::kSame,     Construct::kSameMorpheme,
+      Construct::kDomain,         Construct::kStem,         Construct::kTags,     Construct::kOtherwise,
+      Construct::kOptional,       Construct::kByWord,       Construct::kPrefer,   Construct::kPreserving,
+      Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,     Construct::kLengthen,
+      Construct::kShorten,        Construct::kMerge,        Construct::kBoundary, Construct::kLongInsertion,
+      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete};
   return all;
 }
 
 const char* NameOf(Construct construct) {
-  static const char* const names[] = {
-      "agreement (αf)",  "agreement (αNode)", "shared, unshared", "long, short, half", "facing parts",  "if = ≠",
-      "if is, is not",   "&",                 "within",           "within stem",       "only, except",  "otherwise",
-      "optional",        "optional by word",  "prefer",           "preserving",        "sharing blocked", "set /k/",
-      "set, fill .. as", "lengthen",          "shorten",          "merge",             "delete boundary", "insert long",
-      "delink a member", "complete"};
+  static const char* const names[] = {"agreement (αf)",   "agreement (αNode)",
+                                      "shared, unshared", "long, short, half",
+                                      "facing parts",     "if = ≠",
+                                      "if is, is not",    "&",
+                                      "within",           "within stem",
+                                      "only, except",     "otherwise",
+                                      "optional",         "optional by word",
+                                      "prefer",           "preserving",
+                                      "sharing blocked",  "set /k/",
+                                      "set, fill .. as",  "lengthen",
+                                      "shorten",          "merge",
+                                      "delete boundary",  "insert long",
+                                      "delink a member",  "two contents",
+                                      "complete"};
   return names[static_cast<int>(construct)];
 }
 
@@ -367,7 +407,8 @@ std::vector<NodeId> SharingFor(Rng& rng, const Tree& tree, const Rule& rule) {
   const auto note = [&](const auto& self, const Pattern& pattern) -> void {
     for (const PatternItem& item : pattern.items) {
       for (const FeatureTest& test : item.test.bundle) {
-        if (test.kind == FeatureTest::Kind::kShared || test.kind == FeatureTest::Kind::kUnshared) near.push_back(test.node);
+        if (test.kind == FeatureTest::Kind::kShared || test.kind == FeatureTest::Kind::kUnshared)
+          near.push_back(test.node);
       }
       for (const Pattern& alternative : item.alternatives) self(self, alternative);
     }

@@ -139,10 +139,12 @@ class RulePrinter {
         text += "  iterate leftward";
         break;
     }
-    if (rule_.prefer != Rule::Prefer::kNone) text += rule_.prefer == Rule::Prefer::kLeft ? "  prefer left" : "  prefer right";
+    if (rule_.prefer != Rule::Prefer::kNone)
+      text += rule_.prefer == Rule::Prefer::kLeft ? "  prefer left" : "  prefer right";
     if (rule_.preserving) text += "  preserving";
     if (rule_.sharing_blocked) text += "  sharing blocked";
-    if (rule_.probability < 1) text += "  optional " + std::to_string(rule_.probability) + (rule_.by_word ? " by word" : "");
+    if (rule_.probability < 1)
+      text += "  optional " + std::to_string(rule_.probability) + (rule_.by_word ? " by word" : "");
     return text + " }";
   }
 
@@ -222,7 +224,8 @@ class RulePrinter {
 
   std::string AsText(const Change& change) const {
     if (change.node == kRootNode) return clause_->labels[change.target] + " as " + clause_->labels[change.source];
-    return PathText(change.target, change.node, Member()) + " as " + PathText(change.source, change.node, change.member);
+    return PathText(change.target, change.node, Member()) + " as " +
+           PathText(change.source, change.node, change.member);
   }
 
   std::string ChangeText(const Change& change) {

@@ -539,7 +539,6 @@ rule "final vowels" {
 TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
   const Mistake rows[] = {
       {"rule \"r\" { where X:V lengthen X iterate rightward }", Kind::kNotSupportedYet, "lengthen X", "iterates"},
-      {"rule \"r\" { where X:V Y:V set X /p/ set Y /p/ }", Kind::kNotSupportedYet, "set Y /p/", "two items"},
       {"rule \"r\" { where X:V insert E:/i/ after X spread X.back to E }", Kind::kNotSupportedYet,
        "insert E:/i/ after X", "go on with"},
       {"rule \"r\" { where X:V B:# delete B }", Kind::kNotSupportedYet, "B:#", "at the end of a pattern"},
