@@ -869,7 +869,17 @@ class Sweep {
       if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
       Remember(state, i, std::move(content));
     }
-    state->near = StepOn(state->near, Known(letter));
+    state->near = StepOn(state->near, Known(AsRead(letter)));
+    return letter;
+  }
+
+  // What is new under a mother that goes on goes on as well; to the next slot that is told only when it is built.
+  Key AsRead(Key letter) const {
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      const int mother = space_.LiveIndex(space_.tree()[space_.live()[i]].mother);
+      const bool goes_on = mother >= 0 && (letter[static_cast<std::size_t>(1 + mother)] & direction_.far_line());
+      if (goes_on && space_.Of(letter[0], space_.live()[i]).count > 0) letter[1 + i] |= direction_.far_line();
+    }
     return letter;
   }
 
@@ -919,8 +929,10 @@ class Sweep {
       far_line = last->origin == far_origin || (last->origin == near_origin && old_count == 0 && linked) ||
                  (last->origin == Origin::kOwn && last->old_index == far_index && (old_marks & direction_.far_line()));
     }
+    // Under a mother that is one object with the one behind all is shared, new or old.
     const int mother = space_.LiveIndex(space_.tree()[node].mother);
     const bool same_mother = mother >= 0 && ((*letter)[1 + mother] & direction_.near_line());
+    near_line = near_line || same_mother;
     const bool near_object = same_mother ? (behind & kNearObject) != 0 : near_line;
     const bool far_object = last->origin == Origin::kOwn && !moved.near && !moved.far
                                 ? (old_marks & direction_.far_object()) != 0 && last->old_index == far_index
