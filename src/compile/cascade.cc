@@ -39,7 +39,6 @@ class CascadeCompiler {
         diagnostics_(diagnostics),
         testing_(testing != nullptr),
         plan_(MakePlan(grammar, testing_)),
-        forms_(grammar),
         data_(std::make_unique<CascadeData>()) {
     data_->grammar = &grammar;
     data_->tags_read = testing_ ? ~std::uint64_t{0} : TagsRead(grammar);
@@ -145,7 +144,7 @@ class CascadeCompiler {
     };
     for (const DataRow& row : grammar_.data) {
       for (const Reading& reading : Readings(row.underlying)) {
-        if (forms_.reader().Read(reading.text, Reader::Side::kUnderlying, &tokens, &error)) add(tokens);
+        if (Forms().reader().Read(reading.text, Reader::Side::kUnderlying, &tokens, &error)) add(tokens);
       }
     }
     for (const LexiconEntry& entry : grammar_.lexicon.entries) {
@@ -157,10 +156,15 @@ class CascadeCompiler {
     return symbols;
   }
 
+  const FormReader& Forms() const {
+    if (forms_made_ == nullptr) forms_made_ = std::make_unique<FormReader>(grammar_);
+    return *forms_made_;
+  }
+
   std::vector<Reading> Readings(const std::string& typed) const {
     std::vector<Reading> readings;
     TextError error;
-    if (!forms_.Read(typed, {}, &readings, &error)) readings.clear();
+    if (!Forms().Read(typed, {}, &readings, &error)) readings.clear();
     return readings;
   }
 
@@ -622,7 +626,7 @@ class CascadeCompiler {
   Diagnostics& diagnostics_;
   bool testing_;
   Plan plan_;
-  FormReader forms_;
+  mutable std::unique_ptr<FormReader> forms_made_;  // when the first text comes
   std::unique_ptr<CascadeData> data_;
   Tape current_;
   Segment segment_;

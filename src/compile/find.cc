@@ -85,12 +85,8 @@ bool Preserves(const Role& role, const Key& annotated, const RequestSpace& reque
     if (changes[i].op != Change::Op::kSpread || changes[i].target != role.label) continue;
     const Content& content = pattern.ContentOf(role.values[pattern.VariableOf(i)]);
     if (content.empty()) continue;
-    WorkPart travels;
-    travels.node = changes[i].node;
-    travels.value = content.front().value;
-    for (const FeatureTree& daughter : content.front().daughters) travels.daughters.push_back(FreshPart(daughter));
     const auto at = static_cast<std::size_t>(requests.IndexOf(changes[i].node));
-    left[at] = right[at] = pool.Intern(travels);
+    left[at] = right[at] = pool.Intern(FreshPart(content.front()));
   }
   if (!space.IsSlot(annotated[0])) return true;
   LetterBuilder::Lines lines;
@@ -719,11 +715,7 @@ class Sweep {
   // Does an effective change touch an object that another root holds as well?
   bool Reaches(const Key& now, const BuiltLetter& built) const {
     for (std::size_t i = 0; i < nodes(); ++i) {
-      if (!built.effective[i]) continue;
-      for (NodeId at = space_.LowestAncestor(now[0], requests_.nodes()[i]); at != kSlotNode && at != kRootNode;
-           at = space_.tree()[at].mother) {
-        if (space_.Marks(now, at) & (kObjectLeft | kObjectRight)) return true;
-      }
+      if (built.effective[i] && space_.MotherElsewhere(now, requests_.nodes()[i])) return true;
     }
     return false;
   }

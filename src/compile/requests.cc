@@ -60,9 +60,9 @@ int RequestSpace::IndexOf(NodeId node) const {
 }
 
 int RequestSpace::ContentIndex(const Content& content) const {
-  const auto it = std::find(contents_.begin(), contents_.end(), content);
-  if (it == contents_.end()) contents_.push_back(content);
-  return static_cast<int>(std::find(contents_.begin(), contents_.end(), content) - contents_.begin());
+  const auto at = std::find(contents_.begin(), contents_.end(), content) - contents_.begin();
+  if (at == static_cast<std::ptrdiff_t>(contents_.size())) contents_.push_back(content);
+  return static_cast<int>(at);
 }
 
 bool RequestSpace::SpreadsFrom(bool left, std::size_t node_index) const {
@@ -128,11 +128,7 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
 
 bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) const {
   for (std::size_t i = 0; i < nodes_.size(); ++i) {
-    if (request[1 + i] == 0) continue;
-    for (NodeId at = space_.LowestAncestor(annotated[0], nodes_[i]); at != kSlotNode && at != kRootNode;
-         at = space_.tree()[at].mother) {
-      if (space_.Marks(annotated, at) & (kObjectLeft | kObjectRight)) return true;
-    }
+    if (request[1 + i] != 0 && space_.MotherElsewhere(annotated, nodes_[i])) return true;
   }
   return false;
 }
@@ -230,7 +226,7 @@ void RequestSpace::AskCopy(std::size_t change, const Role& role, const Key& anno
 void RequestSpace::AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const {
   if (ContentUnder(space_.classes()[annotated[0]].visible.part, node) == content) return;
   std::int32_t& at = (*request)[1 + IndexOf(node)];
-  at = Combine(at, (1 + ContentIndex(content)) << kValuesShift);
+  at = Combine(at, AskFor(content));
 }
 
 std::int32_t RequestSpace::Combine(std::int32_t a, std::int32_t b) {

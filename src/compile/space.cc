@@ -114,6 +114,13 @@ NodeId RuleSpace::LowestAncestor(int class_id, NodeId node) const {
   return at;
 }
 
+bool RuleSpace::MotherElsewhere(const Key& annotated, NodeId node) const {
+  for (NodeId at = LowestAncestor(annotated[0], node); at != kSlotNode && at != kRootNode; at = tree()[at].mother) {
+    if (Marks(annotated, at) & (kObjectLeft | kObjectRight)) return true;
+  }
+  return false;
+}
+
 int RuleSpace::Room(int class_id, NodeId node) const {
   const TreeNode& kind = tree()[node];
   return kind.room.has_value() && !classes_.Matches(class_id, *kind.room) ? 1 : kind.max;

@@ -57,6 +57,8 @@ class RuleSpace {
   NodeId LowestAncestor(int class_id, NodeId node) const;
   // Does an annotated letter pass? Agreement (α) counts as passed: it is no question to one letter.
   bool Matches(const Key& annotated, const SlotTest& test) const;
+  // Is the mother that bears `node` here (or would), or one above it, held by another root as well?
+  bool MotherElsewhere(const Key& annotated, NodeId node) const;
   // How many of `node` a mother in this letter may hold.
   int Room(int class_id, NodeId node) const;
   std::size_t AnnotatedSize() const { return 2 + live_.size(); }

@@ -56,15 +56,7 @@ void CompareFusing(std::uint64_t seed, std::uint64_t wanted, std::size_t forms_e
       if (Chance(rng, 0.4)) grammar.fusions.push_back({NodeOf(grammar, node), std::nullopt, {}});
     }
     if (Chance(rng, 0.2)) grammar.fusions.push_back({kRootNode, std::nullopt, {}});
-    const std::vector<FeatureTree> letters = LettersOf(grammar);
-    FormOptions options;
-    options.max_items = 7;
-    options.share = 0;
-    std::vector<Form> forms;
-    while (forms.size() < forms_each) {
-      Form form = Canonical(RandomForm(rng, grammar, letters, options));
-      if (!PrintForm(grammar, form).empty()) forms.push_back(std::move(form));
-    }
+    const std::vector<Form> forms = TypedForms(rng, grammar, forms_each);
     DataRow row;
     row.underlying = PrintForm(grammar, forms[0]);
     row.surfaces = {row.underlying};

@@ -14,20 +14,6 @@ using namespace tiersmith::testing;
 
 namespace {
 
-// Forms that can be typed: of sharing, only long segments.
-std::vector<Form> TypedForms(Rng& rng, const Grammar& grammar, std::size_t count) {
-  const std::vector<FeatureTree> letters = LettersOf(grammar);
-  FormOptions options;
-  options.max_items = 7;
-  options.share = 0;
-  std::vector<Form> forms;
-  while (forms.size() < count) {
-    Form form = Canonical(RandomForm(rng, grammar, letters, options));
-    if (!PrintForm(grammar, form).empty()) forms.push_back(std::move(form));
-  }
-  return forms;
-}
-
 void CompareGrammars(std::uint64_t seed, std::uint64_t wanted, std::size_t forms_each, Tally* tally) {
   std::cout << "random grammars: seed " << seed << "\n";
   Rng rng(seed);

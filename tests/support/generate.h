@@ -38,6 +38,9 @@ struct FormOptions {
 };
 Form RandomForm(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, const FormOptions& options);
 
+// Forms that can be typed: of sharing, only long segments.
+std::vector<Form> TypedForms(Rng& rng, const Grammar& grammar, std::size_t count);
+
 // Any form the tree allows: trees made up node by node, contours of class nodes, instances borne by slots, floats
 // with all under them, boundaries, sharing. For decode(encode(form)) == form.
 Form RandomWideForm(Rng& rng, const Grammar& grammar, int max_items);

@@ -181,6 +181,19 @@ Form RandomForm(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>
   return Shared(form, grammar.tree, others, [&] { return Chance(rng, options.share); });
 }
 
+std::vector<Form> TypedForms(Rng& rng, const Grammar& grammar, std::size_t count) {
+  const std::vector<FeatureTree> letters = LettersOf(grammar);
+  FormOptions options;
+  options.max_items = 7;
+  options.share = 0;
+  std::vector<Form> forms;
+  while (forms.size() < count) {
+    Form form = Canonical(RandomForm(rng, grammar, letters, options));
+    if (!PrintForm(grammar, form).empty()) forms.push_back(std::move(form));
+  }
+  return forms;
+}
+
 Form RandomWideForm(Rng& rng, const Grammar& grammar, int max_items) {
   const Tree& tree = grammar.tree;
   std::vector<NodeId> floating;
