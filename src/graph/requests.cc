@@ -419,9 +419,9 @@ bool Requests::SameContent(const Content& a, const Content& b) const {
   if (a.values != nullptr && b.values != nullptr) return *a.values == *b.values;
   const auto trees = [](const Content& content) {
     if (content.values == nullptr) return content.trees;
-    std::vector<FeatureTree> trees;
-    for (Value value : *content.values) trees.push_back({content.node, value, {}});
-    return trees;
+    std::vector<FeatureTree> listed;
+    for (Value value : *content.values) listed.push_back({content.node, value, {}});
+    return listed;
   };
   return trees(a) == trees(b);
 }

@@ -193,6 +193,7 @@ std::vector<DataRow> LoadData(const std::string& path, SourceMap& sources, Span 
   if (!sources.Load(path, from, diagnostics, &file)) return rows;
   const std::optional<Table> table = ReadTable(file, sources, true, kColumns, diagnostics);
   if (!table) return rows;
+  WarnOfMisspelledColumns(*table, Fields(), diagnostics);
   const Columns columns = ByName(*table);
   if (HasForms(columns, table->heading_span, diagnostics)) AddRows(*table, columns, false, &rows, diagnostics);
   return rows;
@@ -247,6 +248,7 @@ void Checker::LoadDataTable(const syntax::DataFrom& from, std::uint32_t file) {
   const bool numbers = !from.columns.empty() && from.columns.front().number;
   const std::optional<Table> table = ReadTable(file, *grammar_.sources, !numbers, kColumns, diagnostics_);
   if (!table) return;
+  if (from.columns.empty()) WarnOfMisspelledColumns(*table, Fields(), diagnostics_);
   const std::optional<Columns> columns = from.columns.empty() ? ByName(*table) : ByBraces(from, *table, diagnostics_);
   if (!columns || !HasForms(*columns, from.columns.empty() ? table->heading_span : from.path.span, diagnostics_))
     return;

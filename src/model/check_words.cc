@@ -117,6 +117,7 @@ void Checker::LoadLexicons() {
 void Checker::LoadLexiconTable(std::uint32_t file) {
   const std::optional<Table> table = ReadTable(file, *grammar_.sources, true, kColumns, diagnostics_);
   if (!table) return;
+  WarnOfMisspelledColumns(*table, {"id", "form", "gloss", "tags", "weight"}, diagnostics_);
   if (!table->ColumnOf("form")) {
     Error(Kind::kBadLexicon, table->heading_span, "the heading names no column 'form'",
           std::string("name the columns in the first line, parted by tabs: ") + kColumns);

@@ -1,6 +1,10 @@
 // See table.h.
 #include "model/table.h"
 
+#include <algorithm>
+
+#include "model/names.h"
+
 namespace tiersmith {
 namespace {
 
@@ -83,6 +87,20 @@ std::optional<Table> ReadTable(std::uint32_t file, const SourceMap& sources, boo
   diagnostics.Error(Kind::kBadData, Span{file, 0, 0}, "the table is empty",
                     has_heading ? std::string("its first line names the columns: ") + columns : "give it a line");
   return std::nullopt;
+}
+
+void WarnOfMisspelledColumns(const Table& table, const std::vector<std::string>& fields, Diagnostics& diagnostics) {
+  std::vector<std::string> lacking;
+  for (const std::string& field : fields) {
+    if (!table.ColumnOf(field)) lacking.push_back(field);
+  }
+  for (const Cell& name : table.heading) {
+    if (std::find(fields.begin(), fields.end(), name.text) != fields.end()) continue;
+    const std::string hint = DidYouMean(name.text, lacking);
+    if (!hint.empty())
+      diagnostics.Warning(Kind::kBadData, name.span, "nothing reads the column '" + name.text + "'",
+                          hint + "otherwise leave it as it is");
+  }
 }
 
 }  // namespace tiersmith

@@ -34,4 +34,7 @@ struct Table {
 std::optional<Table> ReadTable(std::uint32_t file, const SourceMap& sources, bool has_heading, const char* columns,
                                Diagnostics& diagnostics);
 
+// Warns of a column that nothing reads and whose name is nearly one of `fields` that the heading lacks.
+void WarnOfMisspelledColumns(const Table& table, const std::vector<std::string>& fields, Diagnostics& diagnostics);
+
 }  // namespace tiersmith

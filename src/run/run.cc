@@ -26,7 +26,7 @@ struct Runner::Impl {
     std::string text;
     std::string again;  // what the further slots of a long one are written as
   };
-  std::vector<std::vector<Spelled>> spelled;  // by class, by rest
+  std::vector<std::vector<Spelled>> spellings;  // by class, by rest
   // The letters of tokens: by symbol, [not linked, linked]; by boundary.
   std::vector<std::array<LetterClasses::Parts, 2>> of_symbol;
   std::array<LetterClasses::Parts, 5> of_boundary;
@@ -62,8 +62,8 @@ struct Runner::Impl {
   }
 
   const Spelled& Spell(const LetterClasses::Parts& letter) {
-    if (static_cast<int>(spelled.size()) <= letter.class_id) spelled.resize(letter.class_id + 1);
-    auto& row = spelled[letter.class_id];
+    if (static_cast<int>(spellings.size()) <= letter.class_id) spellings.resize(letter.class_id + 1);
+    auto& row = spellings[letter.class_id];
     if (static_cast<int>(row.size()) <= letter.rest) row.resize(letter.rest + 1);
     if (row[letter.rest].kind == Spelled::Kind::kUnknown) row[letter.rest] = MakeSpelled(letter);
     return row[letter.rest];

@@ -299,9 +299,9 @@ TEST_CASE("check rules: boundaries with labels, and &", "[unit]") {
           {"rule \"r\" { within host where X:V = Y:V delete X }", Kind::kNeverApplies, "=", "stays within the host"},
       },
       Severity::kWarning, Reach::kWhole);
-  for (const char* rule : {"within stem where X:V - Y:V delete X", "within phrase where X:V # Y:V delete X"}) {
-    CAPTURE(rule);
-    CHECK(Whole("rule \"r\" { " + std::string(rule) + " }").diagnostics.all().empty());
+  for (const char* text : {"within stem where X:V - Y:V delete X", "within phrase where X:V # Y:V delete X"}) {
+    CAPTURE(text);
+    CHECK(Whole("rule \"r\" { " + std::string(text) + " }").diagnostics.all().empty());
   }
 }
 

@@ -64,6 +64,7 @@ TEST_CASE("data: tables", "[unit]") {
       {"underlying\tsurface\nta\t*na\n", "ta>*na '' ;"},
       {"underlying\tsurface\nta\tta ~ tat * na *nat\n", "ta>ta|tat*na*nat '' ;"},
       {"id\tunderlying\tsurface\ttags\tcomment\n7\tta\tta\tloan  new\tas heard\n", "ta>ta '' ; 7 loan+new+ as heard"},
+      {"underlying\tsurface\tglos\tnote\nta\tta\tx\ty\n", "ta>ta '' ;error 1: nothing reads the column 'glos' @ glos"},
   };
   for (const Row& row : rows) {
     CAPTURE(row.table);
