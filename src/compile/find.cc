@@ -752,18 +752,23 @@ class Sweep {
         };
         all(all, change.inserted);
       }
+      const auto whole = [&](NodeId top) {
+        for (std::size_t node = top; node < nodes.size(); ++node) {
+          if (node == top || space_.tree().Dominates(top, static_cast<NodeId>(node))) nodes[node] = true;
+        }
+        above(top);
+      };
       for (const Setting& setting : change.settings) {
+        if (setting.variable >= 0) {
+          whole(setting.node);  // of a class node all under it comes along
+          continue;
+        }
         nodes[setting.node] = true;
         above(setting.node);
       }
       const bool given =
           change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs || change.op == Change::Op::kSetLiteral;
-      if (!given) continue;
-      const NodeId top = change.op == Change::Op::kSetLiteral ? kRootNode : change.node;
-      for (std::size_t node = top; node < nodes.size(); ++node) {
-        if (node == top || space_.tree().Dominates(top, static_cast<NodeId>(node))) nodes[node] = true;
-      }
-      above(top);
+      if (given) whole(change.op == Change::Op::kSetLiteral ? kRootNode : change.node);
     }
     for (const Spread& spread : pattern_.spreads()) {
       above(spread.node);

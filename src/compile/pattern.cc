@@ -254,10 +254,10 @@ struct PatternCompiler::Impl {
     std::int32_t spreads = 0;  // bits of the mask: spreads of this clause, then its merges
     std::vector<Compared> conditions;
   };
-  // A change that gives its target what the source bears.
+  // A change that gives its target what the source bears, or what a variable of the rule stands for.
   struct Copy {
     std::size_t change;
-    int source, target;
+    int source, target;  // source: -1 for a variable
     NodeId node;
     Member member;
     bool fill;
@@ -278,7 +278,7 @@ struct PatternCompiler::Impl {
     int free;
     std::vector<NodeId> mentioned;  // it is about this node if it is the nearest above one of these that the item bears
   };
-  // A setting whose content is that of a variable.
+  // A setting whose content is that of a variable; of a class node it is a Copy.
   struct Borrowed {
     int label;
     const Setting* setting;
@@ -319,7 +319,8 @@ struct PatternCompiler::Impl {
     if (rule.sharing_blocked) CollectWatches();
     for (const Change& change : rule.changes) {
       for (const Setting& setting : change.settings) {
-        if (setting.variable >= 0) borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
+        if (setting.variable >= 0 && !IsClassNode(setting.node))
+          borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
       }
     }
   }
@@ -347,6 +348,11 @@ struct PatternCompiler::Impl {
     variables = rule.variables;
     for (std::size_t i = 0; i < rule.changes.size(); ++i) {
       const Change& change = rule.changes[i];
+      for (const Setting& setting : change.settings) {
+        if (setting.variable < 0 || !IsClassNode(setting.node)) continue;
+        copies.push_back(
+            {i, -1, change.target, setting.node, {}, change.op == Change::Op::kFill, setting.variable, {}});
+      }
       if (change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs) {
         copies.push_back({i,
                           change.source,
@@ -811,7 +817,7 @@ struct PatternCompiler::Impl {
       Parts(slot, test.node, &parts);
       if (!parts.empty() && test.part == FeatureTest::Part::kFirst) parts.resize(1);
       if (!parts.empty() && test.part == FeatureTest::Part::kLast) parts.erase(parts.begin(), parts.end() - 1);
-      for (const LetterPart* part : parts) allowed.insert(ContentId({part}));
+      for (const LetterPart* part : parts) allowed.insert(1 + ContentId({part}));
     } else {
       allowed.insert(values.begin(), values.end());
     }

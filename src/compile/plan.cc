@@ -67,7 +67,10 @@ void AddLinksRead(const Tree& tree, const Change& change, NodeSet* read) {
       break;
     case Change::Op::kSet:
     case Change::Op::kFill:
-      for (const Setting& setting : change.settings) AddUpward(tree, setting.node, read);
+      for (const Setting& setting : change.settings) {
+        AddUpward(tree, setting.node, read);
+        if (setting.variable >= 0) AddDownward(tree, setting.node, read);  // its content comes along
+      }
       break;
     case Change::Op::kInsert:
       AddContent(change.inserted, read);

@@ -95,7 +95,8 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
           break;
         case Change::Op::kSetAs:
         case Change::Op::kFillAs:
-          AskCopy(i, *role, annotated, &request);
+          AskCopy(change.node, change.op == Change::Op::kFillAs,
+                  pattern_.ContentOf(role->values[pattern_.VariableOf(i)]), annotated, &request);
           break;
         case Change::Op::kSetLiteral:
           AskContent(kRootNode, {change.inserted}, annotated, &request);
@@ -200,13 +201,18 @@ std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const K
 
 void RequestSpace::AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const {
   for (const Setting& setting : change.settings) {
+    const bool is_class = space_.tree()[setting.node].type == TreeNode::Type::kClass;
+    if (setting.variable >= 0 && is_class) {
+      const int value = role.values[static_cast<std::size_t>(setting.variable)];
+      AskCopy(setting.node, change.op == Change::Op::kFill, pattern_.ContentOf(value), annotated, request);
+      continue;
+    }
     const std::vector<Value> values =
         setting.variable < 0
             ? setting.values
             : BorrowedValues(space_.tree(), setting, role.values[static_cast<std::size_t>(setting.variable)] - 1);
     const int count = space_.Of(annotated[0], setting.node).count;
     if (change.op == Change::Op::kFill && count > 0) continue;
-    const bool is_class = space_.tree()[setting.node].type == TreeNode::Type::kClass;
     if (count > 0 && !values.empty() && is_class) continue;
     Content content;
     for (Value value : values) content.push_back({setting.node, value, {}});
@@ -214,12 +220,10 @@ void RequestSpace::AskSettings(const Change& change, const Role& role, const Key
   }
 }
 
-// The content that the source of a copy bears.
-void RequestSpace::AskCopy(std::size_t change, const Role& role, const Key& annotated, Key* request) const {
-  const Change& copy = rule_.changes[change];
-  const Content& content = pattern_.ContentOf(role.values[pattern_.VariableOf(change)]);
-  if (copy.op == Change::Op::kFillAs && (content.empty() || space_.Of(annotated[0], copy.node).count > 0)) return;
-  AskContent(copy.node, content, annotated, request);
+// The content that another item bears, or a variable stands for.
+void RequestSpace::AskCopy(NodeId node, bool fill, const Content& content, const Key& annotated, Key* request) const {
+  if (fill && (content.empty() || space_.Of(annotated[0], node).count > 0)) return;
+  AskContent(node, content, annotated, request);
 }
 
 // Asks for nothing if just this is there.

@@ -63,7 +63,7 @@ class RequestSpace {
   std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
   void AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const;
-  void AskCopy(std::size_t change, const Role& role, const Key& annotated, Key* request) const;
+  void AskCopy(NodeId node, bool fill, const Content& content, const Key& annotated, Key* request) const;
   void AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const;
   int ContentIndex(const Content& content) const;
 

@@ -95,11 +95,7 @@ class Lister {
     const bool cuts = change.op == Change::Op::kDelink && change.member.which == Member::Which::kValue;
     if (cuts && tree_[change.node].max > 3) Add(change.span, "one member of a contour of more than three parts is");
     VisitNode(change.node, change.span);
-    for (const Setting& setting : change.settings) {
-      VisitNode(setting.node, change.span);
-      if (setting.variable >= 0 && tree_[setting.node].type == TreeNode::Type::kClass)
-        Add(change.span, "giving a class node the content of a variable is", "copy it: set X.N as Y.N");
-    }
+    for (const Setting& setting : change.settings) VisitNode(setting.node, change.span);
   }
 
   // What hangs from the slot, and what one mother may hold several subtrees of.

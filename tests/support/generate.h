@@ -109,7 +109,8 @@ enum class Construct {
   kLongInsertion,
   kMember,
   kTwoContents,
-  kComplete
+  kComplete,
+  kGivenNode
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

@@ -24,6 +24,8 @@ class Decorator {
         return Agreement();
       case Construct::kAgreeingNode:
         return AgreeingNode();
+      case Construct::kGivenNode:
+        return GivenNode();
       case Construct::kShared:
         return AddTest(Random({FeatureTest::Kind::kShared, FeatureTest::Kind::kShared, FeatureTest::Kind::kUnshared}));
       case Construct::kLength:
@@ -153,20 +155,44 @@ class Decorator {
     return true;
   }
 
+  NodeId ClassNode() {
+    NodeId node = Node();
+    while (tree_[node].type != TreeNode::Type::kClass) node = Node();
+    return node;
+  }
+  static FeatureTest Agrees(NodeId node) {
+    FeatureTest test;
+    test.kind = FeatureTest::Kind::kAgrees;
+    test.node = node;
+    test.variable = 0;
+    return test;
+  }
+
   bool AgreeingNode() {
     std::vector<PatternItem*> slots = Slots();
     if (slots.size() < 2) return false;
-    NodeId node = Node();
-    while (tree_[node].type != TreeNode::Type::kClass) node = Node();
+    const NodeId node = ClassNode();
     rule_->variables = 1;
     std::shuffle(slots.begin(), slots.end(), rng_);
-    for (std::size_t i = 0; i < 2; ++i) {
-      FeatureTest test;
-      test.kind = FeatureTest::Kind::kAgrees;
-      test.node = node;
-      test.variable = 0;
-      Require(slots[i], test);
-    }
+    for (std::size_t i = 0; i < 2; ++i) Require(slots[i], Agrees(node));
+    return true;
+  }
+
+  // An item is given what a variable stands for at another, now and then at both.
+  bool GivenNode() {
+    std::vector<PatternItem*> slots = Slots();
+    if (slots.size() < 2) return false;
+    std::shuffle(slots.begin(), slots.end(), rng_);
+    if (slots[1]->label < 0) return false;
+    const NodeId node = ClassNode();
+    rule_->variables = 1;
+    Require(slots[0], Agrees(node));
+    if (Chance(rng_, 0.2)) Require(slots[1], Agrees(node));
+    Change change;
+    change.op = Random({Op::kSet, Op::kSet, Op::kFill});
+    change.target = slots[1]->label;
+    change.settings = {{node, {}, 0, false}};
+    rule_->changes = {change};
     return true;
   }
 
@@ -379,7 +405,7 @@ const std::vector<Construct>& AllConstructs() {
       Construct::kOptional,       Construct::kByWord,       Construct::kPrefer,   Construct::kPreserving,
       Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,     Construct::kLengthen,
       Construct::kShorten,        Construct::kMerge,        Construct::kBoundary, Construct::kLongInsertion,
-      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete};
+      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete, Construct::kGivenNode};
   return all;
 }
 
@@ -397,7 +423,7 @@ const char* NameOf(Construct construct) {
                                       "shorten",          "merge",
                                       "delete boundary",  "insert long",
                                       "delink a member",  "two contents",
-                                      "complete"};
+                                      "complete",         "set, fill [αNode]"};
   return names[static_cast<int>(construct)];
 }
 
