@@ -41,12 +41,13 @@ void MarkLinks(WorkPart* part, const Key& annotated, const RuleSpace& space) {
 }  // namespace
 
 void Freshen(WorkPart* part) {
+  if (part->origin != Origin::kOwn) return;
   part->origin = Origin::kFresh;
   for (WorkPart& daughter : part->daughters) Freshen(&daughter);
 }
 
 WorkPart FreshPart(const FeatureTree& content) {
-  WorkPart part = Work(PartOf(content), Origin::kFresh, -1);
+  WorkPart part = Work(PartOf(content), Origin::kOwn, -1);
   Freshen(&part);
   return part;
 }
@@ -139,15 +140,15 @@ WorkPart* LetterBuilder::MotherFor(WorkPart* slot, NodeId node, bool make) const
   return part;
 }
 
-BuiltLetter LetterBuilder::Build(const Key& annotated, const Key& request, const Lines& lines) const {
+BuiltLetter LetterBuilder::Build(const Key& annotated, const std::int32_t* asks, const Lines& lines) const {
   BuiltLetter built;
   built.slot = Before(annotated);
   built.effective.assign(requests_.nodes().size(), 0);
   bool any = false;
   const int root = requests_.IndexOf(kRootNode);
-  const bool new_root = root >= 0 && request[static_cast<std::size_t>(1 + root)] >> kValuesShift != 0;
+  const bool new_root = root >= 0 && asks[root] >> kValuesShift != 0;
   for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
-    const std::int32_t ask = request[1 + i];
+    const std::int32_t ask = asks[i];
     if (ask == 0) continue;
     // What is asked of nodes under the root was asked of the old one; its other slots see to that.
     if (new_root && requests_.nodes()[i] != kRootNode) continue;

@@ -30,7 +30,7 @@ struct WorkPart {
   std::vector<WorkPart> daughters;
 };
 
-// It and all under it are new.
+// It and all under it are new, but for what a line led here.
 void Freshen(WorkPart* part);
 
 // A new part of this content.
@@ -76,7 +76,8 @@ class LetterBuilder {
     Origin left_origin = Origin::kOldLeft;
     Origin right_origin = Origin::kOldRight;
   };
-  BuiltLetter Build(const Key& annotated, const Key& request, const Lines& lines) const;
+  // `asks`: by request node.
+  BuiltLetter Build(const Key& annotated, const std::int32_t* asks, const Lines& lines) const;
 
   // A letter of a work tree with the given links dropped, as a class that keeps the rest key of `like`.
   int ClassOf(const WorkPart& slot, int like) const;

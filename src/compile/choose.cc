@@ -158,8 +158,9 @@ bool DrawsLocally(const Rule& rule) {
   if (rule.mode != Rule::Mode::kAtOnce || rule.by_word) return true;
   const std::vector<const Clause*> clauses = ClausesOf(rule);
   return std::all_of(clauses.begin(), clauses.end(), [](const Clause* clause) {
+    const int host = HostOf(*clause, clause->changes.front().target);
     return std::all_of(clause->changes.begin(), clause->changes.end(),
-                       [&](const Change& change) { return change.target == clause->changes.front().target; });
+                       [&](const Change& change) { return HostOf(*clause, change.target) == host; });
   });
 }
 

@@ -3,6 +3,7 @@
 #include <algorithm>
 
 #include "compile/choose.h"
+#include "compile/flatten.h"
 #include "compile/plan.h"
 #include "compile/sides.h"
 
@@ -78,26 +79,37 @@ bool Preserves(const Role& role, const Key& annotated, const RequestSpace& reque
     return symbol >= 0 && inventory.symbols[static_cast<std::size_t>(symbol)].kind == Symbol::Kind::kSegment;
   };
   const std::vector<Change>& changes = requests.rule().changes;
-  Key left(requests.nodes().size(), -1), right = left;
+  Key left(requests.contents_size(), -1), right = left;
   for (std::size_t i = 0; i < changes.size(); ++i) {
-    if (changes[i].op == Change::Op::kInsert && changes[i].target == role.label && !spelled(changes[i].inserted))
-      return false;
-    if (changes[i].op != Change::Op::kSpread || changes[i].target != role.label) continue;
+    if (changes[i].op != Change::Op::kSpread || HostOf(requests.rule(), changes[i].target) != role.label) continue;
     const Content& content = pattern.ContentOf(role.values[pattern.VariableOf(i)]);
     if (content.empty()) continue;
-    const auto at = static_cast<std::size_t>(requests.IndexOf(changes[i].node));
+    const int insertion = InsertionOf(requests.rule(), changes[i].target);
+    const std::size_t block = insertion < 0 ? 0 : requests.BlockOf(static_cast<std::size_t>(insertion));
+    const auto at = block * requests.nodes().size() + static_cast<std::size_t>(requests.IndexOf(changes[i].node));
     left[at] = right[at] = pool.Intern(FreshPart(content.front()));
   }
   if (!space.IsSlot(annotated[0])) return true;
-  LetterBuilder::Lines lines;
-  lines.left = left.data();
-  lines.right = right.data();
   const Key request = requests.Of({&role}, annotated);
+  const auto root_after = [&](const Key& letter, std::size_t block) {
+    const std::size_t at = block * requests.nodes().size();
+    LetterBuilder::Lines lines;
+    lines.left = &left[at];
+    lines.right = &right[at];
+    Letter after;
+    const BuiltLetter built = LetterBuilder(requests, pool).Build(letter, &request[1 + at], lines);
+    after.part = LetterBuilder::Plain(built.slot, /*links=*/false);
+    return RootContent(after);
+  };
+  for (std::size_t i = 0; i < changes.size(); ++i) {
+    if (changes[i].op != Change::Op::kInsert || changes[i].target != role.label) continue;
+    const std::size_t block = requests.BlockOf(i);
+    const std::optional<FeatureTree> root =
+        block == 0 ? changes[i].inserted : root_after(space.Inserted(changes[i], annotated), block);
+    if (root.has_value() && !spelled(*root)) return false;
+  }
   if ((request[0] & kDeleteSlot) && !(space.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) return true;
-  const BuiltLetter built = LetterBuilder(requests, pool).Build(annotated, request, lines);
-  Letter after;
-  after.part = LetterBuilder::Plain(built.slot, /*links=*/false);
-  const std::optional<FeatureTree> root = RootContent(after);
+  const std::optional<FeatureTree> root = root_after(annotated, 0);
   return !root.has_value() || root == RootContent(space.classes()[annotated[0]].visible) || spelled(*root);
 }
 
@@ -137,7 +149,8 @@ class SpanPass {
     const std::size_t request_at = space.AnnotatedSize();
     CarryLength(Annotated(symbol, space), &step.symbol[request_at], &step.state[root_at_]);
     const std::size_t left_at = request_at + requests_.size();
-    const std::size_t right_at = left_at + requests_.nodes().size();
+    const std::size_t right_at = left_at + requests_.contents_size();
+    Key lefts(requests_.contents_size(), -1);
     for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
       const NodeId node = requests_.nodes()[i];
       std::int32_t* carried = &step.state[offsets_[i]];
@@ -145,18 +158,19 @@ class SpanPass {
       std::int32_t* need = contents + 2;
       std::int32_t& request = step.symbol[request_at + 1 + i];
       if (requests_.SpreadsFrom(false, i)) {
+        if (requests_.AsksBeside(&symbol[request_at], /*before=*/true, i, kLineRight)) *need = kBeyond;
         step.symbol[right_at + i] = MeetsSource(need, symbol, node, kFromLeft, space);
         if (request & kLineRight) Ask(need, symbol, node, space);
+        if (requests_.AsksBeside(&symbol[request_at], /*before=*/false, i, kLineRight)) *need = kBeyond;
       }
       carrier_.Step(symbol, i, carried, &request);
-      if (!requests_.SpreadsFrom(true, i)) {
-        step.symbol[left_at + i] = -1;
-        continue;
-      }
+      if (!requests_.SpreadsFrom(true, i)) continue;
       const bool needed = symbol[left_at + i] != 0;
-      step.symbol[left_at + i] =
-          builder_.CarryContent(Annotated(symbol, space), node, /*rightward=*/true, needed, contents);
+      requests_.GiveBeside(&symbol[request_at], /*before=*/true, i, kLineLeft, contents[0] - 1, &lefts);
+      lefts[i] = builder_.CarryContent(Annotated(symbol, space), node, /*rightward=*/true, needed, contents);
+      requests_.GiveBeside(&symbol[request_at], /*before=*/false, i, kLineLeft, contents[0] - 1, &lefts);
     }
+    std::copy(lefts.begin(), lefts.end(), step.symbol.begin() + static_cast<std::ptrdiff_t>(left_at));
     return step;
   }
 
@@ -224,13 +238,15 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
         const Key request = requests.Of(
             RolesBetween(machine, arcs[profile], left.members[symbol.back()], right.members[state[0]]), letter);
         Append(&step.symbol, request);
-        Key needs(2 * nodes, 0);
+        Key needs(2 * requests.contents_size(), 0);
         if (space.IsSlot(letter[0])) {
           for (std::size_t i = 0; i < nodes; ++i) {
             if (!requests.SpreadsFrom(true, i)) continue;
             std::int32_t* need = &step.state[1 + i];
+            if (requests.AsksBeside(&request[0], /*before=*/false, i, kLineLeft)) *need = kBeyond;
             needs[i] = MeetsSource(need, letter, requests.nodes()[i], kToRight, space);
             if (request[1 + i] & kLineLeft) Ask(need, letter, requests.nodes()[i], space);
+            if (requests.AsksBeside(&request[0], /*before=*/true, i, kLineLeft)) *need = kBeyond;
           }
         }
         Append(&step.symbol, needs);
@@ -692,7 +708,7 @@ class Sweep {
     lines.right = direction_.rightward ? far_contents : near_contents.data();
     lines.left_origin = direction_.rightward ? Origin::kNewLeft : Origin::kOldLeft;
     lines.right_origin = direction_.rightward ? Origin::kOldRight : Origin::kNewRight;
-    return builder_.Build(now, request, lines);
+    return builder_.Build(now, &request[1], lines);
   }
 
   Key Written(const Key& letter, const Key& request, const Key& near_plus_one, const std::int32_t* far_contents) const {

@@ -11,7 +11,8 @@
 // kUnsure, and a grammar that can reach one is refused.
 //
 // Layout of the symbols written: annotated letter (kOver as it is after the changes behind, when iterating),
-// then the request key, then the contents on the left, then on the right, by request node (-1: none or not asked).
+// then the request key, then the contents on the left, then on the right, by block of the request and by node (-1: none or
+// not asked).
 // At once only the left contents are filled; the right ones hold whether they are needed.
 #pragma once
 

@@ -1,5 +1,7 @@
 #include "compile/flatten.h"
 
+#include <algorithm>
+
 namespace tiersmith {
 namespace {
 
@@ -59,6 +61,18 @@ Rule Flattened(const Rule& rule) {
     clause.changes.clear();
   }
   return flat;
+}
+
+int InsertionOf(const Clause& clause, int label) {
+  const auto found = std::find_if(clause.changes.begin(), clause.changes.end(), [label](const Change& change) {
+    return label >= 0 && change.op == Change::Op::kInsert && change.inserted_label == label;
+  });
+  return found == clause.changes.end() ? -1 : static_cast<int>(found - clause.changes.begin());
+}
+
+int HostOf(const Clause& clause, int label) {
+  const int insertion = InsertionOf(clause, label);
+  return insertion < 0 ? label : clause.changes[static_cast<std::size_t>(insertion)].target;
 }
 
 Rule FusionAsRule(const Fusion& fusion, const Tree& tree) {

@@ -17,6 +17,12 @@ Rule Flattened(const Rule& rule);
 // The first clause and those after `otherwise`, in order.
 std::vector<const Clause*> ClausesOf(const Rule& rule);
 
+// Of a clause, or a flattened rule: the insertion that brings in the item of this label, as a change; -1: the label is of the pattern.
+int InsertionOf(const Clause& clause, int label);
+
+// The label of the pattern at which a change is asked for: of what is inserted, its host's.
+int HostOf(const Clause& clause, int label);
+
 // `fuse N within morpheme` as a rule that comes before the others: neighbours with equal N are merged. Requires: no `in`.
 Rule FusionAsRule(const Fusion& fusion, const Tree& tree);
 

@@ -257,7 +257,8 @@ struct PatternCompiler::Impl {
   // A change that gives its target what the source bears, or what a variable of the rule stands for.
   struct Copy {
     std::size_t change;
-    int source, target;  // source: -1 for a variable
+    int source, target;  // labels of the pattern; source: -1 for a variable
+    int insertion;       // the target is what this change inserts beside `target`; -1: the item itself
     NodeId node;
     Member member;
     bool fill;
@@ -280,7 +281,8 @@ struct PatternCompiler::Impl {
   };
   // A setting whose content is that of a variable; of a class node it is a Copy.
   struct Borrowed {
-    int label;
+    int label;      // of the pattern
+    int insertion;  // as of a Copy
     const Setting* setting;
     bool fill;
   };
@@ -311,7 +313,7 @@ struct PatternCompiler::Impl {
     for (const Clause* clause : ClausesOf(rule)) Order(clause->where);
     changed.assign(rule.labels.size(), 0);
     for (const Change& change : rule.changes) {
-      if (change.target >= 0) changed[change.target] = 1;
+      if (change.target >= 0) changed[static_cast<std::size_t>(HostOf(rule, change.target))] = 1;
     }
     CollectSpreads();
     CollectCopies();
@@ -319,8 +321,9 @@ struct PatternCompiler::Impl {
     if (rule.sharing_blocked) CollectWatches();
     for (const Change& change : rule.changes) {
       for (const Setting& setting : change.settings) {
-        if (setting.variable >= 0 && !IsClassNode(setting.node))
-          borrowed.push_back({change.target, &setting, change.op == Change::Op::kFill});
+        if (setting.variable < 0 || IsClassNode(setting.node)) continue;
+        borrowed.push_back(
+            {HostOf(rule, change.target), InsertionOf(rule, change.target), &setting, change.op == Change::Op::kFill});
       }
     }
   }
@@ -350,13 +353,21 @@ struct PatternCompiler::Impl {
       const Change& change = rule.changes[i];
       for (const Setting& setting : change.settings) {
         if (setting.variable < 0 || !IsClassNode(setting.node)) continue;
-        copies.push_back(
-            {i, -1, change.target, setting.node, {}, change.op == Change::Op::kFill, setting.variable, {}});
+        copies.push_back({i,
+                          -1,
+                          HostOf(rule, change.target),
+                          InsertionOf(rule, change.target),
+                          setting.node,
+                          {},
+                          change.op == Change::Op::kFill,
+                          setting.variable,
+                          {}});
       }
       if (change.op == Change::Op::kSetAs || change.op == Change::Op::kFillAs) {
         copies.push_back({i,
                           change.source,
-                          change.target,
+                          HostOf(rule, change.target),
+                          InsertionOf(rule, change.target),
                           change.node,
                           change.member,
                           change.op == Change::Op::kFillAs,
@@ -366,10 +377,18 @@ struct PatternCompiler::Impl {
         // What travels must be known where it is judged.
         Member facing = change.member;
         if (facing.which == Member::Which::kWhole) {
-          facing.which =
-              Position(change.source) < Position(change.target) ? Member::Which::kLast : Member::Which::kFirst;
+          facing.which = Place(change.source) < Place(change.target) ? Member::Which::kLast : Member::Which::kFirst;
         }
-        copies.push_back({i, change.source, change.target, change.node, facing, false, variables++, {}, true});
+        copies.push_back({i,
+                          change.source,
+                          HostOf(rule, change.target),
+                          InsertionOf(rule, change.target),
+                          change.node,
+                          facing,
+                          false,
+                          variables++,
+                          {},
+                          true});
       } else if (change.op == Change::Op::kMerge) {
         const bool forward = Position(change.source) < Position(change.target);
         merges.push_back(
@@ -418,6 +437,17 @@ struct PatternCompiler::Impl {
   int Position(int label) const {
     return static_cast<int>(std::find(where_order.begin(), where_order.end(), label) - where_order.begin());
   }
+  // The same with room for insertions between, those on one side of an item in the order written.
+  int Place(int label) const {
+    const int insertion = InsertionOf(rule, label);
+    return insertion < 0 ? Position(label) * Apart() : PlaceOfInsertion(static_cast<std::size_t>(insertion));
+  }
+  int PlaceOfInsertion(std::size_t change) const {
+    const int written = static_cast<int>(change) + 1;
+    const Change& insertion = rule.changes[change];
+    return Position(insertion.target) * Apart() + (insertion.before ? written - Apart() / 2 : written);
+  }
+  int Apart() const { return 2 * (static_cast<int>(rule.changes.size()) + 1); }
 
   void CollectSpreads() {
     inserted.resize(rule.changes.size());
@@ -435,20 +465,22 @@ struct PatternCompiler::Impl {
       Spread spread;
       spread.change = static_cast<int>(i);
       spread.source = change.source;
-      spread.target = change.target;
+      spread.target = HostOf(rule, change.target);
+      spread.insertion = InsertionOf(rule, change.target);
       spread.node = change.node;
       spread.mother = space.tree()[change.node].mother;
-      spread.from_left = Position(change.source) < Position(change.target);
+      const int source = Place(change.source), target = Place(change.target);
+      spread.from_left = source < target;
+      const int host = Place(spread.target);
+      spread.past_host = spread.from_left ? source < host && host < target : target < host && host < source;
       for (std::size_t j = 0; j < rule.changes.size(); ++j) {
         const Change& other = rule.changes[j];
-        if (other.op == Change::Op::kDelink && other.target == spread.target && other.node == spread.node) {
+        if (other.op == Change::Op::kDelink && other.target == change.target && other.node == spread.node) {
           spread.delinks = true;
           spread.delink = static_cast<int>(j);
         }
         if (other.op == Change::Op::kInsert && Contains(other.inserted, spread.node)) {
-          // The place of an insertion among the labels: half a step before or after its host.
-          const int place = 2 * Position(other.target) + (other.before ? -1 : 1);
-          const int source = 2 * Position(spread.source), target = 2 * Position(spread.target);
+          const int place = PlaceOfInsertion(j);
           if ((source < place && place < target) || (target < place && place < source)) spread.inserts_between = true;
         }
       }
@@ -571,6 +603,7 @@ struct PatternCompiler::Impl {
       const bool at_end = change.target >= 0 && (change.target == left || change.target == right);
       switch (change.op) {
         case Change::Op::kSpread: {
+          if (InsertionOf(rule, change.target) >= 0) break;  // it is no end of the gap
           const bool source_left = static_cast<std::size_t>(Position(change.source)) < split;
           const bool target_left = static_cast<std::size_t>(Position(change.target)) < split;
           if (source_left != target_left) across.insert(change.node);
@@ -734,10 +767,10 @@ struct PatternCompiler::Impl {
       profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
     }
     for (std::size_t i = 0; i < borrowed.size(); ++i) {
-      std::int32_t fits = ValuesThatFit(letter, borrowed[i]);
+      std::int32_t fits = ValuesThatFit(ItemAt(letter, borrowed[i].insertion), borrowed[i]);
       const std::int32_t all = (1 << ValueCount(*borrowed[i].setting)) - 1;
       std::int32_t& allowance = profile[LabelField(borrowed[i].label)];
-      if (fits != all && GivenElsewhere(borrowed[i].label, borrowed[i].setting->node)) {
+      if (fits != all && borrowed[i].insertion < 0 && GivenElsewhere(borrowed[i].label, borrowed[i].setting->node)) {
         fits = all;
         if (allowance == kAllowed) allowance = kInDoubt;
       }
@@ -894,6 +927,15 @@ struct PatternCompiler::Impl {
     const int own =
         node.count - (spread.delinks ? CutBy(rule.changes[static_cast<std::size_t>(spread.delink)], letter) : 0);
     answers[kHasRoom] = own + 1 <= space.Room(letter[0], spread.node) && MothersFit(letter, spread.node);
+    if (spread.insertion < 0) return;
+    const Key beside = ItemAt(letter, spread.insertion);
+    answers[kHasRoom] = !spread.inserts_between && MothersFit(beside, spread.node) &&
+                        space.Of(beside[0], spread.node).count + 1 <= space.Room(beside[0], spread.node);
+  }
+
+  // The letter, or what a change inserts beside it.
+  Key ItemAt(const Key& letter, int insertion) const {
+    return insertion < 0 ? letter : space.Inserted(rule.changes[static_cast<std::size_t>(insertion)], letter);
   }
 
   // The class nodes that would be made above `node` stand in no span of theirs.
@@ -942,11 +984,13 @@ struct PatternCompiler::Impl {
     Allowance allowed = kAllowed;
     for (std::size_t i = 0; i < rule.changes.size(); ++i) {
       const Change& change = rule.changes[i];
-      if (change.target != label) continue;
+      if (HostOf(rule, change.target) != label) continue;
       if (change.op == Change::Op::kSet || change.op == Change::Op::kFill) {
+        const int insertion = InsertionOf(rule, change.target);
+        const Key item = ItemAt(letter, insertion);
         for (const Setting& setting : change.settings) {
-          if (setting.variable >= 0 || SettingFits(letter, setting, change.op == Change::Op::kFill)) continue;
-          if (!GivenElsewhere(label, setting.node)) return kBarred;
+          if (setting.variable >= 0 || SettingFits(item, setting, change.op == Change::Op::kFill)) continue;
+          if (insertion >= 0 || !GivenElsewhere(label, setting.node)) return kBarred;
           allowed = kInDoubt;
         }
       } else if (change.op == Change::Op::kSetLiteral) {
@@ -955,9 +999,7 @@ struct PatternCompiler::Impl {
         allowed = kInDoubt;
       } else if (change.op == Change::Op::kInsert) {
         for (NodeId node : inserted[i]) {
-          const std::int32_t marks = space.Marks(letter, node);
-          const std::int32_t side = change.before ? kFromLeft : kToRight;
-          if (marks & (space.Of(letter[0], node).count > 0 ? side : kOver)) return kBarred;
+          if (space.PassesOver(letter, node, change.before)) return kBarred;
         }
       }
     }
@@ -1473,15 +1515,16 @@ struct PatternCompiler::Impl::Builder {
       const std::size_t at = VariableAt(copy.variable);
       if (copy.source == label) {
         Bind(at, Key{letter[impl.CopyField(i)]}, ways, [](std::int32_t, Key*) { return true; });
-      } else if (copy.target == label) {
+      }
+      if (copy.target == label) {
         Bind(at, Key(copy.known.begin(), copy.known.end()), ways, [&](std::int32_t value, Key* role) {
           (*role)[1 + SpreadCount() + static_cast<std::size_t>(copy.variable)] = 1 + value;
           if (copy.spreads) return true;
-          const Key& annotated = impl.letters[letter[impl.LetterField()]];
+          const Key annotated = impl.ItemAt(impl.letters[letter[impl.LetterField()]], copy.insertion);
           if (copy.fill && (value == 0 || impl.space.Of(annotated[0], copy.node).count > 0)) return true;
           const bool fits =
               value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
-          if (!fits && impl.GivenElsewhere(label, copy.node)) role->back() |= kDoubtful;
+          if (!fits && copy.insertion < 0 && impl.GivenElsewhere(label, copy.node)) role->back() |= kDoubtful;
           return fits || (role->back() & kDoubtful) != 0;
         });
       }
@@ -1555,6 +1598,41 @@ struct PatternCompiler::Impl::Builder {
     }
   }
 
+  // The slot that spread j's target is inserted beside. Its mother there is its own, and no line leads to it yet: between it and
+  // the source there may only be what spreads.
+  void MeetPlace(const Key& key, const Key& role, std::size_t j, int label, const std::int32_t* answers,
+                 std::vector<std::pair<Key, Key>>* next) const {
+    const Spread& spread = impl.spreads[j];
+    const bool asked = key[kMask] >> j & 1;
+    const bool at_source = label == spread.source;
+    if (at_source && (answers[kBearsNode] == kHidden || asked != (answers[kBearsNode] != 0))) return;
+    if (!asked) {
+      next->emplace_back(key, role);
+      return;
+    }
+    if (!answers[kHasRoom]) return;
+    const std::int32_t zone = key[kZones + j];
+    const auto go = [&](std::int32_t to) {
+      next->emplace_back(key, role);
+      next->back().first[kZones + j] = to;
+      next->back().second[1 + j] = Role::kAsk;
+    };
+    if (at_source) {
+      go(kDone);
+    } else if (spread.from_left) {
+      if (zone == kBefore || zone == kDone) return;
+      const std::int32_t there = spread.past_host ? Away(zone, answers, true) : zone;
+      if (there == kSourceZone || there == kLineZone) go(kDone);
+    } else if (zone == kBefore) {
+      for (std::int32_t there : {kSourceZone, kLineZone}) {
+        if (!spread.past_host) go(there);
+        for (std::int32_t from : {kSourceZone, kLineZone, kTargetZone}) {
+          if (spread.past_host && Away(from, answers, false) == there) go(from);
+        }
+      }
+    }
+  }
+
   // What consuming a slot under `label` means to spread j.
   void MeetSpread(const Key& key, const Key& role, std::size_t j, int label, const std::int32_t* answers,
                   std::vector<std::pair<Key, Key>>* next) const {
@@ -1566,6 +1644,10 @@ struct PatternCompiler::Impl::Builder {
       after[kZones + j] = to;
       next->emplace_back(std::move(after), with);
     };
+    if (spread.insertion >= 0 && label == spread.target) {
+      MeetPlace(key, role, j, label, answers, next);
+      return;
+    }
     if (label == spread.source) {
       if (answers[kBearsNode] == kHidden || asked != (answers[kBearsNode] != 0)) return;  // a hidden one would cross
       if (!asked) {

@@ -33,11 +33,13 @@ namespace tiersmith {
 struct Spread {
   int change = 0;  // index into Rule::changes
   int source = 0, target = 0;
+  int insertion = -1;  // the change that inserts the target, beside the item labelled `target`
   NodeId node = 0, mother = 0;
   bool from_left = true;         // the source stands left of the target
   bool delinks = false;          // the rule also delinks the target's own
   int delink = -1;               // that change
   bool inserts_between = false;  // the rule inserts a bearer between source and target
+  bool past_host = false;        // what is inserted stands behind its host, seen from the source
 };
 
 // Why a slot is changed: its label, and for each spread to that label whether its source bears the node.

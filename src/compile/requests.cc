@@ -3,6 +3,8 @@
 #include <algorithm>
 #include <set>
 
+#include "compile/flatten.h"
+
 namespace tiersmith {
 
 Content ContentUnder(const LetterPart& part, NodeId node) {
@@ -52,6 +54,29 @@ RequestSpace::RequestSpace(const Rule& rule, const RuleSpace& space, const Patte
     }
   }
   nodes_.assign(nodes.begin(), nodes.end());
+  for (std::size_t i = 0; i < rule.changes.size(); ++i) {
+    if (rule.changes[i].op == Change::Op::kInsert && rule.changes[i].inserted_label >= 0) grown_.push_back(i);
+  }
+}
+
+std::size_t RequestSpace::BlockOf(std::size_t change) const {
+  const auto found = std::find(grown_.begin(), grown_.end(), change);
+  return found == grown_.end() ? 0 : 1 + static_cast<std::size_t>(found - grown_.begin());
+}
+
+bool RequestSpace::AsksBeside(const std::int32_t* request, bool before, std::size_t node_index,
+                              std::int32_t line) const {
+  return std::any_of(grown_.begin(), grown_.end(), [&](std::size_t i) {
+    return rule_.changes[i].before == before && (request[1 + BlockOf(i) * nodes_.size() + node_index] & line);
+  });
+}
+
+void RequestSpace::GiveBeside(const std::int32_t* request, bool before, std::size_t node_index, std::int32_t line,
+                              std::int32_t content, Key* contents) const {
+  for (std::size_t i : grown_) {
+    const std::size_t at = BlockOf(i) * nodes_.size() + node_index;
+    if (rule_.changes[i].before == before && (request[1 + at] & line)) (*contents)[at] = content;
+  }
 }
 
 int RequestSpace::IndexOf(NodeId node) const {
@@ -74,32 +99,19 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
   Key request = None();
   for (const Role* role : roles) {
     if (role->doubtful) request[0] |= kUnsure;
-    for (std::size_t j = 0; j < role->asks.size(); ++j) {
-      if (spreads_[j].target != role->label) continue;
-      std::int32_t held = 0;
-      request[1 + IndexOf(spreads_[j].node)] |= AskSpread(*role, j, annotated, &held);
-    }
     for (std::size_t i = 0; i < rule_.changes.size(); ++i) {
       const Change& change = rule_.changes[i];
       if (role->merges >> i & 1) request[1 + IndexOf(change.node)] |= kMergeLeft;
-      if (change.target != role->label) continue;
+      const int insertion = InsertionOf(rule_, change.target);
+      if (HostOf(rule_, change.target) != role->label) continue;
+      if (insertion >= 0) {
+        const auto at = static_cast<std::size_t>(insertion);
+        AskOf(i, *role, {space_.Inserted(rule_.changes[at], annotated), &request[1 + BlockOf(at) * nodes_.size()]});
+        continue;
+      }
+      AskOf(i, *role, {annotated, &request[1]});
       switch (change.op) {
-        case Change::Op::kSpread:
-          break;  // above: it depends on the source
-        case Change::Op::kDelink:
-          request[1 + IndexOf(change.node)] |= CutOf(change, *role, annotated);
-          break;
-        case Change::Op::kSet:
-        case Change::Op::kFill:
-          AskSettings(change, *role, annotated, &request);
-          break;
-        case Change::Op::kSetAs:
-        case Change::Op::kFillAs:
-          AskCopy(change.node, change.op == Change::Op::kFillAs,
-                  pattern_.ContentOf(role->values[pattern_.VariableOf(i)]), annotated, &request);
-          break;
         case Change::Op::kSetLiteral:
-          AskContent(kRootNode, {change.inserted}, annotated, &request);
           if (change.is_long &&
               ContentUnder(space_.classes()[annotated[0]].visible.part, kRootNode) == Content{change.inserted} &&
               !(space_.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) {
@@ -112,19 +124,60 @@ Key RequestSpace::Of(const std::vector<const Role*>& roles, const Key& annotated
         case Change::Op::kShorten:
           if (space_.Marks(annotated, kRootNode) & (kFromLeft | kToRight)) request[0] |= kShorten;
           break;
-        case Change::Op::kMerge:
-          break;  // below: it depends on both items
         case Change::Op::kInsert:
           request[0] |= 1 << (kInsertShift + i);
           break;
         case Change::Op::kDelete:
           request[0] |= kDeleteSlot;
           break;
+        case Change::Op::kSpread:
+        case Change::Op::kDelink:
+        case Change::Op::kSet:
+        case Change::Op::kFill:
+        case Change::Op::kSetAs:
+        case Change::Op::kFillAs:
+        case Change::Op::kMerge:
+          break;  // of nodes
       }
     }
   }
   if (rule_.preserving && ReachesFurther(request, annotated)) request[0] |= kUnsure;
   return request;
+}
+
+// What a change asks of the nodes of its item.
+void RequestSpace::AskOf(std::size_t i, const Role& role, const Item& item) const {
+  const Change& change = rule_.changes[i];
+  switch (change.op) {
+    case Change::Op::kSpread:
+      for (std::size_t j = 0; j < spreads_.size(); ++j) {
+        std::int32_t held = 0;
+        if (spreads_[j].change == static_cast<int>(i))
+          item.asks[IndexOf(change.node)] |= AskSpread(role, j, item.letter, &held);
+      }
+      break;
+    case Change::Op::kDelink:
+      item.asks[IndexOf(change.node)] |= CutOf(change, role, item.letter);
+      break;
+    case Change::Op::kSet:
+    case Change::Op::kFill:
+      AskSettings(change, role, item);
+      break;
+    case Change::Op::kSetAs:
+    case Change::Op::kFillAs:
+      AskCopy(change.node, change.op == Change::Op::kFillAs, pattern_.ContentOf(role.values[pattern_.VariableOf(i)]),
+              item);
+      break;
+    case Change::Op::kSetLiteral:
+      AskContent(kRootNode, {change.inserted}, item);
+      break;
+    case Change::Op::kMerge:  // it depends on both items
+    case Change::Op::kLengthen:
+    case Change::Op::kShorten:
+    case Change::Op::kInsert:
+    case Change::Op::kDelete:
+      break;
+  }
 }
 
 bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) const {
@@ -139,10 +192,16 @@ bool RequestSpace::InConflict(const Role& a, const Role& b, const Key& annotated
          !Clashes(Of({&b}, annotated), annotated);
 }
 
-// Two contents, more lines than there is room for, or a line and a content of one node.
 bool RequestSpace::Clashes(const Key& request, const Key& annotated) const {
+  return Clash(annotated, &request[1]) || std::any_of(grown_.begin(), grown_.end(), [&](std::size_t i) {
+           return Clash(space_.Inserted(rule_.changes[i], annotated), &request[1 + BlockOf(i) * nodes_.size()]);
+         });
+}
+
+// Two contents, more lines than there is room for, or a line and a content of one node.
+bool RequestSpace::Clash(const Key& annotated, const std::int32_t* asks) const {
   for (std::size_t i = 0; i < nodes_.size(); ++i) {
-    const std::int32_t ask = request[1 + i];
+    const std::int32_t ask = asks[i];
     if (ask & kClash) return true;
     const int count = space_.Of(annotated[0], nodes_[i]).count;
     const int cut = (ask & kCutFirst ? 1 : 0) + (ask & kCutLast ? 1 : 0) + (ask & kCutMiddle ? count - 2 : 0);
@@ -174,7 +233,8 @@ std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const K
   const int count = space_.Of(annotated[0], change.node).count;
   std::int32_t held = 0;
   for (std::size_t j = 0; j < role.asks.size(); ++j) {
-    if (spreads_[j].target == role.label && spreads_[j].node == change.node) AskSpread(role, j, annotated, &held);
+    const bool same = spreads_[j].target == role.label && spreads_[j].insertion < 0 && spreads_[j].node == change.node;
+    if (same) AskSpread(role, j, annotated, &held);
   }
   std::int32_t all = 0;
   const std::vector<Value> values = ValuesOf(space_.classes()[annotated[0]].visible.part, change.node);
@@ -199,37 +259,37 @@ std::int32_t RequestSpace::CutOf(const Change& change, const Role& role, const K
   return all & ~held;
 }
 
-void RequestSpace::AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const {
+void RequestSpace::AskSettings(const Change& change, const Role& role, const Item& item) const {
   for (const Setting& setting : change.settings) {
     const bool is_class = space_.tree()[setting.node].type == TreeNode::Type::kClass;
     if (setting.variable >= 0 && is_class) {
       const int value = role.values[static_cast<std::size_t>(setting.variable)];
-      AskCopy(setting.node, change.op == Change::Op::kFill, pattern_.ContentOf(value), annotated, request);
+      AskCopy(setting.node, change.op == Change::Op::kFill, pattern_.ContentOf(value), item);
       continue;
     }
     const std::vector<Value> values =
         setting.variable < 0
             ? setting.values
             : BorrowedValues(space_.tree(), setting, role.values[static_cast<std::size_t>(setting.variable)] - 1);
-    const int count = space_.Of(annotated[0], setting.node).count;
+    const int count = space_.Of(item.letter[0], setting.node).count;
     if (change.op == Change::Op::kFill && count > 0) continue;
     if (count > 0 && !values.empty() && is_class) continue;
     Content content;
     for (Value value : values) content.push_back({setting.node, value, {}});
-    AskContent(setting.node, content, annotated, request);
+    AskContent(setting.node, content, item);
   }
 }
 
 // The content that another item bears, or a variable stands for.
-void RequestSpace::AskCopy(NodeId node, bool fill, const Content& content, const Key& annotated, Key* request) const {
-  if (fill && (content.empty() || space_.Of(annotated[0], node).count > 0)) return;
-  AskContent(node, content, annotated, request);
+void RequestSpace::AskCopy(NodeId node, bool fill, const Content& content, const Item& item) const {
+  if (fill && (content.empty() || space_.Of(item.letter[0], node).count > 0)) return;
+  AskContent(node, content, item);
 }
 
 // Asks for nothing if just this is there.
-void RequestSpace::AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const {
-  if (ContentUnder(space_.classes()[annotated[0]].visible.part, node) == content) return;
-  std::int32_t& at = (*request)[1 + IndexOf(node)];
+void RequestSpace::AskContent(NodeId node, const Content& content, const Item& item) const {
+  if (ContentUnder(space_.classes()[item.letter[0]].visible.part, node) == content) return;
+  std::int32_t& at = item.asks[IndexOf(node)];
   at = Combine(at, AskFor(content));
 }
 

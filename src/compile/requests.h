@@ -2,7 +2,8 @@
 //
 // A *request* concerns one node N and the mother that bears it (or would): draw a line to the nearest N on the left, cut
 // the mother's own, put these values there. Requests on the slot itself are insertions and deletion.
-// Layout of a request key: [slot bits, request of node 0, request of node 1, ...] over RequestSpace::nodes.
+// Layout of a request key: [slot bits, request of node 0, request of node 1, ...] over RequestSpace::nodes; then the same
+// nodes once more for each insertion that other changes go on with: what is asked of the item inserted beside this slot.
 // The rulings on what combines, and what is ambiguous, are in grammar/notation.md ("Rulings").
 #pragma once
 
@@ -40,7 +41,18 @@ class RequestSpace {
 
   const std::vector<NodeId>& nodes() const { return nodes_; }
   const std::vector<Content>& contents() const { return contents_; }
-  std::size_t size() const { return 1 + nodes_.size(); }
+  std::size_t size() const { return 1 + blocks() * nodes_.size(); }
+  // Requests by node of the slot itself (block 0) and of what is inserted beside it.
+  std::size_t blocks() const { return 1 + grown_.size(); }
+  // Of an insertion, the block of what it brings, or 0: nothing goes on with that.
+  std::size_t BlockOf(std::size_t change) const;
+  // Is a line of this kind asked for an item inserted before, or after, the slot?
+  bool AsksBeside(const std::int32_t* request, bool before, std::size_t node_index, std::int32_t line) const;
+  // Contents that lines lead to the slot or to what is inserted beside it: by block, by node.
+  std::size_t contents_size() const { return blocks() * nodes_.size(); }
+  // Puts a content there for every such item.
+  void GiveBeside(const std::int32_t* request, bool before, std::size_t node_index, std::int32_t line,
+                  std::int32_t content, Key* contents) const;
   Key None() const { return Key(size(), 0); }
   int IndexOf(NodeId node) const;
   bool SpreadsFrom(bool left, std::size_t node_index) const;
@@ -49,7 +61,7 @@ class RequestSpace {
   Key Of(const std::vector<const Role*>& roles, const Key& annotated) const;
   // The request for this content.
   std::int32_t AskFor(const Content& content) const { return (1 + ContentIndex(content)) << kValuesShift; }
-  // Is something asked of a mother that another root holds as well?
+  // Is something asked of a mother of the slot that another root holds as well?
   bool ReachesFurther(const Key& request, const Key& annotated) const;
   // Would what two matches ask of one letter not go together, though each alone does?
   bool InConflict(const Role& a, const Role& b, const Key& annotated) const;
@@ -59,12 +71,19 @@ class RequestSpace {
   const RuleSpace& space() const { return space_; }
 
  private:
+  // The slot or what is inserted beside it, with the requests of its nodes.
+  struct Item {
+    Key letter;
+    std::int32_t* asks;
+  };
+  void AskOf(std::size_t change, const Role& role, const Item& item) const;
   bool Clashes(const Key& request, const Key& annotated) const;
+  bool Clash(const Key& annotated, const std::int32_t* asks) const;
   std::int32_t AskSpread(const Role& role, std::size_t spread, const Key& annotated, std::int32_t* held) const;
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
-  void AskSettings(const Change& change, const Role& role, const Key& annotated, Key* request) const;
-  void AskCopy(NodeId node, bool fill, const Content& content, const Key& annotated, Key* request) const;
-  void AskContent(NodeId node, const Content& content, const Key& annotated, Key* request) const;
+  void AskSettings(const Change& change, const Role& role, const Item& item) const;
+  void AskCopy(NodeId node, bool fill, const Content& content, const Item& item) const;
+  void AskContent(NodeId node, const Content& content, const Item& item) const;
   int ContentIndex(const Content& content) const;
 
   const Rule& rule_;
@@ -72,6 +91,7 @@ class RequestSpace {
   const PatternCompiler& pattern_;
   const std::vector<Spread>& spreads_;
   std::vector<NodeId> nodes_;
+  std::vector<std::size_t> grown_;         // the insertions that other changes go on with
   mutable std::vector<Content> contents_;  // grows as roles ask for more
 };
 

@@ -39,7 +39,7 @@ class ApplyPass {
     for (const Change& change : rule.changes) {
       Letter inserted;
       if (change.op == Change::Op::kInsert) inserted.part.daughters.push_back(PartOf(change.inserted));
-      inserted_.push_back(space_.classes().Classify(inserted));
+      rest_inserted_.push_back(space_.classes().Classify(inserted).rest);
     }
     draw_at_ = size_;
     erase_at_ = draw_at_ + Repair::kEntries * space_.live().size();
@@ -67,14 +67,16 @@ class ApplyPass {
     Key request(symbol.begin() + static_cast<std::ptrdiff_t>(request_at),
                 symbol.begin() + static_cast<std::ptrdiff_t>(request_at + requests_.size()));
     const std::int32_t* left = &symbol[request_at + requests_.size()];
-    const std::int32_t* right = left + requests_.nodes().size();
-    Key contents(requests_.nodes().size(), -1);
+    const std::int32_t* right = left + requests_.contents_size();
+    Key contents(requests_.contents_size(), -1);
     if (at_once_) {
       for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
         carrier_.Step(letter, i, &step.state[offsets_[i]], &request[1 + i]);
         if (!requests_.SpreadsFrom(false, i)) continue;
-        contents[i] = builder_.CarryContent(letter, requests_.nodes()[i], /*rightward=*/false, right[i] != 0,
-                                            &step.state[offsets_[i] + carrier_.StateSize(i)]);
+        std::int32_t* carried = &step.state[offsets_[i] + carrier_.StateSize(i)];
+        requests_.GiveBeside(&request[0], /*before=*/false, i, kLineRight, carried[0] - 1, &contents);
+        contents[i] = builder_.CarryContent(letter, requests_.nodes()[i], /*rightward=*/false, right[i] != 0, carried);
+        requests_.GiveBeside(&request[0], /*before=*/true, i, kLineRight, carried[0] - 1, &contents);
       }
       right = contents.data();
     }
@@ -84,14 +86,14 @@ class ApplyPass {
     lines.right = right;
     lines.left_origin = rule_.mode == Rule::Mode::kRightward ? Origin::kNewLeft : Origin::kOldLeft;
     lines.right_origin = rule_.mode == Rule::Mode::kLeftward ? Origin::kNewRight : Origin::kOldRight;
-    BuiltLetter built = builder_.Build(letter, request, lines);
+    BuiltLetter built = builder_.Build(letter, &request[1], lines);
     bool ambiguous = built.clash;
     if (step.state[joined_at_] != 0) Join(&built.slot);
 
     std::vector<std::pair<int, int>> output;  // from right to left
-    Insert(request, /*before=*/false, &step.state, &output, &ambiguous);
+    Insert(letter, request, lines, /*before=*/false, &step.state, &output, &ambiguous);
     Slot(letter, request, &built, &step.state, &output, &ambiguous);
-    Insert(request, /*before=*/true, &step.state, &output, &ambiguous);
+    Insert(letter, request, lines, /*before=*/true, &step.state, &output, &ambiguous);
 
     const bool changed = std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end() ||
                          (request[0] & (kDeleteSlot | kLengthen)) || (request[0] >> kInsertShift) != 0;
@@ -121,19 +123,30 @@ class ApplyPass {
     }
   }
 
-  void Insert(const Key& request, bool before, Key* state, std::vector<std::pair<int, int>>* output,
-              bool* ambiguous) const {
+  // What is inserted on one side of the slot, with what other changes do to it.
+  void Insert(const Key& host, const Key& request, const LetterBuilder::Lines& lines, bool before, Key* state,
+              std::vector<std::pair<int, int>>* output, bool* ambiguous) const {
     for (std::size_t i = rule_.changes.size(); i-- > 0;) {
       if (rule_.changes[i].op != Change::Op::kInsert || rule_.changes[i].before != before) continue;
       if (!(request[0] >> (kInsertShift + i) & 1)) continue;
-      Key plain = no_letter_;
-      plain[0] = inserted_[i].class_id;
-      WorkPart slot = builder_.Before(plain);
-      Freshen(&slot);
-      slot.origin = Origin::kOwn;
-      if (!draw_.Letter(no_letter_, &slot, &(*state)[draw_at_])) *ambiguous = true;
-      output->emplace_back(AfterDeletions(slot, plain[0], state), inserted_[i].rest);
-      if (rule_.changes[i].is_long) output->emplace_back(SlotBefore(slot, plain[0], state), inserted_[i].rest);
+      const Key plain = space_.Inserted(rule_.changes[i], host);
+      const std::size_t at = requests_.BlockOf(i) * requests_.nodes().size();
+      BuiltLetter built;
+      if (at == 0) {
+        built.slot = builder_.Before(plain);
+      } else {
+        LetterBuilder::Lines own = lines;
+        own.left += at;
+        own.right += at;
+        built = builder_.Build(plain, &request[1 + at], own);
+      }
+      Freshen(&built.slot);
+      built.slot.origin = Origin::kOwn;
+      Key place = plain;  // nothing stood there
+      place[0] = no_letter_[0];
+      if (!draw_.Letter(place, &built.slot, &(*state)[draw_at_]) || built.clash) *ambiguous = true;
+      output->emplace_back(AfterDeletions(built.slot, plain[0], state), rest_inserted_[i]);
+      if (rule_.changes[i].is_long) output->emplace_back(SlotBefore(built.slot, plain[0], state), rest_inserted_[i]);
     }
   }
 
@@ -220,7 +233,7 @@ class ApplyPass {
   std::vector<std::size_t> offsets_;
   std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0, joined_at_ = 0;
   Key no_letter_;
-  std::vector<LetterClasses::Parts> inserted_;
+  std::vector<int> rest_inserted_;  // by change
 };
 
 // The tape of all strings over some classes in which a root that goes on does go on: after a slot whose root is linked, the

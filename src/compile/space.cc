@@ -147,6 +147,19 @@ bool RuleSpace::Matches(const Key& annotated, const SlotTest& test) const {
   return false;
 }
 
+Key RuleSpace::Inserted(const Change& insertion, const Key& host) const {
+  Letter letter;
+  letter.part.daughters.push_back(PartOf(insertion.inserted));
+  Key annotated(AnnotatedSize(), 0);
+  annotated[0] = classes_.Classify(letter).class_id;
+  SetAround(&annotated, Around(host));
+  for (std::size_t i = 0; i < live_.size(); ++i) {
+    const bool bears = Of(annotated[0], live_[i]).count > 0;
+    if (!bears && PassesOver(host, live_[i], insertion.before)) annotated[1 + i] = kOver;
+  }
+  return annotated;
+}
+
 // Tests of sharing and length, read off the marks.
 bool RuleSpace::Passes(const Key& annotated, const FeatureTest& test) const {
   const std::int32_t marks = Marks(annotated, test.node) & (kFromLeft | kToRight);

@@ -61,6 +61,13 @@ class RuleSpace {
   bool MotherElsewhere(const Key& annotated, NodeId node) const;
   // How many of `node` a mother in this letter may hold.
   int Room(int class_id, NodeId node) const;
+  // Does a span of the node pass over the place before, or after, a slot?
+  bool PassesOver(const Key& annotated, NodeId node, bool before) const {
+    const std::int32_t lines = Marks(annotated, node);
+    return (lines & (Of(annotated[0], node).count == 0 ? kOver : before ? kFromLeft : kToRight)) != 0;
+  }
+  // What an insertion brings, as it would stand beside this slot.
+  Key Inserted(const Change& insertion, const Key& host) const;
   std::size_t AnnotatedSize() const { return 2 + live_.size(); }
   std::int32_t Around(const Key& annotated) const { return annotated[1 + live_.size()]; }
   void SetAround(Key* annotated, std::int32_t around) const { (*annotated)[1 + live_.size()] = around; }

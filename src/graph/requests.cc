@@ -620,17 +620,21 @@ void Requests::SetContents(Graph& graph, bool alone) const {
 
 // Neighbouring slots of one root that are given the same content share the new root.
 void Requests::SetRoots(Graph& graph, Longers* longer) const {
-  const auto asked_of = [&](int slot) -> const Content* {
+  const auto asked_of = [&](InstanceId slot) -> const Content* {
     for (const Content& content : contents_) {
-      if (content.mother == view_.slot(slot) && content.node == kRootNode && !content.trees.empty()) return &content;
+      if (content.mother == slot && content.node == kRootNode && !content.trees.empty()) return &content;
     }
     return nullptr;
   };
   if (std::none_of(contents_.begin(), contents_.end(), [](const Content& c) { return c.node == kRootNode; })) return;
   const Content* before = nullptr;
   InstanceId root_before = kNone, fresh = kNone;
-  for (int slot = 0; slot < view_.size(); ++slot) {
+  for (InstanceId slot : InsertedSlots()) {
     const Content* asked = asked_of(slot);
+    if (asked != nullptr) graph.SetList(slot, kRootNode, {graph.AddContent(asked->trees.front())});
+  }
+  for (int slot = 0; slot < view_.size(); ++slot) {
+    const Content* asked = asked_of(view_.slot(slot));
     const InstanceId root = view_.root(slot);
     if (asked == nullptr && root == kNone) continue;  // lines of a root pass over slots without one
     const bool of_one_root = root != kNone && root == root_before;

@@ -30,7 +30,10 @@ class Lister {
   void VisitClause(const Rule& rule, const Clause& clause) {
     VisitBoundaries(clause.where);
     for (const Pattern& unless : clause.unless) VisitUnless(unless);
-    for (const Change& change : clause.changes) VisitChange(rule, change);
+    for (const Change& change : clause.changes) {
+      VisitChange(rule, change);
+      VisitInserted(clause, change);
+    }
   }
 
  private:
@@ -89,13 +92,59 @@ class Lister {
           Add(change.span, "`lengthen` or `shorten` in a rule that iterates is", "apply the rule at once");
         break;
     }
-    if (change.inserted_label >= 0) {
-      Add(change.span, "an inserted item that other changes go on with is", "insert it with that content");
+    if (rule.mode != Rule::Mode::kAtOnce && change.inserted_label >= 0) {
+      Add(change.span, "an inserted item that other changes of a rule that iterates go on with is",
+          "apply the rule at once, or insert it with that content");
     }
     const bool cuts = change.op == Change::Op::kDelink && change.member.which == Member::Which::kValue;
     if (cuts && tree_[change.node].max > 3) Add(change.span, "one member of a contour of more than three parts is");
     VisitNode(change.node, change.span);
     for (const Setting& setting : change.settings) VisitNode(setting.node, change.span);
+  }
+
+  // Lines and contents of one match are judged against each other only where all its items stood there before.
+  void VisitInserted(const Clause& clause, const Change& change) {
+    if (change.target < 0 || clause.KindOf(change.target) != Clause::LabelKind::kInserted) return;
+    for (const Change& other : clause.changes) {
+      if (other.target == change.target) continue;
+      for (NodeId node : NodesGiven(change)) {
+        for (NodeId given : NodesGiven(other)) {
+          if (node != given && !tree_.Dominates(node, given) && !tree_.Dominates(given, node)) continue;
+          Add(change.span,
+              "giving '" + tree_[node].name + "' to what the rule inserts and '" + tree_[given].name +
+                  "' to another item is",
+              "do one of the two in a rule of its own");
+          return;
+        }
+      }
+    }
+  }
+
+  // The nodes that the item gets, if it has not got them already.
+  static std::vector<NodeId> NodesGiven(const Change& change) {
+    std::vector<NodeId> nodes;
+    switch (change.op) {
+      case Change::Op::kSpread:
+      case Change::Op::kSetAs:
+      case Change::Op::kFillAs:
+      case Change::Op::kSetLiteral:
+      case Change::Op::kMerge:
+        nodes.push_back(change.node);
+        break;
+      case Change::Op::kSet:
+      case Change::Op::kFill:
+        for (const Setting& setting : change.settings) {
+          if (!setting.values.empty() || setting.variable >= 0) nodes.push_back(setting.node);
+        }
+        break;
+      case Change::Op::kDelink:
+      case Change::Op::kInsert:
+      case Change::Op::kDelete:
+      case Change::Op::kLengthen:
+      case Change::Op::kShorten:
+        break;
+    }
+    return nodes;
   }
 
   // What hangs from the slot, and what one mother may hold several subtrees of.

@@ -110,7 +110,8 @@ enum class Construct {
   kMember,
   kTwoContents,
   kComplete,
-  kGivenNode
+  kGivenNode,
+  kInsertedGrown
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

@@ -2,6 +2,7 @@
 // further clauses, optional rules, the further changes.
 #include <algorithm>
 
+#include "compile/flatten.h"
 #include "model/content.h"
 #include "model/not_run_yet.h"
 #include "support/generate.h"
@@ -87,6 +88,8 @@ class Decorator {
         return Member();
       case Construct::kTwoContents:
         return TwoContents();
+      case Construct::kInsertedGrown:
+        return InsertedGrown();
       case Construct::kComplete:
         *rule_ = Rule();
         rule_->kind = Rule::Kind::kComplete;
@@ -326,6 +329,123 @@ class Decorator {
     return true;
   }
 
+  // What is inserted gets one or two things more: a line, a content, a copy.
+  bool InsertedGrown() {
+    std::vector<int> slots;
+    for (PatternItem* slot : Slots()) {
+      if (slot->label >= 0) slots.push_back(slot->label);
+    }
+    if (slots.empty()) return false;
+    const auto any_slot = [&] { return slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))]; };
+    rule_->mode = Rule::Mode::kAtOnce;
+    rule_->label_kinds.resize(rule_->labels.size(), Clause::LabelKind::kSlot);
+    rule_->changes.clear();
+    const int items = Chance(rng_, 0.2) ? 2 : 1;
+    for (int i = 0; i < items; ++i) {
+      Change insert;
+      insert.op = Op::kInsert;
+      insert.target = any_slot();
+      insert.before = Chance(rng_, 0.5);
+      insert.is_long = Chance(rng_, 0.15);
+      insert.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
+      while (Chance(rng_, 0.6)) Remove(&insert.inserted, Node());
+      Prune(tree_, &insert.inserted);
+      insert.inserted_label = static_cast<int>(rule_->labels.size());
+      rule_->labels.push_back("E" + std::to_string(i + 1));
+      rule_->label_kinds.push_back(Clause::LabelKind::kInserted);
+      rule_->changes.push_back(insert);
+      const int changes = Chance(rng_, 0.3) ? 2 : 1;
+      for (int k = 0; k < changes; ++k) rule_->changes.push_back(ChangeOf(insert.inserted_label, any_slot()));
+    }
+    if (Chance(rng_, 0.15)) {
+      Change other;
+      other.op = Random({Op::kDelete, Op::kDelink, Op::kSpread});
+      other.target = any_slot();
+      other.node = Node();
+      other.source = other.op == Op::kSpread ? any_slot() : -1;
+      if (other.op == Op::kDelete) other.node = 0;
+      rule_->changes.push_back(other);
+    }
+    if (Chance(rng_, 0.4)) With();
+    return StandBesideEachOther() && NotRunYet(*rule_, {}, tree_).empty();
+  }
+
+  // What may be said of the rule as a whole; the content of a variable.
+  void With() {
+    const bool one_host = std::all_of(rule_->changes.begin(), rule_->changes.end(), [&](const Change& change) {
+      return HostOf(*rule_, change.target) == rule_->changes.front().target;
+    });
+    switch (Below(rng_, 5)) {
+      case 0:
+        if (one_host) rule_->probability = Random({0.3, 0.5});
+        break;
+      case 1:
+        rule_->preserving = true;
+        break;
+      case 2:
+        rule_->prefer = Random({Rule::Prefer::kLeft, Rule::Prefer::kRight});
+        break;
+      case 3:
+        rule_->sharing_blocked = true;
+        break;
+      case 4:
+        Borrow();
+        break;
+    }
+  }
+
+  void Borrow() {
+    std::vector<PatternItem*> slots = Slots();
+    for (Change& change : rule_->changes) {
+      if (change.settings.empty() || change.settings[0].values.empty()) continue;
+      const NodeId node = Chance(rng_, 0.3) ? ClassNode() : change.settings[0].node;
+      Require(slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))], Agrees(node));
+      rule_->variables = 1;
+      const bool binary = tree_[node].type == TreeNode::Type::kBinary;
+      change.settings = {{node, {}, 0, binary && Chance(rng_, 0.3)}};
+      return;
+    }
+  }
+
+  // What the checker lets through: no node changed together with one under it, nor given twice to one item.
+  bool StandBesideEachOther() const {
+    const auto nodes = [](const Change& change) {
+      std::vector<NodeId> all;
+      for (const Setting& setting : change.settings) all.push_back(setting.node);
+      if (change.op != Op::kInsert && change.op != Op::kDelete && all.empty()) all.push_back(change.node);
+      return all;
+    };
+    for (const Change& a : rule_->changes) {
+      for (const Change& b : rule_->changes) {
+        if (&a == &b) continue;
+        for (NodeId above : nodes(a)) {
+          for (NodeId node : nodes(b)) {
+            const bool twice = above == node && a.target == b.target && (a.op != Op::kSpread || b.op != Op::kSpread);
+            if (twice || (above != node && tree_.Dominates(above, node))) return false;
+          }
+        }
+      }
+    }
+    return true;
+  }
+
+  Change ChangeOf(int label, int source) {
+    Change change;
+    change.op = Random({Op::kSpread, Op::kSpread, Op::kSpread, Op::kSet, Op::kFill, Op::kSetAs, Op::kFillAs});
+    change.target = label;
+    if (change.op == Op::kSet || change.op == Op::kFill) {
+      NodeId node = Node();
+      while (tree_[node].type == TreeNode::Type::kClass) node = Node();
+      const bool bare = tree_[node].type == TreeNode::Type::kBare;
+      change.settings = {{node, {static_cast<Value>(bare ? 0 : Below(rng_, 2))}, -1, false}};
+      if (change.op == Op::kSet && Chance(rng_, 0.2)) change.settings[0].values.clear();
+      return change;
+    }
+    change.source = source;
+    change.node = change.op != Op::kSpread && Chance(rng_, 0.15) ? kRootNode : Node();
+    return change;
+  }
+
   bool NewRoot() {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
@@ -405,25 +525,41 @@ const std::vector<Construct>& AllConstructs() {
       Construct::kOptional,       Construct::kByWord,       Construct::kPrefer,   Construct::kPreserving,
       Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,     Construct::kLengthen,
       Construct::kShorten,        Construct::kMerge,        Construct::kBoundary, Construct::kLongInsertion,
-      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete, Construct::kGivenNode};
+      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete, Construct::kGivenNode,
+      Construct::kInsertedGrown};
   return all;
 }
 
 const char* NameOf(Construct construct) {
-  static const char* const names[] = {"agreement (αf)",   "agreement (αNode)",
-                                      "shared, unshared", "long, short, half",
-                                      "facing parts",     "if = ≠",
-                                      "if is, is not",    "&",
-                                      "within",           "within stem",
-                                      "only, except",     "otherwise",
-                                      "optional",         "optional by word",
-                                      "prefer",           "preserving",
-                                      "sharing blocked",  "set /k/",
-                                      "set, fill .. as",  "lengthen",
-                                      "shorten",          "merge",
-                                      "delete boundary",  "insert long",
-                                      "delink a member",  "two contents",
-                                      "complete",         "set, fill [αNode]"};
+  static const char* const names[] = {"agreement (αf)",
+                                      "agreement (αNode)",
+                                      "shared, unshared",
+                                      "long, short, half",
+                                      "facing parts",
+                                      "if = ≠",
+                                      "if is, is not",
+                                      "&",
+                                      "within",
+                                      "within stem",
+                                      "only, except",
+                                      "otherwise",
+                                      "optional",
+                                      "optional by word",
+                                      "prefer",
+                                      "preserving",
+                                      "sharing blocked",
+                                      "set /k/",
+                                      "set, fill .. as",
+                                      "lengthen",
+                                      "shorten",
+                                      "merge",
+                                      "delete boundary",
+                                      "insert long",
+                                      "delink a member",
+                                      "two contents",
+                                      "complete",
+                                      "set, fill [αNode]",
+                                      "changes of the inserted"};
   return names[static_cast<int>(construct)];
 }
 

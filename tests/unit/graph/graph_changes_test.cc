@@ -263,6 +263,9 @@ TEST_CASE("graph: inserted items in other changes", "[unit]") {
           {echo, "a s t", "a s t", "", "crossing"},
           {RuleBuilder(g, two).Insert("E", true, "B", "N").Set("N", "+nasal"), "t p", "t E{+nasal} p"},
           {RuleBuilder(g, two).Insert("E", true, "B", "N").SetAs("N.Place", "B.Place"), "t p", "t E{Labial} p"},
+          {RuleBuilder(g, two).Insert("E", true, "B", "N").SetAs("N.root", "A.root"), "t p", "t t p"},
+          {RuleBuilder(g, two).Insert("iː", true, "B", "N").SetAs("N.root", "A.root"), "t p",
+           "t t{root:1} t{root:1} p"},
           // From the inserted to another; two inserted on one side, in their order.
           {RuleBuilder(g, two).Insert("d", true, "B", "N").Delink("B.voice").Spread("N.voice", "B"), "t p",
            "t d{voice:1} b{voice:1}"},
