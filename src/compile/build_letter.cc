@@ -166,6 +166,22 @@ BuiltLetter LetterBuilder::Build(const Key& annotated, const std::int32_t* asks,
   return built;
 }
 
+BuiltLetter LetterBuilder::BuildInserted(std::size_t change, const Key& plain, const Key& request, Lines lines) const {
+  const std::size_t block = requests_.BlockOf(change);
+  BuiltLetter built;
+  if (block == 0) {
+    built.slot = Before(plain);
+  } else {
+    const std::size_t at = block * requests_.nodes().size();
+    if (lines.left != nullptr) lines.left += at;
+    if (lines.right != nullptr) lines.right += at;
+    built = Build(plain, &request[1 + at], lines);
+  }
+  Freshen(&built.slot);
+  built.slot.origin = Origin::kOwn;
+  return built;
+}
+
 // Gives `mother` its new list of `node`: left line, own, right line; or fresh values.
 void LetterBuilder::Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated,
                            const Lines& lines, BuiltLetter* built) const {

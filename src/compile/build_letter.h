@@ -78,6 +78,8 @@ class LetterBuilder {
   };
   // `asks`: by request node.
   BuiltLetter Build(const Key& annotated, const std::int32_t* asks, const Lines& lines) const;
+  // What a change inserts, with what others ask of it; `lines` are those of all blocks of the request.
+  BuiltLetter BuildInserted(std::size_t change, const Key& plain, const Key& request, Lines lines) const;
 
   // A letter of a work tree with the given links dropped, as a class that keeps the rest key of `like`.
   int ClassOf(const WorkPart& slot, int like) const;

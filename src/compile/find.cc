@@ -91,25 +91,23 @@ bool Preserves(const Role& role, const Key& annotated, const RequestSpace& reque
   }
   if (!space.IsSlot(annotated[0])) return true;
   const Key request = requests.Of({&role}, annotated);
-  const auto root_after = [&](const Key& letter, std::size_t block) {
-    const std::size_t at = block * requests.nodes().size();
-    LetterBuilder::Lines lines;
-    lines.left = &left[at];
-    lines.right = &right[at];
+  const LetterBuilder builder(requests, pool);
+  LetterBuilder::Lines lines;
+  lines.left = left.data();
+  lines.right = right.data();
+  const auto root_of = [](const BuiltLetter& built) {
     Letter after;
-    const BuiltLetter built = LetterBuilder(requests, pool).Build(letter, &request[1 + at], lines);
     after.part = LetterBuilder::Plain(built.slot, /*links=*/false);
     return RootContent(after);
   };
   for (std::size_t i = 0; i < changes.size(); ++i) {
     if (changes[i].op != Change::Op::kInsert || changes[i].target != role.label) continue;
-    const std::size_t block = requests.BlockOf(i);
     const std::optional<FeatureTree> root =
-        block == 0 ? changes[i].inserted : root_after(space.Inserted(changes[i], annotated), block);
+        root_of(builder.BuildInserted(i, space.Inserted(changes[i], annotated), request, lines));
     if (root.has_value() && !spelled(*root)) return false;
   }
   if ((request[0] & kDeleteSlot) && !(space.Marks(annotated, kRootNode) & (kFromLeft | kToRight))) return true;
-  const std::optional<FeatureTree> root = root_after(annotated, 0);
+  const std::optional<FeatureTree> root = root_of(builder.Build(annotated, &request[1], lines));
   return !root.has_value() || root == RootContent(space.classes()[annotated[0]].visible) || spelled(*root);
 }
 
@@ -721,6 +719,8 @@ class Sweep {
       if (!(request[1 + i] & near_ask)) near[i] = -1;
       if (!(request[1 + i] & far_ask)) far[i] = -1;
     }
+    near.resize(requests_.contents_size(), -1);
+    far.resize(requests_.contents_size(), -1);
     Key symbol = letter;
     Append(&symbol, request);
     Append(&symbol, direction_.rightward ? near : far);
@@ -804,7 +804,7 @@ class Sweep {
         const std::size_t i = direction_.rightward ? k : changes.size() - 1 - k;
         if (changes[i].op != Change::Op::kInsert || changes[i].before != before) continue;
         if (!(request[0] >> (kInsertShift + i) & 1)) continue;
-        LeaveInserted(state, now, changes[i]);
+        LeaveInserted(state, now, request, i);
       }
     };
     insertions(direction_.rightward);
@@ -832,11 +832,12 @@ class Sweep {
            space_.Of(now[0], space_.live()[live]).count == 1;
   }
 
-  void LeaveInserted(SweepState* state, const Key& host, const Change& change) {
-    Letter letter;
-    letter.part.daughters.push_back(PartOf(change.inserted));
+  void LeaveInserted(SweepState* state, const Key& host, const Key& request, std::size_t change) {
+    const Change& insertion = requests_.rule().changes[change];
+    const Key plain = space_.Inserted(insertion, host);
+    const BuiltLetter built = builder_.BuildInserted(change, plain, request, {});  // no line leads to it in a sweep
     Key annotated(space_.AnnotatedSize(), 0);
-    annotated[0] = space_.classes().Classify(letter).class_id;
+    annotated[0] = builder_.ClassOf(built.slot, plain[0]);
     space_.SetAround(&annotated, space_.Around(host));
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       if (space_.Of(annotated[0], space_.live()[i]).count > 0) {
@@ -850,7 +851,7 @@ class Sweep {
         state->contents[i] = builder_.ContentOf(annotated, requests_.nodes()[i], direction_.rightward) + 1;
       }
     }
-    if (!change.is_long) {
+    if (!insertion.is_long) {
       state->near = StepOn(state->near, Known(annotated));
       return;
     }

@@ -130,18 +130,7 @@ class ApplyPass {
       if (rule_.changes[i].op != Change::Op::kInsert || rule_.changes[i].before != before) continue;
       if (!(request[0] >> (kInsertShift + i) & 1)) continue;
       const Key plain = space_.Inserted(rule_.changes[i], host);
-      const std::size_t at = requests_.BlockOf(i) * requests_.nodes().size();
-      BuiltLetter built;
-      if (at == 0) {
-        built.slot = builder_.Before(plain);
-      } else {
-        LetterBuilder::Lines own = lines;
-        own.left += at;
-        own.right += at;
-        built = builder_.Build(plain, &request[1 + at], own);
-      }
-      Freshen(&built.slot);
-      built.slot.origin = Origin::kOwn;
+      BuiltLetter built = builder_.BuildInserted(i, plain, request, lines);
       Key place = plain;  // nothing stood there
       place[0] = no_letter_[0];
       if (!draw_.Letter(place, &built.slot, &(*state)[draw_at_]) || built.clash) *ambiguous = true;

@@ -32,7 +32,7 @@ class Lister {
     for (const Pattern& unless : clause.unless) VisitUnless(unless);
     for (const Change& change : clause.changes) {
       VisitChange(rule, change);
-      VisitInserted(clause, change);
+      if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
     }
   }
 
@@ -92,10 +92,6 @@ class Lister {
           Add(change.span, "`lengthen` or `shorten` in a rule that iterates is", "apply the rule at once");
         break;
     }
-    if (rule.mode != Rule::Mode::kAtOnce && change.inserted_label >= 0) {
-      Add(change.span, "an inserted item that other changes of a rule that iterates go on with is",
-          "apply the rule at once, or insert it with that content");
-    }
     const bool cuts = change.op == Change::Op::kDelink && change.member.which == Member::Which::kValue;
     if (cuts && tree_[change.node].max > 3) Add(change.span, "one member of a contour of more than three parts is");
     VisitNode(change.node, change.span);
@@ -103,8 +99,11 @@ class Lister {
   }
 
   // Lines and contents of one match are judged against each other only where all its items stood there before.
-  void VisitInserted(const Clause& clause, const Change& change) {
-    if (change.target < 0 || clause.KindOf(change.target) != Clause::LabelKind::kInserted) return;
+  void VisitInserted(const Rule& rule, const Clause& clause, const Change& change) {
+    if (rule.mode != Rule::Mode::kAtOnce && change.op == Change::Op::kSpread) {
+      Add(change.span, "spreading to what the rule inserts in a rule that iterates is",
+          "apply the rule at once, or copy: set E.N as X.N");
+    }
     for (const Change& other : clause.changes) {
       if (other.target == change.target) continue;
       for (NodeId node : NodesGiven(change)) {

@@ -337,14 +337,15 @@ class Decorator {
     }
     if (slots.empty()) return false;
     const auto any_slot = [&] { return slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))]; };
-    rule_->mode = Rule::Mode::kAtOnce;
     rule_->label_kinds.resize(rule_->labels.size(), Clause::LabelKind::kSlot);
     rule_->changes.clear();
+    const bool sweeps = rule_->mode != Rule::Mode::kAtOnce;
+    const int visited = any_slot();
     const int items = Chance(rng_, 0.2) ? 2 : 1;
     for (int i = 0; i < items; ++i) {
       Change insert;
       insert.op = Op::kInsert;
-      insert.target = any_slot();
+      insert.target = sweeps ? visited : any_slot();
       insert.before = Chance(rng_, 0.5);
       insert.is_long = Chance(rng_, 0.15);
       insert.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
@@ -360,7 +361,7 @@ class Decorator {
     if (Chance(rng_, 0.15)) {
       Change other;
       other.op = Random({Op::kDelete, Op::kDelink, Op::kSpread});
-      other.target = any_slot();
+      other.target = sweeps ? visited : any_slot();
       other.node = Node();
       other.source = other.op == Op::kSpread ? any_slot() : -1;
       if (other.op == Op::kDelete) other.node = 0;

@@ -3,6 +3,7 @@
 #include <functional>
 #include <iterator>
 
+#include "compile/flatten.h"
 #include "graph/interpreter.h"
 #include "model/content.h"
 #include "support/generate.h"
@@ -369,7 +370,8 @@ bool Refused(const Tree& tree, const Rule& rule) {
   if (rule.changes.empty()) return true;
   for (const Change& change : rule.changes) {
     if (change.op == Op::kSpread && change.source == change.target) return true;
-    if (rule.mode != Rule::Mode::kAtOnce && change.target != rule.changes.front().target) return true;
+    const bool one = HostOf(rule, change.target) == HostOf(rule, rule.changes.front().target);
+    if (rule.mode != Rule::Mode::kAtOnce && !one) return true;
     for (NodeId node : NodesChanged(change)) {
       if (UnderContour(tree, node)) return true;
       for (const Change& other : rule.changes) {

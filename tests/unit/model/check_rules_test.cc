@@ -540,7 +540,7 @@ TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
   const Mistake rows[] = {
       {"rule \"r\" { where X:V lengthen X iterate rightward }", Kind::kNotSupportedYet, "lengthen X", "iterates"},
       {"rule \"r\" { where X:V insert E:/i/ after X spread X.back to E iterate rightward }", Kind::kNotSupportedYet,
-       "insert E:/i/ after X", "go on with"},
+       "spread X.back to E", "in a rule that iterates"},
       {"rule \"r\" { where X:V Y:V insert E:/i/ after X spread X.back to E set Y [+back] }", Kind::kNotSupportedYet,
        "spread X.back to E", "another item"},
       {"rule \"r\" { where X:V B:# delete B }", Kind::kNotSupportedYet, "B:#", "at the end of a pattern"},

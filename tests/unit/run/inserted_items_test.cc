@@ -99,10 +99,26 @@ TEST_CASE("inserted items: the vowel that precedes", "[unit]") {
             {{"ajm", "ajm"}, {"arm", "aram"}});
 }
 
+TEST_CASE("inserted items: in a sweep the copy is there for the next", "[unit]") {
+  const std::string plain =
+      "where V:[+syll] A:[-syll] B:[-syll]  insert " + kBareVowel + " before B  fill E.Vplace as V.Vplace  ";
+  // At once k has no vowel before it; rightward it has the one that was just inserted. Leftward p is met first.
+  CheckRows("rule \"r\" { " + plain + "}", {{"orkp", "orokp"}, {"ark", "arak"}});
+  CheckRows("rule \"r\" { " + plain + "iterate rightward }",
+            {{"orkp", "orokop"}, {"ark", "arak"}, {"arkipsk", "arakipisik"}});
+  CheckRows("rule \"r\" { " + plain + "iterate leftward }", {{"orkp", "orokp"}, {"arkipsk", "arakipisk"}});
+  // Two things are done to it.
+  CheckRows(
+      "allophones { ã [+son +syll +nasal -lat +cont -high +low +back] }\nrule \"r\" { where V:/a/ A:[-syll] B:[-syll]  "
+      "insert " +
+          kBareVowel + " before B  set E.Vplace as V.Vplace  set E [+nasal]  iterate rightward }",
+      {{"arkp", "arãkp"}, {"ark", "arãk"}});
+}
+
 TEST_CASE("inserted items: what is not run", "[unit]") {
   for (const auto& [rule, message] : std::vector<std::pair<std::string, std::string>>{
            {"where V:[+syll] C:[-syll] insert " + kBareVowel + " after C spread V.Vplace to E iterate rightward",
-            "go on with"},
+            "in a rule that iterates"},
            {"where V:[+syll] C:[-syll] insert " + kBareVowel + " after C spread V.Vplace to E spread V.Vplace to C",
             "another item"}}) {
     CAPTURE(rule);
