@@ -953,7 +953,8 @@ struct PatternCompiler::Impl {
     answers[kBears] = count > 0;
     answers[kHeldFromLeft] = count > 0 && (marks & kFromLeft);
     answers[kHeldToRight] = count > 0 && (marks & kToRight);
-    answers[kSeveral] = count > 1;
+    // Under a mother that goes on all are the same as before.
+    answers[kSeveral] = count > 1 && !(space.Marks(letter, space.tree()[watch.node].mother) & kFromLeft);
     if (watch.free >= 0) {
       const auto free = static_cast<NodeId>(watch.free);
       answers[kFreeBears] = space.Of(letter[0], free).count > 0;

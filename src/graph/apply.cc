@@ -106,6 +106,7 @@ class Run {
         if (applies) applying.insert(applying.end(), drawn[site].begin(), drawn[site].end());
       }
       Carry(view, matches, applying, nullptr, &branch);
+      if (results_.HasProblem()) return;
       End(std::move(branch));
     }
   }

@@ -132,6 +132,13 @@ TEST_CASE("graph: a derivation follows all outcomes", "[unit]") {
   g.rules[1].name = "both";
   CHECK(Derive(g, FormOf(g, "a n i")).problem.find("rule 'both' is ambiguous here") == 0);
 
+  // One site asks for two contents, the other does not.
+  const Rule contents = RuleBuilder(g, "A:[-syll] ( [] )0-1 B:[-syll]")
+                            .Insert("E", true, "A", "N")
+                            .SetAs("N.Place", "B.Place")
+                            .Optional(0.3);
+  CHECK(ApplyRule(g, contents, FormOf(g, "t p k")).ambiguous == "two different contents asked for Place");
+
   g.rules = {RuleBuilder(g, "A:[-son]").Set("A", "+voice").Optional(0.4)};
   g.rules[0].name = "voicing";
   std::string many;
