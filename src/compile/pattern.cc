@@ -81,7 +81,17 @@ struct MarkedArc {
   int role = -1;
   int next = 0;
   bool first = false;  // it consumes the first slot of the match
+  int bound = -1;      // index into Pools::bindings, where an unless-pattern shares variables
 };
+
+// What the arcs of where-patterns refer to.
+struct Pools {
+  KeyPool roles;     // Impl::RoleOf reads them
+  KeyPool bindings;  // by variable of the rule: 1 + its value where it is known
+};
+
+// By variable of the where-pattern: 1 + the value that a run of an unless-pattern takes it to have.
+using Given = std::map<int, std::int32_t>;
 
 struct MarkedMachine {
   std::vector<int> initial;
@@ -135,7 +145,7 @@ class Subsets {
   }
   int start() const { return start_; }
   int Next(int subset, const MarkedArc& arc) {
-    const auto key = std::make_tuple(subset, arc.profile, arc.mark, arc.role, arc.first);
+    const auto key = std::make_tuple(subset, arc.profile, arc.mark, arc.role, arc.first, arc.bound);
     const auto it = memo_.find(key);
     if (it != memo_.end()) return it->second;
     std::vector<int> next;
@@ -158,7 +168,7 @@ class Subsets {
   std::vector<char> final_;
   Step step_;
   KeyPool sets_;
-  std::map<std::tuple<int, int, int, int, bool>, int> memo_;
+  std::map<std::tuple<int, int, int, int, bool, int>, int> memo_;
   int start_ = 0;
 };
 
@@ -253,6 +263,7 @@ struct PatternCompiler::Impl {
     std::vector<Program> unless;
     std::int32_t spreads = 0;  // bits of the mask: spreads of this clause, then its merges
     std::vector<Compared> conditions;
+    std::set<int> shared;  // variables of the where-pattern that unless-patterns use as well
   };
   // A change that gives its target what the source bears, or what a variable of the rule stands for.
   struct Copy {
@@ -424,8 +435,52 @@ struct PatternCompiler::Impl {
       programs.conditions.push_back(compared);
     }
     programs.where = Compile(clause.where, /*main=*/true);
-    for (const Pattern& pattern : clause.unless) programs.unless.push_back(Compile(pattern, /*main=*/false));
+    for (const Pattern& pattern : clause.unless) {
+      programs.unless.push_back(Compile(pattern, /*main=*/false));
+      for (int variable : SharedVariables(programs.where, programs.unless.back())) programs.shared.insert(variable);
+    }
     clauses.push_back(std::move(programs));
+  }
+
+  std::set<int> VariablesOf(const Program& program) const {
+    std::set<int> used;
+    for (const Instruction& instruction : program.code) {
+      if (instruction.op != Instruction::Op::kSlot) continue;
+      const Asked& asked = tests[static_cast<std::size_t>(instruction.test)];
+      for (std::size_t i = asked.agreeing_begin; i < asked.agreeing_end; ++i) used.insert(agreeing[i]->variable);
+    }
+    return used;
+  }
+  std::vector<int> SharedVariables(const Program& where, const Program& unless) const {
+    const std::set<int> ours = VariablesOf(where), theirs = VariablesOf(unless);
+    std::vector<int> shared;
+    std::set_intersection(ours.begin(), ours.end(), theirs.begin(), theirs.end(), std::back_inserter(shared));
+    return shared;
+  }
+
+  // All that the variables which an unless-pattern shares may stand for; just one, empty, where it shares none.
+  std::vector<Given> GivensFor(const Program& where, const Program& unless) const {
+    std::vector<Given> givens{{}};
+    for (int variable : SharedVariables(where, unless)) {
+      std::set<std::int32_t> values;
+      for (std::size_t i = 0; i < agreeing.size(); ++i) {
+        if (agreeing[i]->variable != variable) continue;
+        for (int profile = 0; profile < profile_keys.size(); ++profile) {
+          if (profile_keys[profile][kProfileKind] >= kBoundaryKind) continue;
+          const Key& allowed = value_sets[profile_keys[profile][AgreeingField(i)]];
+          values.insert(allowed.begin(), allowed.end());
+        }
+      }
+      std::vector<Given> longer;
+      for (const Given& given : givens) {
+        for (std::int32_t value : values) {
+          longer.push_back(given);
+          longer.back()[variable] = 1 + value;
+        }
+      }
+      givens = std::move(longer);
+    }
+    return givens;
   }
 
   void Order(const Pattern& pattern) {
@@ -1029,9 +1084,9 @@ struct PatternCompiler::Impl {
 
   // ---- the automaton --------------------------------------------------------------------------
   struct Builder;
-  MarkedMachine BuildMain(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
-  MarkedMachine BuildUnless(const Program& program, std::size_t max_states) const;
-  MarkedMachine BuildClause(std::size_t clause, std::size_t max_states, KeyPool* roles) const;
+  MarkedMachine BuildMain(std::size_t clause, std::size_t max_states, Pools* pools) const;
+  MarkedMachine BuildUnless(const Program& program, const Given& given, std::size_t max_states) const;
+  MarkedMachine BuildClause(std::size_t clause, std::size_t max_states, Pools* pools) const;
   std::vector<MarkedMachine> Preferred(const std::vector<MarkedMachine>& standing, const KeyPool& roles,
                                        std::size_t max_states) const;
   Role RoleOf(const Key& key) const;
@@ -1087,18 +1142,19 @@ struct PatternCompiler::Impl::Builder {
   bool main;
   std::int32_t edge;
   std::set<int> own_marks;  // unless: the labels it shares
+  Given given;              // unless: what it takes the variables to stand for that it shares
   KeyPool configs;
-  KeyPool* roles;
+  Pools* pools;
   MarkedMachine machine;
 
-  Builder(const Impl& i, const Program& p, const ClausePrograms* of_clause, std::size_t number, KeyPool* role_pool)
+  Builder(const Impl& i, const Program& p, const ClausePrograms* of_clause, std::size_t number, Pools* of_arcs)
       : impl(i),
         program(p),
         clause(of_clause),
         clause_number(number),
         main(of_clause != nullptr),
         edge(EdgeOf(i.rule.within)),
-        roles(role_pool) {
+        pools(of_arcs) {
     for (const Instruction& instruction : program.code) {
       if (instruction.op == Instruction::Op::kSlot && instruction.mark >= 0) own_marks.insert(instruction.mark);
     }
@@ -1106,7 +1162,8 @@ struct PatternCompiler::Impl::Builder {
 
   std::size_t SpreadCount() const { return main ? impl.spreads.size() : 0; }
   std::size_t VariableAt(int variable) const { return kZones + SpreadCount() + static_cast<std::size_t>(variable); }
-  std::size_t ConditionAt(std::size_t i) const { return VariableAt(main ? impl.variables : 0) + i; }
+  int VariableCount() const { return main ? impl.variables : impl.rule.variables; }
+  std::size_t ConditionAt(std::size_t i) const { return VariableAt(VariableCount()) + i; }
   std::size_t MergeAt(std::size_t i) const { return ConditionAt(ConditionCount()) + i; }
   std::size_t WatchAt(std::size_t i) const { return MergeAt(MergeCount()) + i; }
   std::size_t WatchCount() const { return main ? impl.watches.size() : 0; }
@@ -1118,6 +1175,7 @@ struct PatternCompiler::Impl::Builder {
     Key config(ConfigSize(), 0);
     config[kPc] = kPrefix;
     config[kMask] = mask;
+    for (const auto& [variable, value] : given) config[VariableAt(variable)] = value;
     return config;
   }
 
@@ -1223,9 +1281,16 @@ struct PatternCompiler::Impl::Builder {
   bool MarkAllowed(int mark) const { return main || own_marks.count(mark) == 0; }
 
   // The main machine emits marks itself; an unless machine reads them.
-  void Add(int from, int profile, int mark, int role, const Key& to, bool first = false) {
+  void Add(int from, int profile, int mark, int role, const Key& to, bool first = false, int bound = -1) {
     const int next = Intern(to);  // may add a state
-    machine.arcs[from].push_back({profile, mark, role, next, first});
+    machine.arcs[from].push_back({profile, mark, role, next, first, bound});
+  }
+
+  // What the variables are known to stand for, if an unless-pattern asks.
+  int Bound(const Key& config) const {
+    if (!main || clause->shared.empty()) return -1;
+    const auto first = config.begin() + static_cast<std::ptrdiff_t>(VariableAt(0));
+    return pools->bindings.Intern(Key(first, first + impl.rule.variables));
   }
 
   MarkedMachine Run(std::size_t max_states) {
@@ -1301,14 +1366,14 @@ struct PatternCompiler::Impl::Builder {
     Key role(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
     role[0] = -1;
     role.back() = merging;
-    return roles->Intern(role);
+    return pools->roles.Intern(role);
   }
 
   // The role of a boundary that is deleted.
   int DeletingRole(int label) const {
     Key role(2 + SpreadCount() + static_cast<std::size_t>(impl.variables), 0);
     role[0] = label;
-    return roles->Intern(role);
+    return pools->roles.Intern(role);
   }
 
   void SkipBoundary(int at, const Key& config, int profile, std::int32_t boundary, bool outside,
@@ -1494,7 +1559,7 @@ struct PatternCompiler::Impl::Builder {
 
   // All ways to meet the tests of agreement of a slot, and to tell a role the values that its changes borrow.
   void MeetVariables(const Key& letter, int test, int label, std::vector<std::pair<Key, Key>>* ways) const {
-    if (!main || impl.variables == 0) return;
+    if (VariableCount() == 0) return;
     const Asked& asked = impl.tests[static_cast<std::size_t>(test)];
     for (std::size_t i = asked.agreeing_begin; i < asked.agreeing_end; ++i) {
       const std::size_t at = VariableAt(impl.agreeing[i]->variable);
@@ -1594,8 +1659,8 @@ struct PatternCompiler::Impl::Builder {
       }
       std::vector<Key> after;
       After(key, slot.next, /*first=*/false, &after);
-      const int role_id = asks.empty() ? MergingRole(merging) : roles->Intern(asks);
-      for (const Key& next : after) Add(at, profile, slot.mark, role_id, next, config[kPhase] == 0);
+      const int role_id = asks.empty() ? MergingRole(merging) : pools->roles.Intern(asks);
+      for (const Key& next : after) Add(at, profile, slot.mark, role_id, next, config[kPhase] == 0, Bound(key));
     }
   }
 
@@ -1688,12 +1753,15 @@ struct PatternCompiler::Impl::Builder {
   }
 };
 
-MarkedMachine PatternCompiler::Impl::BuildMain(std::size_t clause, std::size_t max_states, KeyPool* roles) const {
-  return Builder(*this, clauses[clause].where, &clauses[clause], clause, roles).Run(max_states);
+MarkedMachine PatternCompiler::Impl::BuildMain(std::size_t clause, std::size_t max_states, Pools* pools) const {
+  return Builder(*this, clauses[clause].where, &clauses[clause], clause, pools).Run(max_states);
 }
 
-MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program, std::size_t max_states) const {
-  return Builder(*this, program, nullptr, 0, nullptr).Run(max_states);
+MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program, const Given& given,
+                                                 std::size_t max_states) const {
+  Builder builder(*this, program, nullptr, 0, nullptr);
+  builder.given = given;
+  return builder.Run(max_states);
 }
 
 PatternCompiler::PatternCompiler(const Rule& rule, const RuleSpace& space) : impl_(new Impl(rule, space)) {}
@@ -1718,10 +1786,18 @@ bool PatternCompiler::AsksOfSlotsBehind(bool rightward) const {
 
 namespace {
 
-// Strings marked as a match of the rule on which an unless-pattern matches the same labelled slots.
-Subsets UnlessBan(const MarkedMachine& unless, std::set<int> labels) {
+// Strings marked as a match of the rule on which an unless-pattern matches the same labelled slots, while the variables
+// that both use stand for what is `given`.
+Subsets UnlessBan(const MarkedMachine& unless, const std::set<int>& labels, const Given& given,
+                  const KeyPool& bindings) {
   return Subsets(unless.initial, unless.final,
-                 [unless, labels](int state, const MarkedArc& read, std::vector<int>* next) {
+                 [unless, labels, given, &bindings](int state, const MarkedArc& read, std::vector<int>* next) {
+                   const bool agrees = std::all_of(given.begin(), given.end(), [&](const auto& taken) {
+                     const std::int32_t value =
+                         read.bound < 0 ? 0 : bindings[read.bound][static_cast<std::size_t>(taken.first)];
+                     return value == 0 || value == taken.second;
+                   });
+                   if (!agrees) return;
                    const bool bound = labels.count(read.mark) > 0;
                    for (const MarkedArc& arc : unless.arcs[state]) {
                      if (arc.profile != read.profile) continue;
@@ -1843,16 +1919,18 @@ int FirstSource(const Rule& rule, const std::set<int>& labels) {
 }  // namespace
 
 // One clause: its pattern, less what `unless` and nearer slots bar.
-MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t max_states, KeyPool* roles) const {
-  MarkedMachine machine = BuildMain(clause, max_states, roles);
+MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t max_states, Pools* pools) const {
+  MarkedMachine machine = BuildMain(clause, max_states, pools);
   for (const Program& program : clauses[clause].unless) {
     std::set<int> labels;
     for (const Instruction& instruction : program.code) {
       if (instruction.op == Instruction::Op::kSlot && instruction.mark >= 0) labels.insert(instruction.mark);
     }
-    const MarkedMachine unless = BuildUnless(program, max_states);
-    if (unless.over_budget) machine = unless;
-    machine = Minus(machine, UnlessBan(unless, labels), max_states);
+    for (const Given& given : GivensFor(clauses[clause].where, program)) {
+      const MarkedMachine unless = BuildUnless(program, given, max_states);
+      if (unless.over_budget) machine = unless;
+      machine = Minus(machine, UnlessBan(unless, labels, given, pools->bindings), max_states);
+    }
   }
   const MarkedMachine whole = machine;
   std::set<int> own;
@@ -1869,10 +1947,11 @@ MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t
 
 PatternMachine PatternCompiler::Build(std::size_t max_states, const Judge& judge) const {
   impl_->judge = &judge;
-  KeyPool roles;
+  Pools pools;
+  const KeyPool& roles = pools.roles;
   std::vector<MarkedMachine> able, machines;
   for (std::size_t c = 0; c < impl_->clauses.size(); ++c) {
-    MarkedMachine machine = impl_->BuildClause(c, max_states, &roles);
+    MarkedMachine machine = impl_->BuildClause(c, max_states, &pools);
     able.push_back(machine);
     for (std::size_t earlier = 0; earlier < c; ++earlier) {
       if (able[earlier].over_budget) machine = OverBudget();

@@ -12,8 +12,6 @@ class Lister {
 
   std::vector<NotYet> Take() { return std::move(found_); }
 
-  void VisitWhole(const Rule& rule, Span name) {}
-
   // What a sweep has deleted would still stand where lines are drawn.
   void VisitClausesTogether(const Rule& rule, Span name) {
     if (rule.mode == Rule::Mode::kAtOnce || rule.otherwise.empty()) return;
@@ -29,7 +27,6 @@ class Lister {
 
   void VisitClause(const Rule& rule, const Clause& clause) {
     VisitBoundaries(clause.where);
-    for (const Pattern& unless : clause.unless) VisitUnless(unless);
     for (const Change& change : clause.changes) {
       VisitChange(rule, change);
       if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
@@ -54,19 +51,6 @@ class Lister {
             "let the pattern name the item beyond it: [] is any");
       for (const Pattern& alternative : item.alternatives) VisitBoundaries(alternative);
     }
-  }
-
-  void VisitUnless(const Pattern& pattern) {
-    for (const PatternItem& item : pattern.items) {
-      if (Agrees(item.test))
-        Add(item.span, "agreement of items, α β γ δ, in `unless` is", "write one `unless` for each value");
-      for (const Pattern& alternative : item.alternatives) VisitUnless(alternative);
-    }
-  }
-
-  static bool Agrees(const SlotTest& test) {
-    return std::any_of(test.bundle.begin(), test.bundle.end(), [](const FeatureTest& f) { return f.variable >= 0; }) ||
-           std::any_of(test.args.begin(), test.args.end(), Agrees);
   }
 
   void VisitChange(const Rule& rule, const Change& change) {
@@ -171,7 +155,6 @@ class Lister {
 
 std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree) {
   Lister lister(tree);
-  lister.VisitWhole(rule, name);
   lister.VisitClause(rule, rule);
   for (const Clause& clause : rule.otherwise) lister.VisitClause(rule, clause);
   lister.VisitClausesTogether(rule, name);

@@ -111,7 +111,8 @@ enum class Construct {
   kTwoContents,
   kComplete,
   kGivenNode,
-  kInsertedGrown
+  kInsertedGrown,
+  kAgreeingUnless
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

@@ -27,6 +27,8 @@ class Decorator {
         return AgreeingNode();
       case Construct::kGivenNode:
         return GivenNode();
+      case Construct::kAgreeingUnless:
+        return AgreeingUnless();
       case Construct::kShared:
         return AddTest(Random({FeatureTest::Kind::kShared, FeatureTest::Kind::kShared, FeatureTest::Kind::kUnshared}));
       case Construct::kLength:
@@ -196,6 +198,34 @@ class Decorator {
     change.target = slots[1]->label;
     change.settings = {{node, {}, 0, false}};
     rule_->changes = {change};
+    return true;
+  }
+
+  // Barred beside a slot that agrees: with an item of the `where`, or with the very item that both name.
+  bool AgreeingUnless() {
+    std::vector<PatternItem*> slots = Slots();
+    std::shuffle(slots.begin(), slots.end(), rng_);
+    const auto labelled = std::find_if(slots.begin(), slots.end(), [](PatternItem* slot) { return slot->label >= 0; });
+    if (labelled == slots.end()) return false;
+    const NodeId node = Node();
+    rule_->variables = 1;
+    PatternItem item, other, between;
+    item.label = (*labelled)->label;
+    between.kind = Kind::kGroup;
+    between.max = Random({1, 2, -1});
+    between.alternatives.resize(1);
+    between.alternatives[0].items.resize(1);
+    Require(&other, Agrees(node));
+    const bool shared = Chance(rng_, 0.6);
+    if (shared) Require(slots[0], Agrees(node));
+    if (!shared || Chance(rng_, 0.2)) Require(&item, Agrees(node));
+    if (tree_[node].type == TreeNode::Type::kBinary && Chance(rng_, 0.3))
+      other.test.bundle.back().kind = FeatureTest::Kind::kDiffers;
+    std::vector<PatternItem> items{item, other};
+    if (Chance(rng_, 0.4)) items.insert(items.begin() + 1, between);
+    if (Chance(rng_, 0.5)) std::reverse(items.begin(), items.end());
+    rule_->unless.emplace_back();
+    rule_->unless.back().items = std::move(items);
     return true;
   }
 
@@ -520,14 +550,14 @@ class Decorator {
 
 const std::vector<Construct>& AllConstructs() {
   static const std::vector<Construct> all = {
-      Construct::kAgreement,      Construct::kAgreeingNode, Construct::kShared,   Construct::kLength,
-      Construct::kPart,           Construct::kEqual,        Construct::kSame,     Construct::kSameMorpheme,
-      Construct::kDomain,         Construct::kStem,         Construct::kTags,     Construct::kOtherwise,
-      Construct::kOptional,       Construct::kByWord,       Construct::kPrefer,   Construct::kPreserving,
-      Construct::kSharingBlocked, Construct::kNewRoot,      Construct::kCopy,     Construct::kLengthen,
-      Construct::kShorten,        Construct::kMerge,        Construct::kBoundary, Construct::kLongInsertion,
-      Construct::kMember,         Construct::kTwoContents,  Construct::kComplete, Construct::kGivenNode,
-      Construct::kInsertedGrown};
+      Construct::kAgreement,      Construct::kAgreeingNode,  Construct::kShared,   Construct::kLength,
+      Construct::kPart,           Construct::kEqual,         Construct::kSame,     Construct::kSameMorpheme,
+      Construct::kDomain,         Construct::kStem,          Construct::kTags,     Construct::kOtherwise,
+      Construct::kOptional,       Construct::kByWord,        Construct::kPrefer,   Construct::kPreserving,
+      Construct::kSharingBlocked, Construct::kNewRoot,       Construct::kCopy,     Construct::kLengthen,
+      Construct::kShorten,        Construct::kMerge,         Construct::kBoundary, Construct::kLongInsertion,
+      Construct::kMember,         Construct::kTwoContents,   Construct::kComplete, Construct::kGivenNode,
+      Construct::kInsertedGrown,  Construct::kAgreeingUnless};
   return all;
 }
 
@@ -560,7 +590,8 @@ const char* NameOf(Construct construct) {
                                       "two contents",
                                       "complete",
                                       "set, fill [αNode]",
-                                      "changes of the inserted"};
+                                      "changes of the inserted",
+                                      "agreement in unless"};
   return names[static_cast<int>(construct)];
 }
 

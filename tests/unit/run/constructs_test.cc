@@ -51,4 +51,18 @@ TEST_CASE("constructs: a variable for a class node in set and fill", "[unit]") {
             {{"akha", "akha"}, {"akpa", "appa"}});
 }
 
+TEST_CASE("constructs: agreement with what bars a rule", "[unit]") {
+  // Shared with the `where`: nothing goes behind an obstruent with its own voicing.
+  CheckBoth(R"(rule "r" { where C:[-son αvoice] [-syll]   delete C   unless [-son αvoice] C })",
+            {{"akta", "ata"},     // no obstruent stands before k
+             {"apkta", "akta"},   // p goes and bars k
+             {"abkta", "ata"}});  // b goes and, being voiced, does not bar k
+  // Only in the `unless`: of any value, but the vowels have the same.
+  CheckBoth(R"(rule "r" { where N:[+nasal] [-syll]   delete N   unless [+syll αlow] N [-syll] [+syll αlow] })",
+            {{"anta", "anta"}, {"inti", "inti"}, {"inta", "ita"}, {"anti", "ati"}, {"nta", "ta"}});
+  // A class node, on the far side of a stretch of any length.
+  CheckBoth(R"(rule "r" { where N:[+nasal αPlace]   delete N   unless N [+syll]₁ [-syll αPlace] })",
+            {{"anaita", "anaita"}, {"anaika", "aaika"}, {"amapa", "amapa"}, {"ama", "aa"}, {"anta", "ata"}});
+}
+
 }  // namespace tiersmith::testing
