@@ -8,7 +8,6 @@
 #include <set>
 
 #include "compile/cascade_data.h"
-#include "compile/choose.h"
 #include "compile/compose.h"
 #include "compile/flatten.h"
 #include "compile/plan.h"
@@ -271,15 +270,6 @@ class CascadeCompiler {
 
   bool AddStep(std::size_t index) {
     const Rule& rule = steps_[index];
-    if (rule.probability < 1 && !DrawsLocally(rule)) {
-      diagnostics_.Error(
-          Kind::kNotSupportedYet, rule.span,
-          fmt::format("rule \"{}\" is optional at each site and changes several items of a match at once: "
-                      "this is not supported by this release",
-                      rule.name),
-          "draw `by word`, or let one rule mark what a second one changes");
-      return false;
-    }
     const std::vector<int> classes_in = ClassesWritten(current_);
     const std::vector<NodeId> live = LinksIn(classes_in, rule, plan_.live[index]);
     RuleMachine machine = CompileRule(rule, *data_->classes, classes_in, live, plan_.live[index + 1], limits_);

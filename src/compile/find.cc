@@ -35,21 +35,6 @@ void Ask(std::int32_t* need, const Key& letter, NodeId node, const RuleSpace& sp
   *need = space.Of(letter[0], node).mother ? kInMother : kBeyond;
 }
 
-// role arcs grouped by profile
-struct RoleArc {
-  int from, role, to;
-};
-
-std::vector<std::vector<RoleArc>> RoleArcs(const PatternMachine& machine, int profiles) {
-  std::vector<std::vector<RoleArc>> arcs(profiles);
-  for (int s = 0; s < machine.states; ++s) {
-    for (const PatternArc& arc : machine.arcs[s]) {
-      if (arc.role >= 0) arcs[arc.profile].push_back({s, arc.role, arc.next});
-    }
-  }
-  return arcs;
-}
-
 std::vector<const Role*> RolesBetween(const PatternMachine& machine, const std::vector<RoleArc>& arcs,
                                       const std::vector<char>& before, const std::vector<char>& after) {
   std::vector<char> found(machine.roles.size(), 0);
@@ -212,6 +197,7 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
   const Side right = SubsetsOf(Reversed(machine), profiles, limits.side_states);
   if (machine.over_budget || left.next.empty() || right.next.empty()) return {Tape{}, true};
   const std::vector<std::vector<RoleArc>> arcs = RoleArcs(machine, profiles);
+  const bool optional = requests.rule().probability < 1;
 
   Tape tape = PassRightward(
       annotated, Key{left.start},
@@ -248,14 +234,11 @@ Found FindAtOnce(const Tape& annotated, PatternCompiler& pattern, const RequestS
           }
         }
         Append(&step.symbol, needs);
+        if (optional) Append(&step.symbol, {profile, symbol.back(), state[0]});
         return step;
       },
       max_states);
-  if (requests.rule().probability < 1) {
-    Found chosen = Choose({std::move(tape), false}, requests, max_states);
-    if (chosen.over_budget) return chosen;
-    tape = std::move(chosen.tape);
-  }
+  if (optional) tape = Choose(tape, {machine, arcs, left, right}, requests, max_states);
   const LetterBuilder builder(requests, pool);
   const SpanPass spans(requests, builder);
   tape = PassRightward(

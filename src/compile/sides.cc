@@ -46,6 +46,16 @@ Side Refine(const Side& side, const std::vector<char>& interesting) {
 
 }  // namespace
 
+std::vector<std::vector<RoleArc>> RoleArcs(const PatternMachine& machine, int profiles) {
+  std::vector<std::vector<RoleArc>> arcs(profiles);
+  for (int s = 0; s < machine.states; ++s) {
+    for (const PatternArc& arc : machine.arcs[s]) {
+      if (arc.role >= 0) arcs[arc.profile].push_back({s, arc.role, arc.next});
+    }
+  }
+  return arcs;
+}
+
 PatternMachine Reversed(const PatternMachine& machine) {
   PatternMachine result;
   result.states = machine.states;

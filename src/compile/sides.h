@@ -15,6 +15,12 @@ struct Side {
   std::vector<std::int32_t> underway;      // by state: PatternMachine::underway of all its subsets
 };
 
+// Arcs with a role, by profile.
+struct RoleArc {
+  int from, role, to;
+};
+std::vector<std::vector<RoleArc>> RoleArcs(const PatternMachine& machine, int profiles);
+
 // The same machine read from its end.
 PatternMachine Reversed(const PatternMachine& machine);
 

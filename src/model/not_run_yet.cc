@@ -27,6 +27,7 @@ class Lister {
 
   void VisitClause(const Rule& rule, const Clause& clause) {
     VisitBoundaries(clause.where);
+    if (rule.by_word) VisitFirst(clause.where);
     for (const Change& change : clause.changes) {
       VisitChange(rule, change);
       if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
@@ -50,6 +51,16 @@ class Lister {
         Add(item.span, "a labelled boundary at the end of a pattern is",
             "let the pattern name the item beyond it: [] is any");
       for (const Pattern& alternative : item.alternatives) VisitBoundaries(alternative);
+    }
+  }
+
+  // Its match is of the word where the first slot stands, which would come later.
+  void VisitFirst(const Pattern& pattern) {
+    for (const PatternItem& item : pattern.items) {
+      if (item.kind == PatternItem::Kind::kSlot) return;
+      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0)
+        Add(item.span, "a labelled boundary that may come first in a rule with `by word` is",
+            "let the pattern name the item before it: [] is any");
     }
   }
 

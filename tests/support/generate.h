@@ -112,7 +112,8 @@ enum class Construct {
   kComplete,
   kGivenNode,
   kInsertedGrown,
-  kAgreeingUnless
+  kAgreeingUnless,
+  kSeveralItems
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

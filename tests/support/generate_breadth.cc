@@ -53,9 +53,6 @@ class Decorator {
       case Construct::kOtherwise:
         return true;  // Otherwise adds the clause
       case Construct::kOptional:
-        for (const Change& change : rule_->changes) {
-          if (rule_->mode == Rule::Mode::kAtOnce && change.target != rule_->changes.front().target) return false;
-        }
         rule_->probability = Random({0.3, 0.5, 0.75});
         return true;
       case Construct::kByWord:
@@ -97,6 +94,9 @@ class Decorator {
         rule_->kind = Rule::Kind::kComplete;
         rule_->name = "complete";
         return true;
+      case Construct::kSeveralItems:
+        rule_->probability = Random({0.3, 0.5, 0.75});
+        return SeveralItems();
     }
     return false;
   }
@@ -477,6 +477,32 @@ class Decorator {
     return change;
   }
 
+  // Two items of a match change at once, or one and the boundary between them.
+  bool SeveralItems() {
+    const int pick = Below(rng_, 10);
+    if (pick < 2 && !TwoContents()) return false;
+    if (pick == 2 && !DeleteBoundary()) return false;
+    rule_->mode = Rule::Mode::kAtOnce;
+    int a = 0, b = 0;
+    if (!TwoLabels(&a, &b)) return false;
+    for (int label : {a, b}) {
+      const bool changed = std::any_of(rule_->changes.begin(), rule_->changes.end(),
+                                       [&](const Change& change) { return change.target == label; });
+      if (changed) continue;
+      Change change;
+      // What is spread is not given as well: an open question of rules that are not optional, too.
+      const bool nasal_moves = std::any_of(rule_->changes.begin(), rule_->changes.end(), [&](const Change& other) {
+        return other.op == Op::kSpread && (other.node == kRootNode || other.node == NodeOf(grammar_, "nasal"));
+      });
+      change.op = Random({Op::kDelete, Op::kDelink, nasal_moves ? Op::kDelete : Op::kSet});
+      change.target = label;
+      change.node = Node();
+      if (change.op == Op::kSet) change.settings = {{NodeOf(grammar_, "nasal"), {static_cast<Value>(Below(rng_, 2))}}};
+      rule_->changes.push_back(change);
+    }
+    return true;
+  }
+
   bool NewRoot() {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
@@ -550,14 +576,14 @@ class Decorator {
 
 const std::vector<Construct>& AllConstructs() {
   static const std::vector<Construct> all = {
-      Construct::kAgreement,      Construct::kAgreeingNode,  Construct::kShared,   Construct::kLength,
-      Construct::kPart,           Construct::kEqual,         Construct::kSame,     Construct::kSameMorpheme,
-      Construct::kDomain,         Construct::kStem,          Construct::kTags,     Construct::kOtherwise,
-      Construct::kOptional,       Construct::kByWord,        Construct::kPrefer,   Construct::kPreserving,
-      Construct::kSharingBlocked, Construct::kNewRoot,       Construct::kCopy,     Construct::kLengthen,
-      Construct::kShorten,        Construct::kMerge,         Construct::kBoundary, Construct::kLongInsertion,
-      Construct::kMember,         Construct::kTwoContents,   Construct::kComplete, Construct::kGivenNode,
-      Construct::kInsertedGrown,  Construct::kAgreeingUnless};
+      Construct::kAgreement,      Construct::kAgreeingNode,   Construct::kShared,      Construct::kLength,
+      Construct::kPart,           Construct::kEqual,          Construct::kSame,        Construct::kSameMorpheme,
+      Construct::kDomain,         Construct::kStem,           Construct::kTags,        Construct::kOtherwise,
+      Construct::kOptional,       Construct::kByWord,         Construct::kPrefer,      Construct::kPreserving,
+      Construct::kSharingBlocked, Construct::kNewRoot,        Construct::kCopy,        Construct::kLengthen,
+      Construct::kShorten,        Construct::kMerge,          Construct::kBoundary,    Construct::kLongInsertion,
+      Construct::kMember,         Construct::kTwoContents,    Construct::kComplete,    Construct::kGivenNode,
+      Construct::kInsertedGrown,  Construct::kAgreeingUnless, Construct::kSeveralItems};
   return all;
 }
 
@@ -591,7 +617,8 @@ const char* NameOf(Construct construct) {
                                       "complete",
                                       "set, fill [αNode]",
                                       "changes of the inserted",
-                                      "agreement in unless"};
+                                      "agreement in unless",
+                                      "optional, several items"};
   return names[static_cast<int>(construct)];
 }
 

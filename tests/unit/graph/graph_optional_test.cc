@@ -79,6 +79,16 @@ TEST_CASE("graph: one draw a site", "[unit]") {
       });
 }
 
+TEST_CASE("graph: no result if one outcome is ambiguous, though others are not", "[unit]") {
+  const Grammar g = SmallGrammar();
+  // Each of /pc/, /cs/ takes another half of the affricate, so that only both together ask for two contents of it.
+  const Rule halves = RuleBuilder(g, "A:[-son] B:[-son]").Set("A", "-cont").Set("B", "+cont").Optional(0.4);
+  CheckOptional(g, {{halves, "p c", {{"p c", 0.6}, {"p s", 0.4}}}});
+  const Application both = ApplyRule(g, halves, FormOf(g, "p c s"), true);
+  CHECK(both.ambiguous.find("two different contents") != std::string::npos);
+  CHECK(both.form == FormOf(g, "p c s"));
+}
+
 TEST_CASE("graph: a sweep draws at each visit", "[unit]") {
   const Grammar g = SmallGrammar();
   const auto spread = [&](bool by_word) {

@@ -126,6 +126,66 @@ TEST_CASE("optional: one draw a site at once, then one a word in a sweep", "[uni
       });
 }
 
+TEST_CASE("optional: several items of a match are one draw", "[unit]") {
+  const char* const vowels = "diacritics { ◌̃ [+nasal] on [+syll] }\n";
+  const char* const loss = R"(
+    rule "nasal loss" { where V:[+syll] N:[+nasal -syll]   delink V.nasal   spread N.nasal to V   delete N   optional 0.4 }
+  )";
+  CheckRows((std::string(vowels) + loss).c_str(),
+            {
+                {"tan", {{"tan", .6}, {"tã", .4}}},
+                // Two matches with nothing in common.
+                {"tanin", {{"tanin", .36}, {"tãin", .24}, {"tanĩ", .24}, {"tãĩ", .16}}},
+                {"ta", {{"ta", 1}}},
+            });
+  // A nasal between two vowels: a vowel that two of them change links their matches.
+  const char* const both = R"(
+    rule "both" { where V:[+syll] N:[+nasal -syll] W:[+syll]   set V [+nasal]   set W [+nasal]   delete N   optional 0.4 }
+  )";
+  CheckRows((std::string(vowels) + both).c_str(),
+            {
+                {"anita", {{"anita", .6}, {"ãĩta", .4}}},
+                // One site of three, /i/ and /a/ in the middle being asked the same from both sides.
+                {"animani", {{"animani", .6}, {"ãĩãĩ", .4}}},
+                // A vowel that is nasal already is asked nothing: the sites on its sides draw for themselves.
+                {"anĩma", {{"anĩma", .36}, {"ãĩma", .24}, {"anĩã", .24}, {"ãĩã", .16}}},
+                {"anitani", {{"anitani", .36}, {"ãĩtani", .24}, {"anitãĩ", .24}, {"ãĩtãĩ", .16}}},
+            });
+}
+
+TEST_CASE("optional: what links the items of several matches", "[unit]") {
+  // Both obstruents become voiced. /ptdp/: p t and t d have t in common, t d and d p nothing, since d is voiced.
+  CheckRows(
+      R"(rule "voice" { where A:[-son -cont no Dorsal] B:[-son -cont no Dorsal]   set A [+voice]   set B [+voice]   optional 0.4 })",
+      {
+          {"apta", {{"apta", .6}, {"abda", .4}}},
+          {"aptdpa", {{"aptdpa", .36}, {"abddpa", .24}, {"aptdba", .24}, {"abddba", .16}}},
+          // The two halves of one root link the match of p with it and that of it with the other p.
+          {"aptːpa", {{"aptːpa", .6}, {"abdːba", .4}}},
+      });
+  // However many obstruents there are, each is changed together with the last nasal, across whatever stands between.
+  CheckRows(
+      R"(rule "final" { where P:[-son -cont -voice no Dorsal] C₀ [+syll] []₀ N:[+nasal] #   set P [+voice]   delete N   optional 0.4 })",
+      {
+          {"patapin", {{"patapin", .6}, {"badabi", .4}}},
+          {"patapi", {{"patapi", 1}}},
+          {"pan#tan", {{"pan tan", .36}, {"ba tan", .24}, {"pan da", .24}, {"ba da", .16}}},
+      });
+  // A boundary goes with the vowel behind it, both of a run with it.
+  CheckRows(R"(rule "join" { where V:[+syll] B:- W:[+syll]   delete B   delete W   optional 0.4 })",
+            {
+                {"ta-i", {{"tai", .6}, {"ta", .4}}},
+                {"ta-i-a", {{"taia", .36}, {"tai", .24}, {"taa", .24}, {"ta", .16}}},
+            });
+  // By word: the sites of a word are one.
+  CheckRows(
+      R"(rule "voice" { where A:[-son -cont no Dorsal] B:[-son -cont no Dorsal] set A [+voice] set B [+voice] optional 0.4 by word })",
+      {
+          {"aptdpa", {{"aptdpa", .6}, {"abddba", .4}}},
+          {"apta#pt", {{"apta pt", .36}, {"abda pt", .24}, {"apta bd", .24}, {"abda bd", .16}}},
+      });
+}
+
 TEST_CASE("optional: ways summed before outputs are ranked, and as many as asked for", "[unit]") {
   // b stays with .4. Otherwise it becomes a nasal of one kind or the other, .3 each; both are lost, and what is left is likelier.
   Compiled grammar = CompileText(std::string(kSmallInventory) + R"(
