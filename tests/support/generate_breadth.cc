@@ -477,11 +477,12 @@ class Decorator {
     return change;
   }
 
-  // Two items of a match change at once, or one and the boundary between them.
+  // Two items of a match change at once, or one and the boundary between them, or what is inserted beside it.
   bool SeveralItems() {
     const int pick = Below(rng_, 10);
     if (pick < 2 && !TwoContents()) return false;
     if (pick == 2 && !DeleteBoundary()) return false;
+    if (pick == 3) return InsertedGrown();
     rule_->mode = Rule::Mode::kAtOnce;
     int a = 0, b = 0;
     if (!TwoLabels(&a, &b)) return false;
