@@ -10,8 +10,6 @@ namespace {
 
 enum Choice : std::int32_t { kOpen = 0, kApply = 1, kLeave = 2 };
 
-// What is asked of the whole root, at whichever of its slots.
-constexpr std::int32_t kLength = kLengthen | kShorten;
 constexpr int kNoSite = -1;
 
 // One thing asked in a letter: the place in its request key, and one bit there, or a content.

@@ -162,7 +162,6 @@ class SpanPass {
   void CarryLength(const Key& letter, std::int32_t* request, std::int32_t* state) const {
     const RuleSpace& space = requests_.space();
     if (space.Of(letter[0], kRootNode).count == 0) return;
-    constexpr std::int32_t kLength = kLengthen | kShorten;
     const std::int32_t marks = space.Marks(letter, kRootNode);
     const int index = requests_.IndexOf(kRootNode);
     const std::int32_t content = index < 0 ? 0 : request[1 + index] >> kValuesShift;
@@ -339,6 +338,9 @@ struct Direction {
 // What the letters behind say to the next: by live node, is the last bearer linked ahead (1), and its near object mark (2).
 constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
 
+// Before the contents in the state of the pass against the sweep.
+constexpr std::size_t kFarState = 3;
+
 // What a draw said.
 constexpr std::int32_t kDrawnApply = 1, kDrawnLeave = 2;
 constexpr std::int32_t kDrawnBefore = 4;  // in the word before, where the root we are in begins
@@ -353,14 +355,15 @@ struct SweepState {
   std::int32_t near = 0;    // subset behind, of the output
   std::int32_t visit = -1;  // subset behind of the form at the visit of the root we are in, or -1
   std::int32_t drawn =
-      0;         // optional: what the draw of this visit said (of this word, if it draws by word); 0: none yet
-  Key requests;  // of that visit, on the root and below
+      0;  // optional: what the draw of this visit said (of this word, if it draws by word); 0: none yet
+  std::int32_t length = 0;   // what that visit asks of the length of the root
+  Key requests;              // of that visit, on the root and below
   Key behind, behind_visit;  // what the letters behind say
   Key contents;              // by request node: content behind (+1)
   Key visit_contents;        // the same as it was at the visit
 
   Key Pack() const {
-    Key key{near, visit, drawn};
+    Key key{near, visit, drawn, length};
     for (const Key* part : {&requests, &behind, &behind_visit, &contents, &visit_contents}) Append(&key, *part);
     return key;
   }
@@ -387,6 +390,9 @@ class Sweep {
     }
     deciding_ = Deciding();
     asked_ = LinksAsked(requests.rule(), space_.tree());
+    const std::vector<Change>& changes = requests.rule().changes;
+    shortens_ =
+        std::any_of(changes.begin(), changes.end(), [](const Change& c) { return c.op == Change::Op::kShorten; });
   }
 
   bool over_budget() const { return near_.next.empty() || far_.next.empty(); }
@@ -394,22 +400,25 @@ class Sweep {
   std::size_t nodes() const { return requests_.nodes().size(); }
   bool saw_new_profile() const { return saw_new_profile_; }
 
-  // First pass, against the sweep. State: [far subset, ahead, content ahead (+1) and ahead of the mother (+1) by node].
+  // First pass, against the sweep. State: [far subset, ahead, last slot ahead, content ahead (+1) and ahead of the mother (+1)
+  // by node].
   Key FarStart() const {
-    Key state(2 + 2 * nodes(), 0);
+    Key state(kFarState + 2 * nodes(), 0);
     state[0] = far_.start;
-    state[1] = -1;
+    state[1] = state[2] = -1;
     return state;
   }
   PassStep Far(const Key& state, const Key& symbol) {
     PassStep step{state, symbol};
     step.symbol.push_back(state[0]);
     step.symbol.push_back(state[1]);
+    step.symbol.push_back(state[2]);
     const int profile = pattern_.Profile(symbol);
     step.state[0] = far_.next[state[0]][profile];
     step.state[1] = AheadBefore(state, symbol, profile);
+    step.state[2] = LastSlotBefore(state[2], symbol);
     for (std::size_t i = 0; i < nodes(); ++i) {
-      std::int32_t* contents = &step.state[2 + 2 * i];
+      std::int32_t* contents = &step.state[kFarState + 2 * i];
       std::int32_t content = -1;
       if (requests_.SpreadsFrom(!direction_.rightward, i) && space_.IsSlot(symbol[0])) {
         content = builder_.CarryContent(symbol, requests_.nodes()[i], !direction_.rightward, /*needed=*/true, contents);
@@ -460,7 +469,10 @@ class Sweep {
       if (known != 0 && known != drawn) continue;
       SweepState after = state;
       after.drawn = drawn | (state.drawn & kDrawnBefore);
-      if (drawn == kDrawnLeave) after.requests.assign(nodes(), 0);
+      if (drawn == kDrawnLeave) {
+        after.requests.assign(nodes(), 0);
+        after.length = 0;
+      }
       steps.push_back(Went(std::move(after), symbol, at_visit, drawn == kDrawnLeave ? requests_.None() : request));
       if (known == 0) steps.back().weight = drawn == kDrawnApply ? draw_.apply : draw_.leave;
     }
@@ -473,10 +485,11 @@ class Sweep {
   };
 
   // Past a slot of which this is asked.
-  PassStep Went(SweepState state, const Key& symbol, const Key& at_visit, const Key& request) {
+  PassStep Went(SweepState state, const Key& symbol, const Key& at_visit, Key request) {
     const Key input = Annotated(symbol, space_);
-    const std::int32_t* far_contents = &symbol[space_.AnnotatedSize() + 2];
-    const Key now = Current(input, state.behind);
+    const std::int32_t* far_contents = &symbol[space_.AnnotatedSize() + kFarState];
+    Key now = Current(input, state.behind);
+    if (request[0] & kLength) SettleLength(input, symbol[space_.AnnotatedSize() + 2], &request, &now);
     const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
     if (!asked) {
       const Key written = Written(InputWithOver(input, now), request, state.visit_contents, far_contents);
@@ -492,15 +505,48 @@ class Sweep {
     VisitOn(&state, input, at_visit);
     const bool relinked = Leave(&state, now, request, built);
     Forget(&state);
-    if (FreesBehind(now, request, built) || HalvesRoot(now, request) || relinked) with_flags[0] |= kUnsure;
+    if (FreesBehind(now, request, built) || HalvesRoot(at_visit, request) || LeavesRoot(request, built) || relinked) {
+      with_flags[0] |= kUnsure;
+    }
     return {state.Pack(), Written(InputWithOver(input, now), with_flags, before.visit_contents, far_contents)};
   }
 
+  // What is asked of the length of a root is done at its last slot. The slot before one that goes rightward ends the root, and
+  // stands on its far side as that one did. (`last`: Far; what a slot without a root between the two becomes is not followed.)
+  void SettleLength(const Key& input, std::int32_t last, Key* request, Key* now) const {
+    std::int32_t& asked = (*request)[0];
+    const std::int32_t marks = space_.Marks(input, kRootNode);
+    if (space_.Of(input[0], kRootNode).count == 0) {
+      asked = (asked & ~kLength) | (asked & kShorten ? kUnsure : 0);
+    } else if (!(marks & kToRight)) {
+      if (asked & kShorten) asked |= kDeleteSlot;
+      if ((asked & kLengthen) && (asked & kDeleteSlot))
+        asked = (asked & ~kLengthen) | (marks & kFromLeft ? kUnsure : 0);
+    } else {
+      if ((asked & kShorten) && last >= 0) {
+        const std::int32_t far = direction_.far_line() | direction_.far_object();
+        for (std::size_t i = 0; i < space_.live().size(); ++i) {
+          if (InRoot(space_.live()[i])) (*now)[1 + i] = ((*now)[1 + i] & ~far) | last_slots_[last][i];
+        }
+      }
+      asked &= ~kLength;
+    }
+  }
+
+  bool InRoot(NodeId node) const { return node == kRootNode || space_.tree().Dominates(kRootNode, node); }
+
+  // Does the last slot of a root that gets one more behind it give that root up?
+  bool LeavesRoot(const Key& request, const BuiltLetter& built) const {
+    if (!(request[0] & kLengthen)) return false;
+    const WorkPart* root = FindPart(built.slot, kRootNode, /*last=*/true);
+    return root == nullptr || root->origin != Origin::kOwn;
+  }
+
   // Is a new root asked for at one slot of a long one? Whether the other gets the same is decided there.
-  bool HalvesRoot(const Key& now, const Key& request) const {
+  bool HalvesRoot(const Key& at_visit, const Key& request) const {
     const int index = requests_.IndexOf(kRootNode);
     return index >= 0 && request[static_cast<std::size_t>(1 + index)] >> kValuesShift != 0 &&
-           (space_.Marks(now, kRootNode) & (kFromLeft | kToRight));
+           (space_.Marks(at_visit, kRootNode) & (kFromLeft | kToRight));
   }
 
   // Is a boundary the end of what one draw is for?
@@ -514,7 +560,8 @@ class Sweep {
     state.near = key[0];
     state.visit = key[1];
     state.drawn = key[2];
-    auto at = key.begin() + 3;
+    state.length = key[3];
+    auto at = key.begin() + 4;
     const auto take = [&at](std::size_t n) {
       Key part(at, at + static_cast<std::ptrdiff_t>(n));
       at += static_cast<std::ptrdiff_t>(n);
@@ -566,6 +613,19 @@ class Sweep {
     return aheads_.Intern(pairs);
   }
 
+  // In a sweep to the right: what the last slot of the root has on its far side, for the slot before it; -1: none, or another
+  // slot of the root comes first.
+  std::int32_t LastSlotBefore(std::int32_t last, const Key& symbol) {
+    if (!shortens_ || !direction_.rightward) return -1;
+    if (!space_.IsSlot(symbol[0]) || space_.Of(symbol[0], kRootNode).count == 0) return last;
+    if ((space_.Marks(symbol, kRootNode) & (kFromLeft | kToRight)) != kFromLeft) return -1;
+    Key far;
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      far.push_back(symbol[1 + i] & (direction_.far_line() | direction_.far_object()));
+    }
+    return last_slots_.Intern(far);
+  }
+
   // On to the next letter: a visit lasts while the root does.
   void VisitOn(SweepState* state, const Key& input, const Key& at_visit) {
     if (space_.Of(input[0], kRootNode).count > 0 && (space_.Marks(input, kRootNode) & direction_.far_line())) {
@@ -575,6 +635,7 @@ class Sweep {
     }
     state->visit = -1;
     if (!requests_.rule().by_word || (state->drawn & kDrawnBefore)) state->drawn = 0;
+    state->length = 0;
     state->requests.assign(nodes(), 0);
     state->behind_visit.assign(space_.live().size(), 0);
     state->visit_contents.assign(nodes(), 0);
@@ -663,6 +724,8 @@ class Sweep {
     }
     Key request = requests_.Of(Chosen(found), at_visit);
     const Key of_later = requests_.Of(Chosen(later), at_visit);
+    if (first) state->length = (request[0] | of_later[0]) & kLength;
+    request[0] = (request[0] & ~kLength) | state->length;
     for (std::size_t i = 0; i < nodes(); ++i) {
       if (requests_.nodes()[i] == kRootNode) continue;
       std::int32_t& carried = state->requests[i];
@@ -725,6 +788,7 @@ class Sweep {
     for (std::size_t i = 0; i < space_.live().size(); ++i) {
       const NodeId node = space_.live()[i];
       if (!deciding_[node] || !(now[1 + i] & direction_.near_line()) || LinkGoesOn(now, i)) continue;
+      if (InRoot(node) && DeletesOne(now, request)) continue;
       const WorkPart* first = FindPart(built.slot, node, !direction_.rightward);
       const int near_index = direction_.rightward ? 0 : space_.Of(now[0], node).count - 1;
       const bool stays = !(request[0] & kDeleteSlot) && first != nullptr && first->origin == Origin::kOwn &&
@@ -794,11 +858,13 @@ class Sweep {
     if (request[0] & kDeleteSlot) {
       for (std::size_t i = 0; i < space_.live().size(); ++i) {
         if (space_.Of(now[0], space_.live()[i]).count == 0 || LinkGoesOn(now, i)) continue;
+        if (InRoot(space_.live()[i]) && DeletesOne(now, request)) continue;
         relinked = relinked || (asked_[space_.live()[i]] && (behind_before[i] & kLinkedAhead));
         state->behind[i] &= ~kLinkedAhead;
       }
     } else {
-      const Key after = LeaveSlot(state, now, built);
+      const bool twice = (request[0] & kLengthen) || requests_.GivesLong(request);
+      const Key after = LeaveSlot(state, now, built, twice);
       for (std::size_t i = 0; i < space_.live().size(); ++i) {
         const std::int32_t lines = direction_.near_line() | kOver;
         relinked = relinked || (asked_[space_.live()[i]] && ((now[1 + i] ^ after[1 + i]) & lines));
@@ -806,6 +872,12 @@ class Sweep {
     }
     insertions(!direction_.rightward);
     return relinked;
+  }
+
+  // Is this slot deleted, and what its root bears on both sides told by another slot of the root?
+  bool DeletesOne(const Key& now, const Key& request) const {
+    return (request[0] & kDeleteSlot) &&
+           ((request[0] & kShorten) || (space_.Marks(now, kRootNode) & direction_.far_line()));
   }
 
   // With this letter's own N gone: is the N behind linked to the next one ahead?
@@ -834,24 +906,29 @@ class Sweep {
         state->contents[i] = builder_.ContentOf(annotated, requests_.nodes()[i], direction_.rightward) + 1;
       }
     }
-    if (!insertion.is_long) {
-      state->near = StepOn(state->near, Known(annotated));
+    StepOver(state, annotated, insertion.is_long);
+  }
+
+  // On over a slot as it is now, or over two of its root: all under it goes on from the one to the other.
+  void StepOver(SweepState* state, const Key& letter, bool twice) {
+    if (!twice) {
+      state->near = StepOn(state->near, Known(letter));
       return;
     }
-    // Two slots of one root.
     for (const bool first : {true, false}) {
-      Key half = annotated;
+      Key half = letter;
       for (std::size_t i = 0; i < space_.live().size(); ++i) {
-        if (space_.Of(half[0], space_.live()[i]).count == 0) continue;
+        const NodeId node = space_.live()[i];
+        if (!InRoot(node) || space_.Of(half[0], node).count == 0) continue;
         half[1 + i] |= first ? direction_.far_line() : direction_.near_line();
-        if (space_.live()[i] == kRootNode) half[1 + i] |= first ? direction_.far_object() : direction_.near_object();
+        if (node == kRootNode) half[1 + i] |= first ? direction_.far_object() : direction_.near_object();
       }
       state->near = StepOn(state->near, Known(half));
     }
   }
 
-  // The letter as it is now.
-  Key LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built) {
+  // The letter as it is now; there are two if its root gets a slot behind it.
+  Key LeaveSlot(SweepState* state, const Key& now, const BuiltLetter& built, bool twice) {
     Key letter(space_.AnnotatedSize(), 0);
     letter[0] = builder_.ClassOf(built.slot, now[0]);
     space_.SetAround(&letter, space_.Around(now));
@@ -866,7 +943,7 @@ class Sweep {
       if (part->origin == Origin::kNewLeft) BreakLinks(&content, now);
       Remember(state, i, std::move(content));
     }
-    state->near = StepOn(state->near, Known(AsRead(letter)));
+    StepOver(state, AsRead(letter), twice);
     return letter;
   }
 
@@ -979,6 +1056,8 @@ class Sweep {
   NodeSet deciding_;
   NodeSet asked_;  // nodes of whose lines the pattern asks
   KeyPool aheads_;
+  KeyPool last_slots_;
+  bool shortens_ = false;
   bool saw_new_profile_ = false;
 };
 

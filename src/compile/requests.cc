@@ -187,6 +187,15 @@ bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) cons
   return false;
 }
 
+bool RequestSpace::GivesLong(const Key& request) const {
+  const int index = IndexOf(kRootNode);
+  if (index < 0 || request[1 + index] >> kValuesShift == 0) return false;
+  const Content& content = contents_[static_cast<std::size_t>(request[1 + index] >> kValuesShift) - 1];
+  return std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& change) {
+    return change.op == Change::Op::kSetLiteral && change.is_long && Content{change.inserted} == content;
+  });
+}
+
 bool RequestSpace::InConflict(const Role& a, const Role& b, const Key& annotated) const {
   return Clashes(Of({&a, &b}, annotated), annotated) && !Clashes(Of({&a}, annotated), annotated) &&
          !Clashes(Of({&b}, annotated), annotated);

@@ -27,10 +27,11 @@ enum RequestBit : std::int32_t {
 };
 enum SlotBit : std::int32_t {
   kDeleteSlot = 1,
-  kReaches = 2,      // an iterative change that reaches another root
-  kUnsure = 4,       // an iterative change that may free a nearer target behind it (compile/find.h)
-  kLengthen = 8,     // the root gets one slot more, behind its last one
-  kShorten = 16,     // the root loses its last slot
+  kReaches = 2,   // an iterative change that reaches another root
+  kUnsure = 4,    // an iterative change that may free a nearer target behind it (compile/find.h)
+  kLengthen = 8,  // the root gets one slot more, behind its last one
+  kShorten = 16,  // the root loses its last slot
+  kLength = kLengthen | kShorten,
   kJoined = 32,      // its new root is that of the slot on its left as well
   kInsertShift = 6,  // from here up: one bit for each change of the rule
 };
@@ -65,6 +66,8 @@ class RequestSpace {
   bool ReachesFurther(const Key& request, const Key& annotated) const;
   // Would what two matches ask of one letter not go together, though each alone does?
   bool InConflict(const Role& a, const Role& b, const Key& annotated) const;
+  // Is the slot given a new root that is long?
+  bool GivesLong(const Key& request) const;
   // Both of one object.
   static std::int32_t Combine(std::int32_t a, std::int32_t b);
   const Rule& rule() const { return rule_; }

@@ -164,22 +164,12 @@ class ApplyPass {
     if (!(request[0] & kDeleteSlot)) {
       output->emplace_back(AfterDeletions(built->slot, letter[0], state), -1);
       const bool joined = joined_right || (request[0] & kJoined);
-      if ((request[0] & kLengthen) || (LongLiteral(request) && !joined))
+      if ((request[0] & kLengthen) || (requests_.GivesLong(request) && !joined))
         output->emplace_back(SlotBefore(built->slot, letter[0], state), -1);
       return;
     }
     const Key between = Between(ClassWithLinks(built->slot, letter[0]), state);
     erase_.Letter(between, nullptr, &(*state)[erase_at_]);
-  }
-
-  // Is the slot given a new root that is long?
-  bool LongLiteral(const Key& request) const {
-    const int index = requests_.IndexOf(kRootNode);
-    if (index < 0 || request[1 + index] >> kValuesShift == 0) return false;
-    const Content& content = requests_.contents()[static_cast<std::size_t>(request[1 + index] >> kValuesShift) - 1];
-    return std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& change) {
-      return change.op == Change::Op::kSetLiteral && change.is_long && Content{change.inserted} == content;
-    });
   }
 
   int ClassWithLinks(const WorkPart& slot, int like) const {

@@ -29,7 +29,7 @@ class Lister {
     VisitBoundaries(clause.where);
     if (rule.by_word) VisitFirst(clause.where);
     for (const Change& change : clause.changes) {
-      VisitChange(rule, change);
+      VisitChange(change);
       if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
     }
   }
@@ -64,29 +64,7 @@ class Lister {
     }
   }
 
-  void VisitChange(const Rule& rule, const Change& change) {
-    switch (change.op) {
-      case Change::Op::kSpread:
-      case Change::Op::kDelink:
-      case Change::Op::kSet:
-      case Change::Op::kFill:
-      case Change::Op::kInsert:
-      case Change::Op::kDelete:
-        break;
-      case Change::Op::kSetAs:
-      case Change::Op::kFillAs:
-      case Change::Op::kMerge:
-        break;
-      case Change::Op::kSetLiteral:
-        if (rule.mode != Rule::Mode::kAtOnce && change.is_long)
-          Add(change.span, "giving a long segment in a rule that iterates is", "apply the rule at once");
-        break;
-      case Change::Op::kLengthen:
-      case Change::Op::kShorten:
-        if (rule.mode != Rule::Mode::kAtOnce)
-          Add(change.span, "`lengthen` or `shorten` in a rule that iterates is", "apply the rule at once");
-        break;
-    }
+  void VisitChange(const Change& change) {
     const bool cuts = change.op == Change::Op::kDelink && change.member.which == Member::Which::kValue;
     if (cuts && tree_[change.node].max > 3) Add(change.span, "one member of a contour of more than three parts is");
     VisitNode(change.node, change.span);

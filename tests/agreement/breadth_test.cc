@@ -33,6 +33,7 @@ void CompareConstruct(Construct construct, std::uint64_t seed, int rules, int fo
         construct == Construct::kSameMorpheme || construct == Construct::kBoundary) {
       options.boundary = 0.3;
     }
+    if (construct == Construct::kLengthen || construct == Construct::kShorten) options.empty = 0.1;
     std::vector<Form> forms;
     for (int k = 0; k < forms_each; ++k) {
       const Form form = RandomForm(rng, grammar, few, options);

@@ -74,9 +74,9 @@ class Decorator {
       case Construct::kCopy:
         return Copy();
       case Construct::kLengthen:
-        return Only(Op::kLengthen);
+        return ChangeLength(Op::kLengthen);
       case Construct::kShorten:
-        return Only(Op::kShorten);
+        return ChangeLength(Op::kShorten);
       case Construct::kMerge:
         return Merge();
       case Construct::kBoundary:
@@ -295,10 +295,25 @@ class Decorator {
     if (op == Op::kInsert) {
       change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
       change.is_long = true;
-    } else if (op != Op::kSetLiteral) {
-      rule_->mode = Rule::Mode::kAtOnce;
     }
     rule_->changes = {change};
+    return true;
+  }
+
+  // Alone, or beside what else the rule does to that item; often where length is asked for.
+  bool ChangeLength(Op op) {
+    const std::vector<Change> others = rule_->changes;
+    Only(op);
+    for (const Change& other : others) {
+      const bool of_it = other.target == rule_->changes.front().target && other.source != other.target;
+      if (of_it && other.op != Op::kDelete && other.node != kRootNode && Chance(rng_, 0.4))
+        rule_->changes.push_back(other);
+    }
+    if (Chance(rng_, 0.6)) AddTest(Random({FeatureTest::Kind::kLong, FeatureTest::Kind::kShort}));
+    if (rule_->mode != Rule::Mode::kAtOnce && Chance(rng_, 0.2)) {
+      rule_->probability = 0.5;
+      rule_->by_word = Chance(rng_, 0.5);
+    }
     return true;
   }
 
@@ -508,7 +523,7 @@ class Decorator {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
     change.inserted = letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
-    change.is_long = rule_->mode == Rule::Mode::kAtOnce && Chance(rng_, 0.25);
+    change.is_long = Chance(rng_, 0.35);
     return true;
   }
 
@@ -700,7 +715,8 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
   for (;;) {
     Rule rule = RandomRule(rng, grammar, tests, letters);
     if (!Decorate(rng, grammar, letters, construct, &rule)) continue;
-    if (construct == Construct::kOtherwise) {
+    const bool length = construct == Construct::kLengthen || construct == Construct::kShorten;
+    if (construct == Construct::kOtherwise || (length && rule.mode != Rule::Mode::kAtOnce && Chance(rng, 0.2))) {
       const int further = Chance(rng, 0.3) ? 2 : 1;
       for (int i = 0; i < further; ++i) {
         Rule other = RandomRule(rng, grammar, tests, letters);
@@ -713,7 +729,7 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
       }
     }
     if (construct == Construct::kComplete) return rule;
-    if (construct == Construct::kOtherwise && !NotRunYet(rule, {}, grammar.tree).empty()) continue;
+    if (!rule.otherwise.empty() && !NotRunYet(rule, {}, grammar.tree).empty()) continue;
     NoteEmpty(&rule.where);
     if (!Refused(grammar.tree, rule)) return rule;
   }
