@@ -371,7 +371,7 @@ class CascadeCompiler {
     const std::string possibly = segment_.exact ? "" : "possibly reached: ";
     const std::vector<TapeArc> ambiguous = ShortestThrough(composed, flagged(kFlagAmbiguous), &at);
     if (!ambiguous.empty()) {
-      const std::string form = FormText(ambiguous);
+      const std::string form = FormText(ambiguous, data_->segments.size());
       diagnostics_.Add(
           {Kind::kAmbiguousRule,
            severity,
@@ -394,7 +394,7 @@ class CascadeCompiler {
            rule.span,
            fmt::format(
                "{}rule \"{}\" iterates, but in /{}/ its change would reach another segment through a shared node",
-               possibly, rule.name, FormText(reaches)),
+               possibly, rule.name, FormText(reaches, data_->segments.size())),
            "spread or set the lower feature instead of what is shared, delink it first in a rule of its own, or apply "
            "the "
            "rule at once (without `iterate`)",
@@ -411,11 +411,11 @@ class CascadeCompiler {
                ? fmt::format(
                      "{}rule \"{}\" in /{}/ changes a node that several segments share, and what becomes of the "
                      "others would have to be judged as well: this cannot be compiled",
-                     possibly, rule.name, FormText(unsure))
+                     possibly, rule.name, FormText(unsure, data_->segments.size()))
                : fmt::format(
                      "{}rule \"{}\" iterates, and in /{}/ its change decides about a segment that the sweep has "
                      "passed, or replaces half of a long one: this cannot be compiled",
-                     possibly, rule.name, FormText(unsure)),
+                     possibly, rule.name, FormText(unsure, data_->segments.size())),
            rule.mode == Rule::Mode::kAtOnce
                ? "delink or spread what is shared in a rule of its own before this one"
                : "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
@@ -499,12 +499,12 @@ class CascadeCompiler {
     std::size_t at = 0;
     const std::vector<TapeArc> path = ShortestThrough(
         last.machine, [&](const TapeArc& arc) { return arc.in == wanted.in && arc.out == wanted.out; }, &at);
-    const std::string form = FormText(path, static_cast<int>(at), rest);
+    const std::string form = FormText(path, data_->segments.size() - 1, static_cast<int>(at), rest);
     const std::vector<int>& candidates = grammar_.inventory.Spell(tree).candidates;
     std::string message = candidates.empty()
                               ? fmt::format("no symbol spells {}", grammar_.inventory.Describe(tree, grammar_.tree))
                               : fmt::format("two or more symbols could spell {}", Bracketed(tree));
-    const bool whole = data_->segments.size() == 1;  // else the path begins in the middle
+    const bool whole = data_->segments.back().exact;  // else the path begins in the middle
     message += whole ? fmt::format(", which /{}/ comes to", form) : ", which some form may come to";
     Span span = grammar_.rules.empty() ? Span{} : grammar_.rules.back().span;
     const int rule = whole ? LastRuleThatChanged(form, tree) : -1;
@@ -597,12 +597,28 @@ class CascadeCompiler {
     return roots;
   }
 
-  // A form that goes this path, written with the first symbols that fit; at position `at`, one with the given rest.
-  std::string FormText(const std::vector<TapeArc>& path, int at = -1, int rest = -1) const {
+  // An underlying form that goes this path through the segment number `segment`, written with the first symbols that fit; at
+  // position `at` of the path, one with the given rest.
+  std::string FormText(std::vector<TapeArc> path, std::size_t segment, int at = -1, int rest = -1) const {
+    while (segment > 0) {
+      const Tape& machine = data_->segments[--segment].machine;
+      std::vector<int> classes;
+      for (const TapeArc& arc : path) classes.push_back(arc.in);
+      std::vector<std::size_t> written_by;
+      std::vector<TapeArc> before = ShortestWriting(machine, classes, &written_by);
+      if (before.empty()) break;  // what comes in is not followed exactly
+      if (at >= 0) {
+        const std::size_t arc = written_by[static_cast<std::size_t>(at)];
+        const auto first = std::find(written_by.begin(), written_by.end(), arc) - written_by.begin();
+        const bool of_the_letter = machine.symbols[before[arc].out][2 + 2 * static_cast<std::size_t>(at - first)] < 0;
+        at = of_the_letter ? static_cast<int>(arc) : -1;
+      }
+      path = std::move(before);
+    }
     std::vector<const InputLetter*> letters;
     for (std::size_t i = 0; i < path.size(); ++i) {
       const InputLetter* before = letters.empty() ? nullptr : letters.back();
-      const InputLetter* chosen = nullptr;  // past a cut the letters are not underlying ones
+      const InputLetter* chosen = nullptr;  // past an inexact cut the letters are not underlying ones
       for (const InputLetter& input : data_->inputs) {
         if (input.parts.class_id != path[i].in) continue;
         if (static_cast<int>(i) == at && input.parts.rest != rest) continue;

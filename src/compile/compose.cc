@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <deque>
+#include <map>
 #include <set>
 
 namespace tiersmith {
@@ -168,6 +169,39 @@ std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(
   std::reverse(path.begin(), path.end());
   std::reverse(flips.begin(), flips.end());
   *at = static_cast<std::size_t>(std::find(flips.begin(), flips.end(), 1) - flips.begin());
+  return path;
+}
+
+std::vector<TapeArc> ShortestWriting(const Tape& tape, const std::vector<int>& classes,
+                                     std::vector<std::size_t>* written_by) {
+  // Breadth first over (state, how many of the classes are written).
+  using Node = std::pair<int, std::size_t>;
+  std::map<Node, std::pair<Node, TapeArc>> from;
+  std::deque<Node> queue;
+  for (int s : tape.starts) {
+    if (from.emplace(Node{s, 0}, std::make_pair(Node{-1, 0}, TapeArc{})).second) queue.push_back({s, 0});
+  }
+  std::vector<TapeArc> path;
+  written_by->clear();
+  for (; !queue.empty(); queue.pop_front()) {
+    const auto [state, done] = queue.front();
+    if (tape.ends[state] && done == classes.size()) break;
+    for (const TapeArc& arc : tape.arcs[state]) {
+      const Key& string = tape.symbols[arc.out];
+      std::size_t now = done;
+      bool fits = true;
+      for (std::size_t k = 1; fits && k + 1 < string.size(); k += 2, ++now)
+        fits = now < classes.size() && classes[now] == string[k];
+      if (fits && from.emplace(Node{arc.next, now}, std::make_pair(queue.front(), arc)).second)
+        queue.push_back({arc.next, now});
+    }
+  }
+  if (queue.empty()) return path;
+  for (Node at = queue.front(); from.at(at).first.first >= 0; at = from.at(at).first)
+    path.push_back(from.at(at).second);
+  std::reverse(path.begin(), path.end());
+  for (std::size_t i = 0; i < path.size(); ++i)
+    written_by->insert(written_by->end(), (tape.symbols[path[i].out].size() - 1) / 2, i);
   return path;
 }
 

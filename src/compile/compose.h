@@ -20,6 +20,11 @@ std::vector<int> ClassesWritten(const Tape& tape);
 std::vector<TapeArc> ShortestThrough(const Tape& tape, const std::function<bool(const TapeArc&)>& wanted,
                                      std::size_t* at);
 
+// The arcs of a shortest accepted path that writes these classes; none if there is none. `written_by`: for each of the
+// classes the position of its arc on the path.
+std::vector<TapeArc> ShortestWriting(const Tape& tape, const std::vector<int>& classes,
+                                     std::vector<std::size_t>* written_by);
+
 // Replaces the symbols of a tape.
 Tape MapSymbols(const Tape& tape, const std::function<Key(const Key&)>& map);
 

@@ -170,7 +170,8 @@ std::optional<std::string> CompareRule(const Grammar& grammar, const std::vector
 std::optional<std::string> CompareGrammar(const Grammar& grammar, const std::vector<Form>& forms, Tally* tally,
                                           bool* compiled) {
   Diagnostics diagnostics;
-  const Limits limits;
+  Limits limits;
+  if (tally->rules % 2 == 1) limits.joined_states = 1;  // a segment for each rule
   const std::unique_ptr<Cascade> cascade = Compile(grammar, limits, diagnostics);
   *compiled = cascade != nullptr;
   if (cascade == nullptr) return std::nullopt;

@@ -159,6 +159,39 @@ TEST_CASE("cascade: patterns past every budget are refused", "[unit]") {
   }
 }
 
+// Whatever stands between, the form shown is an underlying one, and what is said of it is the same.
+TEST_CASE("cascade: messages past a cut show underlying forms", "[unit]") {
+  const std::string before =
+      "rule \"one\" { where X:/t/ [+syll] set X [-voice +nasal] } rule \"two\" { where X:/k/ # delete X } ";
+  const std::string rules[] = {
+      "rule \"r\" { where L:[-son] N:/n/ R:[-son] delink N.Place spread L.Place to N spread R.Place to N }",
+      "rule \"three\" { where N:[+nasal] C:[+cons Place] delink N.Place spread C.Place to N } "
+      "rule \"r\" { where X:[-son Dorsal] set X [Labial] iterate rightward }",
+      "rule \"r\" { where X:[+nasal] set X [-voice] }",
+  };
+  Limits each;
+  each.joined_states = 1;
+  for (const std::string& rule : rules) {
+    CAPTURE(rule);
+    const Compiled cut = CompileText(kSmallInventory + before + rule, each);
+    const Diagnostics& whole = CompileText(kSmallInventory + before + rule).diagnostics;
+    REQUIRE(!cut.diagnostics.all().empty());
+    CHECK(whole.all().size() == cut.diagnostics.all().size());
+    const Reader reader(cut.grammar());
+    for (const Diagnostic& d : cut.diagnostics.all()) {
+      CAPTURE(d.message);
+      CHECK(Find(whole, d.kind) != nullptr);
+      std::vector<Token> tokens;
+      TextError error;
+      REQUIRE(reader.Read(FormIn(d.message), Reader::Side::kUnderlying, &tokens, &error));
+      const Derivation derived = Derive(cut.grammar(), reader.FormOf(tokens, Reader::Side::kUnderlying));
+      std::string text;
+      FeatureTree tree;
+      CHECK((!derived.problem.empty() || !WriteForm(cut.grammar(), derived.surface, &text, &tree)));
+    }
+  }
+}
+
 // Where the next rule would pass a budget the cascade is cut, and the machines run one after the other: no form comes out differently.
 TEST_CASE("cascade: cut in two it derives the same", "[unit]") {
   struct Case {
