@@ -84,9 +84,13 @@ int RequestSpace::IndexOf(NodeId node) const {
   return it == nodes_.end() ? -1 : static_cast<int>(it - nodes_.begin());
 }
 
-int RequestSpace::ContentIndex(const Content& content) const {
-  const auto at = std::find(contents_.begin(), contents_.end(), content) - contents_.begin();
-  if (at == static_cast<std::ptrdiff_t>(contents_.size())) contents_.push_back(content);
+int RequestSpace::ContentIndex(const Content& content, bool is_long) const {
+  std::size_t at = 0;
+  while (at < contents_.size() && !(contents_[at] == content && (long_[at] != 0) == is_long)) ++at;
+  if (at == contents_.size()) {
+    contents_.push_back(content);
+    long_.push_back(is_long);
+  }
   return static_cast<int>(at);
 }
 
@@ -169,7 +173,7 @@ void RequestSpace::AskOf(std::size_t i, const Role& role, const Item& item) cons
               item);
       break;
     case Change::Op::kSetLiteral:
-      AskContent(kRootNode, {change.inserted}, item);
+      AskContent(kRootNode, {change.inserted}, item, change.is_long);
       break;
     case Change::Op::kMerge:  // it depends on both items
     case Change::Op::kLengthen:
@@ -189,11 +193,8 @@ bool RequestSpace::ReachesFurther(const Key& request, const Key& annotated) cons
 
 bool RequestSpace::GivesLong(const Key& request) const {
   const int index = IndexOf(kRootNode);
-  if (index < 0 || request[1 + index] >> kValuesShift == 0) return false;
-  const Content& content = contents_[static_cast<std::size_t>(request[1 + index] >> kValuesShift) - 1];
-  return std::any_of(rule_.changes.begin(), rule_.changes.end(), [&](const Change& change) {
-    return change.op == Change::Op::kSetLiteral && change.is_long && Content{change.inserted} == content;
-  });
+  const std::int32_t content = index < 0 ? 0 : request[1 + index] >> kValuesShift;
+  return content != 0 && long_[static_cast<std::size_t>(content) - 1] != 0;
 }
 
 bool RequestSpace::InConflict(const Role& a, const Role& b, const Key& annotated) const {
@@ -296,10 +297,10 @@ void RequestSpace::AskCopy(NodeId node, bool fill, const Content& content, const
 }
 
 // Asks for nothing if just this is there.
-void RequestSpace::AskContent(NodeId node, const Content& content, const Item& item) const {
+void RequestSpace::AskContent(NodeId node, const Content& content, const Item& item, bool is_long) const {
   if (ContentUnder(space_.classes()[item.letter[0]].visible.part, node) == content) return;
   std::int32_t& at = item.asks[IndexOf(node)];
-  at = Combine(at, AskFor(content));
+  at = Combine(at, AskFor(content, is_long));
 }
 
 std::int32_t RequestSpace::Combine(std::int32_t a, std::int32_t b) {

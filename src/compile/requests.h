@@ -61,7 +61,9 @@ class RequestSpace {
   // What the roles at one letter ask.
   Key Of(const std::vector<const Role*>& roles, const Key& annotated) const;
   // The request for this content.
-  std::int32_t AskFor(const Content& content) const { return (1 + ContentIndex(content)) << kValuesShift; }
+  std::int32_t AskFor(const Content& content, bool is_long = false) const {
+    return (1 + ContentIndex(content, is_long)) << kValuesShift;
+  }
   // Is something asked of a mother of the slot that another root holds as well?
   bool ReachesFurther(const Key& request, const Key& annotated) const;
   // Would what two matches ask of one letter not go together, though each alone does?
@@ -86,8 +88,8 @@ class RequestSpace {
   std::int32_t CutOf(const Change& change, const Role& role, const Key& annotated) const;
   void AskSettings(const Change& change, const Role& role, const Item& item) const;
   void AskCopy(NodeId node, bool fill, const Content& content, const Item& item) const;
-  void AskContent(NodeId node, const Content& content, const Item& item) const;
-  int ContentIndex(const Content& content) const;
+  void AskContent(NodeId node, const Content& content, const Item& item, bool is_long = false) const;
+  int ContentIndex(const Content& content, bool is_long) const;
 
   const Rule& rule_;
   const RuleSpace& space_;
@@ -96,6 +98,7 @@ class RequestSpace {
   std::vector<NodeId> nodes_;
   std::vector<std::size_t> grown_;         // the insertions that other changes go on with
   mutable std::vector<Content> contents_;  // grows as roles ask for more
+  mutable std::vector<char> long_;         // of each: is the root to be long
 };
 
 // What a letter's part bears of `node`, in order.

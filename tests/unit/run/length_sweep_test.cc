@@ -114,4 +114,18 @@ TEST_CASE("length in a sweep: another segment, and long", "[unit]") {
             });
 }
 
+TEST_CASE("length: the same segment short and long in one rule", "[unit]") {
+  // At the end of a word i, elsewhere iː.
+  const std::string clauses =
+      "where X:[+syll short +low] #  set X /i/  otherwise where X:[+syll short +low] C  set X /iː/";
+  for (const char* mode : {"", "  iterate rightward", "  iterate leftward"}) {
+    CheckRows("rule \"raise\" { " + clauses + mode + " }", {
+                                                               {"ta", "ti"},
+                                                               {"tata", "tiːti"},
+                                                               {"tatat", "tiːtiːt"},
+                                                               {"taːta", "taːti"},
+                                                           });
+  }
+}
+
 }  // namespace tiersmith::testing
