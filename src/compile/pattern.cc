@@ -64,8 +64,9 @@ enum WatchState : std::int32_t { kUnheld = 0, kFreelyHeld = 1, kHeldOutside = 2,
 // In the last entry of a role, beside the merges: whether the change crosses a line is not known.
 constexpr std::int32_t kDoubtful = 1 << 30;
 
-// Needs of a boundary: of a strength, or none at all (`&`).
+// Needs of a boundary: of a strength, none at all (`&`), or the form's own edge.
 constexpr std::int32_t kNoBoundary = -1;
+constexpr std::int32_t kFormEdge = static_cast<std::int32_t>(Boundary::kPhrase) + 1;
 
 // A condition that asks for the very instance, between its two items; one that compares contents keeps 1 + the content.
 enum ConditionState : std::int32_t { kLacks = -1, kNotMet = 0, kStillHeld = 1, kLost = 2 };
@@ -797,9 +798,9 @@ struct PatternCompiler::Impl {
     }
     for (std::size_t i = 0; i < rule.labels.size(); ++i) {
       const int label = static_cast<int>(i);
-      profile[LabelField(label)] = !TagsAllow(letter, label) ? kBarred
-                                   : changed[i]              ? Changeable(letter, label)
-                                                             : kAllowed;
+      profile[LabelField(label)] = !TagsAllow(&letter, label) ? kBarred
+                                   : changed[i]               ? Changeable(letter, label)
+                                                              : kAllowed;
     }
     for (std::size_t i = 0; i < copies.size(); ++i) {
       const std::int32_t source = ContentNumber(visible.part, copies[i].node, copies[i].member);
@@ -1021,13 +1022,13 @@ struct PatternCompiler::Impl {
     });
   }
 
-  // The tag tests of the label's clause.
-  bool TagsAllow(const Key& letter, int label) const {
+  // The tag tests of the label's clause. No letter: the end of the form.
+  bool TagsAllow(const Key* letter, int label) const {
     for (const ClausePrograms& programs : clauses) {
       if (programs.labels.count(label) == 0) continue;
       for (const TagTest& test : programs.clause->tags) {
         const bool concerned = test.scope == TagTest::Scope::kLabel ? test.label == label : changed[label] != 0;
-        if (concerned && !space.Allows(letter, test)) return false;
+        if (concerned && (letter != nullptr ? !space.Allows(*letter, test) : test.only)) return false;
       }
     }
     return true;
@@ -1235,8 +1236,28 @@ struct PatternCompiler::Impl::Builder {
   bool IsFinal(const Key& config) const {
     if (config[kPc] == kSuffix) return true;
     if (config[kPc] == kPrefix) return false;
-    return program.code[config[kPc]].op == Instruction::Op::kAccept &&
-           Settled(config);  // the end of the form is a boundary
+    return program.code[config[kPc]].op == Instruction::Op::kAccept && Settled(config) && EndsForm(config);
+  }
+
+  // The end of the form is a boundary, in no morpheme.
+  bool EndsForm(const Key& config) const {
+    return !Labelled(config) || (config[kNeed] == kFormEdge && impl.TagsAllow(nullptr, config[kNeedLabel] - 1));
+  }
+
+  // Is the boundary needed one with a label?
+  bool Labelled(const Key& config) const { return config[kNeed] > 0 && config[kNeedLabel] > 0; }
+
+  // The slot behind a labelled boundary, whose morpheme is that of the boundary.
+  bool LabelAllowed(const Key& config, const Key& letter) const {
+    return !Labelled(config) || letter[impl.LabelField(config[kNeedLabel] - 1)] != kBarred;
+  }
+
+  // At an end of the match a labelled run may be stronger than named, or the form's edge, which stays: each guess.
+  void GuessRun(Key config, std::vector<Key>* result) const {
+    for (; config[kNeed] <= kFormEdge; ++config[kNeed]) {
+      config[kSeen] = config[kNeed] == kFormEdge;
+      result->push_back(config);
+    }
   }
 
   // Configurations after the program consumed a slot (or, with `first`, before its first one).
@@ -1253,7 +1274,11 @@ struct PatternCompiler::Impl::Builder {
         if (first || !Complete(config)) continue;
         if (need == 0) config = Done(config);
       }
-      result->push_back(std::move(config));
+      if ((first || accept) && Labelled(config)) {
+        GuessRun(config, result);
+      } else {
+        result->push_back(std::move(config));
+      }
     }
   }
 
@@ -1301,7 +1326,9 @@ struct PatternCompiler::Impl::Builder {
       machine.initial.push_back(Intern(Start(mask)));
       std::vector<Key> starts;
       After(Start(mask), program.start, /*first=*/true, &starts);
-      for (const Key& config : starts) machine.initial.push_back(Intern(config));
+      for (const Key& config : starts) {
+        if (!Labelled(config) || config[kNeed] == kFormEdge) machine.initial.push_back(Intern(config));
+      }
     }
     for (int at = 0; at < configs.size(); ++at) {
       if (static_cast<std::size_t>(configs.size()) > max_states) return OverBudget();
@@ -1317,6 +1344,7 @@ struct PatternCompiler::Impl::Builder {
     const std::int32_t kind = letter[kProfileKind];
     const std::int32_t boundary = kind >= kBoundaryKind ? (kind - kBoundaryKind) % kOutsideStem : 0;
     const bool outside = kind >= kBoundaryKind + kOutsideStem;
+    const bool visible = kind == kSlotKind || (kind == kEmptyKind && program.sees_empty);
     if (config[kPc] == kSuffix) {
       Add(at, profile, -1, -1, config);
       return;
@@ -1334,7 +1362,9 @@ struct PatternCompiler::Impl::Builder {
       std::vector<Key> starts;
       After(base, program.start, /*first=*/true, &starts);
       for (const Key& start : starts) {
-        if (start[kNeed] <= 0 || boundary >= start[kNeed]) Add(at, profile, -1, -1, start);
+        const bool begins =
+            Labelled(start) ? visible && start[kNeed] != kFormEdge : start[kNeed] <= 0 || boundary >= start[kNeed];
+        if (begins) Add(at, profile, -1, -1, start);
       }
       return;
     }
@@ -1343,7 +1373,6 @@ struct PatternCompiler::Impl::Builder {
       SkipBoundary(at, config, profile, boundary, outside || boundary >= edge, instruction);
       return;
     }
-    const bool visible = kind == kSlotKind || program.sees_empty;
     const bool through = visible && instruction.op == Instruction::Op::kGap && letter[impl.GapField(instruction.gap)];
     const bool before_first = config[kPhase] == 0 && config[kNeed] == 0;
     if (!before_first && (!visible || through)) {
@@ -1351,7 +1380,12 @@ struct PatternCompiler::Impl::Builder {
       for (const Key& next : Walk(config, letter, &merging)) Add(at, profile, -1, MergingRole(merging), next);
     }
     if (!visible) return;
-    if (instruction.op == Instruction::Op::kSlot) {
+    if (instruction.op == Instruction::Op::kAccept) {
+      Key next = config;
+      const bool met = Labelled(config) && config[kSeen] && config[kNeed] != kFormEdge;
+      if (met && LabelAllowed(config, letter) && PassWatches(letter, -1, /*matched=*/false, &next))
+        Add(at, profile, -1, -1, Done(next));
+    } else if (instruction.op == Instruction::Op::kSlot) {
       Consume(at, config, profile, letter, config[kPc]);
     } else if (instruction.op == Instruction::Op::kGap) {
       for (const auto& [pc, need, named] : Close(instruction.next)) {
@@ -1379,16 +1413,17 @@ struct PatternCompiler::Impl::Builder {
   void SkipBoundary(int at, const Key& config, int profile, std::int32_t boundary, bool outside,
                     const Instruction& instruction) {
     Key next = config;
-    if (config[kPhase] == 0) {
+    const bool leading = config[kPhase] == 0, trailing = instruction.op == Instruction::Op::kAccept;
+    if (leading && !Labelled(config)) {
       if (config[kNeed] > 0) Add(at, profile, -1, -1, next);  // more of the leading run
       return;
     }
-    if (instruction.op == Instruction::Op::kAccept) {
+    if (trailing && !Labelled(config)) {
       if (boundary >= config[kNeed]) next = Done(config);
       Add(at, profile, -1, -1, next);
       return;
     }
-    if (outside || config[kNeed] == kNoBoundary) return;
+    if ((outside && !leading && !trailing) || config[kNeed] == kNoBoundary) return;
     if (config[kNeed] > 0) {
       if (boundary > config[kNeed]) return;
       if (boundary == config[kNeed]) next[kSeen] = 1;
@@ -1631,6 +1666,7 @@ struct PatternCompiler::Impl::Builder {
   void Consume(int at, const Key& config, int profile, const Key& letter, int pc) {
     const Instruction& slot = program.code[pc];
     if (config[kNeed] > 0 && !config[kSeen]) return;
+    if (!LabelAllowed(config, letter)) return;
     if (!letter[1 + slot.test] || !letter[impl.DomainField()]) return;
     const int label = main && slot.mark >= 0 && slot.mark < static_cast<int>(impl.rule.labels.size()) ? slot.mark : -1;
     if (label >= 0 && !letter[impl.LabelField(label)]) return;

@@ -26,8 +26,8 @@ class Lister {
   }
 
   void VisitClause(const Rule& rule, const Clause& clause) {
-    VisitBoundaries(clause.where);
-    if (rule.by_word) VisitFirst(clause.where);
+    if (!rule.otherwise.empty()) VisitEnds(clause.where);
+    if (rule.by_word) VisitEndsOfWord(clause.where);
     for (const Change& change : clause.changes) {
       VisitChange(change);
       if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
@@ -42,26 +42,29 @@ class Lister {
     if (!said) found_.push_back({span, std::move(what), std::move(remedy)});
   }
 
-  // A deleted boundary stands between two items, whose run it is.
-  void VisitBoundaries(const Pattern& pattern) {
+  // What one clause takes from another is told by letters, and the form's edge is none.
+  void VisitEnds(const Pattern& pattern) {
     for (std::size_t i = 0; i < pattern.items.size(); ++i) {
       const PatternItem& item = pattern.items[i];
-      const bool edge = i == 0 || i + 1 == pattern.items.size();
-      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0 && edge)
-        Add(item.span, "a labelled boundary at the end of a pattern is",
+      const bool end = i == 0 || i + 1 == pattern.items.size();
+      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0 && end)
+        Add(item.span, "beside `otherwise`, a labelled boundary at the end of a pattern is",
             "let the pattern name the item beyond it: [] is any");
-      for (const Pattern& alternative : item.alternatives) VisitBoundaries(alternative);
+      for (const Pattern& alternative : item.alternatives) VisitEnds(alternative);
     }
   }
 
-  // Its match is of the word where the first slot stands, which would come later.
-  void VisitFirst(const Pattern& pattern) {
-    for (const PatternItem& item : pattern.items) {
-      if (item.kind == PatternItem::Kind::kSlot) return;
-      if (item.kind == PatternItem::Kind::kBoundary && item.label >= 0)
-        Add(item.span, "a labelled boundary that may come first in a rule with `by word` is",
-            "let the pattern name the item before it: [] is any");
-    }
+  // A match is of the word where its first slot stands, which need not be that of a boundary beyond its slots.
+  void VisitEndsOfWord(const Pattern& pattern) {
+    const auto visit = [&](auto item, auto end) {
+      for (; item != end && item->kind != PatternItem::Kind::kSlot; ++item) {
+        if (item->kind == PatternItem::Kind::kBoundary && item->label >= 0)
+          Add(item->span, "a labelled boundary that may come first or last in a rule with `by word` is",
+              "let the pattern name the item beyond it: [] is any");
+      }
+    };
+    visit(pattern.items.begin(), pattern.items.end());
+    visit(pattern.items.rbegin(), pattern.items.rend());
   }
 
   void VisitChange(const Change& change) {

@@ -30,7 +30,8 @@ void CompareConstruct(Construct construct, std::uint64_t seed, int rules, int fo
     options.again = 0.45;
     options.sharing = SharingFor(rng, grammar.tree, rule);
     if (construct == Construct::kDomain || construct == Construct::kStem || construct == Construct::kTags ||
-        construct == Construct::kSameMorpheme || construct == Construct::kBoundary) {
+        construct == Construct::kSameMorpheme || construct == Construct::kBoundary ||
+        construct == Construct::kBoundaryAtEnd) {
       options.boundary = 0.3;
     }
     if (construct == Construct::kLengthen || construct == Construct::kShorten) options.empty = 0.1;

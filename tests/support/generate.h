@@ -113,7 +113,8 @@ enum class Construct {
   kGivenNode,
   kInsertedGrown,
   kAgreeingUnless,
-  kSeveralItems
+  kSeveralItems,
+  kBoundaryAtEnd
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

@@ -81,6 +81,8 @@ class Decorator {
         return Merge();
       case Construct::kBoundary:
         return DeleteBoundary();
+      case Construct::kBoundaryAtEnd:
+        return DeleteBoundaryAtEnd();
       case Construct::kLongInsertion:
         return Only(Op::kInsert);
       case Construct::kMember:
@@ -547,26 +549,42 @@ class Decorator {
   }
 
   bool DeleteBoundary() {
-    std::vector<PatternItem>& items = rule_->where.items;
+    const std::vector<PatternItem>& items = rule_->where.items;
     for (std::size_t i = 1; i < items.size(); ++i) {
       if (items[i - 1].kind != Kind::kSlot || items[i].kind != Kind::kSlot) continue;
-      PatternItem boundary;
-      boundary.kind = Kind::kBoundary;
-      boundary.boundary = Random({Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kClitic, Boundary::kWord});
-      boundary.label = static_cast<int>(rule_->labels.size());
-      items.insert(items.begin() + static_cast<std::ptrdiff_t>(i), boundary);
-      rule_->label_kinds.resize(rule_->labels.size(), Clause::LabelKind::kSlot);
-      rule_->labels.push_back("B");
-      rule_->label_kinds.push_back(Clause::LabelKind::kBoundary);
-      Change change;
-      change.op = Op::kDelete;
-      change.target = boundary.label;
-      rule_->changes = {change};
-      rule_->mode = Rule::Mode::kAtOnce;
+      rule_->changes.clear();
+      DeleteBoundaryAt(i);
       rule_->within = Domain::kPhrase;
       return true;
     }
     return false;
+  }
+
+  bool DeleteBoundaryAtEnd() {
+    const std::vector<PatternItem>& items = rule_->where.items;
+    const bool first = Chance(rng_, 0.5);
+    if ((first ? items.front() : items.back()).kind == Kind::kBoundary) return false;
+    if (Chance(rng_, 0.6)) rule_->changes.clear();
+    DeleteBoundaryAt(first ? 0 : items.size());
+    rule_->within = Random({Domain::kWord, Domain::kPhrase, Domain::kMorpheme});
+    if (Chance(rng_, 0.2)) rule_->probability = 0.5;
+    return Chance(rng_, 0.7) || Tags();
+  }
+
+  void DeleteBoundaryAt(std::size_t place) {
+    PatternItem boundary;
+    boundary.kind = Kind::kBoundary;
+    boundary.boundary = Random({Boundary::kMorpheme, Boundary::kMorpheme, Boundary::kClitic, Boundary::kWord});
+    boundary.label = static_cast<int>(rule_->labels.size());
+    rule_->where.items.insert(rule_->where.items.begin() + static_cast<std::ptrdiff_t>(place), boundary);
+    rule_->label_kinds.resize(rule_->labels.size(), Clause::LabelKind::kSlot);
+    rule_->labels.push_back("B");
+    rule_->label_kinds.push_back(Clause::LabelKind::kBoundary);
+    Change change;
+    change.op = Op::kDelete;
+    change.target = boundary.label;
+    rule_->changes.push_back(change);
+    rule_->mode = Rule::Mode::kAtOnce;
   }
 
   bool Member() {
@@ -592,14 +610,14 @@ class Decorator {
 
 const std::vector<Construct>& AllConstructs() {
   static const std::vector<Construct> all = {
-      Construct::kAgreement,      Construct::kAgreeingNode,   Construct::kShared,      Construct::kLength,
-      Construct::kPart,           Construct::kEqual,          Construct::kSame,        Construct::kSameMorpheme,
-      Construct::kDomain,         Construct::kStem,           Construct::kTags,        Construct::kOtherwise,
-      Construct::kOptional,       Construct::kByWord,         Construct::kPrefer,      Construct::kPreserving,
-      Construct::kSharingBlocked, Construct::kNewRoot,        Construct::kCopy,        Construct::kLengthen,
-      Construct::kShorten,        Construct::kMerge,          Construct::kBoundary,    Construct::kLongInsertion,
-      Construct::kMember,         Construct::kTwoContents,    Construct::kComplete,    Construct::kGivenNode,
-      Construct::kInsertedGrown,  Construct::kAgreeingUnless, Construct::kSeveralItems};
+      Construct::kAgreement,      Construct::kAgreeingNode,   Construct::kShared,       Construct::kLength,
+      Construct::kPart,           Construct::kEqual,          Construct::kSame,         Construct::kSameMorpheme,
+      Construct::kDomain,         Construct::kStem,           Construct::kTags,         Construct::kOtherwise,
+      Construct::kOptional,       Construct::kByWord,         Construct::kPrefer,       Construct::kPreserving,
+      Construct::kSharingBlocked, Construct::kNewRoot,        Construct::kCopy,         Construct::kLengthen,
+      Construct::kShorten,        Construct::kMerge,          Construct::kBoundary,     Construct::kLongInsertion,
+      Construct::kMember,         Construct::kTwoContents,    Construct::kComplete,     Construct::kGivenNode,
+      Construct::kInsertedGrown,  Construct::kAgreeingUnless, Construct::kSeveralItems, Construct::kBoundaryAtEnd};
   return all;
 }
 
@@ -634,7 +652,8 @@ const char* NameOf(Construct construct) {
                                       "set, fill [αNode]",
                                       "changes of the inserted",
                                       "agreement in unless",
-                                      "optional, several items"};
+                                      "optional, several items",
+                                      "delete boundary at an end"};
   return names[static_cast<int>(construct)];
 }
 

@@ -542,7 +542,9 @@ TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
        "spread X.back to E", "in a rule that iterates"},
       {"rule \"r\" { where X:V Y:V insert E:/i/ after X spread X.back to E set Y [+back] }", Kind::kNotSupportedYet,
        "spread X.back to E", "another item"},
-      {"rule \"r\" { where X:V B:# delete B }", Kind::kNotSupportedYet, "B:#", "at the end of a pattern"},
+      {"rule \"r\" { where X:V B:# delete B otherwise where X:V delete X }", Kind::kNotSupportedYet, "B:#",
+       "at the end of a pattern"},
+      {"rule \"r\" { where X:V B:# delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:#", "`by word`"},
       {"rule \"r\" { where V₀ B:- X:V delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:-", "`by word`"},
       {"fuse Place within morpheme in V C", Kind::kNotSupportedYet, "fuse Place within morpheme in V C", "`fuse`"},
   };

@@ -1,5 +1,6 @@
 // Constructs of the notation, one grammar each: what comes out of the machine and of the interpreter. Forms are derived by hand from
 // grammar/notation.md and the rule beside them; the words are invented.
+#include "model/readings.h"
 #include "model/text.h"
 #include "unit/run/compiled_case.h"
 
@@ -12,7 +13,11 @@ struct Row {
 };
 
 std::string ByInterpreter(const Compiled& grammar, const char* underlying) {
-  const Derivation derivation = Trace(grammar.grammar(), underlying);
+  std::vector<Reading> readings;
+  TextError error;
+  REQUIRE(FormReader(grammar.grammar()).Read(underlying, {}, &readings, &error));
+  REQUIRE(readings.size() == 1);
+  const Derivation derivation = Derive(grammar.grammar(), readings.front().form);
   CHECK(derivation.problem == "");
   std::string surface;
   FeatureTree no_symbol;
@@ -63,6 +68,30 @@ TEST_CASE("constructs: agreement with what bars a rule", "[unit]") {
   // A class node, on the far side of a stretch of any length.
   CheckBoth(R"(rule "r" { where N:[+nasal αPlace]   delete N   unless N [+syll]₁ [-syll αPlace] })",
             {{"anaita", "anaita"}, {"anaika", "aaika"}, {"amapa", "amapa"}, {"ama", "aa"}, {"anta", "ata"}});
+}
+
+TEST_CASE("constructs: a boundary at an end of the pattern, deleted", "[unit]") {
+  // A space is printed for #; what is left of a deleted one parts morphemes, which a second rule shows.
+  const std::string show = R"( rule "show" { where X:/d/ -   set X /n/ within phrase })";
+  CheckBoth(R"(rule "r" { where X:/d/ B:#   delete B })" + show,
+            {{"ad ta", "anta"},  // # goes, and a morpheme ends behind d still
+             {"ad", "an"},       // the form's edge stays; it ends a morpheme too
+             {"ad-ta", "anta"},  // no word ends
+             {"ad ta da", "anta da"},
+             {"ad=ta", "anta"}});
+  CheckBoth(R"(rule "r" { where B:- X:/d/   delete B })"
+            R"( rule "show" { where X:/d/ & [+syll]   set X /n/ })",
+            {{"ta-da", "tana"}, {"ta da", "tana"}, {"da", "na"}});
+  // A weaker boundary of the run stays where its strongest goes.
+  CheckBoth(R"(rule "r" { where X:/d/ B:-   delete B })"
+            R"( rule "show" { where X:/d/ -   set X /n/ })",
+            {{"ad-ta", "adta"}, {"adta", "adta"}, {"ad ta", "anta"}, {"ad", "an"}});
+  // The boundary is in the morpheme behind it: a suffix's goes, a prefix's does not, and none is at the form's end.
+  CheckBoth(R"(
+    lexicon { suffix /-ta/   prefix /bad-/ }
+    rule "r" { where X:/d/ B:-   delete B   only suffix }
+    rule "show" { where X:/d/ -   set X /n/ })",
+            {{"pad-ta", "padta"}, {"bad-pi", "banpi"}, {"pad", "pan"}});
 }
 
 }  // namespace tiersmith::testing
