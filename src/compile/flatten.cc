@@ -79,6 +79,7 @@ Rule FusionAsRule(const Fusion& fusion, const Tree& tree) {
   Rule rule;
   rule.name = "fuse " + tree[fusion.node].name;
   rule.within = Domain::kMorpheme;
+  rule.inside = fusion.in;
   rule.span = fusion.span;
   rule.labels = {"X", "Y"};
   PatternItem item, gap;

@@ -23,7 +23,7 @@ int InsertionOf(const Clause& clause, int label);
 // The label of the pattern at which a change is asked for: of what is inserted, its host's.
 int HostOf(const Clause& clause, int label);
 
-// `fuse N within morpheme` as a rule that comes before the others: neighbours with equal N are merged. Requires: no `in`.
+// `fuse N within morpheme` as a rule that comes before the others: neighbours with equal N are merged.
 Rule FusionAsRule(const Fusion& fusion, const Tree& tree);
 
 // What happens to a typed form, in order: fusions, then the grammar's rules.

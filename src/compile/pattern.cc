@@ -82,6 +82,7 @@ struct MarkedArc {
   int role = -1;
   int next = 0;
   bool first = false;  // it consumes the first slot of the match
+  bool last = false;   // its last one
   int bound = -1;      // index into Pools::bindings, where an unless-pattern shares variables
 };
 
@@ -144,6 +145,11 @@ class Subsets {
       : final_(std::move(final)), step_(std::move(step)) {
     start_ = Intern(std::move(initial));
   }
+  // The strings that have no such run.
+  Subsets Others() && {
+    others_ = true;
+    return std::move(*this);
+  }
   int start() const { return start_; }
   int Next(int subset, const MarkedArc& arc) {
     const auto key = std::make_tuple(subset, arc.profile, arc.mark, arc.role, arc.first, arc.bound);
@@ -157,7 +163,7 @@ class Subsets {
   }
   bool Accepts(int subset) const {
     const Key& set = sets_[subset];
-    return std::any_of(set.begin(), set.end(), [this](std::int32_t s) { return final_[s] != 0; });
+    return std::any_of(set.begin(), set.end(), [this](std::int32_t s) { return final_[s] != 0; }) != others_;
   }
 
  private:
@@ -168,6 +174,7 @@ class Subsets {
   }
   std::vector<char> final_;
   Step step_;
+  bool others_ = false;
   KeyPool sets_;
   std::map<std::tuple<int, int, int, int, bool, int>, int> memo_;
   int start_ = 0;
@@ -310,6 +317,7 @@ struct PatternCompiler::Impl {
   std::vector<char> changed;                  // by label
   std::vector<std::vector<NodeId>> inserted;  // by change: kinds that an insertion brings
   std::vector<ClausePrograms> clauses;
+  std::optional<Program> inside;  // Rule::inside
   int mark_count = 0;
   std::vector<int> where_order;  // labels in the order of the pattern
   KeyPool profile_keys;
@@ -330,6 +338,7 @@ struct PatternCompiler::Impl {
     CollectSpreads();
     CollectCopies();
     for (const Clause* clause : ClausesOf(rule)) AddClause(*clause);
+    if (rule.inside) inside = Compile(*rule.inside, /*main=*/false);
     if (rule.sharing_blocked) CollectWatches();
     for (const Change& change : rule.changes) {
       for (const Setting& setting : change.settings) {
@@ -1087,6 +1096,7 @@ struct PatternCompiler::Impl {
   struct Builder;
   MarkedMachine BuildMain(std::size_t clause, std::size_t max_states, Pools* pools) const;
   MarkedMachine BuildUnless(const Program& program, const Given& given, std::size_t max_states) const;
+  MarkedMachine BuildInside(std::size_t max_states) const;
   MarkedMachine BuildClause(std::size_t clause, std::size_t max_states, Pools* pools) const;
   std::vector<MarkedMachine> Preferred(const std::vector<MarkedMachine>& standing, const KeyPool& roles,
                                        std::size_t max_states) const;
@@ -1306,9 +1316,10 @@ struct PatternCompiler::Impl::Builder {
   bool MarkAllowed(int mark) const { return main || own_marks.count(mark) == 0; }
 
   // The main machine emits marks itself; an unless machine reads them.
-  void Add(int from, int profile, int mark, int role, const Key& to, bool first = false, int bound = -1) {
+  void Add(int from, int profile, int mark, int role, const Key& to, bool first = false, bool last = false,
+           int bound = -1) {
     const int next = Intern(to);  // may add a state
-    machine.arcs[from].push_back({profile, mark, role, next, first, bound});
+    machine.arcs[from].push_back({profile, mark, role, next, first, last, bound});
   }
 
   // What the variables are known to stand for, if an unless-pattern asks.
@@ -1696,7 +1707,10 @@ struct PatternCompiler::Impl::Builder {
       std::vector<Key> after;
       After(key, slot.next, /*first=*/false, &after);
       const int role_id = asks.empty() ? MergingRole(merging) : pools->roles.Intern(asks);
-      for (const Key& next : after) Add(at, profile, slot.mark, role_id, next, config[kPhase] == 0, Bound(key));
+      for (const Key& next : after) {
+        const bool last = next[kPc] == kSuffix || program.code[next[kPc]].op == Instruction::Op::kAccept;
+        Add(at, profile, slot.mark, role_id, next, config[kPhase] == 0, last, Bound(key));
+      }
     }
   }
 
@@ -1800,6 +1814,12 @@ MarkedMachine PatternCompiler::Impl::BuildUnless(const Program& program, const G
   return builder.Run(max_states);
 }
 
+MarkedMachine PatternCompiler::Impl::BuildInside(std::size_t max_states) const {
+  Builder builder(*this, *inside, nullptr, 0, nullptr);
+  builder.edge = EdgeOf(Domain::kWord);
+  return builder.Run(max_states);
+}
+
 PatternCompiler::PatternCompiler(const Rule& rule, const RuleSpace& space) : impl_(new Impl(rule, space)) {}
 PatternCompiler::~PatternCompiler() = default;
 int PatternCompiler::Profile(const Key& annotated) { return impl_->Profile(annotated); }
@@ -1840,6 +1860,28 @@ Subsets UnlessBan(const MarkedMachine& unless, const std::set<int>& labels, cons
                      if (bound ? arc.mark == read.mark : arc.mark < 0) next->push_back(arc.next);
                    }
                  });
+}
+
+// Strings marked as a match over which no match of another pattern reaches, from its first labelled slot (or further left)
+// to its last (or further right). State: 4 * run + progress.
+Subsets OutsideBan(const MarkedMachine& inside, int left, int right) {
+  enum Progress { kNotBegun, kBegun, kAtLeft, kOver };
+  std::vector<int> initial;
+  std::vector<char> final(inside.arcs.size() * 4, 0);
+  for (int s : inside.initial) initial.push_back(4 * s);
+  for (std::size_t s = 0; s < inside.arcs.size(); ++s) final[4 * s + kOver] = inside.final[s];
+  return Subsets(initial, final,
+                 [inside, left, right](int state, const MarkedArc& read, std::vector<int>* next) {
+                   for (const MarkedArc& arc : inside.arcs[state / 4]) {
+                     if (arc.profile != read.profile) continue;
+                     int progress = arc.first ? kBegun : state % 4;
+                     if (read.mark == left && progress++ != kBegun) continue;
+                     if (read.mark == right && progress++ != kAtLeft) continue;
+                     if (arc.last && progress != kOver) continue;
+                     next->push_back(4 * arc.next + progress);
+                   }
+                 })
+      .Others();
 }
 
 // Strings marked as a match in which the changed end of a gap could stand nearer: a run of the same machine that
@@ -1967,6 +2009,11 @@ MarkedMachine PatternCompiler::Impl::BuildClause(std::size_t clause, std::size_t
       if (unless.over_budget) machine = unless;
       machine = Minus(machine, UnlessBan(unless, labels, given, pools->bindings), max_states);
     }
+  }
+  if (inside) {
+    const MarkedMachine reaching = BuildInside(max_states);
+    if (reaching.over_budget) machine = reaching;
+    machine = Minus(machine, OutsideBan(reaching, where_order.front(), where_order.back()), max_states);
   }
   const MarkedMachine whole = machine;
   std::set<int> own;

@@ -193,6 +193,7 @@ NodeSet LinksAsked(const Rule& rule, const Tree& tree) {
       if (AsksOfInstance(condition)) AddUpward(tree, condition.node, &asked);
     }
   }
+  if (rule.inside) AddLinksRead(tree, *rule.inside, &asked);
   if (!rule.sharing_blocked) return asked;
   const Rule flat = Flattened(rule);
   std::vector<NodeId> nodes;
@@ -231,6 +232,7 @@ Plan MakePlan(const Grammar& grammar, bool keep_all_links) {
   std::vector<NodeSet> reads;
   for (const Rule& rule : StepsOf(grammar)) {
     for (const Clause* clause : ClausesOf(rule)) AddClause(tree, *clause, &plan);
+    if (rule.inside) AddPattern(tree, *rule.inside, &plan);
     if (rule.preserving || rule.kind == Rule::Kind::kComplete)
       AddDownward(tree, kRootNode, &plan.visible);  // spelling asks for all of a letter
     reads.push_back(NodesRead(rule, tree));

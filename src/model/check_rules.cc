@@ -127,7 +127,6 @@ void Checker::CheckComplete(const syntax::Complete& written) {
 }
 
 void Checker::CheckFusion(const syntax::Fuse& written) {
-  RefuseNotRun(NotRunYet(written));
   Fusion fusion;
   fusion.span = written.span;
   const std::optional<NodeId> node = NodeOf(written.node, Kind::kUnknownNode);

@@ -140,10 +140,11 @@ struct Rule : Clause {
   Mode mode = Mode::kAtOnce;
   Domain within = Domain::kWord;
   Prefer prefer = Prefer::kNone;
-  bool sharing_blocked = false;  // the Linking Constraint (Hayes 1986)
-  bool preserving = false;       // only where the result is spelled by a symbol of `segments`
-  double probability = 1;        // below 1: optional, one draw a site
-  bool by_word = false;          // one draw a word
+  bool sharing_blocked = false;   // the Linking Constraint (Hayes 1986)
+  bool preserving = false;        // only where the result is spelled by a symbol of `segments`
+  double probability = 1;         // below 1: optional, one draw a site
+  bool by_word = false;           // one draw a word
+  std::optional<Pattern> inside;  // of a fusion as a rule: some match of this in the word reaches over the match
   Span span;
 };
 

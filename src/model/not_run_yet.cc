@@ -153,9 +153,4 @@ std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree) {
   return lister.Take();
 }
 
-std::vector<NotYet> NotRunYet(const syntax::Fuse& fuse) {
-  if (!fuse.in) return {};
-  return {{fuse.span, "`fuse` inside a pattern is", "take the `in` out, or begin with a rule that merges"}};
-}
-
 }  // namespace tiersmith

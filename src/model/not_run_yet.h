@@ -21,6 +21,5 @@ struct NotYet {
 
 // `name`: the place for what is said of a rule as a whole.
 std::vector<NotYet> NotRunYet(const Rule& rule, Span name, const Tree& tree);
-std::vector<NotYet> NotRunYet(const syntax::Fuse& fuse);
 
 }  // namespace tiersmith

@@ -5,6 +5,10 @@
 #include <algorithm>
 #include <iostream>
 
+#include "compile/cascade_data.h"
+#include "graph/interpreter.h"
+#include "letters/letter.h"
+#include "run/run.h"
 #include "support/agree.h"
 #include "support/generate.h"
 #include "support/small_grammar.h"
@@ -76,6 +80,68 @@ TEST_CASE("random grammars that fuse", "[agreement]") {
   Tally tally;
   CompareFusing(SeedOr(20261209), 60, 200, &tally);
   std::cout << "fuse: " << tally.rules << " grammars, " << tally.pairs << " pairs, " << tally.changed << " changed\n";
+  CHECK(tally.changed >= 1'000);
+}
+
+namespace {
+
+// A pattern of any shape, without labels.
+Pattern RandomPattern(Rng& rng, const Grammar& grammar, const std::vector<NamedTest>& tests,
+                      const std::vector<FeatureTree>& letters) {
+  Pattern pattern = RandomRule(rng, grammar, tests, letters).where;
+  const auto take_labels = [](const auto& self, Pattern* from) -> void {
+    for (PatternItem& item : from->items) {
+      item.label = -1;
+      for (Pattern& alternative : item.alternatives) self(self, &alternative);
+    }
+  };
+  take_labels(take_labels, &pattern);
+  NoteEmpty(&pattern);
+  return pattern;
+}
+
+// One fusion in a pattern and nothing else, judged with all sharing.
+void CompareFusionInPattern(Rng& rng, Grammar grammar, int forms_each, Tally* tally) {
+  const std::vector<FeatureTree> letters = LettersOf(grammar);
+  std::vector<FeatureTree> few;
+  for (int i = 0; i < 4; ++i) few.push_back(letters[Below(rng, static_cast<int>(letters.size()))]);
+  const auto node =
+      static_cast<NodeId>(kRootNode + Below(rng, static_cast<int>(grammar.tree.nodes.size()) - kRootNode));
+  grammar.fusions = {{node, RandomPattern(rng, grammar, NamedTests(grammar), few), {}}};
+  FormOptions options;
+  options.max_items = 7;
+  options.again = 0.45;
+  options.boundary = 0.2;
+  options.sharing = {kRootNode};  // as forms are typed
+  std::vector<Form> forms;
+  std::vector<Letter> encoded;
+  for (int i = 0; i < forms_each; ++i) {
+    forms.push_back(Canonical(RandomForm(rng, grammar, few, options)));
+    for (Letter& letter : Encode(forms.back(), grammar.tree)) encoded.push_back(std::move(letter));
+  }
+  Diagnostics diagnostics;
+  const std::unique_ptr<Cascade> cascade = CompileForTesting(grammar, encoded, Limits(), diagnostics);
+  REQUIRE(cascade != nullptr);
+  Runner runner(grammar, *cascade);
+  ++tally->rules;
+  for (const Form& form : forms) {
+    const Form fused = Fused(grammar, form);
+    const Runner::Answer answer = runner.Apply(form);
+    INFO("fuse " << grammar.tree[node].name << ", grammar " << tally->rules << "\n" << Dump(form, grammar.tree));
+    REQUIRE(answer.form.has_value());
+    REQUIRE(Dump(*answer.form, grammar.tree) == Dump(fused, grammar.tree));
+    ++tally->pairs;
+    tally->changed += !(fused == form);
+  }
+}
+
+}  // namespace
+
+TEST_CASE("random fusions in patterns", "[agreement]") {
+  Tally tally;
+  Rng rng(SeedOr(20261211));
+  for (int i = 0; i < 150; ++i) CompareFusionInPattern(rng, SmallGrammar(), 120, &tally);
+  std::cout << "fuse in: " << tally.rules << " fusions, " << tally.pairs << " pairs, " << tally.changed << " changed\n";
   CHECK(tally.changed >= 1'000);
 }
 

@@ -546,7 +546,6 @@ TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
        "at the end of a pattern"},
       {"rule \"r\" { where X:V B:# delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:#", "`by word`"},
       {"rule \"r\" { where V₀ B:- X:V delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:-", "`by word`"},
-      {"fuse Place within morpheme in V C", Kind::kNotSupportedYet, "fuse Place within morpheme in V C", "`fuse`"},
   };
   for (const Mistake& row : rows) CheckRows(kHead, {row});
   for (const Mistake& row : rows) {

@@ -94,4 +94,19 @@ TEST_CASE("constructs: a boundary at an end of the pattern, deleted", "[unit]") 
             {{"pad-ta", "padta"}, {"bad-pi", "banpi"}, {"pad", "pan"}});
 }
 
+TEST_CASE("constructs: fusing in a pattern", "[unit]") {
+  // Which neighbours became one is shown by a rule that deletes nasals with a shared Place.
+  const std::string show = R"( rule "show" { where X:[+nasal shared Place]   delete X })";
+  CheckBoth("fuse Place within morpheme in [+nasal] [-syll]\n" + show,
+            {{"anta", "ata"},    // n and t stand in one match
+             {"anka", "anka"},   // unequal
+             {"an-ta", "anta"},  // two morphemes
+             {"atna", "atna"},   // no match: the nasal is second
+             {"ntna", "tna"},    // the first two alone
+             {"ahnta", "ahta"}});
+  // h has no Place and a vowel has its own; the match reaches further than the two.
+  CheckBoth("fuse Place within morpheme in /p/ [] /m/ [+syll]\n" + show,
+            {{"phmi", "phi"}, {"phm", "phm"}, {"pami", "pami"}, {"thni", "thni"}});
+}
+
 }  // namespace tiersmith::testing
