@@ -89,21 +89,34 @@ WorkPart LetterBuilder::Before(const Key& annotated) const {
   return work;
 }
 
-int LetterBuilder::ContentOf(const Key& annotated, NodeId node, bool last) const {
-  const WorkPart before = Before(annotated);
-  const WorkPart* part = FindPart(before, node, last);
+int LetterBuilder::ContentOf(const Key& annotated, NodeId node, bool last, const std::int32_t* asks,
+                             bool* unsure) const {
+  const RuleSpace& space = requests_.space();
+  BuiltLetter built;
+  built.slot = Before(annotated);
+  built.effective.assign(requests_.nodes().size(), 0);
+  for (std::size_t i = 0; asks != nullptr && i < requests_.nodes().size(); ++i) {
+    const NodeId under = requests_.nodes()[i];
+    if (asks[i] == 0 || under == node || !space.tree().Dominates(node, under)) continue;
+    // Lines there, or what gives way to the new content, may go on in other letters.
+    if ((asks[i] & (kLineLeft | kLineRight | kMergeLeft)) ||
+        (space.Marks(annotated, under) & (kObjectLeft | kObjectRight)))
+      *unsure = true;
+    Answer(i, annotated, asks, {}, &built);
+  }
+  const WorkPart* part = FindPart(built.slot, node, last);
   return part == nullptr ? -1 : pool_.Intern(*part);
 }
 
 std::int32_t LetterBuilder::CarryContent(const Key& annotated, NodeId node, bool rightward, bool needed,
-                                         std::int32_t* state) const {
+                                         const std::int32_t* asks, std::int32_t* state, bool* unsure) const {
   const RuleSpace& space = requests_.space();
   const RuleSpace::Bearing& bearing = space.Of(annotated[0], node);
   const std::int32_t mother = bearing.mother ? space.Marks(annotated, space.tree()[node].mother) : 0;
   if (bearing.mother && !(mother & (rightward ? kFromLeft : kToRight))) state[1] = state[0];
   const std::int32_t content = (bearing.mother ? state[1] : state[0]) - 1;
   if (bearing.mother && !(mother & (rightward ? kToRight : kFromLeft))) state[1] = 0;
-  if (bearing.count > 0) state[0] = needed ? ContentOf(annotated, node, rightward) + 1 : 0;
+  if (bearing.count > 0) state[0] = needed ? ContentOf(annotated, node, rightward, asks, unsure) + 1 : 0;
   return content;
 }
 
@@ -141,29 +154,57 @@ WorkPart* LetterBuilder::MotherFor(WorkPart* slot, NodeId node, bool make) const
 }
 
 BuiltLetter LetterBuilder::Build(const Key& annotated, const std::int32_t* asks, const Lines& lines) const {
+  const RuleSpace& space = requests_.space();
   BuiltLetter built;
   built.slot = Before(annotated);
   built.effective.assign(requests_.nodes().size(), 0);
-  bool any = false;
   const int root = requests_.IndexOf(kRootNode);
   const bool new_root = root >= 0 && asks[root] >> kValuesShift != 0;
-  for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
-    const std::int32_t ask = asks[i];
-    if (ask == 0) continue;
-    // What is asked of nodes under the root was asked of the old one; its other slots see to that.
-    if (new_root && requests_.nodes()[i] != kRootNode) continue;
-    if (ask & kClash) built.clash = true;
-    const bool gives = (ask & (kLineLeft | kLineRight)) ||
-                       ((ask >> kValuesShift) > 0 && !requests_.contents()[(ask >> kValuesShift) - 1].empty());
-    WorkPart* mother = MotherFor(&built.slot, requests_.nodes()[i], gives);
-    if (mother == nullptr) continue;
-    Relist(mother, requests_.nodes()[i], ask, i, annotated, lines, &built);
-    any = any || built.effective[i];
+  // What is asked of nodes under one that is cut or given way is asked of those that were there.
+  for (const bool above_relinked : {true, false}) {
+    for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+      const NodeId node = requests_.nodes()[i];
+      if (asks[i] == 0) continue;
+      // What is asked of nodes under the root was asked of the old one; its other slots see to that.
+      if (new_root && node != kRootNode) continue;
+      if (asks[i] & kClash) built.clash = true;
+      const NodeId relinked = RelinkedAbove(node, asks);
+      if ((relinked != kSlotNode) != above_relinked) continue;
+      if (relinked != kSlotNode && space.Of(annotated[0], relinked).count == 0) continue;
+      const NodeId mother = space.LowestAncestor(annotated[0], node);
+      // What moves here may hold that mother too.
+      if (relinked != kSlotNode && mother != relinked && (space.Marks(annotated, mother) & (kFromLeft | kToRight)))
+        built.unsure = true;
+      Answer(i, annotated, asks, lines, &built);
+    }
   }
-  if (any) {
+  if (std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end()) {
     for (WorkPart& top : built.slot.daughters) Prune(&top);
   }
   return built;
+}
+
+// Does the letter get something new by this?
+bool LetterBuilder::Gives(std::int32_t ask) const {
+  const std::int32_t values = ask >> kValuesShift;
+  return (ask & (kLineLeft | kLineRight)) || (values > 0 && !requests_.contents()[values - 1].empty());
+}
+
+// The highest node above this one of which a line is drawn or cut; none: the slot.
+NodeId LetterBuilder::RelinkedAbove(NodeId node, const std::int32_t* asks) const {
+  for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+    const NodeId above = requests_.nodes()[i];
+    if (above == node || !(asks[i] & (kCutAll | kLineLeft | kLineRight))) continue;
+    if (requests_.space().tree().Dominates(above, node)) return above;
+  }
+  return kSlotNode;
+}
+
+void LetterBuilder::Answer(std::size_t index, const Key& annotated, const std::int32_t* asks, const Lines& lines,
+                           BuiltLetter* built) const {
+  const NodeId node = requests_.nodes()[index];
+  WorkPart* mother = MotherFor(&built->slot, node, Gives(asks[index]));
+  if (mother != nullptr) Relist(mother, node, asks[index], index, annotated, lines, built);
 }
 
 BuiltLetter LetterBuilder::BuildInserted(std::size_t change, const Key& plain, const Key& request, Lines lines) const {

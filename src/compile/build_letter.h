@@ -53,6 +53,7 @@ class ContentPool {
 struct BuiltLetter {
   WorkPart slot;
   bool clash = false;
+  bool unsure = false;          // what else happens to a node that moves here, or from here, is not known
   std::vector<char> effective;  // by request node: did the mother's list change
 };
 
@@ -62,13 +63,14 @@ class LetterBuilder {
 
   // The letter's parts before the rule, links replaced by kObjectRight marks.
   WorkPart Before(const Key& annotated) const;
-  // The first or last N of a letter as content, or -1.
-  int ContentOf(const Key& annotated, NodeId node, bool last) const;
+  // The first or last N of a letter as content, or -1; with what is asked (by request node; null: nothing) under it.
+  int ContentOf(const Key& annotated, NodeId node, bool last, const std::int32_t* asks, bool* unsure) const;
 
   // Carries the nearest content of a node along, walking over letters; gives the one that a line from this letter's mother
   // leads back to, or -1. state[0]: the last content met (+1); state[1]: the last before the span of the mother we
-  // are in (+1). `needed`: will a letter further on ask for this letter's?
-  std::int32_t CarryContent(const Key& annotated, NodeId node, bool rightward, bool needed, std::int32_t* state) const;
+  // are in (+1). `needed`: will a letter further on ask for this letter's? `asks`: as above.
+  std::int32_t CarryContent(const Key& annotated, NodeId node, bool rightward, bool needed, const std::int32_t* asks,
+                            std::int32_t* state, bool* unsure) const;
 
   struct Lines {  // contents the requests may draw on, by request node; -1: none
     const std::int32_t* left = nullptr;
@@ -87,6 +89,10 @@ class LetterBuilder {
 
  private:
   WorkPart* MotherFor(WorkPart* slot, NodeId node, bool make) const;
+  bool Gives(std::int32_t ask) const;
+  NodeId RelinkedAbove(NodeId node, const std::int32_t* asks) const;
+  void Answer(std::size_t index, const Key& annotated, const std::int32_t* asks, const Lines& lines,
+              BuiltLetter* built) const;
   void Relist(WorkPart* mother, NodeId node, std::int32_t request, std::size_t index, const Key& annotated,
               const Lines& lines, BuiltLetter* built) const;
   bool DrawLines(NodeId node, std::int32_t request, std::size_t index, const Key& annotated, const Lines& lines,

@@ -134,11 +134,11 @@ class SpanPass {
     const std::size_t left_at = request_at + requests_.size();
     const std::size_t right_at = left_at + requests_.contents_size();
     Key lefts(requests_.contents_size(), -1);
+    bool unsure = false;
     for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
       const NodeId node = requests_.nodes()[i];
       std::int32_t* carried = &step.state[offsets_[i]];
-      std::int32_t* contents = carried + carrier_.StateSize(i);
-      std::int32_t* need = contents + 2;
+      std::int32_t* need = carried + carrier_.StateSize(i) + 2;
       std::int32_t& request = step.symbol[request_at + 1 + i];
       if (requests_.SpreadsFrom(false, i)) {
         if (requests_.AsksBeside(&symbol[request_at], /*before=*/true, i, kLineRight)) *need = kBeyond;
@@ -147,12 +147,17 @@ class SpanPass {
         if (requests_.AsksBeside(&symbol[request_at], /*before=*/false, i, kLineRight)) *need = kBeyond;
       }
       carrier_.Step(symbol, i, carried, &request);
+    }
+    for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
       if (!requests_.SpreadsFrom(true, i)) continue;
+      std::int32_t* contents = &step.state[offsets_[i] + carrier_.StateSize(i)];
       const bool needed = symbol[left_at + i] != 0;
       requests_.GiveBeside(&symbol[request_at], /*before=*/true, i, kLineLeft, contents[0] - 1, &lefts);
-      lefts[i] = builder_.CarryContent(Annotated(symbol, space), node, /*rightward=*/true, needed, contents);
+      lefts[i] = builder_.CarryContent(Annotated(symbol, space), requests_.nodes()[i], /*rightward=*/true, needed,
+                                       &step.symbol[request_at + 1], contents, &unsure);
       requests_.GiveBeside(&symbol[request_at], /*before=*/false, i, kLineLeft, contents[0] - 1, &lefts);
     }
+    if (unsure) step.symbol[request_at] |= kUnsure;
     std::copy(lefts.begin(), lefts.end(), step.symbol.begin() + static_cast<std::ptrdiff_t>(left_at));
     return step;
   }
@@ -421,7 +426,8 @@ class Sweep {
       std::int32_t* contents = &step.state[kFarState + 2 * i];
       std::int32_t content = -1;
       if (requests_.SpreadsFrom(!direction_.rightward, i) && space_.IsSlot(symbol[0])) {
-        content = builder_.CarryContent(symbol, requests_.nodes()[i], !direction_.rightward, /*needed=*/true, contents);
+        content = builder_.CarryContent(symbol, requests_.nodes()[i], !direction_.rightward, /*needed=*/true, nullptr,
+                                        contents, nullptr);
       }
       // Another slot of the same root may be the target: a content is dropped only where a root ends.
       const bool root_ends =
@@ -903,7 +909,8 @@ class Sweep {
     }
     for (std::size_t i = 0; i < nodes(); ++i) {
       if (space_.Of(annotated[0], requests_.nodes()[i]).count > 0) {
-        state->contents[i] = builder_.ContentOf(annotated, requests_.nodes()[i], direction_.rightward) + 1;
+        const NodeId node = requests_.nodes()[i];
+        state->contents[i] = builder_.ContentOf(annotated, node, direction_.rightward, nullptr, nullptr) + 1;
       }
     }
     StepOver(state, annotated, insertion.is_long);

@@ -832,10 +832,10 @@ struct PatternCompiler::Impl {
       profile[AgreeingField(i)] = value_sets.Intern(ValuesAllowed(visible.part, *agreeing[i]));
     }
     for (std::size_t i = 0; i < borrowed.size(); ++i) {
-      std::int32_t fits = ValuesThatFit(ItemAt(letter, borrowed[i].insertion), borrowed[i]);
+      std::int32_t fits = ValuesThatFit(LinedItem(letter, borrowed[i].label, borrowed[i].insertion), borrowed[i]);
       const std::int32_t all = (1 << ValueCount(*borrowed[i].setting)) - 1;
       std::int32_t& allowance = profile[LabelField(borrowed[i].label)];
-      if (fits != all && borrowed[i].insertion < 0 && GivenElsewhere(borrowed[i].label, borrowed[i].setting->node)) {
+      if (fits != all && borrowed[i].insertion < 0 && MayFit(letter, borrowed[i].label, borrowed[i].setting->node)) {
         fits = all;
         if (allowance == kAllowed) allowance = kInDoubt;
       }
@@ -1003,6 +1003,23 @@ struct PatternCompiler::Impl {
     return insertion < 0 ? letter : space.Inserted(rule.changes[static_cast<std::size_t>(insertion)], letter);
   }
 
+  // The same, with the lines that the match draws from the slot or past it: lines come before contents.
+  Key LinedItem(const Key& letter, int label, int insertion) const {
+    Key item = ItemAt(letter, insertion);
+    for (const Spread& spread : spreads) {
+      const bool from_here = spread.source == label && Carries(letter, spread) == kFacing;
+      if (insertion >= 0 || (!from_here && !IsBetween(label, spread))) continue;
+      const LinkMark onward = spread.from_left ? kObjectRight : kObjectLeft;
+      item[static_cast<std::size_t>(1 + space.LiveIndex(spread.node))] |=
+          space.Of(letter[0], spread.node).count == 0 ? kOver : onward;
+    }
+    return item;
+  }
+  bool IsBetween(int label, const Spread& spread) const {
+    const auto [left, right] = std::minmax({Place(spread.source), Place(spread.target)});
+    return left < Place(label) && Place(label) < right;
+  }
+
   // The class nodes that would be made above `node` stand in no span of theirs.
   bool MothersFit(const Key& letter, NodeId node) const {
     const NodeId lowest = space.LowestAncestor(letter[0], node);
@@ -1043,8 +1060,7 @@ struct PatternCompiler::Impl {
     return true;
   }
 
-  // Do set, fill and insert at this label cross no line? In doubt: where another item of the match is given the same node, the
-  // line may be gone by that.
+  // Do set, fill and insert at this label cross no line? In doubt: see MayFit.
   enum Allowance : std::int32_t { kBarred = 0, kAllowed = 1, kInDoubt = 2 };
   Allowance Changeable(const Key& letter, int label) const {
     Allowance allowed = kAllowed;
@@ -1053,15 +1069,15 @@ struct PatternCompiler::Impl {
       if (HostOf(rule, change.target) != label) continue;
       if (change.op == Change::Op::kSet || change.op == Change::Op::kFill) {
         const int insertion = InsertionOf(rule, change.target);
-        const Key item = ItemAt(letter, insertion);
+        const Key item = LinedItem(letter, label, insertion);
         for (const Setting& setting : change.settings) {
           if (setting.variable >= 0 || SettingFits(item, setting, change.op == Change::Op::kFill)) continue;
-          if (insertion >= 0 || !GivenElsewhere(label, setting.node)) return kBarred;
+          if (insertion >= 0 || !MayFit(letter, label, setting.node)) return kBarred;
           allowed = kInDoubt;
         }
       } else if (change.op == Change::Op::kSetLiteral) {
-        if (ContentFits(letter, kRootNode, {change.inserted})) continue;
-        if (!GivenElsewhere(label, kRootNode)) return kBarred;
+        if (ContentFits(LinedItem(letter, label, -1), kRootNode, {change.inserted})) continue;
+        if (!MayFit(letter, label, kRootNode)) return kBarred;
         allowed = kInDoubt;
       } else if (change.op == Change::Op::kInsert) {
         for (NodeId node : inserted[i]) {
@@ -1070,6 +1086,16 @@ struct PatternCompiler::Impl {
       }
     }
     return allowed;
+  }
+
+  // What seems to cross a line may not do so: where another item of the match is given the same node, the line may be gone by
+  // that; none is drawn to an item of the same mother, nor from one that bears nothing.
+  bool MayFit(const Key& letter, int label, NodeId node) const {
+    return GivenElsewhere(label, node) || std::any_of(spreads.begin(), spreads.end(), [&](const Spread& spread) {
+             const bool goes_on = space.Marks(letter, spread.mother) & (spread.from_left ? kToRight : kFromLeft);
+             const bool meets = spread.node == node || space.tree().Dominates(node, spread.node);
+             return meets && (IsBetween(label, spread) || (spread.source == label && goes_on));
+           });
   }
 
   // Is an item of the same match given contents of this node, or of one above or under it?
@@ -1136,9 +1162,10 @@ bool PatternCompiler::Impl::SubtreeFits(const Key& letter, const FeatureTree& tr
   if (count == 0) {
     if (marks & kOver) return false;
   } else {
+    const bool one_held = count == 1 || held_left || held_right;  // of a contour by itself each end is held on its side
     held_left = held_left || (marks & kObjectLeft);
     held_right = held_right || (marks & kObjectRight);
-    if (count == 1 && held_left && held_right) return false;
+    if (one_held && held_left && held_right) return false;
   }
   return std::all_of(tree.daughters.begin(), tree.daughters.end(),
                      [&](const FeatureTree& daughter) { return SubtreeFits(letter, daughter, held_left, held_right); });
@@ -1632,11 +1659,12 @@ struct PatternCompiler::Impl::Builder {
         Bind(at, Key(copy.known.begin(), copy.known.end()), ways, [&](std::int32_t value, Key* role) {
           (*role)[1 + SpreadCount() + static_cast<std::size_t>(copy.variable)] = 1 + value;
           if (copy.spreads) return true;
-          const Key annotated = impl.ItemAt(impl.letters[letter[impl.LetterField()]], copy.insertion);
+          const Key& slot = impl.letters[letter[impl.LetterField()]];
+          const Key annotated = impl.LinedItem(slot, label, copy.insertion);
           if (copy.fill && (value == 0 || impl.space.Of(annotated[0], copy.node).count > 0)) return true;
           const bool fits =
               value == 0 || impl.ContentFits(annotated, copy.node, impl.lists[static_cast<std::size_t>(value - 1)]);
-          if (!fits && copy.insertion < 0 && impl.GivenElsewhere(label, copy.node)) role->back() |= kDoubtful;
+          if (!fits && copy.insertion < 0 && impl.MayFit(slot, label, copy.node)) role->back() |= kDoubtful;
           return fits || (role->back() & kDoubtful) != 0;
         });
       }

@@ -69,13 +69,16 @@ class ApplyPass {
     const std::int32_t* left = &symbol[request_at + requests_.size()];
     const std::int32_t* right = left + requests_.contents_size();
     Key contents(requests_.contents_size(), -1);
+    bool unsure = false;
     if (at_once_) {
-      for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
+      for (std::size_t i = 0; i < requests_.nodes().size(); ++i)
         carrier_.Step(letter, i, &step.state[offsets_[i]], &request[1 + i]);
+      for (std::size_t i = 0; i < requests_.nodes().size(); ++i) {
         if (!requests_.SpreadsFrom(false, i)) continue;
         std::int32_t* carried = &step.state[offsets_[i] + carrier_.StateSize(i)];
         requests_.GiveBeside(&request[0], /*before=*/false, i, kLineRight, carried[0] - 1, &contents);
-        contents[i] = builder_.CarryContent(letter, requests_.nodes()[i], /*rightward=*/false, right[i] != 0, carried);
+        contents[i] = builder_.CarryContent(letter, requests_.nodes()[i], /*rightward=*/false, right[i] != 0,
+                                            &request[1], carried, &unsure);
         requests_.GiveBeside(&request[0], /*before=*/true, i, kLineRight, carried[0] - 1, &contents);
       }
       right = contents.data();
@@ -98,7 +101,8 @@ class ApplyPass {
     const bool changed = std::find(built.effective.begin(), built.effective.end(), 1) != built.effective.end() ||
                          (request[0] & (kDeleteSlot | kLengthen)) || (request[0] >> kInsertShift) != 0;
     step.symbol.push_back((changed ? kFlagChanged : 0) | (ambiguous ? kFlagAmbiguous : 0) |
-                          (request[0] & kReaches ? kFlagReaches : 0) | (request[0] & kUnsure ? kFlagUnsure : 0));
+                          (request[0] & kReaches ? kFlagReaches : 0) |
+                          (unsure || built.unsure || (request[0] & kUnsure) ? kFlagUnsure : 0));
     for (std::size_t k = output.size(); k-- > 0;) {
       step.symbol.push_back(output[k].first);
       step.symbol.push_back(output[k].second);

@@ -538,7 +538,7 @@ std::vector<InstanceId> Requests::MothersChanged() const {
   return mothers;
 }
 
-bool Requests::CrossesAlone() const { return InsertionsCross() || BeforeDeletions(true).Crosses(); }
+bool Requests::CrossesAlone() const { return InsertionsCross() || LinesCross() || BeforeDeletions(true).Crosses(); }
 
 // Insertions come before lines: they are made while all lines of the form before still stand.
 bool Requests::InsertionsCross() const {
@@ -550,8 +550,16 @@ bool Requests::InsertionsCross() const {
   return graph.Crosses();
 }
 
+// Lines come before contents: what spreads past another bearer crosses, though its source bears something new in the end.
+bool Requests::LinesCross() const {
+  if (lines_.empty() || contents_.empty()) return false;  // judged with the rest
+  Graph graph = WithLines(true);
+  SetItems(graph, InsertedSlots(), {});
+  return graph.Crosses();
+}
+
 std::string Requests::CrossedTier() const {
-  const std::optional<NodeId> node = BeforeDeletions(true).CrossedTier();
+  const std::optional<NodeId> node = (LinesCross() ? WithLines(true) : BeforeDeletions(true)).CrossedTier();
   return node ? view_.graph().tree()[*node].name : "";
 }
 
@@ -579,13 +587,18 @@ std::string Requests::Ambiguity() const {
 
 // ---- carrying out ---------------------------------------------------------------------------------
 
-Graph Requests::BeforeDeletions(bool alone) const {
+Graph Requests::WithLines(bool alone) const {
   Graph graph = made_graph_;
   for (const Lines& lines : lines_) {
     if (alone && lines.left.empty() && lines.right.empty()) continue;
     graph.SetList(lines.mother, lines.node, Merge(lines, /*also_equal=*/alone).list);
   }
   for (const Merged& merged : merges_) graph.Merge(merged.kept, merged.gone);
+  return graph;
+}
+
+Graph Requests::BeforeDeletions(bool alone) const {
+  Graph graph = WithLines(alone);
   Longers longer;
   Lengthen(&longer);
   SetContents(graph, alone);

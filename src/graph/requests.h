@@ -147,7 +147,8 @@ class Requests {
   // A line to an instance equal to its neighbour-to-be is not drawn (but judged: whether it would cross comes first).
   NewList Merge(const Lines& lines, bool also_equal = false) const;
   std::string LineConflict(const Lines& lines) const;
-  // The form with everything but deletions. Alone: mothers that only lose something are left aside.
+  // The form with lines alone, and with everything but deletions. Alone: mothers that only lose something are left aside.
+  Graph WithLines(bool alone) const;
   Graph BeforeDeletions(bool alone) const;
   // Behind a slot, one more that bears this root.
   struct Longer {
@@ -162,6 +163,7 @@ class Requests {
   void SetItems(Graph& graph, const IdList& inserted, const Longers& longer) const;
   IdList InsertedSlots() const;
   bool InsertionsCross() const;
+  bool LinesCross() const;
   bool AreNeighbours(InstanceId a, InstanceId b) const;
 
   const View& view_;
