@@ -1,6 +1,6 @@
-# check: the planted row of the demo's survey is found and explained; formats, totals, exit codes.
+# check: the planted row of demo/sketch.tsv is found and explained; formats, totals, exit codes.
 source "$(dirname "$0")/common.inc"
-survey="$TIERSMITH_SOURCE/demo/survey.tsv"
+survey="$TIERSMITH_SOURCE/demo/sketch.tsv"
 
 run check "$velmari"
 is_code 0; has_out '5 of 5 rows derived, 0 failed'
@@ -9,7 +9,7 @@ is_code 1
 has_out '32 of 33 rows derived, 1 failed'
 has_out '/un-koɡ-lA/'; has_out 'expected  [unkoɡla]'; has_out 'derived   [uŋkoɡla]'
 has_out "first went wrong at rule 'nasal place'"
-has_out 'survey.tsv:28:'
+has_out 'sketch.tsv:28:'
 run check "$velmari" "$survey" --without 'nasal place'
 is_code 1; has_out '/sonp-lA/'
 

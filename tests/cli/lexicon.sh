@@ -1,4 +1,4 @@
-# recover --from lexicon. The words are Velmari, made up; what they come out as follows from the rules of demo/velmari.tier: n takes the
+# recover --from lexicon. The words are Velmari, made up; what they come out as follows from the rules of demo/sketch.tier: n takes the
 # place of a consonant, ɡ is devoiced at the end of a word, A is a after back vowels and æ elsewhere.
 source "$(dirname "$0")/common.inc"
 

@@ -1,4 +1,4 @@
-# Machine files: all rulesets and the demo answer the same from one as from the grammar, in every verb; damaged files.
+# Machine files: all rulesets and the demo's sketch answer the same from one as from the grammar, in every verb; damaged files.
 source "$(dirname "$0")/common.inc"
 cp -r "$TIERSMITH_SOURCE/rulesets" "$TIERSMITH_SOURCE/demo" "$t"
 mkdir "$t/alone"
@@ -15,7 +15,7 @@ same() {
 }
 
 compared=0
-for path in "$t"/rulesets/*/*.tier "$t"/demo/*.tier; do
+for path in "$t"/rulesets/*/*.tier "$t"/demo/sketch.tier; do
   cd "$(dirname "$path")"
   grammar="$(basename "$path")"
   run compile "$grammar" -o g.machine
@@ -24,7 +24,7 @@ for path in "$t"/rulesets/*/*.tier "$t"/demo/*.tier; do
   same 'sizes as TSV' compile --format tsv
   same check check
   same 'check as JSON' check --format json
-  [[ -e survey.tsv ]] && same 'a survey' check survey.tsv
+  [[ -e sketch.tsv ]] && same 'a survey' check sketch.tsv
   # Up to five forms of the data, both ways, and each rule left out once.
   run check "$grammar" --format tsv
   mapfile -t underlying < <(tail -n +2 <<<"$out" | cut -f1 | head -5)

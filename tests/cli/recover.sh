@@ -1,4 +1,4 @@
-# recover: candidates, columns, infinite sets, no candidate. Expectations follow from the rules of demo/velmari.tier:
+# recover: candidates, columns, infinite sets, no candidate. Expectations follow from the rules of demo/sketch.tier:
 # [kok] may be /kok/ or, by final devoicing, /koɡ/; h is lost before consonants, so there is no end of candidates.
 source "$(dirname "$0")/common.inc"
 

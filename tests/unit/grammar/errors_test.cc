@@ -460,7 +460,7 @@ std::vector<std::string> Tokens(const std::string& text) {
 
 TEST_CASE("errors: no message names a type of the program", "[unit]") {
   std::stringstream grammar;
-  grammar << std::ifstream(std::string(TIERSMITH_TEST_SOURCE) + "/demo/velmari.tier").rdbuf();
+  grammar << std::ifstream(std::string(TIERSMITH_TEST_SOURCE) + "/demo/sketch.tier").rdbuf();
   const std::vector<std::string> whole = Tokens(grammar.str());
   REQUIRE(whole.size() > 300);
   // Words that the demo does not use stand in some of the messages too.
