@@ -411,10 +411,11 @@ struct PatternCompiler::Impl {
                           {},
                           true});
       } else if (change.op == Change::Op::kMerge) {
-        const bool forward = Position(change.source) < Position(change.target);
+        changed[static_cast<std::size_t>(change.source)] = 1;
+        if (InsertsBetween(change)) continue;  // no neighbours
+        const bool forward = Place(change.source) < Place(change.target);
         merges.push_back(
             {i, forward ? change.source : change.target, forward ? change.target : change.source, change.node});
-        changed[static_cast<std::size_t>(change.source)] = 1;
       }
     }
   }
@@ -544,13 +545,22 @@ struct PatternCompiler::Impl {
           spread.delinks = true;
           spread.delink = static_cast<int>(j);
         }
-        if (other.op == Change::Op::kInsert && Contains(other.inserted, spread.node)) {
-          const int place = PlaceOfInsertion(j);
-          if ((source < place && place < target) || (target < place && place < source)) spread.inserts_between = true;
-        }
       }
+      spread.inserts_between = InsertsBetween(change);
       spreads.push_back(spread);
     }
+  }
+
+  // Does the rule put a bearer of the node between the two items of a change?
+  bool InsertsBetween(const Change& change) const {
+    const int source = Place(change.source), target = Place(change.target);
+    for (std::size_t j = 0; j < rule.changes.size(); ++j) {
+      const Change& other = rule.changes[j];
+      if (other.op != Change::Op::kInsert || !Contains(other.inserted, change.node)) continue;
+      const int place = PlaceOfInsertion(j);
+      if ((source < place && place < target) || (target < place && place < source)) return true;
+    }
+    return false;
   }
 
   // ---- compiling ------------------------------------------------------------------------------
@@ -758,7 +768,7 @@ struct PatternCompiler::Impl {
   }
   int DomainField() const { return ConditionField(clauses.size(), 0); }
   int CopyField(std::size_t i) const { return DomainField() + 1 + static_cast<int>(i); }  // as its source
-  enum MergeAnswer { kLastContent, kFirstContent, kGoesOn, kFirstIsHeldLeft, kMergeFields };
+  enum MergeAnswer { kLastContent, kFirstContent, kMoreBehind, kFirstIsHeldLeft, kSameMother, kMergeFields };
   int MergeField(std::size_t i) const { return CopyField(copies.size()) + kMergeFields * static_cast<int>(i); }
   enum WatchAnswer { kBears, kHeldFromLeft, kHeldToRight, kSeveral, kFreeBears, kFreeFromLeft, kAsked, kWatchFields };
   int WatchField(std::size_t i) const { return MergeField(merges.size()) + kWatchFields * static_cast<int>(i); }
@@ -822,8 +832,10 @@ struct PatternCompiler::Impl {
       const NodeId node = merges[i].node;
       answers[kLastContent] = ContentNumber(visible.part, node, {Member::Which::kLast, 0});
       answers[kFirstContent] = ContentNumber(visible.part, node, {Member::Which::kFirst, 0});
-      answers[kGoesOn] = HoldsOn(letter, node);
       answers[kFirstIsHeldLeft] = (space.Marks(letter, node) & kFromLeft) != 0;
+      const std::int32_t mother = space.Marks(letter, space.tree()[node].mother);
+      answers[kMoreBehind] = space.Of(letter[0], node).count > 1 && !(mother & kToRight);
+      answers[kSameMother] = (mother & kFromLeft) != 0;
     }
     if (!copies.empty() || rule.preserving || rule.prefer != Rule::Prefer::kNone)
       profile[LetterField()] = letters.Intern(letter);
@@ -1575,19 +1587,15 @@ struct PatternCompiler::Impl::Builder {
       }
       if (state == 0) continue;  // before the left item, or behind the right one
       const bool bears = answers[kFirstContent] != 0;
-      if (state > 0 && bears && !answers[kFirstIsHeldLeft]) {  // another one: it must be the right item's
+      if (bears && !answers[kFirstIsHeldLeft] && !answers[kSameMother]) {  // another one: it must be the right item's
         if (answers[kFirstContent] != state) return false;
         *merging |= 1 << merge.change;
         state = -state;
-      } else if (state < 0 && bears && !answers[kFirstIsHeldLeft]) {
-        return false;
       }
       if (label == merge.right) {
         if (state > 0 || !bears) return false;  // one with the left item's, or none
         state = 0;
-      } else if (bears && answers[kFirstContent] != answers[kLastContent]) {
-        return false;  // one more behind it
-      } else if (bears && !answers[kGoesOn] && state > 0) {
+      } else if (answers[kMoreBehind] && !(state > 0 && answers[kSameMother])) {
         return false;
       }
     }

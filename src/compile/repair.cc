@@ -56,6 +56,7 @@ struct Walker {
   }
   void Fresh() {
     if (next == Repair::kOldToTheLeft) pending = Repair::kOldLeftTaken;
+    if (next == Repair::kNearestOld && alive && pending == Repair::kNothing) pending = Repair::kNearestOldTaken;
     New(next == Repair::kNewToTheLeft, Repair::kBehindFresh);
   }
   void OldRight() {
@@ -118,22 +119,27 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, co
     const bool mother_moved = mother.part != nullptr && mother.from != Origin::kOwn && !IsFresh(mother.from);
 
     const auto merged = [&](NodeId of) { return merges != nullptr && (*merges)[of]; };
+    const auto merged_above = [&](NodeId of) {
+      while (of != kSlotNode && !merged(of)) of = tree[of].mother;
+      return of != kSlotNode;
+    };
     const auto moved_entries = [&] {  // under a mother that moved here they keep their links
       for (std::size_t k = list.size(); k-- > 0;) {
         walker.Kept(k + 1 == list.size() && (mother.part->links >> bit_index & 1u));
       }
     };
-    const auto give_up = [&] {
+    const auto give_up = [&](bool merges_left) {
       const std::int32_t next = walker.next;
       const bool lives = (old_count == 1 && old_bit && walker.alive) || next == kOldToTheLeft || next == kNewToTheLeft;
       for (int k = old_count; k-- > 0;) walker.GivenUp(k + 1 == old_count && old_bit);
       state.old = lives ? Old::kElsewhere : Old::kGivenUp;
       walker.alive = lives;
+      if (lives && merges_left) walker.next = kOldToTheLeft;
     };
 
     const auto lose = [&] {                                      // together with the mother
       if (mother_index >= 0) before_loss = walker.Memory() + 1;  // a slot is of one item only
-      give_up();
+      give_up(merged_above(node));
     };
 
     if (mother_moved) {
@@ -164,7 +170,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, co
         }
         const bool any_kept = std::find(kept.begin(), kept.end(), 1) != kept.end();
         if (!any_kept) {
-          give_up();
+          give_up(merged(node));
         } else {
           for (int k = old_count; k-- > 0;) {
             const bool bit = k + 1 == old_count && old_bit;

@@ -45,7 +45,8 @@ class ApplyPass {
     erase_at_ = draw_at_ + Repair::kEntries * space_.live().size();
     objects_at_ = erase_at_ + Repair::kEntries * space_.live().size();
     joined_at_ = objects_at_ + space_.live().size();
-    size_ = joined_at_ + 1;
+    longer_at_ = joined_at_ + 1;
+    size_ = longer_at_ + 1;
   }
 
   // With nothing to the right, all is as if an unlinked bearer stood there: memories that no change stirs stay as they are.
@@ -90,6 +91,7 @@ class ApplyPass {
     lines.left_origin = rule_.mode == Rule::Mode::kRightward ? Origin::kNewLeft : Origin::kOldLeft;
     lines.right_origin = rule_.mode == Rule::Mode::kLeftward ? Origin::kNewRight : Origin::kOldRight;
     BuiltLetter built = builder_.Build(letter, &request[1], lines);
+    LengthenWhatStays(letter, built, &request, &step.state);
     bool ambiguous = built.clash;
     if (step.state[joined_at_] != 0) Join(&built.slot);
 
@@ -118,6 +120,18 @@ class ApplyPass {
     if (letter.boundary == Boundary::kMorpheme) return Key{kFlagChanged};
     letter.boundary = Boundary::kMorpheme;
     return Key{kFlagChanged, space_.classes().ClassWithRestOf(class_id, letter), -1};
+  }
+
+  // A root is made longer at its last slot that stays its own.
+  void LengthenWhatStays(const Key& letter, const BuiltLetter& built, Key* request, Key* state) const {
+    if (space_.Of(letter[0], kRootNode).count == 0) return;
+    std::int32_t& waiting = (*state)[longer_at_];
+    if (waiting != 0) (*request)[0] |= kLengthen;
+    const WorkPart* root = FindPart(built.slot, kRootNode, false);
+    const bool stays = !((*request)[0] & kDeleteSlot) && root != nullptr && root->origin == Origin::kOwn;
+    const bool goes_on = space_.Marks(letter, kRootNode) & kFromLeft;
+    waiting = !stays && goes_on && ((*request)[0] & kLengthen) ? 1 : 0;
+    if (!stays) (*request)[0] &= ~kLengthen;
   }
 
   // The slot's new root is that of the next slot.
@@ -214,7 +228,7 @@ class ApplyPass {
   Repair draw_, erase_;
   RequestCarrier carrier_;
   std::vector<std::size_t> offsets_;
-  std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0, joined_at_ = 0;
+  std::size_t size_ = 0, draw_at_ = 0, erase_at_ = 0, objects_at_ = 0, joined_at_ = 0, longer_at_ = 0;
   Key no_letter_;
   std::vector<int> rest_inserted_;  // by change
 };

@@ -391,15 +391,24 @@ void Requests::AddMerge(const Change& change, const Match& match) {
   const InstanceId kept = Facing(OldUnder(source.slot, change.node), from_left);
   const InstanceId gone = Facing(OldUnder(target.slot, change.node), !from_left);
   if (kept == kNone || gone == kNone || kept == gone) return;
-  if (!OldEqual(kept, gone) || !AreNeighbours(kept, gone)) return;
+  if (!OldEqual(kept, gone) || !AreNeighbours(kept, gone, match)) return;
   Note(Ask::kMerge, std::min(kept, gone), change.node, std::max(kept, gone));
   const InstanceId a = Surviving(kept), b = Surviving(gone);
   if (a != b) merges_.push_back({a, b});
 }
 
-bool Requests::AreNeighbours(InstanceId a, InstanceId b) const {
-  Graph graph = made_graph_;
-  SetItems(graph, InsertedSlots(), {});
+// On the form before, with what this match inserts; where others insert between them, lines cross.
+bool Requests::AreNeighbours(InstanceId a, InstanceId b, const Match& match) const {
+  Graph graph = view_.graph();
+  IdList inserted;
+  for (const Insertion& insertion : insertions_) {
+    const Change& change = *insertion.change;
+    const std::vector<Change>& own = match.clause->changes;
+    const bool of_match =
+        &change >= own.data() && &change < own.data() + own.size() && insertion.host == match.labels[change.target];
+    inserted.push_back(of_match ? AddInserted(graph, change) : kNone);
+  }
+  SetItems(graph, inserted, {});
   const std::vector<InstanceId> tier = graph.TierOf(graph[a].node);
   for (std::size_t i = 1; i < tier.size(); ++i) {
     if ((tier[i - 1] == a && tier[i] == b) || (tier[i - 1] == b && tier[i] == a)) return true;
@@ -600,19 +609,22 @@ Graph Requests::WithLines(bool alone) const {
 Graph Requests::BeforeDeletions(bool alone) const {
   Graph graph = WithLines(alone);
   Longers longer;
-  Lengthen(&longer);
   SetContents(graph, alone);
   SetRoots(graph, &longer);
+  Lengthen(graph, &longer);
   SetItems(graph, InsertedSlots(), longer);
   return graph;
 }
 
-// A root of which nothing stays is not made longer.
-void Requests::Lengthen(Longers* longer) const {
+// Behind its last slot that stays its own; a root of which nothing stays is not made longer.
+void Requests::Lengthen(const Graph& graph, Longers* longer) const {
   for (InstanceId root : lengthened_) {
+    const InstanceId held = Surviving(root);
     const std::vector<int> slots = SlotsOfRoot(root);
-    if (std::all_of(slots.begin(), slots.end(), [&](int slot) { return Deletes(slot); })) continue;
-    longer->push_back({view_.slot(slots.back()), root});
+    const auto last = std::find_if(slots.rbegin(), slots.rend(), [&](int slot) {
+      return !Deletes(slot) && Has(graph[view_.slot(slot)].daughters, held);
+    });
+    if (last != slots.rend()) longer->push_back({view_.slot(*last), held});
   }
 }
 
@@ -691,6 +703,7 @@ void Requests::SetItems(Graph& graph, const IdList& inserted, const Longers& lon
     for (std::size_t i : written) {
       const Insertion& insertion = insertions_[i];
       if (view_.item(insertion.host) != host_item || insertion.change->before != before) continue;
+      if (inserted[i] == kNone) continue;
       add(inserted[i]);
       if (insertion.change->is_long) add_another(graph[inserted[i]].daughters.front());
     }

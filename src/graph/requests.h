@@ -157,14 +157,14 @@ class Requests {
   using Longers = boost::container::small_vector<Longer, 2>;
   void SetContents(Graph& graph, bool alone) const;
   void SetRoots(Graph& graph, Longers* longer) const;
-  void Lengthen(Longers* longer) const;
+  void Lengthen(const Graph& graph, Longers* longer) const;
   InstanceId Surviving(InstanceId id) const;
-  // The items with what is inserted (each insertion's slot beside it) and made longer; boundaries deleted.
+  // The items with what is inserted (each insertion's slot beside it, or kNone) and made longer; boundaries deleted.
   void SetItems(Graph& graph, const IdList& inserted, const Longers& longer) const;
   IdList InsertedSlots() const;
   bool InsertionsCross() const;
   bool LinesCross() const;
-  bool AreNeighbours(InstanceId a, InstanceId b) const;
+  bool AreNeighbours(InstanceId a, InstanceId b, const Match& match) const;
 
   const View& view_;
   Graph made_graph_;  // the form before with the trees of inserted items, and the class nodes made hanging in it

@@ -192,6 +192,8 @@ class Checker {
   bool CheckChanges(const syntax::Rule& written, const Rule& rule, const Clause& clause);
   bool RefuseBeside(const Change& change, const Change& other, const std::string& message, const std::string& first);
   bool CheckBesideLine(const Clause& clause, const Change& line);
+  bool CheckBesideMerged(const Clause& clause, const Change& merge);
+  bool CheckMergesAcross(const Rule& rule);
   bool CheckBesideReplaced(const Clause& clause, const Change& replacing);
   bool CheckBesideLength(const Clause& clause, const Change& change);
   bool CheckOneChanged(const syntax::Rule& written, const Clause& clause);

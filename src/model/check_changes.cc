@@ -6,6 +6,7 @@
 #include <algorithm>
 
 #include "model/check.h"
+#include "model/content.h"
 
 namespace tiersmith {
 namespace {
@@ -369,6 +370,23 @@ bool ChangesLength(const Change& change) {
   return change.op == Change::Op::kLengthen || change.op == Change::Op::kShorten;
 }
 
+// Does the change give its item such a node anew?
+bool Gives(const Change& change, NodeId node) {
+  if (change.op == Change::Op::kSetLiteral) return node == kRootNode || Bears(change.inserted, node);
+  if (GivesWhole(change)) return change.node == node || change.node == kRootNode;
+  return std::any_of(change.settings.begin(), change.settings.end(),
+                     [node](const Setting& setting) { return setting.node == node && !TakesAway(setting); });
+}
+
+// Does an item stand between two others of the `where`?
+bool StandsBetween(const Clause& clause, int label, int one, int other) {
+  const auto place = [&](int of) {
+    const std::vector<PatternItem>& items = clause.where.items;
+    return std::find_if(items.begin(), items.end(), [of](const PatternItem& item) { return item.label == of; });
+  };
+  return place(label) > std::min(place(one), place(other)) && place(label) < std::max(place(one), place(other));
+}
+
 std::string LabelName(const Clause& clause, int label) { return clause.labels[static_cast<std::size_t>(label)]; }
 
 }  // namespace
@@ -376,6 +394,7 @@ std::string LabelName(const Clause& clause, int label) { return clause.labels[st
 bool Checker::CheckChanges(const syntax::Rule& written, const Rule& rule, const Clause& clause) {
   for (const Change& change : clause.changes) {
     if (MovesLines(change) && !CheckBesideLine(clause, change)) return false;
+    if (change.op == Change::Op::kMerge && !CheckBesideMerged(clause, change)) return false;
     if (!CheckBesideReplaced(clause, change)) return false;
     if (ChangesLength(change) && !CheckBesideLength(clause, change)) return false;
   }
@@ -417,6 +436,44 @@ bool Checker::CheckBesideLine(const Clause& clause, const Change& line) {
       if (node == line.node || !tree.Dominates(line.node, node)) continue;
       return RefuseBeside(
           line, other, "this rule moves lines of '" + name + "' and changes '" + tree[node].name + "' under it", here);
+    }
+  }
+  return true;
+}
+
+// What two items come to share, and a new one between them, whose line theirs would cross.
+bool Checker::CheckBesideMerged(const Clause& clause, const Change& merge) {
+  const std::string& name = grammar_.tree[merge.node].name;
+  for (const Change& other : clause.changes) {
+    if (!Gives(other, merge.node) || !StandsBetween(clause, other.target, merge.source, merge.target)) continue;
+    return RefuseBeside(merge, other,
+                        "this rule merges '" + name + "' of '" + LabelName(clause, merge.target) + "' and '" +
+                            LabelName(clause, merge.source) + "' and gives one to '" + LabelName(clause, other.target) +
+                            "' between them",
+                        "'" + name + "' is merged here");
+  }
+  return true;
+}
+
+// What one clause merges must be alike when another clause has changed it, too.
+bool Checker::CheckMergesAcross(const Rule& rule) {
+  std::vector<const Clause*> clauses{&rule};
+  for (const Clause& clause : rule.otherwise) clauses.push_back(&clause);
+  for (const Clause* merging : clauses) {
+    for (const Change& merge : merging->changes) {
+      if (merge.op != Change::Op::kMerge) continue;
+      for (const Clause* clause : clauses) {
+        for (const Change& other : clause->changes) {
+          for (const NodeId node : ChangedNodes(other)) {
+            if (node == merge.node || !grammar_.tree.Dominates(merge.node, node)) continue;
+            const std::string& name = grammar_.tree[merge.node].name;
+            return RefuseBeside(
+                merge, other,
+                "one clause merges '" + name + "' and another changes '" + grammar_.tree[node].name + "' under it",
+                "'" + name + "' is merged here");
+          }
+        }
+      }
     }
   }
   return true;

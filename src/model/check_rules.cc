@@ -178,6 +178,7 @@ void Checker::CheckRule(const syntax::Rule& written) {
     good = CheckClause(further, written, rule, &clause) && good;
     rule.otherwise.push_back(std::move(clause));
   }
+  good = good && CheckMergesAcross(rule);
   if (good) RefuseNotRun(NotRunYet(rule, written.name.span, grammar_.tree));
   grammar_.rules.push_back(std::move(rule));
 }

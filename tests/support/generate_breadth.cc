@@ -302,21 +302,77 @@ class Decorator {
     return true;
   }
 
-  // Alone, or beside what else the rule does to that item; often where length is asked for.
+  // Alone, or beside what else the rule does; often where length is asked for.
   bool ChangeLength(Op op) {
-    const std::vector<Change> others = rule_->changes;
     Only(op);
-    for (const Change& other : others) {
-      const bool of_it = other.target == rule_->changes.front().target && other.source != other.target;
-      if (of_it && other.op != Op::kDelete && other.node != kRootNode && Chance(rng_, 0.4))
-        rule_->changes.push_back(other);
-    }
+    if (Chance(rng_, 0.6)) AddChanges();
     if (Chance(rng_, 0.6)) AddTest(Random({FeatureTest::Kind::kLong, FeatureTest::Kind::kShort}));
     if (rule_->mode != Rule::Mode::kAtOnce && Chance(rng_, 0.2)) {
       rule_->probability = 0.5;
       rule_->by_word = Chance(rng_, 0.5);
     }
     return true;
+  }
+
+  // One or two changes more, of any kind; in a sweep, of the item visited.
+  void AddChanges() {
+    std::vector<int> slots;
+    for (PatternItem* slot : Slots()) {
+      if (slot->label >= 0) slots.push_back(slot->label);
+    }
+    if (slots.empty()) return;
+    const auto any_slot = [&] { return slots[static_cast<std::size_t>(Below(rng_, static_cast<int>(slots.size())))]; };
+    const std::size_t wanted = rule_->changes.size() + (Chance(rng_, 0.3) ? 2 : 1);
+    for (int tries = 0; tries < 20 && rule_->changes.size() < wanted; ++tries) {
+      const bool sweeps = rule_->mode != Rule::Mode::kAtOnce;
+      const int target = sweeps ? rule_->changes.front().target : any_slot(), source = any_slot();
+      rule_->changes.push_back(AnyChange(target, source));
+      const Change& change = rule_->changes.back();
+      const bool pair = change.source >= 0;
+      if ((pair && source == target) || (sweeps && change.op == Op::kMerge) || !StandBesideEachOther())
+        rule_->changes.pop_back();
+    }
+    std::shuffle(rule_->changes.begin(), rule_->changes.end(), rng_);
+  }
+
+  Change AnyChange(int target, int source) {
+    Change change;
+    change.target = target;
+    change.op = Random({Op::kSpread, Op::kDelink, Op::kDelink, Op::kSet, Op::kSetLiteral, Op::kInsert, Op::kInsert,
+                        Op::kDelete, Op::kDelete, Op::kLengthen, Op::kShorten, Op::kMerge});
+    switch (change.op) {
+      case Op::kSpread:
+      case Op::kSet:
+      case Op::kFill:
+      case Op::kSetAs:
+      case Op::kFillAs:
+        return ChangeOf(target, source);
+      case Op::kMerge:
+        change.source = source;
+        change.node = Chance(rng_, 0.2) ? kRootNode : Node();
+        break;
+      case Op::kDelink:
+        change.node = Node();
+        break;
+      case Op::kSetLiteral:
+        change.node = kRootNode;
+        change.inserted = AnyLetter();
+        change.is_long = Chance(rng_, 0.35);
+        break;
+      case Op::kInsert:
+        change.inserted = AnyLetter();
+        change.before = Chance(rng_, 0.5);
+        change.is_long = Chance(rng_, 0.15);
+        break;
+      case Op::kDelete:
+      case Op::kLengthen:
+      case Op::kShorten:
+        break;
+    }
+    return change;
+  }
+  const FeatureTree& AnyLetter() {
+    return letters_[static_cast<std::size_t>(Below(rng_, static_cast<int>(letters_.size())))];
   }
 
   // A rule whose matches contend for one slot: it may get what any of several others has.
@@ -455,23 +511,54 @@ class Decorator {
     }
   }
 
-  // What the checker lets through: no node changed together with one under it, nor given twice to one item.
+  // What the checker lets through (model/check_changes.cc, "changes beside each other"), and a little less: no node is given
+  // or moved together with one under it, nor given twice to one item.
   bool StandBesideEachOther() const {
-    const auto nodes = [](const Change& change) {
-      std::vector<NodeId> all;
-      for (const Setting& setting : change.settings) all.push_back(setting.node);
-      if (change.op != Op::kInsert && change.op != Op::kDelete && all.empty()) all.push_back(change.node);
-      return all;
+    const std::vector<Change>& changes = rule_->changes;
+    return std::all_of(changes.begin(), changes.end(), [&](const Change& a) {
+      return std::all_of(changes.begin(), changes.end(),
+                         [&](const Change& b) { return &a == &b || StandBeside(a, b); });
+    });
+  }
+  static bool ChangesLength(const Change& change) { return change.op == Op::kLengthen || change.op == Op::kShorten; }
+  static std::vector<NodeId> NodesOf(const Change& change) {
+    std::vector<NodeId> nodes;
+    for (const Setting& setting : change.settings) nodes.push_back(setting.node);
+    const bool of_node = change.op != Op::kInsert && change.op != Op::kDelete && !ChangesLength(change);
+    if (of_node && nodes.empty()) nodes.push_back(change.node);
+    return nodes;
+  }
+  static bool OfOneItem(const Change& a, const Change& b) {
+    const auto changes = [](const Change& change, int label) {
+      return change.target == label || (change.op == Op::kMerge && change.source == label);
     };
-    for (const Change& a : rule_->changes) {
-      for (const Change& b : rule_->changes) {
-        if (&a == &b) continue;
-        for (NodeId above : nodes(a)) {
-          for (NodeId node : nodes(b)) {
-            const bool twice = above == node && a.target == b.target && (a.op != Op::kSpread || b.op != Op::kSpread);
-            if (twice || (above != node && tree_.Dominates(above, node))) return false;
-          }
-        }
+    return changes(b, a.target) || (a.op == Op::kMerge && changes(b, a.source));
+  }
+  static bool Gives(const Change& change, NodeId node) {
+    if (change.op == Op::kSetLiteral) return node == kRootNode || Bears(change.inserted, node);
+    if (change.op == Op::kSetAs || change.op == Op::kFillAs) return change.node == node || change.node == kRootNode;
+    return std::any_of(change.settings.begin(), change.settings.end(), [node](const Setting& setting) {
+      return setting.node == node && (!setting.values.empty() || setting.variable >= 0);
+    });
+  }
+  // Labels are numbered from left to right.
+  static bool Between(int label, int one, int other) {
+    return label > std::min(one, other) && label < std::max(one, other);
+  }
+  bool StandBeside(const Change& a, const Change& b) const {
+    const std::vector<NodeId> nodes = NodesOf(b);
+    const bool one_item = OfOneItem(a, b);
+    if (ChangesLength(a) && one_item) {
+      if (ChangesLength(b)) return a.op == b.op;
+      if (std::find(nodes.begin(), nodes.end(), kRootNode) != nodes.end()) return false;
+    }
+    if (a.op == Op::kMerge && Between(b.target, a.source, a.target) && Gives(b, a.node)) return false;
+    for (NodeId above : NodesOf(a)) {
+      for (NodeId node : nodes) {
+        const bool lines = (a.op == Op::kSpread || a.op == Op::kDelink) && (b.op == Op::kSpread || b.op == Op::kDelink);
+        if (above == node && one_item && !lines && !(a.op == Op::kMerge && b.op == Op::kMerge)) return false;
+        const bool new_root = above == kRootNode && a.op != Op::kSpread && a.op != Op::kDelink && a.op != Op::kMerge;
+        if (above != node && tree_.Dominates(above, node) && (one_item || !new_root)) return false;
       }
     }
     return true;
@@ -494,30 +581,15 @@ class Decorator {
     return change;
   }
 
-  // Two items of a match change at once, or one and the boundary between them, or what is inserted beside it.
+  // Several items of a match change at once, or one and the boundary between them, or what is inserted beside it.
   bool SeveralItems() {
     const int pick = Below(rng_, 10);
     if (pick < 2 && !TwoContents()) return false;
     if (pick == 2 && !DeleteBoundary()) return false;
     if (pick == 3) return InsertedGrown();
     rule_->mode = Rule::Mode::kAtOnce;
-    int a = 0, b = 0;
-    if (!TwoLabels(&a, &b)) return false;
-    for (int label : {a, b}) {
-      const bool changed = std::any_of(rule_->changes.begin(), rule_->changes.end(),
-                                       [&](const Change& change) { return change.target == label; });
-      if (changed) continue;
-      Change change;
-      // What is spread is not given as well: an open question of rules that are not optional, too.
-      const bool nasal_moves = std::any_of(rule_->changes.begin(), rule_->changes.end(), [&](const Change& other) {
-        return other.op == Op::kSpread && (other.node == kRootNode || other.node == NodeOf(grammar_, "nasal"));
-      });
-      change.op = Random({Op::kDelete, Op::kDelink, nasal_moves ? Op::kDelete : Op::kSet});
-      change.target = label;
-      change.node = Node();
-      if (change.op == Op::kSet) change.settings = {{NodeOf(grammar_, "nasal"), {static_cast<Value>(Below(rng_, 2))}}};
-      rule_->changes.push_back(change);
-    }
+    if (pick < 6 && !Merge()) return false;
+    if (Chance(rng_, 0.7)) AddChanges();
     return true;
   }
 
@@ -545,6 +617,7 @@ class Decorator {
     change.node = Chance(rng_, 0.2) ? kRootNode : Node();
     rule_->changes = {change};
     rule_->mode = Rule::Mode::kAtOnce;
+    if (Chance(rng_, 0.6)) AddChanges();
     return true;
   }
 
@@ -735,7 +808,9 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
     Rule rule = RandomRule(rng, grammar, tests, letters);
     if (!Decorate(rng, grammar, letters, construct, &rule)) continue;
     const bool length = construct == Construct::kLengthen || construct == Construct::kShorten;
-    if (construct == Construct::kOtherwise || (length && rule.mode != Rule::Mode::kAtOnce && Chance(rng, 0.2))) {
+    const bool merge = construct == Construct::kMerge;
+    if (construct == Construct::kOtherwise || (merge && Chance(rng, 0.2)) ||
+        (length && rule.mode != Rule::Mode::kAtOnce && Chance(rng, 0.2))) {
       const int further = Chance(rng, 0.3) ? 2 : 1;
       for (int i = 0; i < further; ++i) {
         Rule other = RandomRule(rng, grammar, tests, letters);

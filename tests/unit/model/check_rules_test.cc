@@ -453,6 +453,12 @@ TEST_CASE("check rules: changes that cannot stand beside each other", "[unit]") 
            "merges 'Place' of an item and moves its lines"},
           {"rule \"r\" { where X:C Y:C merge X.voice Y.voice set Y [+voice] }", Kind::kBadRule, "set Y [+voice]",
            "a line and a content of 'voice' on 'Y'"},
+          {"rule \"r\" { where X:C Y:V Z:C merge X.voice Z.voice set Y /i/ }", Kind::kBadRule, "set Y /i/",
+           "merges 'voice' of 'X' and 'Z' and gives one to 'Y' between them"},
+          {"rule \"r\" { where X:C Y:V Z:C merge Z.voice X.voice set Y [-voice] }", Kind::kBadRule, "set Y [-voice]",
+           "gives one to 'Y' between them"},
+          {"rule \"r\" { where X:C Y:C merge X.Place Y.Place otherwise where Z:V delink Z.back }", Kind::kBadRule,
+           "delink Z.back", "one clause merges 'Place' and another changes 'back' under it"},
           {"rule \"r\" { where X:C lengthen X set X /t/ }", Kind::kBadRule, "set X /t/", "moves or replaces its root"},
           {"rule \"r\" { where X:C lengthen X shorten X }", Kind::kBadRule, "shorten X",
            "to lengthen 'X' and to shorten it"},
@@ -466,7 +472,10 @@ TEST_CASE("check rules: changes that cannot stand beside each other", "[unit]") 
   for (const char* rule :
        {"where X:C Y:C  set X /t/  set Y [+voice]", "where X:C Y:C  set X /t/  spread X.Place to Y",
         "where X:C  lengthen X  set X [+voice]", "where X:C Y:C  set X.back as Y.back  set X [+high]",
-        "where X:V  insert E:/i/ after X  spread X.back to E  iterate leftward"}) {
+        "where X:V  insert E:/i/ after X  spread X.back to E  iterate leftward",
+        "where X:C Z:C Y:V  merge X.voice Z.voice  set Y /i/",
+        "where X:C Y:V Z:C  merge X.Place Z.Place  set Y [+voice]",
+        "where X:C Y:C  merge X.Place Y.Place  otherwise where Z:V  delink Z.voice"}) {
     CAPTURE(rule);
     CHECK(Whole("rule \"r\" { " + std::string(rule) + " }").diagnostics.all().empty());
   }
