@@ -31,6 +31,7 @@ struct Walker {
   std::int32_t pending;
   bool alive;
   bool crossed = false;
+  bool given_away = false;  // what was given up here is held on the right
   bool first_done = false;
   bool bit = false;  // link of the last new entry
 
@@ -51,12 +52,13 @@ struct Walker {
       pending = goes_on ? Repair::kNearestOldTaken : Repair::kNothing;
     }
     if (next == Repair::kNewToTheLeft) return;
+    given_away = next == Repair::kOldToTheLeft;
     next = next == Repair::kOldToTheLeft || (next == Repair::kNearestOld && old_bit) ? Repair::kNearestOld
                                                                                      : Repair::kUnrelated;
   }
   void Fresh() {
     if (next == Repair::kOldToTheLeft) pending = Repair::kOldLeftTaken;
-    if (next == Repair::kNearestOld && alive && pending == Repair::kNothing) pending = Repair::kNearestOldTaken;
+    if (given_away && pending == Repair::kNothing) pending = Repair::kNearestOldTaken;
     New(next == Repair::kNewToTheLeft, Repair::kBehindFresh);
   }
   void OldRight() {
@@ -155,6 +157,7 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, co
       state.from = mother.from;
     } else if (mother.old == Old::kElsewhere) {
       state.old = old_count > 0 ? Old::kElsewhere : Old::kNone;
+      walker.given_away = old_count > 0;
     } else if (mother.old == Old::kGivenUp) {
       if (old_count > 0) lose();
     }

@@ -552,6 +552,8 @@ class Decorator {
       if (ChangesLength(b)) return a.op == b.op;
       if (std::find(nodes.begin(), nodes.end(), kRootNode) != nodes.end()) return false;
     }
+    // What is spread is not given as well: an open question.
+    if (a.op == Op::kSpread && Gives(b, a.node)) return false;
     if (a.op == Op::kMerge && Between(b.target, a.source, a.target) && Gives(b, a.node)) return false;
     for (NodeId above : NodesOf(a)) {
       for (NodeId node : nodes) {
