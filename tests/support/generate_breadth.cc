@@ -14,6 +14,30 @@ namespace {
 using Op = Change::Op;
 using Kind = PatternItem::Kind;
 
+bool ChangesLength(const Change& change) { return change.op == Op::kLengthen || change.op == Op::kShorten; }
+
+std::vector<NodeId> NodesOf(const Change& change) {
+  std::vector<NodeId> nodes;
+  for (const Setting& setting : change.settings) nodes.push_back(setting.node);
+  const bool of_node = change.op != Op::kInsert && change.op != Op::kDelete && !ChangesLength(change);
+  if (of_node && nodes.empty()) nodes.push_back(change.node);
+  return nodes;
+}
+
+// Is a node merged in one clause, and something under it changed in another? The checker refuses that.
+bool MergesAcross(const Rule& rule, const Tree& tree) {
+  std::vector<Change> all = rule.changes;
+  for (const Clause& clause : rule.otherwise) all.insert(all.end(), clause.changes.begin(), clause.changes.end());
+  return std::any_of(all.begin(), all.end(), [&](const Change& merge) {
+    if (merge.op != Op::kMerge) return false;
+    return std::any_of(all.begin(), all.end(), [&](const Change& other) {
+      const std::vector<NodeId> nodes = NodesOf(other);
+      return std::any_of(nodes.begin(), nodes.end(),
+                         [&](NodeId node) { return node != merge.node && tree.Dominates(merge.node, node); });
+    });
+  });
+}
+
 class Decorator {
  public:
   Decorator(Rng& rng, const Grammar& grammar, const std::vector<FeatureTree>& letters, Rule* rule)
@@ -520,14 +544,6 @@ class Decorator {
                          [&](const Change& b) { return &a == &b || StandBeside(a, b); });
     });
   }
-  static bool ChangesLength(const Change& change) { return change.op == Op::kLengthen || change.op == Op::kShorten; }
-  static std::vector<NodeId> NodesOf(const Change& change) {
-    std::vector<NodeId> nodes;
-    for (const Setting& setting : change.settings) nodes.push_back(setting.node);
-    const bool of_node = change.op != Op::kInsert && change.op != Op::kDelete && !ChangesLength(change);
-    if (of_node && nodes.empty()) nodes.push_back(change.node);
-    return nodes;
-  }
   static bool OfOneItem(const Change& a, const Change& b) {
     const auto changes = [](const Change& change, int label) {
       return change.target == label || (change.op == Op::kMerge && change.source == label);
@@ -552,8 +568,6 @@ class Decorator {
       if (ChangesLength(b)) return a.op == b.op;
       if (std::find(nodes.begin(), nodes.end(), kRootNode) != nodes.end()) return false;
     }
-    // What is spread is not given as well: an open question.
-    if (a.op == Op::kSpread && Gives(b, a.node)) return false;
     if (a.op == Op::kMerge && Between(b.target, a.source, a.target) && Gives(b, a.node)) return false;
     for (NodeId above : NodesOf(a)) {
       for (NodeId node : nodes) {
@@ -825,6 +839,7 @@ Rule RandomRuleWith(Rng& rng, const Grammar& grammar, const std::vector<NamedTes
       }
     }
     if (construct == Construct::kComplete) return rule;
+    if (MergesAcross(rule, grammar.tree)) continue;
     if (!rule.otherwise.empty() && !NotRunYet(rule, {}, grammar.tree).empty()) continue;
     NoteEmpty(&rule.where);
     if (!Refused(grammar.tree, rule)) return rule;
