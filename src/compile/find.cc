@@ -344,7 +344,7 @@ struct Direction {
 constexpr std::int32_t kLinkedAhead = 1, kNearObject = 2;
 
 // Before the contents in the state of the pass against the sweep.
-constexpr std::size_t kFarState = 3;
+constexpr std::size_t kFarState = 4;
 
 // What a draw said.
 constexpr std::int32_t kDrawnApply = 1, kDrawnLeave = 2;
@@ -393,7 +393,8 @@ class Sweep {
     for (int s = 0; s < machine_.states; ++s) {
       for (const PatternArc& arc : machine_.arcs[s]) by_profile_[arc.profile].push_back({s, arc.role, arc.next});
     }
-    deciding_ = Deciding();
+    contents_ = Deciding();
+    if (pattern_.AsksOfSlotsBehind(direction.rightward)) deciding_ = contents_;
     asked_ = LinksAsked(requests.rule(), space_.tree());
     const std::vector<Change>& changes = requests.rule().changes;
     shortens_ =
@@ -405,12 +406,12 @@ class Sweep {
   std::size_t nodes() const { return requests_.nodes().size(); }
   bool saw_new_profile() const { return saw_new_profile_; }
 
-  // First pass, against the sweep. State: [far subset, ahead, last slot ahead, content ahead (+1) and ahead of the mother (+1)
+  // First pass, against the sweep. State: [far subset, ahead, last slot ahead, ahead if freed, content ahead (+1) and ahead of the mother (+1)
   // by node].
   Key FarStart() const {
     Key state(kFarState + 2 * nodes(), 0);
     state[0] = far_.start;
-    state[1] = state[2] = -1;
+    state[1] = state[2] = state[3] = -1;
     return state;
   }
   PassStep Far(const Key& state, const Key& symbol) {
@@ -418,9 +419,11 @@ class Sweep {
     step.symbol.push_back(state[0]);
     step.symbol.push_back(state[1]);
     step.symbol.push_back(state[2]);
+    step.symbol.push_back(state[3]);
     const int profile = pattern_.Profile(symbol);
     step.state[0] = far_.next[state[0]][profile];
-    step.state[1] = AheadBefore(state, symbol, profile);
+    step.state[1] = AheadBefore(state[0], state[1], symbol, profile);
+    step.state[3] = AheadBefore(state[0], state[3], symbol, Known(Freed(symbol)));
     step.state[2] = LastSlotBefore(state[2], symbol);
     for (std::size_t i = 0; i < nodes(); ++i) {
       std::int32_t* contents = &step.state[kFarState + 2 * i];
@@ -451,7 +454,7 @@ class Sweep {
   std::vector<PassStep> Near(const Key& packed, const Key& symbol) {
     SweepState state = Unpack(packed);
     const Key input = Annotated(symbol, space_);
-    const std::int32_t far = symbol[space_.AnnotatedSize()], ahead = symbol[space_.AnnotatedSize() + 1];
+    const std::int32_t far = symbol[space_.AnnotatedSize()];
     if (!space_.IsSlot(input[0])) {
       const int profile = Known(input);
       if (state.visit >= 0) state.visit = StepOn(state.visit, profile);
@@ -466,7 +469,12 @@ class Sweep {
       state.visit_contents = state.contents;
     }
     const Key at_visit = Current(input, state.behind_visit);
-    const Key request = Decide(&state, at_visit, far, ahead, first);
+    const bool as_read = SameCrossings(at_visit, input);
+    const bool freed = SameCrossings(at_visit, Freed(input));
+    const std::int32_t ahead = symbol[space_.AnnotatedSize() + (as_read ? 1 : 3)];
+    Key request = Decide(&state, at_visit, far, ahead, first);
+    const bool alike = symbol[space_.AnnotatedSize() + 1] == symbol[space_.AnnotatedSize() + 3];
+    if (first && !alike && !as_read && !freed) request[0] |= kUnsure;
     const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
     if (!asked || requests_.rule().probability >= 1) return {Went(std::move(state), symbol, at_visit, request)};
     std::vector<PassStep> steps;
@@ -601,15 +609,15 @@ class Sweep {
   }
 
   // Pairs (state before the rest of this root, role that one of its further slots then gets), as numbers; -1: none.
-  int AheadBefore(const Key& state, const Key& symbol, int profile) {
+  int AheadBefore(std::int32_t far, std::int32_t ahead, const Key& symbol, int profile) {
     const bool slot = space_.IsSlot(symbol[0]) && space_.Of(symbol[0], kRootNode).count > 0;
     if (slot && !(space_.Marks(symbol, kRootNode) & direction_.near_line())) return -1;
     std::vector<std::int32_t> pairs;
     const int roles = static_cast<int>(machine_.roles.size());
     for (const Arc& arc : by_profile_[profile]) {
-      if (slot && arc.role >= 0 && far_.members[state[0]][arc.to]) pairs.push_back(arc.from * roles + arc.role);
-      if (state[1] < 0) continue;
-      for (std::int32_t pair : aheads_[state[1]]) {
+      if (slot && arc.role >= 0 && far_.members[far][arc.to]) pairs.push_back(arc.from * roles + arc.role);
+      if (ahead < 0) continue;
+      for (std::int32_t pair : aheads_[ahead]) {
         if (pair / roles == arc.to) pairs.push_back(arc.from * roles + pair % roles);
       }
     }
@@ -617,6 +625,33 @@ class Sweep {
     std::sort(pairs.begin(), pairs.end());
     pairs.erase(std::unique(pairs.begin(), pairs.end()), pairs.end());
     return aheads_.Intern(pairs);
+  }
+
+  bool GoesOn(const Key& letter) const {
+    return space_.Of(letter[0], kRootNode).count > 0 && (space_.Marks(letter, kRootNode) & direction_.far_line());
+  }
+
+  // What further slots of a root ask depends on what is held behind it when it is visited: a slot as if nothing were that the
+  // rule gives contents of.
+  Key Freed(Key letter) const {
+    if (!space_.IsSlot(letter[0])) return letter;
+    for (std::size_t i = 0; i < space_.live().size(); ++i) {
+      if (contents_[space_.live()[i]] && space_.live()[i] != kRootNode)
+        letter[1 + i] &= ~(kOver | direction_.near_object());
+    }
+    return letter;
+  }
+
+  // Would contents that the rule gives cross the same lines in both?
+  bool SameCrossings(const Key& a, const Key& b) const {
+    const auto crosses = [&](const Key& letter, NodeId node) {
+      const std::int32_t marks = space_.Marks(letter, node);
+      const int count = space_.Of(letter[0], node).count;
+      return count == 0 ? (marks & kOver) != 0 : count == 1 && (marks & kObjectLeft) && (marks & kObjectRight);
+    };
+    return std::all_of(space_.live().begin(), space_.live().end(), [&](NodeId node) {
+      return !contents_[node] || node == kRootNode || crosses(a, node) == crosses(b, node);
+    });
   }
 
   // In a sweep to the right: what the last slot of the root has on its far side, for the slot before it; -1: none, or another
@@ -634,7 +669,7 @@ class Sweep {
 
   // On to the next letter: a visit lasts while the root does.
   void VisitOn(SweepState* state, const Key& input, const Key& at_visit) {
-    if (space_.Of(input[0], kRootNode).count > 0 && (space_.Marks(input, kRootNode) & direction_.far_line())) {
+    if (GoesOn(input)) {
       state->visit = StepOn(state->visit, Known(at_visit));
       Pass(&state->behind_visit, at_visit);
       return;
@@ -804,11 +839,9 @@ class Sweep {
     return false;
   }
 
-  // Nodes whose lines decide whether the rule may change a slot; none where no gap asks of slots behind.
+  // Nodes whose lines decide whether the rule may change a slot.
   NodeSet Deciding() const {
-    NodeSet nodes;
-    if (!pattern_.AsksOfSlotsBehind(direction_.rightward)) return nodes;
-    nodes.assign(space_.tree().nodes.size(), false);
+    NodeSet nodes(space_.tree().nodes.size(), false);
     const auto above = [&](NodeId node) {
       for (NodeId at = space_.tree()[node].mother; at != kSlotNode && at != kRootNode; at = space_.tree()[at].mother)
         nodes[at] = true;
@@ -1060,8 +1093,9 @@ class Sweep {
   int known_profiles_;
   std::vector<std::vector<Arc>> by_profile_;
   Side near_, far_;
-  NodeSet deciding_;
-  NodeSet asked_;  // nodes of whose lines the pattern asks
+  NodeSet contents_;  // whose lines decide whether the rule may change a slot
+  NodeSet deciding_;  // the same, if a gap asks of slots behind
+  NodeSet asked_;     // nodes of whose lines the pattern asks
   KeyPool aheads_;
   KeyPool last_slots_;
   bool shortens_ = false;

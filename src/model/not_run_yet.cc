@@ -30,6 +30,7 @@ class Lister {
     if (rule.by_word) VisitEndsOfWord(clause.where);
     for (const Change& change : clause.changes) {
       VisitChange(change);
+      if (change.op == Change::Op::kSpread) VisitPassedOn(clause, change);
       if (clause.KindOf(change.target) == Clause::LabelKind::kInserted) VisitInserted(rule, clause, change);
     }
   }
@@ -93,6 +94,20 @@ class Lister {
         }
       }
     }
+  }
+
+  // In exchange the one line may cross the other, which no item tells alone.
+  void VisitPassedOn(const Clause& clause, const Change& spread) {
+    const auto at_source = [&](Change::Op op) {
+      return std::find_if(clause.changes.begin(), clause.changes.end(), [&](const Change& other) {
+        return other.op == op && other.target == spread.source && other.node == spread.node;
+      });
+    };
+    const auto drawn = at_source(Change::Op::kSpread);
+    if (drawn == clause.changes.end() || at_source(Change::Op::kDelink) == clause.changes.end()) return;
+    const std::string& name = tree_[spread.node].name;
+    Add(drawn->span, "drawing '" + name + "' to an item in place of what the rule spreads from there is",
+        "give it a copy: set X." + name + " as Y." + name);
   }
 
   // The nodes that the item gets, if it has not got them already.

@@ -114,7 +114,8 @@ enum class Construct {
   kInsertedGrown,
   kAgreeingUnless,
   kSeveralItems,
-  kBoundaryAtEnd
+  kBoundaryAtEnd,
+  kSeveralChanges
 };
 const std::vector<Construct>& AllConstructs();
 const char* NameOf(Construct construct);

@@ -123,6 +123,8 @@ class Decorator {
       case Construct::kSeveralItems:
         rule_->probability = Random({0.3, 0.5, 0.75});
         return SeveralItems();
+      case Construct::kSeveralChanges:
+        return SeveralChanges();
     }
     return false;
   }
@@ -609,6 +611,43 @@ class Decorator {
     return true;
   }
 
+  // Two or three changes of any kinds in one match, mostly of one node; or what one item passes on to another and gets anew.
+  bool SeveralChanges() {
+    const int labels = static_cast<int>(rule_->labels.size());
+    const bool sweeps = rule_->mode != Rule::Mode::kAtOnce;
+    const int visited = Below(rng_, labels);
+    const NodeId about = Node();
+    rule_->changes.clear();
+    int from = -1, to = -1;
+    if (!sweeps && Chance(rng_, 0.5) && TwoLabels(&from, &to)) {
+      for (Op op : {Op::kSpread, Op::kDelink}) rule_->changes.push_back(Moving(op, from, to, about));
+    }
+    for (int count = from >= 0 ? 1 : Chance(rng_, 0.5) ? 3 : 2; count > 0; --count) {
+      const int target = sweeps ? visited : from >= 0 ? from : Below(rng_, labels);
+      Change change =
+          Chance(rng_, 0.25) ? Moving(Op::kDelink, -1, target, about) : ChangeOf(target, Below(rng_, labels));
+      if (!change.settings.empty()) {
+        if (Chance(rng_, 0.7) && tree_[about].type != TreeNode::Type::kClass) change.settings[0].node = about;
+        if (tree_[change.settings[0].node].type == TreeNode::Type::kBare && !change.settings[0].values.empty())
+          change.settings[0].values = {0};
+      } else if (Chance(rng_, 0.7)) {
+        change.node = about;
+      }
+      if (change.source == target) return false;
+      rule_->changes.push_back(change);
+    }
+    return StandBesideEachOther() && NotRunYet(*rule_, {}, tree_).empty();
+  }
+
+  static Change Moving(Op op, int source, int target, NodeId node) {
+    Change change;
+    change.op = op;
+    change.source = op == Op::kSpread ? source : -1;
+    change.target = target;
+    change.node = node;
+    return change;
+  }
+
   bool NewRoot() {
     Only(Op::kSetLiteral);
     Change& change = rule_->changes.front();
@@ -706,7 +745,8 @@ const std::vector<Construct>& AllConstructs() {
       Construct::kSharingBlocked, Construct::kNewRoot,        Construct::kCopy,         Construct::kLengthen,
       Construct::kShorten,        Construct::kMerge,          Construct::kBoundary,     Construct::kLongInsertion,
       Construct::kMember,         Construct::kTwoContents,    Construct::kComplete,     Construct::kGivenNode,
-      Construct::kInsertedGrown,  Construct::kAgreeingUnless, Construct::kSeveralItems, Construct::kBoundaryAtEnd};
+      Construct::kInsertedGrown,  Construct::kAgreeingUnless, Construct::kSeveralItems, Construct::kBoundaryAtEnd,
+      Construct::kSeveralChanges};
   return all;
 }
 
@@ -742,7 +782,8 @@ const char* NameOf(Construct construct) {
                                       "changes of the inserted",
                                       "agreement in unless",
                                       "optional, several items",
-                                      "delete boundary at an end"};
+                                      "delete boundary at an end",
+                                      "several changes"};
   return names[static_cast<int>(construct)];
 }
 

@@ -554,6 +554,8 @@ TEST_CASE("check rules: what is not run yet is said at its place", "[unit]") {
       {"rule \"r\" { where X:V B:# delete B otherwise where X:V delete X }", Kind::kNotSupportedYet, "B:#",
        "at the end of a pattern"},
       {"rule \"r\" { where X:V B:# delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:#", "`by word`"},
+      {"rule \"r\" { where X:V Y:V Z:V spread X.back to Y delink Y.back spread Y.back to Z }", Kind::kNotSupportedYet,
+       "spread X.back to Y", "in place of what the rule spreads from there"},
       {"rule \"r\" { where V₀ B:- X:V delete B optional 0.5 by word }", Kind::kNotSupportedYet, "B:-", "`by word`"},
   };
   for (const Mistake& row : rows) CheckRows(kHead, {row});
