@@ -30,13 +30,18 @@ std::size_t BytesOf(const Tape& tape) {
 
 class CascadeCompiler {
  public:
+  // Past a cut what comes in is followed exactly, or taken to be any string of the letters that come in: that is much faster, and
+  // enough as long as nothing is found that may be wrong (`suspicious`).
+  enum class PastCuts { kAnyString, kExactly };
+
   CascadeCompiler(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,
-                  const std::vector<Letter>* testing)
+                  const std::vector<Letter>* testing, PastCuts past_cuts)
       : grammar_(grammar),
         steps_(StepsOf(grammar)),
         limits_(limits),
         diagnostics_(diagnostics),
         testing_(testing != nullptr),
+        past_cuts_(past_cuts),
         plan_(MakePlan(grammar, testing_)),
         data_(std::make_unique<CascadeData>()) {
     data_->grammar = &grammar;
@@ -58,9 +63,12 @@ class CascadeCompiler {
     }
     Close();
     if (!testing_) CheckSpelling();
-    if (diagnostics_.HasErrors()) return nullptr;
+    if (suspicious_ || diagnostics_.HasErrors()) return nullptr;
     return std::move(data_);
   }
+
+  // True if Run gave up at something that is perhaps said of no form of the language.
+  bool suspicious() const { return suspicious_; }
 
  private:
   // ---- inputs -----------------------------------------------------------------------------------
@@ -303,8 +311,9 @@ class CascadeCompiler {
         return false;
       }
       // What comes out so far is what goes into the next segment; followed exactly if its acceptor is small enough.
-      Tape outputs = OutputsOf(current_, limits_.states);
-      const bool exact = segment_.exact && !outputs.starts.empty();
+      Tape outputs;
+      if (past_cuts_ == PastCuts::kExactly && segment_.exact) outputs = OutputsOf(current_, limits_.states);
+      const bool exact = !outputs.starts.empty();
       if (!exact) outputs = AnyString(ClassesWritten(current_));
       Close();
       Open(std::move(outputs), exact);
@@ -366,6 +375,12 @@ class CascadeCompiler {
     const auto flagged = [&composed](std::int32_t flag) {
       return [&composed, flag](const TapeArc& arc) { return (composed.symbols[arc.out][0] & flag) != 0; };
     };
+    if (past_cuts_ == PastCuts::kAnyString && !segment_.exact) {
+      for (const auto& arcs : composed.arcs)
+        suspicious_ =
+            suspicious_ || std::any_of(arcs.begin(), arcs.end(), flagged(kFlagAmbiguous | kFlagReaches | kFlagUnsure));
+      if (suspicious_) return false;
+    }
     std::size_t at = 0;
     const Severity severity = segment_.exact ? Severity::kError : Severity::kWarning;
     const std::string possibly = segment_.exact ? "" : "possibly reached: ";
@@ -475,6 +490,8 @@ class CascadeCompiler {
         }
       }
     }
+    suspicious_ = !found.empty() && past_cuts_ == PastCuts::kAnyString && !last.exact;
+    if (suspicious_) return;
     // No more than a few: one mistake often makes many trees.
     constexpr std::size_t kMost = 3;
     for (std::size_t i = 0; i < found.size() && i < kMost; ++i)
@@ -636,6 +653,8 @@ class CascadeCompiler {
   const Limits& limits_;
   Diagnostics& diagnostics_;
   bool testing_;
+  PastCuts past_cuts_;
+  bool suspicious_ = false;
   Plan plan_;
   mutable std::unique_ptr<FormReader> forms_made_;  // when the first text comes
   std::unique_ptr<CascadeData> data_;
@@ -651,7 +670,16 @@ class CascadeCompiler {
 
 std::unique_ptr<Cascade> CompileWith(const Grammar& grammar, const Limits& limits, Diagnostics& diagnostics,
                                      const std::vector<Letter>* testing) {
-  std::unique_ptr<CascadeData> data = CascadeCompiler(grammar, limits, diagnostics, testing).Run();
+  using PastCuts = CascadeCompiler::PastCuts;
+  std::unique_ptr<CascadeData> data;
+  for (const PastCuts past_cuts : {PastCuts::kAnyString, PastCuts::kExactly}) {
+    Diagnostics found;
+    CascadeCompiler compiler(grammar, limits, found, testing, past_cuts);
+    data = compiler.Run();
+    if (compiler.suspicious()) continue;
+    for (const Diagnostic& diagnostic : found.all()) diagnostics.Add(diagnostic);
+    break;
+  }
   return data == nullptr ? nullptr : std::make_unique<Cascade>(std::move(data));
 }
 
