@@ -4,7 +4,7 @@ root="$(cd "$(dirname "${BASH_SOURCE[0]}")/.." && pwd)"
 build="$root/build"
 
 packages=(build-essential cmake ninja-build ccache libboost-dev libfst-dev libfmt-dev libutf8proc-dev
-  nlohmann-json3-dev libcli11-dev catch2 zlib1g-dev)
+  nlohmann-json3-dev libcli11-dev catch2 zlib1g-dev hunspell hunspell-tr)
 
 install_missing_packages() {
   command -v dpkg-query >/dev/null || { echo "no Debian packaging here: expecting ${packages[*]} to be installed"; return 0; }
