@@ -20,12 +20,17 @@ for path in "$t"/rulesets/*/*.tier "$t"/demo/sketch.tier; do
   grammar="$(basename "$path")"
   run compile "$grammar" -o g.machine
   is_code 0; is_out ''
+  if [[ "$grammar" == turkish.tier ]]; then  # seconds to compile: only what its lexicon and spelling add
+    same 'spelled words' derive --spelled --pairs kitap-lAr-ImIz-DA saat-YI söyle-Iyor
+    same 'a paradigm' paradigm verb --stem git --spelled
+    continue
+  fi
   same sizes compile --stats
   same 'sizes as TSV' compile --format tsv
   same check check
   same 'check as JSON' check --format json
   [[ -e sketch.tsv ]] && same 'a survey' check sketch.tsv
-  # Up to five forms of the data, both ways, and each rule left out once.
+  # Up to five forms of the data, both ways, and a few rules left out.
   run check "$grammar" --format tsv
   mapfile -t underlying < <(tail -n +2 <<<"$out" | cut -f1 | head -5)
   mapfile -t surface < <(tail -n +2 <<<"$out" | cut -f2 | head -5)
@@ -38,7 +43,7 @@ for path in "$t"/rulesets/*/*.tier "$t"/demo/sketch.tier; do
   while IFS= read -r rule; do
     same "without $rule" derive --without "$rule" --pairs "${underlying[@]}"
     compared=$((compared + 1))
-  done < <(sed -nE 's/^ *rule "([^"]*)".*/\1/p' "$grammar")
+  done < <(sed -nE 's/^ *rule "([^"]*)".*/\1/p' "$grammar" | head -4)
   # The same bytes again: from the grammar by another path, and from the machine file.
   run compile "$path" -o h.machine
   cmp -s g.machine h.machine || fail "$grammar: the same bytes expected from another path"
