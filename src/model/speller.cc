@@ -2,8 +2,9 @@
 #include "model/speller.h"
 
 #include <algorithm>
-#include <map>
+#include <array>
 #include <set>
+#include <unordered_map>
 #include <utility>
 
 #include "base/utf8.h"
@@ -23,17 +24,73 @@ bool EndsWord(const Token& token) { return token.kind == Token::Kind::kBoundary 
 
 struct Speller::Impl {
   explicit Impl(const Grammar& g) : grammar(g), reader(g) {
-    for (const SpellingLine& line : g.spelling.lines) letters.push_back(Normalise(line.letters));
     for (std::size_t i = 0; i < g.inventory.symbols.size(); ++i)
       symbols.Add(g.inventory.symbols[i].text, static_cast<int>(i));
+    for (const SpellingLine& line : g.spelling.lines) letters.push_back(Normalise(line.letters));
+    for (std::size_t i = 0; i < letters.size(); ++i) {
+      for (const Reader::Side side : {Reader::Side::kUnderlying, Reader::Side::kSurface}) {
+        if (Reads(Line(i), side)) by_letter[static_cast<int>(side)][letters[i].front()].push_back(static_cast<int>(i));
+      }
+      if (!Line(i).writes) continue;
+      if (Line(i).means.empty()) {
+        inserting.push_back(static_cast<int>(i));
+      } else {
+        by_token[KeyOf(Line(i).means.front())].push_back(static_cast<int>(i));
+      }
+    }
+    const auto longer = [&](int a, int b) { return letters[Index(a)].size() > letters[Index(b)].size(); };
+    for (auto& side : by_letter) {
+      for (auto& [letter, lines] : side) std::stable_sort(lines.begin(), lines.end(), longer);
+    }
+    // A line with a context is there for just this place.
+    const auto rank = [&](int line) {
+      return std::make_pair(Line(Index(line)).means.size(), HasContext(Line(Index(line))));
+    };
+    for (auto& [token, lines] : by_token)
+      std::stable_sort(lines.begin(), lines.end(), [&](int a, int b) { return rank(a) > rank(b); });
+    for (std::size_t i = 0; i < g.inventory.symbols.size(); ++i)
+      otherwise.push_back(WrittenOtherwise(static_cast<int>(i)));
   }
 
   const Grammar& grammar;
   Reader reader;
   std::vector<std::u32string> letters;  // beside Spelling::lines
   SymbolTrie symbols;
+  std::array<std::unordered_map<char32_t, std::vector<int>>, 2> by_letter;  // by side: lines read, longest first
+  std::unordered_map<int, std::vector<int>> by_token;                       // by KeyOf their first: in the order tried
+  std::vector<int> inserting;                                               // lines that write letters for nothing
+  std::vector<char> otherwise;                                              // by symbol: never written as itself
 
+  static std::size_t Index(int line) { return static_cast<std::size_t>(line); }
   const SpellingLine& Line(std::size_t line) const { return grammar.spelling.lines[line]; }
+  static int KeyOf(const Token& token) {
+    return token.kind == Token::Kind::kSymbol
+               ? token.symbol
+               : -1 - 8 * static_cast<int>(token.kind) - static_cast<int>(token.boundary);
+  }
+  static bool HasContext(const SpellingLine& line) { return line.before || line.after || line.between; }
+
+  // A line may be read, and all it means may stand on this side.
+  bool Reads(const SpellingLine& line, Reader::Side side) const {
+    return line.reads && std::all_of(line.means.begin(), line.means.end(), [&](const Token& token) {
+             return token.kind != Token::Kind::kSymbol || Stands(token.symbol, side);
+           });
+  }
+  bool Stands(int symbol, Reader::Side side) const {
+    const Symbol& s = grammar.inventory.symbols[static_cast<std::size_t>(symbol)];
+    return side == Reader::Side::kUnderlying ? s.in_underlying : s.completes;
+  }
+  // Some line writes it wherever it stands, and none as what it is itself or together with others.
+  bool WrittenOtherwise(int symbol) const {
+    bool always = false;
+    for (const SpellingLine& line : grammar.spelling.lines) {
+      const auto is = [&](const Token& token) { return token.kind == Token::Kind::kSymbol && token.symbol == symbol; };
+      if (!line.writes || std::none_of(line.means.begin(), line.means.end(), is)) continue;
+      if (line.means.size() > 1 || line.letters == grammar.inventory.symbols[Index(symbol)].text) return false;
+      always = always || !HasContext(line);
+    }
+    return always;
+  }
 
   // ---- contexts
   // The symbol of the segment before (after) a place, or -1 at the edge of the word.
@@ -64,28 +121,25 @@ struct Speller::Impl {
 
   // ---- writing
   const SpellingLine* LineFor(const std::vector<Token>& tokens, std::size_t place) const {
-    // A line with a context is there for just this place.
-    const auto rank = [](const SpellingLine& line) {
-      return std::make_pair(line.means.size(), line.before || line.after || line.between);
-    };
-    const SpellingLine* best = nullptr;
-    for (const SpellingLine& line : grammar.spelling.lines) {
+    const auto lines = by_token.find(KeyOf(tokens[place]));
+    if (lines == by_token.end()) return nullptr;
+    for (const int i : lines->second) {
+      const SpellingLine& line = Line(Index(i));
       const std::size_t size = line.means.size();
-      if (!line.writes || size == 0 || size > tokens.size() - place) continue;
-      if (best != nullptr && rank(*best) >= rank(line)) continue;
+      if (size > tokens.size() - place) continue;
       if (!std::equal(line.means.begin(), line.means.end(), tokens.begin() + static_cast<std::ptrdiff_t>(place)))
         continue;
-      if (Holds(line, tokens, place, place + size)) best = &line;
+      if (Holds(line, tokens, place, place + size)) return &line;
     }
-    return best;
+    return nullptr;
   }
 
-  std::string Itself(const Token& token, std::string_view last, int last_symbol, bool boundaries) const {
+  std::string_view Itself(const Token& token, std::string_view last, int last_symbol, bool boundaries) const {
     switch (token.kind) {
       case Token::Kind::kSymbol:
-        return grammar.inventory.symbols[static_cast<std::size_t>(token.symbol)].text;
+        return grammar.inventory.symbols[Index(token.symbol)].text;
       case Token::Kind::kLength:
-        return grammar.Doubles(last_symbol) ? std::string(last) : "ː";
+        return grammar.Doubles(last_symbol) ? last : "ː";
       case Token::Kind::kBoundary:
         if (token.boundary == Boundary::kWord) return " ";
         return token.boundary == Boundary::kPhrase || boundaries ? BoundarySign(token.boundary) : "";
@@ -94,17 +148,19 @@ struct Speller::Impl {
   }
 
   std::string Write(const std::vector<Token>& tokens, bool boundaries) const {
-    std::string out, last;  // last: the letters of the last segment, which `length doubled` writes again
+    std::string out;
+    std::string_view last;  // the letters of the last segment, which `length doubled` writes again
     int last_symbol = -1;
     for (std::size_t i = 0; i <= tokens.size();) {
-      for (const SpellingLine& line : grammar.spelling.lines) {  // letters that stand for nothing
-        if (!line.writes || !line.means.empty() || !Holds(line, tokens, i, i)) continue;
-        out += line.letters;
+      for (const int nothing : inserting) {
+        if (!Holds(Line(Index(nothing)), tokens, i, i)) continue;
+        out += Line(Index(nothing)).letters;
         break;
       }
       if (i == tokens.size()) break;
       const SpellingLine* line = LineFor(tokens, i);
-      const std::string written = line != nullptr ? line->letters : Itself(tokens[i], last, last_symbol, boundaries);
+      const std::string_view written =
+          line != nullptr ? line->letters : Itself(tokens[i], last, last_symbol, boundaries);
       out += written;
       const std::size_t end = i + (line != nullptr ? line->means.size() : 1);
       for (; i < end; ++i) {
@@ -156,8 +212,12 @@ class Speller::Impl::Search {
   }
 
  private:
-  struct Use {  // of a line: where it was read, and the tokens it gave
+  struct Use {  // of a line that has contexts or is never written: where it was read, and the tokens it gave
     std::size_t line, unit, begin, end;
+  };
+  struct Option {  // what is read next: a line, or -1 for what stands for itself
+    std::size_t length;
+    int line;
   };
 
   std::size_t size() const { return text_.units.size(); }
@@ -170,31 +230,47 @@ class Speller::Impl::Search {
       if (!MayHold(uses_[i])) return OutOfPlace(uses_[i]);
     }
     if (unit == size()) return Take();
-    std::map<std::size_t, std::vector<int>, std::greater<>> by_length;  // lines, and -1 for what stands for itself
-    for (std::size_t line = 0; line < impl_.letters.size(); ++line) {
-      const std::u32string& letters = impl_.letters[line];
-      if (!Reads(impl_.Line(line)) || letters.size() > size() - unit) continue;
-      bool here = true;
-      for (std::size_t k = 0; here && k < letters.size(); ++k) here = text_.units[unit + k].code == letters[k];
-      if (here) by_length[letters.size()].push_back(static_cast<int>(line));
-    }
+    const std::size_t begin = options_.size();
     Token itself;
-    const std::size_t own = Itself(unit, &itself);
-    if (own > 0) by_length[own].push_back(-1);
-    if (by_length.empty()) return Tag(unit);
-    for (const auto& [length, lines] : by_length) {
-      bool any = false;
-      for (const int line : lines) any = (line < 0 ? BySelf(itself, unit + length) : ByLine(line, unit, length)) || any;
-      if (any) return true;
+    FindOptions(unit, &itself);
+    const std::size_t end = options_.size();
+    if (begin == end) return Tag(unit);
+    bool any = false;  // of those as long as the last
+    for (std::size_t i = begin; i < end && !(any && options_[i].length < options_[i - 1].length); ++i) {
+      const Option option = options_[i];
+      const bool read =
+          option.line < 0 ? BySelf(itself, unit + option.length) : ByLine(option.line, unit, option.length);
+      any = any || read;
     }
-    return false;
+    options_.resize(begin);
+    return any;
   }
 
-  // A line may be read, and all it means may stand on this side.
-  bool Reads(const SpellingLine& line) const {
-    return line.reads && std::all_of(line.means.begin(), line.means.end(), [&](const Token& token) {
-             return token.kind != Token::Kind::kSymbol || Stands(token.symbol);
-           });
+  // What can be read at a place, longest first: lines in their order, and what stands for itself.
+  void FindOptions(std::size_t unit, Token* itself) {
+    const std::size_t begin = options_.size();
+    const auto& by_letter = impl_.by_letter[static_cast<std::size_t>(side_)];
+    const auto lines = by_letter.find(text_.units[unit].code);
+    if (lines != by_letter.end()) {
+      for (const int line : lines->second) {
+        if (StandsAt(impl_.letters[Index(line)], unit)) options_.push_back({impl_.letters[Index(line)].size(), line});
+      }
+    }
+    const std::size_t own = Itself(unit, itself);
+    if (own == 0) return;
+    const bool gives_way = itself->kind == Token::Kind::kSymbol && impl_.otherwise[Index(itself->symbol)] != 0;
+    auto place = options_.begin() + static_cast<std::ptrdiff_t>(begin);
+    for (; place != options_.end() && place->length >= own; ++place) {
+      if (gives_way && place->length == own && !HasContext(impl_.Line(Index(place->line)))) return;
+    }
+    options_.insert(place, {own, -1});
+  }
+  bool StandsAt(const std::u32string& letters, std::size_t unit) const {
+    if (letters.size() > size() - unit) return false;
+    for (std::size_t k = 0; k < letters.size(); ++k) {
+      if (text_.units[unit + k].code != letters[k]) return false;
+    }
+    return true;
   }
 
   bool BySelf(const Token& token, std::size_t next) {
@@ -208,9 +284,11 @@ class Speller::Impl::Search {
     const SpellingLine& written = impl_.Line(static_cast<std::size_t>(line));
     const std::size_t begin = read_.tokens.size();
     read_.tokens.insert(read_.tokens.end(), written.means.begin(), written.means.end());
-    uses_.push_back({static_cast<std::size_t>(line), unit, begin, read_.tokens.size()});
+    const std::size_t uses = uses_.size();
+    if (HasContext(written) || !written.writes)
+      uses_.push_back({static_cast<std::size_t>(line), unit, begin, read_.tokens.size()});
     const bool read = From(unit + length);
-    uses_.pop_back();
+    uses_.resize(uses);
     read_.tokens.resize(begin);
     return read;
   }
@@ -218,7 +296,7 @@ class Speller::Impl::Search {
   // A symbol, ː or a boundary that is typed as it is; how many units it takes.
   std::size_t Itself(std::size_t unit, Token* token) const {
     const SymbolTrie::Match match = impl_.symbols.Longest(text_.units.data(), unit, size());
-    if (match.symbol >= 0 && Stands(match.symbol)) {
+    if (match.symbol >= 0 && impl_.Stands(match.symbol, side_)) {
       *token = {Token::Kind::kSymbol, match.symbol, Boundary::kNone};
       return match.end - unit;
     }
@@ -227,20 +305,11 @@ class Speller::Impl::Search {
       *token = {Token::Kind::kLength, -1, Boundary::kNone};
       return 1;
     }
-    std::vector<Token> one;
-    TextError unread;
-    const std::uint32_t begin = text_.units[unit].begin;
-    const std::size_t length = code == U'|' ? 2 : 1;
-    if (unit + length > size()) return 0;
-    const std::uint32_t end = text_.units[unit + length - 1].end;
-    if (!impl_.reader.Read(typed_.substr(begin, end - begin), side_, &one, &unread)) return 0;
-    if (one.size() != 1 || one[0].kind != Token::Kind::kBoundary) return 0;
-    *token = one[0];
-    return length;
-  }
-  bool Stands(int symbol) const {
-    const Symbol& s = impl_.grammar.inventory.symbols[static_cast<std::size_t>(symbol)];
-    return side_ == Reader::Side::kUnderlying ? s.in_underlying : s.completes;
+    const bool doubled = code == U'|' && unit + 1 < size() && text_.units[unit + 1].code == U'|';
+    const Boundary boundary = doubled ? Boundary::kPhrase : BoundaryOf(code);
+    if (boundary == Boundary::kNone) return 0;
+    *token = {Token::Kind::kBoundary, -1, boundary};
+    return doubled ? 2 : 1;
   }
 
   bool Tag(std::size_t unit) {
@@ -306,6 +375,7 @@ class Speller::Impl::Search {
   NormalText text_;
   Parse read_;
   std::vector<Use> uses_;
+  std::vector<Option> options_;  // of all places up to the one at hand
   std::set<Parse> found_;
   std::size_t furthest_ = 0;
   TextError error_;
@@ -332,6 +402,16 @@ std::u32string Bare(std::string_view letters) {
 
 }  // namespace
 
+// Leaves those that are written as they were typed, or are read only; all if there is none.
+template <class Impl, class Parse>
+void DropNotTyped(const Impl& impl, std::string_view letters, std::vector<Parse>* found) {
+  const std::u32string typed = Bare(letters);
+  const auto middle = std::stable_partition(found->begin(), found->end(), [&](const Parse& read) {
+    return read.read_only || Normalise(impl.Write(read.tokens, true)) == typed;
+  });
+  if (middle != found->begin()) found->erase(middle, found->end());
+}
+
 bool Speller::Read(std::string_view letters, Reader::Side side, std::vector<std::string>* readings,
                    TextError* error) const {
   readings->clear();
@@ -343,13 +423,8 @@ bool Speller::Read(std::string_view letters, Reader::Side side, std::vector<std:
               "write the form in symbols, or make the lines of `spelling` less open"};
     return false;
   }
-  const std::u32string typed = Bare(letters);
-  const auto as_typed = [&](const Impl::Parse& read) {
-    return read.read_only || Normalise(impl_->Write(read.tokens, true)) == typed;
-  };
-  const bool any = std::any_of(found.begin(), found.end(), as_typed);
+  if (found.size() > 1) DropNotTyped(*impl_, letters, &found);
   for (const Impl::Parse& read : found) {
-    if (any && !as_typed(read)) continue;
     std::string text;
     std::size_t from = 0;
     const auto write_to = [&](std::size_t to) {

@@ -2,7 +2,7 @@
 //
 // With `ng = ŋ; c = k; n = ŋ before /k/` the letters "canku" are kaŋku or kanku: both are written so, both are given.
 // Reading: at each place the longest letters that some line names (or that are a symbol themselves) and with which the
-// rest can be read; of equally long ones each. So "ng" is ŋ and never n with ɡ, unless a line parts the two (`n'g = nɡ`). Of
+// rest can be read; of equally long ones each, but a symbol that is always written otherwise gives way to a line. So "ng" is ŋ and never n with ɡ, unless a line parts the two (`n'g = nɡ`). Of
 // several readings those that would not be written as typed are left out, but for lines that are read only.
 // Writing: the longest right side that fits; of equally long ones one with a context goes first, then the first written;
 // what no line writes stands for itself. Contexts look at the neighbouring segments inside the word, over `-` and `=`.

@@ -23,22 +23,6 @@
 namespace tiersmith {
 namespace {
 
-Boundary BoundaryOf(char32_t code) {
-  switch (code) {
-    case U'-':
-      return Boundary::kMorpheme;
-    case U'=':
-      return Boundary::kClitic;
-    case U'#':
-    case U' ':
-      return Boundary::kWord;
-    case U'\u2016':
-      return Boundary::kPhrase;
-    default:
-      return Boundary::kNone;
-  }
-}
-
 // The words of a character's name that tell it from others: T and STROKE of LATIN CAPITAL LETTER T WITH
 // STROKE.
 std::set<std::string> TellingWords(const std::string& name) {
@@ -84,6 +68,22 @@ int Distance(const Tree& tree, const FeatureTree& a, const FeatureTree& b) {
 }
 
 }  // namespace
+
+Boundary BoundaryOf(char32_t code) {
+  switch (code) {
+    case U'-':
+      return Boundary::kMorpheme;
+    case U'=':
+      return Boundary::kClitic;
+    case U'#':
+    case U' ':
+      return Boundary::kWord;
+    case U'\u2016':
+      return Boundary::kPhrase;
+    default:
+      return Boundary::kNone;
+  }
+}
 
 struct Reader::Impl {
   const Grammar* grammar = nullptr;

@@ -53,6 +53,8 @@ class Reader {
 
 // Tokens as they are typed. With `length doubled` a long letter is written twice.
 std::string TextOf(const Grammar& grammar, const std::vector<Token>& tokens);
+// The boundary that a character is typed for, or kNone. (The ‖ typed || is two characters.)
+Boundary BoundaryOf(char32_t code);
 // `√` or `@tag` at `position`; moves past it. False if there is none, or if the tag is written wrong (then `error`).
 bool ReadTag(std::string_view text, std::size_t* position, TypedTag* tag, TextError* error);
 

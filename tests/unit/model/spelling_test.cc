@@ -75,6 +75,19 @@ TEST_CASE("spelling: letters that stand for nothing are written where their cont
         "error at 0+1: 'h' stands where no line of `spelling` has it");
 }
 
+TEST_CASE("spelling: a symbol that is always written otherwise gives way to a line", "[unit]") {
+  // As where y is the letter of j and ü that of y.
+  const Loaded loaded = LoadOrFail(kHead + "spelling { i = u; o = i; p = m after V; k > ɡ; s = k before V; e = s }");
+  const Speller speller(*loaded.grammar);
+  CHECK(ReadAll(speller, "titititititi", Reader::Side::kSurface) == "tutututututu");  // one reading, not 2^6
+  CHECK(ReadAll(speller, "ton", Reader::Side::kSurface) == "tin");
+  CHECK(ReadAll(speller, "pap", Reader::Side::kSurface) == "pap or pam");  // p is written p too
+  CHECK(ReadAll(speller, "ka", Reader::Side::kSurface) == "ka");           // the line is not read
+  CHECK(ReadAll(speller, "sa", Reader::Side::kSurface) == "ka");           // s would be written e
+  CHECK(ReadAll(speller, "as", Reader::Side::kSurface) == "as");           // nothing else can be read
+  CHECK(speller.Write("tutin", Reader::Side::kSurface) == "titon");
+}
+
 TEST_CASE("spelling: length doubled holds for symbols too", "[unit]") {
   const Loaded loaded = LoadOrFail(kHead + "length doubled in C\nspelling { c = k; ng = ŋ }");
   const Grammar& grammar = *loaded.grammar;
