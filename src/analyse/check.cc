@@ -260,8 +260,8 @@ class Checker {
     }
     const std::size_t chosen = all.back().passed ? all.size() - 1 : 0;
     checked = std::move(all[chosen]);
-    if (readings.size() > 1) checked.reading = grammar_.tagged ? readings[chosen].described : readings[chosen].text;
-    const Walk walk = Derivation(grammar_, readings[chosen].form);
+    if (readings.size() > 1) checked.reading = grammar_.tagged ? Described(readings[chosen]) : readings[chosen].text;
+    const Walk walk = Derivation(grammar_, forms_.FormOf(readings[chosen]));
     for (std::size_t k = 0; k < walk.applications.size(); ++k) {
       for (const auto& [reason, count] : walk.applications[k].blocked)
         result.blocked[static_cast<int>(k)][reason] += count;
@@ -274,7 +274,7 @@ class Checker {
   // All but the explanation; its problem, if there is no result.
   CheckedRow CheckReading(const DataRow& row, const Reading& reading) {
     CheckedRow checked;
-    const Outputs outputs = OutputsOf(grammar_, reading.form);
+    const Outputs outputs = OutputsOf(grammar_, forms_.FormOf(reading));
     if (!outputs.all.empty()) checked.derived = outputs.all.front().surface;
     if (!checked.derived) checked.explanation.problem = outputs.problem;
     checked.engines_differ = Disagreement(reading, outputs);

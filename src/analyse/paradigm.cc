@@ -122,15 +122,15 @@ class CellMaker {
   // An affix that the lexicon lists too has the tags of its entry; of several entries, of those with the value as a tag.
   void AddListedTags(const Allomorph& allomorph, Morpheme* morpheme) const {
     std::vector<const LexiconEntry*> listed, of_value;
-    for (const LexiconEntry& entry : grammar_.lexicon.entries) {
-      if (entry.kind != allomorph.kind || entry.form.text != allomorph.form.text ||
-          entry.form.before != allomorph.form.before || entry.form.after != allomorph.form.after)
+    for (const LexiconEntry* entry : reader_.affixes()) {
+      if (entry->kind != allomorph.kind || entry->form.text != allomorph.form.text ||
+          entry->form.before != allomorph.form.before || entry->form.after != allomorph.form.after)
         continue;
-      listed.push_back(&entry);
-      const bool named = std::any_of(entry.tags.begin(), entry.tags.end(), [&](const std::string& tag) {
+      listed.push_back(entry);
+      const bool named = std::any_of(entry->tags.begin(), entry->tags.end(), [&](const std::string& tag) {
         return std::find(morpheme->tags.begin(), morpheme->tags.end(), tag) != morpheme->tags.end();
       });
-      if (named) of_value.push_back(&entry);
+      if (named) of_value.push_back(entry);
     }
     for (const LexiconEntry* entry : listed.size() == 1 ? listed : of_value) {
       for (const std::string& tag : entry->tags) {

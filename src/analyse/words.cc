@@ -20,11 +20,12 @@ std::vector<Word> WordList::WordsOf(const LexiconEntry& stem, Diagnostics& diagn
     taken = true;
     for (ParadigmCell& cell : CellsOf(reader_, grammar_, paradigm, stem, diagnostics)) {
       if (!cell.form) continue;
-      words.push_back({std::move(*cell.form), stem.gloss + (stem.gloss.empty() ? "" : " ") + cell.name});
+      words.push_back({std::move(*cell.form), stem.gloss + (stem.gloss.empty() ? "" : " ") + cell.name, cell.name});
     }
   }
   if (!taken)
-    words.push_back({reader_.Join(stem.form.text, {{stem.form.text, stem.kind, stem.tags, stem.gloss}}), stem.gloss});
+    words.push_back(
+        {reader_.Join(stem.form.text, {{stem.form.text, stem.kind, stem.tags, stem.gloss}}), stem.gloss, ""});
   return words;
 }
 

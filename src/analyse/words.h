@@ -13,6 +13,7 @@ namespace tiersmith {
 struct Word {
   Reading form;
   std::string gloss;  // "rope PL LOC"
+  std::string cell;   // "PL LOC"; "" of a word alone
 };
 
 class WordList {

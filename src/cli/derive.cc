@@ -266,14 +266,15 @@ class TypedForms {
       if (!reader_->Read(text, {}, &some, error)) return false;
       if (some.size() > 1) {
         std::string list;
-        for (const Reading& reading : some) list += (list.empty() ? "" : ", ") + reading.described;
+        for (const Reading& reading : some) list += (list.empty() ? "" : ", ") + Described(reading);
         PrintNote(fmt::format("/{}/ has {} readings: {}", text, some.size(), list));
       }
       for (Reading& reading : some) readings->push_back(std::move(reading));
     }
     return true;
   }
-  std::string NameOf(const Reading& reading) const { return grammar_.tagged ? reading.described : reading.text; }
+  Form FormOf(const Reading& reading) const { return reader_->FormOf(reading); }
+  std::string NameOf(const Reading& reading) const { return grammar_.tagged ? Described(reading) : reading.text; }
 
  private:
   const Grammar& grammar_;
@@ -328,7 +329,7 @@ int RunTrace(const DeriveOptions& options) {
     std::vector<Reading> readings;
     if (!forms.Read(form, &readings, error)) return false;
     for (const Reading& reading : readings) {
-      const Derivation derivation = Derive(*loaded.grammar, reading.form, true);
+      const Derivation derivation = Derive(*loaded.grammar, forms.FormOf(reading), true);
       std::string surface, why;
       all_have_results = tracer.Surface(derivation, &surface, &why) && all_have_results;
       const bool named = readings.size() > 1 || loaded.grammar->tagged;

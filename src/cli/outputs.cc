@@ -18,6 +18,7 @@ std::string Listed(const std::vector<Runner::Output>& outputs, const std::string
   for (const Runner::Output& output : outputs) {
     if (!out.empty()) out += between;
     out += output.surface;
+    if (output.probability == 1) continue;
     const double probability = Rounded(output.probability);
     if (probability != 1) out += fmt::format(" {:.3g}", probability);
   }

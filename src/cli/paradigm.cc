@@ -81,7 +81,7 @@ class Writer {
                          {"cell", row.cell.values},   {"underlying", nullptr},   {"surfaces", cli::Json(Shown(row))}};
     if (row.cell.form) {
       json["underlying"] = Underlying(row);
-      json["morphemes"] = row.cell.form->described;
+      json["morphemes"] = Described(*row.cell.form);
     }
     if (!row.outputs.problem.empty()) json["problem"] = row.outputs.problem;
     return json;
@@ -207,7 +207,7 @@ int RunParadigm(const ParadigmOptions& options) {
       for (ParadigmCell& cell : CellsOf(reader, grammar, *paradigm, *stem, diagnostics)) {
         rows.push_back({stem, std::move(cell), {}});
         Row& row = rows.back();
-        if (row.cell.form) row.outputs = OutputsOf(grammar, row.cell.form->form);
+        if (row.cell.form) row.outputs = OutputsOf(grammar, reader.FormOf(*row.cell.form));
         missing = missing || row.outputs.all.empty() || !row.outputs.problem.empty();
         if (!row.outputs.problem.empty()) PrintNote(row.cell.form->text + ": " + row.outputs.problem);
       }

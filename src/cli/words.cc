@@ -26,11 +26,12 @@ struct Shown {
   Outputs outputs;
 };
 
-std::vector<Shown> Derived(const Grammar& grammar, const Lettering& lettering, const std::vector<Word>& words) {
+std::vector<Shown> Derived(const Grammar& grammar, const FormReader& reader, const Lettering& lettering,
+                           const std::vector<Word>& words) {
   std::vector<Shown> shown;
   for (const Word& word : words) {
     Shown one{lettering.Write(word.form.text, Reader::Side::kUnderlying), word.gloss,
-              OutputsOf(grammar, word.form.form)};
+              OutputsOf(grammar, reader.FormOf(word.form))};
     for (Runner::Output& output : one.outputs.all)
       output.surface = lettering.Write(output.surface, Reader::Side::kSurface);
     if (!one.outputs.problem.empty()) PrintNote(word.form.text + ": " + one.outputs.problem);
@@ -89,7 +90,7 @@ int RunWords(const WordsOptions& options) {
     whole = list.First(options.limit, &words, diagnostics);
   }
   PrintDiagnostics(diagnostics, *loaded.sources, options.json());
-  const std::vector<Shown> shown = Derived(grammar, lettering, words);
+  const std::vector<Shown> shown = Derived(grammar, reader, lettering, words);
   Output output(options.output);
   if (!output.good()) return kFiles;
   output.Write(options.json() ? AsJson(shown) : options.format == "tsv" ? AsTsv(shown) : AsText(shown));

@@ -459,7 +459,7 @@ class CascadeCompiler {
   std::optional<Form> Before(const Rule& rule, const std::string& text) const {
     const std::vector<Reading> readings = Readings(text);
     if (readings.empty()) return std::nullopt;
-    Form form = readings.front().form;
+    Form form = Forms().FormOf(readings.front());
     for (const Rule& earlier : steps_) {
       if (&earlier == &rule) break;
       form = ApplyRule(grammar_, earlier, form).form;
@@ -570,7 +570,7 @@ class CascadeCompiler {
   int LastRuleThatChanged(const std::string& text, const FeatureTree& tree) const {
     const std::vector<Reading> readings = Readings(text);
     if (readings.empty()) return -1;
-    std::vector<std::pair<Form, int>> ways{{Fused(grammar_, readings.front().form), -1}};  // with the last rule so far
+    std::vector<std::pair<Form, int>> ways{{Fused(grammar_, Forms().FormOf(readings.front())), -1}};  // with the last rule so far
     for (std::size_t r = 0; r < grammar_.rules.size(); ++r) {
       std::vector<std::pair<Form, int>> next;
       for (const auto& [form, last] : ways) {
@@ -595,7 +595,7 @@ class CascadeCompiler {
       data_surfaces_done_ = true;
       for (const DataRow& row : grammar_.data) {
         for (const Reading& reading : Readings(row.underlying)) {
-          for (const Outcome& outcome : Derive(grammar_, reading.form).outcomes) {
+          for (const Outcome& outcome : Derive(grammar_, Forms().FormOf(reading)).outcomes) {
             const std::vector<FeatureTree> roots = RootsOf(outcome.form);
             data_roots_.insert(data_roots_.end(), roots.begin(), roots.end());
           }

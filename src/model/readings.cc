@@ -2,7 +2,6 @@
 #include "model/readings.h"
 
 #include <algorithm>
-#include <set>
 
 #include "model/names.h"
 
@@ -54,6 +53,7 @@ bool Lexicon::has_stems() const {
 
 FormReader::FormReader(const Grammar& grammar) : grammar_(grammar), reader_(grammar), known_tags_(grammar.tags) {
   for (const LexiconEntry& entry : grammar.lexicon.entries) {
+    if (entry.kind != MorphemeKind::kStem) affixes_.push_back(&entry);
     AddKnown(entry.form, entry.kind, entry.tags, entry.gloss);
     for (const Suppletion& other : entry.suppletive) AddKnown(other.form, entry.kind, entry.tags, entry.gloss);
   }
@@ -187,40 +187,47 @@ std::uint64_t FormReader::BitsOf(const Morpheme& morpheme) const {
   return bits;
 }
 
-// The last boundary before a morpheme opens it; the first morpheme is opened by the ‖ that is put there for it.
-Reading FormReader::Finish(const std::vector<Token>& tokens, std::vector<Morpheme> morphemes) const {
-  Reading reading;
-  reading.text = TextOf(grammar_, tokens);
-  reading.form = reader_.FormOf(tokens, Reader::Side::kUnderlying);
+std::string Described(const Reading& reading) {
+  std::string all;
   std::size_t next = 0;
-  for (std::size_t i = 0; i < tokens.size(); ++i) {
-    const bool boundary = tokens[i].kind == Token::Kind::kBoundary;
-    const bool opens = !boundary && (i == 0 || tokens[i - 1].kind == Token::Kind::kBoundary);
-    if (boundary) reading.described += BoundarySign(tokens[i].boundary);
-    if (!opens) continue;
-    const Morpheme& morpheme = morphemes[next++];
-    reading.described += morpheme.text + "@" + MorphemeKindName(morpheme.kind);
-    for (const std::string& tag : morpheme.tags) reading.described += TagText(tag);
+  bool opens = true;
+  for (const Token& token : reading.tokens) {
+    const bool boundary = token.kind == Token::Kind::kBoundary;
+    if (boundary) all += BoundarySign(token.boundary);
+    if (opens && !boundary) {
+      const Morpheme& morpheme = reading.morphemes[next++];
+      all += morpheme.text + "@" + MorphemeKindName(morpheme.kind);
+      for (const std::string& tag : morpheme.tags) all += TagText(tag);
+    }
+    opens = boundary;
   }
-  reading.morphemes = std::move(morphemes);
-  if (grammar_.tagged) SetTags(reading.morphemes, &reading.form);
-  return reading;
+  return all;
 }
 
-void FormReader::SetTags(const std::vector<Morpheme>& morphemes, Form* form) const {
+Form FormReader::FormOf(const Reading& reading) const {
+  Form form = reader_.FormOf(reading.tokens, Reader::Side::kUnderlying);
+  if (grammar_.tagged) SetTags(reading.tags, &form);
+  return form;
+}
+
+// The last boundary before a morpheme opens it; the first morpheme is opened by the ‖ that is put there for it.
+void FormReader::SetTags(const std::vector<std::uint64_t>& tags, Form* form) {
   form->items.insert(form->items.begin(), {FormItem::Kind::kBoundary, Boundary::kPhrase, 0, 0});
   std::size_t next = 0;
-  for (std::size_t i = 1; i < form->items.size() && next < morphemes.size(); ++i) {
+  for (std::size_t i = 1; i < form->items.size() && next < tags.size(); ++i) {
     if (form->items[i].kind != FormItem::Kind::kBoundary && form->items[i - 1].kind == FormItem::Kind::kBoundary)
-      form->items[i - 1].tags = BitsOf(morphemes[next++]);
+      form->items[i - 1].tags = tags[next++];
   }
 }
 
 Reading FormReader::Join(const std::string& text, std::vector<Morpheme> morphemes) const {
-  std::vector<Token> tokens;
+  Reading reading;
   TextError error;
-  reader_.Read(text, Reader::Side::kUnderlying, &tokens, &error);
-  return Finish(tokens, std::move(morphemes));
+  reader_.Read(text, Reader::Side::kUnderlying, &reading.tokens, &error);
+  reading.text = TextOf(grammar_, reading.tokens);
+  for (const Morpheme& morpheme : morphemes) reading.tags.push_back(BitsOf(morpheme));
+  reading.morphemes = std::move(morphemes);
+  return reading;
 }
 
 bool FormReader::Read(std::string_view typed_text, const std::vector<std::string>& stem_tags,
@@ -240,20 +247,21 @@ bool FormReader::Read(std::string_view typed_text, const std::vector<std::string
       options.back().push_back({morpheme.text, morpheme.kind.value_or(MorphemeKind::kStem), morpheme.tags, ""});
     if (!grammar_.tagged) options.back().resize(1);
   }
-  std::set<std::vector<std::uint64_t>> seen;
+  const std::string text = TextOf(grammar_, tokens);
   std::vector<std::size_t> choice(options.size(), 0);
   for (;;) {
-    std::vector<Morpheme> morphemes;
-    for (std::size_t i = 0; i < options.size(); ++i) morphemes.push_back(options[i][choice[i]]);
-    SetKinds(typed, has_entry, &morphemes);
-    std::vector<std::uint64_t> bits;
-    for (Morpheme& morpheme : morphemes) {
+    Reading reading{text, tokens, {}, {}};
+    for (std::size_t i = 0; i < options.size(); ++i) reading.morphemes.push_back(options[i][choice[i]]);
+    SetKinds(typed, has_entry, &reading.morphemes);
+    for (Morpheme& morpheme : reading.morphemes) {
       if (morpheme.kind == MorphemeKind::kStem) {
         for (const std::string& tag : stem_tags) AddOnce(tag, &morpheme.tags);
       }
-      bits.push_back(BitsOf(morpheme));
+      reading.tags.push_back(BitsOf(morpheme));
     }
-    if (seen.insert(bits).second) readings->push_back(Finish(tokens, std::move(morphemes)));
+    const bool seen = std::any_of(readings->begin(), readings->end(),
+                                  [&](const Reading& other) { return other.tags == reading.tags; });
+    if (!seen) readings->push_back(std::move(reading));
     if (readings->size() > kMostReadings) {
       *error = {Kind::kLimit, 0, typed_text.size(),
                 "this form has more than " + std::to_string(kMostReadings) + " readings",

@@ -30,11 +30,14 @@ struct Morpheme {
 };
 
 struct Reading {
-  std::string text;                 // as typed, without tags
+  std::string text;  // as typed, without tags
+  std::vector<Token> tokens;
   std::vector<Morpheme> morphemes;  // in order
-  Form form;
-  std::string described;  // "tal@stem@noun-ki@suffix@strong"
+  std::vector<std::uint64_t> tags;  // of each morpheme, those that rules ask for
 };
+
+// "tal@stem@noun-ki@suffix@strong"
+std::string Described(const Reading& reading);
 
 // Not thread-safe.
 class FormReader {
@@ -48,8 +51,12 @@ class FormReader {
             TextError* error) const;
   // The form of morphemes that are known, joined as `text` says (as many morphemes as it has stretches of symbols).
   Reading Join(const std::string& text, std::vector<Morpheme> morphemes) const;
+  // The form of a reading, with the tags of its morphemes.
+  Form FormOf(const Reading& reading) const;
 
   const Reader& reader() const { return reader_; }
+  // The entries of the lexicon that are no stems.
+  const std::vector<const LexiconEntry*>& affixes() const { return affixes_; }
   // All tags that the lexicon, paradigms, rules or kinds know.
   const std::vector<std::string>& known_tags() const { return known_tags_; }
 
@@ -74,12 +81,12 @@ class FormReader {
   void SetKinds(const std::vector<Typed>& typed, const std::vector<bool>& has_entry,
                 std::vector<Morpheme>* morphemes) const;
   std::uint64_t BitsOf(const Morpheme& morpheme) const;
-  void SetTags(const std::vector<Morpheme>& morphemes, Form* form) const;
-  Reading Finish(const std::vector<Token>& tokens, std::vector<Morpheme> morphemes) const;
+  static void SetTags(const std::vector<std::uint64_t>& tags, Form* form);
 
   const Grammar& grammar_;
   Reader reader_;
   std::unordered_map<std::string, std::vector<Known>> known_;  // by text
+  std::vector<const LexiconEntry*> affixes_;
   std::vector<std::string> known_tags_;
 };
 

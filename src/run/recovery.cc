@@ -19,6 +19,7 @@
 
 #include "base/limits.h"
 #include "compile/cascade_data.h"
+#include "run/input_letters.h"
 #include "run/lattice.h"
 
 DECLARE_bool(fst_error_fatal);
@@ -164,6 +165,7 @@ std::map<std::pair<int, int>, int> ArcsOf(const Fst& acceptor, int* end) {
 struct Recovery::Impl {
   const Grammar& grammar;
   const CascadeData& data;
+  const InputLetters inputs;
   RealLetters letters;
   std::vector<LetterFacts> facts;       // by letter id - 1
   std::vector<std::set<int>> entering;  // by segment: letters that may come in
@@ -177,7 +179,7 @@ struct Recovery::Impl {
   std::map<int, const InputLetter*> input_of;  // by letter id
   std::map<int, std::vector<int>> spelled_by;  // symbol -> letters that leave the last segment
 
-  Impl(const Grammar& g, const CascadeData& d) : grammar(g), data(d) {
+  Impl(const Grammar& g, const CascadeData& d) : grammar(g), data(d), inputs(d) {
     for (const Rule& rule : g.rules) weighted = weighted || rule.probability < 1;
     FLAGS_fst_error_fatal = false;
     std::set<int> coming;
@@ -299,27 +301,30 @@ struct Recovery::Impl {
 
   void AllowOnly(const WordGraph& graph, std::vector<std::string>* left_out) {
     words = std::make_unique<Words>();
-    std::vector<std::vector<int>> pieces;  // none: it has a letter that the cascade does not read
+    std::vector<std::optional<std::vector<int>>> pieces;  // none: it has letters that the cascade does not read
+    std::vector<LetterClasses::Parts> piece_letters;
     for (const WordGraph::Piece& piece : graph.pieces) {
       pieces.emplace_back();
-      for (const Letter& letter : LettersOf(piece.form, data))
-        pieces.back().push_back(letters.Find(data.classes->Classify(letter)));
-      const auto known = [&](int id) { return input_of.count(id) > 0; };
-      if (std::all_of(pieces.back().begin(), pieces.back().end(), known)) continue;
-      pieces.back().clear();
-      left_out->push_back(piece.text);
+      if (inputs.Of(piece.form, &piece_letters) != InputLetters::Missing::kNothing) {
+        left_out->push_back(piece.form.text);
+        continue;
+      }
+      pieces.back().emplace();
+      for (const LetterClasses::Parts& letter : piece_letters) pieces.back()->push_back(letters.Find(letter));
     }
     for (const WordGraph::Arc& arc : graph.arcs) {
-      if (!pieces[arc.piece].empty()) AddPiece(graph, arc, pieces[arc.piece]);
+      if (pieces[arc.piece]) AddPiece(graph, arc, *pieces[arc.piece]);
     }
     words->Finish(graph);
     allowed = words->Acceptor();
   }
 
-  // A piece behind its boundary. Where rules ask for tags it begins with a ‖ that bears those of its first morpheme, and
+  // A piece behind its boundary, if it does not go on. Where rules ask for tags it begins with a ‖ that bears those of its first morpheme, and
   // that one becomes the boundary.
   void AddPiece(const WordGraph& graph, const WordGraph::Arc& arc, std::vector<int> ids) {
     std::vector<int> others;  // that may stand in the place of the first
+    const bool goes_on = graph.pieces[arc.piece].goes_on;
+    if (goes_on && grammar.tagged) ids.erase(ids.begin());
     if (arc.behind != Boundary::kNone) {
       const std::uint64_t tags = grammar.tagged ? input_of.at(ids.front())->tags : 0;
       if (!grammar.tagged) ids.insert(ids.begin(), 0);
@@ -328,14 +333,13 @@ struct Recovery::Impl {
     }
     std::vector<fst::TropicalWeight> costs;
     for (int id : ids) costs.push_back(input_of.at(id)->symbol < 0 ? kRestored : kFree);
-    if (grammar.tagged && arc.behind == Boundary::kNone) costs.front() = kFree;
+    if (grammar.tagged && !goes_on && arc.behind == Boundary::kNone) costs.front() = kFree;
     words->Add(arc, graph.pieces[arc.piece].gloss, ids, costs, others);
   }
 
   // The cascade reads every boundary with every set of tags that it reads.
   int BoundaryLetter(Boundary boundary, std::uint64_t tags) const {
-    const auto is = [&](const auto& known) { return known.second->boundary == boundary && known.second->tags == tags; };
-    return std::find_if(input_of.begin(), input_of.end(), is)->first;
+    return letters.Find(*inputs.Bound(boundary, tags));
   }
 
   // All strings of letters that are written so.

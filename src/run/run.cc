@@ -3,10 +3,11 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <array>
+#include <functional>
 
 #include "compile/cascade_data.h"
 #include "compile/rule_machine.h"
+#include "run/input_letters.h"
 #include "run/lattice.h"
 #include "run/recovery.h"
 #include "run/walker.h"
@@ -27,9 +28,7 @@ struct Runner::Impl {
     std::string again;  // what the further slots of a long one are written as
   };
   std::vector<std::vector<Spelled>> spellings;  // by class, by rest
-  // The letters of tokens: by symbol, [not linked, linked]; by boundary.
-  std::vector<std::array<LetterClasses::Parts, 2>> of_symbol;
-  std::array<LetterClasses::Parts, 5> of_boundary;
+  InputLetters inputs;
   std::vector<Token> tokens;
   std::vector<LetterClasses::Parts> letters;
   std::unique_ptr<Recovery> recovery;
@@ -37,17 +36,9 @@ struct Runner::Impl {
   LetterNumbers numbers;
   std::vector<std::string> texts;  // that labels of a written lattice stand for
 
-  Impl(const Grammar& g, const Cascade& c) : grammar(g), cascade(c) {
+  Impl(const Grammar& g, const Cascade& c) : grammar(g), cascade(c), inputs(c.data()) {
     for (const Segment& segment : cascade.data().segments) walkers.emplace_back(segment);
     for (const Rule& rule : g.rules) weighted = weighted || rule.probability < 1;
-    of_symbol.assign(g.inventory.symbols.size(), {LetterClasses::Parts{-1, 0}, LetterClasses::Parts{-1, 0}});
-    for (const InputLetter& input : cascade.data().inputs) {
-      if (input.symbol >= 0) {
-        of_symbol[input.symbol][input.linked] = input.parts;
-      } else {
-        of_boundary[static_cast<int>(input.boundary)] = input.parts;
-      }
-    }
   }
 
   const FormReader& forms() {
@@ -91,47 +82,41 @@ struct Runner::Impl {
     return result;
   }
 
-  // Tokens -> letters; false if a symbol is not one that the machine was compiled for.
+  // A form -> letters; false if it cannot be read, or a symbol is not one that the machine was compiled for.
   bool ToLetters(std::string_view text, TextError* error) {
     if (grammar.tagged) {
       std::vector<Reading> readings;
-      if (!forms().Read(text, {}, &readings, error)) return false;
-      ToLetters(readings.front().form);
-      return true;
+      return forms().Read(text, {}, &readings, error) && ToLetters(readings.front(), error);
     }
     if (!reader().Read(text, Reader::Side::kUnderlying, &tokens, error)) return false;
-    letters.clear();
-    for (std::size_t i = 0; i < tokens.size(); ++i) {
-      const Token& token = tokens[i];
-      if (token.kind == Token::Kind::kBoundary) {
-        letters.push_back(of_boundary[static_cast<int>(token.boundary)]);
-        continue;
-      }
-      const bool linked = i + 1 < tokens.size() && tokens[i + 1].kind == Token::Kind::kLength;
-      if (token.kind == Token::Kind::kSymbol) last_symbol_ = token.symbol;
-      const bool known =
-          last_symbol_ < static_cast<int>(of_symbol.size()) && of_symbol[last_symbol_][linked].class_id >= 0;
-      if (!known) {
-        *error = {Kind::kBadForm, 0, text.size(),
-                  fmt::format("/{}/ has a letter with more diacritics than this grammar was compiled for", text),
+    return Good(inputs.Of(tokens, &letters), text, error);
+  }
+  bool ToLetters(const Reading& reading, TextError* error) {
+    const InputLetters::Missing missing = inputs.Of(reading, &letters);
+    return missing == InputLetters::Missing::kNothing || Good(missing, Described(reading), error);
+  }
+  static bool Good(InputLetters::Missing missing, std::string_view underlying, TextError* error) {
+    switch (missing) {
+      case InputLetters::Missing::kNothing:
+        return true;
+      case InputLetters::Missing::kSymbol:
+        *error = {Kind::kBadForm, 0, underlying.size(),
+                  fmt::format("/{}/ has a letter with more diacritics than this grammar was compiled for", underlying),
                   "write the letter in the grammar's data, so that it is compiled in"};
         return false;
-      }
-      letters.push_back(of_symbol[last_symbol_][linked]);
+      case InputLetters::Missing::kTags:
+        *error = {Kind::kBadForm, 0, underlying.size(),
+                  fmt::format("/{}/ has tags that this grammar was not compiled for together", underlying),
+                  "give them to an entry of the lexicon, so that they are compiled in"};
+        return false;
     }
-    return true;
-  }
-  int last_symbol_ = -1;
-
-  void ToLetters(const Form& form) {
-    letters.clear();
-    for (const Letter& letter : LettersOf(form, cascade.data()))
-      letters.push_back(cascade.data().classes->Classify(letter));
+    return false;
   }
 
-  bool Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
-               TextError* error);
-  bool Only(std::string_view underlying, std::string* surface, TextError* error);
+  // `name`: what messages call the form; asked for only where there is one.
+  using Name = std::function<std::string()>;
+  bool Outputs(const Name& name, std::size_t best, std::vector<Output>* outputs, bool* more, TextError* error);
+  bool Only(const Name& name, std::string* surface, TextError* error);
   void TakeOpening(std::string* surface) const;
 
   // All ways through the grammar.
@@ -186,36 +171,37 @@ bool Runner::weighted() const { return impl_->weighted; }
 
 bool Runner::DeriveAll(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                        TextError* error) {
-  return impl_->ToLetters(underlying, error) && impl_->Outputs(underlying, best, outputs, more, error);
+  const auto name = [&] { return std::string(underlying); };
+  return impl_->ToLetters(underlying, error) && impl_->Outputs(name, best, outputs, more, error);
 }
 
 bool Runner::DeriveAll(const Reading& underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
                        TextError* error) {
   if (!impl_->grammar.tagged) return DeriveAll(underlying.text, best, outputs, more, error);
-  impl_->ToLetters(underlying.form);
-  return impl_->Outputs(underlying.described, best, outputs, more, error);
+  const auto name = [&] { return Described(underlying); };
+  return impl_->ToLetters(underlying, error) && impl_->Outputs(name, best, outputs, more, error);
 }
 
-bool Runner::Impl::Outputs(std::string_view underlying, std::size_t best, std::vector<Output>* outputs, bool* more,
+bool Runner::Impl::Outputs(const Name& name, std::size_t best, std::vector<Output>* outputs, bool* more,
                            TextError* error) {
   outputs->clear();
   *more = false;
   if (!weighted) {
     outputs->emplace_back();
-    if (!Only(underlying, &outputs->back().surface, error)) return false;
+    if (!Only(name, &outputs->back().surface, error)) return false;
     TakeOpening(&outputs->back().surface);
     return true;
   }
   std::int32_t flags = 0;
   const Lattice ways = Ways(letters, &flags);
   if (ways.arcs.empty()) {
-    *error = NoDerivation(underlying);
+    *error = NoDerivation(name());
     return false;
   }
   Lattice written;
   std::string unspelled;
   if (!Written(ways, &written, &unspelled)) {
-    *error = Unspelled(underlying, unspelled);
+    *error = Unspelled(name(), unspelled);
     return false;
   }
   for (const Likely& likely : Likeliest(written, best, more)) {
@@ -243,11 +229,11 @@ void Runner::Impl::TakeOpening(std::string* surface) const {
 }
 
 // The one surface of the letters, where no rule is optional.
-bool Runner::Impl::Only(std::string_view underlying, std::string* surface, TextError* error) {
+bool Runner::Impl::Only(const Name& name, std::string* surface, TextError* error) {
   std::int32_t flags = 0;
   for (Walker& walker : walkers) {
     if (walker.Run(&letters, &flags)) continue;
-    *error = NoDerivation(underlying);
+    *error = NoDerivation(name());
     return false;
   }
   surface->clear();
@@ -263,7 +249,7 @@ bool Runner::Impl::Only(std::string_view underlying, std::string* surface, TextE
         if (spelled.slot) linked = spelled.linked;
         break;
       case Spelled::Kind::kNoSymbol:
-        *error = Unspelled(underlying, spelled.text);
+        *error = Unspelled(name(), spelled.text);
         return false;
     }
   }

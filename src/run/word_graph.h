@@ -1,6 +1,6 @@
 // Which underlying forms are words, as recovery is told (run/run.h): pieces of forms as arcs of a graph.
 //
-// talu 'rope' NOM, PL -lA and the prefix un- give: start -> un -> (-)talu -> end, start -> talu-lA -> end, .. What pieces there
+// talu 'rope' NOM, PL -lA and the prefix un- give: start -> un -> (-)talu -> cells -> end, cells -> -lA -> end, .. What pieces there
 // are and what may follow what is decided by who builds it (analyse/word_graph.h).
 #pragma once
 
@@ -8,15 +8,15 @@
 #include <string>
 #include <vector>
 
-#include "model/form.h"
+#include "model/readings.h"
 
 namespace tiersmith {
 
 struct WordGraph {
   struct Piece {
-    Form form;         // as if it stood alone
-    std::string text;  // what messages call it
+    Reading form;  // as if it stood alone
     std::string gloss;
+    bool goes_on = false;  // the word before it: the form begins with a boundary, or is empty
   };
   struct Arc {
     int from = 0, to = 0;

@@ -53,7 +53,7 @@ struct Compiled {
     TextError error;
     INFO(underlying);
     REQUIRE(reader->Read(underlying, {}, &readings, &error));
-    return tiersmith::Derive(*grammar, readings.front().form);
+    return tiersmith::Derive(*grammar, reader->FormOf(readings.front()));
   }
 
   std::string Interpreter(const std::string& underlying) {

@@ -23,7 +23,7 @@ std::string Cells(const Grammar& grammar, const std::string& paradigm, const std
   for (const Paradigm& p : grammar.paradigms) {
     if (p.name != paradigm) continue;
     for (const ParadigmCell& cell : CellsOf(reader, grammar, p, stems.at(0), diagnostics))
-      all += cell.name + ": " + (cell.form ? cell.form->described : "none") + "\n";
+      all += cell.name + ": " + (cell.form ? Described(*cell.form) : "none") + "\n";
   }
   return all;
 }
@@ -106,8 +106,8 @@ TEST_CASE("outputs: tags reach the rules that ask for them, optional rules give 
   REQUIRE(WordList(reader, grammar).First(0, &words, diagnostics));
   std::string all;
   for (const Word& word : words) {
-    all += word.form.described + ":";
-    for (const Runner::Output& output : OutputsOf(grammar, word.form.form).all)
+    all += Described(word.form) + ":";
+    for (const Runner::Output& output : OutputsOf(grammar, reader.FormOf(word.form)).all)
       all += " " + output.surface + " " + std::to_string(static_cast<int>(output.probability * 100 + 0.5));
     all += "\n";
   }

@@ -66,6 +66,33 @@ paradigm noun { stem noun; number : SG //  PL /-ta/ }
   CHECK(grammar.IsCandidate("matta", "matta"));
 }
 
+TEST_CASE("words for recovery: stems with the same cells share them", "[unit]") {
+  Compiled grammar = CompileText(std::string(kSmallInventory) + R"(
+class C = [-syll]
+rule "loss" { where T:/t/ #   delete T   only T in loan }
+lexicon {
+  stem /tan/ 'rope' noun   stem /pin/ 'hill' noun   stem /kat/ 'cake' noun loan
+  stem /ni/ 'go' noun in PL /nap/
+}
+paradigm noun { stem noun; number : SG //  PL /-ta/ after C, /-ma/; case : NOM //  OBL /in-/ }
+)");
+  INFO(grammar.Messages());
+  REQUIRE(grammar.runner != nullptr);
+  Diagnostics diagnostics;
+  const WordGraph graph = WordsAllowed(FormReader(grammar.grammar()), grammar.grammar(), diagnostics);
+  // tan, pin, kat, ni and nap, each also behind in-; what follows them: SG and PL -ta, with NOM and with OBL.
+  CHECK(graph.pieces.size() == 10 + 4);
+  CHECK(AllowWords(grammar).empty());
+  CHECK(Words(grammar, "tan") == Strings{"tan 0 'rope SG NOM'"});
+  CHECK(Words(grammar, "tanta") == Strings{"tan-ta 1 'rope PL NOM'"});
+  CHECK(Words(grammar, "intanta") == Strings{"in-tan-ta 2 'rope PL OBL'"});
+  CHECK(Words(grammar, "napta") == Strings{"nap-ta 1 'go PL NOM'"});
+  CHECK(Words(grammar, "nap").empty());
+  CHECK(Words(grammar, "nita").empty());
+  CHECK(Words(grammar, "ka") == Strings{"kat@loan 1 'cake SG NOM'"});  // t is put back
+  CHECK(Words(grammar, "inkatta") == Strings{"in-kat@loan-ta 2 'cake PL OBL'"});
+}
+
 TEST_CASE("words for recovery: two entries of one form, and tags", "[unit]") {
   Compiled grammar = CompileText(std::string(kSmallInventory) + R"(
 rule "final devoicing" { where X:[-son] #   set X [-voice]   except X in loan }

@@ -24,7 +24,7 @@ std::string ReadingsOf(const FormReader& reader, const std::string& typed) {
   if (!reader.Read(typed, {}, &readings, &error))
     return "error at " + std::to_string(error.offset) + "+" + std::to_string(error.length) + ": " + error.message;
   std::string all;
-  for (const Reading& reading : readings) all += (all.empty() ? "" : " or ") + reading.described;
+  for (const Reading& reading : readings) all += (all.empty() ? "" : " or ") + Described(reading);
   return all;
 }
 
@@ -88,7 +88,7 @@ TEST_CASE("readings: tags reach the boundary that opens the morpheme", "[unit]")
   const auto bits = [&](const std::string& typed, std::vector<std::string> stem_tags = {}) {
     REQUIRE(reader.Read(typed, stem_tags, &readings, &error));
     std::string all;
-    for (const FormItem& item : readings.at(0).form.items) {
+    for (const FormItem& item : reader.FormOf(readings.at(0)).items) {
       if (item.kind == FormItem::Kind::kBoundary) all += BoundarySign(item.boundary) + std::to_string(item.tags) + " ";
     }
     return all;
@@ -98,11 +98,11 @@ TEST_CASE("readings: tags reach the boundary that opens the morpheme", "[unit]")
   CHECK(bits("tan # ki") == "‖65 #0 #0 #1 ");     // of a run, the last opens
   CHECK(bits("‖tan") == "‖0 ‖65 ");
   std::string text;
-  CHECK(WriteForm(grammar, readings[0].form, &text, nullptr));
+  CHECK(WriteForm(grammar, reader.FormOf(readings[0]), &text, nullptr));
   CHECK(text == "‖tan");  // the ‖ that is there for its tags is not written, one that was typed is
   REQUIRE(reader.Read("tan-ki", {}, &readings, &error));
-  CHECK(DescribeForm(grammar, readings[0].form) == "tan-ki");
-  CHECK(Defects(readings[0].form, grammar.tree).empty());
+  CHECK(DescribeForm(grammar, reader.FormOf(readings[0])) == "tan-ki");
+  CHECK(Defects(reader.FormOf(readings[0]), grammar.tree).empty());
 }
 
 TEST_CASE("readings: where no rule asks for tags a form has one reading, and is as it was", "[unit]") {
@@ -112,8 +112,9 @@ TEST_CASE("readings: where no rule asks for tags a form has one reading, and is 
   TextError error;
   REQUIRE(reader.Read("tan-ki", {}, &readings, &error));
   REQUIRE(readings.size() == 1);
-  CHECK(readings[0].form.items.size() == 6);
-  CHECK(readings[0].form.items[3].tags == 0);
+  const Form form = reader.FormOf(readings[0]);
+  CHECK(form.items.size() == 6);
+  CHECK(form.items[3].tags == 0);
 }
 
 TEST_CASE("tags: one that only typed forms would bear is a warning", "[unit]") {

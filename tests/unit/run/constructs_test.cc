@@ -15,9 +15,10 @@ struct Row {
 std::string ByInterpreter(const Compiled& grammar, const char* underlying) {
   std::vector<Reading> readings;
   TextError error;
-  REQUIRE(FormReader(grammar.grammar()).Read(underlying, {}, &readings, &error));
+  const FormReader reader(grammar.grammar());
+  REQUIRE(reader.Read(underlying, {}, &readings, &error));
   REQUIRE(readings.size() == 1);
-  const Derivation derivation = Derive(grammar.grammar(), readings.front().form);
+  const Derivation derivation = Derive(grammar.grammar(), reader.FormOf(readings.front()));
   CHECK(derivation.problem == "");
   std::string surface;
   FeatureTree no_symbol;

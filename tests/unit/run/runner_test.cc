@@ -2,6 +2,8 @@
 // Expected forms follow from grammar/notation.md §7, §8 and the rules written beside them; counts are worked out by hand.
 #include "unit/run/compiled_case.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 
 namespace tiersmith::testing {
@@ -20,6 +22,24 @@ std::vector<std::string> Forms(const Runner::Candidates& candidates) {
 }
 
 }  // namespace
+
+TEST_CASE("runner: tags that the machine was not compiled for together", "[unit]") {
+  std::string rules;  // so many tags that not all sets of them are compiled in
+  for (const char tag : std::string("abcdefg"))
+    rules += fmt::format("rule \"{0}\" {{ where N:/n/ #   delete N   only N in {0} }}\n", tag);
+  Compiled grammar = CompileText(std::string(kSmallInventory) + rules +
+                                 "lexicon { stem /pan/ a b   stem /tan/ c   stem /kan/ d e f g }");
+  INFO(grammar.Messages());
+  REQUIRE(grammar.runner != nullptr);
+  std::string surface;
+  TextError error;
+  CHECK(grammar.runner->Derive("pan", &surface, &error));
+  CHECK(surface == "pa");
+  CHECK(grammar.runner->Derive("tan-kin", &surface, &error));  // of a suffix without tags
+  CHECK(surface == "tankin");
+  CHECK_FALSE(grammar.runner->Derive("pan@c", &surface, &error));
+  CHECK(error.message == "/pan@stem@a@b@c/ has tags that this grammar was not compiled for together");
+}
 
 TEST_CASE("runner: text that cannot be read", "[unit]") {
   Compiled grammar = CompileText(std::string(kSmallInventory) + R"(
