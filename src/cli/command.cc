@@ -155,6 +155,8 @@ Output::~Output() {
   std::remove(temporary_.c_str());
 }
 
+bool Output::to_terminal() const { return path_.empty() && isatty(STDOUT_FILENO) != 0; }
+
 bool Output::Drain() {
   if (std::fwrite(buffer_.data(), 1, buffer_.size(), file_) != buffer_.size()) failed_ = true;
   buffer_.clear();

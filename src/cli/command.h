@@ -63,6 +63,7 @@ class Output {
   Output& operator=(const Output&) = delete;
 
   bool good() const { return file_ != nullptr; }
+  bool to_terminal() const;
   void Write(std::string_view text);
   void Flush();
   // kFine, or kFiles after saying what failed.

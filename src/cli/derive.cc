@@ -9,6 +9,7 @@
 #include "analyse/paradigm.h"
 #include "cli/lettering.h"
 #include "cli/outputs.h"
+#include "cli/stream.h"
 #include "graph/interpreter.h"
 #include "model/readings.h"
 #include "run/run.h"
@@ -20,12 +21,10 @@ using nlohmann::ordered_json;
 
 constexpr std::size_t kMostOutputs = 20;  // of one form, if --best does not say
 
-struct DeriveOptions : CommonOptions {
-  std::vector<std::string> forms;
+struct DeriveOptions : FormOptions {
   std::optional<std::size_t> best;
   bool trace = false;
   bool pairs = false;
-  bool keep_going = false;
 
   std::size_t most() const { return best.value_or(kMostOutputs); }
 };
@@ -34,14 +33,20 @@ bool HasOptionalRules(const Grammar& grammar) {
   return std::any_of(grammar.rules.begin(), grammar.rules.end(), [](const Rule& rule) { return rule.probability < 1; });
 }
 
-// Writes one form's result in the format asked for. JSON is an array, written element by element.
+// One form's result in the format asked for.
 class ResultWriter {
  public:
-  ResultWriter(const DeriveOptions& options, bool weighted, Output& output)
-      : options_(options), weighted_(weighted), output_(output) {
-    if (options_.format == "tsv")
-      output_.Write(weighted_ ? "underlying\tsurface\tprobability\treading\n" : "underlying\tsurface\n");
-    if (options_.json()) output_.Write("[");
+  ResultWriter(const DeriveOptions& options, bool weighted) : options_(options), weighted_(weighted) {}
+
+  Frame FrameOf() const {
+    if (options_.json()) return Frame::Json();
+    Frame frame;
+    if (options_.trace) {
+      frame.between = "\n";
+    } else if (options_.format == "tsv") {
+      frame.open = weighted_ ? "underlying\tsurface\tprobability\treading\n" : "underlying\tsurface\n";
+    }
+    return frame;
   }
 
   // What a form, read so, comes out as.
@@ -52,54 +57,42 @@ class ResultWriter {
   };
 
   // A form that can be read in one way.
-  void Result(const std::string& underlying, const Read& read) {
-    if (options_.json()) return Json("{\"underlying\": " + JsonString(underlying) + ResultJson(read) + "}");
-    if (weighted_ && options_.format == "tsv") return Rows(underlying, read);
-    Line(underlying, Listed(read.outputs, "\t"));
+  void Result(const std::string& underlying, const Read& read, std::string* out) const {
+    if (options_.json()) {
+      *out += "{\"underlying\": " + JsonString(underlying) + ResultJson(read) + "}";
+    } else if (weighted_ && options_.format == "tsv") {
+      Rows(underlying, read, out);
+    } else {
+      Line(underlying, Listed(read.outputs, "\t"), out);
+    }
   }
 
   // A form that was read in several ways, or with tags: its surfaces once, with its reading where they differ.
-  void Readings(const std::string& underlying, const std::vector<Read>& readings) {
+  void Readings(const std::string& underlying, const std::vector<Read>& readings, std::string* out) const {
     if (options_.json()) {
       std::string list;
       for (const Read& read : readings) {
         list +=
             (list.empty() ? "{\"reading\": " : ", {\"reading\": ") + JsonString(read.reading) + ResultJson(read) + "}";
       }
-      return Json("{\"underlying\": " + JsonString(underlying) + ResultJson(readings.front()) + ", \"readings\": [" +
-                  list + "]}");
+      *out += "{\"underlying\": " + JsonString(underlying) + ResultJson(readings.front()) + ", \"readings\": [" + list +
+              "]}";
+      return;
     }
     if (weighted_ && options_.format == "tsv") {
-      for (const Read& read : readings) Rows(underlying, read);
+      for (const Read& read : readings) Rows(underlying, read, out);
       return;
     }
     const std::string first = Listed(readings.front().outputs, "\t");
-    const bool differ = std::any_of(readings.begin(), readings.end(),
+    const bool differ = std::any_of(readings.begin() + 1, readings.end(),
                                     [&](const Read& read) { return Listed(read.outputs, "\t") != first; });
-    if (!differ) return Line(underlying, first);
+    if (!differ) return Line(underlying, first, out);
     std::string line;
     for (const Read& read : readings) {
       line +=
           (line.empty() ? "" : "\t") + Listed(read.outputs, " (" + read.reading + ")\t") + " (" + read.reading + ")";
     }
-    Line(underlying, line);
-  }
-
-  void Json(const std::string& element) {
-    output_.Write(first_ ? "\n" : ",\n");
-    output_.Write(element);
-    first_ = false;
-  }
-
-  void Text(const std::string& text) {
-    if (!first_) output_.Write("\n");
-    output_.Write(text);
-    first_ = false;
-  }
-
-  int Finish() {
-    if (options_.json()) output_.Write(first_ ? "]\n" : "\n]\n");
-    return output_.Finish();
+    Line(underlying, line, out);
   }
 
  private:
@@ -111,27 +104,25 @@ class ResultWriter {
     return read.more ? json + ", \"more\": true" : json;
   }
 
-  void Rows(const std::string& underlying, const Read& read) {
+  static void Rows(const std::string& underlying, const Read& read, std::string* out) {
     const auto row = [&](const std::string& surface, const std::string& probability) {
-      output_.Write(fmt::format("{}\t{}\t{}\t{}\n", Field(underlying), surface, probability, Field(read.reading)));
+      *out += fmt::format("{}\t{}\t{}\t{}\n", Field(underlying), surface, probability, Field(read.reading));
     };
     if (read.outputs.empty()) row(kNoOutput, "");
     for (const Runner::Output& output : read.outputs) row(output.surface, fmt::format("{:.4g}", output.probability));
   }
 
-  void Line(const std::string& underlying, const std::string& line) {
+  void Line(const std::string& underlying, const std::string& line, std::string* out) const {
     if (options_.pairs || options_.format == "tsv") {
-      output_.Write(Field(underlying));
-      output_.Write("\t");
+      *out += Field(underlying);
+      *out += '\t';
     }
-    output_.Write(line);
-    output_.Write("\n");
+    *out += line;
+    *out += '\n';
   }
 
   const DeriveOptions& options_;
   const bool weighted_;
-  Output& output_;
-  bool first_ = true;
 };
 
 // What a derivation is shown as: rows of name and form, with what happened under each.
@@ -282,34 +273,6 @@ class TypedForms {
   const Lettering& lettering_;
 };
 
-// Goes through the forms; `one(form, &error)` writes a form's result or says why it has none.
-template <class One>
-int ForEachForm(const DeriveOptions& options, Output& output, ResultWriter& writer, One one) {
-  FormSource source(options.forms);
-  std::string form;
-  int number = 0, bad = 0;
-  for (;;) {
-    if (source.WouldWait()) output.Flush();
-    if (!source.Next(&form, &number)) break;
-    TextError error;
-    if (one(form, &error)) continue;
-    ++bad;
-    PrintTextError(source, form, number, error, options.json());
-    if (!options.keep_going) {
-      if (source.from_stdin()) PrintHelp("--keep-going goes on after bad lines and prints ∅ for them");
-      if (options.output.empty()) writer.Finish();
-      return kUsage;
-    }
-    writer.Result(form, {});
-  }
-  if (source.failed()) {
-    PrintError("reading standard input failed");
-    return kFiles;
-  }
-  const int code = writer.Finish();
-  return code != kFine ? code : bad > 0 ? kDisagree : kFine;
-}
-
 int RunTrace(const DeriveOptions& options) {
   const Loaded loaded = LoadOnly(options);
   if (loaded.code != kFine) return loaded.code;
@@ -323,27 +286,31 @@ int RunTrace(const DeriveOptions& options) {
     PrintError("--trace writes text or json, not tsv");
     return kUsage;
   }
-  ResultWriter writer(options, false, output);
-  bool all_have_results = true;
-  const int code = ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
+  const ResultWriter writer(options, false);
+  FormVerb verb;
+  verb.frame = writer.FrameOf();
+  verb.answer = [&](const std::string& form, std::string* out, TextError* error) {
     std::vector<Reading> readings;
-    if (!forms.Read(form, &readings, error)) return false;
+    if (!forms.Read(form, &readings, error)) return Answered::kUnread;
+    const bool named = readings.size() > 1 || loaded.grammar->tagged;
+    Answered answered = Answered::kResult;
     for (const Reading& reading : readings) {
       const Derivation derivation = Derive(*loaded.grammar, forms.FormOf(reading), true);
       std::string surface, why;
-      all_have_results = tracer.Surface(derivation, &surface, &why) && all_have_results;
-      const bool named = readings.size() > 1 || loaded.grammar->tagged;
+      if (!tracer.Surface(derivation, &surface, &why)) answered = Answered::kNoResult;
+      if (&reading != &readings.front()) *out += verb.frame.between;
       if (options.json()) {
         ordered_json json = tracer.Json(form, derivation);
         if (named) json["reading"] = forms.NameOf(reading);
-        writer.Json(json.dump(2, ' ', false, ordered_json::error_handler_t::replace));
+        *out += json.dump(2, ' ', false, ordered_json::error_handler_t::replace);
       } else {
-        writer.Text((named ? "reading " + forms.NameOf(reading) + "\n" : "") + tracer.Text(derivation));
+        *out += (named ? "reading " + forms.NameOf(reading) + "\n" : "") + tracer.Text(derivation);
       }
     }
-    return true;
-  });
-  return code == kFine && !all_have_results ? kDisagree : code;
+    return answered;
+  };
+  verb.unread = [&](const std::string& form, std::string* out) { writer.Result(form, {}, out); };
+  return AnswerForms(options, verb, output);
 }
 
 // Says that the list was cut, unless so many were asked for.
@@ -353,7 +320,7 @@ void SayMore(const DeriveOptions& options, const std::string& form, const Result
 }
 
 int RunDerive(const DeriveOptions& options) {
-  if (BothFromStdin(options, options.forms)) return kUsage;
+  if (!GoodFormOptions(options)) return kUsage;
   if (options.most() == 0 || options.most() > Limits{}.outcomes) {
     PrintError(fmt::format("--best {}: give a number from 1 to {}", options.most(), Limits{}.outcomes));
     return kUsage;
@@ -367,17 +334,19 @@ int RunDerive(const DeriveOptions& options) {
   Runner runner(*loaded.grammar, *loaded.cascade);
   Output output(options.output);
   if (!output.good()) return kFiles;
-  ResultWriter writer(options, runner.weighted(), output);
-  return ForEachForm(options, output, writer, [&](const std::string& form, TextError* error) {
+  const ResultWriter writer(options, runner.weighted());
+  FormVerb verb;
+  verb.frame = writer.FrameOf();
+  verb.answer = [&](const std::string& form, std::string* out, TextError* error) {
     if (forms.Plain(form)) {
       ResultWriter::Read read;
-      if (!runner.DeriveAll(form, options.most(), &read.outputs, &read.more, error)) return false;
-      writer.Result(form, read);
+      if (!runner.DeriveAll(form, options.most(), &read.outputs, &read.more, error)) return Answered::kUnread;
+      writer.Result(form, read, out);
       SayMore(options, form, read);
-      return true;
+      return Answered::kResult;
     }
     std::vector<Reading> readings;
-    if (!forms.Read(form, &readings, error)) return false;
+    if (!forms.Read(form, &readings, error)) return Answered::kUnread;
     std::vector<ResultWriter::Read> results;
     bool any = false;
     for (const Reading& reading : readings) {
@@ -391,9 +360,12 @@ int RunDerive(const DeriveOptions& options) {
       SayMore(options, read.reading, read);
       any = true;
     }
-    if (any) writer.Readings(form, results);
-    return any;
-  });
+    if (!any) return Answered::kUnread;
+    writer.Readings(form, results, out);
+    return Answered::kResult;
+  };
+  verb.unread = [&](const std::string& form, std::string* out) { writer.Result(form, {}, out); };
+  return AnswerForms(options, verb, output);
 }
 
 }  // namespace
@@ -403,17 +375,17 @@ void AddDerive(CLI::App& app, int& code) {
   CLI::App* verb = app.add_subcommand("derive", "underlying forms to surface forms");
   AddCommonOptions(*verb, *options);
   AddSpelledOption(*verb, *options);
-  verb->add_option("FORMS", options->forms, "underlying forms; none, or -: one a line on standard input");
+  AddFormOptions(*verb, *options, "underlying");
   verb->add_flag("--trace", options->trace, "the derivation, rule by rule");
   verb->add_option("--best", options->best, "where rules are optional: how many outputs at most, likeliest first (20)")
       ->type_name("N");
   verb->add_flag("--pairs", options->pairs, "underlying and surface form, tab-separated");
-  verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
   verb->footer(
       "\nWhere rules are optional, a line holds all outputs with their probabilities, tab-separated, likeliest first;\n"
       "tsv has a line for each. --trace then tells the likeliest way and names the other outputs.\n"
       "\nExample:\n  tiersmith derive velmari.tier --trace in-kat\n  tiersmith derive velmari.tier --pairs < "
-      "words.txt\n  tiersmith derive velmari.tier --best 3 --format json in-kat");
+      "words.txt\n  tiersmith derive velmari.tier --keep-going --jobs 4 < words.txt\n  tiersmith derive velmari.tier "
+      "--best 3 --format json in-kat");
   verb->callback([options, &code] { code = RunDerive(*options); });
 }
 

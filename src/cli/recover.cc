@@ -12,6 +12,7 @@
 
 #include "analyse/word_graph.h"
 #include "cli/lettering.h"
+#include "cli/stream.h"
 #include "run/run.h"
 
 namespace tiersmith::cli {
@@ -19,11 +20,11 @@ namespace {
 
 using nlohmann::ordered_json;
 
-struct RecoverOptions : CommonOptions {
-  std::vector<std::string> forms;
+constexpr std::size_t kBlock = 16;  // forms at a time: one may take long
+
+struct RecoverOptions : FormOptions {
   std::size_t best = 10;
   std::string from;  // "lexicon", "segments"; "": the lexicon where it has stems
-  bool keep_going = false;
 };
 
 std::string Weight(double weight) { return fmt::format("{:.4g}", weight); }
@@ -142,7 +143,7 @@ bool ChooseWords(const RecoverOptions& options, const Loaded& loaded, Runner* ru
 }
 
 int RunRecover(const RecoverOptions& options) {
-  if (BothFromStdin(options, options.forms)) return kUsage;
+  if (!GoodFormOptions(options)) return kUsage;
   if (options.best == 0 || options.best > Limits{}.candidates) {
     PrintError(fmt::format("--best {}: give a number from 1 to {}", options.best, Limits{}.candidates));
     return kUsage;
@@ -160,49 +161,33 @@ int RunRecover(const RecoverOptions& options) {
   if (!ChooseWords(options, loaded, &runner, &words)) return kUsage;
   Output output(options.output);
   if (!output.good()) return kFiles;
-  FormSource source(options.forms);
-  const bool named = source.from_stdin() || options.forms.size() > 1;
-  if (options.json()) output.Write("[");
-  if (options.format == "tsv") output.Write("surface\tform\trestorations\tweight\tgloss\n");
-  std::string form;
-  int number = 0;
-  bool first = true, none = false;
-  for (;;) {
-    if (source.WouldWait()) output.Flush();
-    if (!source.Next(&form, &number)) break;
-    Runner::Candidates candidates;
-    TextError error;
-    if (!Recover(runner, lettering, form, options.best, &candidates, &error)) {
-      PrintTextError(source, form, number, error, options.json());
-      if (!options.keep_going) {
-        if (options.json() && options.output.empty()) output.Write(first ? "]\n" : "\n]\n");
-        return kUsage;
-      }
-      candidates = {};
-    } else if (words && candidates.best.empty()) {
-      PrintNote(fmt::format("no word of the lexicon comes out as [{}]; --from segments looks beyond it", form));
-    }
-    none = none || candidates.best.empty();
+  const bool named = options.forms.size() != 1 || options.forms[0] == "-";
+  const auto write = [&](const std::string& form, const Runner::Candidates& candidates, std::string* out) {
     if (options.json()) {
-      output.Write(first ? "\n" : ",\n");
-      output.Write(AsJson(form, candidates).dump(2, ' ', false, ordered_json::error_handler_t::replace));
+      *out += AsJson(form, candidates).dump(2, ' ', false, ordered_json::error_handler_t::replace);
     } else if (options.format == "tsv") {
-      output.Write(AsTsv(form, candidates));
+      *out += AsTsv(form, candidates);
       const std::string bound = Bound(candidates);
       if (!bound.empty()) std::cerr << form << ": " << bound << '\n';
     } else {
-      if (!first) output.Write("\n");
-      output.Write(AsText(form, candidates, named));
+      *out += AsText(form, candidates, named);
     }
-    first = false;
-  }
-  if (source.failed()) {
-    PrintError("reading standard input failed");
-    return kFiles;
-  }
-  if (options.json()) output.Write(first ? "]\n" : "\n]\n");
-  const int code = output.Finish();
-  return code != kFine ? code : none ? kDisagree : kFine;
+  };
+  FormVerb verb;
+  verb.block = kBlock;
+  if (options.json()) verb.frame = Frame::Json();
+  if (options.format == "tsv") verb.frame.open = "surface\tform\trestorations\tweight\tgloss\n";
+  if (options.format == "text") verb.frame.between = "\n";
+  verb.answer = [&](const std::string& form, std::string* out, TextError* error) {
+    Runner::Candidates candidates;
+    if (!Recover(runner, lettering, form, options.best, &candidates, error)) return Answered::kUnread;
+    if (words && candidates.best.empty())
+      PrintNote(fmt::format("no word of the lexicon comes out as [{}]; --from segments looks beyond it", form));
+    write(form, candidates, out);
+    return candidates.best.empty() ? Answered::kNoResult : Answered::kResult;
+  };
+  verb.unread = [&](const std::string& form, std::string* out) { write(form, {}, out); };
+  return AnswerForms(options, verb, output);
 }
 
 }  // namespace
@@ -212,18 +197,19 @@ void AddRecover(CLI::App& app, int& code) {
   CLI::App* verb = app.add_subcommand("recover", "surface forms to candidate underlying forms");
   AddCommonOptions(*verb, *options);
   AddSpelledOption(*verb, *options);
-  verb->add_option("FORMS", options->forms, "surface forms; none, or -: one a line on standard input");
+  AddFormOptions(*verb, *options, "surface");
   verb->add_option("--best", options->best, "how many candidates (10)")->type_name("N");
   verb->add_option("--from", options->from,
                    "lexicon: words of the lexicon and its paradigms (where it has stems, this is what is done);\n"
                    "segments: anything the segments spell")
       ->type_name("SOURCE");
-  verb->add_flag("--keep-going", options->keep_going, "after a bad form print ∅ and go on (exit code 1 at the end)");
   verb->footer(
       "\nColumns: form, restorations (slots and boundaries put back), weight (-ln of the probability that the form "
       "comes\n"
       "out so; 0 where no rule is optional), gloss (of words). Fewest restorations first, then likeliest.\n"
-      "\nExample:\n  tiersmith recover velmari.tier --best 5 --from segments iŋkat");
+      "\nExample:\n  tiersmith recover velmari.tier --best 5 --from segments iŋkat\n  tiersmith recover velmari.tier "
+      "--jobs 4 "
+      "--format tsv < text.txt");
   verb->callback([options, &code] { code = RunRecover(*options); });
 }
 

@@ -1,20 +1,25 @@
 // How fast the machines derive, as a ratio to the graph interpreter in the same run, and how long a ruleset takes to compile.
 //
 // /pul-lAr-In/ -> [pullɑrɯn], by both, from text to text on one core. The forms are the data of each ruleset, over and over. The interpreter
-// is the judge and is not written for speed, so the ratio says what compiling buys and nothing about other programs.
+// is the judge and is not written for speed, so the ratio says what compiling buys and nothing about other programs. Then the same forms
+// with a spelling and with tags that a rule asks for, as a ratio to those of the plain grammar.
 // Build: `cmake --build build --target bench`; run: `build/bench [GRAMMAR..]`. Not a test: times vary, only sizes are tested.
 #include <fmt/format.h>
 
 #include <chrono>
 #include <cstdio>
 #include <filesystem>
+#include <fstream>
 #include <functional>
+#include <iterator>
 #include <string>
 #include <vector>
 
 #include "base/render_diagnostics.h"
 #include "compile/cascade.h"
 #include "graph/interpreter.h"
+#include "model/readings.h"
+#include "model/speller.h"
 #include "run/run.h"
 
 namespace tiersmith {
@@ -81,11 +86,67 @@ bool Measure(const std::string& path) {
   return true;
 }
 
+// The Turkish ruleset with this added. No form of its data has the tag, so they come out the same.
+constexpr const char* kSpellingAndTags = R"(
+spelling { a = ɑ  ı = ɯ  ö = ø  ü = y  c = d͡ʒ  ç = t͡ʃ  ş = ʃ  j = ʒ  g = ɡ  y = j }
+rule "loan" { where X:C #   only X in loan   delete X }
+lexicon { stem /pul/ 'stamp' noun  stem /køj/ noun  stem /kep/ loan  suffix /-lAr/ plural  suffix /-In/ }
+)";
+
+bool MeasureTyped() {
+  const std::string path = fmt::format("{0}/{1}/{1}.tier", TIERSMITH_TEST_RULESETS, "turkish-vowel-harmony");
+  std::ifstream file(path);
+  const std::string text(std::istreambuf_iterator<char>(file), {});
+  Diagnostics diagnostics;
+  const auto sources = std::make_shared<SourceMap>();
+  const std::unique_ptr<Grammar> plain = LoadGrammarText(path, text, sources, diagnostics);
+  const std::unique_ptr<Grammar> typed = LoadGrammarText(path, text + kSpellingAndTags, sources, diagnostics);
+  const auto plain_cascade = plain == nullptr ? nullptr : Compile(*plain, Limits{}, diagnostics);
+  const auto typed_cascade = typed == nullptr ? nullptr : Compile(*typed, Limits{}, diagnostics);
+  if (plain_cascade == nullptr || typed_cascade == nullptr) {
+    fmt::print(stderr, "{}", RenderDiagnostics(diagnostics, *sources, false));
+    return false;
+  }
+  Runner plain_runner(*plain, *plain_cascade), typed_runner(*typed, *typed_cascade);
+  const Speller speller(*typed);
+  const FormReader reader(*typed);
+  std::string surface, spelled;
+  std::vector<std::string> texts;
+  std::vector<Reading> readings;
+  std::vector<Runner::Output> outputs;
+  TextError error;
+  bool more = false;
+  const auto derive_plain = [&](const std::string& form) { return plain_runner.Derive(form, &surface, &error); };
+  const auto derive_typed = [&](const std::string& form) {
+    if (!speller.Read(form, Reader::Side::kUnderlying, &texts, &error) ||
+        !reader.Read(texts.front(), {}, &readings, &error) ||
+        !typed_runner.DeriveAll(readings.front(), 1, &outputs, &more, &error))
+      return false;
+    spelled = speller.Write(outputs.front().surface, Reader::Side::kSurface);
+    return true;
+  };
+  std::vector<std::string> forms, letters;
+  for (const DataRow& row : plain->data) {
+    forms.push_back(row.underlying);
+    letters.push_back(speller.Write(row.underlying, Reader::Side::kUnderlying));
+    const bool same = derive_plain(forms.back()) && derive_typed(letters.back()) &&
+                      spelled == speller.Write(surface, Reader::Side::kSurface);
+    if (same) continue;
+    fmt::print(stderr, "{}: [{}] plain, ⟨{}⟩ spelled and tagged {}\n", forms.back(), surface, spelled, error.message);
+    return false;
+  }
+  const double fast = Rate(forms, 0.5, derive_plain), slow = Rate(letters, 0.5, derive_typed);
+  fmt::print("\n{:<26}{:>16}{:>16}{:>8}\n{:<26}{:>16.0f}{:>16.0f}{:>8.1f}\n", "spelled and tagged", "plain forms/s",
+             "typed forms/s", "ratio", "turkish-vowel-harmony", fast, slow, fast / slow);
+  return true;
+}
+
 int Run(const std::vector<std::string>& paths) {
   fmt::print("{:<26}{:>6}{:>12}{:>16}{:>16}{:>8}\n", "grammar", "rules", "compile s", "machine forms/s",
              "interp. forms/s", "ratio");
   bool fine = true;
   for (const std::string& path : paths) fine = Measure(path) && fine;
+  fine = MeasureTyped() && fine;
   return fine ? 0 : 1;
 }
 
