@@ -519,7 +519,8 @@ class Sweep {
     VisitOn(&state, input, at_visit);
     const bool relinked = Leave(&state, now, request, built);
     Forget(&state);
-    if (FreesBehind(now, request, built) || HalvesRoot(at_visit, request) || LeavesRoot(request, built) || relinked) {
+    if (FreesBehind(now, request, built) || HalvesRoot(at_visit, request) || LeavesRoot(request, built) ||
+        ChangesBehind(input, now, built) || relinked) {
       with_flags[0] |= kUnsure;
     }
     return {state.Pack(), Written(InputWithOver(input, now), with_flags, before.visit_contents, far_contents)};
@@ -554,6 +555,15 @@ class Sweep {
     if (!(request[0] & kLengthen)) return false;
     const WorkPart* root = FindPart(built.slot, kRootNode, /*last=*/true);
     return root == nullptr || root->origin != Origin::kOwn;
+  }
+
+  // Does something under this slot's root change that the sweep has already given to a slot behind?
+  bool ChangesBehind(const Key& input, const Key& now, const BuiltLetter& built) const {
+    if (!(space_.Marks(now, kRootNode) & ~space_.Marks(input, kRootNode) & direction_.near_line())) return false;
+    for (std::size_t i = 0; i < nodes(); ++i) {
+      if (built.effective[i] && requests_.nodes()[i] != kRootNode) return true;
+    }
+    return false;
   }
 
   // Is a new root asked for at one slot of a long one? Whether the other gets the same is decided there.
@@ -1033,7 +1043,8 @@ class Sweep {
       near_line = true;
       const int mother = space_.LiveIndex(space_.tree()[node].mother);
       far_line = mother >= 0 && ((*letter)[1 + mother] & direction_.far_line());
-      if (!far_line && direction_.rightward) far_line = moved.mother->links >> LinkBit(space_.tree(), node) & 1;
+      if (!far_line)
+        far_line = direction_.rightward ? (moved.mother->links >> LinkBit(space_.tree(), node) & 1) != 0 : goes_on;
     } else if (moved.far) {
       near_line = goes_on;
       far_line = true;

@@ -132,10 +132,12 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, co
     };
     const auto give_up = [&](bool merges_left) {
       const std::int32_t next = walker.next;
-      const bool lives = (old_count == 1 && old_bit && walker.alive) || next == kOldToTheLeft || next == kNewToTheLeft;
+      const bool held = (old_count == 1 && old_bit && walker.alive) || next == kOldToTheLeft;
+      // What a sweep took from here to the right is what was given up only if that stands further left as well.
+      const bool lives = held || (next == kNewToTheLeft && (merges_left || (marks & kFromLeft)));
       for (int k = old_count; k-- > 0;) walker.GivenUp(k + 1 == old_count && old_bit);
       state.old = lives ? Old::kElsewhere : Old::kGivenUp;
-      walker.alive = lives;
+      walker.alive = held;
       if (lives && merges_left) walker.next = kOldToTheLeft;
     };
 
@@ -150,7 +152,10 @@ bool Repair::Letter(const Key& before, WorkPart* after, std::int32_t* memory, co
         if (mother.old == Old::kElsewhere) {
           state.old = Old::kElsewhere;
         } else {
+          const std::int32_t as_it_was = walker.Memory();
           lose();
+          // What a sweep led here from the left goes on to the right: that is what comes next, and nothing between.
+          if (settled && mother.from == Origin::kNewLeft && !list.empty()) walker = Walker(as_it_was);
         }
       }
       if (!settled && FromLeft(mother.from)) moved_entries();

@@ -33,6 +33,18 @@ void CheckAmbiguous(const Rule& rule, const std::string& before) {
   CHECK(tally.ambiguous == 1);
 }
 
+// The interpreter runs it; the machine says that it cannot.
+void CheckRefused(const Rule& rule, const std::string& before) {
+  CAPTURE(rule.name, before);
+  Grammar grammar = SmallGrammar();
+  grammar.rules = {rule};
+  const Form form = FormOf(grammar, before);
+  CHECK(ApplyRule(grammar, rule, form).ambiguous == "");
+  Tally tally;
+  CHECK(CompareRule(grammar, {form}, 1, &tally).value_or("") == "");
+  CHECK(tally.unsure == 1);
+}
+
 }  // namespace
 
 TEST_CASE("found by chance: one clause spreads what another changes", "[unit]") {
@@ -92,6 +104,46 @@ TEST_CASE("found by chance: a new root for half of a long contour", "[unit]") {
     CheckBoth(RuleBuilder(g, "[+son] Y:[-son]").SetLiteral("Y", "N"), form, form);
     CheckBoth(RuleBuilder(g, "Y:[-son] [+son]").SetLiteral("Y", "N"), form, form);
   }
+}
+
+TEST_CASE("found by chance: a sweep gives on what is behind, past what was given up", "[unit]") {
+  // All after s take its Place, one after the other. The k between gives up the Dorsal of which the first k holds the high.
+  const Grammar g = SmallGrammar();
+  const Rule rule =
+      RuleBuilder(g, "X:[] Y:[-cont]").Spread("X.Place", "Y").Delink("Y.Place").Mode(Rule::Mode::kRightward);
+  CheckBoth(rule, "k{high:1} s k{high:1} p", "k s{Place:2} k{Place:2} p{Place:2}");
+  CheckBoth(rule, "k{high:1} s k{high:1 Place:2} k{Place:2} p", "k s{Place:3} k{Place:3} k{Place:3} p{Place:3}");
+  // The same of roots: what the first of the long one holds is on the right of what it was on the right of.
+  CheckBoth(RuleBuilder(g, "X:[-voice] Y:[-son]").Spread("X.root", "Y").Delink("Y.root").Mode(Rule::Mode::kRightward),
+            "b{son:1} c{son:1} c c", "b{son:1} c{son:1 root:2} c{root:2} c{root:2}");
+  // Where the Place given up stands on the left as well, it is the one that goes on.
+  CheckBoth(rule, "a{high:1} a{high:1 Place:2} k{Place:2} p", "a{high:1} a{high:1 Place:2} k{Place:2} p{Place:2}");
+}
+
+TEST_CASE("found by chance: what a sweep leads on keeps the line ahead", "[unit]") {
+  // d takes the Dorsal of u, whose high k holds as well. So /g/, with a high of its own, goes before k alone.
+  const Grammar g = SmallGrammar();
+  const Rule rule = RuleBuilder(g, "X:[Coronal] Y:[-syll Place no Dorsal] Z:[Dorsal]")
+                        .Spread("Z.Dorsal", "Y")
+                        .Otherwise("Y:[]")
+                        .Insert("g", true, "Y")
+                        .Mode(Rule::Mode::kLeftward);
+  CheckBoth(rule, "k{high:1} d d u{high:1}", "g k{high:1} d d{Dorsal +high +back Dorsal:2 high:1} u{Dorsal:2}");
+}
+
+TEST_CASE("found by chance: a sweep changes a root that it gave to a slot behind", "[unit]") {
+  // s takes the root of the nasal. Where that then takes the Place of c, the slot behind would read otherwise: refused.
+  const Grammar g = SmallGrammar();
+  const Rule rule = RuleBuilder(g, "X:[-cont] Y:[Place]")
+                        .Spread("Y.Place", "X")
+                        .Delink("X.Place")
+                        .Otherwise("- X:[Place] ... Y:[-cont]")
+                        .Spread("Y.root", "X")
+                        .Delink("X.root")
+                        .Mode(Rule::Mode::kRightward);
+  CheckBoth(rule, "- s ŋ", "- ŋ{root:1} ŋ{root:1}");
+  CheckBoth(rule, "- s ŋ E", "- ŋ{root:1} ŋ{root:1} E");
+  CheckRefused(rule, "- s ŋ c");
 }
 
 }  // namespace tiersmith::testing
