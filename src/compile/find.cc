@@ -462,6 +462,7 @@ class Sweep {
       if (EndsDraw(input[0])) state.drawn = state.visit < 0 ? 0 : state.drawn | kDrawnBefore;
       return {{state.Pack(), Written(input, requests_.None(), Key(nodes(), 0), Key(nodes(), -1).data())}};
     }
+    if (state.visit >= 0 && space_.Of(input[0], kRootNode).count == 0) return {PastHole(std::move(state), symbol)};
     const bool first = state.visit < 0;
     if (first) {
       state.visit = state.near;
@@ -524,6 +525,21 @@ class Sweep {
       with_flags[0] |= kUnsure;
     }
     return {state.Pack(), Written(InputWithOver(input, now), with_flags, before.visit_contents, far_contents)};
+  }
+
+  // Past a slot without a root inside the root that is being visited. It has a visit of its own when all that is asked of that
+  // root is done, also ahead of it: what is there then is not known here.
+  PassStep PastHole(SweepState state, const Key& symbol) {
+    const Key input = Annotated(symbol, space_);
+    const Key now = Current(input, state.behind);
+    Key request = requests_.Of(Chosen(RolesAt(state.near, now, symbol[space_.AnnotatedSize()])), now);
+    const bool asked = std::any_of(request.begin(), request.end(), [](std::int32_t ask) { return ask != 0; });
+    request = requests_.None();
+    if (asked) request[0] |= kUnsure;
+    state.visit = StepOn(state.visit, Known(Current(input, state.behind_visit)));
+    LeaveAlone(&state, now);
+    Forget(&state);
+    return {state.Pack(), Written(InputWithOver(input, now), request, Key(nodes(), 0), Key(nodes(), -1).data())};
   }
 
   // What is asked of the length of a root is done at its last slot. The slot before one that goes rightward ends the root, and
@@ -762,18 +778,15 @@ class Sweep {
 
   // What is asked of this slot: its own roles, and on the root and below also those of its further slots.
   Key Decide(SweepState* state, const Key& at_visit, std::int32_t far, std::int32_t ahead, bool first) {
-    const int profile = Known(at_visit);
     const int roles = static_cast<int>(machine_.roles.size());
-    std::vector<char> found(machine_.roles.size(), 0), later(machine_.roles.size(), 0);
-    for (const Arc& arc : by_profile_[profile]) {
-      if (!near_.members[state->visit][arc.from]) continue;
-      if (arc.role >= 0 && far_.members[far][arc.to]) found[arc.role] = 1;
-      if (!first || ahead < 0) continue;
+    std::vector<char> later(machine_.roles.size(), 0);
+    for (const Arc& arc : by_profile_[Known(at_visit)]) {
+      if (!first || ahead < 0 || !near_.members[state->visit][arc.from]) continue;
       for (std::int32_t pair : aheads_[ahead]) {
         if (pair / roles == arc.to) later[pair % roles] = 1;
       }
     }
-    Key request = requests_.Of(Chosen(found), at_visit);
+    Key request = requests_.Of(Chosen(RolesAt(state->visit, at_visit, far)), at_visit);
     const Key of_later = requests_.Of(Chosen(later), at_visit);
     if (first) state->length = (request[0] | of_later[0]) & kLength;
     request[0] = (request[0] & ~kLength) | state->length;
@@ -784,6 +797,15 @@ class Sweep {
       request[1 + i] = carried;
     }
     return request;
+  }
+
+  // The roles of a letter between what is behind and what is ahead.
+  std::vector<char> RolesAt(std::int32_t near, const Key& letter, std::int32_t far) {
+    std::vector<char> found(machine_.roles.size(), 0);
+    for (const Arc& arc : by_profile_[Known(letter)]) {
+      if (arc.role >= 0 && near_.members[near][arc.from] && far_.members[far][arc.to]) found[arc.role] = 1;
+    }
+    return found;
   }
 
   std::vector<const Role*> Chosen(const std::vector<char>& found) const {
