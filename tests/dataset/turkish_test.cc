@@ -25,12 +25,10 @@
 
 #include <unistd.h>
 
-#include "base/render_diagnostics.h"
 #include "base/utf8.h"
-#include "compile/cascade.h"
 #include "model/readings.h"
 #include "model/speller.h"
-#include "run/run.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {
@@ -220,39 +218,25 @@ std::string OtherHarmony(const std::string& form, std::size_t from) {
 using Tags = std::vector<std::string>;
 
 struct Turkish {
-  std::shared_ptr<SourceMap> sources = std::make_shared<SourceMap>();
-  Diagnostics diagnostics;
-  std::unique_ptr<Grammar> grammar;
-  std::unique_ptr<Cascade> cascade;
-  std::unique_ptr<FormReader> reader;
-  std::unique_ptr<Speller> speller;
-  std::unique_ptr<Runner> runner;
-
-  Turkish() {
-    grammar = LoadGrammar(std::string(TIERSMITH_TEST_RULESETS) + "/turkish/turkish.tier", sources, diagnostics);
-    if (grammar != nullptr) cascade = Compile(*grammar, Limits{}, diagnostics);
-    INFO(RenderDiagnostics(diagnostics, *sources, false));
-    REQUIRE(cascade != nullptr);
-    reader = std::make_unique<FormReader>(*grammar);
-    speller = std::make_unique<Speller>(*grammar);
-    runner = std::make_unique<Runner>(*grammar, *cascade);
-  }
+  Compiled compiled = CompileRuleset("turkish");
+  FormReader reader{compiled.grammar()};
+  Speller speller{compiled.grammar()};
 
   // In letters; with just these tags, whatever the lexicon says of the stem.
   std::string Derive(const std::string& stem, const Tags& tags, const Suffix& suffix) {
     std::vector<std::string> symbols;
     TextError error;
     INFO(stem << suffix.form);
-    REQUIRE(speller->Read(stem, Reader::Side::kUnderlying, &symbols, &error));
+    REQUIRE(speller.Read(stem, Reader::Side::kUnderlying, &symbols, &error));
     std::vector<Morpheme> morphemes{{symbols.front(), MorphemeKind::kStem, tags, ""}};
     for (const char* c = suffix.form; *c != '\0'; ++c) {
       if (*c == '-') morphemes.push_back({"", MorphemeKind::kSuffix, {}, ""});
     }
     std::vector<Runner::Output> outputs;
     bool more = false;
-    if (!runner->DeriveAll(reader->Join(symbols.front() + suffix.form, morphemes), 1, &outputs, &more, &error))
+    if (!compiled.runner->DeriveAll(reader.Join(symbols.front() + suffix.form, morphemes), 1, &outputs, &more, &error))
       FAIL(error.message);
-    return speller->Write(outputs.front().surface, Reader::Side::kSurface);
+    return speller.Write(outputs.front().surface, Reader::Side::kSurface);
   }
 };
 

@@ -14,87 +14,16 @@
 #include <string>
 #include <vector>
 
-#include "base/render_diagnostics.h"
-#include "compile/cascade.h"
-#include "graph/interpreter.h"
-#include "model/grammar.h"
-#include "model/readings.h"
-#include "model/text.h"
-#include "run/run.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {
 
-// A grammar ready to run. Compiling takes up to seconds, so each is made once.
-struct Compiled {
-  std::shared_ptr<SourceMap> sources = std::make_shared<SourceMap>();
-  Diagnostics diagnostics;
-  std::unique_ptr<Grammar> grammar;
-  std::unique_ptr<Cascade> cascade;
-  std::unique_ptr<FormReader> reader;
-  std::unique_ptr<Runner> runner;
-
-  void Finish() {
-    if (grammar != nullptr) cascade = Compile(*grammar, Limits{}, diagnostics);
-    INFO(RenderDiagnostics(diagnostics, *sources, false));
-    REQUIRE(cascade != nullptr);
-    reader = std::make_unique<FormReader>(*grammar);
-    runner = std::make_unique<Runner>(*grammar, *cascade);
-  }
-
-  std::string Machine(const std::string& underlying) {
-    std::string surface;
-    TextError error;
-    return runner->Derive(underlying, &surface, &error) ? surface : "error: " + error.message;
-  }
-
-  Derivation Trace(const std::string& underlying) {
-    std::vector<Reading> readings;
-    TextError error;
-    INFO(underlying);
-    REQUIRE(reader->Read(underlying, {}, &readings, &error));
-    return tiersmith::Derive(*grammar, reader->FormOf(readings.front()));
-  }
-
-  std::string Interpreter(const std::string& underlying) {
-    const Derivation derivation = Trace(underlying);
-    if (!derivation.problem.empty()) return "error: " + derivation.problem;
-    std::string surface;
-    FeatureTree no_symbol;
-    if (!WriteForm(*grammar, derivation.surface, &surface, &no_symbol)) return "error: no symbol";
-    return surface;
-  }
-
-  bool IsCandidate(const std::string& underlying, const std::string& surface) {
-    bool answer = false;
-    TextError error;
-    const bool fine = runner->IsCandidate(underlying, surface, &answer, &error);
-    INFO(underlying << " " << surface << " " << error.message);
-    REQUIRE(fine);
-    return answer;
-  }
-
-  Runner::Candidates Recover(const std::string& surface, std::size_t best) {
-    Runner::Candidates candidates;
-    TextError error;
-    const bool fine = runner->Recover(surface, best, &candidates, &error);
-    INFO(surface << " " << error.message);
-    REQUIRE(fine);
-    return candidates;
-  }
-};
-
+// Compiling takes up to seconds, so each is made once.
 Compiled& Ruleset(const std::string& name) {
-  setenv("TIERSMITH_RULESETS", TIERSMITH_TEST_RULESETS, 1);
   static std::map<std::string, Compiled> all;
-  const auto [place, fresh] = all.try_emplace(name);
-  Compiled& ruleset = place->second;
-  if (fresh) {
-    const std::string path = std::string(TIERSMITH_TEST_RULESETS) + "/" + name + "/" + name + ".tier";
-    ruleset.grammar = LoadGrammar(path, ruleset.sources, ruleset.diagnostics);
-    ruleset.Finish();
-  }
-  return ruleset;
+  const auto known = all.find(name);
+  return known != all.end() ? known->second : all.emplace(name, CompileRuleset(name)).first->second;
 }
 
 const char* const kSpanish = "spanish-nasal-place";
@@ -121,17 +50,17 @@ TEST_CASE("every published row is derived, and its underlying form recovered by 
       {kEnglish, 20 + 3}, {kGrassmann, 22 + 3}, {kArabic, 25 + 3}};
   for (const auto& [name, count] : rulesets) {
     Compiled& ruleset = Ruleset(name);
-    CHECK(ruleset.grammar->data.size() == count);
+    CHECK(ruleset.grammar().data.size() == count);
     std::size_t machine = 0, interpreter = 0, recovered = 0;
-    for (const DataRow& row : ruleset.grammar->data) {
+    for (const DataRow& row : ruleset.grammar().data) {
       CAPTURE(name, row.underlying, row.source);
       REQUIRE(row.surfaces.size() == 1);
       const std::string wanted = ComparisonKey(row.surfaces[0]);
-      CHECK(ComparisonKey(ruleset.Machine(row.underlying)) == wanted);
-      CHECK(ComparisonKey(ruleset.Interpreter(row.underlying)) == wanted);
+      CHECK(ComparisonKey(ruleset.Derive(row.underlying)) == wanted);
+      CHECK(ComparisonKey(ByInterpreter(ruleset.grammar(), row.underlying)) == wanted);
       CHECK(ruleset.IsCandidate(row.underlying, row.surfaces[0]));
-      machine += ComparisonKey(ruleset.Machine(row.underlying)) == wanted;
-      interpreter += ComparisonKey(ruleset.Interpreter(row.underlying)) == wanted;
+      machine += ComparisonKey(ruleset.Derive(row.underlying)) == wanted;
+      interpreter += ComparisonKey(ByInterpreter(ruleset.grammar(), row.underlying)) == wanted;
       recovered += ruleset.IsCandidate(row.underlying, row.surfaces[0]);
     }
     std::cout << name << ": " << count << " rows, " << machine << " by the machine, " << interpreter
@@ -143,7 +72,7 @@ TEST_CASE("every published row is derived, and its underlying form recovered by 
 TEST_CASE("no published row is taken for another", "[published]") {
   for (const char* name : {kSpanish, kSanskrit, kTurkish, kFinnish, kEnglish, kGrassmann, kArabic}) {
     Compiled& ruleset = Ruleset(name);
-    const std::vector<DataRow>& rows = ruleset.grammar->data;
+    const std::vector<DataRow>& rows = ruleset.grammar().data;
     std::size_t pairs = 0;
     for (std::size_t i = 0; i < rows.size(); ++i) {
       const DataRow& other = rows[(i + 1) % rows.size()];
@@ -217,8 +146,8 @@ TEST_CASE("what the published analyses say of forms that are no rows", "[publish
   for (const Control& control : controls) {
     CAPTURE(control.ruleset, control.underlying);
     Compiled& ruleset = Ruleset(control.ruleset);
-    CHECK(ruleset.Machine(control.underlying) == control.surface);
-    CHECK(ruleset.Interpreter(control.underlying) == control.surface);
+    CHECK(ruleset.Derive(control.underlying) == control.surface);
+    CHECK(ByInterpreter(ruleset.grammar(), control.underlying) == control.surface);
     CHECK(ruleset.IsCandidate(control.underlying, control.surface));
   }
 }
@@ -250,7 +179,7 @@ TEST_CASE("what the published analyses exclude is no candidate", "[published]") 
     CAPTURE(control.ruleset, control.underlying, control.surface);
     Compiled& ruleset = Ruleset(control.ruleset);
     CHECK_FALSE(ruleset.IsCandidate(control.underlying, control.surface));
-    CHECK(ruleset.Machine(control.underlying) != control.surface);
+    CHECK(ruleset.Derive(control.underlying) != control.surface);
   }
 }
 
@@ -259,8 +188,8 @@ TEST_CASE("what the published analyses exclude is no candidate", "[published]") 
 TEST_CASE("the graphs behind the published forms", "[published]") {
   const auto sharing = [](const std::string& ruleset, const std::string& form, const std::string& node) {
     Compiled& compiled = Ruleset(ruleset);
-    const Form surface = compiled.Trace(form).surface;
-    const std::optional<NodeId> id = compiled.grammar->tree.Find(node);
+    const Form surface = Trace(compiled.grammar(), form).surface;
+    const std::optional<NodeId> id = compiled.grammar().tree.Find(node);
     REQUIRE(id.has_value());
     std::vector<InstanceId> roots;
     for (const FormItem& item : surface.items) {
@@ -316,7 +245,8 @@ TEST_CASE("published underlying forms are listed among the best", "[published]")
     // Each that is listed does come out so.
     for (const Runner::Candidate& candidate : candidates.best) {
       CAPTURE(candidate.form);
-      CHECK(ComparisonKey(Ruleset(control.ruleset).Interpreter(candidate.form)) == ComparisonKey(control.surface));
+      CHECK(ComparisonKey(ByInterpreter(Ruleset(control.ruleset).grammar(), candidate.form)) ==
+            ComparisonKey(control.surface));
     }
   }
 }
@@ -348,13 +278,7 @@ tree {
 }
 segments from "ipa" { p t h a i }
 )";
-  const auto compiled = [&tree](const std::string& rule) {
-    Compiled tiny;
-    tiny.grammar = LoadGrammarText("tiny.tier", tree + rule, tiny.sources, tiny.diagnostics);
-    tiny.Finish();
-    return tiny;
-  };
-  Compiled everywhere = compiled("rule \"h loss\" { where H:[sg] delete H }");
+  const Compiled everywhere = CompileText(tree + "rule \"h loss\" { where H:[sg] delete H }");
   const Runner::Candidates infinite = everywhere.Recover("pata", 20);
   CHECK(infinite.infinite);
   CHECK(infinite.more);
@@ -365,7 +289,7 @@ segments from "ipa" { p t h a i }
   CHECK_FALSE(everywhere.IsCandidate("hpahia", "pata"));
   CHECK(everywhere.Recover("paha", 20).best.empty());  // no h is left on the surface
 
-  Compiled one = compiled("rule \"last\" { where V:/i/ # delete V }");
+  const Compiled one = CompileText(tree + "rule \"last\" { where V:/i/ # delete V }");
   const Runner::Candidates finite = one.Recover("pata", 100'000);
   CHECK_FALSE(finite.infinite);
   CHECK_FALSE(finite.more);

@@ -2,7 +2,7 @@
 #include <catch2/catch.hpp>
 
 #include "analyse/check.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,7 +1,7 @@
 // A row whose two derivations differ is a defect of the program, and said to be one, also where rules are optional. A defect is
 // made here by giving the check the machine of another grammar.
 #include "analyse/check.h"
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -4,7 +4,7 @@
 
 #include <algorithm>
 
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {

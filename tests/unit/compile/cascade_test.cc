@@ -5,7 +5,7 @@
 #include <functional>
 #include <set>
 
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {

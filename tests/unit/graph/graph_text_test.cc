@@ -2,7 +2,7 @@
 // Latin, English and Tigrinya as in the handbooks (from memory): -alis/-aris after Steriade 1987, the English plural, the
 // inalterability of geminates after Hayes 1986. The other words are invented.
 #include "graph/interpreter.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

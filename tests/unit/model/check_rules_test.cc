@@ -1,7 +1,7 @@
 // The checker at work on rules: what each construct comes to, and what each mistake is called. Expected values are
 // written by hand from grammar/notation.md; nothing is run.
 #include "model/check.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

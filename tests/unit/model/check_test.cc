@@ -2,7 +2,7 @@
 // from grammar/notation.md.
 #include "model/check.h"
 
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,7 +1,7 @@
 // Feature trees and forms as plain values. The graphs are written down by hand from grammar/notation.md §2, §8.
 #include "model/form.h"
 
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

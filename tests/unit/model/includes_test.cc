@@ -2,7 +2,7 @@
 #include "model/includes.h"
 
 #include "support/folder.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 using namespace tiersmith;
 using namespace tiersmith::testing;

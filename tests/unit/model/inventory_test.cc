@@ -1,6 +1,6 @@
 // Segments, archisegments, allophones, diacritics, omit and Completion. Expected contents are worked out by hand from the
 // notation (grammar/notation.md §3, §4).
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -2,7 +2,7 @@
 // values"), after the chart of the International Phonetic Association (2020 revision); every row repeats a clause of that page.
 #include "model/library.h"
 
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,7 +1,7 @@
 // Kinds and tags of typed forms. Expected readings are worked out by hand from grammar/notation.md, "Words".
 #include "model/readings.h"
 
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,6 +1,6 @@
 // The spelling, read and written. Expected forms are worked out by hand; the spelling is an invented one.
 #include "model/speller.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -4,7 +4,7 @@
 
 #include "model/character_names.h"
 #include "model/normal_text.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

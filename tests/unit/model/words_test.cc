@@ -4,7 +4,7 @@
 #include <filesystem>
 #include <fstream>
 
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,32 +1,13 @@
 // Length in rules that iterate, by both engines. Expected forms are worked out by hand from grammar/notation.md §9: a sweep
 // visits each root once, sees the results behind it and the input ahead.
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {
 
-struct Row {
-  const char* underlying;
-  const char* surface;
-};
-
-std::string ByInterpreter(const Grammar& grammar, const std::string& underlying) {
-  std::string surface;
-  FeatureTree no_symbol;
-  REQUIRE(WriteForm(grammar, Trace(grammar, underlying).surface, &surface, &no_symbol));
-  return surface;
-}
-
-Compiled CheckRows(const std::string& rule, const std::vector<Row>& rows) {
-  Compiled grammar = CompileText(std::string(kSmallInventory) + "class C = [-syll]\n" + rule);
-  INFO(rule << grammar.Messages());
-  REQUIRE(grammar.runner != nullptr);
-  for (const Row& row : rows) {
-    CAPTURE(row.underlying);
-    CHECK(grammar.Derive(row.underlying) == row.surface);
-    CHECK(ByInterpreter(grammar.grammar(), row.underlying) == row.surface);
-    CHECK(grammar.IsCandidate(row.underlying, row.surface));
-  }
+Compiled CheckRows(const std::string& rule, const std::vector<DerivedRow>& rows) {
+  Compiled grammar = CheckByBoth(std::string(kSmallInventory) + "class C = [-syll]\n" + rule, rows);
+  CheckRecovered(grammar, rows);
   return grammar;
 }
 

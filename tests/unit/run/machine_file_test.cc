@@ -5,7 +5,7 @@
 #include <random>
 
 #include "support/folder.h"
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 using namespace tiersmith;
 using namespace tiersmith::testing;

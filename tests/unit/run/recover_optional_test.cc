@@ -3,7 +3,7 @@
 #include <cmath>
 #include <map>
 
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {

@@ -1,6 +1,6 @@
 // Running machines on text: what cannot be read or written, length, boundaries, empty forms; recovery: order, how many, when to stop.
 // Expected forms follow from grammar/notation.md §7, §8 and the rules written beside them; counts are worked out by hand.
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 #include <fmt/format.h>
 

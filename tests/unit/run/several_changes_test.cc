@@ -1,7 +1,7 @@
 // Length and merging beside other changes of one match, by both engines. Expected forms are worked out by hand from the
 // rulings of grammar/notation.md: all is decided on the form before, inserted items included; a root is made longer behind its last
 // slot that stays its own.
-#include "unit/run/compiled_case.h"
+#include "support/compiled_case.h"
 
 namespace tiersmith::testing {
 namespace {
@@ -17,24 +17,7 @@ segments from "ipa" { p t k b d m n h a i }
 segments { t͡s = t [-cont +cont] }
 )";
 
-struct Row {
-  const char* underlying;
-  const char* surface;
-};
-
-void CheckRows(const std::string& rules, const std::vector<Row>& rows) {
-  Compiled grammar = CompileText(kContours + rules);
-  INFO(rules << grammar.Messages());
-  REQUIRE(grammar.runner != nullptr);
-  for (const Row& row : rows) {
-    CAPTURE(row.underlying);
-    std::string surface;
-    FeatureTree no_symbol;
-    REQUIRE(WriteForm(grammar.grammar(), Trace(grammar.grammar(), row.underlying).surface, &surface, &no_symbol));
-    CHECK(surface == row.surface);
-    CHECK(grammar.Derive(row.underlying) == row.surface);
-  }
-}
+void CheckRows(const std::string& rules, const std::vector<DerivedRow>& rows) { CheckByBoth(kContours + rules, rows); }
 
 }  // namespace
 

@@ -9,8 +9,9 @@
 #include "base/render_diagnostics.h"
 #include "compile/cascade.h"
 #include "graph/interpreter.h"
+#include "model/readings.h"
 #include "run/run.h"
-#include "unit/model/model_case.h"
+#include "support/model_case.h"
 
 namespace tiersmith::testing {
 
@@ -43,14 +44,14 @@ struct Compiled {
     const std::string surface = Derive(underlying, &error);
     return surface == "error" ? "error: " + error.message : surface;
   }
-  bool IsCandidate(const std::string& underlying, const std::string& surface) {
+  bool IsCandidate(const std::string& underlying, const std::string& surface) const {
     bool answer = false;
     TextError error;
     INFO(underlying << " " << surface);
     REQUIRE(runner->IsCandidate(underlying, surface, &answer, &error));
     return answer;
   }
-  Runner::Candidates Recover(const std::string& surface, std::size_t best) {
+  Runner::Candidates Recover(const std::string& surface, std::size_t best) const {
     Runner::Candidates candidates;
     TextError error;
     INFO(surface);
@@ -86,12 +87,48 @@ inline Compiled CompileRuleset(const std::string& name, const Limits& limits = {
 
 // What the interpreter makes of a form: the other engine.
 inline Derivation Trace(const Grammar& grammar, const std::string& underlying) {
-  const Reader reader(grammar);
-  std::vector<Token> tokens;
+  const FormReader reader(grammar);
+  std::vector<Reading> readings;
   TextError error;
   INFO(underlying);
-  REQUIRE(reader.Read(underlying, Reader::Side::kUnderlying, &tokens, &error));
-  return Derive(grammar, reader.FormOf(tokens, Reader::Side::kUnderlying));
+  REQUIRE(reader.Read(underlying, {}, &readings, &error));
+  REQUIRE(readings.size() == 1);
+  return Derive(grammar, reader.FormOf(readings.front()));
+}
+
+inline std::string ByInterpreter(const Grammar& grammar, const std::string& underlying) {
+  const Derivation derivation = Trace(grammar, underlying);
+  CHECK(derivation.problem == "");
+  std::string surface;
+  FeatureTree no_symbol;
+  REQUIRE(WriteForm(grammar, derivation.surface, &surface, &no_symbol));
+  return surface;
+}
+
+struct DerivedRow {
+  const char* underlying;
+  const char* surface;
+};
+
+// Both engines derive every row.
+inline Compiled CheckByBoth(const std::string& grammar_text, const std::vector<DerivedRow>& rows) {
+  Compiled compiled = CompileText(grammar_text);
+  INFO(grammar_text << compiled.Messages());
+  REQUIRE(compiled.cascade != nullptr);
+  for (const DerivedRow& row : rows) {
+    CAPTURE(row.underlying);
+    CHECK(compiled.Derive(row.underlying) == row.surface);
+    CHECK(ByInterpreter(compiled.grammar(), row.underlying) == row.surface);
+  }
+  return compiled;
+}
+
+// The underlying form of every row is a candidate of its surface form.
+inline void CheckRecovered(const Compiled& compiled, const std::vector<DerivedRow>& rows) {
+  for (const DerivedRow& row : rows) {
+    CAPTURE(row.underlying);
+    CHECK(compiled.IsCandidate(row.underlying, row.surface));
+  }
 }
 
 }  // namespace tiersmith::testing
