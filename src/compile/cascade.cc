@@ -386,7 +386,7 @@ class CascadeCompiler {
     const std::string possibly = segment_.exact ? "" : "possibly reached: ";
     const std::vector<TapeArc> ambiguous = ShortestThrough(composed, flagged(kFlagAmbiguous), &at);
     if (!ambiguous.empty()) {
-      const std::string form = FormText(ambiguous, data_->segments.size());
+      const std::string form = FormInOpenSegment(ambiguous);
       diagnostics_.Add(
           {Kind::kAmbiguousRule,
            severity,
@@ -409,7 +409,7 @@ class CascadeCompiler {
            rule.span,
            fmt::format(
                "{}rule \"{}\" iterates, but in /{}/ its change would reach another segment through a shared node",
-               possibly, rule.name, FormText(reaches, data_->segments.size())),
+               possibly, rule.name, FormInOpenSegment(reaches)),
            "spread or set the lower feature instead of what is shared, delink it first in a rule of its own, or apply "
            "the "
            "rule at once (without `iterate`)",
@@ -426,11 +426,11 @@ class CascadeCompiler {
                ? fmt::format(
                      "{}rule \"{}\" in /{}/ changes a node that several segments share, and what becomes of the "
                      "others would have to be judged as well: this cannot be compiled",
-                     possibly, rule.name, FormText(unsure, data_->segments.size()))
+                     possibly, rule.name, FormInOpenSegment(unsure))
                : fmt::format(
                      "{}rule \"{}\" iterates, and in /{}/ its change decides about a segment that the sweep has "
                      "passed, or replaces half of a long one: this cannot be compiled",
-                     possibly, rule.name, FormText(unsure, data_->segments.size())),
+                     possibly, rule.name, FormInOpenSegment(unsure)),
            rule.mode == Rule::Mode::kAtOnce
                ? "delink or spread what is shared in a rule of its own before this one"
                : "apply the rule at once (without `iterate`), or cut the line in a rule of its own",
@@ -570,7 +570,8 @@ class CascadeCompiler {
   int LastRuleThatChanged(const std::string& text, const FeatureTree& tree) const {
     const std::vector<Reading> readings = Readings(text);
     if (readings.empty()) return -1;
-    std::vector<std::pair<Form, int>> ways{{Fused(grammar_, Forms().FormOf(readings.front())), -1}};  // with the last rule so far
+    std::vector<std::pair<Form, int>> ways{
+        {Fused(grammar_, Forms().FormOf(readings.front())), -1}};  // with the last rule so far
     for (std::size_t r = 0; r < grammar_.rules.size(); ++r) {
       std::vector<std::pair<Form, int>> next;
       for (const auto& [form, last] : ways) {
@@ -612,6 +613,10 @@ class CascadeCompiler {
       roots.push_back(ContentOf(form, static_cast<InstanceId>(RootOf(form, item))));
     }
     return roots;
+  }
+
+  std::string FormInOpenSegment(const std::vector<TapeArc>& path) const {
+    return FormText(path, data_->segments.size());
   }
 
   // An underlying form that goes this path through the segment number `segment`, written with the first symbols that fit; at

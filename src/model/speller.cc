@@ -20,6 +20,19 @@ constexpr int kMostSteps = 200000;
 
 bool EndsWord(const Token& token) { return token.kind == Token::Kind::kBoundary && token.boundary >= Boundary::kWord; }
 
+// The letters as they are compared with what is written: without tags, # as a space.
+std::u32string Bare(std::string_view letters) {
+  std::string bare;
+  for (std::size_t i = 0; i < letters.size();) {
+    TypedTag tag;
+    TextError error;
+    if (ReadTag(letters, &i, &tag, &error)) continue;
+    bare += letters[i] == '#' ? ' ' : letters[i];
+    ++i;
+  }
+  return Normalise(bare);
+}
+
 }  // namespace
 
 struct Speller::Impl {
@@ -190,6 +203,15 @@ struct Speller::Impl {
       return key;
     }
   };
+
+  // Leaves those that are written as they were typed, or are read only; all if there is none.
+  void DropNotTyped(std::string_view typed_text, std::vector<Parse>* found) const {
+    const std::u32string typed = Bare(typed_text);
+    const auto middle = std::stable_partition(found->begin(), found->end(), [&](const Parse& read) {
+      return read.read_only || Normalise(Write(read.tokens, true)) == typed;
+    });
+    if (middle != found->begin()) found->erase(middle, found->end());
+  }
 
   class Search;
 };
@@ -385,33 +407,6 @@ class Speller::Impl::Search {
 Speller::Speller(const Grammar& grammar) : impl_(std::make_unique<Impl>(grammar)) {}
 Speller::~Speller() = default;
 
-namespace {
-
-// The letters as they are compared with what is written: without tags, # as a space.
-std::u32string Bare(std::string_view letters) {
-  std::string bare;
-  for (std::size_t i = 0; i < letters.size();) {
-    TypedTag tag;
-    TextError error;
-    if (ReadTag(letters, &i, &tag, &error)) continue;
-    bare += letters[i] == '#' ? ' ' : letters[i];
-    ++i;
-  }
-  return Normalise(bare);
-}
-
-}  // namespace
-
-// Leaves those that are written as they were typed, or are read only; all if there is none.
-template <class Impl, class Parse>
-void DropNotTyped(const Impl& impl, std::string_view letters, std::vector<Parse>* found) {
-  const std::u32string typed = Bare(letters);
-  const auto middle = std::stable_partition(found->begin(), found->end(), [&](const Parse& read) {
-    return read.read_only || Normalise(impl.Write(read.tokens, true)) == typed;
-  });
-  if (middle != found->begin()) found->erase(middle, found->end());
-}
-
 bool Speller::Read(std::string_view letters, Reader::Side side, std::vector<std::string>* readings,
                    TextError* error) const {
   readings->clear();
@@ -423,7 +418,7 @@ bool Speller::Read(std::string_view letters, Reader::Side side, std::vector<std:
               "write the form in symbols, or make the lines of `spelling` less open"};
     return false;
   }
-  if (found.size() > 1) DropNotTyped(*impl_, letters, &found);
+  if (found.size() > 1) impl_->DropNotTyped(letters, &found);
   for (const Impl::Parse& read : found) {
     std::string text;
     std::size_t from = 0;

@@ -473,9 +473,9 @@ struct Recovery::Impl {
   }
 
   std::string Text(const std::vector<int>& ids) const {
-    std::vector<const InputLetter*> inputs;
-    for (int id : ids) inputs.push_back(input_of.at(id));
-    return WriteInputs(grammar, inputs);
+    std::vector<const InputLetter*> spelled_as;
+    for (int id : ids) spelled_as.push_back(input_of.at(id));
+    return WriteInputs(grammar, spelled_as);
   }
 
   // The letters on cycles, with the first rule that deletes them.
